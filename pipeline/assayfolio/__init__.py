@@ -1,0 +1,1 @@
+"""Assayfolio: planned one-way comparisons for testing laboratories."""

@@ -1,0 +1,1 @@
+"""Commands: parse, call one function, print."""

@@ -1,0 +1,1 @@
+"""Folios, manifests, the audit trail, the environment record and numbered checks."""

@@ -1,0 +1,1 @@
+"""Raw data files as exact decimals, each with its line."""

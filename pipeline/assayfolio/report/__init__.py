@@ -1,0 +1,1 @@
+"""Findings as a PDF: content, figures, pages, the file itself. No arithmetic on data."""

@@ -1,0 +1,81 @@
+"""What a report is made from, beside the findings: the facts of the run as plain values.
+
+Everything here is read back from the folio when a report is rendered again.
+"""
+
+from dataclasses import dataclass
+from typing import Literal
+
+from assayfolio.findings import Findings
+from assayfolio.observations.values import Observations
+from assayfolio.study.plan import Laboratory, StudyDefinition
+
+
+@dataclass(frozen=True, slots=True)
+class InputFacts:
+    """One file that went into the run: what it is, its path in the workspace and in the folio, its digest."""
+
+    role: Literal["study definition", "raw data", "laboratory settings"]
+    path: str
+    folio_path: str
+    size: int
+    sha256: str
+
+
+@dataclass(frozen=True, slots=True)
+class RunFacts:
+    """The run itself. Times are RFC 3339: `started_utc` ends in Z, `started_local` carries its offset.
+
+    `trail_seq` and `trail_sha256` are the trail head under which the report was made. `software` lists
+    (name, version) of what computed and rendered; `native_libraries` the renderer's libraries
+    (name, version or short digest). `self_check` says in one sentence what was checked before the run.
+    """
+
+    study: str
+    number: int
+    started_utc: str
+    started_local: str
+    actor: str
+    host: str
+    inputs: tuple[InputFacts, ...]
+    findings_sha256: str
+    trail_seq: int
+    trail_sha256: str
+    python: str
+    platform: str
+    software: tuple[tuple[str, str], ...]
+    native_libraries: tuple[tuple[str, str], ...]
+    self_check: str
+
+    @property
+    def label(self) -> str:
+        """The run's name: `run-0001`."""
+        return f"run-{self.number:04d}"
+
+    @property
+    def study_sha256(self) -> str:
+        """The digest of the study definition."""
+        return next(item.sha256 for item in self.inputs if item.role == "study definition")
+
+
+@dataclass(frozen=True, slots=True)
+class AttachedFile:
+    """A file that travels inside the PDF; `relationship` as PDF 2.0 names it (Source, Data)."""
+
+    name: str
+    media_type: str
+    description: str
+    relationship: Literal["Source", "Data"]
+    content: bytes
+
+
+@dataclass(frozen=True, slots=True)
+class ReportInput:
+    """All a report is made from."""
+
+    study: StudyDefinition
+    laboratory: Laboratory
+    observations: Observations
+    findings: Findings
+    run: RunFacts
+    attachments: tuple[AttachedFile, ...]

@@ -1,0 +1,1 @@
+"""Pure functions on values with frozen, typed results; no file, clock or environment."""
