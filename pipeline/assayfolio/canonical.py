@@ -6,7 +6,7 @@ from typing import TypeAlias
 
 import rfc8785
 
-Json: TypeAlias = "None | bool | int | float | str | Sequence[Json] | Mapping[str, Json]"
+Json: TypeAlias = "bool | int | float | str | Sequence[Json] | Mapping[str, Json] | None"
 
 
 def canonical_bytes(value: Json) -> bytes:
