@@ -1,0 +1,61 @@
+"""The one funnel from errors to words and exit codes."""
+
+import sys
+import traceback
+import unicodedata
+from collections.abc import Sequence
+
+import click
+
+from assayfolio.errors import AssayfolioError, ExitCode
+
+
+def printable(text: str) -> str:
+    """`text` for a terminal: control and formatting characters appear escaped, line ends stay."""
+    return "".join(
+        character
+        if character in "\n\t" or unicodedata.category(character) not in {"Cc", "Cf", "Cs", "Zl", "Zp"}
+        else character.encode("unicode_escape").decode("ascii")
+        for character in text
+    )
+
+
+def say(text: str) -> None:
+    """One piece of text on standard output."""
+    click.echo(printable(text))
+
+
+def complain(text: str) -> None:
+    """One piece of text on standard error."""
+    click.echo(printable(text), err=True)
+
+
+def run_command(command: click.Command, arguments: Sequence[str] | None) -> int:
+    """Run `command`; turn every error into words on standard error; return the exit code."""
+    for stream in (sys.stdout, sys.stderr):
+        reconfigure = getattr(stream, "reconfigure", None)
+        if reconfigure is not None:
+            reconfigure(errors="backslashreplace")
+    try:
+        answer = command.main(args=arguments, prog_name="assayfolio", standalone_mode=False)
+        sys.stdout.flush()
+    except click.ClickException as error:
+        error.show()
+        return int(ExitCode.INPUT)
+    except AssayfolioError as error:
+        complain(str(error))
+        return int(error.exit_code)
+    except (click.Abort, KeyboardInterrupt):
+        complain("Stopped by the person who started it.")
+        return int(ExitCode.MACHINE)
+    except BrokenPipeError:
+        sys.stderr.close()  # the reader of our output has gone; there is nobody to tell
+        return int(ExitCode.MACHINE)
+    except OSError as error:
+        complain(f"The machine refused a file operation: {error}.")
+        return int(ExitCode.MACHINE)
+    except Exception:
+        complain("An unexpected fault in Assayfolio itself; please report it with the lines below.")
+        complain(traceback.format_exc())
+        return int(ExitCode.MACHINE)
+    return int(answer or ExitCode.DONE)

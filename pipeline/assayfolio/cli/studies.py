@@ -1,0 +1,69 @@
+"""Commands about studies: found a workspace, check a study, run it."""
+
+import json
+from pathlib import Path
+
+import click
+
+from assayfolio.cli.options import json_option, study_argument, workspace_option
+from assayfolio.cli.outcome import complain, say
+from assayfolio.workflow.steps import Step
+
+
+@click.command(epilog="\b\nExample:\n  assayfolio workspace ~/comparisons")
+@click.argument("folder", metavar="DIR", type=click.Path(path_type=Path))
+def workspace(folder: Path) -> None:
+    """Found a new workspace in DIR: settings, a first study to edit, an audit trail."""
+    from assayfolio.workflow.workspace import STARTER_FILES, SETTINGS, found_workspace
+
+    founded = found_workspace(folder)
+    say(f"Workspace founded in {founded.root}")
+    for name in STARTER_FILES:
+        say(f"  {name}")
+    say("  runs/audit-trail.jsonl")
+    say(f"Next: put your laboratory's name into {SETTINGS}, then")
+    say(f"  assayfolio run {founded.root / 'configs/first-study.yaml'}")
+
+
+@click.command(epilog="\b\nExample:\n  assayfolio check configs/whey-moisture.yaml")
+@study_argument
+@workspace_option
+@json_option
+def check(study: Path, named_workspace: Path | None, as_json: bool) -> None:
+    """Check a study definition, and its data file where there is one yet. Nothing is written."""
+    from assayfolio.workflow.check import check_study
+    from assayfolio.workflow.workspace import find_workspace
+
+    result = check_study(find_workspace(named_workspace, study.parent), study)
+    if as_json:
+        say(json.dumps(result.document(), ensure_ascii=False, indent=1))
+    else:
+        for line in result.lines():
+            say(line)
+
+
+@click.command(epilog="\b\nExample:\n  assayfolio run configs/whey-moisture.yaml")
+@study_argument
+@workspace_option
+@json_option
+def run(study: Path, named_workspace: Path | None, as_json: bool) -> None:
+    """Run a study: compute, render the report, and seal both in a numbered folder."""
+    from assayfolio.workflow.run import run_study
+    from assayfolio.workflow.summary import outcome_document, outcome_lines
+    from assayfolio.workflow.workspace import find_workspace
+
+    place = find_workspace(named_workspace, study.parent)
+    outcome = run_study(place, study, _say_nothing if as_json else _say_step)
+    if as_json:
+        say(json.dumps(outcome_document(place, outcome), ensure_ascii=False, indent=1))
+    else:
+        for line in outcome_lines(place, outcome):
+            say(line)
+
+
+def _say_step(step: Step, text: str) -> None:
+    complain(f"{int(step)}  {step.name.lower().replace('_', '-'):<11} {text}")
+
+
+def _say_nothing(step: Step, text: str) -> None:
+    """A program that asked for JSON gets nothing else."""

@@ -1,0 +1,103 @@
+"""The header row: which separator the file uses and in which columns response and factor stand."""
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+from typing import Literal
+
+from assayfolio.observations.faults import FaultList, listed, nearest, quoted, raise_faults, refusal
+from assayfolio.observations.labels import label_fault
+from assayfolio.observations.rows import Broken, Row, rows
+
+Separator = Literal["comma", "semicolon", "tab"]
+
+CHARACTERS: dict[Separator, str] = {"comma": ",", "semicolon": ";", "tab": "\t"}
+
+
+@dataclass(frozen=True, slots=True)
+class Header:
+    """The columns of a file.
+
+    `response` and `factor` are positions in `names`; the rows begin at `next_line`, counted from zero.
+    """
+
+    separator: Separator
+    names: tuple[str, ...]
+    response: int
+    factor: int
+    next_line: int
+
+    @property
+    def extras(self) -> tuple[int, ...]:
+        """The positions of the columns that are carried along."""
+        return tuple(at for at in range(len(self.names)) if at not in (self.response, self.factor))
+
+
+def find_header(lines: Sequence[str], response: str, factor: str, file: str, faults: FaultList) -> Header:
+    """The header of `lines`, by the one separator under which it holds both `response` and `factor`.
+
+    Adds to `faults` what is wrong with other columns. Raises DataError where the separator or one of the
+    two columns cannot be told.
+    """
+    if lines[0] == "" or lines[0].isspace():
+        raise refusal(file, "a blank line", "the column names are expected in the first line", 1, 1)
+    read = {name: next(rows(lines, character)) for name, character in CHARACTERS.items()}
+    found = {name: row for name, row in read.items() if isinstance(row, Row)}
+    if not found:
+        broken = next(row for row in read.values() if isinstance(row, Broken))
+        raise refusal(file, broken.found, broken.advice, broken.line, broken.column)
+    fitting = [name for name, row in found.items() if response in row.cells and factor in row.cells]
+    if not fitting:
+        _refuse_missing_columns(found, (response, factor), file)
+    if len(fitting) > 1:
+        columns = "; ".join(f"by {name}: {listed(found[name].cells)}" for name in fitting)
+        advice = "rename a column so that only one separator gives both"
+        raise refusal(file, f"more than one separator fits the header ({columns})", advice, 1, 1)
+    header = found[fitting[0]]
+    _check_names(header, faults)
+    if any(header.cells.count(name) > 1 for name in (response, factor)):
+        raise_faults(file, faults)
+    at_response, at_factor = header.cells.index(response), header.cells.index(factor)
+    next_line = header.line + sum(cell.count("\n") for cell in header.cells)
+    return Header(fitting[0], tuple(header.cells), at_response, at_factor, next_line)
+
+
+def _refuse_missing_columns(found: dict[Separator, Row], wanted: tuple[str, str], file: str) -> None:
+    """Raise DataError naming each missing column under the reading that comes closest, and its columns."""
+
+    def closeness(name: Separator) -> tuple[int, int]:
+        cells = found[name].cells
+        return sum(column in cells for column in wanted), len(cells)
+
+    best = max(found, key=closeness)
+    header = found[best]
+    readings = "; ".join(
+        f"by {name}: {listed(row.cells)}" for name, row in found.items() if len(row.cells) > 1 or name == best
+    )
+    faults = FaultList(file)
+    for column in wanted:
+        if column in header.cells:
+            continue
+        near = nearest(column, header.cells)
+        line, at = header.spot(header.cells.index(near)) if near is not None else (1, 1)
+        advice = "name the column in the study as it stands in the file"
+        advice = f"the nearest name is {quoted(near)}; {advice}" if near is not None else advice
+        faults.add(line, at, f"no column {quoted(column)} in the header ({readings})", advice)
+    raise_faults(file, faults)
+
+
+def _check_names(header: Row, faults: FaultList) -> None:
+    seen: dict[str, int] = {}
+    for at, name in enumerate(header.cells):
+        line, column = header.spot(at)
+        plain = name.strip()
+        if not plain:
+            advice = "give it a name, or delete it where the column is not needed"
+            faults.add(line, column, f"column {at + 1} has no name", advice)
+            continue
+        unfit = label_fault(name)
+        if unfit is not None:
+            faults.add(line, column, f"column name {quoted(name)} holds {unfit[0]}", unfit[1])
+        if plain in seen:
+            found = f"column {at + 1} has the same name as column {seen[plain] + 1}: {quoted(name)}"
+            faults.add(line, column, found, "give each column its own name")
+        seen.setdefault(plain, at)

@@ -1,0 +1,247 @@
+"""The figures on the data themselves and on the comparisons."""
+
+from dataclasses import dataclass
+from fractions import Fraction
+
+from assayfolio.findings import ComparisonRow, Interval, LevelFindings
+from assayfolio.report.axes import Axis, make_axis
+from assayfolio.report.basis import Basis
+from assayfolio.report.notation import INFINITY, MINUS, Scale
+from assayfolio.report.svg import HAIR, HAIRLINE, INK, SECOND_INK, STRONG_LINE, THIN_LINE, Drawing
+from assayfolio.report.swarm import offsets
+from assayfolio.report.typeface import text_width, wrapped
+
+FULL_WIDTH = 464.9  # 164 mm
+DOT = 1.9
+DOT_ROOM = 2 * DOT + 0.6
+MOST_DOTS = 2000
+MOST_LEVELS = 32
+MOST_ROWS = 36
+
+_SIZE = 7.4
+_LINE = 9.2
+_BINS = 90
+_CAP = 2.6
+
+
+@dataclass(frozen=True, slots=True)
+class Picture:
+    """A finished figure: the name of its file, the file, what it shows in words, its width in millimetres."""
+
+    name: str
+    svg: bytes
+    title: str
+    width_mm: float
+
+
+def draw_axis(drawing: Drawing, axis: Axis, y: float, title: str, ends: tuple[float, float]) -> None:
+    """A horizontal axis at `y`: its line spans `ends` only, ticks point outward, the title is centred below."""
+    drawing.line(*_both(ends, y), stroke=SECOND_INK, width=THIN_LINE)
+    for tick, label in zip(axis.ticks, axis.labels, strict=True):
+        x = axis.at(tick)
+        drawing.line(x, y, x, y + 3, stroke=SECOND_INK, width=THIN_LINE)
+        drawing.text(x, y + 11, label, size=_SIZE, anchor="middle", fill=SECOND_INK)
+    drawing.text((axis.start + axis.end) / 2, y + 22, title, size=_SIZE, anchor="middle")
+
+
+def _both(ends: tuple[float, float], y: float) -> tuple[float, float, float, float]:
+    return min(ends), y, max(ends), y
+
+
+def axis_title(axis: Axis, what: str, scale: Scale) -> str:
+    """`what`, less the origin that was taken off the labels, and its unit."""
+    if axis.origin:
+        what = f"{what} {MINUS} {scale.mean(axis.origin).rstrip('0').rstrip('.')}"
+    return f"{what}, {scale.heading}" if scale.heading else what
+
+
+def draw_interval(drawing: Drawing, axis: Axis, y: float, ends: Interval, *, stroke: str = INK) -> None:
+    """A thin line with flat ends; an open end runs to the end of the axis and has no flat end."""
+    low = axis.start if ends[0] is None else axis.at(ends[0])
+    high = axis.end if ends[1] is None else axis.at(ends[1])
+    drawing.line(low, y, high, y, stroke=stroke, width=THIN_LINE)
+    for end, x in zip(ends, (low, high), strict=True):
+        if end is not None:
+            drawing.line(x, y - _CAP, x, y + _CAP, stroke=stroke, width=THIN_LINE)
+
+
+def dot_plots(basis: Basis, accent: str) -> tuple[Picture, ...]:
+    """Every value as a dot, level by level, with means and intervals; many levels take several figures.
+
+    Beyond MOST_DOTS values a figure shows how many values fall into each of 90 equal classes instead.
+    """
+    count = -(-len(basis.levels) // MOST_LEVELS)
+    size = -(-len(basis.levels) // count)
+    return tuple(
+        _dot_plot(basis, basis.levels[start : start + size], accent, f"values-{start // size + 1}.svg")
+        for start in range(0, len(basis.levels), size)
+    )
+
+
+def _label_column(names: list[str], share: float) -> float:
+    return min(share, max(text_width(name, _SIZE, "semibold") for name in names) + 2)
+
+
+def _dot_plot(basis: Basis, levels: tuple[LevelFindings, ...], accent: str, name: str) -> Picture:
+    column = _label_column([level.level for level in levels], 128)
+    lines = [wrapped(level.level, _SIZE, column, "semibold") for level in levels]
+    least = 30.0 if len(levels) <= 8 else 22.0 if len(levels) <= 16 else 17.0
+    heights = [max(least, _LINE * (len(words) + 1) + 4) for words in lines]
+    if len(levels) > 16:
+        heights = [max(least, _LINE * len(words) + 5) for words in lines]
+    drawing = Drawing(FULL_WIDTH, sum(heights) + 32)
+    numbers = column + 6 + text_width(f"n = {max(level.n for level in levels)}", 6.8)
+    start = (numbers if len(levels) > 16 else column) + 16
+    ends: list[Fraction] = [end for level in basis.levels for end in (level.minimum, level.maximum)]
+    ends += [Fraction(end) for level in basis.levels if level.ci for end in level.ci if end is not None]
+    axis = make_axis(ends, start, FULL_WIDTH - 8, power=basis.scale.power)
+    y = 4.0
+    for level, words, height in zip(levels, lines, heights, strict=True):
+        _name_level(drawing, level, words, y + height / 2, column, beside=len(levels) > 16)
+        _level_row(drawing, basis, level, axis, y + height / 2, height, accent)
+        y += height
+    title = axis_title(axis, basis.response.response, basis.scale)
+    draw_axis(drawing, axis, y + 2, title, (axis.at(min(ends)), axis.at(max(ends))))
+    return Picture(name, drawing.svg(_values_in_words(basis, levels)), _values_in_words(basis, levels), 164)
+
+
+def _name_level(
+    drawing: Drawing, level: LevelFindings, words: list[str], middle: float, column: float, *, beside: bool
+) -> None:
+    count = f"n = {level.n}"
+    total = len(words) if beside else len(words) + 1
+    y = middle - _LINE * total / 2 + 7
+    for word in words:
+        drawing.text(0, y, word, size=_SIZE, weight=600)
+        y += _LINE
+    if beside:
+        drawing.text(column + 6, middle - _LINE / 2 + 7, count, size=6.8, fill=SECOND_INK)
+    else:
+        drawing.text(0, y, count, size=6.8, fill=SECOND_INK)
+
+
+def _level_row(
+    drawing: Drawing,
+    basis: Basis,
+    level: LevelFindings,
+    axis: Axis,
+    middle: float,
+    height: float,
+    accent: str,
+) -> None:
+    lane = min(height, 34.0)
+    dots, interval = middle - lane * 0.11, middle + lane * 0.30
+    room = lane * 0.27
+    mean = axis.at(level.mean)
+    drawing.line(mean, middle - lane * 0.40, mean, middle + lane * 0.40, stroke=accent, width=STRONG_LINE)
+    if level.ci is not None:
+        draw_interval(drawing, axis, interval, level.ci, stroke=accent)
+    places = [
+        axis.at(value)
+        for value, row in zip(basis.values, basis.content.observations.rows, strict=True)
+        if row.level == level.level
+    ]
+    if basis.total > MOST_DOTS:
+        _classes(drawing, places, axis, dots, room)
+        return
+    for x, offset in zip(places, offsets(places, DOT_ROOM, room), strict=True):
+        drawing.ring(x, dots - offset, DOT)
+
+
+def _classes(drawing: Drawing, places: list[float], axis: Axis, middle: float, room: float) -> None:
+    width = (axis.end - axis.start) / _BINS
+    counts = [0] * _BINS
+    for x in places:
+        counts[min(_BINS - 1, int((x - axis.start) / width))] += 1
+    for number, count in enumerate(counts):
+        if count:
+            half = max(0.3, room * count / max(counts))
+            drawing.box(axis.start + number * width, middle - half, width - 0.3, 2 * half, fill="#aab1b5")
+
+
+def _values_in_words(basis: Basis, levels: tuple[LevelFindings, ...]) -> str:
+    scale = basis.scale
+    parts = [
+        f"{level.level}: {level.n} value{'s' if level.n > 1 else ''} from {scale.value(level.minimum)} to "
+        f"{scale.value(level.maximum)}, mean {scale.mean(level.mean)}"
+        for level in levels
+    ]
+    unit = f" in {scale.heading}" if scale.heading else ""
+    return f"{basis.response.response}{unit} by {basis.factor}. " + "; ".join(parts) + "."
+
+
+def interval_plot(basis: Basis, rows: tuple[ComparisonRow, ...], accent: str, name: str, head: str) -> Picture:
+    """Estimates with their intervals, one row each, in the order of the plan; figures in columns at right."""
+    scale = basis.difference_scale
+    labels = [basis.label(row) for row in rows]
+    column = _label_column(labels, 168)
+    lines = [wrapped(label, _SIZE, column) for label in labels]
+    heights = [max(15.0, _LINE * len(words) + 6) for words in lines]
+    figures = [_figures(row, scale) for row in rows]
+    columns = _number_columns(figures)
+    right = FULL_WIDTH - sum(columns) - 10 * len(columns)
+    drawing = Drawing(FULL_WIDTH, sum(heights) + 46)
+    values = [row.estimate for row in rows]
+    values += [Fraction(end) for row in rows if row.ci for end in row.ci if end is not None]
+    axis = make_axis(values, column + 16, right, include_zero=True, power=scale.power)
+    top, y = 14.0, 14.0
+    zero = axis.at(0)
+    drawing.line(zero, top, zero, top + sum(heights) + 2, stroke=SECOND_INK, width=THIN_LINE)
+    _heads(drawing, columns, right, head, with_interval=len(columns) > 1)
+    for row, words, height, texts in zip(rows, lines, heights, figures, strict=True):
+        middle = y + height / 2
+        baseline = middle - _LINE * len(words) / 2 + 7
+        for number, word in enumerate(words):
+            drawing.text(0, baseline + number * _LINE, word, size=_SIZE)
+        if row.ci is not None:
+            draw_interval(drawing, axis, middle, row.ci, stroke=accent)
+        drawing.dot(axis.at(row.estimate), middle, 2.1, fill=accent)
+        _numbers(drawing, texts, columns, right, middle + 2.6)
+        y += height
+    ends = (axis.at(min(*values, Fraction(0))), axis.at(max(*values, Fraction(0))))
+    draw_axis(drawing, axis, y + 4, axis_title(axis, "difference", scale), ends)
+    words_for_all = _intervals_in_words(basis, rows)
+    return Picture(name, drawing.svg(words_for_all), words_for_all, 164)
+
+
+def _figures(row: ComparisonRow, scale: Scale) -> list[str]:
+    texts = [scale.mean(row.estimate)]
+    if row.ci is not None:
+        texts.append(f"{MINUS}{INFINITY}" if row.ci[0] is None else scale.mean(row.ci[0]))
+        texts.append(INFINITY if row.ci[1] is None else scale.mean(row.ci[1]))
+    return texts
+
+
+def _number_columns(figures: list[list[str]]) -> list[float]:
+    count = max(len(texts) for texts in figures)
+    return [max(text_width(texts[i], _SIZE) for texts in figures if i < len(texts)) for i in range(count)]
+
+
+def _heads(drawing: Drawing, columns: list[float], right: float, head: str, *, with_interval: bool) -> None:
+    x = right + 10 + columns[0]
+    drawing.text(x, 6, "difference", size=6.8, fill=SECOND_INK, anchor="end")
+    if with_interval:
+        drawing.text(FULL_WIDTH, 6, head, size=6.8, fill=SECOND_INK, anchor="end")
+    drawing.line(right + 6, 10, FULL_WIDTH, 10, stroke=HAIRLINE, width=HAIR)
+
+
+def _numbers(drawing: Drawing, texts: list[str], columns: list[float], right: float, baseline: float) -> None:
+    x = right
+    for text, width in zip(texts, columns, strict=False):
+        x += 10 + width
+        drawing.text(x, baseline, text, size=_SIZE, anchor="end")
+
+
+def _intervals_in_words(basis: Basis, rows: tuple[ComparisonRow, ...]) -> str:
+    scale = basis.difference_scale
+    parts = []
+    for row in rows:
+        words = f"{basis.label(row)}: {scale.mean(row.estimate)}"
+        if row.ci is not None:
+            low, high = _figures(row, scale)[1:]
+            words += f", interval {low} to {high}"
+        parts.append(words)
+    unit = f" in {scale.heading}" if scale.heading else ""
+    return f"Differences{unit}. " + "; ".join(parts) + "."
+
+

@@ -1,0 +1,68 @@
+"""Words with a little emphasis: text in spans, so that nothing a user typed is ever taken for markup.
+
+Patterns are written by this package alone. In a pattern `*x*` is a symbol (italic), `#x#` strong, `~x~` quiet,
+`_x_` a subscript, `^x^` a superscript, and `{name}` a value that is put in as it is, never looked into.
+"""
+
+import re
+from dataclasses import dataclass
+from typing import Literal, TypeAlias
+
+Style = Literal["", "symbol", "strong", "quiet", "sub", "sup"]
+
+_STYLES: dict[str, Style] = {"*": "symbol", "#": "strong", "~": "quiet", "_": "sub", "^": "sup"}
+_TOKEN = re.compile(r"([*#~_^])(.+?)\1|\{([a-z0-9_]+)\}")
+
+
+@dataclass(frozen=True, slots=True)
+class Span:
+    """A stretch of text in one style."""
+
+    text: str
+    style: Style = ""
+
+
+Prose: TypeAlias = tuple[Span, ...]
+Words: TypeAlias = "str | Prose"
+
+
+def prose(pattern: str, **values: Words) -> Prose:
+    """The spans that `pattern` describes, with `values` in their places.
+
+    Raises KeyError where the pattern names a value that is not given.
+    """
+    spans: list[Span] = []
+    position = 0
+    for match in _TOKEN.finditer(pattern):
+        if match.start() > position:
+            spans.append(Span(pattern[position : match.start()]))
+        if match[3]:
+            spans.extend(as_prose(values[match[3]]))
+        else:
+            spans.extend(Span(span.text, _STYLES[match[1]]) for span in prose(match[2], **values))
+        position = match.end()
+    if position < len(pattern):
+        spans.append(Span(pattern[position:]))
+    return tuple(spans)
+
+
+def as_prose(words: Words) -> Prose:
+    """`words` as spans; a plain text is one unstyled span."""
+    if isinstance(words, str):
+        return (Span(words),) if words else ()
+    return words
+
+
+def plain(words: Words) -> str:
+    """The text of `words` alone."""
+    return words if isinstance(words, str) else "".join(span.text for span in words)
+
+
+def joined(parts: list[Prose], separator: str) -> Prose:
+    """`parts` with `separator` between them."""
+    spans: list[Span] = []
+    for index, part in enumerate(parts):
+        if index:
+            spans.append(Span(separator))
+        spans.extend(part)
+    return tuple(spans)

@@ -1,0 +1,76 @@
+"""Checking a study before it is run: the plan, and whether the data fit it. Nothing is written."""
+
+from collections import Counter
+from collections.abc import Mapping
+from dataclasses import dataclass
+from pathlib import Path
+
+from assayfolio.canonical import Json
+from assayfolio.observations.values import Observations
+from assayfolio.study.plan import AllPairs, Comparison, Contrast, StudyDefinition
+from assayfolio.workflow.intake import SeenFiles, data_file_exists, read_intake, read_plan
+from assayfolio.workflow.workspace import Workspace
+
+
+@dataclass(frozen=True, slots=True)
+class CheckedStudy:
+    """A study that can be run; `observations` is None while its data file does not exist."""
+
+    study: StudyDefinition
+    observations: Observations | None
+
+    def lines(self) -> list[str]:
+        """What was found, for people."""
+        study, data = self.study, self.study.data
+        lines = [
+            f"{study.study}  {study.title}",
+            f"  plan   valid: {data.response[0]} by {data.factor}, alpha {float(study.alpha):g}",
+            *(f"  plan   {_described(comparison)}" for comparison in study.comparisons),
+        ]
+        if self.observations is None:
+            return [*lines, f"  data   {data.file} does not exist yet; the plan can be kept as it is"]
+        counts = self.counts()
+        listed = ", ".join(f"{level} {n}" for level, n in counts.items())
+        return [
+            *lines,
+            f"  data   {self.observations.file}: {sum(counts.values()):,} values, separator "
+            f"{self.observations.separator}, decimal {data.decimal_mark}",
+            f"  data   fits the plan: {listed}",
+        ]
+
+    def document(self) -> Mapping[str, Json]:
+        """What was found, for programs."""
+        counts = self.counts() if self.observations is not None else None
+        return {
+            "study": self.study.study,
+            "plan": "valid",
+            "data": "absent" if counts is None else "fits the plan",
+            "values_per_level": counts,
+        }
+
+    def counts(self) -> dict[str, int]:
+        """The number of values of each level, in the order of the levels."""
+        if self.observations is None:
+            return {}
+        counted = Counter(row.level for row in self.observations.rows)
+        return {level: counted[level] for level in self.observations.levels}
+
+
+def _described(comparison: Comparison) -> str:
+    if isinstance(comparison, AllPairs):
+        return f"{comparison.name}: all pairs, {comparison.adjust}"
+    if isinstance(comparison, Contrast):
+        weights = ", ".join(f"{weight} {level}" for level, weight in comparison.weights)
+        return f"{comparison.name}: {weights}; {comparison.alternative}"
+    return f"{comparison.name}: against {comparison.against}, {comparison.adjust}, {comparison.alternative}"
+
+
+def check_study(workspace: Workspace, study_path: Path) -> CheckedStudy:
+    """Read and validate the plan, and its data where the file exists.
+
+    Raises InputError with all faults of the first file that has any.
+    """
+    study, _ = read_plan(workspace, study_path, SeenFiles())
+    if not data_file_exists(study_path, study):
+        return CheckedStudy(study, None)
+    return CheckedStudy(study, read_intake(workspace, study_path, SeenFiles()).observations)

@@ -1,0 +1,150 @@
+"""The run's own record (`data/run.json`), and the facts of a report made from the records of a run."""
+
+from collections.abc import Mapping, Sequence
+from importlib.resources import files
+from pathlib import Path
+from typing import Any
+
+from assayfolio.canonical import Json, sha256_hex
+from assayfolio.evidence.trail import TrailHead
+from assayfolio.findings import Findings, findings_bytes
+from assayfolio.report.facts import AttachedFile, InputFacts, ReportInput, RunFacts
+from assayfolio.version import VERSION
+from assayfolio.workflow.intake import Intake
+from assayfolio.workflow.surroundings import Surroundings
+
+RUN_FORMAT = "assayfolio-run/1"
+ATTACH_UP_TO_BYTES = 5 * 1024 * 1024
+NAMED_SOFTWARE = (
+    "assayfolio",
+    "numpy",
+    "scipy",
+    "weasyprint",
+    "pydyf",
+    "jinja2",
+    "fonttools",
+    "pyyaml",
+    "rfc8785",
+)
+
+
+def run_record(
+    intake: Intake, surroundings: Surroundings, number: int, head_at_start: TrailHead
+) -> dict[str, Json]:
+    """What is known of a run when its number is allotted; `completed_record` or `failed_record` ends it."""
+    return {
+        "format": RUN_FORMAT,
+        "study": intake.study.study,
+        "number": number,
+        "run": f"run-{number:04d}",
+        "started": surroundings.started_utc,
+        "started_local": surroundings.started_local,
+        "actor": surroundings.actor,
+        "host": surroundings.host,
+        "inputs": [
+            {
+                "role": file.role,
+                "path": file.path,
+                "folio_path": file.folio_path,
+                "size": len(file.content),
+                "sha256": file.sha256,
+            }
+            for file in intake.files
+        ],
+        "pre_registration": None,
+        "trail_head_at_start": {"seq": head_at_start.seq, "sha256": head_at_start.sha256},
+    }
+
+
+def completed_record(record: Mapping[str, Json], findings: bytes, report: bytes) -> dict[str, Json]:
+    """The record of a run that came to its end, with the digests of what it made."""
+    return {
+        **record,
+        "outcome": "completed",
+        "reason": None,
+        "findings_sha256": sha256_hex(findings),
+        "report_sha256": sha256_hex(report),
+    }
+
+
+def failed_record(record: Mapping[str, Json], reason: str) -> dict[str, Json]:
+    """The record of a run that failed after its number was allotted."""
+    return {**record, "outcome": "failed", "reason": reason}
+
+
+def bag_info(intake: Intake, surroundings: Surroundings, run: str) -> list[tuple[str, str]]:
+    """The lines of `bag-info.txt`; labels of RFC 8493, section 2.2.2."""
+    return [
+        ("Source-Organization", intake.laboratory.name),
+        ("External-Identifier", f"{intake.study.study}/{run}"),
+        ("External-Description", intake.study.title),
+        ("Bagging-Date", surroundings.started_utc[:10]),
+        ("Bag-Software-Agent", f"assayfolio {VERSION}"),
+    ]
+
+
+def requirements_lock() -> bytes:
+    """The hash-pinned list of packages that this version is installed from."""
+    return (files("assayfolio") / "requirements.lock").read_bytes()
+
+
+def run_facts(record: Mapping[str, Any], environment: Mapping[str, Any], findings_sha256: str) -> RunFacts:
+    """The facts that a report prints, from the run's record and the environment's."""
+    versions = {package["name"]: package["version"] for package in environment["packages"]}
+    return RunFacts(
+        study=record["study"],
+        number=record["number"],
+        started_utc=record["started"],
+        started_local=record["started_local"],
+        actor=record["actor"],
+        host=record["host"],
+        inputs=tuple(
+            InputFacts(item["role"], item["path"], item["folio_path"], item["size"], item["sha256"])
+            for item in record["inputs"]
+        ),
+        findings_sha256=findings_sha256,
+        trail_seq=record["trail_head_of_report"]["seq"],
+        trail_sha256=record["trail_head_of_report"]["sha256"],
+        python=environment_line(environment, "interpreter"),
+        platform=environment_line(environment, "platform"),
+        software=tuple((name, versions[name]) for name in NAMED_SOFTWARE if name in versions),
+        native_libraries=_native_libraries(environment),
+        self_check=record["self_check"],
+    )
+
+
+def environment_line(environment: Mapping[str, Any], part: str) -> str:
+    """One part of the environment record in one line, as a report prints it."""
+    raise NotImplementedError(part)
+
+
+def _native_libraries(environment: Mapping[str, Any]) -> tuple[tuple[str, str], ...]:
+    raise NotImplementedError
+
+
+def report_input(intake: Intake, findings: Findings, facts: RunFacts) -> ReportInput:
+    """All a report is made from; files up to 5 MB travel inside the PDF."""
+    return ReportInput(
+        study=intake.study,
+        laboratory=intake.laboratory,
+        observations=intake.observations,
+        findings=findings,
+        run=facts,
+        attachments=tuple(_attachments(intake, findings)),
+    )
+
+
+def _attachments(intake: Intake, findings: Findings) -> Sequence[AttachedFile]:
+    by_role = {file.role: file for file in intake.files}
+    study, raw = by_role["study definition"], by_role["raw data"]
+    listed = [
+        AttachedFile("study.yaml", "application/yaml", "Study definition", "Source", study.content),
+        AttachedFile(
+            "findings.json", "application/json", "Findings, canonical JSON", "Data", findings_bytes(findings)
+        ),
+    ]
+    if len(raw.content) <= ATTACH_UP_TO_BYTES:
+        name = Path(raw.folio_path).name
+        media_type = "text/tab-separated-values" if intake.observations.separator == "tab" else "text/csv"
+        listed.append(AttachedFile(name, media_type, "Raw data as received", "Source", raw.content))
+    return listed

@@ -1,0 +1,216 @@
+"""A run, from study definition and raw data to a sealed folio, in numbered steps.
+
+1 read and validate every input, 2 allot the run number, 3 check the installed code, 4 compute the findings,
+5 render the report, 6 stage the folio and read it back, 7 seal it: enter the seal in the trail, then rename
+the folder into place. Each step is entered in the audit trail as it is done. A fault in step 1 leaves a
+`refused` entry and no number; a failure after step 2 keeps its number and leaves a folio with the reason.
+"""
+
+from collections.abc import Mapping
+from contextlib import ExitStack
+from dataclasses import dataclass, field
+from pathlib import Path
+
+from assayfolio.canonical import Json, canonical_bytes, sha256_hex
+from assayfolio.errors import InputError, MachineError
+from assayfolio.evaluation import evaluate
+from assayfolio.evidence.environment import environment_record
+from assayfolio.evidence.folio import folio_lock, stage_folio
+from assayfolio.evidence.history import next_number
+from assayfolio.evidence.trail import TrailEntry, TrailHead, TrailWriter, open_trail
+from assayfolio.findings import Findings, findings_bytes
+from assayfolio.report.render import load_renderer, render_report
+from assayfolio.workflow.failure import failure_text
+from assayfolio.workflow.intake import Intake, SeenFiles, read_intake
+from assayfolio.workflow.records import (
+    bag_info,
+    completed_record,
+    failed_record,
+    report_input,
+    requirements_lock,
+    run_facts,
+    run_record,
+)
+from assayfolio.workflow.recovery import acknowledge_interruptions, found_trail
+from assayfolio.workflow.selfcheck import self_check
+from assayfolio.workflow.steps import Progress, Step
+from assayfolio.workflow.surroundings import Surroundings, account_name, look_around, utc_now
+from assayfolio.workflow.workspace import Workspace, shown_path
+
+DEFAULT_WAIT_SECONDS = 10.0
+
+
+@dataclass(frozen=True, slots=True)
+class RunOutcome:
+    """A run that came to its end: its findings, its folio and the folio's seal."""
+
+    subject: str
+    folio: Path
+    seal: str
+    findings: Findings
+
+
+@dataclass(slots=True)
+class _Run:
+    """A run that has its number: what it works with, and what it has made so far."""
+
+    workspace: Workspace
+    intake: Intake
+    surroundings: Surroundings
+    number: int
+    head_at_start: TrailHead
+    progress: Progress
+    entries: list[TrailEntry]
+    record: dict[str, Json] = field(default_factory=dict)
+    payload: dict[str, bytes] = field(default_factory=dict)
+
+    @property
+    def name(self) -> str:
+        return f"run-{self.number:04d}"
+
+    @property
+    def subject(self) -> str:
+        return f"{self.intake.study.study}/{self.name}"
+
+    @property
+    def folder(self) -> Path:
+        return self.workspace.runs / self.intake.study.study
+
+    def enter(self, action: str, step: Step, details: Mapping[str, Json], reason: str | None = None) -> TrailHead:
+        """Enter a step of this run in the trail as it happens; return the trail's new head."""
+        wait = self.intake.laboratory.wait_seconds
+        with open_trail(self.workspace.runs, self.surroundings.actor, utc_now, wait) as trail:
+            self.entries.append(trail.append(action, self.subject, reason, {"step": int(step), **details}))
+            return trail.head
+
+
+def run_study(workspace: Workspace, study_path: Path, progress: Progress) -> RunOutcome:
+    """Run the study at `study_path`; see the text of this module for the steps.
+
+    Raises InputError for a faulty plan or data (nothing but a trail entry is left), BusyError where another
+    writer holds the workspace, MachineError and its kin where the run failed after its number was allotted
+    (its folio is sealed with the reason).
+    """
+    surroundings = look_around()
+    seen = SeenFiles()
+    try:
+        intake = read_intake(workspace, study_path, seen)
+    except InputError as error:
+        _refuse(workspace, study_path, seen, error)
+        raise
+    observed = intake.observations
+    progress(Step.READ, f"{len(observed.rows):,} values at {len(observed.levels)} levels from {observed.file}")
+    with ExitStack() as held:
+        run = _allot(workspace, intake, surroundings, progress, held)
+        try:
+            findings = _compute_and_render(run)
+            return _seal_completed(run, findings)
+        except BaseException as error:
+            raise _seal_failed(run, error) from error
+
+
+def _refuse(workspace: Workspace, study_path: Path, seen: SeenFiles, error: InputError) -> None:
+    subject = seen.study_id or _relative_name(workspace, study_path)
+    details: dict[str, Json] = {
+        "step": int(Step.READ),
+        "inputs": {file.path: file.sha256 for file in seen.files},
+        "faults": [_holdable(str(fault)) for fault in error.faults],
+        "more_faults": error.hidden,
+    }
+    with open_trail(workspace.runs, account_name(), utc_now, DEFAULT_WAIT_SECONDS) as trail:
+        found_trail(workspace, trail)
+        trail.append("refused", _holdable(subject), _holdable(error.headline), details)
+
+
+def _relative_name(workspace: Workspace, path: Path) -> str:
+    resolved = path.resolve()
+    inside = resolved.is_relative_to(workspace.root)
+    return shown_path(resolved.relative_to(workspace.root) if inside else resolved)
+
+
+def _holdable(text: str) -> str:
+    return text.encode("utf-8", "backslashreplace").decode("utf-8")
+
+
+def _allot(
+    workspace: Workspace, intake: Intake, surroundings: Surroundings, progress: Progress, held: ExitStack
+) -> _Run:
+    study, wait = intake.study.study, intake.laboratory.wait_seconds
+    with open_trail(workspace.runs, surroundings.actor, utc_now, wait) as trail:
+        found_trail(workspace, trail)
+        acknowledge_interruptions(workspace, trail)
+        number = next_number(trail.entries, study)
+        run = _Run(workspace, intake, surroundings, number, trail.head, progress, [])
+        # The folio's lock first: an allotted run without it counts as interrupted.
+        held.enter_context(folio_lock(run.folder, run.name))
+        inputs = {file.path: file.sha256 for file in intake.files}
+        details: dict[str, Json] = {"step": int(Step.ALLOT), "number": number, "inputs": inputs}
+        run.entries.append(trail.append("allotted", run.subject, None, details))
+    progress(Step.ALLOT, run.subject)
+    return run
+
+
+def _compute_and_render(run: _Run) -> Findings:
+    run.payload = {file.folio_path: file.content for file in run.intake.files}
+    run.payload["data/requirements.lock"] = requirements_lock()
+    run.record = run_record(run.intake, run.surroundings, run.number, run.head_at_start)
+    load_renderer()
+    environment = environment_record()
+    run.payload["data/environment.json"] = canonical_bytes(environment)
+    checked = self_check()
+    run.record["self_check"] = checked
+    run.enter("self-checked", Step.SELF_CHECK, {"result": checked})
+    run.progress(Step.SELF_CHECK, checked)
+
+    findings = evaluate(run.intake.study, run.intake.observations)
+    document = findings_bytes(findings)
+    run.payload["data/findings.json"] = document
+    head = run.enter("computed", Step.COMPUTE, {"findings_sha256": sha256_hex(document)})
+    run.progress(Step.COMPUTE, f"findings {sha256_hex(document)[:16]}")
+
+    run.record["trail_head_of_report"] = {"seq": head.seq, "sha256": head.sha256}
+    facts = run_facts(run.record, environment, sha256_hex(document))
+    report = render_report(report_input(run.intake, findings, facts))
+    run.payload["data/report.pdf"] = report.pdf
+    run.payload |= {f"data/figures/{name}": content for name, content in report.figures}
+    run.record = completed_record(run.record, document, report.pdf)
+    run.enter("rendered", Step.RENDER, {"report_sha256": sha256_hex(report.pdf)})
+    run.progress(Step.RENDER, f"report.pdf {len(report.pdf) // 1024} kB")
+    return findings
+
+
+def _seal_completed(run: _Run, findings: Findings) -> RunOutcome:
+    folio, seal = _seal(run, "completed")
+    return RunOutcome(run.subject, folio, seal, findings)
+
+
+def _seal(run: _Run, outcome: str) -> tuple[Path, str]:
+    run.payload["data/run.json"] = canonical_bytes(run.record)
+    run.enter("staged", Step.STAGE, {"files": len(run.payload) + 1})
+    run.payload["data/trail.jsonl"] = b"".join(entry.line + b"\n" for entry in run.entries)
+    staged = stage_folio(run.folder, run.name, run.payload, bag_info(run.intake, run.surroundings, run.name))
+    run.progress(Step.STAGE, f"{len(run.payload)} files written and read back")
+    run.enter("sealed", Step.SEAL, {"seal": staged.seal, "outcome": outcome})
+    folio = staged.publish()
+    run.progress(Step.SEAL, f"seal {staged.seal[:16]}")
+    return folio, staged.seal
+
+
+def _seal_failed(run: _Run, error: BaseException) -> BaseException:
+    """Seal the folio of a run that failed; return the error to be raised."""
+    reason, account = failure_text(error)
+    if run.entries[-1].action == "sealed":
+        return MachineError(f"{reason}\n{run.subject} is sealed but not in its place; the next run puts it there.")
+    where = f"{run.subject} failed; its number is kept"
+    try:
+        run.enter("failed", Step(run.entries[-1].details["step"]), {}, _holdable(reason))
+        run.payload.pop("data/report.pdf", None)
+        run.payload["data/failure.txt"] = account.encode("utf-8", "backslashreplace")
+        run.record = failed_record(run.record, _holdable(reason))
+        folio, _ = _seal(run, "failed")
+        where = f"{where}, and its folio says why: {shown_path(folio)}"
+    except Exception as second:
+        where = f"{where}, but its folio could not be sealed ({second})"
+    if isinstance(error, KeyboardInterrupt):
+        return error
+    return MachineError(f"{reason}\n{where}.")

@@ -1,0 +1,121 @@
+"""A laboratory's workspace: where it is, how a new one is founded, and what may be read in it."""
+
+import os
+import stat
+from dataclasses import dataclass
+from importlib.resources import files
+from pathlib import Path
+
+from assayfolio.errors import Fault, InputError, MachineError, Place
+from assayfolio.evidence.trail import open_trail
+from assayfolio.workflow.surroundings import account_name, utc_now
+
+SETTINGS = "configs/lab.yaml"
+MAX_FILE_BYTES = 512 * 1024 * 1024
+STARTER_FILES = ("configs/lab.yaml", "configs/first-study.yaml", "configs/data/first-study.csv")
+
+
+@dataclass(frozen=True, slots=True)
+class Workspace:
+    """The folder that holds a laboratory's `configs/` and `runs/`."""
+
+    root: Path
+
+    @property
+    def runs(self) -> Path:
+        """Where folios and the audit trail are kept."""
+        return self.root / "runs"
+
+    @property
+    def settings(self) -> Path:
+        """The laboratory's settings."""
+        return self.root / SETTINGS
+
+    def name_of(self, path: Path) -> str:
+        """`path` as the records name it: relative to the workspace, with forward slashes."""
+        return shown_path(path.relative_to(self.root))
+
+
+def shown_path(path: Path) -> str:
+    """`path` as text that any record can hold; bytes that are not UTF-8 appear escaped."""
+    return os.fsencode(path.as_posix()).decode("utf-8", "backslashreplace")
+
+
+def find_workspace(named: Path | None, start: Path) -> Workspace:
+    """The workspace that was `named`, or the nearest folder upward of `start` with `configs/lab.yaml`.
+
+    Raises InputError where there is none.
+    """
+    if named is not None:
+        root = named.resolve()
+        if not (root / SETTINGS).is_file():
+            raise InputError(
+                f"{named} is not a workspace: it has no {SETTINGS}. "
+                f"`assayfolio workspace {named}` founds a new one."
+            )
+        return Workspace(root)
+    here = start.resolve()
+    for folder in (here, *here.parents):
+        if (folder / SETTINGS).is_file():
+            return Workspace(folder)
+    raise InputError(
+        f"No workspace: neither {start} nor a folder above it has {SETTINGS}. "
+        "Name one with --workspace, or found one with `assayfolio workspace DIR`."
+    )
+
+
+def read_input(workspace: Workspace, path: Path, what: str) -> bytes:
+    """The bytes of an input file, read once.
+
+    Raises InputError where the file is missing, not a regular file, unreadable, too large, or outside the
+    workspace (also by way of a symbolic link).
+    """
+    shown = shown_path(path)
+    try:
+        real = path.resolve(strict=True)
+        inside = real.is_relative_to(workspace.root)
+        kind = real.stat()
+    except (OSError, RuntimeError) as error:
+        reason = "there is no such file" if isinstance(error, FileNotFoundError) else str(error)
+        raise InputError(f"The {what} cannot be read.", (Fault(Place(shown), reason),)) from error
+    fault = None
+    if not inside:
+        advice = f"the {what} must lie inside the workspace {workspace.root}"
+        fault = Fault(Place(shown), f"leads outside the workspace, to {shown_path(real)}", advice)
+    elif not stat.S_ISREG(kind.st_mode):
+        fault = Fault(Place(shown), "is not a regular file")
+    elif kind.st_size > MAX_FILE_BYTES:
+        fault = Fault(Place(shown), f"is larger than {MAX_FILE_BYTES // 2**20} MB")
+    if fault is not None:
+        raise InputError(f"The {what} cannot be read.", (fault,))
+    try:
+        return real.read_bytes()
+    except OSError as error:
+        fault = Fault(Place(shown), str(error.strerror))
+        raise InputError(f"The {what} cannot be read.", (fault,)) from error
+
+
+def found_workspace(folder: Path) -> Workspace:
+    """Found a new workspace in `folder`: settings, a first study to edit, `runs/` with its audit trail.
+
+    Raises InputError where `folder` already holds a workspace or any file that would be overwritten.
+    """
+    root = folder.resolve()
+    if (root / SETTINGS).exists():
+        raise InputError(f"{folder} is a workspace already: it has {SETTINGS}.")
+    taken = [name for name in (*STARTER_FILES, "runs") if (root / name).exists()]
+    if taken:
+        raise InputError(f"{folder} already has {', '.join(taken)}; nothing was changed.")
+    starter = files("assayfolio.workflow") / "starter"
+    try:
+        for name in reversed(STARTER_FILES):  # the settings last: they make the folder a workspace
+            target = root / name
+            target.parent.mkdir(parents=True, exist_ok=True)
+            target.write_bytes((starter / Path(name).name).read_bytes())
+        (root / "runs").mkdir()
+    except OSError as error:
+        raise MachineError(f"The workspace could not be founded: {error}.") from error
+    workspace = Workspace(root)
+    with open_trail(workspace.runs, account_name(), utc_now, 10.0) as trail:
+        trail.append("founded", "workspace", "a new workspace was founded")
+    return workspace
