@@ -63,9 +63,9 @@ def parse_decimal(text: str, decimal_mark: str = ".") -> Decimal10:
         raise NotADecimalError("blank")
     if len(stripped) > 4 * (MAX_DIGITS + MAX_EXPONENT):
         raise NotADecimalError(f"{len(stripped)} characters are too many for a number")
-    dotted = _with_point(stripped, decimal_mark)
-    match = _NUMBER.match(dotted)
-    if match is None or not (match[2] or match[3]):
+    wrong_mark = "." if decimal_mark == "," else ","
+    match = _NUMBER.match(stripped.replace(decimal_mark, ".", 1))
+    if match is None or wrong_mark in stripped or not (match[2] or match[3]):
         raise NotADecimalError(_why_not(stripped, decimal_mark))
     sign, whole, decimals, power = match[1], match[2] or "", match[3] or "", match[4] or "0"
     if len(power.lstrip("+-0")) > 4:
@@ -80,20 +80,14 @@ def parse_decimal(text: str, decimal_mark: str = ".") -> Decimal10:
     return Decimal10(-mantissa if sign == "-" else mantissa, exponent)
 
 
-def _with_point(text: str, decimal_mark: str) -> str:
-    if decimal_mark == ".":
-        return text
-    if "." in text:
-        raise NotADecimalError("a decimal point where a decimal comma is declared")
-    return text.replace(",", ".", 1)
-
-
 def _why_not(text: str, decimal_mark: str) -> str:
     lowered = text.lower().lstrip("+-")
     if lowered in {"nan", "na", "n/a", "#n/a", "null", "none", "inf", "infinity", "nd"}:
         return "not a number"
-    if text[0] in "<>":
+    if text[0] in "<>\u2264\u2265":
         return "a value reported against a limit"
+    if decimal_mark == "," and "." in text:
+        return "a decimal point where a decimal comma is declared"
     for character, name in _LOOKALIKES.items():
         if character in text:
             return f"not a number: it holds {name}"
@@ -128,6 +122,8 @@ class ExactSums:
 
     def merged(self, other: "ExactSums") -> "ExactSums":
         """The exact sums of both parts together; any order of merging gives the same value."""
+        if not self.n or not other.n:  # a part without values has no exponent of its own
+            return self if self.n else other
         exponent = min(self.exponent, other.exponent)
         a, b = 10 ** (self.exponent - exponent), 10 ** (other.exponent - exponent)
         return ExactSums(

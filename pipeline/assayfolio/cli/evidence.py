@@ -18,8 +18,12 @@ from assayfolio.errors import ExitCode
 @workspace_option
 @json_option
 def verify(folios: tuple[Path, ...], named_workspace: Path | None, as_json: bool) -> int:
-    """Verify folios and the whole audit trail; without FOLIO, every folio of the workspace."""
-    from assayfolio.workflow.audit import verify_all, verification_document, verification_lines
+    """Verify folios and the audit trail.
+
+    Without FOLIO, every folio of the workspace. Numbered checks, each passed, failed or not checkable with its
+    reason; every changed, missing or extra file is named. Nothing is repaired.
+    """
+    from assayfolio.workflow.audit import verification_document, verification_lines, verify_all
 
     verification = verify_all(named_workspace, folios)
     if as_json:
@@ -34,7 +38,10 @@ def verify(folios: tuple[Path, ...], named_workspace: Path | None, as_json: bool
 @workspace_option
 @json_option
 def trail(named_workspace: Path | None, as_json: bool) -> int:
-    """Show the audit trail, oldest entry first."""
+    """Show the audit trail.
+
+    Oldest entry first; faults of the trail itself go to standard error, with exit code 1.
+    """
     from assayfolio.workflow.audit import trail_document, trail_lines, trail_of
 
     reading = trail_of(named_workspace)

@@ -54,7 +54,7 @@ def run_command(command: click.Command, arguments: Sequence[str] | None) -> int:
     except OSError as error:
         complain(f"The machine refused a file operation: {error}.")
         return int(ExitCode.MACHINE)
-    except Exception:
+    except Exception:  # noqa: BLE001 - the last resort: a fault of ours, told with its traceback
         complain("An unexpected fault in Assayfolio itself; please report it with the lines below.")
         complain(traceback.format_exc())
         return int(ExitCode.MACHINE)

@@ -29,8 +29,8 @@ Exit codes:
 def cli() -> None:
     """Planned one-way comparisons for a testing laboratory.
 
-    A study definition and a raw data file go in; a report ready for signature comes out, in a sealed, numbered
-    folder that can be verified later.
+    A study definition and a raw data file go in; a report ready for signature comes out, in a sealed,
+    numbered folder that can be verified later.
     """
 
 

@@ -13,8 +13,11 @@ from assayfolio.workflow.steps import Step
 @click.command(epilog="\b\nExample:\n  assayfolio workspace ~/comparisons")
 @click.argument("folder", metavar="DIR", type=click.Path(path_type=Path))
 def workspace(folder: Path) -> None:
-    """Found a new workspace in DIR: settings, a first study to edit, an audit trail."""
-    from assayfolio.workflow.workspace import STARTER_FILES, SETTINGS, found_workspace
+    """Found a new workspace in DIR.
+
+    It gets the laboratory's settings, a first study to edit with invented data, and an audit trail.
+    """
+    from assayfolio.workflow.workspace import SETTINGS, STARTER_FILES, found_workspace
 
     founded = found_workspace(folder)
     say(f"Workspace founded in {founded.root}")
@@ -30,7 +33,10 @@ def workspace(folder: Path) -> None:
 @workspace_option
 @json_option
 def check(study: Path, named_workspace: Path | None, as_json: bool) -> None:
-    """Check a study definition, and its data file where there is one yet. Nothing is written."""
+    """Check a study definition and its data.
+
+    The data file need not exist yet. Every fault is listed with its place; nothing is written.
+    """
     from assayfolio.workflow.check import check_study
     from assayfolio.workflow.workspace import find_workspace
 
@@ -47,7 +53,11 @@ def check(study: Path, named_workspace: Path | None, as_json: bool) -> None:
 @workspace_option
 @json_option
 def run(study: Path, named_workspace: Path | None, as_json: bool) -> None:
-    """Run a study: compute, render the report, and seal both in a numbered folder."""
+    """Run a study and seal its report.
+
+    Reads STUDY and its data once, computes, renders the report, and seals all of it in a numbered folder,
+    runs/<study>/run-NNNN. Nothing is overwritten; every started run leaves a record in the audit trail.
+    """
     from assayfolio.workflow.run import run_study
     from assayfolio.workflow.summary import outcome_document, outcome_lines
     from assayfolio.workflow.workspace import find_workspace

@@ -36,7 +36,7 @@ class TrailBrokenError(MachineError):
 
 
 def is_trail_time(text: str) -> bool:
-    """Whether `text` is a time as entries carry it: RFC 3339, UTC, microseconds: 2026-01-31T09:15:00.000000Z."""
+    """Whether `text` is a time as entries carry it: RFC 3339 in UTC, as 2026-01-31T09:15:00.000000Z."""
     return _TIME.fullmatch(text) is not None
 
 

@@ -40,7 +40,7 @@ def _try_lock(descriptor: int, how: int) -> bool:
 def _still_named(descriptor: int, path: Path) -> bool:
     """Whether the locked file is the one that the path names: its holder may have removed it meanwhile."""
     try:
-        named = os.stat(path, follow_symlinks=False)
+        named = path.lstat()
     except FileNotFoundError:
         return False
     held = os.fstat(descriptor)

@@ -1,4 +1,4 @@
-"""Reading canonical JSON (RFC 8785) and nothing else: one value has one spelling, so any altered byte shows."""
+"""Reading canonical JSON (RFC 8785): one value has one spelling, so any altered byte shows."""
 
 import json
 from collections.abc import Sequence

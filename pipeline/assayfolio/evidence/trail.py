@@ -12,7 +12,7 @@ Anything else is not the mark of a killed writer, and `open_trail` refuses with 
 """
 
 import os
-from collections.abc import Callable, Iterator, Mapping
+from collections.abc import Callable, Iterator, Mapping, Sequence
 from contextlib import contextmanager
 from pathlib import Path
 from types import MappingProxyType
@@ -94,7 +94,7 @@ class TrailWriter:
         time = self._now()
         if not is_trail_time(time):
             raise ValueError(f"not a UTC time with microseconds: {time!r}")
-        _require_utf8(self._actor, action, subject, reason or "")
+        _require_utf8(self._actor, action, subject, reason or "", *_texts(details))
         entry = TrailEntry(
             seq=self._head.seq + 1,
             time=time,
@@ -173,6 +173,19 @@ def _require_utf8(*texts: str) -> None:
             ) from None
 
 
+def _texts(value: Json) -> Iterator[str]:
+    """Every text inside a JSON value, keys included."""
+    if isinstance(value, str):
+        yield value
+    elif isinstance(value, Mapping):
+        yield from value
+        for part in value.values():
+            yield from _texts(part)
+    elif isinstance(value, Sequence):
+        for part in value:
+            yield from _texts(part)
+
+
 def _refuse_broken(runs: Path, reading: TrailReading) -> None:
     if reading.faults:
         first = reading.faults[0]
@@ -183,8 +196,8 @@ def _refuse_broken(runs: Path, reading: TrailReading) -> None:
             folio = next(iter(sorted(runs.glob("*/*/bagit.txt"))), None)
         if folio is not None:
             raise TrailBrokenError(
-                f"{runs / TRAIL_FILE}: the audit trail is missing or empty, although {folio.parent} is there. "
-                f"{_ADVICE}"
+                f"{runs / TRAIL_FILE}: the audit trail is missing or empty, although "
+                f"{folio.parent} is there. {_ADVICE}"
             )
 
 

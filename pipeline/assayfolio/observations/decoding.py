@@ -1,5 +1,6 @@
 """From the bytes of a data file to the lines of its text."""
 
+from assayfolio.errors import DataError
 from assayfolio.observations.faults import FaultList, raise_faults, refusal
 
 MAX_BYTES = 64_000_000
@@ -76,7 +77,7 @@ def _refuse_nul_bytes(body: bytes, file: str) -> None:
     raise_faults(file, faults)
 
 
-def _wrong_encoding(body: bytes, start: int, skipped: int, file: str) -> Exception:
+def _wrong_encoding(body: bytes, start: int, skipped: int, file: str) -> DataError:
     line_start = body.rfind(b"\n", 0, start) + 1
     line = body.count(b"\n", 0, start) + 1
     column = len(body[line_start:start].decode("utf-8")) + 1

@@ -1,16 +1,13 @@
-"""Faults of a data file gathered in one pass, and the ways to show what stands in it."""
+"""Faults of a data file, gathered in one pass and told in the order of the file."""
 
-import unicodedata
-from collections.abc import Iterable, Sequence
+from collections.abc import Sequence
 from dataclasses import dataclass, field
 
 from assayfolio.errors import DataError, Fault, Place
+from assayfolio.study.faults import shown
 
 MAX_LISTED = 50
-_SHOWN_CHARACTERS = 40
-_SHOWN_NAMES = 12
-_COMPARED_NAMES = 200
-_COMPARED_CHARACTERS = 100
+_LISTED_NAMES = 12
 
 
 @dataclass(slots=True)
@@ -59,32 +56,8 @@ def _position(fault: Fault) -> tuple[bool, int, int]:
     return (line is None, line or 0, column or 0)
 
 
-def quoted(text: str) -> str:
-    """`text` in quotation marks for a message: cut when long, and what cannot be seen spelt as U+XXXX."""
-    shown = text[:_SHOWN_CHARACTERS]
-    safe = "".join(char if char.isprintable() else f"<U+{ord(char):04X}>" for char in shown)
-    return f'"{safe}..."' if len(text) > _SHOWN_CHARACTERS else f'"{safe}"'
-
-
 def listed(names: Sequence[str]) -> str:
     """`names` for a message: the first dozen, then how many more there are."""
-    shown = ", ".join(quoted(name) for name in names[:_SHOWN_NAMES])
-    hidden = len(names) - _SHOWN_NAMES
-    return f"{shown} and {hidden} more" if hidden > 0 else shown
-
-
-def nearest(name: str, known: Iterable[str]) -> str | None:
-    """The one of `known` that `name` may be meant to be, or None if none is near."""
-    from difflib import get_close_matches  # only a faulty file needs it
-
-    candidates = {
-        _plain(one): one for one in list(known)[:_COMPARED_NAMES] if len(one) <= _COMPARED_CHARACTERS
-    }
-    if len(name) > _COMPARED_CHARACTERS:
-        return None
-    matches = get_close_matches(_plain(name), list(candidates), n=1, cutoff=0.6)
-    return candidates[matches[0]] if matches else None
-
-
-def _plain(name: str) -> str:
-    return " ".join(unicodedata.normalize("NFKC", name).casefold().split())
+    words = ", ".join(shown(name) for name in names[:_LISTED_NAMES])
+    hidden = len(names) - _LISTED_NAMES
+    return f"{words} and {hidden} more" if hidden > 0 else words

@@ -4,11 +4,15 @@ from collections.abc import Sequence
 from dataclasses import dataclass
 from typing import Literal
 
-from assayfolio.observations.faults import FaultList, listed, nearest, quoted, raise_faults, refusal
-from assayfolio.observations.labels import label_fault
+from assayfolio.observations.faults import FaultList, listed, raise_faults, refusal
+from assayfolio.observations.labels import first_unsettable, unprintable
 from assayfolio.observations.rows import Broken, Row, rows
+from assayfolio.study.faults import shown
+from assayfolio.study.suggestions import nearest
 
 Separator = Literal["comma", "semicolon", "tab"]
+
+COMPARED_NAMES = 200
 
 CHARACTERS: dict[Separator, str] = {"comma": ",", "semicolon": ";", "tab": "\t"}
 
@@ -77,11 +81,11 @@ def _refuse_missing_columns(found: dict[Separator, Row], wanted: tuple[str, str]
     for column in wanted:
         if column in header.cells:
             continue
-        near = nearest(column, header.cells)
+        near = nearest(column, header.cells[:COMPARED_NAMES])
         line, at = header.spot(header.cells.index(near)) if near is not None else (1, 1)
         advice = "name the column in the study as it stands in the file"
-        advice = f"the nearest name is {quoted(near)}; {advice}" if near is not None else advice
-        faults.add(line, at, f"no column {quoted(column)} in the header ({readings})", advice)
+        advice = f"the nearest name is {shown(near)}; {advice}" if near is not None else advice
+        faults.add(line, at, f"no column {shown(column)} in the header ({readings})", advice)
     raise_faults(file, faults)
 
 
@@ -94,10 +98,11 @@ def _check_names(header: Row, faults: FaultList) -> None:
             advice = "give it a name, or delete it where the column is not needed"
             faults.add(line, column, f"column {at + 1} has no name", advice)
             continue
-        unfit = label_fault(name)
-        if unfit is not None:
-            faults.add(line, column, f"column name {quoted(name)} holds {unfit[0]}", unfit[1])
+        bad = first_unsettable(name)
+        if bad is not None:
+            found, advice = unprintable(bad)
+            faults.add(line, column, f"column name {shown(name)} holds {found}", advice)
         if plain in seen:
-            found = f"column {at + 1} has the same name as column {seen[plain] + 1}: {quoted(name)}"
+            found = f"column {at + 1} has the same name as column {seen[plain] + 1}: {shown(name)}"
             faults.add(line, column, found, "give each column its own name")
         seen.setdefault(plain, at)

@@ -3,9 +3,14 @@
 from collections.abc import Iterator
 from dataclasses import dataclass
 
-from assayfolio.observations.faults import FaultList, listed, nearest, quoted
-from assayfolio.observations.labels import as_seen, label_fault
+from assayfolio.observations.faults import FaultList, listed
+from assayfolio.observations.labels import as_seen, first_unsettable, unprintable
+from assayfolio.study.faults import shown
 from assayfolio.study.plan import DataPlan
+from assayfolio.study.suggestions import nearest
+from assayfolio.study.vocabulary import LONGEST_LABEL
+
+COMPARED_NAMES = 200
 
 Spot = tuple[int, int]
 
@@ -36,7 +41,7 @@ class LevelCount:
         self._replicates = plan.replicates
         self._by_level = dict(plan.replicates) if isinstance(plan.replicates, tuple) else {}
         self._tallies: dict[str, Tally] = {}
-        self._seen: dict[str, str] = {}
+        self._seen = {as_seen(level): level for level in self._listed}
 
     def count(self, level: str, spot: Spot) -> None:
         """Take one row of `level` whose level stands at line and column `spot`."""
@@ -73,37 +78,33 @@ class LevelCount:
         tally = self._tallies.get(level)
         if tally is None:
             advice = "add its values, or take it out of the study"
-            yield None, None, f"level {quoted(level)} has no row", advice
+            yield None, None, f"level {shown(level)} has no row", advice
         elif tally.sound and tally.planned is not None and tally.n != tally.planned:
-            found = f"level {quoted(level)}: found {tally.n}, planned {tally.planned}"
+            found = f"level {shown(level)}: found {tally.n}, planned {tally.planned}"
             which = "its first row too many is here" if tally.surplus else "its last row is here"
             advice = f"{which}; rows and planned replicates have to agree"
             yield *(tally.surplus or tally.last), found, advice
 
     def _new_tally(self, level: str, spot: Spot) -> Tally:
         planned = self._replicates if isinstance(self._replicates, int) else self._by_level.get(level)
-        if self._declared is not None:
-            sound = level in self._declared and label_fault(level) is None
-            return Tally(spot, spot, planned, sound)
         twin = self._seen.setdefault(as_seen(level), level)
-        sound = twin == level == level.strip() and label_fault(level) is None
-        return Tally(spot, spot, planned, sound, None if twin == level else twin)
+        known = twin == level == level.strip() if self._declared is None else level in self._declared
+        fits = first_unsettable(level) is None and len(level) <= LONGEST_LABEL
+        return Tally(spot, spot, planned, known and fits, None if twin == level else twin)
 
     def _name_fault(self, level: str, twin: str | None) -> tuple[str, str]:
-        unfit = label_fault(level)
-        if unfit is not None:
-            return f"level {quoted(level)} holds {unfit[0]}", unfit[1]
+        bad = first_unsettable(level)
+        if bad is not None:
+            found, advice = unprintable(bad)
+            return f"level {shown(level)} holds {found}", advice
         if level != level.strip():
-            return f"level {quoted(level)} begins or ends with a blank", f"write {quoted(level.strip())}"
+            return f"level {shown(level)} begins or ends with a blank", f"write {shown(level.strip())}"
+        if len(level) > LONGEST_LABEL:
+            found = f"level {shown(level)} has {len(level):,} characters, more than {LONGEST_LABEL}"
+            return found, "give it a shorter name"
         if twin is not None:
-            first = self._tallies[twin].first[0]
-            found = f"level {quoted(level)} looks like that of line {first} but holds other characters"
+            found = f"level {shown(level)} looks like {shown(twin)} but holds other characters"
             return found, "type both the same way"
-        near = nearest(level, self._listed)
-        if near is None:
-            advice = f"the study declares {listed(self._listed)}"
-        elif as_seen(near) == as_seen(level):
-            advice = f"it looks like {quoted(near)} but holds other characters; type it anew"
-        else:
-            advice = f"the nearest declared level is {quoted(near)}"
-        return f"level {quoted(level)} is not declared", advice
+        near = nearest(level, self._listed[:COMPARED_NAMES])
+        advice = f"the nearest is {shown(near)}" if near else f"the study declares {listed(self._listed)}"
+        return f"level {shown(level)} is not declared", advice

@@ -6,18 +6,17 @@ right: what does not fit is refused, and every fault of the file is told in one 
 """
 
 from collections.abc import Iterable
-from collections.abc import Set as AbstractSet
 from dataclasses import dataclass, field
 
 from assayfolio.canonical import sha256_hex
 from assayfolio.exact import Decimal10, NotADecimalError, parse_decimal
 from assayfolio.observations.decoding import decoded_lines
-from assayfolio.observations.faults import FaultList, quoted, raise_faults, refusal
+from assayfolio.observations.faults import FaultList, raise_faults, refusal
 from assayfolio.observations.header import CHARACTERS, Header, find_header
-from assayfolio.observations.labels import unprintable, unsettable
 from assayfolio.observations.levels import LevelCount
 from assayfolio.observations.rows import Broken, Row, rows
 from assayfolio.observations.values import Observation, Observations
+from assayfolio.study.faults import shown
 from assayfolio.study.plan import DataPlan
 
 
@@ -27,19 +26,20 @@ def read_observations(content: bytes, plan: DataPlan, file: str) -> Observations
     Reads the first response of `plan`. Rows and cells follow RFC 4180, with comma, semicolon or tab as the
     separator, UTF-8 with or without a byte order mark, LF or CRLF; blank lines at the end do not count. A
     line end inside a quoted cell is carried along as LF. Blanks around a number are not part of it; a level
-    is taken exactly as typed. Blank cells and values against a limit are refused.
+    is taken exactly as typed. Cells of other columns may hold any character, for the report does not print
+    them. Blank cells and values against a limit are refused.
 
     Raises DataError with all faults in the order of the file: the first 50, and how many more there are.
     Numbers of rows are compared with the plan only if every row could be read.
     """
     response = plan.response[0]
     if response == plan.factor:
-        found = f"{quoted(response)} is named both as the response and as the factor"
+        found = f"{shown(response)} is named both as the response and as the factor"
         raise refusal(file, found, "name two different columns in the study")
     lines, has_mark = decoded_lines(content, file)
     faults = FaultList(file)
     header = find_header(lines, response, plan.factor, file, faults)
-    intake = _Intake(header, plan, lines, unsettable(lines), faults, LevelCount(plan))
+    intake = _Intake(header, plan, lines, faults, LevelCount(plan))
     intake.take(rows(lines, CHARACTERS[header.separator], header.next_line))
     if not intake.row_count and not faults.count:
         raise refusal(file, "the file has column names but no rows", "add the values")
@@ -69,7 +69,6 @@ class _Intake:
     header: Header
     plan: DataPlan
     lines: list[str]
-    bad_characters: AbstractSet[str]
     faults: FaultList
     levels: LevelCount
     observations: list[Observation] = field(default_factory=list)
@@ -87,14 +86,13 @@ class _Intake:
             if len(row.cells) != width:
                 self._refuse_ragged(row)
                 continue
-            if not any(row.cells) or all(not cell or cell.isspace() for cell in row.cells):
+            level_cell = row.cells[factor]
+            if not level_cell.strip() and not any(cell.strip() for cell in row.cells):
                 self.faults.add(row.line, 1, "a row without any entry", "delete it")
                 continue
             self.row_count += 1
-            level = self._level(row, row.cells[factor])
+            level = self._level(row, level_cell)
             value = self._value(row)
-            if self.bad_characters:
-                self._check_extras(row)
             if level is not None and value is not None:
                 text = row.cells[self.header.response].strip(" \t")
                 carried = tuple(row.cells[at] for at in extras)
@@ -102,8 +100,8 @@ class _Intake:
 
     def _level(self, row: Row, level: str) -> str | None:
         spot = row.spot(self.header.factor)
-        if not level or level.isspace():
-            found = f"column {quoted(self.plan.factor)} is blank"
+        if not level.strip():
+            found = f"column {shown(self.plan.factor)} is blank"
             self.faults.add(*spot, found, "give the level that the value belongs to")
             return None
         self.levels.count(level, spot)
@@ -119,7 +117,7 @@ class _Intake:
             return None
         if mark == "," and self.header.separator == "comma" and not self._stands_in_marks(row):
             # Here 1,5 without marks could be one value or two cells that happen to fill the row.
-            found = f"column {quoted(self.plan.response[0])} holds {quoted(cell)} without quotation marks"
+            found = f"column {shown(self.plan.response[0])} holds {shown(cell)} without quotation marks"
             advice = "with comma as separator and as decimal mark each value has to stand in quotation marks"
             self.faults.add(*row.spot(self.header.response), found, advice)
             return None
@@ -130,11 +128,9 @@ class _Intake:
         return self.lines[line - 1].startswith('"', column - 1)
 
     def _refuse_number(self, row: Row, cell: str, reason: str) -> None:
-        name = quoted(self.plan.response[0])
+        name = shown(self.plan.response[0])
         found = (
-            f"column {name} is blank"
-            if reason == "blank"
-            else f"column {name} holds {quoted(cell)}: {reason}"
+            f"column {name} is blank" if reason == "blank" else f"column {name} holds {shown(cell)}: {reason}"
         )
         self.faults.add(*row.spot(self.header.response), found, _number_advice(reason, cell))
 
@@ -151,14 +147,6 @@ class _Intake:
         if self.header.separator == "comma":
             advice += "; a decimal comma needs them too"
         self.faults.add(line, column, found, advice)
-
-    def _check_extras(self, row: Row) -> None:
-        for at in self.header.extras:
-            bad = next((character for character in row.cells[at] if character in self.bad_characters), None)
-            if bad is not None:
-                found, advice = unprintable(bad)
-                place = row.spot(at)
-                self.faults.add(*place, f"column {quoted(self.header.names[at])} holds {found}", advice)
 
 
 def _number_advice(reason: str, cell: str) -> str:

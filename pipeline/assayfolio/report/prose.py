@@ -6,20 +6,18 @@ Patterns are written by this package alone. In a pattern `*x*` is a symbol (ital
 
 import re
 from dataclasses import dataclass
-from typing import Literal, TypeAlias
+from typing import TypeAlias
 
-Style = Literal["", "symbol", "strong", "quiet", "sub", "sup"]
-
-_STYLES: dict[str, Style] = {"*": "symbol", "#": "strong", "~": "quiet", "_": "sub", "^": "sup"}
+_STYLES = {"*": "symbol", "#": "strong", "~": "quiet", "_": "sub", "^": "sup"}
 _TOKEN = re.compile(r"([*#~_^])(.+?)\1|\{([a-z0-9_]+)\}")
 
 
 @dataclass(frozen=True, slots=True)
 class Span:
-    """A stretch of text in one style."""
+    """A stretch of text; `style` names how it is set, such as "symbol" or "sub symbol"."""
 
     text: str
-    style: Style = ""
+    style: str = ""
 
 
 Prose: TypeAlias = tuple[Span, ...]
@@ -39,7 +37,8 @@ def prose(pattern: str, **values: Words) -> Prose:
         if match[3]:
             spans.extend(as_prose(values[match[3]]))
         else:
-            spans.extend(Span(span.text, _STYLES[match[1]]) for span in prose(match[2], **values))
+            outer = _STYLES[match[1]]
+            spans.extend(Span(span.text, f"{outer} {span.style}".strip()) for span in prose(match[2], **values))
         position = match.end()
     if position < len(pattern):
         spans.append(Span(pattern[position:]))

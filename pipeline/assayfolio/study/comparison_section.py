@@ -4,24 +4,24 @@ from dataclasses import dataclass
 from fractions import Fraction
 from typing import Literal
 
-from assayfolio.study.data_section import level_of
+from assayfolio.study.data_section import by_level, level_of
 from assayfolio.study.faults import listed
 from assayfolio.study.fields import (
     Fields,
     Reader,
+    UnreadableError,
     Value,
-    any_number,
     choice,
     label,
     line_of_text,
-    positive,
-    probability,
 )
-from assayfolio.study.nodes import MappingNode, RefusedNode
+from assayfolio.study.nodes import MappingNode
+from assayfolio.study.numbers import any_number, positive, probability
 from assayfolio.study.plan import (
     Adjustment,
     AgainstReference,
     AllPairs,
+    Alternative,
     Comparison,
     Contrast,
     EquivalencePlan,
@@ -34,6 +34,9 @@ from assayfolio.study.vocabulary import (
     EQUIVALENCE_KEYS,
     LONGEST_SENTENCE,
     PAIRS,
+    EquivalenceAdjustment,
+    Pairs,
+    Variances,
 )
 
 _FAMILIES: tuple[Literal["against", "pairs", "weights"], ...] = ("against", "pairs", "weights")
@@ -44,6 +47,10 @@ _ONLY_FOR: dict[Adjustment, Literal["against", "pairs"]] = {
     "dunnett-step-down": "against",
 }
 _FOR_ONE_ROW: tuple[Adjustment, ...] = ("none", "scheffe")
+_alternative: Reader[Alternative] = choice(ALTERNATIVES)
+_method: Reader[Adjustment] = choice(ADJUSTMENTS)
+_pairs: Reader[Pairs] = choice(PAIRS)
+_equivalence_method: Reader[EquivalenceAdjustment] = choice(EQUIVALENCE_ADJUSTMENTS)
 
 
 @dataclass(frozen=True, slots=True)
@@ -54,7 +61,7 @@ class Surroundings:
     """
 
     levels: tuple[str, ...] | None
-    variances: Literal["pooled", "separate"] | None
+    variances: Variances | None
 
     @property
     def declared(self) -> tuple[str, ...] | None:
@@ -65,26 +72,25 @@ class Surroundings:
 def comparison_in(surroundings: Surroundings) -> Reader[Comparison]:
     """A reader for one entry of `comparisons`."""
 
-    def read(value: Value) -> Comparison | None:
+    def read(value: Value) -> Comparison:
         fields = Fields.of(value, COMPARISON_KEYS)
-        if fields is None:
-            return None
-        name = fields.required("name", label) or ""
-        alternative = fields.optional("alternative", choice(ALTERNATIVES), "two-sided")
+        name = fields.required("name", label)
+        alternative = fields.optional("alternative", _alternative) or "two-sided"
         adjust = _adjustment(fields, surroundings)
-        pairs = fields.optional("pairs", choice(PAIRS), None)
-        against = fields.optional("against", lambda inner: level_of(inner, surroundings.declared), None)
-        weights = fields.optional("weights", lambda inner: _weights(inner, surroundings), None)
-        if not _has_one_of(fields, _FAMILIES):
-            return None
+        pairs = fields.optional("pairs", _pairs)
+        against = fields.optional("against", lambda inner: level_of(inner, surroundings.declared))
+        weights = fields.optional("weights", lambda inner: _weights(inner, surroundings))
         if "pairs" in fields and "alternative" in fields:
             found = "`comparisons.alternative` stands beside `pairs`, where neither level comes first"
             fields.faults.add(fields.place_of("alternative"), found, "use it with `against` or `weights`")
-        if pairs is not None:
-            return AllPairs(name, adjust, value.node.place)
-        if against is not None:
-            return AgainstReference(name, against, adjust, alternative, value.node.place)
-        return None if weights is None else Contrast(name, weights, adjust, alternative, value.node.place)
+        if _has_one_of(fields, _FAMILIES) and name is not None:
+            if pairs is not None:
+                return AllPairs(name, adjust, value.node.place)
+            if against is not None:
+                return AgainstReference(name, against, adjust, alternative, value.node.place)
+            if weights is not None:
+                return Contrast(name, weights, adjust, alternative, value.node.place)
+        raise UnreadableError
 
     return read
 
@@ -108,17 +114,17 @@ def _adjustment(fields: Fields, surroundings: Surroundings) -> Adjustment:
     if value is None:
         _refuse_absent_adjustment(fields, surroundings)
         return "none"
-    adjust = fields.optional("adjust", choice(ADJUSTMENTS), None)
+    adjust = fields.optional("adjust", _method)
     if adjust is None or family is None:
         return "none"
     wanted = _ONLY_FOR.get(adjust)
     if wanted is not None and wanted != family:
-        value.refuse(f"is `{adjust}`, which fits only `{wanted}`", f"another method beside `{family}`")
+        value.report(f"is `{adjust}`, which fits only `{wanted}`", f"another method beside `{family}`")
     elif family == "weights" and adjust not in _FOR_ONE_ROW:
-        value.refuse(f"is `{adjust}`, but a contrast is one comparison", listed(_FOR_ONE_ROW))
+        value.report(f"is `{adjust}`, but a contrast is one comparison", listed(_FOR_ONE_ROW))
     elif adjust == "games-howell" and surroundings.variances == "pooled":
         expected = "`design.variances: separate` with it, or another method"
-        value.refuse("is `games-howell`, which needs separate variances", expected)
+        value.report("is `games-howell`, which needs separate variances", expected)
     return adjust
 
 
@@ -126,7 +132,7 @@ def _refuse_absent_adjustment(fields: Fields, surroundings: Surroundings) -> Non
     """Say so where a family of more than one row leaves out how it is adjusted."""
     if "against" not in fields and "pairs" not in fields:
         return
-    if surroundings.levels is None or len(surroundings.levels) == 2:
+    if surroundings.levels is None or 0 < len(surroundings.levels) <= 2:
         return
     why = "the family has more than one row" if surroundings.levels else "`data.levels` are not declared"
     found = f"the key `comparisons.adjust` is missing; {why}"
@@ -134,60 +140,45 @@ def _refuse_absent_adjustment(fields: Fields, surroundings: Surroundings) -> Non
     fields.faults.add(fields.place, found, advice)
 
 
-def _weights(value: Value, surroundings: Surroundings) -> tuple[tuple[str, Fraction], ...] | None:
+def _weights(value: Value, surroundings: Surroundings) -> tuple[tuple[str, Fraction], ...]:
     node = value.node
     if not isinstance(node, MappingNode):
-        if not isinstance(node, RefusedNode):
-            value.refuse("is no mapping", "weights by level, such as {lot-a: 1, lot-b: -1}")
-        return None
-    weights: list[tuple[str, Fraction]] = []
-    for entry in node.entries:
-        level = level_of(Value(entry.key, value.name, value.faults), surroundings.declared)
-        weight = any_number(Value(entry.value, f"{value.name}.{entry.key.text[:40]}", value.faults))
-        if level is not None and weight is not None:
-            weights.append((level, weight))
-    if len(weights) < len(node.entries):
-        return None
+        raise value.wrong_kind("weights by level, such as {lot-a: 1, lot-b: -1}")
+    weights = by_level(value, node, surroundings.declared, any_number)
     total = sum((weight for _, weight in weights), Fraction(0))
     if total:
-        value.refuse(f"add up to {total}", "weights that add up to exactly 0")
-    elif not any(weight for _, weight in weights):
-        value.refuse("has no weight but 0", "weights above and below 0 that add up to 0")
-    else:
-        return tuple(weights)
-    return None
+        raise value.unreadable(f"add up to {total}", "weights that add up to exactly 0")
+    if not any(weight for _, weight in weights):
+        raise value.unreadable("hold no weight but 0", "weights above and below 0 that add up to 0")
+    return weights
 
 
 def equivalence_in(surroundings: Surroundings) -> Reader[EquivalencePlan]:
     """A reader for one entry of `equivalence`; `margin: m` is read as `lower: -m, upper: m`."""
 
-    def read(value: Value) -> EquivalencePlan | None:
+    def read(value: Value) -> EquivalencePlan:
         fields = Fields.of(value, EQUIVALENCE_KEYS)
-        if fields is None:
-            return None
         name = fields.required("name", label)
-        against = fields.optional("against", lambda inner: level_of(inner, surroundings.declared), None)
-        pairs = fields.optional("pairs", choice(PAIRS), None)
+        against = fields.optional("against", lambda inner: level_of(inner, surroundings.declared))
+        pairs = fields.optional("pairs", _pairs)
         lower, upper, percent = _margins(fields)
-        source = fields.optional("margin-source", line_of_text(LONGEST_SENTENCE), None)
-        adjust = fields.optional("adjust", choice(EQUIVALENCE_ADJUSTMENTS), "none")
-        alpha = fields.optional("alpha", probability, None)
+        source = fields.optional("margin-source", line_of_text(LONGEST_SENTENCE))
+        adjust = fields.optional("adjust", _equivalence_method) or "none"
+        alpha = fields.optional("alpha", probability)
         if not _has_one_of(fields, ("against", "pairs")) or name is None:
-            return None
+            raise UnreadableError
         place = value.node.place
-        return EquivalencePlan(
-            name, against, pairs, lower, upper, percent, source, adjust, alpha, place
-        )
+        return EquivalencePlan(name, against, pairs, lower, upper, percent, source, adjust, alpha, place)
 
     return read
 
 
 def _margins(fields: Fields) -> tuple[Fraction | None, Fraction | None, Fraction | None]:
     """Lower, upper and percentage margin of an entry, of which one kind must be there."""
-    margin = fields.optional("margin", positive, None)
-    lower = fields.optional("lower", any_number, None)
-    upper = fields.optional("upper", any_number, None)
-    percent = fields.optional("margin-percent", positive, None)
+    margin = fields.optional("margin", positive)
+    lower = fields.optional("lower", any_number)
+    upper = fields.optional("upper", any_number)
+    percent = fields.optional("margin-percent", positive)
     kinds = ("margin" in fields, "lower" in fields or "upper" in fields, "margin-percent" in fields)
     if sum(kinds) != 1:
         found = "an entry of `equivalence` has " + ("more than one margin" if any(kinds) else "no margin")

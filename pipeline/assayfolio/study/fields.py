@@ -4,21 +4,22 @@ A reader takes a `Value` and gives what it means, or reports why it cannot and g
 """
 
 import re
-from collections.abc import Callable, Iterator
+from collections.abc import Callable, Iterable
 from dataclasses import dataclass
-from fractions import Fraction
 from typing import TypeAlias, TypeVar
 
 from assayfolio.characters import describe, is_settable
 from assayfolio.errors import Place
-from assayfolio.exact import MAX_DIGITS, NotADecimalError, parse_decimal
 from assayfolio.study.faults import Faults, listed, shown
 from assayfolio.study.nodes import MappingNode, Node, RefusedNode, ScalarNode, SequenceNode
 from assayfolio.study.suggestions import nearest
 from assayfolio.study.vocabulary import LONGEST_LABEL
 
 T = TypeVar("T")
-D = TypeVar("D")
+
+
+class UnreadableError(Exception):
+    """A value cannot be read; why has been reported already. Never leaves this package."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -29,18 +30,28 @@ class Value:
     name: str
     faults: Faults
 
-    def refuse(self, found: str, expected: str, place: Place | None = None) -> None:
+    def report(self, found: str, expected: str, place: Place | None = None) -> None:
         """Report that `name` `found`, where `expected` was expected."""
         self.faults.add(place or self.node.place, f"`{self.name}` {found}", f"expected {expected}")
 
-    def items(self) -> "Iterator[Value]":
-        """The items of a sequence, each under the name of the whole; nothing where it is no sequence."""
-        if isinstance(self.node, SequenceNode):
-            for item in self.node.items:
-                yield Value(item, self.name, self.faults)
+    def unreadable(self, found: str, expected: str) -> UnreadableError:
+        """Report the same, and give the error to raise."""
+        self.report(found, expected)
+        return UnreadableError()
+
+    def wrong_kind(self, expected: str) -> UnreadableError:
+        """Report what kind of node this is, unless it was refused before, and give the error to raise."""
+        if isinstance(self.node, RefusedNode):
+            return UnreadableError()
+        return self.unreadable(_kind(self.node), expected)
+
+    def items(self) -> "tuple[Value, ...]":
+        """The items of a sequence, each under the name of the whole; none where it is no sequence."""
+        nodes = self.node.items if isinstance(self.node, SequenceNode) else ()
+        return tuple(Value(node, self.name, self.faults) for node in nodes)
 
 
-Reader: TypeAlias = Callable[[Value], T | None]
+Reader: TypeAlias = Callable[[Value], T]
 
 
 class Fields:
@@ -58,13 +69,11 @@ class Fields:
                 self._refuse_key(entry.key, known)
 
     @staticmethod
-    def of(value: Value, known: tuple[str, ...]) -> "Fields | None":
-        """The fields of `value`, or None (and a report) where it is no mapping."""
-        if isinstance(value.node, MappingNode):
-            return Fields(value.node, value.name, known, value.faults)
-        if not isinstance(value.node, RefusedNode):
-            value.refuse(_kind(value.node), f"a mapping with the keys {listed(known, 'and')}")
-        return None
+    def of(value: Value, known: tuple[str, ...]) -> "Fields":
+        """The fields of `value`. Raises UnreadableError, after a report, where it is no mapping."""
+        if not isinstance(value.node, MappingNode):
+            raise value.wrong_kind(f"a mapping with the keys {listed(known, 'and')}")
+        return Fields(value.node, value.name, known, value.faults)
 
     def _refuse_key(self, key: ScalarNode, known: tuple[str, ...]) -> None:
         near = nearest(key.text, [word for word in known if word not in self._values])
@@ -105,17 +114,22 @@ class Fields:
             return None
         return self._read(key, value, reader)
 
-    def optional(self, key: str, reader: Reader[T], default: D) -> T | D:
-        """What stands under `key`; `default` where it is absent, and also where it cannot be read."""
+    def optional(self, key: str, reader: Reader[T]) -> T | None:
+        """What stands under `key`; None where it is absent or cannot be read."""
         value = self.value(key)
-        read = None if value is None else self._read(key, value, reader)
-        return default if read is None else read
+        return None if value is None else self._read(key, value, reader)
 
     def _read(self, key: str, value: Value, reader: Reader[T]) -> T | None:
-        read = reader(value)
-        if read is None:
+        try:
+            return reader(value)
+        except UnreadableError:
             self._unreadable.add(key)
-        return read
+            return None
+
+
+def mapping_of(known: tuple[str, ...]) -> Reader[Fields]:
+    """The fields of a mapping that has these keys."""
+    return lambda value: Fields.of(value, known)
 
 
 def _kind(node: Node) -> str:
@@ -124,14 +138,11 @@ def _kind(node: Node) -> str:
     return "is a list" if isinstance(node, SequenceNode) else "is a mapping"
 
 
-def scalar(value: Value, expected: str) -> ScalarNode | None:
-    """The scalar node, or None (and a report) for a list, a mapping or nothing."""
-    node = value.node
-    if isinstance(node, ScalarNode) and not node.empty:
-        return node
-    if not isinstance(node, RefusedNode):
-        value.refuse(_kind(node), expected)
-    return None
+def scalar(value: Value, expected: str) -> ScalarNode:
+    """The scalar node. Raises UnreadableError, after a report, for a list, a mapping or nothing."""
+    if isinstance(value.node, ScalarNode) and not value.node.empty:
+        return value.node
+    raise value.wrong_kind(expected)
 
 
 def choice(options: tuple[T, ...]) -> Reader[T]:
@@ -139,15 +150,25 @@ def choice(options: tuple[T, ...]) -> Reader[T]:
     words = tuple(str(option) for option in options)
     expected = listed(words)
 
-    def read(value: Value) -> T | None:
-        node = scalar(value, expected)
-        if node is None:
-            return None
-        if node.text in words:
-            return options[words.index(node.text)]
-        near = nearest(node.text, words)
-        value.refuse(f"is {shown(node.text)}", f"{expected}; did you mean `{near}`?" if near else expected)
-        return None
+    def read(value: Value) -> T:
+        text = scalar(value, expected).text
+        if text in words:
+            return options[words.index(text)]
+        near = nearest(text, words)
+        hint = f"; did you mean `{near}`?" if near and len(words) > 1 else ""
+        raise value.unreadable(f"is {shown(text)}", expected + hint)
+
+    return read
+
+
+def matching(pattern: re.Pattern[str], expected: str) -> Reader[str]:
+    """Text that matches `pattern` from end to end."""
+
+    def read(value: Value) -> str:
+        text = scalar(value, expected).text
+        if not pattern.fullmatch(text):
+            raise value.unreadable(f"is {shown(text)}", expected)
+        return text
 
     return read
 
@@ -156,38 +177,19 @@ def line_of_text(longest: int) -> Reader[str]:
     """One line of at most `longest` characters that the report's font can set, without outer blanks."""
     expected = f"one line of text of at most {longest} characters"
 
-    def read(value: Value) -> str | None:
+    def read(value: Value) -> str:
         node = scalar(value, expected)
-        return node.text if node is not None and _is_good_line(value, node, longest, expected) else None
+        text = node.text
+        if "\n" in text or "\r" in text:
+            raise value.unreadable("has more than one line", expected)
+        if len(text) > longest:
+            raise value.unreadable(f"has {len(text)} characters", expected)
+        if text != text.strip():
+            raise value.unreadable(f"is {shown(text)}, with a blank at an end", "text without outer blanks")
+        _refuse_unsettable(value, node)
+        return text
 
     return read
-
-
-def _is_good_line(value: Value, node: ScalarNode, longest: int, expected: str) -> bool:
-    text = node.text
-    if "\n" in text or "\r" in text:
-        value.refuse("has more than one line", expected)
-    elif len(text) > longest:
-        value.refuse(f"has {len(text)} characters", expected)
-    elif text != text.strip():
-        value.refuse(f"is {shown(text)}, with a blank at an end", "the text without outer blanks")
-    else:
-        return _is_settable(value, node)
-    return False
-
-
-def _is_settable(value: Value, node: ScalarNode) -> bool:
-    strange = [index for index, c in enumerate(node.text) if c != "\n" and not is_settable(c)]
-    if not strange:
-        return True
-    names = list(dict.fromkeys(describe(node.text[index]) for index in strange))
-    more = f" and {len(names) - 3} more" if len(names) > 3 else ""
-    value.faults.add(
-        node.place_of_character(strange[0]),
-        f"`{value.name}` holds {', '.join(names[:3])}{more}, which the report's font cannot set",
-        "write it with other characters",
-    )
-    return False
 
 
 label = line_of_text(LONGEST_LABEL)
@@ -197,144 +199,93 @@ def paragraphs(longest: int) -> Reader[str]:
     """Text of one or more lines, of at most `longest` characters that the report's font can set."""
     expected = f"text of at most {longest} characters"
 
-    def read(value: Value) -> str | None:
+    def read(value: Value) -> str:
         node = scalar(value, expected)
-        if node is None:
-            return None
         if not node.text.strip():
-            value.refuse("is blank", expected)
-        elif len(node.text) > longest:
-            value.refuse(f"has {len(node.text)} characters", expected)
-        elif _is_settable(value, node):
-            return node.text
-        return None
+            raise value.unreadable("is blank", expected)
+        if len(node.text) > longest:
+            raise value.unreadable(f"has {len(node.text)} characters", expected)
+        _refuse_unsettable(value, node)
+        return node.text
 
     return read
 
 
-_FRACTION = re.compile(r"([+-]?[0-9]+)/([0-9]+)", re.ASCII)
+def _refuse_unsettable(value: Value, node: ScalarNode) -> None:
+    strange = [index for index, c in enumerate(node.text) if c != "\n" and not is_settable(c)]
+    if not strange:
+        return
+    names = list(dict.fromkeys(describe(node.text[index]) for index in strange))
+    more = f" and {len(names) - 3} more" if len(names) > 3 else ""
+    found = f"`{value.name}` holds {', '.join(names[:3])}{more}, which the report's font cannot set"
+    value.faults.add(node.place_of_character(strange[0]), found, "write it with other characters")
+    raise UnreadableError
 
 
-class _NotANumberError(ValueError):
-    """The text spells no exact number; the message says why."""
-
-
-def exact_number(text: str) -> Fraction:
-    """The number that `text` spells, exactly: a decimal (`0.05`, `1e-3`) or a fraction (`-1/2`).
-
-    Raises ValueError, saying why, for anything else.
-    """
-    match = _FRACTION.fullmatch(text)
-    try:
-        if match is None:
-            return parse_decimal(text).fraction
-    except NotADecimalError as error:
-        raise _NotANumberError(str(error)) from error
-    if max(len(match[1].lstrip("+-")), len(match[2])) > MAX_DIGITS:
-        raise _NotANumberError(f"more than {MAX_DIGITS} digits")
-    if int(match[2]) == 0:
-        raise _NotANumberError("a division by zero")
-    return Fraction(int(match[1]), int(match[2]))
-
-
-def number(expected: str, fits: Callable[[Fraction], bool]) -> Reader[Fraction]:
-    """An exact number for which `fits` holds; `expected` says so in words."""
-
-    def read(value: Value) -> Fraction | None:
-        node = scalar(value, expected)
-        if node is None:
-            return None
-        try:
-            exact = exact_number(node.text)
-        except ValueError as error:
-            value.refuse(f"is {shown(node.text)}, {error}", expected)
-            return None
-        if not fits(exact):
-            value.refuse(f"is {shown(node.text)}", expected)
-            return None
-        return exact
-
-    return read
-
-
-probability = number("a number above 0 and below 1, such as 0.05", lambda x: 0 < x < 1)
-positive = number("a number above 0", lambda x: x > 0)
-any_number = number("a number, such as -0.25 or 1/3", lambda _: True)
-
-
-def whole_number(least: int, most: int) -> Reader[int]:
-    """A whole number from `least` to `most`, written with digits alone."""
-    expected = f"a whole number from {least} to {most}"
-
-    def read(value: Value) -> int | None:
-        node = scalar(value, expected)
-        if node is None:
-            return None
-        digits = node.text.isascii() and node.text.isdigit() and len(node.text) <= len(str(most))
-        if digits and least <= int(node.text) <= most:
-            return int(node.text)
-        value.refuse(f"is {shown(node.text)}", expected)
-        return None
-
-    return read
-
-
-def truth(value: Value) -> bool | None:
+def truth(value: Value) -> bool:
     """`true` or `false`."""
-    node = scalar(value, "true or false")
-    if node is None:
-        return None
-    if node.text in {"true", "True", "TRUE", "false", "False", "FALSE"}:
-        return node.text.lower() == "true"
-    value.refuse(f"is {shown(node.text)}", "true or false")
-    return None
+    text = scalar(value, "true or false").text
+    if text not in {"true", "True", "TRUE", "false", "False", "FALSE"}:
+        raise value.unreadable(f"is {shown(text)}", "true or false")
+    return text.lower() == "true"
 
 
 def list_of(reader: Reader[T], expected: str) -> Reader[tuple[T, ...]]:
-    """A list of at least one item, or None if any item cannot be read."""
+    """A list of at least one item. All items are read; one that cannot be read spoils the list."""
 
-    def read(value: Value) -> tuple[T, ...] | None:
+    def read(value: Value) -> tuple[T, ...]:
         if not isinstance(value.node, SequenceNode):
-            if not isinstance(value.node, RefusedNode):
-                value.refuse(_kind(value.node), expected)
-            return None
+            raise value.wrong_kind(expected)
         if not value.node.items:
-            value.refuse("is an empty list", f"{expected}, or leave the key out")
-            return None
-        items = [reader(item) for item in value.items()]
-        good = tuple(item for item in items if item is not None)
-        return good if len(good) == len(items) else None
+            raise value.unreadable("is an empty list", f"{expected}, or leave the key out")
+        return each(reader, value.items())
 
     return read
 
 
-def distinct(reader: Reader[tuple[str, ...]]) -> Reader[tuple[str, ...]]:
-    """A list of texts of which none stands there twice."""
+def each(reader: Reader[T], values: Iterable[Value]) -> tuple[T, ...]:
+    """What each of `values` means. All are read, so that all faults show, before one spoils the whole."""
+    read: list[T] = []
+    spoiled = False
+    for value in values:
+        try:
+            read.append(reader(value))
+        except UnreadableError:
+            spoiled = True
+    if spoiled:
+        raise UnreadableError
+    return tuple(read)
 
-    def read(value: Value) -> tuple[str, ...] | None:
-        texts = reader(value)
-        return texts if texts is not None and refuse_repeats(value, list(value.items())) else None
+
+def distinct(reader: Reader[tuple[T, ...]]) -> Reader[tuple[T, ...]]:
+    """A list of scalars of which none stands there twice."""
+
+    def read(value: Value) -> tuple[T, ...]:
+        items = reader(value)
+        if not report_repeats(value.items()):
+            return items
+        raise UnreadableError
 
     return read
 
 
-def refuse_repeats(value: Value, scalars: list[Value]) -> bool:
-    """Whether the texts of `scalars` all differ; each repeat is reported under the name of `value`."""
+def report_repeats(values: Iterable[Value]) -> bool:
+    """Whether some text stands twice among the scalars of `values`; each repeat is reported."""
     first: dict[str, Place] = {}
-    before = len(value.faults)
-    for node in (item.node for item in scalars):
+    repeated = False
+    for value in values:
+        node = value.node
         if not isinstance(node, ScalarNode) or node.empty:
             continue
         if node.text in first:
-            found = f"holds {shown(node.text)} twice"
-            value.refuse(found, f"each once (first on line {first[node.text].line})", node.place)
+            repeated = True
+            value.report(f"holds {shown(node.text)} twice", f"each once (line {first[node.text].line})")
         first.setdefault(node.text, node.place)
-    return len(value.faults) == before
+    return repeated
 
 
-def refuse_repeats_of(value: Value, key: str) -> None:
+def report_repeats_of(value: Value, key: str) -> None:
     """Report each mapping in the list `value` whose text under `key` stood in an earlier one."""
-    found = [item.node.entry(key) for item in value.items() if isinstance(item.node, MappingNode)]
-    name = f"{value.name}.{key}"
-    scalars = [Value(entry.value, name, value.faults) for entry in found if entry is not None]
-    refuse_repeats(Value(value.node, name, value.faults), scalars)
+    mappings = [item.node for item in value.items() if isinstance(item.node, MappingNode)]
+    entries = [entry for entry in (node.entry(key) for node in mappings) if entry is not None]
+    report_repeats(Value(entry.value, f"{value.name}.{key}", value.faults) for entry in entries)

@@ -56,34 +56,35 @@ CRITERION_KEYS = ("quantity", "at-most", "at-least", "unit")
 SIGN_OFF_KEYS = ("role", "meaning")
 LABORATORY_KEYS = ("laboratory", "address", "note", "accent", "paper", "require", "wait-seconds")
 
-MISSING: tuple[Literal["refuse", "omit"], ...] = ("refuse", "omit")
-BELOW_LIMIT: tuple[Literal["refuse", "omit", "half-limit", "limit"], ...] = (
-    "refuse",
-    "omit",
-    "half-limit",
-    "limit",
-)
-DECIMAL_MARKS: tuple[Literal["point", "comma"], ...] = ("point", "comma")
-EFFECTS: tuple[Literal["fixed", "random"], ...] = ("fixed", "random")
-VARIANCES: tuple[Literal["pooled", "separate"], ...] = ("pooled", "separate")
-PAIRS: tuple[Literal["all"], ...] = ("all",)
+Missing = Literal["refuse", "omit"]
+BelowLimit = Literal["refuse", "omit", "half-limit", "limit"]
+DecimalMark = Literal["point", "comma"]
+Effects = Literal["fixed", "random"]
+Variances = Literal["pooled", "separate"]
+Pairs = Literal["all"]
+EquivalenceAdjustment = Literal["none", "bonferroni", "holm"]
+OutlierTest = Literal["grubbs", "cochran"]
+VarianceCheck = Literal["brown-forsythe", "levene", "bartlett", "cochran"]
+NormalityCheck = Literal["shapiro-wilk", "anderson-darling"]
+Role = Literal["author", "reviewer", "approver"]
+Paper = Literal["A4", "Letter"]
+Requirement = Literal["unit", "purpose", "levels", "replicates", "comparisons", "checks", "sign-off"]
+
+MISSING: tuple[Missing, ...] = get_args(Missing)
+BELOW_LIMIT: tuple[BelowLimit, ...] = get_args(BelowLimit)
+DECIMAL_MARKS: tuple[DecimalMark, ...] = get_args(DecimalMark)
+EFFECTS: tuple[Effects, ...] = get_args(Effects)
+VARIANCES: tuple[Variances, ...] = get_args(Variances)
+PAIRS: tuple[Pairs, ...] = get_args(Pairs)
 ADJUSTMENTS: tuple[Adjustment, ...] = get_args(Adjustment)
 ALTERNATIVES: tuple[Alternative, ...] = get_args(Alternative)
-EQUIVALENCE_ADJUSTMENTS: tuple[Literal["none", "bonferroni", "holm"], ...] = ("none", "bonferroni", "holm")
-OUTLIER_TESTS: tuple[Literal["grubbs", "cochran"], ...] = ("grubbs", "cochran")
-VARIANCE_CHECKS: tuple[Literal["brown-forsythe", "levene", "bartlett", "cochran"], ...] = (
-    "brown-forsythe",
-    "levene",
-    "bartlett",
-    "cochran",
-)
-NORMALITY_CHECKS: tuple[Literal["shapiro-wilk", "anderson-darling"], ...] = (
-    "shapiro-wilk",
-    "anderson-darling",
-)
-ROLES: tuple[Literal["author", "reviewer", "approver"], ...] = ("author", "reviewer", "approver")
-PAPERS: tuple[Literal["A4", "Letter"], ...] = ("A4", "Letter")
-REQUIREMENTS = ("unit", "purpose", "levels", "replicates", "comparisons", "checks", "sign-off")
+EQUIVALENCE_ADJUSTMENTS: tuple[EquivalenceAdjustment, ...] = get_args(EquivalenceAdjustment)
+OUTLIER_TESTS: tuple[OutlierTest, ...] = get_args(OutlierTest)
+VARIANCE_CHECKS: tuple[VarianceCheck, ...] = get_args(VarianceCheck)
+NORMALITY_CHECKS: tuple[NormalityCheck, ...] = get_args(NormalityCheck)
+ROLES: tuple[Role, ...] = get_args(Role)
+PAPERS: tuple[Paper, ...] = get_args(Paper)
+REQUIREMENTS: tuple[Requirement, ...] = get_args(Requirement)
 
 LONGEST_TITLE = 200
 LONGEST_LABEL = 80

@@ -30,11 +30,11 @@ class CheckedStudy:
         if self.observations is None:
             return [*lines, f"  data   {data.file} does not exist yet; the plan can be kept as it is"]
         counts = self.counts()
+        layout = f"separator {self.observations.separator}, decimal {data.decimal_mark}"
         listed = ", ".join(f"{level} {n}" for level, n in counts.items())
         return [
             *lines,
-            f"  data   {self.observations.file}: {sum(counts.values()):,} values, separator "
-            f"{self.observations.separator}, decimal {data.decimal_mark}",
+            f"  data   {self.observations.file}: {sum(counts.values()):,} values, {layout}",
             f"  data   fits the plan: {listed}",
         ]
 

@@ -12,12 +12,12 @@ from dataclasses import dataclass, field
 from pathlib import Path
 
 from assayfolio.canonical import Json, canonical_bytes, sha256_hex
-from assayfolio.errors import InputError, MachineError
+from assayfolio.errors import AssayfolioError, InputError, MachineError
 from assayfolio.evaluation import evaluate
 from assayfolio.evidence.environment import environment_record
 from assayfolio.evidence.folio import folio_lock, stage_folio
 from assayfolio.evidence.history import next_number
-from assayfolio.evidence.trail import TrailEntry, TrailHead, TrailWriter, open_trail
+from assayfolio.evidence.trail import TrailEntry, TrailHead, open_trail
 from assayfolio.findings import Findings, findings_bytes
 from assayfolio.report.render import load_renderer, render_report
 from assayfolio.workflow.failure import failure_text
@@ -76,7 +76,9 @@ class _Run:
     def folder(self) -> Path:
         return self.workspace.runs / self.intake.study.study
 
-    def enter(self, action: str, step: Step, details: Mapping[str, Json], reason: str | None = None) -> TrailHead:
+    def enter(
+        self, action: str, step: Step, details: Mapping[str, Json], reason: str | None = None
+    ) -> TrailHead:
         """Enter a step of this run in the trail as it happens; return the trail's new head."""
         wait = self.intake.laboratory.wait_seconds
         with open_trail(self.workspace.runs, self.surroundings.actor, utc_now, wait) as trail:
@@ -96,10 +98,14 @@ def run_study(workspace: Workspace, study_path: Path, progress: Progress) -> Run
     try:
         intake = read_intake(workspace, study_path, seen)
     except InputError as error:
-        _refuse(workspace, study_path, seen, error)
+        try:
+            _refuse(workspace, study_path, seen, error)
+        except AssayfolioError as second:
+            raise MachineError(f"{error}\nThe refusal could not be entered in the trail: {second}") from error
         raise
     observed = intake.observations
-    progress(Step.READ, f"{len(observed.rows):,} values at {len(observed.levels)} levels from {observed.file}")
+    n, k = len(observed.rows), len(observed.levels)
+    progress(Step.READ, f"{n:,} values at {k} levels from {observed.file}")
     with ExitStack() as held:
         run = _allot(workspace, intake, surroundings, progress, held)
         try:
@@ -200,7 +206,8 @@ def _seal_failed(run: _Run, error: BaseException) -> BaseException:
     """Seal the folio of a run that failed; return the error to be raised."""
     reason, account = failure_text(error)
     if run.entries[-1].action == "sealed":
-        return MachineError(f"{reason}\n{run.subject} is sealed but not in its place; the next run puts it there.")
+        where = f"{run.subject} is sealed but not in its place; the next run puts it there"
+        return MachineError(f"{reason}\n{where}.")
     where = f"{run.subject} failed; its number is kept"
     try:
         run.enter("failed", Step(run.entries[-1].details["step"]), {}, _holdable(reason))
@@ -209,7 +216,7 @@ def _seal_failed(run: _Run, error: BaseException) -> BaseException:
         run.record = failed_record(run.record, _holdable(reason))
         folio, _ = _seal(run, "failed")
         where = f"{where}, and its folio says why: {shown_path(folio)}"
-    except Exception as second:
+    except Exception as second:  # noqa: BLE001 - the first error is the one to tell; this one beside it
         where = f"{where}, but its folio could not be sealed ({second})"
     if isinstance(error, KeyboardInterrupt):
         return error

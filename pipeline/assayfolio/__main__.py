@@ -1,0 +1,5 @@
+"""`python -m assayfolio`."""
+
+from assayfolio.cli.root import main
+
+main()

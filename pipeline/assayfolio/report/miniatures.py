@@ -1,0 +1,87 @@
+"""The small pictures beside the answers: estimates and intervals on one scale for all comparisons."""
+
+from fractions import Fraction
+
+from assayfolio.findings import ComparisonFamily
+from assayfolio.report.axes import Axis, make_axis
+from assayfolio.report.basis import Basis
+from assayfolio.report.figures import Picture, draw_interval
+from assayfolio.report.notation import MINUS
+from assayfolio.report.svg import SECOND_INK, THIN_LINE, Drawing
+from assayfolio.report.swarm import offsets
+
+WIDTH = 158.7  # 56 mm
+WIDTH_MM = 56.0
+_SIZE = 6.6
+_MOST_LINES = 16
+
+
+def comparison_axis(basis: Basis) -> Axis | None:
+    """The scale that all comparison pictures share: every estimate and interval, and zero."""
+    values: list[Fraction] = []
+    for family in basis.response.comparisons:
+        for row in family.rows:
+            values.append(row.estimate)
+            values += [Fraction(end) for end in row.ci or () if end is not None]
+    if not values:
+        return None
+    return make_axis(values, 6, WIDTH - 6, steps=4, include_zero=True, power=basis.difference_scale.power)
+
+
+def _ticks(drawing: Drawing, axis: Axis, y: float, unit: str) -> None:
+    drawing.line(axis.at(axis.ticks[0]), y, axis.at(axis.ticks[-1]), y, stroke=SECOND_INK, width=0.5)
+    for tick, label in zip(axis.ticks, axis.labels, strict=True):
+        x = axis.at(tick)
+        drawing.line(x, y, x, y + 2, stroke=SECOND_INK, width=0.5)
+        drawing.text(x, y + 9, label, size=_SIZE, anchor="middle", fill=SECOND_INK)
+    drawing.text(WIDTH / 2, y + 18, unit, size=_SIZE, anchor="middle", fill=SECOND_INK)
+
+
+def family_picture(basis: Basis, family: ComparisonFamily, axis: Axis, accent: str, name: str) -> Picture:
+    """The estimates of a family with their intervals; as dots alone where there are very many."""
+    rows = family.rows
+    many = len(rows) > _MOST_LINES
+    pitch = max(3.4, min(8.0, 40.0 / len(rows)))
+    body = 36.0 if many else pitch * len(rows) + 6
+    drawing = Drawing(WIDTH, body + 22)
+    zero = axis.at(0)
+    drawing.line(zero, 0, zero, body, stroke=SECOND_INK, width=THIN_LINE)
+    if many:
+        places = [axis.at(row.estimate) for row in rows]
+        for x, offset in zip(places, offsets(places, 2.6, 15.0), strict=True):
+            drawing.dot(x, 18 - offset, 1.1, fill=accent)
+    for number, row in enumerate(() if many else rows):
+        y = 3 + pitch * (number + 0.5)
+        if row.ci is not None:
+            draw_interval(drawing, axis, y, row.ci, stroke=accent)
+        drawing.dot(axis.at(row.estimate), y, 1.7, fill=accent)
+    scale = basis.difference_scale
+    _ticks(drawing, axis, body, f"difference, {scale.heading}" if scale.heading else "difference")
+    title = f"{len(rows)} estimates of {family.name} on a scale with zero; figures stand in section 5."
+    return Picture(name, drawing.svg(title), title, WIDTH_MM)
+
+
+def means_picture(basis: Basis, accent: str, name: str) -> Picture:
+    """The level means with their intervals, in the order of the plan from top to bottom."""
+    levels = basis.levels
+    values = [level.mean for level in levels]
+    values += [Fraction(end) for level in levels for end in level.ci or () if end is not None]
+    axis = make_axis(values, 6, WIDTH - 6, steps=4, power=basis.scale.power)
+    many = len(levels) > _MOST_LINES
+    pitch = max(3.4, min(8.0, 40.0 / len(levels)))
+    body = 36.0 if many else pitch * len(levels) + 6
+    drawing = Drawing(WIDTH, body + 22)
+    if many:
+        places = [axis.at(level.mean) for level in levels]
+        for x, offset in zip(places, offsets(places, 2.6, 15.0), strict=True):
+            drawing.dot(x, 18 - offset, 1.1, fill=accent)
+    for number, level in enumerate(() if many else levels):
+        y = 3 + pitch * (number + 0.5)
+        if level.ci is not None:
+            draw_interval(drawing, axis, y, level.ci, stroke=accent)
+        drawing.dot(axis.at(level.mean), y, 1.7, fill=accent)
+    unit = "level means" + (f" {MINUS} {basis.scale.mean(axis.origin).rstrip('0').rstrip('.')}" if axis.origin else "")
+    unit += f", {basis.scale.heading}" if basis.scale.heading else ""
+    _ticks(drawing, axis, body, unit)
+    title = f"The means of the {len(levels)} levels with their intervals; figures stand in section 2."
+    return Picture(name, drawing.svg(title), title, WIDTH_MM)

@@ -1,0 +1,148 @@
+"""Tables with their layout worked out: widths from content, figures on the decimal point."""
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+from typing import Literal
+
+from assayfolio.report.notation import split_at_point
+from assayfolio.report.prose import Prose, Words, as_prose, plain
+from assayfolio.report.typeface import POINTS_PER_MM, text_width
+
+TEXT_WIDTH_MM = 164.0
+_BODY = 8.4
+_HEAD = 7.6
+_GAP = 4.2
+_LEAST_TEXT = 30.0
+_ZEBRA_FROM = 9
+_UNBROKEN_TO = 12
+
+Kind = Literal["text", "number", "words"]
+
+
+@dataclass(frozen=True, slots=True)
+class Column:
+    """A column as asked for: its head, the unit under the head, what it holds.
+
+    "text" may wrap and gets what room is left, "words" never wraps, "number" stands on its decimal point.
+    """
+
+    head: Words
+    unit: str = ""
+    kind: Kind = "number"
+
+
+@dataclass(frozen=True, slots=True)
+class LaidOutColumn:
+    """A column as it is set: its head, and its width in millimetres with the gap before it."""
+
+    head: Prose
+    unit: str
+    kind: Kind
+    width: str
+
+
+@dataclass(frozen=True, slots=True)
+class Cell:
+    """A cell: its words, and how far a figure is moved from the right edge (a CSS length, or empty)."""
+
+    words: Prose
+    shift: str = ""
+
+
+@dataclass(frozen=True, slots=True)
+class Table:
+    """A table ready to be set; the first column names the row."""
+
+    label: str
+    caption: Prose
+    columns: tuple[LaidOutColumn, ...]
+    rows: tuple[tuple[Cell, ...], ...]
+    notes: tuple[Prose, ...]
+    width: str
+    size: str
+    zebra: bool
+    unbroken: bool
+
+
+def lay_out(
+    label: str,
+    caption: Words,
+    columns: Sequence[Column],
+    rows: Sequence[Sequence[Words]],
+    notes: Sequence[Words] = (),
+) -> Table:
+    """The table of these rows, as wide as it needs and no wider than the text column.
+
+    A table that is too wide for its column is set smaller, its text columns wrapping first.
+    """
+    size, widths = _widths(columns, rows)
+    cells = [
+        _cells(column, [row[index] for row in rows], size) for index, column in enumerate(columns)
+    ]
+    laid_out = tuple(
+        LaidOutColumn(as_prose(column.head), column.unit, column.kind, _mm(width))
+        for column, width in zip(columns, widths, strict=True)
+    )
+    return Table(
+        label=label,
+        caption=as_prose(caption),
+        columns=laid_out,
+        rows=tuple(zip(*cells, strict=True)),
+        notes=tuple(as_prose(note) for note in notes),
+        width=_mm(sum(widths)),
+        size=f"{size:.2f}pt",
+        zebra=len(rows) >= _ZEBRA_FROM,
+        unbroken=len(rows) <= _UNBROKEN_TO,
+    )
+
+
+def _mm(width: float) -> str:
+    return f"{width:.2f}mm"
+
+
+def _widths(columns: Sequence[Column], rows: Sequence[Sequence[Words]]) -> tuple[float, list[float]]:
+    """The size of the type and the width of each column (gap included) in millimetres."""
+    size = _BODY
+    while True:
+        natural = [
+            _natural(column, [row[index] for row in rows], size) + (_GAP if index else 0.0)
+            for index, column in enumerate(columns)
+        ]
+        texts = [index for index, column in enumerate(columns) if column.kind == "text"]
+        room = TEXT_WIDTH_MM - sum(width for index, width in enumerate(natural) if index not in texts)
+        wanted = sum(natural[index] for index in texts)
+        if wanted <= room:
+            return size, natural
+        if room >= _LEAST_TEXT * len(texts) or size <= 5.6:
+            for index in texts:
+                natural[index] = max(12.0, natural[index] * room / wanted)
+            return size, natural
+        size -= 0.4
+
+
+def _natural(column: Column, cells: Sequence[Words], size: float) -> float:
+    head = max(_word_width(column.head, column.kind), text_width(column.unit, _HEAD))
+    if column.kind == "number":
+        parts = [split_at_point(plain(cell)) for cell in cells]
+        whole = max((text_width(before, size) for before, _ in parts), default=0.0)
+        rest = max((text_width(after, size) for _, after in parts), default=0.0)
+        body = whole + rest
+    else:
+        body = max((text_width(plain(cell), size, "semibold") for cell in cells), default=0.0)
+    return (max(head, body) + 1.0) / POINTS_PER_MM
+
+
+def _word_width(head: Words, kind: Kind) -> float:
+    words = plain(head).split(" ") if kind != "words" else [plain(head)]
+    return max(text_width(word, _HEAD, "semibold") for word in words)
+
+
+def _cells(column: Column, cells: Sequence[Words], size: float) -> list[Cell]:
+    if column.kind != "number":
+        return [Cell(as_prose(cell)) for cell in cells]
+    rests = [text_width(split_at_point(plain(cell))[1], size) for cell in cells]
+    widest = max(rests, default=0.0)
+    return [
+        Cell(as_prose(cell), f"{widest - rest:.2f}pt" if widest - rest > 0.05 and plain(cell) else "")
+        for cell, rest in zip(cells, rests, strict=True)
+    ]

@@ -1,0 +1,96 @@
+"""Sentences that several parts of a report share."""
+
+from assayfolio.findings import DIFFERENCE_NOT_SHOWN, DIFFERENCE_SHOWN, CheckFindings, ComparisonFamily, ComparisonRow, Interval
+from assayfolio.report.basis import Basis
+from assayfolio.report.methods import adjustment_of
+from assayfolio.report.notation import Scale, decimal, equals, probability
+from assayfolio.report.prose import Prose, prose
+
+NOT_REGISTERED = "not pre-registered"
+DRAFT_SENTENCE = "draft unless every sign-off field on page 1 carries a valid signature"
+NO_SIGN_OFF = "the study plans no sign-off: this report carries no signatures"
+
+CAUTION_SHOWN = (
+    "A difference shown is not by itself a difference that matters: hold the size and its interval against "
+    "what matters in use. Equivalence was not tested."
+)
+CAUTION_NOT_SHOWN = (
+    "Not shown does not mean absent: the data are compatible with every value inside the interval. "
+    "Equivalence was not tested."
+)
+CAUTION_NO_INTERVAL = (
+    "Not shown does not mean absent: differences too small to be shown by this many values remain possible. "
+    "Equivalence was not tested."
+)
+CAUTION_MIXED = (
+    "Where a difference is shown, its size and interval say whether it matters; where it is not shown, it may "
+    "still exist. Equivalence was not tested."
+)
+CAUTIONS = (
+    "What this document is not: it is not a release decision, and it takes no decision on any lot, method or "
+    "instrument; that is for the responsible persons under the laboratory's own procedures and the regulations "
+    "that apply. The results relate only to the items tested. This report shall not be reproduced except in full."
+)
+
+
+def interval_words(scale: Scale, interval: Interval) -> str:
+    """An interval with its unit: "from ... to ...", or with one open end."""
+    low, high = interval
+    if low is None and high is None:
+        return "unbounded"
+    if low is None:
+        return f"at most {scale.with_unit(scale.mean(high or 0.0))}"
+    if high is None:
+        return f"at least {scale.with_unit(scale.mean(low))}"
+    return scale.with_unit(f"{scale.mean(low)} to {scale.mean(high)}")
+
+
+def p_words(basis: Basis, p: float, log10_p: float | None = None) -> Prose:
+    """`p = ...` with the symbol in italics."""
+    return prose("*p*\u202f{value}", value=equals(probability(p, basis.response.alpha, log10_p)))
+
+
+def adjusted_p(basis: Basis, row: ComparisonRow) -> str:
+    """The adjusted p of a comparison as printed."""
+    return probability(row.p_adjusted, basis.response.alpha, row.log10_p_adjusted)
+
+
+def interval_kind(basis: Basis, family: ComparisonFamily) -> str:
+    """The kind of interval: "simultaneous 95 % interval", or "individual" where nothing was adjusted."""
+    if len(family.rows) == 1:
+        return f"{basis.confidence} interval"
+    return f"{adjustment_of(family).interval} {basis.confidence} interval"
+
+
+def row_verdict(verdict: str) -> str:
+    """A verdict inside a table whose head already says "difference"."""
+    return {DIFFERENCE_SHOWN: "shown", DIFFERENCE_NOT_SHOWN: "not shown"}.get(verdict, verdict)
+
+
+def check_sentence(basis: Basis, check: CheckFindings) -> Prose:
+    """What a check found, without the part of its note that never changes."""
+    name = typographic(check.name)
+    if check.p is None:
+        return prose("{name}: {note}.", name=name, note=check.note)
+    note = check.note.split(";")[0]
+    return prose("{name}: {note} ({p}).", name=name, note=note, p=p_words(basis, check.p))
+
+
+def typographic(name: str) -> str:
+    """A method's name with a dash between the names of its authors."""
+    return name.replace("Brown-Forsythe", "Brown–Forsythe").replace("Shapiro-Wilk", "Shapiro–Wilk")
+
+
+def alpha_words(basis: Basis) -> str:
+    """Alpha as planned."""
+    return decimal(basis.response.alpha)
+
+
+def capitalised(text: str) -> str:
+    """`text` with its first letter large."""
+    return text[:1].upper() + text[1:]
+
+
+def counted(number: int, singular: str, plural: str | None = None) -> str:
+    """`number` with its noun."""
+    return f"{number} {singular if number == 1 else plural or singular + 's'}"

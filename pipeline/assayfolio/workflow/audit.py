@@ -1,0 +1,113 @@
+"""Verifying folios and the trail, and showing the trail: the words and documents that the commands print."""
+
+from collections.abc import Mapping, Sequence
+from pathlib import Path
+
+from assayfolio.canonical import Json
+from assayfolio.errors import InputError
+from assayfolio.evidence.trail import TrailReading, read_trail
+from assayfolio.evidence.verification import Verification, verify_loose, verify_workspace
+from assayfolio.workflow.workspace import find_workspace
+
+
+def verify_all(named_workspace: Path | None, folios: Sequence[Path]) -> Verification:
+    """Verify `folios`, or every folio of the workspace, and the whole trail.
+
+    A folio that lies in no workspace is checked by itself; what only a trail can show is then not checkable.
+    """
+    start = folios[0] if folios else Path()
+    try:
+        workspace = find_workspace(named_workspace, start)
+    except InputError:
+        if named_workspace is not None or not folios:
+            raise
+        return verify_loose(folios)
+    return verify_workspace(workspace.runs, folios or None)
+
+
+def verification_lines(verification: Verification) -> list[str]:
+    """The numbered checks, for people."""
+    width = max((len(outcome.outcome) for outcome in verification.outcomes), default=0)
+    lines = []
+    for outcome in verification.outcomes:
+        lines.append(f"{outcome.number:>3}  {outcome.outcome:<{width}}  {outcome.subject}: {outcome.title}")
+        lines.extend(f"     {'':<{width}}    {note}" for note in outcome.notes)
+    counts = _counts(verification)
+    lines.append(", ".join(f"{count} {word}" for word, count in counts.items()))
+    return lines
+
+
+def verification_document(verification: Verification) -> Mapping[str, Json]:
+    """The numbered checks, for programs."""
+    return {
+        "exit_code": int(verification.exit_code),
+        "counts": _counts(verification),
+        "checks": [
+            {
+                "number": outcome.number,
+                "title": outcome.title,
+                "subject": outcome.subject,
+                "outcome": outcome.outcome,
+                "notes": list(outcome.notes),
+            }
+            for outcome in verification.outcomes
+        ],
+    }
+
+
+def _counts(verification: Verification) -> dict[str, int]:
+    return {
+        word: sum(outcome.outcome == word for outcome in verification.outcomes)
+        for word in ("passed", "failed", "not checkable")
+    }
+
+
+def trail_of(named_workspace: Path | None) -> TrailReading:
+    """The trail of the workspace as it stands on the disk."""
+    return read_trail(find_workspace(named_workspace, Path()).runs)
+
+
+def trail_lines(reading: TrailReading) -> list[str]:
+    """The trail for people: a line an entry, the reason under it."""
+    if not reading.lines:
+        return ["The audit trail is empty."]
+    widths = [
+        max(len(text) for text in column)
+        for column in zip(*[(e.actor, e.action, e.subject) for e in reading.entries], strict=True)
+    ] or [0, 0, 0]
+    lines = []
+    for entry in reading.entries:
+        moment = f"{entry.time[:10]} {entry.time[11:19]} UTC"
+        lines.append(
+            f"{entry.seq:>6}  {moment}  {entry.actor:<{widths[0]}}  "
+            f"{entry.action:<{widths[1]}}  {entry.subject:<{widths[2]}}".rstrip()
+        )
+        indent = " " * 33
+        if entry.reason:
+            lines.append(f"{indent}{entry.reason}")
+        seal = entry.details.get("seal")
+        if isinstance(seal, str):
+            lines.append(f"{indent}seal {seal}")
+    lines.append(f"Head: entry {reading.last.seq}, {reading.last.sha256}")
+    return lines
+
+
+def trail_document(reading: TrailReading) -> Mapping[str, Json]:
+    """The trail for programs: head, faults, and the entries as they stand."""
+    return {
+        "head": None if reading.head is None else {"seq": reading.head.seq, "sha256": reading.head.sha256},
+        "faults": [str(fault) for fault in reading.faults],
+        "entries": [
+            {
+                "seq": entry.seq,
+                "time": entry.time,
+                "actor": entry.actor,
+                "action": entry.action,
+                "subject": entry.subject,
+                "reason": entry.reason,
+                "details": entry.details,
+                "previous": entry.previous,
+            }
+            for entry in reading.entries
+        ],
+    }

@@ -1,0 +1,41 @@
+"""What the next writer does about runs that were killed: it says so; nothing is repaired silently."""
+
+from assayfolio.evidence.folio import is_locked, leftover_record, reopen_staged
+from assayfolio.evidence.history import run_histories
+from assayfolio.evidence.trail import TrailWriter
+from assayfolio.workflow.workspace import Workspace
+
+
+def found_trail(workspace: Workspace, trail: TrailWriter) -> None:
+    """Begin the audit trail of a workspace that has none yet.
+
+    `open_trail` has refused already where folios are there without a trail.
+    """
+    if not trail.entries:
+        trail.append("founded", "workspace", f"first use of the workspace {workspace.root.name!r}")
+
+
+def acknowledge_interruptions(workspace: Workspace, trail: TrailWriter) -> None:
+    """Enter every run that was killed, and complete a rename that was interrupted.
+
+    A run that was allotted, has not ended and whose lock nobody holds was killed: it gets an `interrupted`
+    entry that says what was found, and what it left stays where it is. A run whose seal is in the trail while
+    its folio still has its staging name gets a `rename-completed` entry, then its name.
+    """
+    for run in run_histories(trail.entries):
+        folder = workspace.runs / run.study
+        if run.sealed is not None:
+            if not (folder / run.name).exists():
+                staged = reopen_staged(folder, run.name)
+                if staged is not None and staged.seal == run.sealed.details.get("seal"):
+                    reason = "the run was interrupted before its sealed folio was renamed into place"
+                    trail.append("rename-completed", run.subject, reason, {"seal": staged.seal})
+                    staged.publish()
+        elif run.interrupted is None and not is_locked(folder, run.name):
+            last = run.entries[-1]
+            trail.append(
+                "interrupted",
+                run.subject,
+                f"the run was killed after its entry {last.action!r}; it has no folio",
+                {"last_seq": last.seq, **leftover_record(folder, run.name)},
+            )

@@ -1,0 +1,53 @@
+#!/bin/sh
+# Runs the tests with their coverage; arguments go to pytest, as in
+#
+#     sh tests/start.sh
+#     sh tests/start.sh tests/test_packaging.py -k licence
+#
+# The tests have an environment of their own, .venv-tests, so that the one which makes reports (and is recorded in
+# every run) never holds more than the program needs. pytest works in the checkout's folder; paths among the
+# arguments may be relative to the caller's.
+set -eu
+checkout=$(CDPATH='' cd -- "$(dirname -- "$0")/.." && pwd -P)
+. "$checkout/pipeline/setup.sh"
+
+# Outside programs that check what assayfolio writes: PDF tools, and Java for the PDF/A and PDF/UA validator.
+debian_tools="qpdf poppler-utils default-jre-headless libjaxb-java"
+
+missing_tools() {
+    for tool in qpdf pdfinfo pdffonts pdftoppm java; do
+        command -v "$tool" >/dev/null 2>&1 || printf ' %s' "$tool"
+    done
+    [ -e /usr/share/java/jaxb-runtime.jar ] || printf ' libjaxb-java'
+}
+
+require_tools() {
+    lacking=$(missing_tools)
+    [ -n "$lacking" ] || return 0
+    if can_use_apt; then
+        say "installing the programs that check PDF files, with apt-get (once)"
+        open_log
+        apt_install $debian_tools
+        exec 9>&-
+    else
+        say "Not on this machine:$lacking. Tests that need them will not run; each is named at the end."
+        say "On Debian or Ubuntu they come with: sudo apt-get install $debian_tools"
+    fi
+}
+
+prepare .venv-tests "tests/requirements-build.lock tests/requirements-tests.lock"
+require_tools
+
+remaining=$#
+while [ "$remaining" -gt 0 ]; do
+    argument=$1
+    shift
+    case $argument in
+        -* | /*) ;;
+        *) [ ! -e "${argument%%::*}" ] || argument=$PWD/$argument ;;
+    esac
+    set -- "$@" "$argument"
+    remaining=$((remaining - 1))
+done
+cd "$checkout"
+exec "$environment/bin/pytest" --cov --cov-report=term "$@"
