@@ -10,6 +10,8 @@ patience=900                       # seconds to wait for another installation
 package_files="pyproject.toml README.md LICENSE pipeline templates"
 debian_packages="python3 python3-venv ca-certificates libpango-1.0-0 libpangoft2-1.0-0 libharfbuzz0b libharfbuzz-subset0 libfontconfig1"
 
+suitable='import sys, ctypes, ensurepip, ssl, venv; sys.exit(sys.version_info < (3, 11))'
+
 # The caller's shell may point Python at other packages; results come from the pinned ones alone.
 unset PYTHONHOME PYTHONPATH
 
@@ -18,7 +20,7 @@ if command -v sha256sum >/dev/null 2>&1; then
 elif command -v shasum >/dev/null 2>&1; then
     checksum="shasum -a 256"
 else
-    checksum=cksum
+    checksum="cksum"
 fi
 
 say() {
@@ -38,8 +40,8 @@ digest() {
 
 package_digest() {
     (
-        cd "$1"
-        find $package_files \( -name __pycache__ -o -name '*.egg-info' \) -prune -o -type f -exec $checksum {} +
+        cd "$1" || exit
+        find $package_files \( -name __pycache__ -o -name '*.egg-info' -o -name '.?*' \) -prune -o -type f -exec $checksum {} +
     ) | LC_ALL=C sort | digest
 }
 
@@ -107,17 +109,22 @@ quietly() {
 
 # --- the system's part: Python and the libraries that set the report ---
 
+# Leaves the first suitable interpreter on the path in `python`. Each is run, not only looked up: a name on the path
+# may be a shim for a version that is not installed, and Debian's python3 may come without venv.
 find_python() {
-    python=
-    for candidate in python3.13 python3.12 python3.11 python3 python3.14 python \
-        /usr/bin/python3 /usr/local/bin/python3 /opt/homebrew/bin/python3; do
-        # Run, not only looked up: a name on the path may be a shim for a version that is not installed.
-        if "$candidate" -I -c 'import sys, ctypes, ensurepip, ssl, venv; sys.exit(sys.version_info < (3, 11))' \
-            </dev/null >/dev/null 2>&1; then
-            python=$candidate
-            return 0
-        fi
+    for name in python3.13 python3.12 python3.11 python3 python3.14 python; do
+        separators=$IFS
+        IFS=:
+        for folder in $PATH; do
+            IFS=$separators
+            python=$folder/$name
+            if [ -x "$python" ] && "$python" -I -c "$suitable" </dev/null >/dev/null 2>&1; then
+                return 0
+            fi
+        done
+        IFS=$separators
     done
+    python=
     return 1
 }
 
@@ -215,6 +222,11 @@ install_requirements() {
     stamp requirements "$(requirements_digest)"
 }
 
+copy_package_files() {
+    (cd "$checkout" && cp -R $package_files "$1/") &&
+        find "$1" \( -name __pycache__ -o -name '*.egg-info' -o -name '.?*' \) -prune -exec rm -rf {} +
+}
+
 # Built from a copy: what an earlier build left behind can not get in, and the checkout stays clean. Installed by
 # name from a folder, so that no path of this machine becomes part of the installed package.
 install_package() {
@@ -223,8 +235,7 @@ install_package() {
     build=$environment/build
     rm -rf "$build"
     mkdir -p "$build/source"
-    (cd "$checkout" && cp -R $package_files "$build/source/")
-    find "$build/source" \( -name __pycache__ -o -name '*.egg-info' \) -prune -exec rm -rf {} +
+    quietly "Copying the sources" copy_package_files "$build/source"
     quietly "Building assayfolio" in_environment wheel --no-deps --no-build-isolation --no-index \
         --wheel-dir "$build" "$build/source"
     quietly "Installing assayfolio" in_environment install --no-deps --no-index --force-reinstall --compile \

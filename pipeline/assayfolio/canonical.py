@@ -6,13 +6,16 @@ from typing import TypeAlias
 
 import rfc8785
 
-Json: TypeAlias = "bool | int | float | str | Sequence[Json] | Mapping[str, Json] | None"
+Json: TypeAlias = bool | int | float | str | Sequence["Json"] | Mapping[str, "Json"] | None
 
 
 def canonical_bytes(value: Json) -> bytes:
     """`value` as canonical JSON by RFC 8785.
 
-    Raises ValueError for what that standard cannot hold: NaN, infinities, integers beyond 2**53 - 1.
+    Objects are dicts, arrays are lists or tuples. A double of 2**53 and more is written without a decimal
+    point, so that a reader has to take large whole numbers for doubles.
+    Raises ValueError for what that standard cannot hold: NaN, infinities, integers beyond 2**53 - 1, half of
+    a surrogate pair, and for any other kind of value.
     """
     return rfc8785.dumps(value)
 

@@ -21,6 +21,7 @@ from assayfolio.findings import (
 )
 from assayfolio.fit import check_fit
 from assayfolio.observations.values import Observations
+from assayfolio.statistics.adjustment import stated
 from assayfolio.statistics.checks import brown_forsythe_variances, residuals, shapiro_wilk
 from assayfolio.statistics.comparisons import (
     TWO_SIDED,
@@ -47,7 +48,7 @@ def evaluate(study: StudyDefinition, observations: Observations) -> Findings:
     Raises DataError where the plan cannot be applied to them at all (see `check_fit`).
     """
     check_fit(study, observations)
-    groups: Groups = tuple((level, observations.values_of(level)) for level in observations.levels)
+    groups = _groups(observations)
     analysis = one_way([(level, ExactSums.of(values)) for level, values in groups])
     not_reported: list[NotReported] = []
     alpha = to_double(study.alpha)
@@ -55,7 +56,10 @@ def evaluate(study: StudyDefinition, observations: Observations) -> Findings:
         response=observations.response,
         unit=study.data.unit,
         alpha=study.alpha,
-        levels=tuple(_level(analysis, groups, level, alpha) for level in analysis.levels),
+        levels=tuple(
+            _level(analysis, level, values, alpha)
+            for level, (_, values) in zip(analysis.levels, groups, strict=True)
+        ),
         anova=_anova(analysis, alpha, not_reported),
         comparisons=_comparisons(study, analysis, alpha, not_reported),
         checks=_checks(study, groups, alpha),
@@ -63,46 +67,59 @@ def evaluate(study: StudyDefinition, observations: Observations) -> Findings:
     return Findings(study.study, (response,), tuple(not_reported))
 
 
-def _level(analysis: OneWay, groups: Groups, level: LevelSummary, alpha: float) -> LevelFindings:
-    values = [value.fraction for value in dict(groups)[level.level]]
+def _groups(observations: Observations) -> Groups:
+    values: dict[str, list[Decimal10]] = {level: [] for level in observations.levels}
+    for row in observations.rows:
+        values[row.level].append(row.value)
+    return tuple((level, tuple(listed)) for level, listed in values.items())
+
+
+def _level(
+    analysis: OneWay, level: LevelSummary, values: tuple[Decimal10, ...], alpha: float
+) -> LevelFindings:
+    fractions = [value.fraction for value in values]
     return LevelFindings(
         level=level.level,
         n=level.n,
         mean=level.mean,
         sd=level.sd,
         sd_ci=sd_interval(level, alpha),
-        minimum=min(values),
-        maximum=max(values),
+        minimum=min(fractions),
+        maximum=max(fractions),
         ci=mean_interval(analysis, level, alpha) if analysis.ss_within else None,
         sums=level.sums,
     )
 
 
 def _anova(analysis: OneWay, alpha: float, not_reported: list[NotReported]) -> AnovaFindings:
-    test = omnibus_test(analysis, alpha) if analysis.ss_within else None
-    if test is None:
-        equal = (
-            "all values are equal" if not analysis.ss_between else "the values do not vary within any level"
-        )
-        not_reported.append(
-            NotReported(
-                "F test and intervals for means",
-                f"{equal}, so there is no error with which to compare the means; "
-                "look at the resolution and the recording of the data",
-            )
-        )
-    p = None if test is None else round_significant(test.tail.p)
+    try:
+        test = omnibus_test(analysis, alpha)
+    except NotComputableError as error:
+        test = None
+        not_reported.append(_no_omnibus_test(analysis, str(error)))
+    tail = None if test is None else stated(test.tail)
     return AnovaFindings(
         between=Source(analysis.ss_between, analysis.df_between, analysis.ms_between),
         within=Source(analysis.ss_within, analysis.df_within, analysis.ms_within),
         total=Source(analysis.ss_total, analysis.n_total - 1, None),
         residual_sd=Root.of(analysis.ms_within),
         r_squared=analysis.r_squared,
-        f=analysis.f,
-        p=p,
-        log10_p=None if test is None else round_significant(test.tail.log10_p),
+        f=None if test is None else analysis.f,
+        p=None if tail is None else tail.p,
+        log10_p=None if tail is None else tail.log10_p,
         f_critical=None if test is None else round_significant(test.f_critical),
-        verdict=NOT_ASSESSABLE if p is None else _verdict(p, alpha),
+        verdict=NOT_ASSESSABLE if tail is None else _verdict(tail.p, alpha),
+    )
+
+
+def _no_omnibus_test(analysis: OneWay, reason: str) -> NotReported:
+    if analysis.ss_within:
+        return NotReported("F test", reason)
+    equal = "all values are equal" if not analysis.ss_between else "the values do not vary within any level"
+    return NotReported(
+        "F test and intervals for means",
+        f"{equal}, so there is no error with which to compare the means; "
+        "look at the resolution and the recording of the data",
     )
 
 
@@ -145,7 +162,7 @@ def _family(plan: Comparison, analysis: OneWay, alpha: float) -> ComparisonFamil
 
 
 def _row(result: ComparisonResult, alpha: float) -> ComparisonRow:
-    p_adjusted = round_significant(result.adjusted.p)
+    adjusted = stated(result.adjusted)
     return ComparisonRow(
         label=result.label,
         estimate=result.estimate,
@@ -153,10 +170,10 @@ def _row(result: ComparisonResult, alpha: float) -> ComparisonRow:
         df=result.df,
         statistic=result.statistic,
         p=round_significant(result.tail.p),
-        p_adjusted=p_adjusted,
-        log10_p_adjusted=round_significant(result.adjusted.log10_p),
+        p_adjusted=adjusted.p,
+        log10_p_adjusted=adjusted.log10_p,
         ci=result.interval,
-        verdict=_verdict(p_adjusted, alpha),
+        verdict=_verdict(adjusted.p, alpha),
     )
 
 
@@ -191,4 +208,4 @@ def _normality(groups: Groups, alpha: float) -> CheckFindings:
 
 def _note(p: float, alpha: float, departure: str) -> str:
     shown = f"the data show {departure}" if p <= alpha else f"the data do not show {departure}"
-    return f"{shown} at level {alpha:g}; the check informs and does not choose the analysis"
+    return f"{shown} at level {alpha}; the check informs and does not choose the analysis"

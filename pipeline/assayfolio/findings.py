@@ -25,8 +25,9 @@ Interval = tuple[float | None, float | None]
 class LevelFindings:
     """One level: n, mean, standard deviation and their intervals (pooled error, N - k degrees of freedom).
 
-    `sd` and `sd_ci` are None where n = 1; `ci` is None where inference is not reported. `sd_ci` is the
-    chi-square interval of this level's own standard deviation with n - 1 degrees of freedom.
+    `sd_ci` is the chi-square interval of this level's own standard deviation with n - 1 degrees of freedom.
+    `sd` and `sd_ci` are None where n = 1, `sd_ci` also where all values of the level are equal; `ci` is None
+    where inference is not reported.
     """
 
     level: str

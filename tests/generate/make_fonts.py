@@ -6,7 +6,7 @@ regular, semi-bold and italic, cut down to the scripts and signs a report needs.
 font would have to be instanced at every rendering, which costs time and is not reproducible.
 
     python tests/generate/make_fonts.py           write fonts, licence and character table
-    python tests/generate/make_fonts.py --check   write nothing; exit 1 if a file differs from what would be written
+    python tests/generate/make_fonts.py --check   write nothing; exit 1 if a file would change
 
 The bytes depend on the version of fontTools, which the tests' lock pins.
 """
@@ -64,13 +64,14 @@ WANTED = (
     (0x25A0, 0x25FF),  # geometric shapes
     (0x2713, 0x2717),  # check marks and crosses
 )
-# Controls, formatting and bidirectional marks, surrogates, private use, unassigned, line and paragraph separators.
+# Controls, formatting and bidirectional marks, surrogates, private use, unassigned, line and paragraph
+# separators.
 NEVER = frozenset({"Cc", "Cf", "Cs", "Co", "Cn", "Zl", "Zp"})
 # Invisible, although Unicode files it under combining marks.
 INVISIBLE = frozenset({0x034F})
 
-# Left out on purpose: contextual alternates and ligatures, which turn "->" into an arrow and "3x4" into "3×4".
-# A report shows what was typed.
+# Left out on purpose: contextual alternates and ligatures, which turn "->" into an arrow and "3x4" into
+# "3×4". A report shows what was typed.
 FEATURES = ("kern", "mark", "mkmk", "ccmp", "locl", "tnum", "zero", "ss02", "case", "sups", "subs", "sinf")
 
 NAME_COPYRIGHT, NAME_FAMILY, NAME_STYLE, NAME_UNIQUE, NAME_FULL, NAME_VERSION, NAME_POSTSCRIPT = range(7)

@@ -1,7 +1,7 @@
 """Write `workflow/references.json`: the references that every run recomputes before it computes anything.
 
 Certified values and data are read from the NIST StRD files that scipy ships; function values come from the
-vectors of this test suite. With --check the file is only compared with what would be written.
+vectors of this test suite, and one far tail from mpmath. With --check the file is only compared with what would be written.
 """
 
 import json
@@ -9,6 +9,8 @@ import re
 import sys
 from importlib.resources import files
 from pathlib import Path
+
+import mpmath
 
 ROOT = Path(__file__).resolve().parents[2]
 TARGET = ROOT / "pipeline" / "assayfolio" / "workflow" / "references.json"
@@ -46,13 +48,19 @@ def nist_case(name: str) -> dict[str, object]:
         "r_squared": r_squared[1],
         "residual_sd": residual_sd[1],
     }
-    return {"name": f"NIST StRD {name}", "data": data, "certified": {k: v.lower() for k, v in certified.items()}}
+    return {
+        "name": f"NIST StRD {name}",
+        "data": data,
+        "certified": {k: v.lower() for k, v in certified.items()},
+    }
 
 
 def function_cases() -> list[dict[str, object]]:
     """Reference values of the distribution functions, from the vectors."""
     vectors = ROOT / "tests" / "vectors"
-    one_way = {case["name"]: case for case in json.loads((vectors / "one_way.json").read_text("utf-8"))["cases"]}
+    one_way = {
+        case["name"]: case for case in json.loads((vectors / "one_way.json").read_text("utf-8"))["cases"]
+    }
     cases = []
     for name, function, arguments, key in FUNCTION_VALUES:
         inputs, expected = one_way[name]["inputs"], one_way[name]["expected"]
@@ -68,7 +76,17 @@ def function_cases() -> list[dict[str, object]]:
             cases.append({"function": "studentized_range_sf", "arguments": arguments, "value": value})
             turned = [value, *arguments[1:]]
             cases.append({"function": "studentized_range_isf", "arguments": turned, "value": arguments[0]})
-    return cases
+    return [*cases, far_tail()]
+
+
+def far_tail() -> dict[str, object]:
+    """The logarithm of an F tail that is far below the range of doubles, by mpmath with 40 digits."""
+    with mpmath.workdps(40):
+        f, df1, df2 = 9, 18000, 200
+        beyond = mpmath.mpf(df2) / (df2 + df1 * f)
+        tail = mpmath.betainc(mpmath.mpf(df2) / 2, mpmath.mpf(df1) / 2, 0, beyond, regularized=True)
+        value = mpmath.nstr(mpmath.log10(tail), 20)
+    return {"function": "f_log10_sf", "arguments": [str(f), str(df1), str(df2)], "value": value}
 
 
 def main() -> None:

@@ -3,11 +3,11 @@
 import re
 
 import pytest
-from sources.nist import NAMES, all_datasets, as_csv, read_dataset
 
 from assayfolio.exact import parse_decimal
 from assayfolio.observations.reading import read_observations
 from assayfolio.study.plan import DataPlan
+from sources.nist import NAMES, all_datasets, as_csv, read_dataset
 
 
 def test_eleven_files_certify_77_values_of_15_digits() -> None:

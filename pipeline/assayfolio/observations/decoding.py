@@ -2,6 +2,7 @@
 
 from assayfolio.errors import DataError
 from assayfolio.observations.faults import FaultList, raise_faults, refusal
+from assayfolio.study.faults import shown
 
 MAX_BYTES = 64_000_000
 MAX_LINES = 1_000_000
@@ -37,7 +38,7 @@ def decoded_lines(content: bytes, file: str) -> tuple[list[str], bool]:
     try:
         text = body.decode("utf-8")
     except UnicodeDecodeError as error:
-        raise _wrong_encoding(body, error.start, len(content) - len(body), file) from None
+        raise _wrong_encoding(body, error, len(content) - len(body), file) from None
     if not text or text.isspace():
         raise refusal(file, "the file is empty", "the column names and the values are expected in it")
     lines = text.replace("\r\n", "\n").split("\n")
@@ -77,14 +78,18 @@ def _refuse_nul_bytes(body: bytes, file: str) -> None:
     raise_faults(file, faults)
 
 
-def _wrong_encoding(body: bytes, start: int, skipped: int, file: str) -> DataError:
+def _wrong_encoding(body: bytes, error: UnicodeDecodeError, skipped: int, file: str) -> DataError:
+    start = error.start
     line_start = body.rfind(b"\n", 0, start) + 1
     line = body.count(b"\n", 0, start) + 1
     column = len(body[line_start:start].decode("utf-8")) + 1
     byte = body[start : start + 1]
     found = f"byte 0x{byte[0]:02X} (number {skipped + start + 1} of the file) is not UTF-8"
+    if error.reason == "unexpected end of data":
+        found = f"the file ends within a character (byte number {skipped + start + 1})"
+        return refusal(file, found, "it may have been cut short; export it again", line, column)
     windows = byte.decode("cp1252", "replace")
-    likely = f"; it would be {windows} in Windows-1252" if windows != "\ufffd" else ""
+    likely = f"; it would be {shown(windows)} in Windows-1252" if windows != "\ufffd" else ""
     return refusal(file, found, f"{_WANTED}{likely}", line, column)
 
 

@@ -11,7 +11,7 @@ from fractions import Fraction
 from assayfolio.exact import magnitude
 from assayfolio.report.notation import fixed
 
-_STEPS = (Fraction(1), Fraction(2), Fraction(5), Fraction(10))
+_STEPS = (Fraction(1, 2), Fraction(1), Fraction(2), Fraction(5), Fraction(10))
 
 
 @dataclass(frozen=True, slots=True)
@@ -35,11 +35,19 @@ class Axis:
         return self.start + float(share) * (self.end - self.start)
 
 
-def nice_step(span: Fraction, steps: int) -> Fraction:
-    """The nice number nearest above a `steps`-th of `span`."""
-    rough = span / steps
-    base = Fraction(10) ** magnitude(rough)
-    return next(base * step for step in _STEPS if base * step >= rough)
+def nice_ticks(low: Fraction, high: Fraction, wanted: int) -> tuple[Fraction, tuple[Fraction, ...]]:
+    """The step, and the ticks from `low` to `high`, whose number is nearest to `wanted` (of two, the fewer)."""
+    base = Fraction(10) ** magnitude((high - low) / wanted)
+    best: tuple[int, Fraction, tuple[Fraction, ...]] | None = None
+    for step in (base * factor for factor in _STEPS):
+        first = -(-low // step)
+        ticks = tuple(step * (first + number) for number in range(int((high - step * first) // step) + 1))
+        distance = abs(len(ticks) - wanted)
+        if len(ticks) > 1 and (best is None or distance <= best[0]):
+            best = (distance, step, ticks)
+    if best is None:
+        raise ValueError("an axis needs two ends")
+    return best[1], best[2]
 
 
 def make_axis(
@@ -47,11 +55,11 @@ def make_axis(
     start: float,
     end: float,
     *,
-    steps: int = 5,
+    wanted: int = 6,
     include_zero: bool = False,
     power: int = 0,
 ) -> Axis:
-    """The axis that holds all `values` with a little room, in about `steps` steps.
+    """The axis that holds all `values` with a little room, with about `wanted` ticks.
 
     Labels count units of ten to the power `power`. Where they would have more than eight characters because
     the values share their leading figures, these are taken off as `origin`.
@@ -64,9 +72,7 @@ def make_axis(
     else:
         room = (high - low) / 25
     low, high = low - room, high + room
-    step = nice_step(high - low, steps)
-    first = -(-low // step)
-    ticks = tuple(step * (first + number) for number in range(int((high - step * first) // step) + 1))
+    step, ticks = nice_ticks(low, high, wanted)
     origin = _origin(ticks, step, power)
     places = max(0, power - magnitude(step))
     labels = tuple(fixed(tick - origin, places, power) for tick in ticks)

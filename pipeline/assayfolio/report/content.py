@@ -22,6 +22,7 @@ class Heading:
     """A heading below that of the section."""
 
     words: Prose
+    anchor: str = ""
     kind: Literal["heading"] = "heading"
 
 
@@ -35,21 +36,26 @@ class TableBlock:
 
 @dataclass(frozen=True, slots=True)
 class FigureBlock:
-    """Pictures side by side under one label and caption, with room for words beside the last."""
+    """Pictures side by side under one label and caption."""
 
     label: str
     pictures: tuple[Picture, ...]
     caption: Prose
     kind: Literal["figure"] = "figure"
 
+    @property
+    def half(self) -> bool:
+        """Whether the one picture leaves room for its caption beside it."""
+        return len(self.pictures) == 1 and self.pictures[0].width_mm < 82
+
 
 @dataclass(frozen=True, slots=True)
 class Entry:
-    """One line of a list of facts: what, and its value."""
+    """One line of a list of facts: what, its value, and the SHA-256 that goes with it."""
 
     what: Prose
     value: Prose
-    long: bool = False
+    digest: str = ""
 
 
 @dataclass(frozen=True, slots=True)
@@ -106,6 +112,7 @@ class Listing:
     value_width: str
     line_width: str
     per_row: int
+    unbroken: bool
     kind: Literal["listing"] = "listing"
 
 
@@ -162,7 +169,7 @@ class ReportContent:
     title: str
     document_title: str
     laboratory: str
-    address: tuple[str, ...]
+    address: str
     laboratory_note: str
     number: str
     facts: tuple[Prose, ...]
@@ -170,6 +177,7 @@ class ReportContent:
     summary: tuple[SummaryLine, ...]
     sign_off: tuple[SignatureBox, ...]
     sign_off_words: str
+    meaning_height: str
     cautions: Prose
     head_left: str
     head_right: str

@@ -8,7 +8,9 @@ from assayfolio.exact import Root, to_double
 from assayfolio.report.axes import Axis, make_axis
 from assayfolio.report.basis import Basis
 from assayfolio.report.figures import MOST_DOTS, Picture, axis_title
+
 from assayfolio.report.svg import DOT_INK, HAIRLINE, SECOND_INK, THIN_LINE, Drawing
+from assayfolio.report.typeface import figures_width
 
 WIDTH = 221.1  # 78 mm
 HEIGHT = 142.0
@@ -28,9 +30,10 @@ def residual_plots(basis: Basis) -> tuple[Picture, Picture]:
     largest = max(abs(residual) for residual in basis.residuals)
     size = basis.difference_scale.with_unit(basis.difference_scale.mean(largest))
     words = f"{basis.total} residuals, the largest {size} from zero, against "
+    by_order, by_level = words + "the order of the values in the file.", words + "the mean of their level."
     return (
-        Picture("residuals-order.svg", in_order.svg(words + "the order of the values in the file."), words + "the order of the values in the file.", 78),
-        Picture("residuals-mean.svg", by_mean.svg(words + "the mean of their level."), words + "the mean of their level.", 78),
+        Picture("residuals-order.svg", in_order.svg(by_order), by_order, 78),
+        Picture("residuals-mean.svg", by_mean.svg(by_level), by_level, 78),
     )
 
 
@@ -38,14 +41,12 @@ def _frame(basis: Basis, vertical: list[Fraction]) -> tuple[Drawing, Axis, float
     """A drawing with the vertical axis of residuals in it, and the place where the plot begins at left."""
     drawing = Drawing(WIDTH, HEIGHT)
     scale = basis.difference_scale
-    axis = make_axis(vertical, HEIGHT - 34, 8, steps=5, include_zero=True, power=scale.power)
-    from assayfolio.report.typeface import text_width
-
-    left = 14 + max(text_width(label, _SIZE) for label in axis.labels) + 4
+    axis = make_axis(vertical, HEIGHT - 34, 8, wanted=5, include_zero=True, power=scale.power)
+    left = 14 + max(figures_width(label, _SIZE) for label in axis.labels) + 4
     for tick, label in zip(axis.ticks, axis.labels, strict=True):
         y = axis.at(tick)
         drawing.line(left, y, left - 3, y, stroke=SECOND_INK, width=THIN_LINE)
-        drawing.text(left - 5, y + 2.5, label, size=_SIZE, anchor="end", fill=SECOND_INK)
+        drawing.figures(left - 5, y + 2.5, label, size=_SIZE, anchor="end", fill=SECOND_INK)
     drawing.line(left, axis.at(axis.ticks[0]), left, axis.at(axis.ticks[-1]), stroke=SECOND_INK)
     title = axis_title(axis, "residual", scale)
     drawing.text(7, (8 + HEIGHT - 34) / 2, title, size=_SIZE, anchor="middle", upright=False)
@@ -58,7 +59,7 @@ def _horizontal(drawing: Drawing, axis: Axis, title: str) -> None:
     for tick, label in zip(axis.ticks, axis.labels, strict=True):
         x = axis.at(tick)
         drawing.line(x, y, x, y + 3, stroke=SECOND_INK, width=THIN_LINE)
-        drawing.text(x, y + 11, label, size=_SIZE, anchor="middle", fill=SECOND_INK)
+        drawing.figures(x, y + 11, label, size=_SIZE, anchor="middle", fill=SECOND_INK)
     drawing.text((axis.start + axis.end) / 2, HEIGHT - 5, title, size=_SIZE, anchor="middle")
 
 
@@ -66,11 +67,11 @@ def _scatter(basis: Basis, across: list[Fraction], quantity: str | None, title: 
     residuals = list(basis.residuals)
     drawing, vertical, left = _frame(basis, residuals)
     if quantity is None:
-        axis = make_axis(across, left + 6, WIDTH - 8, steps=5)
+        axis = make_axis(across, left + 6, WIDTH - 8, wanted=5)
         whole = tuple(tick for tick in axis.ticks if tick.denominator == 1 and tick >= 0)
         axis = Axis(axis.low, axis.high, axis.start, axis.end, whole, tuple(str(tick) for tick in whole), axis.origin)
     else:
-        axis = make_axis(across, left + 6, WIDTH - 8, steps=4, power=basis.scale.power)
+        axis = make_axis(across, left + 6, WIDTH - 8, wanted=4, power=basis.scale.power)
         title = axis_title(axis, title, basis.scale)
     zero = vertical.at(0)
     drawing.line(left + 6, zero, WIDTH - 8, zero, stroke=HAIRLINE, width=THIN_LINE)
@@ -126,7 +127,7 @@ def normal_plot(basis: Basis, accent: str) -> Picture | None:
     upper = [Fraction(slope * z + h) for z, h in zip(quantiles, half, strict=True)]
     lower = [Fraction(slope * z - h) for z, h in zip(quantiles, half, strict=True)]
     drawing, vertical, left = _frame(basis, [*ordered, *upper, *lower])
-    axis = make_axis([Fraction(z) for z in quantiles], left + 6, WIDTH - 8, steps=5)
+    axis = make_axis([Fraction(z) for z in quantiles], left + 6, WIDTH - 8, wanted=5)
     across = [axis.at(z) for z in quantiles]
     edge = list(zip(across, map(vertical.at, upper), strict=True))
     edge += reversed(list(zip(across, map(vertical.at, lower), strict=True)))

@@ -8,8 +8,8 @@ from assayfolio.report.axes import Axis, make_axis
 from assayfolio.report.basis import Basis
 from assayfolio.report.notation import INFINITY, MINUS, Scale
 from assayfolio.report.svg import HAIR, HAIRLINE, INK, SECOND_INK, STRONG_LINE, THIN_LINE, Drawing
-from assayfolio.report.swarm import offsets
-from assayfolio.report.typeface import text_width, wrapped
+from assayfolio.report.swarm import lanes, offsets
+from assayfolio.report.typeface import figures_width, text_width, wrapped
 
 FULL_WIDTH = 464.9  # 164 mm
 DOT = 1.9
@@ -18,6 +18,10 @@ MOST_DOTS = 2000
 MOST_LEVELS = 32
 MOST_ROWS = 36
 
+_FEW_LEVELS = 8
+_MANY_LEVELS = 16
+_MOST_ROOM = 26.0  # to each side of the middle line of dots
+_BESIDE_DOTS = 16.0  # a dot's own height, the lane of the interval, and air
 _SIZE = 7.4
 _LINE = 9.2
 _BINS = 90
@@ -36,16 +40,13 @@ class Picture:
 
 def draw_axis(drawing: Drawing, axis: Axis, y: float, title: str, ends: tuple[float, float]) -> None:
     """A horizontal axis at `y`: its line spans `ends` only, ticks point outward, the title is centred below."""
-    drawing.line(*_both(ends, y), stroke=SECOND_INK, width=THIN_LINE)
+    places = [*ends, axis.at(axis.ticks[0]), axis.at(axis.ticks[-1])]
+    drawing.line(min(places), y, max(places), y, stroke=SECOND_INK, width=THIN_LINE)
     for tick, label in zip(axis.ticks, axis.labels, strict=True):
         x = axis.at(tick)
         drawing.line(x, y, x, y + 3, stroke=SECOND_INK, width=THIN_LINE)
-        drawing.text(x, y + 11, label, size=_SIZE, anchor="middle", fill=SECOND_INK)
+        drawing.figures(x, y + 11, label, size=_SIZE, anchor="middle", fill=SECOND_INK)
     drawing.text((axis.start + axis.end) / 2, y + 22, title, size=_SIZE, anchor="middle")
-
-
-def _both(ends: tuple[float, float], y: float) -> tuple[float, float, float, float]:
-    return min(ends), y, max(ends), y
 
 
 def axis_title(axis: Axis, what: str, scale: Scale) -> str:
@@ -55,14 +56,16 @@ def axis_title(axis: Axis, what: str, scale: Scale) -> str:
     return f"{what}, {scale.heading}" if scale.heading else what
 
 
-def draw_interval(drawing: Drawing, axis: Axis, y: float, ends: Interval, *, stroke: str = INK) -> None:
+def draw_interval(
+    drawing: Drawing, axis: Axis, y: float, ends: Interval, *, stroke: str = INK, cap: float = _CAP
+) -> None:
     """A thin line with flat ends; an open end runs to the end of the axis and has no flat end."""
     low = axis.start if ends[0] is None else axis.at(ends[0])
     high = axis.end if ends[1] is None else axis.at(ends[1])
     drawing.line(low, y, high, y, stroke=stroke, width=THIN_LINE)
     for end, x in zip(ends, (low, high), strict=True):
         if end is not None:
-            drawing.line(x, y - _CAP, x, y + _CAP, stroke=stroke, width=THIN_LINE)
+            drawing.line(x, y - cap, x, y + cap, stroke=stroke, width=THIN_LINE)
 
 
 def dot_plots(basis: Basis, accent: str) -> tuple[Picture, ...]:
@@ -82,69 +85,83 @@ def _label_column(names: list[str], share: float) -> float:
     return min(share, max(text_width(name, _SIZE, "semibold") for name in names) + 2)
 
 
+@dataclass(frozen=True, slots=True)
+class _Row:
+    """One level in a dot plot: its name in lines, where its dots go, how much room they need to a side."""
+
+    level: LevelFindings
+    words: list[str]
+    places: list[float]
+    room: float
+    height: float
+
+
 def _dot_plot(basis: Basis, levels: tuple[LevelFindings, ...], accent: str, name: str) -> Picture:
+    beside = len(levels) > _MANY_LEVELS
     column = _label_column([level.level for level in levels], 128)
-    lines = [wrapped(level.level, _SIZE, column, "semibold") for level in levels]
-    least = 30.0 if len(levels) <= 8 else 22.0 if len(levels) <= 16 else 17.0
-    heights = [max(least, _LINE * (len(words) + 1) + 4) for words in lines]
-    if len(levels) > 16:
-        heights = [max(least, _LINE * len(words) + 5) for words in lines]
-    drawing = Drawing(FULL_WIDTH, sum(heights) + 32)
-    numbers = column + 6 + text_width(f"n = {max(level.n for level in levels)}", 6.8)
-    start = (numbers if len(levels) > 16 else column) + 16
+    start = column + 16
+    if beside:
+        start += 6 + text_width(f"n = {max(level.n for level in levels)}", 6.8)
     ends: list[Fraction] = [end for level in basis.levels for end in (level.minimum, level.maximum)]
     ends += [Fraction(end) for level in basis.levels if level.ci for end in level.ci if end is not None]
     axis = make_axis(ends, start, FULL_WIDTH - 8, power=basis.scale.power)
+    rows = [_row(basis, level, axis, column, len(levels)) for level in levels]
+    drawing = Drawing(FULL_WIDTH, sum(row.height for row in rows) + 32)
     y = 4.0
-    for level, words, height in zip(levels, lines, heights, strict=True):
-        _name_level(drawing, level, words, y + height / 2, column, beside=len(levels) > 16)
-        _level_row(drawing, basis, level, axis, y + height / 2, height, accent)
-        y += height
+    for row in rows:
+        _name_level(drawing, row.level, row.words, y + row.height / 2, column, beside=beside)
+        _draw_row(drawing, basis, row, axis, y, accent)
+        y += row.height
     title = axis_title(axis, basis.response.response, basis.scale)
     draw_axis(drawing, axis, y + 2, title, (axis.at(min(ends)), axis.at(max(ends))))
-    return Picture(name, drawing.svg(_values_in_words(basis, levels)), _values_in_words(basis, levels), 164)
+    words = _values_in_words(basis, levels)
+    return Picture(name, drawing.svg(words), words, 164)
+
+
+def _row(basis: Basis, level: LevelFindings, axis: Axis, column: float, count: int) -> _Row:
+    words = wrapped(level.level, _SIZE, column, "semibold")
+    places = [
+        axis.at(value)
+        for value, row in zip(basis.values, basis.content.observations.rows, strict=True)
+        if row.level == level.level
+    ]
+    name_lines = len(words) + (0 if count > _MANY_LEVELS else 1)
+    least = 30.0 if count <= _FEW_LEVELS else 22.0 if count <= _MANY_LEVELS else 17.0
+    if basis.total > MOST_DOTS:
+        room = least * 0.3
+    else:
+        room = min(_MOST_ROOM, DOT_ROOM * max(abs(lane) for lane in lanes(places, DOT_ROOM)))
+    height = max(least, _LINE * name_lines + 4, 2 * room + _BESIDE_DOTS)
+    return _Row(level, words, places, room, height)
 
 
 def _name_level(
     drawing: Drawing, level: LevelFindings, words: list[str], middle: float, column: float, *, beside: bool
 ) -> None:
-    count = f"n = {level.n}"
     total = len(words) if beside else len(words) + 1
     y = middle - _LINE * total / 2 + 7
     for word in words:
         drawing.text(0, y, word, size=_SIZE, weight=600)
         y += _LINE
     if beside:
-        drawing.text(column + 6, middle - _LINE / 2 + 7, count, size=6.8, fill=SECOND_INK)
+        drawing.count(column + 6, middle - _LINE / 2 + 7, level.n)
     else:
-        drawing.text(0, y, count, size=6.8, fill=SECOND_INK)
+        drawing.count(0, y, level.n)
 
 
-def _level_row(
-    drawing: Drawing,
-    basis: Basis,
-    level: LevelFindings,
-    axis: Axis,
-    middle: float,
-    height: float,
-    accent: str,
-) -> None:
-    lane = min(height, 34.0)
-    dots, interval = middle - lane * 0.11, middle + lane * 0.30
-    room = lane * 0.27
-    mean = axis.at(level.mean)
-    drawing.line(mean, middle - lane * 0.40, mean, middle + lane * 0.40, stroke=accent, width=STRONG_LINE)
-    if level.ci is not None:
-        draw_interval(drawing, axis, interval, level.ci, stroke=accent)
-    places = [
-        axis.at(value)
-        for value, row in zip(basis.values, basis.content.observations.rows, strict=True)
-        if row.level == level.level
-    ]
+def _draw_row(drawing: Drawing, basis: Basis, row: _Row, axis: Axis, top: float, accent: str) -> None:
+    """Dots above, the interval in its own lane below, the bar of the mean through both."""
+    body = 2 * row.room + _BESIDE_DOTS
+    top += (row.height - body) / 2
+    dots, interval = top + 4.2 + row.room, top + body - 3.6
+    mean = axis.at(row.level.mean)
+    drawing.line(mean, min(top, interval - 13), mean, interval + _CAP, stroke=accent, width=STRONG_LINE)
+    if row.level.ci is not None:
+        draw_interval(drawing, axis, interval, row.level.ci, stroke=accent)
     if basis.total > MOST_DOTS:
-        _classes(drawing, places, axis, dots, room)
+        _classes(drawing, row.places, axis, dots, row.room)
         return
-    for x, offset in zip(places, offsets(places, DOT_ROOM, room), strict=True):
+    for x, offset in zip(row.places, offsets(row.places, DOT_ROOM, row.room), strict=True):
         drawing.ring(x, dots - offset, DOT)
 
 
@@ -214,7 +231,7 @@ def _figures(row: ComparisonRow, scale: Scale) -> list[str]:
 
 def _number_columns(figures: list[list[str]]) -> list[float]:
     count = max(len(texts) for texts in figures)
-    return [max(text_width(texts[i], _SIZE) for texts in figures if i < len(texts)) for i in range(count)]
+    return [max(figures_width(texts[i], _SIZE) for texts in figures if i < len(texts)) for i in range(count)]
 
 
 def _heads(drawing: Drawing, columns: list[float], right: float, head: str, *, with_interval: bool) -> None:
@@ -229,7 +246,7 @@ def _numbers(drawing: Drawing, texts: list[str], columns: list[float], right: fl
     x = right
     for text, width in zip(texts, columns, strict=False):
         x += 10 + width
-        drawing.text(x, baseline, text, size=_SIZE, anchor="end")
+        drawing.figures(x, baseline, text, size=_SIZE)
 
 
 def _intervals_in_words(basis: Basis, rows: tuple[ComparisonRow, ...]) -> str:

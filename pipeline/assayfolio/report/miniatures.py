@@ -10,8 +10,8 @@ from assayfolio.report.notation import MINUS
 from assayfolio.report.svg import SECOND_INK, THIN_LINE, Drawing
 from assayfolio.report.swarm import offsets
 
-WIDTH = 158.7  # 56 mm
-WIDTH_MM = 56.0
+WIDTH = 153.1  # 54 mm
+WIDTH_MM = 54.0
 _SIZE = 6.6
 _MOST_LINES = 16
 
@@ -25,7 +25,7 @@ def comparison_axis(basis: Basis) -> Axis | None:
             values += [Fraction(end) for end in row.ci or () if end is not None]
     if not values:
         return None
-    return make_axis(values, 6, WIDTH - 6, steps=4, include_zero=True, power=basis.difference_scale.power)
+    return make_axis(values, 6, WIDTH - 6, wanted=4, include_zero=True, power=basis.difference_scale.power)
 
 
 def _ticks(drawing: Drawing, axis: Axis, y: float, unit: str) -> None:
@@ -33,7 +33,7 @@ def _ticks(drawing: Drawing, axis: Axis, y: float, unit: str) -> None:
     for tick, label in zip(axis.ticks, axis.labels, strict=True):
         x = axis.at(tick)
         drawing.line(x, y, x, y + 2, stroke=SECOND_INK, width=0.5)
-        drawing.text(x, y + 9, label, size=_SIZE, anchor="middle", fill=SECOND_INK)
+        drawing.figures(x, y + 9, label, size=_SIZE, anchor="middle", fill=SECOND_INK)
     drawing.text(WIDTH / 2, y + 18, unit, size=_SIZE, anchor="middle", fill=SECOND_INK)
 
 
@@ -41,7 +41,7 @@ def family_picture(basis: Basis, family: ComparisonFamily, axis: Axis, accent: s
     """The estimates of a family with their intervals; as dots alone where there are very many."""
     rows = family.rows
     many = len(rows) > _MOST_LINES
-    pitch = max(3.4, min(8.0, 40.0 / len(rows)))
+    pitch = max(3.4, min(7.2, 44.0 / len(rows)))
     body = 36.0 if many else pitch * len(rows) + 6
     drawing = Drawing(WIDTH, body + 22)
     zero = axis.at(0)
@@ -53,8 +53,8 @@ def family_picture(basis: Basis, family: ComparisonFamily, axis: Axis, accent: s
     for number, row in enumerate(() if many else rows):
         y = 3 + pitch * (number + 0.5)
         if row.ci is not None:
-            draw_interval(drawing, axis, y, row.ci, stroke=accent)
-        drawing.dot(axis.at(row.estimate), y, 1.7, fill=accent)
+            draw_interval(drawing, axis, y, row.ci, stroke=accent, cap=pitch * 0.26)
+        drawing.dot(axis.at(row.estimate), y, min(1.7, pitch * 0.34), fill=accent)
     scale = basis.difference_scale
     _ticks(drawing, axis, body, f"difference, {scale.heading}" if scale.heading else "difference")
     title = f"{len(rows)} estimates of {family.name} on a scale with zero; figures stand in section 5."
@@ -66,9 +66,9 @@ def means_picture(basis: Basis, accent: str, name: str) -> Picture:
     levels = basis.levels
     values = [level.mean for level in levels]
     values += [Fraction(end) for level in levels for end in level.ci or () if end is not None]
-    axis = make_axis(values, 6, WIDTH - 6, steps=4, power=basis.scale.power)
+    axis = make_axis(values, 6, WIDTH - 6, wanted=4, power=basis.scale.power)
     many = len(levels) > _MOST_LINES
-    pitch = max(3.4, min(8.0, 40.0 / len(levels)))
+    pitch = max(3.4, min(7.2, 44.0 / len(levels)))
     body = 36.0 if many else pitch * len(levels) + 6
     drawing = Drawing(WIDTH, body + 22)
     if many:
@@ -78,8 +78,8 @@ def means_picture(basis: Basis, accent: str, name: str) -> Picture:
     for number, level in enumerate(() if many else levels):
         y = 3 + pitch * (number + 0.5)
         if level.ci is not None:
-            draw_interval(drawing, axis, y, level.ci, stroke=accent)
-        drawing.dot(axis.at(level.mean), y, 1.7, fill=accent)
+            draw_interval(drawing, axis, y, level.ci, stroke=accent, cap=pitch * 0.26)
+        drawing.dot(axis.at(level.mean), y, min(1.7, pitch * 0.34), fill=accent)
     unit = "level means" + (f" {MINUS} {basis.scale.mean(axis.origin).rstrip('0').rstrip('.')}" if axis.origin else "")
     unit += f", {basis.scale.heading}" if basis.scale.heading else ""
     _ticks(drawing, axis, body, unit)

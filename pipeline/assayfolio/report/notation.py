@@ -6,7 +6,8 @@ The rules, in one place:
 * a standard deviation or standard error has three significant digits;
 * F and t have three decimals;
 * p has four decimals from 0.001 upwards and two significant digits below, with more digits where it would
-  otherwise read as equal to alpha; it is never zero: below 1e-300 it is "< 1 x 10^-300";
+  otherwise read as equal to alpha; it is never zero: below 1e-300 it is "< 1 x 10^-300", and never one
+  unless it is: near one it is "> 0.9999";
 * a sum of squares or mean square has as many decimals as give the within mean square four digits.
 """
 
@@ -84,6 +85,8 @@ def probability(p: float, alpha: Number | None = None, log10_p: float | None = N
     """A p value by the rule of this module; `alpha` is the level it must not be mistaken for."""
     if p < _FLOOR or (log10_p is not None and log10_p < _FLOOR_POWER):
         return f"<{THIN}1{THIN}{TIMES}{THIN}{power_of_ten(_FLOOR_POWER)}"
+    if p < 1 and rounded_units(p, 4) == 10**4:
+        return f">{THIN}0.9999"
     if p >= 0.001:
         places = 4
         while places < 15 and _reads_as_alpha(p, alpha, places):
@@ -103,7 +106,7 @@ def _reads_as_alpha(p: float, alpha: Number | None, places: int) -> bool:
 
 def equals(text: str) -> str:
     """`text` with the sign that introduces it: "= 0.0123", or "< ..." as it stands."""
-    return text if text.startswith("<") else f"={THIN}{text}"
+    return text if text[0] in "<>" else f"={THIN}{text}"
 
 
 def percent(share: Fraction) -> str:
@@ -184,6 +187,13 @@ class Scale:
         return significant_places(value, 3) + self.power if _comparable(value) else 0
 
 
+def squared_unit(unit: str | None) -> str:
+    """The unit of a sum of squares."""
+    if not unit:
+        return ""
+    return f"{unit}²" if unit.isalpha() else f"({unit})²"
+
+
 def squares(values: Iterable[Number], measure: Number) -> list[str]:
     """Sums of squares and mean squares of one table, alike in decimals.
 
@@ -202,6 +212,6 @@ def split_at_point(text: str) -> tuple[str, str]:
     for position, character in enumerate(text):
         if character == ".":
             return text[:position], text[position:]
-        if not (character.isdecimal() or character in f"{MINUS}<{THIN}"):
+        if not (character.isdecimal() or character in f"{MINUS}<>{THIN}"):
             return text[:position].rstrip(THIN), text[len(text[:position].rstrip(THIN)) :]
     return text, ""

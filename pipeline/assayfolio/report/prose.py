@@ -9,6 +9,7 @@ from dataclasses import dataclass
 from typing import TypeAlias
 
 _STYLES = {"*": "symbol", "#": "strong", "~": "quiet", "_": "sub", "^": "sup"}
+_LONG_WORD = re.compile(r"\w{8}")
 _TOKEN = re.compile(r"([*#~_^])(.+?)\1|\{([a-z0-9_]+)\}")
 
 
@@ -35,7 +36,7 @@ def prose(pattern: str, **values: Words) -> Prose:
         if match.start() > position:
             spans.append(Span(pattern[position : match.start()]))
         if match[3]:
-            spans.extend(as_prose(values[match[3]]))
+            spans.extend(_given(values[match[3]]))
         else:
             outer = _STYLES[match[1]]
             spans.extend(Span(span.text, f"{outer} {span.style}".strip()) for span in prose(match[2], **values))
@@ -43,6 +44,13 @@ def prose(pattern: str, **values: Words) -> Prose:
     if position < len(pattern):
         spans.append(Span(pattern[position:]))
     return tuple(spans)
+
+
+def _given(words: Words) -> Prose:
+    """A value put into a pattern; where it holds long words, it is marked so that none is ever hyphenated."""
+    if isinstance(words, str) and _LONG_WORD.search(words):
+        return (Span(words, "given"),)
+    return as_prose(words)
 
 
 def as_prose(words: Words) -> Prose:

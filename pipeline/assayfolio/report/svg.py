@@ -6,7 +6,7 @@ Coordinates are rounded to hundredths of a point. Text is live and set in the re
 from collections.abc import Iterable
 from xml.sax.saxutils import escape, quoteattr
 
-from assayfolio.report.typeface import FAMILY
+from assayfolio.report.typeface import FAMILY, FIGURES_FAMILY, text_width
 
 INK = "#1d2429"
 SECOND_INK = "#5b666d"
@@ -86,17 +86,30 @@ class Drawing:
         fill: str = INK,
         anchor: str = "start",
         weight: int = 400,
-        style: str = "normal",
         upright: bool = True,
+        family: str = FAMILY,
     ) -> None:
         """Live text with its baseline at `y`; turned a quarter to the left where it is not upright."""
         turn = "" if upright else f' transform="rotate(-90 {coordinate(x)} {coordinate(y)})"'
-        slant = "" if style == "normal" else f' font-style="{style}"'
         self._elements.append(
-            f'<text x="{coordinate(x)}" y="{coordinate(y)}" font-family="{FAMILY}" font-size="{coordinate(size)}"'
-            f' font-weight="{weight}"{slant} fill="{fill}" text-anchor={quoteattr(anchor)}{turn}>'
+            f'<text x="{coordinate(x)}" y="{coordinate(y)}" font-family="{family}" font-size="{coordinate(size)}"'
+            f' font-weight="{weight}" fill="{fill}" text-anchor={quoteattr(anchor)}{turn}>'
             f"{escape(words)}</text>"
         )
+
+    def figures(
+        self, x: float, y: float, words: str, *, size: float = 7.2, fill: str = INK, anchor: str = "end"
+    ) -> None:
+        """A number, its figures of equal width so that columns align."""
+        self.text(x, y, words, size=size, fill=fill, anchor=anchor, family=f"{FIGURES_FAMILY}, {FAMILY}")
+
+    def count(self, x: float, y: float, n: int, *, size: float = 6.8, fill: str = SECOND_INK) -> None:
+        """The number of values: `n = 6` with the symbol in italics."""
+        self._elements.append(
+            f'<text x="{coordinate(x)}" y="{coordinate(y)}" font-family="{FAMILY}" font-size="{coordinate(size)}"'
+            f' font-style="italic" fill="{fill}">n</text>'
+        )
+        self.text(x + text_width("n ", size, "italic"), y, f"= {n}", size=size, fill=fill)
 
     def svg(self, title: str) -> bytes:
         """The drawing as an SVG file; `title` says in words what it shows."""

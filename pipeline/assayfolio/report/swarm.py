@@ -25,5 +25,5 @@ def offsets(places: Sequence[float], diameter: float, room: float) -> list[float
     """The distance of each dot from the middle line; lanes move closer where `room` to a side is too small."""
     chosen = lanes(places, diameter)
     reach = max((abs(lane) for lane in chosen), default=0)
-    spacing = diameter if reach * diameter <= room else room / reach
+    spacing = min(diameter, room / reach) if reach else 0.0
     return [lane * spacing for lane in chosen]

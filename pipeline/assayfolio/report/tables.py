@@ -6,15 +6,18 @@ from typing import Literal
 
 from assayfolio.report.notation import split_at_point
 from assayfolio.report.prose import Prose, Words, as_prose, plain
-from assayfolio.report.typeface import POINTS_PER_MM, text_width
+from assayfolio.report.typeface import POINTS_PER_MM, figures_width, text_width
 
 TEXT_WIDTH_MM = 164.0
 _BODY = 8.4
 _HEAD = 7.6
-_GAP = 4.2
+_GAP = 3.8
+_EASY_TEXT = 48.0
 _LEAST_TEXT = 30.0
+_COMFORTABLE = 7.3
+_SMALLEST = 5.6
 _ZEBRA_FROM = 9
-_UNBROKEN_TO = 12
+UNBROKEN_TO = 12
 
 Kind = Literal["text", "number", "words"]
 
@@ -92,12 +95,17 @@ def lay_out(
         width=_mm(sum(widths)),
         size=f"{size:.2f}pt",
         zebra=len(rows) >= _ZEBRA_FROM,
-        unbroken=len(rows) <= _UNBROKEN_TO,
+        unbroken=len(rows) <= UNBROKEN_TO,
     )
 
 
 def _mm(width: float) -> str:
     return f"{width:.2f}mm"
+
+
+def fits(columns: Sequence[Column], rows: Sequence[Sequence[Words]]) -> bool:
+    """Whether a table of these rows fits at its proper size, text columns wrapped if need be."""
+    return _widths(columns, rows)[0] > _COMFORTABLE
 
 
 def _widths(columns: Sequence[Column], rows: Sequence[Sequence[Words]]) -> tuple[float, list[float]]:
@@ -113,7 +121,8 @@ def _widths(columns: Sequence[Column], rows: Sequence[Sequence[Words]]) -> tuple
         wanted = sum(natural[index] for index in texts)
         if wanted <= room:
             return size, natural
-        if room >= _LEAST_TEXT * len(texts) or size <= 5.6:
+        least = _EASY_TEXT if size > _COMFORTABLE else _LEAST_TEXT
+        if room >= min(wanted, least * len(texts)) or size <= _SMALLEST:
             for index in texts:
                 natural[index] = max(12.0, natural[index] * room / wanted)
             return size, natural
@@ -124,8 +133,8 @@ def _natural(column: Column, cells: Sequence[Words], size: float) -> float:
     head = max(_word_width(column.head, column.kind), text_width(column.unit, _HEAD))
     if column.kind == "number":
         parts = [split_at_point(plain(cell)) for cell in cells]
-        whole = max((text_width(before, size) for before, _ in parts), default=0.0)
-        rest = max((text_width(after, size) for _, after in parts), default=0.0)
+        whole = max((figures_width(before, size) for before, _ in parts), default=0.0)
+        rest = max((figures_width(after, size) for _, after in parts), default=0.0)
         body = whole + rest
     else:
         body = max((text_width(plain(cell), size, "semibold") for cell in cells), default=0.0)
@@ -140,7 +149,7 @@ def _word_width(head: Words, kind: Kind) -> float:
 def _cells(column: Column, cells: Sequence[Words], size: float) -> list[Cell]:
     if column.kind != "number":
         return [Cell(as_prose(cell)) for cell in cells]
-    rests = [text_width(split_at_point(plain(cell))[1], size) for cell in cells]
+    rests = [figures_width(split_at_point(plain(cell))[1], size) for cell in cells]
     widest = max(rests, default=0.0)
     return [
         Cell(as_prose(cell), f"{widest - rest:.2f}pt" if widest - rest > 0.05 and plain(cell) else "")

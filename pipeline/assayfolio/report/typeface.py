@@ -12,9 +12,16 @@ FACES: dict[Face, str] = {
     "italic": "Inter-Italic.ttf",
 }
 FAMILY = "Inter"
+FIGURES_FAMILY = "Inter Tabular"  # the regular face with figures of equal width, for columns in drawings
 FONT_FOLDER = Path(__file__).resolve().parent.parent / "fonts"
 
 POINTS_PER_MM = 72 / 25.4
+
+# What the typeface's tabular figures do to advances: these are as wide as a figure space, or a fixed narrow width.
+_FIGURE_SPACE = 0x2007
+_EQUAL = "0123456789-\u2212\u00d7=<>+"
+_NARROW = ".,: "
+_NARROW_ADVANCE = 550
 
 
 @cache
@@ -28,12 +35,23 @@ def _advances(face: Face) -> tuple[dict[int, int], int, int]:
 
 
 def text_width(text: str, size: float, face: Face = "regular") -> float:
-    """The width of `text` set in `size` points, in points; figures have equal widths, as everywhere here."""
+    """The width of `text` set in `size` points, in points."""
     characters, missing, units = _advances(face)
-    figure = characters[0x2007]  # the figure space is as wide as every tabular figure
+    return sum(characters.get(ord(character), missing) for character in text) * size / units
+
+
+def figures_width(text: str, size: float) -> float:
+    """The width of `text` with figures and signs of equal width, as in a column of numbers, in points."""
+    characters, missing, units = _advances("regular")
+    equal = characters[_FIGURE_SPACE]
     total = 0
     for character in text:
-        total += figure if character in "0123456789" else characters.get(ord(character), missing)
+        if character in _EQUAL:
+            total += equal
+        elif character in _NARROW:
+            total += _NARROW_ADVANCE
+        else:
+            total += characters.get(ord(character), missing)
     return total * size / units
 
 

@@ -10,21 +10,15 @@ NOT_REGISTERED = "not pre-registered"
 DRAFT_SENTENCE = "draft unless every sign-off field on page 1 carries a valid signature"
 NO_SIGN_OFF = "the study plans no sign-off: this report carries no signatures"
 
-CAUTION_SHOWN = (
-    "A difference shown is not by itself a difference that matters: hold the size and its interval against "
-    "what matters in use. Equivalence was not tested."
-)
+CAUTION_SHOWN = "Whether a difference shown matters, its size and interval say. Equivalence was not tested."
 CAUTION_NOT_SHOWN = (
-    "Not shown does not mean absent: the data are compatible with every value inside the interval. "
-    "Equivalence was not tested."
+    "Not shown is not absent: the data are compatible with every value in the interval. Equivalence was not tested."
 )
 CAUTION_NO_INTERVAL = (
-    "Not shown does not mean absent: differences too small to be shown by this many values remain possible. "
-    "Equivalence was not tested."
+    "Not shown is not absent: a difference too small for this many values may exist. Equivalence was not tested."
 )
 CAUTION_MIXED = (
-    "Where a difference is shown, its size and interval say whether it matters; where it is not shown, it may "
-    "still exist. Equivalence was not tested."
+    "A difference shown may be too small to matter; one not shown may still exist. Equivalence was not tested."
 )
 CAUTIONS = (
     "What this document is not: it is not a release decision, and it takes no decision on any lot, method or "
@@ -67,13 +61,13 @@ def row_verdict(verdict: str) -> str:
     return {DIFFERENCE_SHOWN: "shown", DIFFERENCE_NOT_SHOWN: "not shown"}.get(verdict, verdict)
 
 
-def check_sentence(basis: Basis, check: CheckFindings) -> Prose:
-    """What a check found, without the part of its note that never changes."""
-    name = typographic(check.name)
+def check_words(basis: Basis, check: CheckFindings) -> Prose:
+    """What a check found, in a few words: its name, p, and the reading without the part that never changes."""
+    name = typographic(check.name).split(" ")[0]
+    note = check.note.split(" at level ")[0].split(";")[0]
     if check.p is None:
-        return prose("{name}: {note}.", name=name, note=check.note)
-    note = check.note.split(";")[0]
-    return prose("{name}: {note} ({p}).", name=name, note=note, p=p_words(basis, check.p))
+        return prose("{name}: {note}", name=name, note=note)
+    return prose("{name}: {note} ({p})", name=name, note=note, p=p_words(basis, check.p))
 
 
 def typographic(name: str) -> str:

@@ -7,7 +7,12 @@ Holm 1979 (Scand. J. Stat. 6, 65). Formulas from memory.
 
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass
-from math import expm1, log1p, log10
+from math import expm1, log, log1p, log10
+
+from assayfolio.exact import round_significant
+
+_LN10 = log(10.0)
+_SMALLEST_P = 1e-290  # below it a double soon loses digits, and the logarithm stands alone
 
 
 @dataclass(frozen=True, slots=True)
@@ -16,6 +21,17 @@ class Tail:
 
     p: float
     log10_p: float
+
+
+def stated(tail: Tail) -> Tail:
+    """`tail` as findings state it: p rounded to 12 significant digits, and the logarithm of that p.
+
+    Near p = 1 the logarithm says no more than the stated digits of p do; taken from them, the two always
+    agree. Where p is too small for a double the logarithm is the tail's own.
+    """
+    p = round_significant(tail.p)
+    log10_p = log10(p) if tail.p >= _SMALLEST_P else tail.log10_p
+    return Tail(p, round_significant(log10_p))
 
 
 def unadjusted(tails: Sequence[Tail]) -> tuple[Tail, ...]:
@@ -40,7 +56,7 @@ def holm(tails: Sequence[Tail]) -> tuple[Tail, ...]:
     floor = Tail(0.0, float("-inf"))
     for rank, index in enumerate(order):
         stepped = _times(tails[index], len(tails) - rank)
-        floor = stepped if stepped.log10_p > floor.log10_p else floor
+        floor = Tail(max(floor.p, stepped.p), max(floor.log10_p, stepped.log10_p))
         adjusted[index] = floor
     return tuple(adjusted)
 
@@ -68,9 +84,11 @@ def _times(tail: Tail, factor: int) -> Tail:
 
 
 def _sidak(tail: Tail, size: int) -> Tail:
-    if tail.p >= 1.0:
+    if size == 1 or tail.p >= 1.0 or tail.log10_p >= 0.0:
         return tail
-    if tail.p < 1e-290:
-        return Tail(size * tail.p, tail.log10_p + log10(size))  # the two agree far beyond double precision
-    p = -expm1(size * log1p(-tail.p))
+    if tail.p < _SMALLEST_P:
+        return Tail(size * tail.p, tail.log10_p + log10(size))  # equal far beyond double precision
+    # Near p = 1 its logarithm knows 1 - p better than p itself does.
+    log_rest = log1p(-tail.p) if tail.p < 0.5 else log(-expm1(tail.log10_p * _LN10))
+    p = -expm1(size * log_rest)
     return Tail(p, log10(p))

@@ -3,13 +3,14 @@
 from collections.abc import Sequence
 from dataclasses import dataclass
 from fractions import Fraction
+from math import frexp, ldexp
 
 import numpy as np
 
-from assayfolio.exact import Decimal10, ExactSums, to_double
+from assayfolio.exact import Decimal10, ExactSums
 from assayfolio.statistics.adjustment import Tail
+from assayfolio.statistics.inference import variance_ratio_tail
 from assayfolio.statistics.oneway import NotComputableError, one_way
-from assayfolio.statistics.tails import f_log10_sf, f_sf
 
 SHAPIRO_WILK_LIMITS = (3, 5000)
 
@@ -43,9 +44,8 @@ def brown_forsythe_variances(groups: Sequence[tuple[str, Sequence[Decimal10]]]) 
     analysis = one_way(distances)
     if analysis.f is None:
         raise NotComputableError("the distances from the level medians do not vary within any level")
-    f, df1, df2 = to_double(analysis.f), analysis.df_between, analysis.df_within
-    tail = Tail(float(f_sf(f, df1, df2)), float(f_log10_sf(f, df1, df2)))
-    return EqualVariancesCheck(analysis.f, (df1, df2), tail)
+    tail = variance_ratio_tail(analysis)
+    return EqualVariancesCheck(analysis.f, (analysis.df_between, analysis.df_within), tail)
 
 
 def _distances_from_median(values: Sequence[Decimal10]) -> ExactSums:
@@ -63,8 +63,10 @@ def residuals(groups: Sequence[tuple[str, Sequence[Decimal10]]]) -> tuple[float,
     out: list[float] = []
     for _, values in groups:
         sums = ExactSums.of(values)
-        mean = sums.sum / sums.n
-        out.extend(to_double(value.fraction - mean) for value in values)
+        unit = Fraction(10) ** sums.exponent / sums.n
+        for value in values:
+            steps = value.mantissa * 10 ** (value.exponent - sums.exponent) * sums.n - sums.total
+            out.append(steps * unit.numerator / unit.denominator)  # integers: rounded once, correctly
     return tuple(out)
 
 
@@ -84,5 +86,10 @@ def shapiro_wilk(values: Sequence[float]) -> NormalityCheck:
         raise NotComputableError("all residuals are equal")
     from scipy.stats import shapiro  # slow to load, so only where asked for
 
-    result = shapiro(np.asarray(values, dtype=np.float64))
+    # The algorithm takes a range below 1e-19 for no range at all, whatever the unit; W does not depend on the
+    # unit, and a power of two changes no digit. It also starts from a value in the middle of the list, so the
+    # last digit of p would follow the order of the rows.
+    _, power = frexp(max(values) - min(values))
+    scaled = [ldexp(value, -power) for value in sorted(values)]
+    result = shapiro(np.asarray(scaled, dtype=np.float64))
     return NormalityCheck(float(result.statistic), float(result.pvalue))

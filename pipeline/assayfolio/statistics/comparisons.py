@@ -17,6 +17,7 @@ import numpy as np
 from assayfolio.exact import Root, round_significant, to_double
 from assayfolio.statistics.adjustment import P_ADJUSTMENTS, Tail, bonferroni_level, sidak_level
 from assayfolio.statistics.distributions import (
+    MOST_MEANS,
     studentized_range_isf,
     studentized_range_log10_sf,
     studentized_range_sf,
@@ -86,7 +87,7 @@ def contrast_estimate(analysis: OneWay, label: str, weights: Mapping[str, Fracti
     return Estimate(
         label,
         sum((weight * level.mean for level, weight in summaries), Fraction(0)),
-        sum((weight**2 / level.n for level, weight in summaries), Fraction(0)),
+        sum((Fraction(weight) ** 2 / level.n for level, weight in summaries), Fraction(0)),
     )
 
 
@@ -100,7 +101,7 @@ def compare(
     Raises NotComputableError where nothing varies within the levels, KeyError for another adjustment.
     """
     _require_error_term(analysis)
-    statistics = [_statistic(analysis, estimate) for estimate in estimates]
+    statistics = _statistics(analysis, estimates)
     tails = _t_tails(statistics, analysis.df_within, alternative)
     adjusted = P_ADJUSTMENTS[adjust](tails)
     multiplier = _t_multiplier(adjust, alternative, alpha, len(estimates), analysis.df_within)
@@ -112,13 +113,20 @@ def compare_tukey_kramer(
 ) -> tuple[ComparisonResult, ...]:
     """All pairs by the Tukey-Kramer procedure: tails of the studentised range of k means.
 
-    The statistic stays t; the range statistic is q = |t| * sqrt(2). Exact for equal n, conservative for
-    unequal n (Hayter 1984, Ann. Stat. 12, 61; Kramer 1956, Biometrics 12, 307; from memory).
-    Raises NotComputableError where nothing varies within the levels.
+    k is the number of levels, whatever `estimates` holds. The statistic stays t; the range statistic is
+    q = |t| * sqrt(2). Exact for equal n, conservative for unequal n (Hayter 1984, Ann. Stat. 12, 61; Kramer
+    1956, Biometrics 12, 307; from memory). For two levels it is the t test.
+    Raises NotComputableError where nothing varies within the levels, and for more than 200 levels.
     """
     _require_error_term(analysis)
-    statistics = [_statistic(analysis, estimate) for estimate in estimates]
     df, k = analysis.df_within, analysis.k
+    if k > MOST_MEANS:
+        raise NotComputableError(
+            f"the studentized range is computed for up to {MOST_MEANS} levels; here are {k:,}"
+        )
+    if k == 2:
+        return compare(analysis, estimates, "none", TWO_SIDED, alpha)
+    statistics = _statistics(analysis, estimates)
     tails = _t_tails(statistics, df, TWO_SIDED)
     q = np.array([to_double(Root.of(2 * statistic.square)) for statistic in statistics])
     p, log10_p = studentized_range_sf(q, k, df), studentized_range_log10_sf(q, k, df)
@@ -132,9 +140,12 @@ def _require_error_term(analysis: OneWay) -> None:
         raise NotComputableError("nothing varies within the levels, so there is no error to compare with")
 
 
-def _statistic(analysis: OneWay, estimate: Estimate) -> Root:
-    sign = (estimate.value > 0) - (estimate.value < 0)
-    return Root(sign, estimate.value**2 / (analysis.ms_within * estimate.variance_factor))
+def _statistics(analysis: OneWay, estimates: Sequence[Estimate]) -> list[Root]:
+    variance = analysis.ms_within
+    return [
+        Root((one.value > 0) - (one.value < 0), one.value**2 / (variance * one.variance_factor))
+        for one in estimates
+    ]
 
 
 def _t_tails(statistics: Sequence[Root], df: int, alternative: str) -> tuple[Tail, ...]:
@@ -165,8 +176,9 @@ def _results(
     alternative: str,
 ) -> tuple[ComparisonResult, ...]:
     results = []
+    variance, df = analysis.ms_within, analysis.df_within
     for estimate, statistic, tail, after in zip(estimates, statistics, tails, adjusted, strict=True):
-        se = Root.of(analysis.ms_within * estimate.variance_factor)
+        se = Root.of(variance * estimate.variance_factor)
         interval = None
         if multiplier is not None:
             lower, upper = centred_interval(estimate.value, multiplier * to_double(se))
@@ -175,9 +187,7 @@ def _results(
                 None if alternative == GREATER else upper,
             )
         results.append(
-            ComparisonResult(
-                estimate.label, estimate.value, se, analysis.df_within, statistic, tail, after, interval
-            )
+            ComparisonResult(estimate.label, estimate.value, se, df, statistic, tail, after, interval)
         )
     return tuple(results)
 

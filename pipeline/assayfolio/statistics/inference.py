@@ -25,13 +25,25 @@ def omnibus_test(analysis: OneWay, alpha: float) -> OmnibusTest:
     """The F test of "all k level means are equal" at level `alpha`.
 
     Assumes independent values, normally distributed within each level with one common variance.
-    Raises NotComputableError where nothing varies within the levels.
+    Raises NotComputableError where nothing varies within the levels, or F is beyond the range of doubles.
+    """
+    df1, df2 = analysis.df_between, analysis.df_within
+    return OmnibusTest(variance_ratio_tail(analysis), float(f_isf(alpha, df1, df2)))
+
+
+def variance_ratio_tail(analysis: OneWay) -> Tail:
+    """The probability of a variance ratio of at least `analysis.f` where all true means are equal.
+
+    Raises NotComputableError where nothing varies within the levels, or F is beyond the range of doubles.
     """
     if analysis.f is None:
         raise NotComputableError("nothing varies within the levels, so F is not defined")
-    f, df1, df2 = to_double(analysis.f), analysis.df_between, analysis.df_within
-    tail = Tail(float(f_sf(f, df1, df2)), float(f_log10_sf(f, df1, df2)))
-    return OmnibusTest(tail, float(f_isf(alpha, df1, df2)))
+    try:
+        f = to_double(analysis.f)
+    except OverflowError:
+        raise NotComputableError("the values differ by more than 150 powers of ten") from None
+    df1, df2 = analysis.df_between, analysis.df_within
+    return Tail(float(f_sf(f, df1, df2)), float(f_log10_sf(f, df1, df2)))
 
 
 def mean_interval(analysis: OneWay, level: LevelSummary, alpha: float) -> tuple[float, float]:

@@ -44,22 +44,18 @@ class LevelSummary:
 
 @dataclass(frozen=True, slots=True)
 class OneWay:
-    """The analysis of variance of k levels; all sums of squares and mean squares are exact."""
+    """The analysis of variance of k levels with N = `n_total` values; sums and mean squares are exact."""
 
     levels: tuple[LevelSummary, ...]
     grand_mean: Fraction
     ss_between: Fraction
     ss_within: Fraction
+    n_total: int
 
     @property
     def k(self) -> int:
         """The number of levels."""
         return len(self.levels)
-
-    @property
-    def n_total(self) -> int:
-        """The number of values, N."""
-        return sum(level.n for level in self.levels)
 
     @property
     def df_between(self) -> int:
@@ -97,8 +93,11 @@ class OneWay:
         return self.ss_between / self.ss_total if self.ss_total else None
 
     def summary_of(self, level: str) -> LevelSummary:
-        """The summary of the level of that name."""
-        return next(summary for summary in self.levels if summary.level == level)
+        """The summary of the level of that name. Raises KeyError where there is none."""
+        for summary in self.levels:
+            if summary.level == level:
+                return summary
+        raise KeyError(level)
 
 
 def one_way(groups: Sequence[tuple[str, ExactSums]]) -> OneWay:
@@ -123,7 +122,7 @@ def one_way(groups: Sequence[tuple[str, ExactSums]]) -> OneWay:
     grand_sum = sum((level.sums.sum for level in levels), Fraction(0))
     between = sum((level.sums.sum**2 / level.n for level in levels), Fraction(0)) - grand_sum**2 / n_total
     within = sum((level.ss for level in levels), Fraction(0))
-    return OneWay(levels, grand_sum / n_total, between, within)
+    return OneWay(levels, grand_sum / n_total, between, within, n_total)
 
 
 def _summary(level: str, sums: ExactSums) -> LevelSummary:

@@ -4,6 +4,7 @@ from dataclasses import dataclass
 from fractions import Fraction
 from typing import Literal
 
+from assayfolio.exact import to_double
 from assayfolio.study.data_section import by_level, level_of
 from assayfolio.study.faults import listed
 from assayfolio.study.fields import (
@@ -40,12 +41,14 @@ from assayfolio.study.vocabulary import (
 )
 
 _FAMILIES: tuple[Literal["against", "pairs", "weights"], ...] = ("against", "pairs", "weights")
+_MARGINS = ("margin", "lower", "upper", "margin-percent")
 _ONLY_FOR: dict[Adjustment, Literal["against", "pairs"]] = {
     "tukey-kramer": "pairs",
     "games-howell": "pairs",
     "dunnett": "against",
     "dunnett-step-down": "against",
 }
+_LONGEST_BITS = 128
 _FOR_ONE_ROW: tuple[Adjustment, ...] = ("none", "scheffe")
 _alternative: Reader[Alternative] = choice(ALTERNATIVES)
 _method: Reader[Adjustment] = choice(ADJUSTMENTS)
@@ -99,6 +102,8 @@ def _has_one_of(fields: Fields, keys: tuple[str, ...]) -> bool:
     present = tuple(key for key in keys if key in fields)
     if len(present) == 1:
         return True
+    if not present and any(fields.unreadable(key) for key in keys):
+        return False
     choices = listed(tuple(f"`{key}`" for key in keys))
     subject = fields.named("").rstrip(".")
     found = f"an entry of `{subject}` has none of {choices}"
@@ -130,7 +135,7 @@ def _adjustment(fields: Fields, surroundings: Surroundings) -> Adjustment:
 
 def _refuse_absent_adjustment(fields: Fields, surroundings: Surroundings) -> None:
     """Say so where a family of more than one row leaves out how it is adjusted."""
-    if "against" not in fields and "pairs" not in fields:
+    if fields.unreadable("adjust") or ("against" not in fields and "pairs" not in fields):
         return
     if surroundings.levels is None or 0 < len(surroundings.levels) <= 2:
         return
@@ -147,10 +152,16 @@ def _weights(value: Value, surroundings: Surroundings) -> tuple[tuple[str, Fract
     weights = by_level(value, node, surroundings.declared, any_number)
     total = sum((weight for _, weight in weights), Fraction(0))
     if total:
-        raise value.unreadable(f"add up to {total}", "weights that add up to exactly 0")
+        raise value.unreadable(f"add up to {_in_words(total)}", "weights that add up to exactly 0")
     if not any(weight for _, weight in weights):
         raise value.unreadable("hold no weight but 0", "weights above and below 0 that add up to 0")
     return weights
+
+
+def _in_words(total: Fraction) -> str:
+    """The number as a fraction, or rounded where the fraction would be very long."""
+    long = max(total.numerator.bit_length(), total.denominator.bit_length()) > _LONGEST_BITS
+    return f"about {to_double(total):.6g}" if long else str(total)
 
 
 def equivalence_in(surroundings: Surroundings) -> Reader[EquivalencePlan]:
@@ -180,10 +191,11 @@ def _margins(fields: Fields) -> tuple[Fraction | None, Fraction | None, Fraction
     upper = fields.optional("upper", any_number)
     percent = fields.optional("margin-percent", positive)
     kinds = ("margin" in fields, "lower" in fields or "upper" in fields, "margin-percent" in fields)
-    if sum(kinds) != 1:
+    misspelt = any(fields.unreadable(key) and key not in fields for key in _MARGINS)
+    if sum(kinds) != 1 and not misspelt:
         found = "an entry of `equivalence` has " + ("more than one margin" if any(kinds) else "no margin")
         fields.faults.add(fields.place, found, "write `margin`, or `lower` and `upper`, or `margin-percent`")
-    elif kinds[1] and ("lower" not in fields or "upper" not in fields):
+    elif kinds[1] and not misspelt and ("lower" not in fields or "upper" not in fields):
         there, absent = ("lower", "upper") if "lower" in fields else ("upper", "lower")
         found = f"`equivalence.{there}` stands without `{absent}`"
         fields.faults.add(fields.place_of(there), found, f"add `{absent}: ...`")

@@ -113,7 +113,8 @@ def _per_level(
 ) -> tuple[tuple[str, int], ...]:
     if not node.entries:
         raise value.unreadable("is an empty mapping", "a whole number for each level, or leave the key out")
-    absent = [level for level in levels or () if node.entry(level) is None]
+    present = {entry.key.text for entry in node.entries}
+    absent = [level for level in levels or () if level not in present]
     if absent:
         names = ", ".join(shown(level) for level in absent[:3])
         more = f" and {len(absent) - 3} more" if len(absent) > 3 else ""
@@ -136,6 +137,6 @@ def level_of(value: Value, levels: tuple[str, ...] | None) -> str:
     name = label(value)
     if levels is None or name in levels:
         return name
-    near = nearest(name, levels)
+    near = None if value.faults.full else nearest(name, levels)
     expected = "one of `data.levels`" + (f"; did you mean {shown(near)}?" if near else "")
     raise value.unreadable(f"names the level {shown(name)}, which is not declared", expected)

@@ -16,7 +16,6 @@ from assayfolio.errors import Place
 from assayfolio.study.faults import Faults, shown
 from assayfolio.study.nodes import Entry, MappingNode, Node, RefusedNode, ScalarNode, SequenceNode
 from assayfolio.study.source import decode
-from assayfolio.study.syntax import in_plain_words
 
 MAX_DEPTH = 32
 MAX_VALUES = 10_000
@@ -40,6 +39,8 @@ def compose(content: bytes, faults: Faults) -> Node | None:
     except _StoppedError:
         return None
     except (yaml.YAMLError, ValueError, OverflowError) as error:
+        from assayfolio.study.syntax import in_plain_words  # its tables are needed only here
+
         fault = in_plain_words(error)
         faults.add(_End(text).place(faults.file, fault.line, fault.column), fault.found, fault.advice)
         return None

@@ -17,6 +17,11 @@ class Faults:
     def __len__(self) -> int:
         return len(self._faults) + self._unlisted
 
+    @property
+    def full(self) -> bool:
+        """Whether there are more faults than are listed, so that care in wording is wasted."""
+        return len(self) >= LISTED_FAULTS
+
     def add(self, place: Place, found: str, advice: str) -> None:
         """Remember one fault."""
         self._faults.append(Fault(place, found, advice))

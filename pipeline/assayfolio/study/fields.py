@@ -76,7 +76,10 @@ class Fields:
         return Fields(value.node, value.name, known, value.faults)
 
     def _refuse_key(self, key: ScalarNode, known: tuple[str, ...]) -> None:
-        near = nearest(key.text, [word for word in known if word not in self._values])
+        open_keys = [word for word in known if word not in self._values]
+        near = None if self.faults.full else nearest(key.text, open_keys)
+        if near:
+            self._unreadable.add(near)  # it is misspelt, not missing
         advice = f"did you mean `{near}`?" if near else f"known here: {', '.join(known)}"
         where = f"in `{self._name}`" if self._name else "here"
         self.faults.add(key.place, f"the key {shown(key.text)} is not known {where}", advice)
@@ -102,17 +105,18 @@ class Fields:
         return tuple((self.named(key), place) for key, place in self._places.items())
 
     def unreadable(self, key: str) -> bool:
-        """Whether the value under `key` was asked for and could not be read."""
+        """Whether `key` was evidently meant, but is misspelt or its value could not be read."""
         return key in self._unreadable
 
     def required(self, key: str, reader: Reader[T]) -> T | None:
         """What stands under `key`; its absence is reported at the mapping that should hold it."""
         value = self.value(key)
-        if value is None:
+        if value is not None:
+            return self._read(key, value, reader)
+        if key not in self._unreadable:
             self._unreadable.add(key)
             self.faults.add(self.place, f"the key `{self.named(key)}` is missing", f"add `{key}: ...`")
-            return None
-        return self._read(key, value, reader)
+        return None
 
     def optional(self, key: str, reader: Reader[T]) -> T | None:
         """What stands under `key`; None where it is absent or cannot be read."""
@@ -279,7 +283,9 @@ def report_repeats(values: Iterable[Value]) -> bool:
             continue
         if node.text in first:
             repeated = True
-            value.report(f"holds {shown(node.text)} twice", f"each once (line {first[node.text].line})")
+            value.report(
+                f"holds {shown(node.text)} twice", f"each once; it stands on line {first[node.text].line}"
+            )
         first.setdefault(node.text, node.place)
     return repeated
 

@@ -4,23 +4,25 @@ import re
 from collections.abc import Callable
 from fractions import Fraction
 
-from assayfolio.exact import MAX_DIGITS, NotADecimalError, parse_decimal
+from assayfolio.exact import NotADecimalError, parse_decimal
 from assayfolio.study.faults import shown
 from assayfolio.study.fields import Reader, Value, scalar
 
+MAX_FRACTION_DIGITS = 15
 _FRACTION = re.compile(r"([+-]?[0-9]+)/([0-9]+)", re.ASCII)
 
 
 def exact_number(text: str) -> Fraction:
     """The number that `text` spells, exactly: a decimal (`0.05`, `1e-3`) or a fraction (`-1/2`).
 
+    Decimals may have 38 digits, numerators and denominators 15: sums of many fractions stay cheap.
     Raises NotADecimalError, saying why, for anything else.
     """
     match = _FRACTION.fullmatch(text)
     if match is None:
         return parse_decimal(text).fraction
-    if max(len(match[1].lstrip("+-")), len(match[2])) > MAX_DIGITS:
-        raise NotADecimalError(f"more than {MAX_DIGITS} digits")
+    if max(len(match[1].lstrip("+-")), len(match[2])) > MAX_FRACTION_DIGITS:
+        raise NotADecimalError(f"more than {MAX_FRACTION_DIGITS} digits above or below the line")
     if int(match[2]) == 0:
         raise NotADecimalError("a division by zero")
     return Fraction(int(match[1]), int(match[2]))

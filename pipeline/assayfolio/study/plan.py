@@ -161,7 +161,11 @@ class SignOff:
 
 @dataclass(frozen=True, slots=True)
 class StudyDefinition:
-    """A whole study definition. `places` gives the place of each top-level key that is present."""
+    """A whole study definition.
+
+    `places` gives the place of each key that is present: the top-level keys, and under their full names
+    (`data.levels`) those inside `data`, `design` and `checks`; in the order of the file.
+    """
 
     study: str
     title: str
@@ -180,7 +184,7 @@ class StudyDefinition:
     places: tuple[tuple[str, Place], ...]
 
     def place_of(self, key: str) -> Place | None:
-        """Where the top-level key `key` stands, or None where it is absent."""
+        """Where `key` stands (`alpha`, `data.levels`), or None where it is absent."""
         return dict(self.places).get(key)
 
 

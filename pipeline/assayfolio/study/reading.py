@@ -108,6 +108,7 @@ def _study(fields: Fields) -> StudyDefinition | None:
     design_fields = fields.optional("design", mapping_of(DESIGN_KEYS))
     design = DesignPlan() if design_fields is None else read_design(design_fields)
     checks_fields = fields.optional("checks", mapping_of(CHECK_KEYS))
+    checks = ChecksPlan() if checks_fields is None else read_checks(checks_fields)
     surroundings = Surroundings(levels, _variances(fields, design_fields, design))
     comparisons = _named_entries(fields, "comparisons", "name", comparison_in(surroundings))
     equivalence = _named_entries(fields, "equivalence", "name", equivalence_in(surroundings))
@@ -130,7 +131,7 @@ def _study(fields: Fields) -> StudyDefinition | None:
         comparisons,
         equivalence,
         outliers,
-        ChecksPlan() if checks_fields is None else read_checks(checks_fields),
+        checks,
         precision,
         power,
         criteria,

@@ -113,7 +113,7 @@ def read_criterion(value: Value) -> Criterion:
     at_most = fields.optional("at-most", any_number)
     at_least = fields.optional("at-least", any_number)
     unit = fields.optional("unit", label)
-    if "at-most" not in fields and "at-least" not in fields:
+    if not any(key in fields or fields.unreadable(key) for key in ("at-most", "at-least")):
         found = "an entry of `criteria` has no limit"
         fields.faults.add(fields.place, found, "write `at-most`, `at-least` or both")
     if at_most is not None and at_least is not None and at_least > at_most:

@@ -1,8 +1,9 @@
 """The nearest known word to a misspelt one."""
 
-from collections.abc import Iterable
+from collections.abc import Sequence
 
-_LONGEST = 40
+_LONGEST = 30
+_MOST_KNOWN = 50
 
 
 def edit_distance(a: str, b: str) -> int:
@@ -23,13 +24,14 @@ def edit_distance(a: str, b: str) -> int:
     return above[-1]
 
 
-def nearest(word: str, known: Iterable[str]) -> str | None:
+def nearest(word: str, known: Sequence[str]) -> str | None:
     """The known word that `word` most likely stands for, or None if none is near.
 
-    Near means at most one edit for every three letters, and at most three; case, underscores and blanks
-    count as no difference. Among equally near words the first wins.
+    Near means at most one edit for every three letters, and at most three, or else the beginning of a word;
+    case counts as no difference, nor does an underscore or a blank for a hyphen. Among equally near words
+    the first wins. A very long word, or one among very many, gets no suggestion, since looking would be dear.
     """
-    if len(word) > _LONGEST:
+    if len(word) > _LONGEST or len(known) > _MOST_KNOWN:
         return None
     plain = _plain(word)
     best: str | None = None
@@ -39,7 +41,7 @@ def nearest(word: str, known: Iterable[str]) -> str | None:
             distance = edit_distance(plain, _plain(candidate))
             if distance < limit:
                 best, limit = candidate, distance
-    return best
+    return best or next((word for word in known if len(plain) > 3 and word.startswith(plain)), None)
 
 
 def _plain(word: str) -> str:

@@ -6,7 +6,7 @@ from pathlib import Path
 from assayfolio.canonical import Json
 from assayfolio.errors import InputError
 from assayfolio.evidence.trail import TrailReading, read_trail
-from assayfolio.evidence.verification import Verification, verify_loose, verify_workspace
+from assayfolio.evidence.verification import Verification, verify_lone_folios, verify_workspace
 from assayfolio.workflow.workspace import find_workspace
 
 
@@ -21,7 +21,7 @@ def verify_all(named_workspace: Path | None, folios: Sequence[Path]) -> Verifica
     except InputError:
         if named_workspace is not None or not folios:
             raise
-        return verify_loose(folios)
+        return verify_lone_folios(folios)
     return verify_workspace(workspace.runs, folios or None)
 
 
@@ -30,8 +30,8 @@ def verification_lines(verification: Verification) -> list[str]:
     width = max((len(outcome.outcome) for outcome in verification.outcomes), default=0)
     lines = []
     for outcome in verification.outcomes:
-        lines.append(f"{outcome.number:>3}  {outcome.outcome:<{width}}  {outcome.subject}: {outcome.title}")
-        lines.extend(f"     {'':<{width}}    {note}" for note in outcome.notes)
+        lines.append(f"{outcome.number:<4}  {outcome.outcome:<{width}}  {outcome.subject}: {outcome.title}")
+        lines.extend(f"      {'':<{width}}    {note}" for note in outcome.notes)
     counts = _counts(verification)
     lines.append(", ".join(f"{count} {word}" for word, count in counts.items()))
     return lines

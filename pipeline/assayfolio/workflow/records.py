@@ -26,6 +26,7 @@ NAMED_SOFTWARE = (
     "pyyaml",
     "rfc8785",
 )
+LAYOUT_LIBRARIES = ("libpango", "libharfbuzz", "libfontconfig", "libfreetype", "libz")
 
 
 def run_record(
@@ -56,13 +57,12 @@ def run_record(
     }
 
 
-def completed_record(record: Mapping[str, Json], findings: bytes, report: bytes) -> dict[str, Json]:
-    """The record of a run that came to its end, with the digests of what it made."""
+def completed_record(record: Mapping[str, Json], report: bytes) -> dict[str, Json]:
+    """The record of a run that came to its end, with the digest of its report."""
     return {
         **record,
         "outcome": "completed",
         "reason": None,
-        "findings_sha256": sha256_hex(findings),
         "report_sha256": sha256_hex(report),
     }
 
@@ -105,21 +105,33 @@ def run_facts(record: Mapping[str, Any], environment: Mapping[str, Any], finding
         findings_sha256=findings_sha256,
         trail_seq=record["trail_head_of_report"]["seq"],
         trail_sha256=record["trail_head_of_report"]["sha256"],
-        python=environment_line(environment, "interpreter"),
-        platform=environment_line(environment, "platform"),
+        python=_python_line(environment),
+        platform=_platform_line(environment),
         software=tuple((name, versions[name]) for name in NAMED_SOFTWARE if name in versions),
         native_libraries=_native_libraries(environment),
         self_check=record["self_check"],
     )
 
 
-def environment_line(environment: Mapping[str, Any], part: str) -> str:
-    """One part of the environment record in one line, as a report prints it."""
-    raise NotImplementedError(part)
+def _python_line(environment: Mapping[str, Any]) -> str:
+    interpreter = environment["interpreter"]
+    return f"{interpreter['implementation']} {interpreter['version']}, {interpreter['compiler']}"
+
+
+def _platform_line(environment: Mapping[str, Any]) -> str:
+    platform = environment["platform"]
+    return ", ".join(str(platform[key]) for key in ("system", "libc", "machine") if platform[key])
 
 
 def _native_libraries(environment: Mapping[str, Any]) -> tuple[tuple[str, str], ...]:
-    raise NotImplementedError
+    """The libraries that lay the report out: (name, version and the first digits of the digest)."""
+    named = []
+    for library in environment["native_libraries"].get("libraries", []):
+        name = library["file"].partition(".so")[0].partition(".dylib")[0]
+        if name.startswith(LAYOUT_LIBRARIES):
+            version = f"{library['version']}, " if library["version"] else ""
+            named.append((name, f"{version}SHA-256 {library['sha256'][:16]}"))
+    return tuple(named)
 
 
 def report_input(intake: Intake, findings: Findings, facts: RunFacts) -> ReportInput:

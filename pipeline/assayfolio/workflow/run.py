@@ -19,7 +19,8 @@ from assayfolio.evidence.folio import folio_lock, stage_folio
 from assayfolio.evidence.history import next_number
 from assayfolio.evidence.trail import TrailEntry, TrailHead, open_trail
 from assayfolio.findings import Findings, findings_bytes
-from assayfolio.report.render import load_renderer, render_report
+from assayfolio.report.loading import load_renderer
+from assayfolio.report.render import render_report
 from assayfolio.workflow.failure import failure_text
 from assayfolio.workflow.intake import Intake, SeenFiles, read_intake
 from assayfolio.workflow.records import (
@@ -61,6 +62,7 @@ class _Run:
     head_at_start: TrailHead
     progress: Progress
     entries: list[TrailEntry]
+    reached: Step = Step.ALLOT
     record: dict[str, Json] = field(default_factory=dict)
     payload: dict[str, bytes] = field(default_factory=dict)
 
@@ -83,6 +85,7 @@ class _Run:
         wait = self.intake.laboratory.wait_seconds
         with open_trail(self.workspace.runs, self.surroundings.actor, utc_now, wait) as trail:
             self.entries.append(trail.append(action, self.subject, reason, {"step": int(step), **details}))
+            self.reached = step
             return trail.head
 
 
@@ -160,7 +163,7 @@ def _compute_and_render(run: _Run) -> Findings:
     run.payload = {file.folio_path: file.content for file in run.intake.files}
     run.payload["data/requirements.lock"] = requirements_lock()
     run.record = run_record(run.intake, run.surroundings, run.number, run.head_at_start)
-    load_renderer()
+    load_renderer(run.intake.laboratory)
     environment = environment_record()
     run.payload["data/environment.json"] = canonical_bytes(environment)
     checked = self_check()
@@ -171,7 +174,8 @@ def _compute_and_render(run: _Run) -> Findings:
     findings = evaluate(run.intake.study, run.intake.observations)
     document = findings_bytes(findings)
     run.payload["data/findings.json"] = document
-    head = run.enter("computed", Step.COMPUTE, {"findings_sha256": sha256_hex(document)})
+    run.record["findings_sha256"] = sha256_hex(document)
+    head = run.enter("computed", Step.COMPUTE, {"findings": sha256_hex(document)})
     run.progress(Step.COMPUTE, f"findings {sha256_hex(document)[:16]}")
 
     run.record["trail_head_of_report"] = {"seq": head.seq, "sha256": head.sha256}
@@ -179,8 +183,8 @@ def _compute_and_render(run: _Run) -> Findings:
     report = render_report(report_input(run.intake, findings, facts))
     run.payload["data/report.pdf"] = report.pdf
     run.payload |= {f"data/figures/{name}": content for name, content in report.figures}
-    run.record = completed_record(run.record, document, report.pdf)
-    run.enter("rendered", Step.RENDER, {"report_sha256": sha256_hex(report.pdf)})
+    run.record = completed_record(run.record, report.pdf)
+    run.enter("rendered", Step.RENDER, {"report": sha256_hex(report.pdf)})
     run.progress(Step.RENDER, f"report.pdf {len(report.pdf) // 1024} kB")
     return findings
 
@@ -210,7 +214,7 @@ def _seal_failed(run: _Run, error: BaseException) -> BaseException:
         return MachineError(f"{reason}\n{where}.")
     where = f"{run.subject} failed; its number is kept"
     try:
-        run.enter("failed", Step(run.entries[-1].details["step"]), {}, _holdable(reason))
+        run.enter("failed", Step(run.reached + 1), {}, _holdable(reason))
         run.payload.pop("data/report.pdf", None)
         run.payload["data/failure.txt"] = account.encode("utf-8", "backslashreplace")
         run.record = failed_record(run.record, _holdable(reason))

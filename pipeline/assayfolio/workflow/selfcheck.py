@@ -85,7 +85,8 @@ def _normalised(certified: str) -> str:
 
 
 def _check_function(case: dict[str, Any]) -> None:
-    computed = float(FUNCTIONS[case["function"]](*(float(value) for value in case["arguments"])))
+    arguments = [int(value) if value.isdigit() else float(value) for value in case["arguments"]]
+    computed = float(FUNCTIONS[case["function"]](*arguments))
     expected = float(case["value"])
     if not abs(computed - expected) <= 1e-10 * abs(expected):
         what = f"{case['function']}({', '.join(case['arguments'])})"

@@ -1,0 +1,47 @@
+"""The one entry: from the input of a report to its PDF and its figures."""
+
+from dataclasses import dataclass
+
+from assayfolio.errors import RenderingError
+from assayfolio.report.compose import compose
+from assayfolio.report.content import ReportContent
+from assayfolio.report.facts import ReportInput
+from assayfolio.report.pages import first_pages_of, html_of
+from assayfolio.report.pdf import Look, lay_out, write
+
+_MOST_CARDS = 6
+_FIRST_PAGE_FULL = (
+    "the first page cannot hold title, sign-off and cautions; shorten the title, the laboratory's address or the "
+    "meanings of the signatures"
+)
+
+
+@dataclass(frozen=True, slots=True)
+class RenderedReport:
+    """The PDF, and the figures in it as SVG files by name, in the order of the pages."""
+
+    pdf: bytes
+    figures: tuple[tuple[str, bytes], ...]
+
+
+def render_report(content: ReportInput) -> RenderedReport:
+    """The report on `content`: the same bytes for the same input, everywhere.
+
+    Raises RenderingError where the report cannot be set exactly as written.
+    """
+    composed = compose(content)
+    pictures = {picture.name: picture.svg for picture in composed.pictures}
+    look = Look(content.laboratory.paper, content.laboratory.accent)
+    count = _cards_that_fit(composed, pictures, look)
+    laid_out = lay_out(html_of(composed, count), pictures, look)
+    if not laid_out.first_page_fits:
+        raise RenderingError(_FIRST_PAGE_FULL)
+    pdf = write(laid_out, content.attachments, content.run.started_utc)
+    return RenderedReport(pdf, tuple(pictures.items()))
+
+
+def _cards_that_fit(composed: ReportContent, pictures: dict[str, bytes], look: Look) -> int:
+    for count in range(min(len(composed.cards), _MOST_CARDS), -1, -1):
+        if lay_out(first_pages_of(composed, count), pictures, look).first_page_fits:
+            return count
+    raise RenderingError(_FIRST_PAGE_FULL)

@@ -1,0 +1,189 @@
+"""The published JSON Schema says the same keys and words as the reader's own tables."""
+
+import json
+import typing
+from collections.abc import Iterator
+from importlib import resources
+from typing import Any
+
+import pytest
+
+from assayfolio.study import plan, vocabulary
+from study.examples import faults_of
+
+SCHEMA: dict[str, Any] = json.loads(
+    resources.files("assayfolio.study").joinpath("study-definition.schema.json").read_text("utf-8")
+)
+DEFINITIONS: dict[str, Any] = SCHEMA["$defs"]
+
+MAPPINGS = {
+    "": vocabulary.STUDY_KEYS,
+    "data": vocabulary.DATA_KEYS,
+    "design": vocabulary.DESIGN_KEYS,
+    "comparison": vocabulary.COMPARISON_KEYS,
+    "equivalence": vocabulary.EQUIVALENCE_KEYS,
+    "outliers": vocabulary.OUTLIER_KEYS,
+    "checks": vocabulary.CHECK_KEYS,
+    "precision": vocabulary.PRECISION_KEYS,
+    "power": vocabulary.POWER_KEYS,
+    "criterion": vocabulary.CRITERION_KEYS,
+    "sign-off": vocabulary.SIGN_OFF_KEYS,
+}
+WORDS: dict[tuple[str, str], tuple[str, ...]] = {
+    ("data", "missing"): vocabulary.MISSING,
+    ("data", "below-limit"): vocabulary.BELOW_LIMIT,
+    ("data", "decimal-mark"): vocabulary.DECIMAL_MARKS,
+    ("design", "effects"): vocabulary.EFFECTS,
+    ("design", "variances"): vocabulary.VARIANCES,
+    ("comparison", "pairs"): vocabulary.PAIRS,
+    ("comparison", "adjust"): vocabulary.ADJUSTMENTS,
+    ("comparison", "alternative"): vocabulary.ALTERNATIVES,
+    ("equivalence", "pairs"): vocabulary.PAIRS,
+    ("equivalence", "adjust"): vocabulary.EQUIVALENCE_ADJUSTMENTS,
+    ("outliers", "test"): vocabulary.OUTLIER_TESTS,
+    ("checks", "equal-variances"): vocabulary.VARIANCE_CHECKS,
+    ("checks", "normality"): vocabulary.NORMALITY_CHECKS,
+    ("sign-off", "role"): vocabulary.ROLES,
+}
+TYPED_FIELDS = {
+    ("data", "missing"): (plan.DataPlan, "missing"),
+    ("data", "below-limit"): (plan.DataPlan, "below_limit"),
+    ("data", "decimal-mark"): (plan.DataPlan, "decimal_mark"),
+    ("design", "effects"): (plan.DesignPlan, "effects"),
+    ("design", "variances"): (plan.DesignPlan, "variances"),
+    ("comparison", "adjust"): (plan.AllPairs, "adjust"),
+    ("comparison", "alternative"): (plan.Contrast, "alternative"),
+    ("equivalence", "adjust"): (plan.EquivalencePlan, "adjust"),
+    ("outliers", "test"): (plan.OutlierPlan, "test"),
+    ("checks", "equal-variances"): (plan.ChecksPlan, "equal_variances"),
+    ("checks", "normality"): (plan.ChecksPlan, "normality"),
+    ("sign-off", "role"): (plan.SignOff, "role"),
+}
+LENGTHS = {
+    "title": vocabulary.LONGEST_TITLE,
+    "sentence": vocabulary.LONGEST_SENTENCE,
+    "label": vocabulary.LONGEST_LABEL,
+}
+
+# A definition with every section, in which each key that can be left out can be left out on its own.
+EVERYTHING: dict[str, Any] = {
+    "study": "A-1",
+    "title": "t",
+    "purpose": "p",
+    "data": {
+        "file": "v.csv",
+        "response": "mass",
+        "factor": "lot",
+        "unit": "g",
+        "levels": ["a", "b"],
+        "replicates": 3,
+        "missing": "refuse",
+        "below-limit": "refuse",
+        "decimal-mark": "point",
+    },
+    "design": {"effects": "fixed", "variances": "pooled"},
+    "alpha": "0.05",
+    "comparisons": [{"name": "c", "against": "a", "adjust": "holm", "alternative": "less"}],
+    "equivalence": [
+        {
+            "name": "e",
+            "pairs": "all",
+            "margin": "1",
+            "margin-source": "s",
+            "adjust": "holm",
+            "alpha": "0.05",
+        }
+    ],
+    "outliers": {"test": "grubbs"},
+    "checks": {"equal-variances": "levene", "normality": "shapiro-wilk"},
+    "precision": {"estimate": "true", "confidence": "0.95", "varied": "v"},
+    "power": {"difference": "1", "sigma": "1", "target": "0.9"},
+    "criteria": [{"quantity": "q", "at-most": "1", "unit": "g"}],
+    "sign-off": [{"role": "author", "meaning": "m"}],
+}
+SECTIONS = {
+    "": None,
+    "data": "data",
+    "design": "design",
+    "comparison": "comparisons",
+    "equivalence": "equivalence",
+    "outliers": "outliers",
+    "checks": "checks",
+    "precision": "precision",
+    "power": "power",
+    "criterion": "criteria",
+    "sign-off": "sign-off",
+}
+
+
+def mapping_schema(name: str) -> dict[str, Any]:
+    schema: dict[str, Any] = DEFINITIONS[name] if name else SCHEMA
+    return schema
+
+
+def objects(schema: object) -> Iterator[dict[str, Any]]:
+    if isinstance(schema, dict):
+        if "properties" in schema and schema.get("type") == "object":
+            yield schema
+        for part in schema.values():
+            yield from objects(part)
+
+
+@pytest.mark.parametrize("name", MAPPINGS)
+def test_a_mapping_has_the_keys_that_the_reader_knows_and_no_others(name: str) -> None:
+    schema = mapping_schema(name)
+    assert tuple(schema["properties"]) == MAPPINGS[name]
+    assert schema["additionalProperties"] is False
+
+
+def test_no_mapping_of_the_schema_escapes_the_comparison() -> None:
+    assert len(list(objects(SCHEMA))) == len(MAPPINGS)
+
+
+@pytest.mark.parametrize(("name", "key"), WORDS)
+def test_a_fixed_word_is_one_that_the_reader_knows(name: str, key: str) -> None:
+    assert tuple(DEFINITIONS[name]["properties"][key]["enum"]) == WORDS[name, key]
+
+
+def test_no_list_of_words_in_the_schema_escapes_the_comparison() -> None:
+    found = {
+        (name, key)
+        for name in MAPPINGS
+        for key, value in mapping_schema(name)["properties"].items()
+        if "enum" in value
+    }
+    assert found == set(WORDS)
+
+
+@pytest.mark.parametrize(("name", "key"), TYPED_FIELDS)
+def test_the_words_are_those_of_the_typed_plan(name: str, key: str) -> None:
+    owner, field = TYPED_FIELDS[name, key]
+    hint = typing.get_type_hints(owner)[field]
+    words = [
+        word for part in (hint, *typing.get_args(hint)) for word in typing.get_args(part) if part is not None
+    ]
+    assert tuple(word for word in dict.fromkeys(words) if isinstance(word, str)) == WORDS[name, key]
+
+
+@pytest.mark.parametrize("name", LENGTHS)
+def test_texts_have_the_same_greatest_lengths(name: str) -> None:
+    assert DEFINITIONS[name]["maxLength"] == LENGTHS[name]
+
+
+def test_everything_together_can_be_read() -> None:
+    assert faults_of(json.dumps(EVERYTHING)) == []
+
+
+@pytest.mark.parametrize("name", MAPPINGS)
+def test_a_key_is_compulsory_in_the_schema_just_where_the_reader_misses_it(name: str) -> None:
+    section = SECTIONS[name]
+    missed = []
+    for key in MAPPINGS[name]:
+        definition = json.loads(json.dumps(EVERYTHING))
+        holder = definition if section is None else definition[section]
+        holder = holder[0] if isinstance(holder, list) else holder
+        holder.pop(key, None)
+        path = f"{section}.{key}" if section else key
+        if any(f"the key `{path}` is missing - " in fault for fault in faults_of(json.dumps(definition))):
+            missed.append(key)
+    assert missed == mapping_schema(name).get("required", [])

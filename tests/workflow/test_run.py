@@ -1,0 +1,169 @@
+"""A run, seen from outside: what it leaves, what it says, and what it refuses to do."""
+
+import hashlib
+import json
+
+import pytest
+
+from assayfolio.errors import MachineError
+from assayfolio.workflow import run as workflow_run
+from support.workspaces import DATA, STUDY, Bench
+
+
+@pytest.fixture(scope="module")
+def bench(tmp_path_factory):
+    """A workspace in which the study was run once."""
+    bench = Bench(tmp_path_factory.mktemp("bench") / "w")
+    bench.run()
+    return bench
+
+
+def test_the_folio_holds_every_promised_file(bench):
+    folio = bench.runs / "TST-1/run-0001"
+    names = {path.relative_to(folio).as_posix() for path in folio.rglob("*") if path.is_file()}
+    promised = {
+        "bagit.txt",
+        "bag-info.txt",
+        "manifest-sha256.txt",
+        "tagmanifest-sha256.txt",
+        "data/study.yaml",
+        "data/inputs/values.csv",
+        "data/findings.json",
+        "data/run.json",
+        "data/environment.json",
+        "data/requirements.lock",
+        "data/context/lab.yaml",
+        "data/trail.jsonl",
+        "data/report.pdf",
+    }
+    assert promised <= names
+    assert all(name.startswith("data/figures/") for name in names - promised)
+    assert any(name.endswith(".svg") for name in names)
+
+
+def test_inputs_are_kept_byte_for_byte(bench):
+    folio = bench.runs / "TST-1/run-0001"
+    assert (folio / "data/study.yaml").read_bytes() == bench.study.read_bytes()
+    assert (folio / "data/inputs/values.csv").read_bytes() == bench.data.read_bytes()
+
+
+def test_every_step_is_entered_in_order_and_the_seal_is_the_last(bench):
+    entries = [entry for entry in bench.entries() if entry["subject"] == "TST-1/run-0001"]
+    assert [entry["action"] for entry in entries] == [
+        "allotted",
+        "self-checked",
+        "computed",
+        "rendered",
+        "staged",
+        "sealed",
+    ]
+    assert [entry["details"]["step"] for entry in entries] == [2, 3, 4, 5, 6, 7]
+    tag_manifest = (bench.runs / "TST-1/run-0001/tagmanifest-sha256.txt").read_bytes()
+    assert entries[-1]["details"]["seal"] == hashlib.sha256(tag_manifest).hexdigest()
+
+
+def test_the_run_record_names_what_was_used_and_what_was_made(bench):
+    folio = bench.runs / "TST-1/run-0001"
+    record = json.loads((folio / "data/run.json").read_bytes())
+    assert record["outcome"] == "completed"
+    assert record["pre_registration"] is None
+    for item in record["inputs"]:
+        content = (folio / item["folio_path"]).read_bytes()
+        assert item["sha256"] == hashlib.sha256(content).hexdigest()
+        assert item["size"] == len(content)
+    assert record["report_sha256"] == hashlib.sha256((folio / "data/report.pdf").read_bytes()).hexdigest()
+
+
+def test_a_second_run_gets_the_next_number_and_leaves_the_first_untouched(tmp_path):
+    bench = Bench(tmp_path / "w")
+    first = bench.run()
+    before = {path: path.read_bytes() for path in first.rglob("*") if path.is_file()}
+    assert bench.run().name == "run-0002"
+    assert {path: path.read_bytes() for path in first.rglob("*") if path.is_file()} == before
+    assert bench("verify").code == 0
+
+
+def test_findings_do_not_depend_on_the_order_of_the_rows(tmp_path):
+    header, *rows = DATA.splitlines()
+    plain = Bench(tmp_path / "a").run()
+    turned = Bench(tmp_path / "b", STUDY, "\n".join([header, *reversed(rows)]) + "\n").run()
+    assert (plain / "data/findings.json").read_bytes() == (turned / "data/findings.json").read_bytes()
+
+
+def test_no_variation_within_levels_is_reported_with_its_reason(tmp_path):
+    data = "method,sulfate\n" + "".join(
+        f"{level},{value}\n" * 3
+        for level, value in (("gravimetric", "1.0"), ("turbidimetric", "1.5"), ("chromatographic", "1.0"))
+    )
+    folio = Bench(tmp_path / "w", STUDY, data).run()
+    findings = json.loads((folio / "data/findings.json").read_bytes())
+    anova = findings["responses"]["sulfate"]["anova"]
+    assert anova["f"] is None
+    assert anova["verdict"] == "not assessable"
+    assert anova["between"]["ss"] == 0.5
+    assert [item["what"] for item in findings["not_reported"]] == [
+        "F test and intervals for means",
+        "comparison: all pairs of methods",
+    ]
+
+
+def test_a_failure_after_the_number_keeps_the_number_and_says_why(tmp_path, monkeypatch):
+    def fail(_):
+        raise MachineError("the ink is out")
+
+    bench = Bench(tmp_path / "w")
+    with monkeypatch.context() as patched:
+        patched.setattr(workflow_run, "render_report", fail)
+        answer = bench("run", bench.study)
+    assert answer.code == 3
+    assert "the ink is out" in answer.err
+    folio = bench.runs / "TST-1/run-0001"
+    assert json.loads((folio / "data/run.json").read_bytes())["outcome"] == "failed"
+    assert "the ink is out" in (folio / "data/failure.txt").read_text()
+    assert not (folio / "data/report.pdf").exists()
+    assert bench("verify").code == 0
+    assert bench.run().name == "run-0002"
+
+
+def test_an_unexpected_fault_is_kept_with_its_account(tmp_path, monkeypatch):
+    def fail(*_):
+        raise ZeroDivisionError("by nought")
+
+    bench = Bench(tmp_path / "w")
+    monkeypatch.setattr(workflow_run, "evaluate", fail)
+    answer = bench("run", bench.study)
+    assert answer.code == 3
+    assert "Traceback" not in answer.err
+    account = (bench.runs / "TST-1/run-0001/data/failure.txt").read_text()
+    assert "Traceback" in account
+    assert "by nought" in account
+
+
+def test_an_altered_constant_stops_the_run_before_it_computes(tmp_path, monkeypatch):
+    from assayfolio.workflow import selfcheck
+
+    real = selfcheck.FUNCTIONS["f_sf"]
+    monkeypatch.setitem(selfcheck.FUNCTIONS, "f_sf", lambda *a: real(*a) * (1 + 1e-9))
+    bench = Bench(tmp_path / "w")
+    answer = bench("run", bench.study)
+    assert answer.code == 3
+    assert "check before the run failed" in answer.err
+    assert not (bench.runs / "TST-1/run-0001/data/findings.json").exists()
+
+
+def test_a_workspace_held_by_another_writer_is_busy(tmp_path):
+    from assayfolio.evidence.trail import open_trail
+    from assayfolio.workflow.surroundings import utc_now
+
+    bench = Bench(tmp_path / "w")
+    bench.runs.mkdir()
+    with open_trail(bench.runs, "somebody", utc_now, 1.0):
+        answer = bench("run", bench.study)
+    assert answer.code == 4
+    assert "Traceback" not in answer.err
+
+
+def test_the_data_of_a_run_cannot_be_where_a_folio_would_hide_them(tmp_path):
+    study = STUDY.replace("data/values.csv", "data/values.csv/")
+    bench = Bench(tmp_path / "w", study)
+    assert bench("run", bench.study).code == 2
