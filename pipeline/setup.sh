@@ -8,8 +8,10 @@
 log=$checkout/.venv.log            # what installers said; also the file that is locked while something is installed
 patience=900                       # seconds to wait for another installation
 package_files="pyproject.toml README.md LICENSE pipeline templates"
-debian_packages="python3 python3-venv ca-certificates libpango-1.0-0 libpangoft2-1.0-0 libharfbuzz0b libharfbuzz-subset0 libfontconfig1"
+debian_python="python3 python3-venv ca-certificates"
+debian_libraries="libpango-1.0-0 libpangoft2-1.0-0 libharfbuzz0b libharfbuzz-subset0 libfontconfig1"
 
+python=
 suitable='import sys, ctypes, ensurepip, ssl, venv; sys.exit(sys.version_info < (3, 11))'
 
 # The caller's shell may point Python at other packages; results come from the pinned ones alone.
@@ -58,8 +60,8 @@ stamped() {
 }
 
 stamp() {
-    printf '%s\n' "$2" >"$environment/stamp-$1.new"
-    mv "$environment/stamp-$1.new" "$environment/stamp-$1"
+    printf '%s\n' "$2" >"$environment/stamp-$1.new" && mv "$environment/stamp-$1.new" "$environment/stamp-$1" ||
+        stop "The installation could not be completed: $environment cannot be written to."
 }
 
 has_requirements() {
@@ -73,16 +75,17 @@ has_package() {
 # --- one installation at a time ---
 
 open_log() {
-    (: >>"$log") 2>/dev/null || stop "Nothing can be installed: the folder $checkout cannot be written to. \
-Copy the checkout to a folder of your own, or let its owner start it once."
+    (: >>"$log") 2>/dev/null || stop "Nothing can be installed: the folder $checkout, or .venv.log in it, \
+cannot be written to. Copy the checkout to a folder of your own, or let its owner start it once."
     exec 9>>"$log"
 }
 
+# Before Python is there, only apt-get is ever started, and Debian always has flock.
 try_lock() {
     if command -v flock >/dev/null 2>&1; then
         flock -n 9
-    else
-        "$python" -c 'import fcntl; fcntl.flock(9, fcntl.LOCK_EX | fcntl.LOCK_NB)' 2>/dev/null
+    elif [ -n "$python" ]; then
+        "$python" -I -c 'import fcntl; fcntl.flock(9, fcntl.LOCK_EX | fcntl.LOCK_NB)' 2>/dev/null
     fi
 }
 
@@ -146,14 +149,15 @@ print(", ".join(missing))
 PROBE
 }
 
-# Sets `lacking` to words for what the machine lacks; empty if nothing.
+# Sets `lacking` to words for what the machine lacks, empty if nothing, and `needed` to Debian's packages for it.
 look_at_machine() {
-    lacking=
-    if ! find_python; then
-        lacking="Python 3.11 or newer with its venv module (and the libraries Pango, HarfBuzz and fontconfig)"
-        return
+    if find_python; then
+        lacking=$(missing_libraries)
+        needed=$debian_libraries
+    else
+        lacking="Python 3.11 or newer with its venv module (and perhaps the libraries Pango, HarfBuzz and fontconfig)"
+        needed="$debian_python $debian_libraries"
     fi
-    lacking=$(missing_libraries)
 }
 
 can_use_apt() {
@@ -161,7 +165,6 @@ can_use_apt() {
 }
 
 apt_install() {
-    hold_lock
     apt="apt-get -qq -o DPkg::Lock::Timeout=300 -o Dpkg::Use-Pty=0"
     DEBIAN_FRONTEND=noninteractive
     export DEBIAN_FRONTEND
@@ -172,7 +175,7 @@ apt_install() {
 
 command_for_this_system() {
     if command -v apt-get >/dev/null 2>&1; then
-        echo "sudo apt-get update && sudo apt-get install --yes --no-install-recommends $debian_packages"
+        echo "sudo apt-get update && sudo apt-get install --yes --no-install-recommends $needed"
     elif command -v dnf >/dev/null 2>&1; then
         echo "sudo dnf install --assumeyes python3.12 pango harfbuzz fontconfig"
     elif command -v apk >/dev/null 2>&1; then
@@ -199,9 +202,10 @@ require_machine() {
     [ -n "$lacking" ] || return 0
     can_use_apt || explain_and_stop
     say "installing Python and the libraries that set the report, with apt-get (once)"
-    apt_install $debian_packages
+    apt_install $needed
     look_at_machine
-    [ -z "$lacking" ] || explain_and_stop
+    [ -z "$lacking" ] || stop "apt-get installed what it has, and this machine still lacks: $lacking. \
+Install it by other means, then start again."
 }
 
 # --- the environment ---
@@ -223,7 +227,7 @@ install_requirements() {
 }
 
 copy_package_files() {
-    (cd "$checkout" && cp -R $package_files "$1/") &&
+    rm -rf "$1" && mkdir -p "$1" && (cd "$checkout" && cp -R $package_files "$1/") &&
         find "$1" \( -name __pycache__ -o -name '*.egg-info' -o -name '.?*' \) -prune -exec rm -rf {} +
 }
 
@@ -233,8 +237,6 @@ install_package() {
     rm -f "$environment/stamp-package"
     say "installing assayfolio from this checkout into ${environment##*/}"
     build=$environment/build
-    rm -rf "$build"
-    mkdir -p "$build/source"
     quietly "Copying the sources" copy_package_files "$build/source"
     quietly "Building assayfolio" in_environment wheel --no-deps --no-build-isolation --no-index \
         --wheel-dir "$build" "$build/source"
@@ -254,9 +256,10 @@ prepare() {
         return 0
     fi
     open_log
-    require_machine
     hold_lock
     : >"$log"
+    require_machine
+    hold_lock
     has_requirements || install_requirements
     has_package || install_package
     exec 9>&-

@@ -26,6 +26,7 @@ require_tools() {
     if [ -n "$lacking" ] && can_use_apt; then
         say "installing the programs that check PDF files, with apt-get (once)"
         open_log
+        hold_lock
         (apt_install $debian_tools) || true
         exec 9>&-
         lacking=$(missing_tools)

@@ -240,7 +240,7 @@ def test_a_checkout_that_cannot_be_written_to_is_explained(unprivileged):
     root.chmod(0o555)
     outcome = start(root, cwd="/", env={"PATH": os.defpath}, **person)
     assert outcome.returncode == 3
-    assert f"the folder {root} cannot be written to" in outcome.stderr
+    assert f"the folder {root}, or .venv.log in it, cannot be written to" in outcome.stderr
     assert outcome.stdout == ""
 
 

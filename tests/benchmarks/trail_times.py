@@ -1,3 +1,5 @@
+# A script for a terminal.
+# ruff: noqa: T201
 """How long opening, appending to and reading the audit trail take, by the length of the trail.
 
     python tests/benchmarks/trail_times.py [ENTRIES ...]
@@ -5,6 +7,7 @@
 An append should take the same time at every length; opening and reading grow with it.
 """
 
+import itertools
 import sys
 import tempfile
 import time
@@ -54,7 +57,7 @@ def main() -> None:
                 marks.append(time.perf_counter())
             assert not verify_workspace(runs, None).with_outcome("failed")
             marks.append(time.perf_counter())
-        read, opened, appended, verified = (after - before for before, after in zip(marks, marks[1:], strict=False))
+        read, opened, appended, verified = (after - before for before, after in itertools.pairwise(marks))
         print(f"{length:8} {read:8.3f}s {opened:8.3f}s {appended / 20 * 1e3:7.2f}ms {verified:8.3f}s")
 
 

@@ -56,7 +56,10 @@ class Laboratory:
     def run(self, study: str = "IRON-7", failing: bool = False) -> Path:
         """One run from allotment to its name; a failing one has no report."""
         folder = self.runs / study
-        inputs = {"iron.yaml": ("data/study.yaml", STUDY), "iron data.csv": ("data/inputs/iron data.csv", DATA)}
+        inputs = {
+            "iron.yaml": ("data/study.yaml", STUDY),
+            "iron data.csv": ("data/inputs/iron data.csv", DATA),
+        }
         with self.trail() as writer:
             head = writer.head
             number = next_number(writer.entries, study)
@@ -64,7 +67,9 @@ class Laboratory:
             lock = folio_lock(folder, name)
             lock.__enter__()
             digests = {path: sha256_hex(content) for path, (_, content) in inputs.items()}
-            entries = [writer.append("allotted", subject, None, {"step": 1, "number": number, "inputs": digests})]
+            entries = [
+                writer.append("allotted", subject, None, {"step": 1, "number": number, "inputs": digests})
+            ]
         try:
             payload, results = self._results(subject, failing, entries)
             record = {
@@ -132,7 +137,8 @@ class Laboratory:
         for run in run_histories(writer.entries):
             folder = self.runs / run.study
             staged = reopen_staged(folder, run.name)
-            if run.sealed and staged and not (folder / run.name).exists():
+            missing = not (folder / run.name).exists() and not is_locked(folder, run.name)
+            if run.sealed and staged and missing:
                 assert staged.seal == run.sealed.details["seal"]
                 writer.append("rename-completed", run.subject, None, {"step": 6, "seal": staged.seal})
                 staged.publish()
@@ -183,7 +189,7 @@ def killed_at(moment: int, tear: bool, work: Callable[[], None]) -> bool:
         try:
             with patched_system(before):
                 work()
-        except BaseException:
+        except BaseException:  # noqa: BLE001 - the parent must see a failing child, not a second pytest
             os._exit(7)
         os._exit(0)
     _, status = os.waitpid(child, 0)

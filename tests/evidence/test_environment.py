@@ -63,7 +63,9 @@ def test_of_two_distributions_of_one_name_the_first_on_the_path_counts(tmp_path,
     for place, version in (("first", "1.0"), ("second", "2.0")):
         folder = tmp_path / place / f"Two_Names-{version}.dist-info"
         folder.mkdir(parents=True)
-        (folder / "METADATA").write_text(f"Metadata-Version: 2.1\nName: Two.Names\nVersion: {version}\n\ntext\n")
+        (folder / "METADATA").write_text(
+            f"Metadata-Version: 2.1\nName: Two.Names\nVersion: {version}\n\ntext\n"
+        )
     monkeypatch.setattr(sys, "path", [str(tmp_path / "first"), str(tmp_path / "second"), *sys.path])
     found = [each for each in environment_record()["packages"] if each["name"] == "two-names"]
     assert found == [{"name": "two-names", "version": "1.0", "record_sha256": None}]
@@ -98,7 +100,10 @@ class TestNativeLibraries:
 
     def test_tell_their_version_where_they_can(self):
         having = record_of_a_process("import weasyprint", True)
-        versions = {each["file"].partition(".so")[0]: each["version"] for each in having["native_libraries"]["libraries"]}
+        versions = {
+            each["file"].partition(".so")[0]: each["version"]
+            for each in having["native_libraries"]["libraries"]
+        }
         for name in ("libpango-1.0", "libharfbuzz", "libfontconfig", "libfreetype", "libglib-2.0", "libz"):
             assert versions[name].count(".") >= 2, name
 
@@ -130,7 +135,10 @@ class TestNativeLibraries:
     def test_are_said_to_be_unavailable_where_the_system_lists_none(self, tmp_path, monkeypatch):
         monkeypatch.setattr(environment, "_MAPS", tmp_path / "absent")
         libraries = environment_record()["native_libraries"]
-        assert libraries == {"available": False, "reason": "the loaded libraries cannot be listed: it is not there"}
+        assert libraries == {
+            "available": False,
+            "reason": "the loaded libraries cannot be listed: it is not there",
+        }
 
 
 def test_the_programs_fonts_and_source_have_their_digests(record, fonts_folder):

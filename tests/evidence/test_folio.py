@@ -1,4 +1,5 @@
 import errno
+import fcntl
 import os
 import shutil
 import stat
@@ -8,7 +9,6 @@ from pathlib import Path
 
 import bagit
 import pytest
-from evidence.laboratory import patched_system
 from hypothesis import given, settings
 from hypothesis import strategies as st
 
@@ -24,6 +24,7 @@ from assayfolio.evidence.folio import (
     stage_folio,
 )
 from assayfolio.evidence.manifest import collisions, name_fault
+from evidence.laboratory import patched_system
 
 PAYLOAD = {
     "data/study.yaml": b"study: IRON-7\n",
@@ -106,7 +107,7 @@ def test_every_file_and_every_folder_is_durable_before_the_folio_gets_its_name(t
 
     def before(name, arguments):
         if name == "fsync":
-            synced.append(os.readlink(f"/proc/self/fd/{arguments[0]}"))
+            synced.append(str(Path(f"/proc/self/fd/{arguments[0]}").readlink()))
         elif name == "rename":
             synced.append("rename")
 
@@ -183,9 +184,13 @@ def test_a_full_disk_is_told_with_the_file_it_struck(tmp_path, monkeypatch):
     def refuse(*_):
         raise OSError(errno.ENOSPC, "full")
 
-    monkeypatch.setattr(os, "write", refuse)
-    with pytest.raises(MachineError, match=r"findings\.json: could not write the file: the disk is full"):
-        stage_folio(tmp_path, "run-0001", PAYLOAD, INFO)
+    with monkeypatch.context() as full:
+        full.setattr(os, "write", refuse)
+        with pytest.raises(MachineError, match=r"findings\.json: could not write the file: the disk is full"):
+            stage_folio(tmp_path, "run-0001", PAYLOAD, INFO)
+    # The folio that tells of the failure can be staged in its place.
+    assert list(tmp_path.iterdir()) == []
+    stage_folio(tmp_path, "run-0001", {"data/failure.txt": b"the disk was full"}, INFO).publish()
 
 
 def test_a_folder_that_is_no_folio_has_no_seal(tmp_path):
@@ -241,6 +246,18 @@ class TestTheLockOfAFolio:
         ):
             pass
 
+    def test_whose_file_its_holder_removed_meanwhile_is_taken_on_a_new_file(self, tmp_path, monkeypatch):
+        """Else two runs would each hold a lock, one of them on a file that nobody can see."""
+        lock, ending = fcntl.flock, iter([lambda: (tmp_path / ".run-0001.lock").unlink()])
+
+        def flock_just_after_the_holder_ended(descriptor, how):
+            next(ending, lambda: None)()
+            lock(descriptor, how)
+
+        monkeypatch.setattr(fcntl, "flock", flock_just_after_the_holder_ended)
+        with folio_lock(tmp_path, "run-0001"):
+            assert is_locked(tmp_path, "run-0001")
+
     def test_of_a_killed_process_counts_for_nothing(self, tmp_path):
         (tmp_path / ".run-0001.lock").write_bytes(b"")
         assert not is_locked(tmp_path, "run-0001")
@@ -256,7 +273,10 @@ def name_parts():
 @settings(max_examples=40)
 @given(
     st.dictionaries(
-        st.lists(name_parts(), min_size=1, max_size=3).map("/".join), st.binary(max_size=40), min_size=1, max_size=6
+        st.lists(name_parts(), min_size=1, max_size=3).map("/".join),
+        st.binary(max_size=40),
+        min_size=1,
+        max_size=6,
     )
 )
 def test_any_names_and_bytes_that_are_accepted_stand_the_test_of_others(contents):

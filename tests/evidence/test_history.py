@@ -92,11 +92,20 @@ def test_how_a_run_ended(actions, ended, closed):
 
 def test_what_a_folio_keeps_of_the_trail_ends_with_its_staging():
     entries = trail(
-        *[(action, "A/run-0001") for action in ("allotted", "computed", "staged", "sealed", "rename-completed")]
+        *[
+            (action, "A/run-0001")
+            for action in ("allotted", "computed", "staged", "sealed", "rename-completed")
+        ]
     )
     [run] = run_histories(entries)
     assert [entry.action for entry in run.to_be_staged] == ["allotted", "computed", "staged"]
     assert trail_extract(run.to_be_staged) == b"".join(entry.line + b"\n" for entry in entries[:3])
+
+
+def test_a_run_that_is_staged_again_after_its_staging_failed_keeps_both_attempts():
+    actions = ("allotted", "staged", "failed", "staged", "sealed")
+    [run] = run_histories(trail(*[(action, "A/run-0001") for action in actions]))
+    assert [entry.action for entry in run.to_be_staged] == list(actions[:-1])
 
 
 def test_entries_about_a_run_that_was_never_allotted_are_found():

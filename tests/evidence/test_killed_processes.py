@@ -1,10 +1,10 @@
 import itertools
 
 import pytest
-from evidence.laboratory import Laboratory, killed_at
 
 from assayfolio.evidence.trail import read_trail
 from assayfolio.evidence.verification import verify_workspace
+from evidence.laboratory import Laboratory, killed_at
 
 EXPLANATIONS = (
     "have no line end: an append was interrupted",

@@ -93,7 +93,13 @@ def test_good_lines_count_although_others_are_faulty():
 
 @pytest.mark.parametrize(
     "path",
-    ["data/study.yaml", "data/inputs/Eisen (2) ü.csv", "data/inputs/試料.csv", "data/.hidden", "data/a b/c d.csv"],
+    [
+        "data/study.yaml",
+        "data/inputs/Eisen (2) ü.csv",
+        "data/inputs/試料.csv",
+        "data/.hidden",
+        "data/a b/c d.csv",
+    ],
 )
 def test_ordinary_names_may_stand_in_a_folio(path):
     assert name_fault(path) is None
@@ -151,7 +157,8 @@ def test_bag_info_keeps_the_labels_in_order_and_counts_the_payload():
 
 
 @pytest.mark.parametrize(
-    "tag", [("", "x"), ("A", ""), ("A", " \n "), ("A:B", "x"), ("A", "x\0"), ("A\n", "x"), ("payload-oxum", "1.1")]
+    "tag",
+    [("", "x"), ("A", ""), ("A", " \n "), ("A:B", "x"), ("A", "x\0"), ("A\n", "x"), ("payload-oxum", "1.1")],
 )
 def test_labels_that_cannot_stand_in_bag_info_are_refused(tag):
     with pytest.raises(InputError):

@@ -3,12 +3,12 @@
 import re
 
 import pytest
-from evidence.laboratory import Laboratory
 from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from assayfolio.errors import ExitCode
 from assayfolio.evidence.verification import verify_workspace
+from evidence.laboratory import Laboratory
 
 
 @pytest.fixture(scope="module")

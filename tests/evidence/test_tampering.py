@@ -9,11 +9,11 @@ import re
 import shutil
 
 import pytest
-from evidence.laboratory import Laboratory
 
 from assayfolio.canonical import canonical_bytes, sha256_hex
 from assayfolio.errors import ExitCode
 from assayfolio.evidence.verification import verify_workspace
+from evidence.laboratory import Laboratory
 
 
 @pytest.fixture(scope="module")
@@ -141,7 +141,7 @@ PAYLOAD = [
     ("a file added beside the payload", lambda w: w.write("note.txt", b"x"), "3.5", r"extra file: note\.txt"),
     ("a folder with a file added beside", lambda w: w.write("scan/page.pdf", b"x"), "3.5", r"extra file: scan/page\.pdf"),
     ("a hidden file added", lambda w: w.write("data/.x", b""), "3.5", r"extra file: data/\.x"),
-    ("a name that is no UTF-8 added", lambda w: (os.fsencode(w.folio), open(os.fsencode(w.folio) + b"/data/\xff", "wb").close()), "3.5", r"extra file: data/\\udcff"),
+    ("a name that is no UTF-8 added", lambda w: (w.folio / "data" / os.fsdecode(b"\xff")).write_bytes(b""), "3.5", r"extra file: data/\\udcff"),
     ("an empty folder added", lambda w: (w.folio / "data/empty").mkdir(), "3.5", r"empty folder: data/empty"),
     ("an empty folder added beside", lambda w: (w.folio / "sign-off").mkdir(), "3.5", r"empty folder: sign-off"),
     ("a link added", lambda w: (w.folio / "data/link").symlink_to("study.yaml"), "3.5", r"symbolic link: data/link"),
@@ -327,14 +327,17 @@ def swap_folios(workspace):
     workspace.folio.with_name("aside").rename(other)
 
 
-@pytest.mark.parametrize(("alter", "number", "words"), [pytest.param(*case, id=name) for name, *case in TABLE])
+@pytest.mark.parametrize(
+    ("alter", "number", "words"), [pytest.param(*case, id=name) for name, *case in TABLE]
+)
 def test_an_alteration_is_found_and_named(workspace, alter, number, words):
     alter(workspace)
     assert_found(workspace, number, words)
 
 
 @pytest.mark.parametrize(
-    ("alter", "number", "words"), [pytest.param(*case, id=name) for name, *case in [*PAYLOAD, *TAG_FILES, *RUN_RECORD]]
+    ("alter", "number", "words"),
+    [pytest.param(*case, id=name) for name, *case in [*PAYLOAD, *TAG_FILES, *RUN_RECORD]],
 )
 def test_an_altered_folio_leaves_the_other_checks_of_the_workspace_alone(workspace, alter, number, words):
     alter(workspace)
@@ -364,7 +367,9 @@ def test_each_flipped_byte_in_each_file_is_found_and_the_file_named(workspace):
             spoilt[place] ^= 1
             path.write_bytes(spoilt)
             failed = verify_workspace(workspace.runs, None).with_outcome("failed")
-            name = path.name if path.parent == workspace.runs else path.relative_to(path.parents[-1]).as_posix()
+            name = (
+                path.name if path.parent == workspace.runs else path.relative_to(path.parents[-1]).as_posix()
+            )
             inside = re.sub(r".*/run-\d+/", "", name)
             assert any(inside in note for each in failed for note in each.notes), (path, place)
         path.write_bytes(content)

@@ -5,12 +5,12 @@ import os
 import threading
 
 import pytest
-from evidence.laboratory import patched_system
 
 from assayfolio.errors import BusyError, ExitCode, InputError, MachineError
 from assayfolio.evidence import files
 from assayfolio.evidence.entries import parse_entry
 from assayfolio.evidence.trail import TrailBrokenError, open_trail, read_trail
+from evidence.laboratory import patched_system
 
 
 def trail_file(laboratory):
@@ -52,7 +52,7 @@ def test_the_head_holds_number_and_digest_of_the_newest_line(laboratory):
 
 
 def test_what_was_entered_reads_back_as_it_was(laboratory):
-    entered = enter(laboratory, "looked", "prüfte 试验 \U0001f9ea \x7f\u2028 \"\\")
+    entered = enter(laboratory, "looked", 'prüfte 试验 \U0001f9ea \x7f\u2028 "\\')
     reading = read_trail(laboratory.runs)
     assert list(reading.entries[1:]) == entered
     assert [entry.line for entry in reading.entries] == list(reading.lines)
@@ -130,10 +130,9 @@ def test_many_writers_at_once_leave_one_whole_chain(laboratory):
 
 def test_every_byte_is_made_durable_before_the_next_step(laboratory):
     calls = []
-    with laboratory.trail() as writer:
-        with patched_system(lambda name, arguments: calls.append((name, arguments[0]))):
-            writer.append("looked", "workspace")
-    order = [name for name, _ in calls]
+    with laboratory.trail() as writer, patched_system(lambda name, _: calls.append(name)):
+        writer.append("looked", "workspace")
+        order = list(calls)
     # Trail line, then the new head beside the old one, then the rename, then the folder.
     assert order == ["write", "fsync", "open", "write", "fsync", "replace", "open", "fsync"]
 
@@ -166,7 +165,9 @@ def test_a_disk_that_refuses_is_told_with_its_path_in_plain_words(laboratory, mo
     assert told.value.exit_code == ExitCode.MACHINE == 3
 
 
-def test_after_a_failed_append_the_same_writer_adds_no_more_and_the_next_one_recovers(laboratory, monkeypatch):
+def test_after_a_failed_append_the_same_writer_adds_no_more_and_the_next_one_recovers(
+    laboratory, monkeypatch
+):
     write = os.write
     with laboratory.trail() as writer:
         with monkeypatch.context() as full:
@@ -187,7 +188,9 @@ def test_a_disk_that_fills_between_line_and_head_leaves_a_trail_that_recovers(la
 
     with laboratory.trail() as writer, monkeypatch.context() as full:
         full.setattr(os, "replace", refuse)
-        with pytest.raises(MachineError, match=r"audit-trail\.head: could not replace the file: the disk is full"):
+        with pytest.raises(
+            MachineError, match=r"audit-trail\.head: could not replace the file: the disk is full"
+        ):
             writer.append("looked", "workspace")
     enter(laboratory, "went on")
     actions = [entry.action for entry in read_trail(laboratory.runs).entries]
@@ -204,14 +207,19 @@ def test_a_file_changed_behind_the_writers_back_is_noticed_at_the_next_append(la
 
 def test_text_that_is_no_utf8_is_refused_in_words_and_nothing_is_entered(laboratory):
     with laboratory.trail() as writer:
-        for arguments in (("looked", "data\udcff.csv"), ("looked", "x", None, {"inputs": {"d\udcff.csv": "1"}})):
+        for arguments in (
+            ("looked", "data\udcff.csv"),
+            ("looked", "x", None, {"inputs": {"d\udcff.csv": "1"}}),
+        ):
             with pytest.raises(InputError, match=r"\\udcff.*no UTF-8"):
                 writer.append(*arguments)
         writer.append("looked", "workspace")
     assert len(read_trail(laboratory.runs).entries) == 2
 
 
-@pytest.mark.parametrize("time", ["2026-03-02T08:00:00Z", "2026-03-02T08:00:00.000000+00:00", "yesterday", ""])
+@pytest.mark.parametrize(
+    "time", ["2026-03-02T08:00:00Z", "2026-03-02T08:00:00.000000+00:00", "yesterday", ""]
+)
 def test_a_time_of_another_form_is_not_entered(laboratory, time):
     with laboratory.trail() as writer:
         writer._now = lambda: time
@@ -279,23 +287,54 @@ class TestAnythingElseWrong:
     @pytest.mark.parametrize(
         ("spoil", "words"),
         [
-            (lambda text: text.replace(b'"looked"', b'"booked"'), "line 3: it does not carry the SHA-256 of line 2"),
+            (
+                lambda text: text.replace(b'"looked"', b'"booked"'),
+                "line 3: it does not carry the SHA-256 of line 2",
+            ),
             (lambda text: text.replace(b'"actor":', b'"actor": ', 1), "line 1: it is not in canonical form"),
             (lambda text: text.replace(b"\n", b"\r\n", 1), "line 1: it ends with a carriage return"),
             (lambda text: text.replace(b"\n", b"\n\n", 1), "line 2: the line is empty"),
             (lambda text: b"\xef\xbb\xbf" + text, "line 1: it is not JSON at character 1"),
-            (lambda text: text.replace(b'"step":1', b'"step":1,"step":1', 1), 'line 2: the key "step" stands twice'),
+            (
+                lambda text: text.replace(b'"step":1', b'"step":1,"step":1', 1),
+                'line 2: the key "step" stands twice',
+            ),
             (lambda text: text.replace(b'"step":1', b'"step":1.0', 1), "line 2: it is not in canonical form"),
-            (lambda text: text.replace(b'"step":1', b'"step":' + b"1" * 30, 1), "line 2: the integer 1+ is beyond"),
+            (
+                lambda text: text.replace(b'"step":1', b'"step":' + b"1" * 30, 1),
+                "line 2: the integer 1+ is beyond",
+            ),
             (lambda text: text.replace(b'"step":1', b'"step":NaN', 1), "line 2: NaN is no JSON number"),
             (lambda text: text.replace(b'"step":1', b'"step":' + b"[" * 9000, 1), "line 2: "),
-            (lambda text: text.replace(b'"action":"looked",', b"", 1), "line 2: keys missing or unknown: action"),
+            (
+                lambda text: text.replace(b'"action":"looked",', b"", 1),
+                "line 2: keys missing or unknown: action",
+            ),
             (lambda text: text.replace(b'"reason":null', b'"reason":3', 1), '"reason" is neither'),
+            (lambda text: text.replace(b'"seq":2', b'"seq":true', 1), '"seq" is not a whole number'),
+            (lambda text: text.replace(b'"seq":2', b'"seq":0', 1), '"seq" is not a whole number from 1'),
+            (lambda text: text.replace(b".000000Z", b"Z", 1), '"time" is not a UTC time'),
+            (lambda text: text.replace(b'"m.berg"', b"7", 1), '"actor", "action" or "subject" is not a text'),
+            (lambda text: text.replace(b'{"step":1}', b"[]", 1), '"details" is not an object'),
+            (lambda text: text.replace(b'"' + b"0" * 64 + b'"', b"null", 1), '"previous" is not a text'),
+            (lambda text: text.replace(b"0" * 64, b"0" * 63, 1), '"previous" is not 64 zeros'),
+            (lambda text: b"[]\n" + text, "line 1: it is not an object"),
+            (
+                lambda text: text.replace(b'"step":1', b'"step":1e999', 1),
+                "line 2: it is not in canonical form",
+            ),
+            (lambda text: b" " + text, "line 1: blanks stand around it"),
             (lambda text: text.replace(b"m.berg", b"m.b\xffrg", 1), "line 1: byte .* is not UTF-8"),
-            (lambda text: text.replace(b'"seq":2', b'"seq":5', 1), "line 2: it has the number 5 where 2 should"),
+            (
+                lambda text: text.replace(b'"seq":2', b'"seq":5', 1),
+                "line 2: it has the number 5 where 2 should",
+            ),
             (lambda text: text.split(b"\n", 1)[1], "line 1: it has the number 2 where 1"),
             (lambda text: text + text.splitlines(keepends=True)[-1], "line 4: it has the number 3 where 4"),
-            (lambda text: text[: text.index(b"\n") + 1], "it stands at entry 3, but audit-trail.jsonl has 1 whole"),
+            (
+                lambda text: text[: text.index(b"\n") + 1],
+                "it stands at entry 3, but audit-trail.jsonl has 1 whole",
+            ),
             (lambda text: b"", "it stands at entry 3, but audit-trail.jsonl has 0 whole"),
         ],
     )
@@ -304,7 +343,7 @@ class TestAnythingElseWrong:
         spoilt = spoil(trail_file(laboratory).read_bytes())
         assert spoilt != trail_file(laboratory).read_bytes()
         trail_file(laboratory).write_bytes(spoilt)
-        with pytest.raises(TrailBrokenError, match="the audit trail is broken.*assayfolio verify"):
+        with pytest.raises(TrailBrokenError, match=r"the audit trail is broken.*assayfolio verify"):
             enter(laboratory, "went on")
         with pytest.raises(TrailBrokenError, match=words):
             enter(laboratory, "went on")
@@ -334,7 +373,7 @@ class TestAnythingElseWrong:
         head = head_file(laboratory).read_bytes()
         enter(laboratory, "looked", "looked again")
         head_file(laboratory).write_bytes(head)
-        with pytest.raises(TrailBrokenError, match="it stands at entry 1, but .* 3 lines: lines were added"):
+        with pytest.raises(TrailBrokenError, match=r"it stands at entry 1, but .* 3 lines: lines were added"):
             enter(laboratory, "went on")
 
     def test_a_trail_that_is_gone_is_not_begun_anew_beside_its_folios(self, laboratory):

@@ -3,15 +3,16 @@ import threading
 from contextlib import contextmanager
 
 import pytest
-from evidence.laboratory import Laboratory
 
 from assayfolio.errors import ExitCode, InputError
 from assayfolio.evidence import inventory, locks
+from assayfolio.evidence import verification as verification_module
 from assayfolio.evidence.checks import FOLIO_CHECKS, verify_folio
 from assayfolio.evidence.folio import folio_lock
 from assayfolio.evidence.outcomes import CheckOutcome, Verification
 from assayfolio.evidence.trail import read_trail
-from assayfolio.evidence.verification import verify_workspace
+from assayfolio.evidence.verification import verify_lone_folios, verify_workspace
+from evidence.laboratory import Laboratory
 
 
 def outcome_of(verification, number, subject=None):
@@ -51,7 +52,10 @@ def test_outcomes_come_in_the_order_of_their_numbers_and_runs(laboratory):
     trail = [f"1.{n}" for n in range(1, 7)]
     folio = [check.number for check in FOLIO_CHECKS]
     assert [each.number for each in outcomes] == [*trail, "2.1", "2.2", "2.2", "2.3", "2.4", *folio, *folio]
-    assert [each.subject for each in outcomes if each.number == "3.1"] == ["IRON-7/run-0001", "ZINC-1/run-0001"]
+    assert [each.subject for each in outcomes if each.number == "3.1"] == [
+        "IRON-7/run-0001",
+        "ZINC-1/run-0001",
+    ]
 
 
 def test_a_new_workspace_passes_and_says_that_nothing_was_run(tmp_path):
@@ -61,7 +65,10 @@ def test_a_new_workspace_passes_and_says_that_nothing_was_run(tmp_path):
 
 
 def test_every_verification_says_that_no_witness_was_asked(laboratory):
-    assert "compared with no head kept elsewhere" in outcome_of(verify_workspace(laboratory.runs, None), "1.5").notes[0]
+    assert (
+        "compared with no head kept elsewhere"
+        in outcome_of(verify_workspace(laboratory.runs, None), "1.5").notes[0]
+    )
 
 
 def test_a_clock_that_was_set_back_is_noted_and_no_finding(laboratory):
@@ -190,13 +197,21 @@ class TestATornLine:
     def test_passes_with_a_note_once_it_is_set_aside(self, laboratory, aside):
         verification = verify_workspace(laboratory.runs, None)
         assert verification.exit_code == ExitCode.DONE
-        assert "an append was interrupted here; entry 2 tells of it" in outcome_of(verification, "2.4").notes[0]
+        assert (
+            "an append was interrupted here; entry 2 tells of it" in outcome_of(verification, "2.4").notes[0]
+        )
 
     def test_is_kept_as_it_was(self, laboratory, aside):
         aside.write_bytes(b"something else")
-        assert "changed: audit-trail.torn-2" in outcome_of(verify_workspace(laboratory.runs, None), "2.4").notes[0]
+        assert (
+            "changed: audit-trail.torn-2"
+            in outcome_of(verify_workspace(laboratory.runs, None), "2.4").notes[0]
+        )
         aside.unlink()
-        assert "missing: audit-trail.torn-2" in outcome_of(verify_workspace(laboratory.runs, None), "2.4").notes[0]
+        assert (
+            "missing: audit-trail.torn-2"
+            in outcome_of(verify_workspace(laboratory.runs, None), "2.4").notes[0]
+        )
 
 
 class TestNamedFolios:
@@ -272,6 +287,13 @@ class TestAFolioOutsideAnyWorkspace:
         verification = verify_workspace(other.runs, [archived])
         assert verification.exit_code == ExitCode.NOT_CHECKABLE
 
+    def test_needs_no_workspace_at_all(self, archived):
+        verification = verify_lone_folios([archived])
+        assert verification.exit_code == ExitCode.NOT_CHECKABLE
+        assert [each.number for each in verification.outcomes] == [check.number for check in FOLIO_CHECKS]
+        with pytest.raises(InputError, match="absent is not there"):
+            verify_lone_folios([archived.with_name("absent")])
+
     def test_is_checked_against_a_trail_that_is_given(self, laboratory):
         folio = laboratory.run()
         outcomes = verify_folio(folio, read_trail(laboratory.runs))
@@ -307,7 +329,9 @@ class TestWhatCannotBeRead:
             ("tagmanifest-sha256.txt", {"3.2", "3.6", "3.10"}),
         ],
     )
-    def test_of_a_folio_is_not_checkable_and_named_with_the_reason(self, laboratory, monkeypatch, name, numbers):
+    def test_of_a_folio_is_not_checkable_and_named_with_the_reason(
+        self, laboratory, monkeypatch, name, numbers
+    ):
         laboratory.run()
         names = [name] if name != "trail.jsonl" else ["data/trail.jsonl"]
         with refusing(monkeypatch, *names):
@@ -372,6 +396,19 @@ class TestWhileAWriterIsAtWork:
         finishing.join()
         assert verification.exit_code == ExitCode.DONE
 
+    def test_a_run_that_ends_after_the_trail_was_read_is_looked_at_again(self, laboratory, monkeypatch):
+        runs_to_come = iter([laboratory.run])
+
+        def read_just_before_a_run(runs):
+            reading = read_trail(runs)
+            next(runs_to_come, lambda: None)()
+            return reading
+
+        monkeypatch.setattr(verification_module, "read_trail", read_just_before_a_run)
+        verification = verify_workspace(laboratory.runs, None)
+        assert verification.exit_code == ExitCode.DONE
+        assert outcome_of(verification, "3.10").subject == "IRON-7/run-0001"
+
     def test_runs_that_begin_and_end_meanwhile_are_no_findings(self, laboratory):
         stop = threading.Event()
 
@@ -387,6 +424,18 @@ class TestWhileAWriterIsAtWork:
             stop.set()
             worker.join()
         assert ExitCode.FINDING not in codes
+
+
+def test_a_forged_trail_whose_details_have_odd_types_is_judged_without_stumbling(laboratory):
+    laboratory.run()
+    with laboratory.trail() as writer:
+        writer.append("torn-line-set-aside", "audit trail", None, {"file": ["x"], "sha256": {}})
+        writer.append("allotted", "IRON-7/run-0002", None, {"number": [2], "inputs": [["x"]]})
+        writer.append("sealed", "IRON-7/run-0002", None, {"seal": {"a": 1}, "outcome": []})
+        writer.append("interrupted", "LEAD-1/run-0001", None, {"found": 7})
+    verification = verify_workspace(laboratory.runs, None)
+    assert {each.number for each in verification.with_outcome("failed")} == {"2.1", "2.2", "2.4"}
+    laboratory.settle()
 
 
 def test_verification_writes_nothing(laboratory):

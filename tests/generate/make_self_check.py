@@ -1,7 +1,8 @@
 """Write `workflow/references.json`: the references that every run recomputes before it computes anything.
 
 Certified values and data are read from the NIST StRD files that scipy ships; function values come from the
-vectors of this test suite, and one far tail from mpmath. With --check the file is only compared with what would be written.
+vectors of this test suite, and one far tail from mpmath. With --check the file is only compared with what
+would be written.
 """
 
 import json

@@ -14,7 +14,7 @@ from assayfolio.statistics.distributions import studentized_range_isf
 from support.reference import analysed, cases_of, error_in_widths, relative_error, square_root
 
 CASES = cases_of("tukey_kramer")
-TOLERANCE = 1e-10
+TOLERANCE = 1e-11
 
 
 @pytest.mark.parametrize("name", CASES)

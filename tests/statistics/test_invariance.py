@@ -1,4 +1,4 @@
-"""What may not change the result: the order of rows and levels, the zero point, the unit, the way of summing."""
+"""What may not change a result: order of rows and levels, zero point, unit, the way of forming sums."""
 
 from fractions import Fraction
 

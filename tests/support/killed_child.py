@@ -25,11 +25,9 @@ def main() -> None:
             os.kill(os.getpid(), signal.SIGKILL)
 
     def hook(event: str, details: tuple[object, ...]) -> None:
-        if event in CHANGES:
+        writing = event == "open" and isinstance(details[2], int) and details[2] & WRITING
+        if event in CHANGES or (writing and "/runs/" in str(details[0])):
             count()
-        elif event == "open" and isinstance(details[2], int) and details[2] & WRITING:
-            if "/runs/" in str(details[0]):
-                count()
 
     real_fsync, real_write = os.fsync, os.write
 

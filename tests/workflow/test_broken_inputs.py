@@ -1,4 +1,4 @@
-"""Broken study and data files: each is refused with exit code 2 and its place, and leaves a `refused` entry only."""
+"""Broken study and data files: exit code 2, the place named, and nothing left but a `refused` entry."""
 
 import hashlib
 
@@ -69,7 +69,7 @@ BROKEN_STUDIES = {
     ),
     "a method of a later version": (
         STUDY.replace("tukey-kramer", "scheffe"),
-        "configs/study.yaml:13:13",
+        "configs/study.yaml:11:5",
         "scheffe",
     ),
     "equivalence, not computed yet": (
@@ -82,7 +82,7 @@ BROKEN_STUDIES = {
             "comparisons:\n  - name: all pairs of methods\n    pairs: all\n    adjust: tukey-kramer\n", ""
         )
         + "design: {effects: random}\n",
-        "configs/study.yaml:14",
+        "configs/study.yaml:13:10",
         "random",
     ),
     "a title the font cannot set": (STUDY.replace("Sulfate", "硫酸盐"), "configs/study.yaml:2", "U+786B"),

@@ -1,6 +1,6 @@
 """NIST StRD, all eleven one-way data sets, through the command line: CSV in, findings.json out.
 
-Source: NIST/ITL Statistical Reference Datasets, analysis of variance; the files that scipy ships with its tests.
+Source: NIST/ITL Statistical Reference Datasets, analysis of variance; the files that scipy ships.
 Certified are, for each set, both sums of squares, both mean squares, F, R squared and the residual standard
 deviation: 77 values to 15 digits, among them SmLs07 to SmLs09 with twelve common leading digits.
 """

@@ -20,8 +20,8 @@ from assayfolio.errors import ExitCode
 def verify(folios: tuple[Path, ...], named_workspace: Path | None, as_json: bool) -> int:
     """Verify folios and the audit trail.
 
-    Without FOLIO, every folio of the workspace. Numbered checks, each passed, failed or not checkable with its
-    reason; every changed, missing or extra file is named. Nothing is repaired.
+    Without FOLIO, every folio of the workspace. Numbered checks, each passed, failed or not checkable with
+    its reason; every changed, missing or extra file is named. Nothing is repaired.
     """
     from assayfolio.workflow.audit import verification_document, verification_lines, verify_all
 

@@ -8,7 +8,7 @@ This module reads and judges; it never writes.
 """
 
 import re
-from collections.abc import Iterator, Mapping
+from collections.abc import Iterable, Iterator, Mapping
 from dataclasses import dataclass
 from pathlib import Path
 from typing import Literal
@@ -91,6 +91,12 @@ class TrailHead:
     def content(self) -> bytes:
         """The head file's bytes."""
         return canonical_bytes({"seq": self.seq, "sha256": self.sha256}) + b"\n"
+
+
+def set_aside_files(entries: Iterable[TrailEntry]) -> frozenset[str]:
+    """The names of the files that hold torn lines, as the trail tells of them."""
+    named = (entry.details.get("file") for entry in entries if entry.action == TORN_LINE_SET_ASIDE)
+    return frozenset(name for name in named if isinstance(name, str))
 
 
 EMPTY_HEAD = TrailHead(0, NO_LINE)

@@ -10,6 +10,7 @@ is the seal, never the file modes.
 """
 
 import os
+import shutil
 import stat
 from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import dataclass
@@ -80,7 +81,8 @@ def stage_folio(
     `payload` maps paths such as "data/study.yaml" to their bytes; `bag_info` gives the labels of
     bag-info.txt, to which Payload-Oxum is added. The same arguments give the same bytes and so the same seal.
     Raises InputError for paths that cannot stand in a folio or beside each other; MachineError where the
-    target or the staging folder exists, the disk refuses, or a file reads back differently.
+    target or the staging folder exists, the disk refuses, or a file reads back differently; what this call
+    had written is then removed again. A killed process leaves it for the next writer to tell of.
     """
     _refuse_paths(payload)
     target = folder / name
@@ -90,6 +92,18 @@ def stage_folio(
     contents = _with_tag_files(payload, bag_info)
     make_folder(folder)
     make_folder(staging)
+    try:
+        _write(staging, contents)
+        _read_back(staging, contents)
+    except BaseException:
+        # What this call began is of no use to anybody, and in the way of the folio that tells of the failure.
+        shutil.rmtree(staging, ignore_errors=True)
+        raise
+    return StagedFolio(staging, target, sha256_hex(contents[TAG_MANIFEST_FILE]))
+
+
+def _write(staging: Path, contents: Mapping[str, bytes]) -> None:
+    """Write every file, then make every folder durable."""
     folders = {staging}
     for inside, content in contents.items():
         file = staging / inside
@@ -98,8 +112,6 @@ def stage_folio(
         folders.update(parent for parent in file.parents if staging in parent.parents)
     for written in sorted(folders):
         sync_folder(written)
-    _read_back(staging, contents)
-    return StagedFolio(staging, target, sha256_hex(contents[TAG_MANIFEST_FILE]))
 
 
 def _refuse_paths(payload: Mapping[str, bytes]) -> None:

@@ -8,7 +8,7 @@ from typing import Any
 
 from assayfolio.evidence.entries import TrailEntry, TrailReading
 from assayfolio.evidence.files import plain_reason, read_regular
-from assayfolio.evidence.history import STAGED, RunHistory, run_histories
+from assayfolio.evidence.history import RunHistory, run_histories, up_to_staged
 from assayfolio.evidence.inventory import FoundFile, Inventory, take_inventory
 from assayfolio.evidence.manifest import (
     MANIFEST_FILE,
@@ -35,20 +35,17 @@ class TrailIndex:
         self.known_lines = frozenset(reading.lines)
         self._places: dict[str, list[int]] = {}
         for place, entry in enumerate(reading.parsed):
-            if entry is not None and entry.subject in self.histories:
+            if entry is not None:
                 self._places.setdefault(entry.subject, []).append(place)
 
     def lines_to_staged(self, subject: str) -> list[tuple[TrailEntry, bytes]]:
-        """The run's entries and their very lines, from allotment to "staged"."""
-        found: list[tuple[TrailEntry, bytes]] = []
-        for place in self._places.get(subject, []):
-            entry = self.reading.parsed[place]
-            if entry is None:
-                continue
-            found.append((entry, self.reading.lines[place]))
-            if entry.action == STAGED:
-                break
-        return found
+        """The run's entries and their very lines, from allotment to the last "staged"."""
+        pairs = [
+            (self.reading.parsed[place], self.reading.lines[place]) for place in self._places.get(subject, [])
+        ]
+        entries = [entry for entry, _ in pairs if entry is not None]
+        count = len(up_to_staged(entries))
+        return list(zip(entries[:count], (line for _, line in pairs), strict=False))
 
 
 @dataclass(frozen=True, slots=True)

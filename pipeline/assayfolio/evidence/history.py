@@ -39,6 +39,12 @@ def split_subject(subject: str) -> tuple[str, int] | None:
     return matched[1], int(matched[3])
 
 
+def up_to_staged(entries: Sequence[TrailEntry]) -> tuple[TrailEntry, ...]:
+    """The entries up to the last "staged", that included; all of them where there is none."""
+    places = [place for place, entry in enumerate(entries, start=1) if entry.action == STAGED]
+    return tuple(entries[: places[-1]] if places else entries)
+
+
 @dataclass(frozen=True, slots=True)
 class RunHistory:
     """The entries of one run, in order; the first is its allotment."""
@@ -93,11 +99,11 @@ class RunHistory:
 
     @property
     def to_be_staged(self) -> tuple[TrailEntry, ...]:
-        """The entries that the folio's data/trail.jsonl holds: from allotment to "staged", that included."""
-        for position, entry in enumerate(self.entries):
-            if entry.action == STAGED:
-                return self.entries[: position + 1]
-        return self.entries
+        """The entries that the folio's data/trail.jsonl holds: from allotment to the last "staged".
+
+        A run whose staging fails is staged a second time, with the reason of its failure.
+        """
+        return up_to_staged(self.entries)
 
 
 def run_histories(entries: Iterable[TrailEntry]) -> tuple[RunHistory, ...]:

@@ -53,7 +53,9 @@ def check_place(folio: FolioReading, tally: Tally) -> None:
     elif folio.name != run_name(number):
         tally.failed.append(f"the folder is called {shown(folio.name)}, {RUN_FILE} says {run_name(number)}")
     if folio.trail is not None and folio.study_folder != study:
-        tally.failed.append(f"the folder lies in {shown(folio.study_folder)}, {RUN_FILE} says study {study}")
+        tally.failed.append(
+            f"the folder lies in {shown(folio.study_folder)}, {RUN_FILE} says study {shown(study)}"
+        )
 
 
 def _inputs(run: Mapping[str, Any], tally: Tally) -> Iterator[tuple[str, int, str]]:

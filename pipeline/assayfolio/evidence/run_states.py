@@ -5,7 +5,7 @@ from collections.abc import Iterator
 from pathlib import Path
 
 from assayfolio.errors import MachineError
-from assayfolio.evidence.entries import HEAD_FILE, TORN_LINE_SET_ASIDE, TRAIL_FILE, TrailReading
+from assayfolio.evidence.entries import HEAD_FILE, TRAIL_FILE, TrailReading, set_aside_files
 from assayfolio.evidence.files import plain_reason, replacement_name
 from assayfolio.evidence.folio import UNSEALED, leftover_record, reopen_staged
 from assayfolio.evidence.folio_reading import TrailIndex
@@ -135,9 +135,7 @@ def check_surroundings(runs: Path, index: TrailIndex) -> CheckOutcome:
     """
     tally = Tally()
     studies = {history.study for history in index.histories.values()}
-    entered = {
-        entry.details.get("file") for entry in index.reading.entries if entry.action == TORN_LINE_SET_ASIDE
-    }
+    entered = set_aside_files(index.reading.entries)
     known = {TRAIL_FILE, HEAD_FILE, lock_path(runs, WRITER).name, replacement_name(runs / HEAD_FILE).name}
     for item in _items(runs, tally):
         name = shown(item.name)

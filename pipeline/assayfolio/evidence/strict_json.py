@@ -28,7 +28,7 @@ def _no_twin_keys(pairs: list[tuple[str, Any]]) -> dict[str, Any]:
     found: dict[str, Any] = {}
     for key, value in pairs:
         if key in found:
-            raise ValueError(f'the key "{key}" stands twice')
+            raise ValueError(f"the key {json.dumps(key)} stands twice")
         found[key] = value
     return found
 

@@ -31,6 +31,7 @@ from assayfolio.evidence.entries import (
     TrailReading,
     is_trail_time,
     read_trail,
+    set_aside_files,
 )
 from assayfolio.evidence.files import explained, read_regular, replace_file, sync_folder
 from assayfolio.evidence.locks import lock_path, take_lock
@@ -263,6 +264,6 @@ def _set_aside(runs: Path, number: int, torn: bytes) -> None:
 
 
 def _unentered(runs: Path, reading: TrailReading) -> list[Path]:
-    entered = {entry.details.get("file") for entry in reading.entries if entry.action == TORN_LINE_SET_ASIDE}
+    entered = set_aside_files(reading.entries)
     with explained("look for torn lines", runs):
         return sorted(path for path in runs.glob(f"{TORN_PREFIX}*") if path.name not in entered)

@@ -38,7 +38,7 @@ from assayfolio.evidence.outcomes import CheckOutcome, Tally, Verification
 from assayfolio.evidence.run_states import check_numbers, check_run, check_surroundings
 from assayfolio.evidence.trail import WRITER
 
-__all__ = ["CheckOutcome", "Verification", "verify_workspace"]
+__all__ = ["CheckOutcome", "Verification", "verify_lone_folios", "verify_workspace"]
 
 _LOOKS = 3
 _SETTLING_SECONDS = 0.05

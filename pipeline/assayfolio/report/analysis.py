@@ -30,10 +30,10 @@ def checks_section(basis: Basis, numbering: Numbering, accent: str) -> Section:
     blocks: list[Block] = [
         Paragraph(
             prose(
-                "The analysis assumes independent values, one variance at all levels, and errors that are close to "
-                "normal. The checks inform; they never choose the analysis. A check that shows nothing does not show "
-                "that an assumption holds. No check can see how the measurements were made: independence rests on "
-                "how they were ordered and prepared."
+                "The analysis assumes independent values, one variance at all levels, and errors that are "
+                "close to normal. The checks inform; they never choose the analysis. A check that shows "
+                "nothing does not show that an assumption holds. No check can see how the measurements were "
+                "made: independence rests on how they were ordered and prepared."
             )
         )
     ]
@@ -86,9 +86,9 @@ def _residual_figures(basis: Basis, numbering: Numbering, accent: str) -> list[B
             numbering.figure(),
             (order, against),
             prose(
-                "Residuals (value minus the mean of its level), {total} in all. Left: in the order of the file; a "
-                "drift or steps would speak against independence. Right: against the mean of the level; a widening "
-                "spread would speak against one variance." + how,
+                "Residuals (value minus the mean of its level), {total} in all. Left: in the order of the "
+                "file; a drift or steps would speak against independence. Right: against the mean of the "
+                "level; a widening spread would speak against one variance." + how,
                 total=str(basis.total),
             ),
         )
@@ -100,11 +100,12 @@ def _residual_figures(basis: Basis, numbering: Numbering, accent: str) -> list[B
                 numbering.figure(),
                 (normal,),
                 prose(
-                    "Normal plot of the residuals, {total} in all. The line is a normal distribution with mean zero and the "
-                    "residuals’ own root mean square. The grey area is the pointwise {confidence} envelope of an order "
-                    "statistic (Chambers and others, 1983); it treats residuals as independent, which they nearly "
-                    "are. Points that leave it in a curve speak against normal errors; a single point at its edge "
-                    "says little." + (" Only part of the points is drawn between the ends." if many else ""),
+                    "Normal plot of the residuals, {total} in all. The line is a normal distribution with "
+                    "mean zero and the residuals’ own root mean square. The grey area is the pointwise "
+                    "{confidence} envelope of an order statistic (Chambers and others, 1983); it treats "
+                    "residuals as independent, which they nearly are. Points that leave it in a curve speak "
+                    "against normal errors; a single point at its edge says "
+                    "little." + (" Only part of the points is drawn between the ends." if many else ""),
                     total=str(basis.total),
                     confidence=basis.confidence,
                 ),
@@ -121,7 +122,8 @@ def anova_section(basis: Basis, numbering: Numbering) -> Section:
     blocks: list[Block] = [
         Paragraph(
             prose(
-                "#Null hypothesis.# The {count} levels of {factor}{names} have the same mean {response}: {means}.",
+                "#Null hypothesis.# The {count} levels of {factor}{names} have the same mean {response}: "
+                "{means}.",
                 count=str(count),
                 factor=basis.factor,
                 names=f" ({', '.join(names)})" if count <= _NAMED_LEVELS else "",
@@ -186,7 +188,9 @@ def _anova_notes(basis: Basis) -> list[Prose]:
     if anova.f_critical is not None:
         notes.append(
             prose(
-                "Critical value of *F* at level {alpha}: {critical}.", alpha=alpha_words(basis), critical=statistic(anova.f_critical)
+                "Critical value of *F* at level {alpha}: {critical}.",
+                alpha=alpha_words(basis),
+                critical=statistic(anova.f_critical),
             )
         )
     if anova.residual_sd is not None:
@@ -228,10 +232,17 @@ def comparisons_section(basis: Basis, numbering: Numbering, accent: str) -> Sect
 
 def _family_words(basis: Basis, family: ComparisonFamily) -> Prose:
     count = len(family.rows)
-    side = {"two-sided": "two-sided", "greater": "one-sided (greater)", "less": "one-sided (less)"}[family.alternative]
+    side = {"two-sided": "two-sided", "greater": "one-sided (greater)", "less": "one-sided (less)"}[
+        family.alternative
+    ]
     df = counted(family.rows[0].df, "degree of freedom", "degrees of freedom")
     if count == 1:
-        words = prose("One comparison, {side}, {df}; planned, {registered}.", side=side, df=df, registered=NOT_REGISTERED)
+        words = prose(
+            "One comparison, {side}, {df}; planned, {registered}.",
+            side=side,
+            df=df,
+            registered=NOT_REGISTERED,
+        )
     else:
         words = prose(
             "A family of {count} comparisons, {side}, {adjusted}, {df}; planned, {registered}.",
@@ -242,7 +253,8 @@ def _family_words(basis: Basis, family: ComparisonFamily) -> Prose:
             registered=NOT_REGISTERED,
         )
     verdict = prose(
-        " A difference is shown where the {kind}*p* is at most {alpha}; whether it matters, its size and interval say.",
+        " A difference is shown where the {kind}*p* is at most {alpha}; whether it matters, its size and "
+        "interval say.",
         kind="" if family.adjust == "none" else "adjusted ",
         alpha=alpha_words(basis),
     )
@@ -275,7 +287,11 @@ def _family_table(basis: Basis, family: ComparisonFamily, numbering: Numbering) 
         cells: list[Words] = [basis.label(row), scale.mean(row.estimate)]
         if with_ci:
             cells += _ends(basis, row)
-        cells += [scale.spread(row.se, largest), statistic(row.statistic), probability(row.p, basis.response.alpha)]
+        cells += [
+            scale.spread(row.se, largest),
+            statistic(row.statistic),
+            probability(row.p, basis.response.alpha),
+        ]
         if adjusted:
             cells.append(adjusted_p(basis, row))
         rows.append([*cells, row_verdict(row.verdict)])
@@ -306,18 +322,23 @@ def _family_figure(
     if total > MOST_ROWS:
         order = sorted(range(total), key=lambda index: (rows[index].log10_p_adjusted, rows[index].p, index))
         rows = tuple(rows[index] for index in sorted(order[:MOST_ROWS]))
-        limited = f" Drawn are the {MOST_ROWS} of {total} with the smallest adjusted *p*, in the order of the plan; the table has all."
+        limited = (
+            f" Drawn are the {MOST_ROWS} of {total} with the smallest adjusted *p*, in the order of the "
+            "plan; the table has all."
+        )
     with_ci = is_single_step(family)
     picture = interval_plot(basis, rows, accent, f"comparisons-{number}.svg", f"{basis.confidence} interval")
     if with_ci:
         what = prose(
-            "Estimated differences (dots) with {kind}, {name}. An interval that leaves out zero is a difference shown.",
+            "Estimated differences (dots) with {kind}, {name}. An interval that leaves out zero is a "
+            "difference shown.",
             name=family.name,
             kind=interval_kind(basis, family) + ("s" if total > 1 else ""),
         )
     else:
         what = prose(
-            "Estimated differences (dots), {name}. {method} has no intervals; the verdicts stand in the table.",
+            "Estimated differences (dots), {name}. {method} has no intervals; the verdicts stand in the "
+            "table.",
             name=family.name,
             method=adjustment_of(family).name,
         )
@@ -331,7 +352,13 @@ def not_reported_section(basis: Basis) -> Section:
     if not missing:
         blocks.append(Paragraph(prose("Everything that the plan asks for is reported.")))
     blocks += [
-        Paragraph(prose("#{what}.# {reason}.", what=capitalised(item.what), reason=capitalised(item.reason.rstrip("."))))
+        Paragraph(
+            prose(
+                "#{what}.# {reason}.",
+                what=capitalised(item.what),
+                reason=capitalised(item.reason.rstrip(".")),
+            )
+        )
         for item in missing
     ]
     return Section(ANCHORS[NOT_REPORTED], NOT_REPORTED, "Asked for and not reported", tuple(blocks))

@@ -1,7 +1,12 @@
 """The first page: every planned question, its verdict in words, the estimate, and what it does not mean."""
 
-
-from assayfolio.findings import DIFFERENCE_NOT_SHOWN, DIFFERENCE_SHOWN, NOT_ASSESSABLE, ComparisonFamily, ComparisonRow
+from assayfolio.findings import (
+    DIFFERENCE_NOT_SHOWN,
+    DIFFERENCE_SHOWN,
+    NOT_ASSESSABLE,
+    ComparisonFamily,
+    ComparisonRow,
+)
 from assayfolio.report.basis import Basis, is_single_step
 from assayfolio.report.content import Card, SummaryLine
 from assayfolio.report.methods import adjustment_of
@@ -59,7 +64,12 @@ def _unreported(basis: Basis) -> list[Card]:
             family=prose("{name}", name=plan.name),
             question=_question_of(basis, plan),
             verdict=capitalised(NOT_ASSESSABLE),
-            lines=(prose("{reason}", reason=reasons.get(f"comparison: {plan.name}", "the reason stands in section 6")),),
+            lines=(
+                prose(
+                    "{reason}",
+                    reason=reasons.get(f"comparison: {plan.name}", "the reason stands in section 6"),
+                ),
+            ),
             caution=prose(_SAYS_NOTHING),
             picture=None,
             section=NOT_REPORTED,
@@ -107,7 +117,8 @@ def _overall(basis: Basis, accent: str) -> Card:
 
 
 _OVERALL_SHOWN = (
-    "This says that some mean differs from another, not which, nor that it matters. Equivalence was not tested."
+    "This says that some mean differs from another, not which, nor that it matters. "
+    "Equivalence was not tested."
 )
 _OVERALL_NOT_SHOWN = (
     "Not shown is not absent: means may differ by less than these data can show. Equivalence was not tested."
@@ -139,7 +150,12 @@ def _question(basis: Basis, family: ComparisonFamily) -> Prose:
     pair = basis.pair(family.rows[0])
     if isinstance(plan, AgainstReference) and len(family.rows) == 1 and pair is not None:
         side = _SIDES[plan.alternative]
-        return prose("Does the mean of {level} {side} that of {reference}?", level=pair[0], side=side, reference=plan.against)
+        return prose(
+            "Does the mean of {level} {side} that of {reference}?",
+            level=pair[0],
+            side=side,
+            reference=plan.against,
+        )
     if plan is None:
         return prose("{name}: which comparisons show a difference?", name=family.name)
     return _question_of(basis, plan)
@@ -150,7 +166,12 @@ def _question_of(basis: Basis, plan: Comparison) -> Prose:
         return prose("Which levels of {factor} differ from one another?", factor=basis.factor)
     side = _SIDES[plan.alternative]
     if isinstance(plan, AgainstReference):
-        return prose("Which levels of {factor} {side} {reference}?", factor=basis.factor, side=side, reference=plan.against)
+        return prose(
+            "Which levels of {factor} {side} {reference}?",
+            factor=basis.factor,
+            side=side,
+            reference=plan.against,
+        )
     return prose("Does the contrast “{name}” {side} zero?", name=plan.name, side=side)
 
 
@@ -224,7 +245,9 @@ def summary(basis: Basis) -> tuple[SummaryLine, ...]:
         SummaryLine("Deviations", prose("none recorded"), PLAN, ANCHORS[PLAN]),
     ]
     if unreported:
-        words = prose("{count} asked for and not reported, with the reason", count=counted(unreported, "result"))
+        words = prose(
+            "{count} asked for and not reported, with the reason", count=counted(unreported, "result")
+        )
         lines.append(SummaryLine("Not reported", words, NOT_REPORTED, ANCHORS[NOT_REPORTED]))
     return tuple(lines)
 
@@ -234,14 +257,22 @@ def _data_line(basis: Basis) -> Prose:
     if len(sizes) == 1:
         each = prose("*n* = {n} at each of {k} levels", n=str(min(sizes)), k=str(len(basis.levels)))
     else:
-        each = prose("*n* from {low} to {high} at {k} levels", low=str(min(sizes)), high=str(max(sizes)), k=str(len(basis.levels)))
+        each = prose(
+            "*n* from {low} to {high} at {k} levels",
+            low=str(min(sizes)),
+            high=str(max(sizes)),
+            k=str(len(basis.levels)),
+        )
     residual = basis.response.anova.residual_sd
     pooled: Prose = ()
     if residual is not None and residual.sign:
         scale = basis.difference_scale
         pooled = prose("; residual SD {sd}", sd=scale.with_unit(scale.spread(residual, residual)))
     return prose(
-        "{total} received, 0 excluded, {total} analysed; {each}{pooled}", total=str(basis.total), each=each, pooled=pooled
+        "{total} received, 0 excluded, {total} analysed; {each}{pooled}",
+        total=str(basis.total),
+        each=each,
+        pooled=pooled,
     )
 
 

@@ -16,7 +16,9 @@ def template_folder() -> Path:
     for folder in (_PACKAGE / "templates", _PACKAGE.parent.parent / "templates"):
         if (folder / "report.html.j2").is_file():
             return folder
-    raise RenderingError(f"the report templates are missing: looked in {_PACKAGE / 'templates'}; install the package again")
+    raise RenderingError(
+        f"the report templates are missing: looked in {_PACKAGE / 'templates'}; install the package again"
+    )
 
 
 @cache

@@ -31,12 +31,12 @@ class Axis:
 
     def at(self, value: Fraction | float) -> float:
         """The place of `value` on paper."""
-        share = (Fraction(value) - self.low) / (self.high - self.low)
-        return self.start + float(share) * (self.end - self.start)
+        along = float(Fraction(value) - self.low) / float(self.high - self.low)
+        return self.start + along * (self.end - self.start)
 
 
 def nice_ticks(low: Fraction, high: Fraction, wanted: int) -> tuple[Fraction, tuple[Fraction, ...]]:
-    """The step, and the ticks from `low` to `high`, whose number is nearest to `wanted` (of two, the fewer)."""
+    """The step and the ticks from `low` to `high` whose number is nearest to `wanted`; of two, the fewer."""
     base = Fraction(10) ** magnitude((high - low) / wanted)
     best: tuple[int, Fraction, tuple[Fraction, ...]] | None = None
     for step in (base * factor for factor in _STEPS):
@@ -67,10 +67,7 @@ def make_axis(
     low, high = min(values), max(values)
     if include_zero:
         low, high = min(low, Fraction(0)), max(high, Fraction(0))
-    if low == high:
-        room = abs(low) / 10 or Fraction(1)
-    else:
-        room = (high - low) / 25
+    room = (high - low) / 25 or abs(low) / 10 or Fraction(1)
     low, high = low - room, high + room
     step, ticks = nice_ticks(low, high, wanted)
     origin = _origin(ticks, step, power)

@@ -74,6 +74,14 @@ class Basis:
         return tuple(row.value.fraction for row in self.content.observations.rows)
 
     @cached_property
+    def values_by_level(self) -> dict[str, list[Fraction]]:
+        """The values of each level in the order of the file."""
+        grouped: dict[str, list[Fraction]] = {level.level: [] for level in self.levels}
+        for value, row in zip(self.values, self.content.observations.rows, strict=True):
+            grouped[row.level].append(value)
+        return grouped
+
+    @cached_property
     def residuals(self) -> tuple[Fraction, ...]:
         """Each value minus the exact mean of its level, in the order of the file."""
         means = {level.level: level.mean for level in self.levels}

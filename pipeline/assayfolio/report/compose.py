@@ -3,7 +3,12 @@
 import re
 
 from assayfolio.errors import RenderingError
-from assayfolio.report.analysis import anova_section, checks_section, comparisons_section, not_reported_section
+from assayfolio.report.analysis import (
+    anova_section,
+    checks_section,
+    comparisons_section,
+    not_reported_section,
+)
 from assayfolio.report.answers import cards, summary
 from assayfolio.report.basis import Basis
 from assayfolio.report.content import ReportContent, SignatureBox
@@ -14,7 +19,15 @@ from assayfolio.report.prose import Prose, prose
 from assayfolio.report.provenance import listing_section, provenance_section
 from assayfolio.report.statement import method_section
 from assayfolio.report.typeface import wrapped
-from assayfolio.report.wording import CAUTIONS, DRAFT_SENTENCE, NO_SIGN_OFF, NOT_REGISTERED, alpha_words, counted
+from assayfolio.report.wording import (
+    CAUTIONS,
+    DRAFT_SENTENCE,
+    NO_SIGN_OFF,
+    NOT_REGISTERED,
+    alpha_words,
+    counted,
+)
+from assayfolio.version import VERSION
 
 _MEANING_SIZE, _MEANING_LINE = 7.6, 9.8
 _BOX_WIDTH = 143.0  # a little less than 51.3 mm
@@ -52,6 +65,8 @@ def compose(content: ReportInput) -> ReportContent:
         address=", ".join(laboratory.address),
         laboratory_note=laboratory.note or "",
         number=number,
+        created=run.started_utc,
+        generator=f"Assayfolio {VERSION}",
         facts=_facts(basis),
         cards=cards(basis, accent),
         summary=summary(basis),

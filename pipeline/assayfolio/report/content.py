@@ -93,7 +93,7 @@ class Formula:
 
 @dataclass(frozen=True, slots=True)
 class ListingRow:
-    """One row of the listing: the level (on its first row), and (line number, value, shift) for each value."""
+    """One row of the listing: the level (on its first row), and line number, value, shift for each value."""
 
     level: str
     count: str
@@ -131,7 +131,7 @@ class Section:
 
 @dataclass(frozen=True, slots=True)
 class Card:
-    """One planned question with its answer. `picture` shows the estimates on the scale shared by all cards."""
+    """One planned question with its answer. `picture` shows the estimates on a scale all cards share."""
 
     family: Prose
     question: Prose
@@ -172,6 +172,8 @@ class ReportContent:
     address: str
     laboratory_note: str
     number: str
+    created: str
+    generator: str
     facts: tuple[Prose, ...]
     cards: tuple[Card, ...]
     summary: tuple[SummaryLine, ...]

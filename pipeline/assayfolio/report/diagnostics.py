@@ -8,7 +8,6 @@ from assayfolio.exact import Root, to_double
 from assayfolio.report.axes import Axis, make_axis
 from assayfolio.report.basis import Basis
 from assayfolio.report.figures import MOST_DOTS, Picture, axis_title
-
 from assayfolio.report.svg import DOT_INK, HAIRLINE, SECOND_INK, THIN_LINE, Drawing
 from assayfolio.report.typeface import figures_width
 
@@ -69,7 +68,9 @@ def _scatter(basis: Basis, across: list[Fraction], quantity: str | None, title: 
     if quantity is None:
         axis = make_axis(across, left + 6, WIDTH - 8, wanted=5)
         whole = tuple(tick for tick in axis.ticks if tick.denominator == 1 and tick >= 0)
-        axis = Axis(axis.low, axis.high, axis.start, axis.end, whole, tuple(str(tick) for tick in whole), axis.origin)
+        axis = Axis(
+            axis.low, axis.high, axis.start, axis.end, whole, tuple(str(tick) for tick in whole), axis.origin
+        )
     else:
         axis = make_axis(across, left + 6, WIDTH - 8, wanted=4, power=basis.scale.power)
         title = axis_title(axis, title, basis.scale)
@@ -94,7 +95,9 @@ def _cells(drawing: Drawing, places: list[tuple[float, float]]) -> None:
     most = max(counts.values())
     for (column, row), count in sorted(counts.items()):
         grey = 225 - round(160 * sqrt(count / most))
-        drawing.box(column * _CELL, row * _CELL, _CELL - 0.2, _CELL - 0.2, fill=f"#{grey:02x}{grey:02x}{grey:02x}")
+        drawing.box(
+            column * _CELL, row * _CELL, _CELL - 0.2, _CELL - 0.2, fill=f"#{grey:02x}{grey:02x}{grey:02x}"
+        )
 
 
 def blom_position(rank: int, total: int) -> Fraction:
@@ -144,9 +147,12 @@ def normal_plot(basis: Basis, accent: str) -> Picture | None:
 
 
 def _quantiles(positions: Sequence[Fraction]) -> list[float]:
+    import numpy as np
+
     from assayfolio.statistics.tails import normal_isf
 
-    return [float(z) for z in normal_isf([float(1 - position) for position in positions])]
+    beyond = np.array([float(1 - position) for position in positions])
+    return [float(quantile) for quantile in normal_isf(beyond)]
 
 
 def _shown(total: int) -> list[int]:

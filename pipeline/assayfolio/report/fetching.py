@@ -16,7 +16,7 @@ _STYLES: dict[Face, str] = {
 
 def font_faces() -> str:
     """The rules that make the shipped fonts known, and the regular face once more with tabular figures."""
-    rules = [f'font-family: {FAMILY}; {_STYLES[face]}; {_source(name)}' for face, name in FACES.items()]
+    rules = [f"font-family: {FAMILY}; {_STYLES[face]}; {_source(name)}" for face, name in FACES.items()]
     tabular = f'font-family: "{FIGURES_FAMILY}"; font-feature-settings: "tnum" 1; {_source(FACES["regular"])}'
     return "\n".join(f"@font-face {{ {rule} }}" for rule in [*rules, tabular])
 
@@ -26,9 +26,9 @@ def _source(name: str) -> str:
 
 
 def make_fetcher(pictures: Mapping[str, bytes], others: Mapping[str, tuple[str, bytes]] | None = None) -> Any:
-    """A fetcher that serves the shipped fonts, `pictures` by name, and `others` by address; it refuses the rest.
+    """A fetcher of the shipped fonts, of `pictures` by name, and of `others` by address; it refuses the rest.
 
-    A refusal ends the rendering with RenderingError. No file beside the fonts is opened and nothing is fetched.
+    A refusal ends the rendering with RenderingError. No file but the fonts is opened, nothing is fetched.
     """
     from weasyprint.urls import URLFetcher, URLFetcherResponse
 
@@ -40,14 +40,16 @@ def make_fetcher(pictures: Mapping[str, bytes], others: Mapping[str, tuple[str, 
     class ListedOnly(URLFetcher):  # type: ignore[misc]
         """Serves what is listed."""
 
-        def fetch(self, url: str, headers: Mapping[str, str] | None = None) -> Any:
+        def fetch(self, url: str, headers: Mapping[str, str] | None = None) -> Any:  # noqa: ARG002
             """The listed content at `url`."""
             if url in served:
                 media_type, content = served[url]
                 return URLFetcherResponse(url, content, {"Content-Type": media_type})
             name = url.removeprefix(FONT_SCHEME)
             if url.startswith(FONT_SCHEME) and name in FACES.values():
-                return URLFetcherResponse(url, (FONT_FOLDER / name).read_bytes(), {"Content-Type": "font/ttf"})
+                return URLFetcherResponse(
+                    url, (FONT_FOLDER / name).read_bytes(), {"Content-Type": "font/ttf"}
+                )
             raise RenderingError(f"the report asks for {url}, which is not part of it")
 
     return ListedOnly()

@@ -39,7 +39,7 @@ class Picture:
 
 
 def draw_axis(drawing: Drawing, axis: Axis, y: float, title: str, ends: tuple[float, float]) -> None:
-    """A horizontal axis at `y`: its line spans `ends` only, ticks point outward, the title is centred below."""
+    """A horizontal axis at `y`: its line spans `ends` and the ticks, which point outward; title below."""
     places = [*ends, axis.at(axis.ticks[0]), axis.at(axis.ticks[-1])]
     drawing.line(min(places), y, max(places), y, stroke=SECOND_INK, width=THIN_LINE)
     for tick, label in zip(axis.ticks, axis.labels, strict=True):
@@ -120,11 +120,7 @@ def _dot_plot(basis: Basis, levels: tuple[LevelFindings, ...], accent: str, name
 
 def _row(basis: Basis, level: LevelFindings, axis: Axis, column: float, count: int) -> _Row:
     words = wrapped(level.level, _SIZE, column, "semibold")
-    places = [
-        axis.at(value)
-        for value, row in zip(basis.values, basis.content.observations.rows, strict=True)
-        if row.level == level.level
-    ]
+    places = [axis.at(value) for value in basis.values_by_level[level.level]]
     name_lines = len(words) + (0 if count > _MANY_LEVELS else 1)
     least = 30.0 if count <= _FEW_LEVELS else 22.0 if count <= _MANY_LEVELS else 17.0
     if basis.total > MOST_DOTS:
@@ -187,7 +183,9 @@ def _values_in_words(basis: Basis, levels: tuple[LevelFindings, ...]) -> str:
     return f"{basis.response.response}{unit} by {basis.factor}. " + "; ".join(parts) + "."
 
 
-def interval_plot(basis: Basis, rows: tuple[ComparisonRow, ...], accent: str, name: str, head: str) -> Picture:
+def interval_plot(
+    basis: Basis, rows: tuple[ComparisonRow, ...], accent: str, name: str, head: str
+) -> Picture:
     """Estimates with their intervals, one row each, in the order of the plan; figures in columns at right."""
     scale = basis.difference_scale
     labels = [basis.label(row) for row in rows]
@@ -260,5 +258,3 @@ def _intervals_in_words(basis: Basis, rows: tuple[ComparisonRow, ...]) -> str:
         parts.append(words)
     unit = f" in {scale.heading}" if scale.heading else ""
     return f"Differences{unit}. " + "; ".join(parts) + "."
-
-

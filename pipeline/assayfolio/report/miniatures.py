@@ -80,7 +80,9 @@ def means_picture(basis: Basis, accent: str, name: str) -> Picture:
         if level.ci is not None:
             draw_interval(drawing, axis, y, level.ci, stroke=accent, cap=pitch * 0.26)
         drawing.dot(axis.at(level.mean), y, min(1.7, pitch * 0.34), fill=accent)
-    unit = "level means" + (f" {MINUS} {basis.scale.mean(axis.origin).rstrip('0').rstrip('.')}" if axis.origin else "")
+    unit = "level means" + (
+        f" {MINUS} {basis.scale.mean(axis.origin).rstrip('0').rstrip('.')}" if axis.origin else ""
+    )
     unit += f", {basis.scale.heading}" if basis.scale.heading else ""
     _ticks(drawing, axis, body, unit)
     title = f"The means of the {len(levels)} levels with their intervals; figures stand in section 2."

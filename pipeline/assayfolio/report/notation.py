@@ -22,7 +22,9 @@ THIN = "\u202f"  # narrow no-break space: a thin space that never ends a line
 TIMES = "\u00d7"
 INFINITY = "\u221e"
 
-_SUPERSCRIPTS = str.maketrans("0123456789-", "\u2070\u00b9\u00b2\u00b3\u2074\u2075\u2076\u2077\u2078\u2079\u207b")
+_SUPERSCRIPTS = str.maketrans(
+    "0123456789-", "\u2070\u00b9\u00b2\u00b3\u2074\u2075\u2076\u2077\u2078\u2079\u207b"
+)
 
 MAX_DIGITS = 20
 _FLOOR = 1e-300
@@ -53,11 +55,6 @@ def significant_places(value: Number, digits: int) -> int:
     if abs(rounded_units(value, places)) >= 10**digits:  # 9.996 becomes 10.0, not 10.00
         places -= 1
     return places
-
-
-def significant(value: Number, digits: int) -> str:
-    """`value` with `digits` significant digits, without a power of ten."""
-    return fixed(value, max(0, significant_places(value, digits)))
 
 
 def scientific(value: Number, digits: int) -> str:
@@ -93,7 +90,12 @@ def probability(p: float, alpha: Number | None = None, log10_p: float | None = N
             places += 1
         return fixed(p, places)
     digits = 2
-    while digits < 12 and alpha is not None and p != alpha and scientific(p, digits) == scientific(alpha, digits):
+    while (
+        digits < 12
+        and alpha is not None
+        and p != alpha
+        and scientific(p, digits) == scientific(alpha, digits)
+    ):
         digits += 1
     return scientific(p, digits)
 

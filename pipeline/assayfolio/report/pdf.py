@@ -4,6 +4,7 @@ The bytes depend on the input alone: not on clock, folder, locale, time zone or 
 Whatever the renderer complains about fails the rendering.
 """
 
+import atexit
 import gc
 import io
 import logging
@@ -86,11 +87,16 @@ def strict() -> Iterator[None]:
             logger.setLevel(level)
     lines = complaints.lines + [str(warning.message) for warning in caught if _matters(warning)]
     if lines:
-        raise RenderingError("the report could not be set exactly as written: " + "; ".join(dict.fromkeys(lines)))
+        raise RenderingError(
+            "the report could not be set exactly as written: " + "; ".join(dict.fromkeys(lines))
+        )
 
 
 def _matters(warning: warnings.WarningMessage) -> bool:
-    return not issubclass(warning.category, ResourceWarning)
+    """Whether a warning is about this document; notices to programmers are not."""
+    return not issubclass(
+        warning.category, DeprecationWarning | PendingDeprecationWarning | ImportWarning | ResourceWarning
+    )
 
 
 @contextmanager
@@ -118,13 +124,13 @@ def _require_subsetter() -> None:
 
     if not fonts.harfbuzz_subset or not fonts.harfbuzz.hb_version_atleast(4, 1, 0):
         raise RenderingError(
-            "the library that subsets fonts is missing, so the same report would not give the same bytes; install "
-            "HarfBuzz-Subset 4.1 or later (Debian: apt install libharfbuzz-subset0; Fedora: dnf install harfbuzz; "
-            "Alpine: apk add harfbuzz-subset; macOS: brew install harfbuzz)"
+            "the library that subsets fonts is missing, so the same report would not give the same bytes; "
+            "install HarfBuzz-Subset 4.1 or later (Debian: apt install libharfbuzz-subset0; Fedora: dnf "
+            "install harfbuzz; Alpine: apk add harfbuzz-subset; macOS: brew install harfbuzz)"
         )
 
 
-@lru_cache(maxsize=8)
+@lru_cache(maxsize=4)
 def _styles(look: Look) -> tuple[Any, Any]:
     """The font configuration and the style sheet for one look, made once."""
     with _no_system_fonts():
@@ -154,6 +160,9 @@ def load(look: Look) -> tuple[Any, Any]:
         ) from error
     _require_subsetter()
     return loaded
+
+
+atexit.register(_styles.cache_clear)  # each look keeps a temporary folder with the fonts; let go of it
 
 
 def lay_out(html: str, pictures: Mapping[str, bytes], look: Look) -> LaidOut:

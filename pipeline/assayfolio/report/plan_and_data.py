@@ -6,7 +6,16 @@ from assayfolio.report.content import Block, Entry, Facts, FigureBlock, Paragrap
 from assayfolio.report.figures import MOST_DOTS, dot_plots
 from assayfolio.report.methods import ADJUSTMENTS
 from assayfolio.report.notation import decimal
-from assayfolio.report.numbering import ANCHORS, ANOVA, CHECKS, COMPARISONS, DATA, NOT_REPORTED, PLAN, Numbering
+from assayfolio.report.numbering import (
+    ANCHORS,
+    ANOVA,
+    CHECKS,
+    COMPARISONS,
+    DATA,
+    NOT_REPORTED,
+    PLAN,
+    Numbering,
+)
 from assayfolio.report.prose import Prose, Words, prose
 from assayfolio.report.tables import Column, Table, fits, lay_out
 from assayfolio.report.wording import alpha_words, counted
@@ -27,9 +36,10 @@ def plan_section(basis: Basis, numbering: Numbering) -> Section:
     blocks: list[Block] = [
         Paragraph(
             prose(
-                "The plan is the study definition attached to this document, as it stood when the run began. It was "
-                "#not pre-registered#: nothing shows that it was fixed before the data were seen, so every result "
-                "here is exploratory in that sense. No deviations from the plan are recorded."
+                "The plan is the study definition attached to this document, as it stood when the run "
+                "began. It was #not pre-registered#: nothing shows that it was fixed before the data were "
+                "seen, so every result here is exploratory in that sense. No deviations from the plan are "
+                "recorded."
             )
         ),
         Facts(tuple(entries)),
@@ -37,16 +47,20 @@ def plan_section(basis: Basis, numbering: Numbering) -> Section:
             lay_out(
                 numbering.table(),
                 prose("Planned analyses and where they are reported."),
-                [Column("Analysis", kind="text"), Column("Method", kind="words"), Column("Section", kind="words")],
+                [
+                    Column("Analysis", kind="text"),
+                    Column("Method", kind="words"),
+                    Column("Section", kind="words"),
+                ],
                 _planned(basis),
             )
         ),
         Paragraph(
             prose(
-                "Not part of the study definition and therefore not stated here: customer, description and condition "
-                "of the items, sampling, dates of receipt and of the measurements, persons who measured, instruments, "
-                "environmental conditions, measurement uncertainty. Where they matter they are in the laboratory’s "
-                "own records."
+                "Not part of the study definition and therefore not stated here: customer, description and "
+                "condition of the items, sampling, dates of receipt and of the measurements, persons who "
+                "measured, instruments, environmental conditions, measurement uncertainty. Where they "
+                "matter they are in the laboratory’s own records."
             ),
             "note",
         ),
@@ -101,7 +115,9 @@ def _planned(basis: Basis) -> list[list[Words]]:
     reported = {family.name for family in basis.response.comparisons}
     rows: list[list[Words]] = [["Analysis of variance", prose("*F* test"), str(ANOVA)]]
     for comparison in study.comparisons:
-        method = ADJUSTMENTS[comparison.adjust].name if comparison.adjust in ADJUSTMENTS else comparison.adjust
+        method = (
+            ADJUSTMENTS[comparison.adjust].name if comparison.adjust in ADJUSTMENTS else comparison.adjust
+        )
         where = str(COMPARISONS) if comparison.name in reported else f"{NOT_REPORTED} (not reported)"
         rows.append([_comparison(comparison), method, where])
     if study.checks.equal_variances:
@@ -134,8 +150,9 @@ def data_section(basis: Basis, numbering: Numbering, accent: str) -> Section:
     blocks: list[Block] = [
         Paragraph(
             prose(
-                "{total} received from {file}, 0 excluded, {total2} analysed. Values were read as exact decimals from "
-                "their text (columns separated by {separator}, decimal {mark}); at most {places} recorded.",
+                "{total} received from {file}, 0 excluded, {total2} analysed. Values were read as exact "
+                "decimals from their text (columns separated by {separator}, decimal {mark}); at most "
+                "{places} recorded.",
                 total=counted(basis.total, "value"),
                 total2=str(basis.total),
                 file=observations.file,
@@ -158,7 +175,11 @@ def _descriptives(basis: Basis, numbering: Numbering) -> list[Table]:
     """One table; two where the figures are so long that one would have to be set too small."""
     with_ci = any(level.ci is not None for level in basis.levels)
     columns, rows = _descriptive_cells(basis, with_ci)
-    caption = prose("Descriptive statistics of {response} by {factor}.", response=basis.response.response, factor=basis.factor)
+    caption = prose(
+        "Descriptive statistics of {response} by {factor}.",
+        response=basis.response.response,
+        factor=basis.factor,
+    )
     interval = _interval_caption(basis) if with_ci else ()
     notes = _descriptive_notes(basis)
     if not with_ci or fits(columns, rows):
@@ -223,14 +244,15 @@ def _descriptive_notes(basis: Basis) -> list[Prose]:
 def _dot_caption(basis: Basis, number: int, count: int) -> Prose:
     if basis.total > MOST_DOTS:
         what = prose(
-            "All {total}, counted in 90 equal classes of {response} (a dot for each would not be legible); the "
-            "height of a bar is the share of its level’s fullest class.",
+            "All {total}, counted in 90 equal classes of {response} (a dot for each would not be legible); "
+            "the height of a bar is the share of its level’s fullest class.",
             total=counted(basis.total, "value"),
             response=basis.response.response,
         )
     else:
         what = prose(
-            "Every value of {response} as a circle, {total} in all; equal and near values stand side by side.",
+            "Every value of {response} as a circle, {total} in all; equal and near values stand side by "
+            "side.",
             response=basis.response.response,
             total=str(basis.total),
         )
@@ -240,6 +262,10 @@ def _dot_caption(basis: Basis, number: int, count: int) -> Prose:
         if has_interval
         else "."
     )
-    how = " Two intervals that overlap do not say that the means agree: section 5 compares them." if has_interval else ""
+    how = (
+        " Two intervals that overlap do not say that the means agree: section 5 compares them."
+        if has_interval
+        else ""
+    )
     part = f" Part {number} of {count}, on the same scale." if count > 1 else ""
     return (*what, *prose(marks, confidence=basis.confidence), *prose(part + how))

@@ -1,7 +1,7 @@
 """Words with a little emphasis: text in spans, so that nothing a user typed is ever taken for markup.
 
-Patterns are written by this package alone. In a pattern `*x*` is a symbol (italic), `#x#` strong, `~x~` quiet,
-`_x_` a subscript, `^x^` a superscript, and `{name}` a value that is put in as it is, never looked into.
+Patterns are written by this package alone. In a pattern `*x*` is a symbol (italic), `#x#` strong, `~x~`
+quiet, `_x_` a subscript, `^x^` a superscript, and `{name}` a value put in as it is, never looked into.
 """
 
 import re
@@ -39,7 +39,9 @@ def prose(pattern: str, **values: Words) -> Prose:
             spans.extend(_given(values[match[3]]))
         else:
             outer = _STYLES[match[1]]
-            spans.extend(Span(span.text, f"{outer} {span.style}".strip()) for span in prose(match[2], **values))
+            spans.extend(
+                Span(span.text, f"{outer} {span.style}".strip()) for span in prose(match[2], **values)
+            )
         position = match.end()
     if position < len(pattern):
         spans.append(Span(pattern[position:]))

@@ -87,26 +87,30 @@ def _versions(listed: tuple[tuple[str, str], ...]) -> str:
 def _how_to_check(basis: Basis) -> tuple[Prose, ...]:
     run = basis.content.run
     folio = f"runs/{run.study}/{run.label}"
-    study = next((item.path for item in run.inputs if item.role == "study definition"), "the study definition")
+    study = next(
+        (item.path for item in run.inputs if item.role == "study definition"), "the study definition"
+    )
     return (
         prose(
-            "With the software: #assayfolio verify {folio}# checks every file of the folio, its seal and the audit trail.",
+            "With the software: #assayfolio verify {folio}# checks every file of the folio, its seal and "
+            "the audit trail.",
             folio=folio,
         ),
         prose(
-            "Without it: in the folder {folio}, #sha256sum -c manifest-sha256.txt# compares every file with its digest. "
-            "The audit trail is one entry a line, each holding the SHA-256 of the line before; the head printed above "
-            "must be the SHA-256 of line {line}.",
+            "Without it: in the folder {folio}, #sha256sum -c manifest-sha256.txt# compares every file with "
+            "its digest. The audit trail is one entry a line, each holding the SHA-256 of the line before; "
+            "the head printed above must be the SHA-256 of line {line}.",
             folio=folio,
             line=str(run.trail_seq),
         ),
         prose(
-            "To repeat the analysis: #assayfolio run {study}# with the same inputs gives a new run number and the same "
-            "findings.json, byte for byte on the same versions of the software.",
+            "To repeat the analysis: #assayfolio run {study}# with the same inputs gives a new run number "
+            "and the same findings.json, byte for byte on the same versions of the software.",
             study=study,
         ),
         prose(
-            "By hand: means, sums of squares and *F* follow from the listing in section 9 with the formulas of section 7."
+            "By hand: means, sums of squares and *F* follow from the listing in section 9 with the formulas "
+            "of section 7."
         ),
     )
 
@@ -114,7 +118,12 @@ def _how_to_check(basis: Basis) -> tuple[Prose, ...]:
 def _attached(basis: Basis) -> list[Prose]:
     files = sorted(basis.content.attachments, key=lambda file: file.name)
     return [
-        prose("{name} ~({description}, {size} bytes)~", name=file.name, description=file.description, size=str(len(file.content)))
+        prose(
+            "{name} ~({description}, {size} bytes)~",
+            name=file.name,
+            description=file.description,
+            size=str(len(file.content)),
+        )
         for file in files
     ]
 
@@ -127,8 +136,8 @@ def listing_section(basis: Basis, numbering: Numbering) -> Section:
         extra = " Further columns of the file are carried along and not analysed: {columns}."
     if basis.total > MOST_LISTED:
         words = (
-            "The file has {total}; a listing stops at {most} and is left to the file itself, {file}, whose SHA-256 "
-            "stands in section 8." + extra
+            "The file has {total}; a listing stops at {most} and is left to the file itself, {file}, whose "
+            "SHA-256 stands in section 8." + extra
         )
         blocks: tuple[Block, ...] = (
             Paragraph(
@@ -160,9 +169,12 @@ def _listing(basis: Basis, label: str, caption: Prose) -> Listing:
     most = max(1, int((TEXT_WIDTH_MM - level_mm) / (value_mm + line_mm + 1.2)))
     per_row = max(1, min(most, max(level.n for level in basis.levels)))
     shifts = {id(row): max(rests) - rest for row, rest in zip(rows, rests, strict=True)}
+    by_level: dict[str, list[Observation]] = {level.level: [] for level in basis.levels}
+    for row in rows:
+        by_level[row.level].append(row)
     listed: list[ListingRow] = []
     for level in basis.levels:
-        own = [row for row in rows if row.level == level.level]
+        own = by_level[level.level]
         for start in range(0, len(own), per_row):
             part = own[start : start + per_row]
             listed.append(

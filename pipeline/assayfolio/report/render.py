@@ -11,8 +11,8 @@ from assayfolio.report.pdf import Look, lay_out, write
 
 _MOST_CARDS = 6
 _FIRST_PAGE_FULL = (
-    "the first page cannot hold title, sign-off and cautions; shorten the title, the laboratory's address or the "
-    "meanings of the signatures"
+    "the first page cannot hold title, sign-off and cautions; shorten the title, the laboratory's address "
+    "or the meanings of the signatures"
 )
 
 

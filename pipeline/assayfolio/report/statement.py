@@ -5,25 +5,26 @@ from assayfolio.report.content import Block, Formula, Heading, Items, Paragraph,
 from assayfolio.report.methods import REFERENCES, adjustment_of
 from assayfolio.report.numbering import ANCHORS, METHOD
 from assayfolio.report.prose import Prose, prose
+from assayfolio.report.wording import alpha_words
 
 
 def method_section(basis: Basis) -> Section:
-    """The method statement: symbols, exact arithmetic, the analysis, the comparisons, the checks, references."""
+    """The method statement: symbols, exact arithmetic, analysis, comparisons, checks, references."""
     blocks: list[Block] = [
         Paragraph(
             prose(
-                "Symbols: *y*_*ij*_ is value *j* at level *i*, *n*_*i*_ the number of values at that level, *k* the "
-                "number of levels, *N* the number of values; *S*_*i*_ and *Q*_*i*_ are the sum and the sum of squares "
-                "of the values at level *i*, *S* the sum of all. *α* = {alpha}.",
-                alpha=_alpha(basis),
+                "Symbols: *y*_*ij*_ is value *j* at level *i*, *n*_*i*_ the number of values at that level, "
+                "*k* the number of levels, *N* the number of values; *S*_*i*_ and *Q*_*i*_ are the sum and "
+                "the sum of squares of the values at level *i*, *S* the sum of all. *α* = {alpha}.",
+                alpha=alpha_words(basis),
             )
         ),
         Paragraph(
             prose(
-                "Values are taken as the exact decimals that were typed. Sums are exact; the sums of squares, mean "
-                "squares, *F*, means and differences are exact fractions, rounded once, half to even, when they are "
-                "printed. Distribution functions are computed in double precision, with small tail probabilities kept to "
-                "relative accuracy."
+                "Values are taken as the exact decimals that were typed. Sums are exact; the sums of "
+                "squares, mean squares, *F*, means and differences are exact fractions, rounded once, half "
+                "to even, when they are printed. Distribution functions are computed in double precision, "
+                "with small tail probabilities kept to relative accuracy."
             )
         ),
         *_analysis(),
@@ -33,12 +34,6 @@ def method_section(basis: Basis) -> Section:
         Items(tuple(prose("{text}", text=REFERENCES[key]) for key in _references(basis))),
     ]
     return Section(ANCHORS[METHOD], METHOD, "Method", tuple(blocks))
-
-
-def _alpha(basis: Basis) -> str:
-    from assayfolio.report.wording import alpha_words
-
-    return alpha_words(basis)
 
 
 def _formula(what: str, *parts: str | tuple[str, str]) -> Formula:
@@ -91,7 +86,8 @@ def _comparisons(basis: Basis) -> list[Block]:
         Heading(prose("Comparisons")),
         _formula(
             "A comparison with weights *w*_*i*_ that sum to zero (1 and −1 for two levels)",
-            "*d* = ∑_*i*_ *w*_*i*_ *ȳ*_*i*_, SE = *s* √(∑_*i*_ *w*_*i*_² / *n*_*i*_), *t* = *d* / SE, interval *d* ± *c* × SE",
+            "*d* = ∑_*i*_ *w*_*i*_ *ȳ*_*i*_, SE = *s* √(∑_*i*_ *w*_*i*_² / *n*_*i*_), *t* = *d* / SE, "
+            "interval *d* ± *c* × SE",
         ),
     ]
     seen = list(dict.fromkeys(family.adjust for family in families))
@@ -101,8 +97,8 @@ def _comparisons(basis: Basis) -> list[Block]:
         blocks.append(
             Paragraph(
                 prose(
-                    "In a one-sided family *p* is the tail on the side asked for, *c* uses *α* in place of *α*/2, and the "
-                    "interval is open on the other side."
+                    "In a one-sided family *p* is the tail on the side asked for, *c* uses *α* in place of "
+                    "*α*/2, and the interval is open on the other side."
                 )
             )
         )
@@ -115,17 +111,17 @@ def _checks(basis: Basis) -> list[Block]:
     if checks.equal_variances == "brown-forsythe":
         sentences.append(
             prose(
-                "Brown–Forsythe: the *F* ratio of an analysis of variance of *z*_*ij*_ = |*y*_*ij*_ − median_*i*_|, with "
-                "*k* − 1 and *N* − *k* degrees of freedom."
+                "Brown–Forsythe: the *F* ratio of an analysis of variance of *z*_*ij*_ = |*y*_*ij*_ − "
+                "median_*i*_|, with *k* − 1 and *N* − *k* degrees of freedom."
             )
         )
     if checks.normality == "shapiro-wilk":
         sentences.append(prose("Shapiro–Wilk: *W* of the *N* residuals with Royston’s approximation of *p*."))
     sentences.append(
         prose(
-            "Normal plot: residuals in rising order against normal quantiles at (*i* − 3/8) / (*N* + 1/4) (Blom); the "
-            "envelope is the line ± *z*_1−*α*/2_ standard errors of an order statistic (Chambers and others). Ticks of "
-            "axes by Heckbert’s rule."
+            "Normal plot: residuals in rising order against normal quantiles at (*i* − 3/8) / (*N* + 1/4) "
+            "(Blom); the envelope is the line ± *z*_1−*α*/2_ standard errors of an order statistic "
+            "(Chambers and others). Ticks of axes by Heckbert’s rule."
         )
     )
     return [Heading(prose("Checks and figures")), Items(tuple(sentences))]

@@ -37,10 +37,7 @@ class Drawing:
         self, x1: float, y1: float, x2: float, y2: float, *, stroke: str = INK, width: float = THIN_LINE
     ) -> None:
         """A straight line."""
-        x1, y1, x2, y2 = (coordinate(value) for value in (x1, y1, x2, y2))  # type: ignore[assignment]
-        self._elements.append(
-            f'<path d="M{x1} {y1}L{x2} {y2}" fill="none" stroke="{stroke}" stroke-width="{coordinate(width)}"/>'
-        )
+        self.polyline([(x1, y1), (x2, y2)], stroke=stroke, width=width)
 
     def polyline(
         self, points: Iterable[tuple[float, float]], *, stroke: str = INK, width: float = THIN_LINE
@@ -92,8 +89,9 @@ class Drawing:
         """Live text with its baseline at `y`; turned a quarter to the left where it is not upright."""
         turn = "" if upright else f' transform="rotate(-90 {coordinate(x)} {coordinate(y)})"'
         self._elements.append(
-            f'<text x="{coordinate(x)}" y="{coordinate(y)}" font-family="{family}" font-size="{coordinate(size)}"'
-            f' font-weight="{weight}" fill="{fill}" text-anchor={quoteattr(anchor)}{turn}>'
+            f'<text x="{coordinate(x)}" y="{coordinate(y)}" font-family="{family}"'
+            f' font-size="{coordinate(size)}" font-weight="{weight}" fill="{fill}"'
+            f" text-anchor={quoteattr(anchor)}{turn}>"
             f"{escape(words)}</text>"
         )
 
@@ -106,8 +104,8 @@ class Drawing:
     def count(self, x: float, y: float, n: int, *, size: float = 6.8, fill: str = SECOND_INK) -> None:
         """The number of values: `n = 6` with the symbol in italics."""
         self._elements.append(
-            f'<text x="{coordinate(x)}" y="{coordinate(y)}" font-family="{FAMILY}" font-size="{coordinate(size)}"'
-            f' font-style="italic" fill="{fill}">n</text>'
+            f'<text x="{coordinate(x)}" y="{coordinate(y)}" font-family="{FAMILY}"'
+            f' font-size="{coordinate(size)}" font-style="italic" fill="{fill}">n</text>'
         )
         self.text(x + text_width("n ", size, "italic"), y, f"= {n}", size=size, fill=fill)
 

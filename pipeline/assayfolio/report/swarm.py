@@ -22,7 +22,7 @@ def lanes(places: Sequence[float], diameter: float) -> list[int]:
 
 
 def offsets(places: Sequence[float], diameter: float, room: float) -> list[float]:
-    """The distance of each dot from the middle line; lanes move closer where `room` to a side is too small."""
+    """The distance of each dot from the middle line; lanes move closer where `room` to a side is small."""
     chosen = lanes(places, diameter)
     reach = max((abs(lane) for lane in chosen), default=0)
     spacing = min(diameter, room / reach) if reach else 0.0

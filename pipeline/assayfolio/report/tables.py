@@ -13,6 +13,7 @@ _BODY = 8.4
 _HEAD = 7.6
 _GAP = 3.8
 _EASY_TEXT = 48.0
+_EASY_TEXTS = 36.0
 _LEAST_TEXT = 30.0
 _COMFORTABLE = 7.3
 _SMALLEST = 5.6
@@ -79,9 +80,7 @@ def lay_out(
     A table that is too wide for its column is set smaller, its text columns wrapping first.
     """
     size, widths = _widths(columns, rows)
-    cells = [
-        _cells(column, [row[index] for row in rows], size) for index, column in enumerate(columns)
-    ]
+    cells = [_cells(column, [row[index] for row in rows], size) for index, column in enumerate(columns)]
     laid_out = tuple(
         LaidOutColumn(as_prose(column.head), column.unit, column.kind, _mm(width))
         for column, width in zip(columns, widths, strict=True)
@@ -121,8 +120,9 @@ def _widths(columns: Sequence[Column], rows: Sequence[Sequence[Words]]) -> tuple
         wanted = sum(natural[index] for index in texts)
         if wanted <= room:
             return size, natural
-        least = _EASY_TEXT if size > _COMFORTABLE else _LEAST_TEXT
-        if room >= min(wanted, least * len(texts)) or size <= _SMALLEST:
+        easy = _EASY_TEXT if len(texts) == 1 else _EASY_TEXTS * len(texts)
+        least = easy if size > _COMFORTABLE else _LEAST_TEXT * len(texts)
+        if room >= min(wanted, least) or size <= _SMALLEST:
             for index in texts:
                 natural[index] = max(12.0, natural[index] * room / wanted)
             return size, natural

@@ -17,7 +17,7 @@ FONT_FOLDER = Path(__file__).resolve().parent.parent / "fonts"
 
 POINTS_PER_MM = 72 / 25.4
 
-# What the typeface's tabular figures do to advances: these are as wide as a figure space, or a fixed narrow width.
+# What tabular figures do to advances in this typeface: as wide as a figure space, or a fixed narrow width.
 _FIGURE_SPACE = 0x2007
 _EQUAL = "0123456789-\u2212\u00d7=<>+"
 _NARROW = ".,: "

@@ -1,6 +1,13 @@
 """Sentences that several parts of a report share."""
 
-from assayfolio.findings import DIFFERENCE_NOT_SHOWN, DIFFERENCE_SHOWN, CheckFindings, ComparisonFamily, ComparisonRow, Interval
+from assayfolio.findings import (
+    DIFFERENCE_NOT_SHOWN,
+    DIFFERENCE_SHOWN,
+    CheckFindings,
+    ComparisonFamily,
+    ComparisonRow,
+    Interval,
+)
 from assayfolio.report.basis import Basis
 from assayfolio.report.methods import adjustment_of
 from assayfolio.report.notation import Scale, decimal, equals, probability
@@ -12,18 +19,23 @@ NO_SIGN_OFF = "the study plans no sign-off: this report carries no signatures"
 
 CAUTION_SHOWN = "Whether a difference shown matters, its size and interval say. Equivalence was not tested."
 CAUTION_NOT_SHOWN = (
-    "Not shown is not absent: the data are compatible with every value in the interval. Equivalence was not tested."
+    "Not shown is not absent: the data are compatible with every value in the interval. "
+    "Equivalence was not tested."
 )
 CAUTION_NO_INTERVAL = (
-    "Not shown is not absent: a difference too small for this many values may exist. Equivalence was not tested."
+    "Not shown is not absent: a difference too small for this many values may exist. "
+    "Equivalence was not tested."
 )
 CAUTION_MIXED = (
-    "A difference shown may be too small to matter; one not shown may still exist. Equivalence was not tested."
+    "A difference shown may be too small to matter; one not shown may still exist. "
+    "Equivalence was not tested."
 )
 CAUTIONS = (
-    "What this document is not: it is not a release decision, and it takes no decision on any lot, method or "
-    "instrument; that is for the responsible persons under the laboratory's own procedures and the regulations "
-    "that apply. The results relate only to the items tested. This report shall not be reproduced except in full."
+    "What this document is not: it is not a release decision and takes no decision on any lot, method or "
+    "instrument; that is for the responsible persons under the laboratory’s own procedures and the "
+    "regulations that apply. Whether it meets a regulation or standard is for the laboratory’s quality "
+    "system to say. The results relate only to the items tested. This report shall not be reproduced except "
+    "in full."
 )
 
 
@@ -62,7 +74,7 @@ def row_verdict(verdict: str) -> str:
 
 
 def check_words(basis: Basis, check: CheckFindings) -> Prose:
-    """What a check found, in a few words: its name, p, and the reading without the part that never changes."""
+    """What a check found, in a few words: its name, its reading without the part that never changes, p."""
     name = typographic(check.name).split(" ")[0]
     note = check.note.split(" at level ")[0].split(";")[0]
     if check.p is None:

@@ -7,11 +7,10 @@ Holm 1979 (Scand. J. Stat. 6, 65). Formulas from memory.
 
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass
-from math import expm1, log, log1p, log10
+from math import expm1, log1p, log10
 
 from assayfolio.exact import round_significant
 
-_LN10 = log(10.0)
 _SMALLEST_P = 1e-290  # below it a double soon loses digits, and the logarithm stands alone
 
 
@@ -51,7 +50,7 @@ def sidak(tails: Sequence[Tail]) -> tuple[Tail, ...]:
 
 def holm(tails: Sequence[Tail]) -> tuple[Tail, ...]:
     """Holm's step-down: the i-th smallest of m tails times m - i + 1, never below the one before it."""
-    order = sorted(range(len(tails)), key=lambda index: (tails[index].log10_p, index))
+    order = sorted(range(len(tails)), key=lambda index: (tails[index].p, tails[index].log10_p, index))
     adjusted: list[Tail] = list(tails)
     floor = Tail(0.0, float("-inf"))
     for rank, index in enumerate(order):
@@ -84,11 +83,9 @@ def _times(tail: Tail, factor: int) -> Tail:
 
 
 def _sidak(tail: Tail, size: int) -> Tail:
-    if size == 1 or tail.p >= 1.0 or tail.log10_p >= 0.0:
+    if size == 1 or tail.p >= 1.0:
         return tail
     if tail.p < _SMALLEST_P:
         return Tail(size * tail.p, tail.log10_p + log10(size))  # equal far beyond double precision
-    # Near p = 1 its logarithm knows 1 - p better than p itself does.
-    log_rest = log1p(-tail.p) if tail.p < 0.5 else log(-expm1(tail.log10_p * _LN10))
-    p = -expm1(size * log_rest)
+    p = -expm1(size * log1p(-tail.p))
     return Tail(p, log10(p))

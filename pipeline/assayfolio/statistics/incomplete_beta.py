@@ -10,9 +10,8 @@ the limit DLMF 8.9.2), from memory; evaluation after Lentz (DLMF 3.10).
 """
 
 import math
-from collections.abc import Callable
 from dataclasses import dataclass
-from typing import Final, TypeVar
+from typing import Final, Protocol, TypeVar
 
 import numpy as np
 
@@ -160,12 +159,16 @@ class _Parts:
         return _Parts(x, y, gap, x_excess, excess(y_less, y_ratio))
 
 
-Terms = Callable[..., tuple[Number, Number]]
-"""Of n and a point: the n-th partial numerator and denominator of a continued fraction."""
+class Terms(Protocol):
+    """A continued fraction at a point, which is numbers or arrays alike."""
+
+    def __call__(self, n: int, *point: Number) -> tuple[Number, Number]:
+        """The partial numerator and denominator number `n`, counted from zero."""
 
 
-def _beta(a: float, b: float) -> Terms[Number]:
-    def terms(n: int, x: Number, y: Number, gap: Number) -> tuple[Number, Number]:
+def _beta(a: float, b: float) -> Terms:
+    def terms(n: int, *point: Number) -> tuple[Number, Number]:
+        x, y, gap = point
         at = a + 2 * n - 1 if n else 1.0  # the first has no such divisor
         ease = n * (b - n) / at * x
         rest = (a + n) / (a + 2 * n + 1) * (gap + 1 + n * (1 + y))
@@ -174,15 +177,17 @@ def _beta(a: float, b: float) -> Terms[Number]:
     return terms
 
 
-def _gamma_upper(q: float) -> Terms[Number]:
-    def terms(n: int, gap: Number) -> tuple[Number, Number]:
+def _gamma_upper(q: float) -> Terms:
+    def terms(n: int, *point: Number) -> tuple[Number, Number]:
+        (gap,) = point
         return gap * 0 + n * (q - n), gap + (2 * n + 1)
 
     return terms
 
 
-def _gamma_lower(q: float) -> Terms[Number]:
-    def terms(n: int, z: Number, gap: Number) -> tuple[Number, Number]:
+def _gamma_lower(q: float) -> Terms:
+    def terms(n: int, *point: Number) -> tuple[Number, Number]:
+        z, gap = point
         at = q + 2 * n - 1 if n else 1.0
         ease = n / at * z
         return (q + n - 1) / at * z * ease, n + ease + (q + n) / (q + 2 * n + 1) * (gap + (2 * n + 1))
@@ -190,7 +195,7 @@ def _gamma_lower(q: float) -> Terms[Number]:
     return terms
 
 
-def _fill(fractions: Floats, where: Flags, terms: Terms[Floats], *point: Floats) -> None:
+def _fill(fractions: Floats, where: Flags, terms: Terms, *point: Floats) -> None:
     chosen = tuple(part[where] for part in point)
     if chosen[0].size <= _ONE_BY_ONE:
         # Plain numbers take a twentieth of the time of arrays of one, and the same sequence of operations.
@@ -200,7 +205,7 @@ def _fill(fractions: Floats, where: Flags, terms: Terms[Floats], *point: Floats)
         fractions[where] = _fractions(terms, chosen)
 
 
-def _fraction(terms: Terms[float], point: tuple[float, ...]) -> float:
+def _fraction(terms: Terms, point: tuple[float, ...]) -> float:
     value = c = terms(0, *point)[1]
     d = 0.0
     for n in range(1, _MOST_TERMS):
@@ -214,7 +219,7 @@ def _fraction(terms: Terms[float], point: tuple[float, ...]) -> float:
     raise ArithmeticError("a tail probability did not settle")
 
 
-def _fractions(terms: Terms[Floats], point: tuple[Floats, ...]) -> Floats:
+def _fractions(terms: Terms, point: tuple[Floats, ...]) -> Floats:
     # As _fraction, dropping each value as it settles: its digits do not depend on its neighbours.
     values = np.empty_like(point[0])
     waiting = np.arange(values.size)

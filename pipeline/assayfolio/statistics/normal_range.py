@@ -45,7 +45,8 @@ def range_survival(r: Floats, k: int) -> tuple[Floats, Floats]:
 
 def range_cumulative(r: Floats, k: int) -> Floats:
     """P(range of `k` <= `r`). Measured: 12 digits for k = 200, 14 for small k."""
-    lower = (r * _cumulative_curve(k)(np.minimum(r, _CUMULATIVE_TO))) ** (k - 1)
+    near = np.minimum(r, _CUMULATIVE_TO)
+    lower = (near * _cumulative_curve(k)(near)) ** (k - 1)
     factor, exponent = range_survival(r, k)
     upper = factor * np.exp(exponent)
     return np.where(upper > 0.5, lower, 1 - upper)

@@ -1,6 +1,6 @@
 """Typed values from nodes: the keys of a mapping, and readers for single values.
 
-A reader takes a `Value` and gives what it means, or reports why it cannot and gives None.
+A reader takes a `Value` and gives what it means, or reports why it cannot and raises UnreadableError.
 """
 
 import re
@@ -30,9 +30,9 @@ class Value:
     name: str
     faults: Faults
 
-    def report(self, found: str, expected: str, place: Place | None = None) -> None:
+    def report(self, found: str, expected: str) -> None:
         """Report that `name` `found`, where `expected` was expected."""
-        self.faults.add(place or self.node.place, f"`{self.name}` {found}", f"expected {expected}")
+        self.faults.add(self.node.place, f"`{self.name}` {found}", f"expected {expected}")
 
     def unreadable(self, found: str, expected: str) -> UnreadableError:
         """Report the same, and give the error to raise."""

@@ -5,7 +5,6 @@ import re
 from assayfolio.errors import Place
 from assayfolio.study.comparison_section import Surroundings, comparison_in, equivalence_in
 from assayfolio.study.data_section import read_data
-from assayfolio.study.document import compose
 from assayfolio.study.faults import Faults, listed
 from assayfolio.study.fields import (
     Fields,
@@ -88,6 +87,8 @@ def read_laboratory(content: bytes, file: str) -> Laboratory:
 
 
 def _root(content: bytes, keys: tuple[str, ...], faults: Faults) -> Fields | None:
+    from assayfolio.study.document import compose  # loads the YAML parser, when there is something to parse
+
     node = compose(content, faults)
     if node is None or isinstance(node, RefusedNode):
         return None

@@ -59,10 +59,13 @@ def outcome_document(workspace: Workspace, outcome: RunOutcome) -> Mapping[str, 
         "verdicts": {
             response.response: {
                 "means": response.anova.verdict,
-                "comparisons": {
-                    family.name: {row.label: row.verdict for row in family.rows}
+                "comparisons": [
+                    {
+                        "name": family.name,
+                        "rows": [{"label": row.label, "verdict": row.verdict} for row in family.rows],
+                    }
                     for family in response.comparisons
-                },
+                ],
             }
             for response in outcome.findings.responses
         },

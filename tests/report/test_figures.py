@@ -1,0 +1,111 @@
+"""Figures hold every value, say in words what they show, and are the same bytes each time."""
+
+import xml.etree.ElementTree as ElementTree
+from fractions import Fraction
+
+import pytest
+
+from assayfolio.report.basis import Basis
+from assayfolio.report.diagnostics import blom_position, envelope, normal_plot, residual_plots
+from assayfolio.report.figures import FULL_WIDTH, MOST_ROWS, dot_plots, interval_plot
+from report.samples import CASES
+
+SVG = "{http://www.w3.org/2000/svg}"
+ACCENT = "#0f5b66"
+
+
+def elements(svg: bytes, tag: str) -> list[ElementTree.Element]:
+    return list(ElementTree.fromstring(svg).iter(SVG + tag))
+
+
+def rings(svg: bytes) -> list[ElementTree.Element]:
+    return [circle for circle in elements(svg, "circle") if circle.get("fill") == "none"]
+
+
+DRAWN = [case for case in CASES if case != "large file"]
+
+
+@pytest.mark.parametrize("case", DRAWN)
+def test_every_value_is_one_circle_in_the_plot_of_values(case):
+    basis = Basis(CASES[case]())
+    assert sum(len(rings(picture.svg)) for picture in dot_plots(basis, ACCENT)) == basis.total
+
+
+@pytest.mark.parametrize("case", [case for case in DRAWN if case != "without scatter"])
+def test_every_residual_is_one_circle_in_each_plot_of_residuals(case):
+    basis = Basis(CASES[case]())
+    pictures = [*residual_plots(basis), normal_plot(basis, ACCENT)]
+    assert [len(rings(picture.svg)) for picture in pictures if picture] == [basis.total] * 3
+
+
+def test_many_thousand_values_are_counted_in_classes():
+    basis = Basis(CASES["large file"]())
+    (picture,) = dot_plots(basis, ACCENT)
+    assert not rings(picture.svg)
+    assert len(elements(picture.svg, "rect")) > 100
+
+
+def test_every_comparison_has_its_estimate_and_interval():
+    basis = Basis(CASES["unequal"]())
+    family = basis.response.comparisons[0]
+    picture = interval_plot(basis, family.rows, ACCENT, "x.svg", "95 % interval")
+    filled = [circle for circle in elements(picture.svg, "circle") if circle.get("fill") == ACCENT]
+    assert len(filled) == len(family.rows) == 15
+    intervals = [path for path in elements(picture.svg, "path") if path.get("stroke") == ACCENT]
+    assert len(intervals) == 3 * 15  # a line and two flat ends each
+
+
+@pytest.mark.parametrize("case", CASES)
+def test_figures_say_in_words_what_they_show_and_stay_within_their_width(case):
+    basis = Basis(CASES[case]())
+    for picture in dot_plots(basis, ACCENT):
+        root = ElementTree.fromstring(picture.svg)
+        assert root.find(SVG + "title").text == picture.title
+        assert all(
+            level.level in "".join(p.title for p in dot_plots(basis, ACCENT)) for level in basis.levels
+        )
+        for text in root.iter(SVG + "text"):
+            assert -0.01 <= float(text.get("x")) <= FULL_WIDTH + 0.01
+            assert 0 <= float(text.get("y")) <= float(root.get("viewBox").split()[3])
+
+
+def test_names_are_shown_and_never_become_markup():
+    basis = Basis(CASES["long names"]())
+    (picture,) = dot_plots(basis, ACCENT)
+    root = ElementTree.fromstring(picture.svg)
+    assert not list(root.iter("script"))
+    assert not list(root.iter(SVG + "script"))
+    assert "<script>alert('x')</script>" in " ".join(text.text for text in root.iter(SVG + "text"))
+
+
+def test_text_is_live_and_in_the_typeface_of_the_report():
+    (picture,) = dot_plots(Basis(CASES["balanced"]()), ACCENT)
+    families = {text.get("font-family") for text in elements(picture.svg, "text")}
+    assert families == {"Inter", "Inter Tabular, Inter"}
+
+
+def test_the_same_input_gives_the_same_figures():
+    first = [picture.svg for picture in dot_plots(Basis(CASES["unequal"]()), ACCENT)]
+    again = [picture.svg for picture in dot_plots(Basis(CASES["unequal"]()), ACCENT)]
+    assert first == again
+
+
+def test_more_comparisons_than_a_page_holds_are_limited_to_those_with_the_smallest_p(rendered):
+    figures = dict(rendered("many levels").figures)
+    filled = [
+        circle for circle in elements(figures["comparisons-1.svg"], "circle") if circle.get("fill") == ACCENT
+    ]
+    assert len(filled) == MOST_ROWS
+
+
+def test_plotting_positions_are_those_of_blom():
+    assert [blom_position(rank, 3) for rank in (1, 2, 3)] == [
+        Fraction(5, 26),
+        Fraction(1, 2),
+        Fraction(21, 26),
+    ]
+
+
+def test_the_envelope_in_the_middle_is_that_of_a_median():
+    # sqrt(1/4 / N) / density(0) = sqrt(2 pi) / (2 sqrt(N))
+    assert envelope(Fraction(1, 2), 0.0, 100, 1.0) == pytest.approx(0.12533141373155002)
