@@ -235,7 +235,7 @@ def without_scatter() -> ReportInput:
     )
 
 
-def many_levels(count: int = 30, each: int = 5) -> ReportInput:
+def many_levels(count: int = 22, each: int = 5) -> ReportInput:
     """Many lots, every pair of them compared."""
     means = {f"lot {number:03d}": 250 + 1.3 * wobble(tally(number * 991)) for number in range(1, count + 1)}
     seen = observations(invented(means, 1.1, dict.fromkeys(means, each), 1, 5), "content", "lot")

@@ -1,6 +1,6 @@
 """Figures hold every value, say in words what they show, and are the same bytes each time."""
 
-import xml.etree.ElementTree as ElementTree
+import xml.etree.ElementTree as ET
 from fractions import Fraction
 
 import pytest
@@ -14,11 +14,11 @@ SVG = "{http://www.w3.org/2000/svg}"
 ACCENT = "#0f5b66"
 
 
-def elements(svg: bytes, tag: str) -> list[ElementTree.Element]:
-    return list(ElementTree.fromstring(svg).iter(SVG + tag))
+def elements(svg: bytes, tag: str) -> list[ET.Element]:
+    return list(ET.fromstring(svg).iter(SVG + tag))
 
 
-def rings(svg: bytes) -> list[ElementTree.Element]:
+def rings(svg: bytes) -> list[ET.Element]:
     return [circle for circle in elements(svg, "circle") if circle.get("fill") == "none"]
 
 
@@ -59,7 +59,7 @@ def test_every_comparison_has_its_estimate_and_interval():
 def test_figures_say_in_words_what_they_show_and_stay_within_their_width(case):
     basis = Basis(CASES[case]())
     for picture in dot_plots(basis, ACCENT):
-        root = ElementTree.fromstring(picture.svg)
+        root = ET.fromstring(picture.svg)
         assert root.find(SVG + "title").text == picture.title
         assert all(
             level.level in "".join(p.title for p in dot_plots(basis, ACCENT)) for level in basis.levels
@@ -72,7 +72,7 @@ def test_figures_say_in_words_what_they_show_and_stay_within_their_width(case):
 def test_names_are_shown_and_never_become_markup():
     basis = Basis(CASES["long names"]())
     (picture,) = dot_plots(basis, ACCENT)
-    root = ElementTree.fromstring(picture.svg)
+    root = ET.fromstring(picture.svg)
     assert not list(root.iter("script"))
     assert not list(root.iter(SVG + "script"))
     assert "<script>alert('x')</script>" in " ".join(text.text for text in root.iter(SVG + "text"))

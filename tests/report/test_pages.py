@@ -61,7 +61,8 @@ REQUIRED_ON_THE_FIRST_PAGE = [
     "simultaneous 95 %",
     "Equivalence was not tested.",
     "24 received, 0 excluded, 24 analysed",
-    "Deviations none recorded",
+    "Deviations",
+    "none recorded",
     "Author",
     "Reviewer",
     "Approver",
@@ -86,7 +87,7 @@ REQUIRED_IN_THE_REPORT = [
     "Planned analyses and where they are reported",
     "weights ion chromatography -0.5; electrode -0.5; kit A 0.5; kit B 0.5",
     # the analysis
-    "Null hypothesis. The 4 levels of method (ion chromatography, kit A, kit B, electrode) have the same mean",
+    "Null hypothesis. The 4 levels of method (ion chromatography, kit A, kit B, electrode) have",
     "Alternative. At least one of the 4 means differs from another",
     "Source of variation",
     "Variance ratio F",
@@ -175,13 +176,9 @@ def test_the_sections_come_in_their_order(pages_of):
 
 
 def test_heads_of_tables_are_repeated_on_every_page_they_reach(pages_of):
-    pages = [
-        page
-        for page in pages_of("many levels")
-        if "lot 004 - lot" in flat(page) or "lot 009 - lot" in flat(page)
-    ]
-    assert len(pages) >= 2
-    assert all("Adjusted p" in page for page in pages)
+    pages = [page for page in pages_of("many levels") if page.count("not shown") > 3]
+    assert len(pages) >= 4
+    assert all("Adjusted p" in page and "Standard error" in page for page in pages)
 
 
 def test_further_answers_are_announced_on_the_first_page(pages_of):

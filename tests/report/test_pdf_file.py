@@ -1,6 +1,7 @@
 """The PDF as a file: conformity, fonts, signature fields, attachments."""
 
 import io
+import re
 import subprocess
 from dataclasses import replace
 
@@ -95,8 +96,8 @@ def test_an_empty_field_says_not_signed_by_its_own_appearance(opened):
 
 
 def glyph_texts(cmap: str) -> dict[str, str]:
-    pairs = [line.strip("<>").split("> <") for line in cmap.splitlines() if line.count("<") == 2]
-    return {glyph.lower(): bytes.fromhex(text).decode("utf-16-be") for glyph, text in pairs}
+    pairs = re.findall(r"<([0-9a-f]{4})> <([0-9a-f]+)>", cmap.lower().split("endcodespacerange")[1])
+    return {glyph: bytes.fromhex(text).decode("utf-16-be") for glyph, text in pairs}
 
 
 def test_signature_fields_are_tagged_so_that_signing_keeps_the_tags(opened):

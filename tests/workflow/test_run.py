@@ -167,3 +167,30 @@ def test_the_data_of_a_run_cannot_be_where_a_folio_would_hide_them(tmp_path):
     study = STUDY.replace("data/values.csv", "data/values.csv/")
     bench = Bench(tmp_path / "w", study)
     assert bench("run", bench.study).code == 2
+
+
+def test_a_data_file_whose_name_no_folio_can_hold_is_refused(tmp_path):
+    bench = Bench(tmp_path / "w", STUDY.replace("values.csv", "50%25.csv"), None)
+    (bench.data.parent / "50%25.csv").write_text(DATA)
+    answer = bench("run", bench.study)
+    assert answer.code == 2
+    assert "rename the file" in answer.err
+
+
+def test_a_failure_while_staging_leaves_no_digest_of_a_report_that_is_not_there(tmp_path, monkeypatch):
+    real = workflow_run.stage_folio
+    calls = []
+
+    def fail_once(*arguments):
+        calls.append(arguments)
+        if len(calls) == 1:
+            raise MachineError("no space left")
+        return real(*arguments)
+
+    bench = Bench(tmp_path / "w")
+    monkeypatch.setattr(workflow_run, "stage_folio", fail_once)
+    assert bench("run", bench.study).code == 3
+    record = json.loads((bench.runs / "TST-1/run-0001/data/run.json").read_bytes())
+    assert record["outcome"] == "failed"
+    assert "report_sha256" not in record
+    assert bench("verify").code == 0

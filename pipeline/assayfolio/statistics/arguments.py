@@ -17,9 +17,8 @@ Values = TypeVar("Values", float, Floats)
 
 def shaped(like: Values, values: Floats) -> Values:
     """`values`, one a number of `like`: a float where `like` is a number, else an array of its shape."""
-    if np.ndim(like) == 0:
-        return cast("Values", values.item())
-    return cast("Values", values.reshape(np.shape(like)))
+    answer = values.item() if np.ndim(like) == 0 else values.reshape(np.shape(like))
+    return cast("Values", answer)
 
 
 def statistic_values(values: float | Floats, name: str) -> Floats:

@@ -20,10 +20,11 @@ _STIRLING_TERMS: Final = (1 / 12, -1 / 360, 1 / 1260, -1 / 1680, 1 / 1188, -691 
 _STIRLING_FROM: Final = 12.0
 
 
-def excess(u: Floats, one_plus_u: Floats) -> Floats:
+def excess(u: Floats, log_one_plus_u: Floats) -> Floats:
     """The excess u - log(1 + u), never negative, to a few units in the last place for all u > -1.
 
-    `one_plus_u` is 1 + u formed by the caller without loss, for u near -1. At u = -1 the result is infinite.
+    `log_one_plus_u` is log(1 + u) as the caller can form it without loss for u near -1; it is used only where
+    u is outside [-1/2, 1].
     """
     ratio = u / (2 + u)
     square = ratio * ratio
@@ -31,15 +32,14 @@ def excess(u: Floats, one_plus_u: Floats) -> Floats:
     for coefficient in _ATANH_TERMS[1:]:
         series = series * square + coefficient
     near = ratio * (u - 2 * square * series)
-    with np.errstate(divide="ignore"):
-        far = u - np.log(one_plus_u)
-    return np.where((u >= -0.5) & (u <= 1), near, far)
+    return np.where((u >= -0.5) & (u <= 1), near, u - log_one_plus_u)
 
 
 def stirling_correction(z: float) -> float:
     """What log Gamma(z) has beyond Stirling's (z - 1/2) log z - z + log(2 pi)/2, for z >= 1/2.
 
-    Zero for infinite z. Absolute error below 2e-15. Method: the asymptotic series (DLMF 5.11.1), reached by recursion.
+    Zero for infinite z. Absolute error below 2e-15.
+    Method: the asymptotic series (DLMF 5.11.1), reached by recursion.
     """
     if math.isinf(z):
         return 0.0

@@ -37,8 +37,8 @@ from assayfolio.statistics.studentized import (
 from assayfolio.statistics.tails import t_isf
 
 MOST_MEANS: Final = 200
-_NEGLIGIBLE: Final = 42.0  # exp(-42) is 6e-19
-_SMALLEST_CUMULATIVE: Final = 16.0  # the lower tail is meant down to exp(-16), 1e-7
+_NEGLIGIBLE: Final = 40.0  # exp(-40) is 4e-18
+_NEGLIGIBLE_BELOW: Final = 50.0  # the lower tail is meant down to 1e-7 and may be that much smaller
 _LARGEST: Final = 1e300
 _SLOPE_STEP: Final = 1e-4
 
@@ -128,7 +128,7 @@ class _Law:
         scale = np.zeros_like(q)
         averages = average_over_spread(
             lambda rows, u: (range_cumulative(q[rows, None] * np.exp(u), self.k), np.zeros_like(u)),
-            interval_above(scale + (_NEGLIGIBLE + _SMALLEST_CUMULATIVE), self.df / 2),
+            interval_above(scale + _NEGLIGIBLE_BELOW, self.df / 2),
             scale,
             self.df,
             self._finest,
@@ -144,7 +144,7 @@ class _Law:
     def _finest(self) -> float:
         # The more means, the more steeply W leaves 1. The figures are measured: panels of this width, with
         # twenty nodes, hold 13 digits.
-        return 0.7 / (1 + self._flat_to / 22)
+        return 0.5 / (1 + self._flat_to / 22)
 
     def _where_upper_counts(self, q: Floats) -> tuple[Interval, Floats]:
         # log W is near min(0, (flat - r^2)/4); with that in its place, the logarithm of the integrand is the

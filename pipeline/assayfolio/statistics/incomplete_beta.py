@@ -106,7 +106,7 @@ def ratio_tails(ratios: Ratios, q: float, p: float) -> Tails:
     upper = ratios.f >= 1
     fractions = np.empty_like(ratios.f)
     if math.isinf(p):
-        exponent = -q * excess(ratios.less_one, ratios.f)
+        exponent = -q * excess(ratios.less_one, ratios.log_f)
         exponent[np.isposinf(ratios.log_f)] = -np.inf
         _fill(fractions, upper, _gamma_upper(q), ratios.less_one * q)
         _fill(fractions, ~upper, _gamma_lower(q), ratios.f * q, ratios.less_one * -q)
@@ -151,12 +151,12 @@ class _Parts:
         y_less = np.where(small, drift, drift * (p / q))
         x_ratio = np.where(small, share * (1 + q / p), (1 + p / q) / held * share)
         y_ratio = np.where(small, f * share * (1 + q / p), share * (1 + p / q))
-        x_excess = excess(x_less, x_ratio)
+        with np.errstate(divide="ignore"):
+            log_x, log_y = np.log(x_ratio), np.log(y_ratio)
         far = ratios.log_f > _LN_FAR
-        log_x = math.log1p(p / q) - ratios.log_f[far]
-        x_excess[far] = x_less[far] - log_x
+        log_x[far] = math.log1p(p / q) - ratios.log_f[far]
         gap = np.where(small, drift * q, drift * p)
-        return _Parts(x, y, gap, x_excess, excess(y_less, y_ratio))
+        return _Parts(x, y, gap, excess(x_less, log_x), excess(y_less, log_y))
 
 
 class Terms(Protocol):

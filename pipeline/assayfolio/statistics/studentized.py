@@ -20,7 +20,7 @@ from assayfolio.statistics.deviance import excess, stirling_correction
 from assayfolio.statistics.quadrature import composite_rule
 
 _NODES: Final = 20
-_WIDENING: Final = 1.6
+_WIDENING: Final = 1.4
 _FEWEST_PANELS: Final = 3
 _BLOCK: Final = 32_768
 
@@ -86,10 +86,9 @@ def average_over_spread(
         for begin in range(0, rows.size, step):
             block = rows[begin : begin + step]
             u = interval.low[block, None] + length[block, None] * nodes
-            square = np.exp(2 * u)
             square_less_one = np.expm1(2 * u)
             factor, exponent = integrand(block, u)
-            exponent = exponent - df / 2 * excess(square_less_one, square) - scale[block, None]
+            exponent = exponent - df / 2 * excess(square_less_one, 2 * u) - scale[block, None]
             terms = weights * factor * np.exp(exponent)
             mean[block] = np.sum(terms, axis=-1)
             drift[block] = np.sum(terms * (df * square_less_one), axis=-1)

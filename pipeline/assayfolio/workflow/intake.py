@@ -10,6 +10,7 @@ from typing import Literal
 
 from assayfolio.canonical import sha256_hex
 from assayfolio.errors import DataError, Fault, InputError, Place
+from assayfolio.evidence.folio import name_fault
 from assayfolio.fit import check_fit
 from assayfolio.observations.reading import read_observations
 from assayfolio.observations.values import Observations
@@ -77,6 +78,13 @@ def read_intake(workspace: Workspace, study_path: Path, seen: SeenFiles) -> Inta
     """Read and validate plan and data, and make sure that the one fits the other."""
     study, laboratory = read_plan(workspace, study_path, seen)
     data_path = study_path.resolve().parent / study.data.file
+    fault = name_fault(f"data/inputs/{data_path.name}")
+    if fault is not None:
+        advice = "rename the file"
+        raise DataError(
+            "The data file cannot be kept under its name.",
+            (Fault(Place(shown_path(data_path)), f"{data_path.name!r}: {fault}", advice),),
+        )
     content = read_input(workspace, data_path, "data file")
     data_file = workspace.name_of(data_path.resolve())
     seen.files.append(InputFile("raw data", data_file, f"data/inputs/{data_path.name}", content))

@@ -130,7 +130,8 @@ def _native_libraries(environment: Mapping[str, Any]) -> tuple[tuple[str, str], 
         name = library["file"].partition(".so")[0].partition(".dylib")[0]
         if name.startswith(LAYOUT_LIBRARIES):
             version = f"{library['version']}, " if library["version"] else ""
-            named.append((name, f"{version}SHA-256 {library['sha256'][:16]}"))
+            digest = library["sha256"]
+            named.append((name, f"{version}SHA-256 {digest[:16] if digest else 'not readable'}"))
     return tuple(named)
 
 

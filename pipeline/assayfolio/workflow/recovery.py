@@ -24,6 +24,8 @@ def acknowledge_interruptions(workspace: Workspace, trail: TrailWriter) -> None:
     """
     for run in run_histories(trail.entries):
         folder = workspace.runs / run.study
+        if is_locked(folder, run.name):
+            continue  # at work
         if run.sealed is not None:
             if not (folder / run.name).exists():
                 staged = reopen_staged(folder, run.name)
@@ -31,7 +33,7 @@ def acknowledge_interruptions(workspace: Workspace, trail: TrailWriter) -> None:
                     reason = "the run was interrupted before its sealed folio was renamed into place"
                     trail.append("rename-completed", run.subject, reason, {"seal": staged.seal})
                     staged.publish()
-        elif run.interrupted is None and not is_locked(folder, run.name):
+        elif run.interrupted is None:
             last = run.entries[-1]
             trail.append(
                 "interrupted",

@@ -215,7 +215,8 @@ def _seal_failed(run: _Run, error: BaseException) -> BaseException:
     where = f"{run.subject} failed; its number is kept"
     try:
         run.enter("failed", Step(run.reached + 1), {}, _holdable(reason))
-        run.payload.pop("data/report.pdf", None)
+        run.payload.pop("data/report.pdf", None)  # a report is issued by a completed run only
+        run.record.pop("report_sha256", None)
         run.payload["data/failure.txt"] = account.encode("utf-8", "backslashreplace")
         run.record = failed_record(run.record, _holdable(reason))
         folio, _ = _seal(run, "failed")
