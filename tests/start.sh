@@ -11,11 +11,12 @@ set -eu
 checkout=$(CDPATH='' cd -- "$(dirname -- "$0")/.." && pwd -P)
 . "$checkout/pipeline/setup.sh"
 
-# Outside programs that check what assayfolio writes: PDF tools, and Java for the PDF/A and PDF/UA validator.
-debian_tools="qpdf poppler-utils default-jre-headless libjaxb-java"
+# Outside programs that tests ask: git about the checkout, PDF tools and Java (for the PDF/A and PDF/UA validator)
+# about what assayfolio writes.
+debian_tools="git qpdf poppler-utils default-jre-headless libjaxb-java"
 
 missing_tools() {
-    for tool in qpdf pdfinfo pdffonts pdftoppm java; do
+    for tool in git qpdf pdfinfo pdffonts pdftoppm java; do
         command -v "$tool" >/dev/null 2>&1 || printf ' %s' "$tool"
     done
     [ -e /usr/share/java/jaxb-runtime.jar ] || printf ' libjaxb-java'
@@ -24,7 +25,7 @@ missing_tools() {
 require_tools() {
     lacking=$(missing_tools)
     if [ -n "$lacking" ] && can_use_apt; then
-        say "installing the programs that check PDF files, with apt-get (once)"
+        say "installing the programs that tests need, with apt-get (once)"
         open_log
         hold_lock
         (apt_install $debian_tools) || true

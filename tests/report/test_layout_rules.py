@@ -62,7 +62,11 @@ def test_equal_values_go_to_the_lanes_nearest_the_middle():
 
 
 def test_dots_move_closer_where_there_is_no_room():
-    assert max(map(abs, offsets([7.0] * 41, 4.4, 10.0))) <= 10.0
+    assert max(offsets(lanes([7.0] * 41, 4.4), 4.4, 10.0)) == pytest.approx(10.0)
+
+
+def test_dots_keep_their_distance_where_there_is_room():
+    assert sorted(offsets(lanes([7.0] * 3, 4.4), 4.4, 50.0)) == pytest.approx([0.0, 4.4, 8.8])
 
 
 def test_values_in_prose_are_never_looked_into():

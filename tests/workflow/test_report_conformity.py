@@ -32,7 +32,7 @@ def test_sha256sum_agrees_with_the_manifests(folio, manifest):
 def test_an_independent_bagit_validator_agrees(folio, monkeypatch):
     monkeypatch.chdir(folio.parent)
     bag = bagit.Bag(str(folio))
-    assert bag.version == "1.0"
+    assert bag.version_info == (1, 0)
     bag.validate()
 
 

@@ -1,23 +1,17 @@
-"""Sections 3 to 6: checks, analysis of variance, comparisons, and what is not reported."""
+"""Sections 3, 4 and 6: checks, analysis of variance, and what is not reported."""
 
-from assayfolio.findings import CheckFindings, ComparisonFamily, ComparisonRow
-from assayfolio.report.basis import Basis, is_single_step
-from assayfolio.report.content import Block, FigureBlock, Heading, Paragraph, Section, TableBlock
+from assayfolio.findings import CheckFindings
+from assayfolio.report.basis import Basis
+from assayfolio.report.content import Block, FigureBlock, Paragraph, Section, TableBlock
 from assayfolio.report.diagnostics import normal_plot, residual_plots
-from assayfolio.report.figures import MOST_DOTS, MOST_ROWS, interval_plot
-from assayfolio.report.methods import adjustment_of
-from assayfolio.report.notation import INFINITY, MINUS, probability, squared_unit, squares, statistic
-from assayfolio.report.numbering import ANCHORS, ANOVA, CHECKS, COMPARISONS, NOT_REPORTED, Numbering
+from assayfolio.report.figures import MOST_DOTS
+from assayfolio.report.notation import probability, squared_unit, squares, statistic
+from assayfolio.report.numbering import ANCHORS, ANOVA, CHECKS, NOT_REPORTED, Numbering
 from assayfolio.report.prose import Prose, Words, prose
 from assayfolio.report.tables import Column, Table, lay_out
 from assayfolio.report.wording import (
-    NOT_REGISTERED,
-    adjusted_p,
     alpha_words,
     capitalised,
-    counted,
-    interval_kind,
-    row_verdict,
     typographic,
 )
 
@@ -133,8 +127,10 @@ def anova_section(basis: Basis, numbering: Numbering) -> Section:
         ),
         Paragraph(
             prose(
-                "#Alternative.# At least one of the {count} means differs from another. Level *α* = {alpha}.",
-                count=str(count),
+                "#Alternative.# {alternative}. Level *α* = {alpha}.",
+                alternative="The two means differ"
+                if count == 2
+                else f"At least one of the {count} means differs from another",
                 alpha=alpha_words(basis),
             )
         ),
@@ -212,137 +208,6 @@ def _anova_verdict(basis: Basis) -> Prose:
         count=str(len(basis.levels)),
         alpha=alpha_words(basis),
     )
-
-
-def comparisons_section(basis: Basis, numbering: Numbering, accent: str) -> Section:
-    """Each family of comparisons: how it was formed, its table, its intervals drawn."""
-    families = basis.response.comparisons
-    blocks: list[Block] = []
-    for number, family in enumerate(families, start=1):
-        blocks.append(Heading(prose("{name}", name=family.name), f"family-{number}"))
-        blocks.append(Paragraph(_family_words(basis, family)))
-        blocks.append(TableBlock(_family_table(basis, family, numbering)))
-        blocks += _family_figure(basis, family, numbering, accent, number)
-    if not families:
-        planned = bool(basis.content.study.comparisons)
-        why = "None of the planned comparisons can be reported; section 6 gives the reasons."
-        blocks.append(Paragraph(prose(why if planned else "No comparisons of single levels were planned.")))
-    return Section(ANCHORS[COMPARISONS], COMPARISONS, "Comparisons", tuple(blocks))
-
-
-def _family_words(basis: Basis, family: ComparisonFamily) -> Prose:
-    count = len(family.rows)
-    side = {"two-sided": "two-sided", "greater": "one-sided (greater)", "less": "one-sided (less)"}[
-        family.alternative
-    ]
-    df = counted(family.rows[0].df, "degree of freedom", "degrees of freedom")
-    if count == 1:
-        words = prose(
-            "One comparison, {side}, {df}; planned, {registered}.",
-            side=side,
-            df=df,
-            registered=NOT_REGISTERED,
-        )
-    else:
-        words = prose(
-            "A family of {count} comparisons, {side}, {adjusted}, {df}; planned, {registered}.",
-            count=str(count),
-            side=side,
-            adjusted=_how_adjusted(family),
-            df=df,
-            registered=NOT_REGISTERED,
-        )
-    verdict = prose(
-        " A difference is shown where the {kind}*p* is at most {alpha}; whether it matters, its size and "
-        "interval say.",
-        kind="" if family.adjust == "none" else "adjusted ",
-        alpha=alpha_words(basis),
-    )
-    return (*words, *verdict)
-
-
-def _how_adjusted(family: ComparisonFamily) -> str:
-    if family.adjust == "none":
-        return "not adjusted for their number"
-    return f"adjusted together by {adjustment_of(family).name}"
-
-
-def _family_table(basis: Basis, family: ComparisonFamily, numbering: Numbering) -> Table:
-    scale = basis.difference_scale
-    with_ci = is_single_step(family)
-    adjusted = family.adjust != "none"
-    columns = [
-        Column("Comparison", kind="text"),
-        Column("Estimated difference", scale.heading),
-        *([Column("Interval, from", scale.heading), Column("to", scale.heading)] if with_ci else []),
-        Column("Standard error", scale.heading),
-        Column(prose("*t*")),
-        Column(prose("*p*")),
-        *([Column(prose("Adjusted *p*"))] if adjusted else []),
-        Column("Difference", kind="words"),
-    ]
-    largest = max((row.se for row in family.rows), key=lambda se: se.square)
-    rows = []
-    for row in family.rows:
-        cells: list[Words] = [basis.label(row), scale.mean(row.estimate)]
-        if with_ci:
-            cells += _ends(basis, row)
-        cells += [
-            scale.spread(row.se, largest),
-            statistic(row.statistic),
-            probability(row.p, basis.response.alpha),
-        ]
-        if adjusted:
-            cells.append(adjusted_p(basis, row))
-        rows.append([*cells, row_verdict(row.verdict)])
-    caption = prose("Comparisons, {name}.", name=family.name)
-    if with_ci:
-        kind = interval_kind(basis, family) + ("s" if len(family.rows) > 1 else "")
-        caption = prose("Comparisons, {name}, with {kind}.", name=family.name, kind=kind)
-    return lay_out(numbering.table(), caption, columns, rows)
-
-
-def _ends(basis: Basis, row: ComparisonRow) -> list[Words]:
-    if row.ci is None:
-        return [_BLANK, _BLANK]
-    low, high = row.ci
-    scale = basis.difference_scale
-    return [
-        f"{MINUS}{INFINITY}" if low is None else scale.mean(low),
-        INFINITY if high is None else scale.mean(high),
-    ]
-
-
-def _family_figure(
-    basis: Basis, family: ComparisonFamily, numbering: Numbering, accent: str, number: int
-) -> list[Block]:
-    rows = family.rows
-    total = len(rows)
-    limited = ""
-    if total > MOST_ROWS:
-        order = sorted(range(total), key=lambda index: (rows[index].log10_p_adjusted, rows[index].p, index))
-        rows = tuple(rows[index] for index in sorted(order[:MOST_ROWS]))
-        limited = (
-            f" Drawn are the {MOST_ROWS} of {total} with the smallest adjusted *p*, in the order of the "
-            "plan; the table has all."
-        )
-    with_ci = is_single_step(family)
-    picture = interval_plot(basis, rows, accent, f"comparisons-{number}.svg", f"{basis.confidence} interval")
-    if with_ci:
-        what = prose(
-            "Estimated differences (dots) with {kind}, {name}. An interval that leaves out zero is a "
-            "difference shown.",
-            name=family.name,
-            kind=interval_kind(basis, family) + ("s" if total > 1 else ""),
-        )
-    else:
-        what = prose(
-            "Estimated differences (dots), {name}. {method} has no intervals; the verdicts stand in the "
-            "table.",
-            name=family.name,
-            method=adjustment_of(family).name,
-        )
-    return [FigureBlock(numbering.figure(), (picture,), (*what, *prose(limited)))]
 
 
 def not_reported_section(basis: Basis) -> Section:

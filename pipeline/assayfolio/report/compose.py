@@ -3,16 +3,12 @@
 import re
 
 from assayfolio.errors import RenderingError
-from assayfolio.report.analysis import (
-    anova_section,
-    checks_section,
-    comparisons_section,
-    not_reported_section,
-)
+from assayfolio.report.analysis import anova_section, checks_section, not_reported_section
 from assayfolio.report.answers import cards, summary
 from assayfolio.report.basis import Basis
 from assayfolio.report.content import ReportContent, SignatureBox
 from assayfolio.report.facts import ReportInput
+from assayfolio.report.families import comparisons_section
 from assayfolio.report.numbering import Numbering
 from assayfolio.report.plan_and_data import data_section, plan_section
 from assayfolio.report.prose import Prose, prose
@@ -65,7 +61,7 @@ def compose(content: ReportInput) -> ReportContent:
         address=", ".join(laboratory.address),
         laboratory_note=laboratory.note or "",
         number=number,
-        created=run.started_utc,
+        created=f"{run.started_utc[:19]}Z",
         generator=f"Assayfolio {VERSION}",
         facts=_facts(basis),
         cards=cards(basis, accent),

@@ -20,7 +20,7 @@ MOST_ROWS = 36
 
 _FEW_LEVELS = 8
 _MANY_LEVELS = 16
-_MOST_ROOM = 26.0  # to each side of the middle line of dots
+_MOST_ROOM = 52.0  # for the lanes of one level
 _BESIDE_DOTS = 16.0  # a dot's own height, the lane of the interval, and air
 _SIZE = 7.4
 _LINE = 9.2
@@ -87,11 +87,12 @@ def _label_column(names: list[str], share: float) -> float:
 
 @dataclass(frozen=True, slots=True)
 class _Row:
-    """One level in a dot plot: its name in lines, where its dots go, how much room they need to a side."""
+    """One level in a dot plot: its name in lines, where its dots go, and the height its lanes take."""
 
     level: LevelFindings
     words: list[str]
     places: list[float]
+    lanes: list[int]
     room: float
     height: float
 
@@ -124,11 +125,12 @@ def _row(basis: Basis, level: LevelFindings, axis: Axis, column: float, count: i
     name_lines = len(words) + (0 if count > _MANY_LEVELS else 1)
     least = 30.0 if count <= _FEW_LEVELS else 22.0 if count <= _MANY_LEVELS else 17.0
     if basis.total > MOST_DOTS:
-        room = least * 0.3
+        chosen, room = [], least * 0.6
     else:
-        room = min(_MOST_ROOM, DOT_ROOM * max(abs(lane) for lane in lanes(places, DOT_ROOM)))
-    height = max(least, _LINE * name_lines + 4, 2 * room + _BESIDE_DOTS)
-    return _Row(level, words, places, room, height)
+        chosen = lanes(places, DOT_ROOM)
+        room = min(_MOST_ROOM, DOT_ROOM * (max(chosen) - min(chosen)))
+    height = max(least, _LINE * name_lines + 4, room + _BESIDE_DOTS)
+    return _Row(level, words, places, chosen, room, height)
 
 
 def _name_level(
@@ -147,7 +149,7 @@ def _name_level(
 
 def _draw_row(drawing: Drawing, basis: Basis, row: _Row, axis: Axis, top: float, accent: str) -> None:
     """Dots above, the interval in its own lane below, the bar of the mean through both."""
-    body = 2 * row.room + _BESIDE_DOTS
+    body = row.room + _BESIDE_DOTS
     top += (row.height - body) / 2
     dots, interval = top + 4.2 + row.room, top + body - 3.6
     mean = axis.at(row.level.mean)
@@ -155,9 +157,9 @@ def _draw_row(drawing: Drawing, basis: Basis, row: _Row, axis: Axis, top: float,
     if row.level.ci is not None:
         draw_interval(drawing, axis, interval, row.level.ci, stroke=accent)
     if basis.total > MOST_DOTS:
-        _classes(drawing, row.places, axis, dots, row.room)
+        _classes(drawing, row.places, axis, dots - row.room / 2, row.room / 2)
         return
-    for x, offset in zip(row.places, offsets(row.places, DOT_ROOM, row.room), strict=True):
+    for x, offset in zip(row.places, offsets(row.lanes, DOT_ROOM, row.room), strict=True):
         drawing.ring(x, dots - offset, DOT)
 
 

@@ -8,7 +8,7 @@ from assayfolio.report.basis import Basis
 from assayfolio.report.figures import Picture, draw_interval
 from assayfolio.report.notation import MINUS
 from assayfolio.report.svg import SECOND_INK, THIN_LINE, Drawing
-from assayfolio.report.swarm import offsets
+from assayfolio.report.swarm import lanes, offsets
 
 WIDTH = 153.1  # 54 mm
 WIDTH_MM = 54.0
@@ -26,6 +26,14 @@ def comparison_axis(basis: Basis) -> Axis | None:
     if not values:
         return None
     return make_axis(values, 6, WIDTH - 6, wanted=4, include_zero=True, power=basis.difference_scale.power)
+
+
+def _crowd(drawing: Drawing, places: list[float], accent: str) -> None:
+    chosen = lanes(places, 2.6)
+    above = offsets(chosen, 2.6, 30.0)
+    middle = 18 + max(above) / 2
+    for x, offset in zip(places, above, strict=True):
+        drawing.dot(x, middle - offset, 1.1, fill=accent)
 
 
 def _ticks(drawing: Drawing, axis: Axis, y: float, unit: str) -> None:
@@ -48,8 +56,7 @@ def family_picture(basis: Basis, family: ComparisonFamily, axis: Axis, accent: s
     drawing.line(zero, 0, zero, body, stroke=SECOND_INK, width=THIN_LINE)
     if many:
         places = [axis.at(row.estimate) for row in rows]
-        for x, offset in zip(places, offsets(places, 2.6, 15.0), strict=True):
-            drawing.dot(x, 18 - offset, 1.1, fill=accent)
+        _crowd(drawing, places, accent)
     for number, row in enumerate(() if many else rows):
         y = 3 + pitch * (number + 0.5)
         if row.ci is not None:
@@ -73,8 +80,7 @@ def means_picture(basis: Basis, accent: str, name: str) -> Picture:
     drawing = Drawing(WIDTH, body + 22)
     if many:
         places = [axis.at(level.mean) for level in levels]
-        for x, offset in zip(places, offsets(places, 2.6, 15.0), strict=True):
-            drawing.dot(x, 18 - offset, 1.1, fill=accent)
+        _crowd(drawing, places, accent)
     for number, level in enumerate(() if many else levels):
         y = 3 + pitch * (number + 0.5)
         if level.ci is not None:

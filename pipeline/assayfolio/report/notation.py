@@ -19,6 +19,7 @@ from assayfolio.exact import Exact, Root, magnitude, rounded_units
 
 MINUS = "\u2212"
 THIN = "\u202f"  # narrow no-break space: a thin space that never ends a line
+NO_BREAK = "\u00a0"
 TIMES = "\u00d7"
 INFINITY = "\u221e"
 
@@ -153,7 +154,8 @@ class Scale:
         power = largest if largest < -4 or last_digit > 3 or too_long else 0
         limit = MAX_DIGITS - 1 - max(0, largest - power)
         places = min(limit, max(0, power - last_digit))
-        return Scale(unit or "", power, places, min(limit, max(0, power - last_digit + 1)))
+        whole = (unit or "").replace(" ", NO_BREAK)
+        return Scale(whole, power, places, min(limit, max(0, power - last_digit + 1)))
 
     @property
     def heading(self) -> str:

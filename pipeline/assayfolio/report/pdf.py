@@ -28,7 +28,8 @@ from assayfolio.report.finishing import finish
 from assayfolio.report.typeface import FAMILY, FIGURES_FAMILY
 
 VARIANT = "pdf/a-3a"
-_PAPERS = {"A4": 297.0, "Letter": 279.4}
+_TEXT_WIDTH, _INNER_MARGIN = 164.0, 26.0
+_PAPERS = {"A4": (210.0, 297.0), "Letter": (215.9, 279.4)}  # width and height in millimetres
 _FIRST_PAGE_MARGINS = 16.0 + 24.0
 _NO_SYSTEM_FONTS = (
     '<?xml version="1.0"?>\n<!DOCTYPE fontconfig SYSTEM "urn:fontconfig:fonts.dtd">\n'
@@ -138,12 +139,18 @@ def _styles(look: Look) -> tuple[Any, Any]:
         from weasyprint.text.fonts import FontConfiguration
 
         fonts = FontConfiguration()
-        height = _PAPERS[look.paper] - _FIRST_PAGE_MARGINS
-        sheet = (
-            f"{font_faces()}\n@page {{ size: {look.paper} }}\n"
-            f":root {{ --accent: {look.accent}; --cover-height: {height}mm }}\n{stylesheet_text()}"
-        )
-        return fonts, weasyprint.CSS(string=sheet, font_config=fonts, url_fetcher=make_fetcher({}))
+        return fonts, weasyprint.CSS(string=_sheet(look), font_config=fonts, url_fetcher=make_fetcher({}))
+
+
+def _sheet(look: Look) -> str:
+    """The style sheet with the fonts and what the laboratory sets; the text is as wide on every paper."""
+    width, height = _PAPERS[look.paper]
+    outer = width - _INNER_MARGIN - _TEXT_WIDTH
+    return (
+        f"{font_faces()}\n{stylesheet_text()}\n"
+        f"@page {{ size: {look.paper}; margin-left: {_INNER_MARGIN}mm; margin-right: {outer:.1f}mm }}\n"
+        f":root {{ --accent: {look.accent}; --cover-height: {height - _FIRST_PAGE_MARGINS:.1f}mm }}\n"
+    )
 
 
 def load(look: Look) -> tuple[Any, Any]:

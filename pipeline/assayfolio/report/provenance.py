@@ -36,7 +36,7 @@ def provenance_section(basis: Basis) -> Section:
         Facts(
             (
                 _entry("Run", f"{run.study}, {run.label}"),
-                _entry("Started", f"{_time(run.started_utc)} UTC; local time {run.started_local}"),
+                _entry("Started", f"{_time(run.started_utc)} UTC, {_time(run.started_local)} local time"),
                 _entry("Started by", f"{run.actor} on {run.host}"),
                 _entry("Self-check", run.self_check),
                 _entry("Findings", "findings.json", run.findings_sha256),
@@ -46,7 +46,7 @@ def provenance_section(basis: Basis) -> Section:
         Heading(prose("Software")),
         Facts(
             (
-                _entry("Interpreter", f"Python {run.python} on {run.platform}"),
+                _entry("Interpreter", f"{_interpreter(run.python)} on {run.platform}"),
                 _entry("Packages", _versions(run.software)),
                 _entry("Native libraries", _versions(run.native_libraries)),
             )
@@ -77,7 +77,13 @@ def _input(item: InputFacts) -> Entry:
 
 
 def _time(rfc3339: str) -> str:
-    return rfc3339.rstrip("Z").replace("T", " ")
+    """A time to the second: date, time of day, and the offset where there is one."""
+    offset = rfc3339[-6:] if rfc3339[-6] in "+-" else ""
+    return f"{rfc3339[:10]} {rfc3339[11:19]} {offset}".rstrip()
+
+
+def _interpreter(python: str) -> str:
+    return f"Python {python}" if python[:1].isdigit() else python
 
 
 def _versions(listed: tuple[tuple[str, str], ...]) -> str:
@@ -117,7 +123,7 @@ def _how_to_check(basis: Basis) -> tuple[Prose, ...]:
 
 def _attached(basis: Basis) -> list[Prose]:
     files = sorted(basis.content.attachments, key=lambda file: file.name)
-    return [
+    listed = [
         prose(
             "{name} ~({description}, {size} bytes)~",
             name=file.name,
@@ -126,6 +132,11 @@ def _attached(basis: Basis) -> list[Prose]:
         )
         for file in files
     ]
+    raw = next(item.folio_path for item in basis.content.run.inputs if item.role == "raw data")
+    if raw.rpartition("/")[2] not in {file.name for file in files}:
+        words = "The raw data are too large to attach; they stand in the folio as {path}."
+        listed.append(prose(words, path=raw))
+    return listed
 
 
 def listing_section(basis: Basis, numbering: Numbering) -> Section:
@@ -164,8 +175,8 @@ def _listing(basis: Basis, label: str, caption: Prose) -> Listing:
     whole = max(figures_width(split_at_point(text)[0], _SIZE) for text in texts)
     value_mm = (whole + max(rests)) / POINTS_PER_MM + 0.8
     line_mm = figures_width(str(max(row.line for row in rows)), _LINE_SIZE) / POINTS_PER_MM + 3.0
-    names = max(text_width(level.level, _SIZE, "semibold") for level in basis.levels) / POINTS_PER_MM + 1.0
-    level_mm = min(max(names, 14.0), 46.0)
+    names = max(text_width(f"{level.level} {_count(level.n)}", _SIZE) for level in basis.levels)
+    level_mm = min(max(names / POINTS_PER_MM + 1.0, 14.0), 50.0)
     most = max(1, int((TEXT_WIDTH_MM - level_mm) / (value_mm + line_mm + 1.2)))
     per_row = max(1, min(most, max(level.n for level in basis.levels)))
     shifts = {id(row): max(rests) - rest for row, rest in zip(rows, rests, strict=True)}
@@ -180,7 +191,7 @@ def _listing(basis: Basis, label: str, caption: Prose) -> Listing:
             listed.append(
                 ListingRow(
                     level=level.level if start == 0 else "",
-                    count=f"n = {level.n}" if start == 0 else "",
+                    count=_count(level.n) if start == 0 else "",
                     values=tuple((str(row.line), _as_typed(row), f"{shifts[id(row)]:.2f}pt") for row in part),
                     gaps=per_row - len(part),
                 )
@@ -195,6 +206,10 @@ def _listing(basis: Basis, label: str, caption: Prose) -> Listing:
         per_row=per_row,
         unbroken=len(listed) <= UNBROKEN_TO,
     )
+
+
+def _count(n: int) -> str:
+    return f"n\u00a0=\u00a0{n}"
 
 
 def _as_typed(row: Observation) -> str:

@@ -1,11 +1,15 @@
 """Section 7: how everything was computed, with formulas and references."""
 
+import re
+
 from assayfolio.report.basis import Basis
 from assayfolio.report.content import Block, Formula, Heading, Items, Paragraph, Quotient, Section
 from assayfolio.report.methods import REFERENCES, adjustment_of
 from assayfolio.report.numbering import ANCHORS, METHOD
-from assayfolio.report.prose import Prose, prose
+from assayfolio.report.prose import Prose, Span, prose
 from assayfolio.report.wording import alpha_words
+
+_PAGES = re.compile(r"(\d+–\d+)")
 
 
 def method_section(basis: Basis) -> Section:
@@ -31,7 +35,7 @@ def method_section(basis: Basis) -> Section:
         *_comparisons(basis),
         *_checks(basis),
         Heading(prose("References")),
-        Items(tuple(prose("{text}", text=REFERENCES[key]) for key in _references(basis))),
+        Items(tuple(_reference(REFERENCES[key]) for key in _references(basis))),
     ]
     return Section(ANCHORS[METHOD], METHOD, "Method", tuple(blocks))
 
@@ -45,6 +49,12 @@ def _formula(what: str, *parts: str | tuple[str, str]) -> Formula:
         else:
             laid.append((prose(part), None))
     return Formula(prose(what), tuple(laid))
+
+
+def _reference(text: str) -> Prose:
+    """A reference whose range of pages is never broken."""
+    parts = _PAGES.split(text)
+    return tuple(Span(part, "whole" if index % 2 else "") for index, part in enumerate(parts) if part)
 
 
 def _analysis() -> list[Block]:

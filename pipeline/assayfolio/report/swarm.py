@@ -21,9 +21,9 @@ def lanes(places: Sequence[float], diameter: float) -> list[int]:
     return chosen
 
 
-def offsets(places: Sequence[float], diameter: float, room: float) -> list[float]:
-    """The distance of each dot from the middle line; lanes move closer where `room` to a side is small."""
-    chosen = lanes(places, diameter)
-    reach = max((abs(lane) for lane in chosen), default=0)
+def offsets(chosen: Sequence[int], diameter: float, room: float) -> list[float]:
+    """How far above the lowest lane each dot lies; lanes move closer where they have `room` in all."""
+    lowest = min(chosen, default=0)
+    reach = max(chosen, default=0) - lowest
     spacing = min(diameter, room / reach) if reach else 0.0
-    return [lane * spacing for lane in chosen]
+    return [(lane - lowest) * spacing for lane in chosen]

@@ -10,13 +10,15 @@ from assayfolio.report.typeface import POINTS_PER_MM, figures_width, text_width
 
 TEXT_WIDTH_MM = 164.0
 _BODY = 8.4
-_HEAD = 7.6
-_GAP = 3.8
-_EASY_TEXT = 48.0
-_EASY_TEXTS = 36.0
-_LEAST_TEXT = 30.0
-_COMFORTABLE = 7.3
-_SMALLEST = 5.6
+_HEAD = 0.9  # of the size of the body
+_GAP = 3.4
+_EASY_TEXT = 34.0
+_LEAST_TEXT = 24.0
+_NARROWEST = 12.0
+_COMFORTABLE = 7.5
+_COMFORTABLE_SIZES = (8.4, 8.0, 7.6)
+_UNBROKEN_SIZES = (*_COMFORTABLE_SIZES, 7.2)
+_SMALL_SIZES = (7.2, 6.8, 6.4, 6.0, 5.6)
 _ZEBRA_FROM = 9
 UNBROKEN_TO = 12
 
@@ -108,42 +110,46 @@ def fits(columns: Sequence[Column], rows: Sequence[Sequence[Words]]) -> bool:
 
 
 def _widths(columns: Sequence[Column], rows: Sequence[Sequence[Words]]) -> tuple[float, list[float]]:
-    """The size of the type and the width of each column (gap included) in millimetres."""
-    size = _BODY
-    while True:
-        natural = [
+    """The size of the type and the width of each column (gap included) in millimetres.
+
+    First choice: no line breaks, set a little smaller if need be. Second: wrapped text. Last: ever smaller.
+    """
+    texts = [index for index, column in enumerate(columns) if column.kind == "text"]
+    unbroken = [(size, float("inf")) for size in _UNBROKEN_SIZES]
+    wrapped = [(size, _EASY_TEXT) for size in _COMFORTABLE_SIZES]
+    crowded = [(size, _LEAST_TEXT) for size in _SMALL_SIZES]
+    for size, least in (*unbroken, *wrapped, *crowded):
+        widths = [
             _natural(column, [row[index] for row in rows], size) + (_GAP if index else 0.0)
             for index, column in enumerate(columns)
         ]
-        texts = [index for index, column in enumerate(columns) if column.kind == "text"]
-        room = TEXT_WIDTH_MM - sum(width for index, width in enumerate(natural) if index not in texts)
-        wanted = sum(natural[index] for index in texts)
+        room = TEXT_WIDTH_MM - sum(width for index, width in enumerate(widths) if index not in texts)
+        wanted = sum(widths[index] for index in texts)
         if wanted <= room:
-            return size, natural
-        easy = _EASY_TEXT if len(texts) == 1 else _EASY_TEXTS * len(texts)
-        least = easy if size > _COMFORTABLE else _LEAST_TEXT * len(texts)
-        if room >= min(wanted, least) or size <= _SMALLEST:
+            return size, widths
+        if room >= least * len(texts) or (size, least) == crowded[-1]:
             for index in texts:
-                natural[index] = max(12.0, natural[index] * room / wanted)
-            return size, natural
-        size -= 0.4
+                widths[index] = max(_NARROWEST, widths[index] * room / wanted)
+            return size, widths
+    raise AssertionError("the last choice is always taken")
 
 
 def _natural(column: Column, cells: Sequence[Words], size: float) -> float:
-    head = max(_word_width(column.head, column.kind), text_width(column.unit, _HEAD))
+    head_size = size * _HEAD
+    head = max(_word_width(column.head, column.kind, head_size), text_width(column.unit, head_size))
     if column.kind == "number":
         parts = [split_at_point(plain(cell)) for cell in cells]
         whole = max((figures_width(before, size) for before, _ in parts), default=0.0)
         rest = max((figures_width(after, size) for _, after in parts), default=0.0)
         body = whole + rest
     else:
-        body = max((text_width(plain(cell), size, "semibold") for cell in cells), default=0.0)
+        body = max((text_width(plain(cell), size) for cell in cells), default=0.0)
     return (max(head, body) + 1.0) / POINTS_PER_MM
 
 
-def _word_width(head: Words, kind: Kind) -> float:
+def _word_width(head: Words, kind: Kind, size: float) -> float:
     words = plain(head).split(" ") if kind != "words" else [plain(head)]
-    return max(text_width(word, _HEAD, "semibold") for word in words)
+    return max(text_width(word, size, "semibold") for word in words)
 
 
 def _cells(column: Column, cells: Sequence[Words], size: float) -> list[Cell]:

@@ -44,7 +44,7 @@ def range_survival(r: Floats, k: int) -> tuple[Floats, Floats]:
 
 
 def range_cumulative(r: Floats, k: int) -> Floats:
-    """P(range of `k` <= `r`). Measured: 12 digits for k = 200, 14 for small k."""
+    """P(range of `k` <= `r`). Measured: 13.5 digits for k up to 5, 11.5 for k = 200."""
     near = np.minimum(r, _CUMULATIVE_TO)
     lower = (near * _cumulative_curve(k)(near)) ** (k - 1)
     factor, exponent = range_survival(r, k)

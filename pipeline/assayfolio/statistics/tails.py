@@ -5,8 +5,8 @@ Degrees of freedom are single real numbers from 1 upwards, not necessarily whole
 those of t may be infinite. `_sf` is the upper tail P(X > x) or P(X >= x), `_log10_sf` its base-10 logarithm,
 which keeps its digits where the tail is too small for a double; `_isf` is the point with upper tail p.
 
-Measured against 50-digit arithmetic (tests/generate/measure_digits.py): tails down to 1e-300 have at least
-12.5 digits right, 14 and more above 1e-30; logarithms 14; points 13.5.
+Digits were measured against 50-digit arithmetic for df up to a million (tests/generate/measure_digits.py);
+those of a logarithm are the digits of the tail that it stands for.
 Method: continued fractions behind a saddle-point factor, see `incomplete_beta`; points by Newton's method.
 All functions raise ValueError for NaN, for a negative F or chi-square, for degrees of freedom below 1, and
 for a p that is not between 0 and 1.
@@ -37,42 +37,63 @@ _DENOMINATOR: Final = "the denominator degrees of freedom"
 
 
 def f_sf(f: Values, dfn: float, dfd: float) -> Values:
-    """P(F > `f`) for F on `dfn` and `dfd` degrees of freedom; `dfd` may be infinite."""
+    """P(F > `f`) for F on `dfn` and `dfd` degrees of freedom; `dfd` may be infinite.
+
+    Measured: 13.5 digits down to 1e-30, 12.8 down to 1e-300.
+    """
     return shaped(f, _f_tails(f, dfn, dfd).survival())
 
 
 def f_log10_sf(f: Values, dfn: float, dfd: float) -> Values:
-    """The base-10 logarithm of `f_sf`, finite also where that is below the smallest double."""
+    """The base-10 logarithm of `f_sf`, finite also where that is below the smallest double.
+
+    Measured: 12.6 digits of the tail down to 1e-300; beyond, 15 of the logarithm itself.
+    """
     return shaped(f, _f_tails(f, dfn, dfd).log_survival() / _LN10)
 
 
 def f_isf(p: Values, dfn: float, dfd: float) -> Values:
-    """The point that F on `dfn` and `dfd` degrees of freedom exceeds with probability `p`."""
+    """The point that F on `dfn` and `dfd` degrees of freedom exceeds with probability `p`.
+
+    Infinite where it is beyond 1e308. Measured: 14 digits for p from 0.99 to 1e-14.
+    """
     q, half = _f_halves(dfn, dfd)
     return shaped(p, points_above(probabilities(p), q, half, RATIO))
 
 
 def t_sf(t: Values, df: float) -> Values:
-    """P(T > `t`) for Student's t on `df` degrees of freedom, any sign of `t`; `df` may be infinite."""
+    """P(T > `t`) for Student's t on `df` degrees of freedom, any sign of `t`; `df` may be infinite.
+
+    Measured: 14.0 digits down to 1e-30, 13.0 down to 1e-300.
+    """
     values = real_values(t, "t")
     beyond = 0.5 * _t_tails(np.abs(values), df).survival()
     return shaped(t, np.where(values >= 0, beyond, 1 - beyond))
 
 
 def t_log10_sf(t: Values, df: float) -> Values:
-    """The base-10 logarithm of `t_sf`, finite also where that is below the smallest double."""
+    """The base-10 logarithm of `t_sf`, finite also where that is below the smallest double.
+
+    Measured: 12.6 digits of the tail down to 1e-300; beyond, 15 of the logarithm itself.
+    """
     values = real_values(t, "t")
     log_beyond = _t_tails(np.abs(values), df).log_survival() - math.log(2)
     return shaped(t, np.where(values >= 0, log_beyond, np.log1p(-np.exp(log_beyond))) / _LN10)
 
 
 def t_two_sided(t: Values, df: float) -> Values:
-    """P(|T| > |`t`|) for Student's t on `df` degrees of freedom; `df` may be infinite."""
+    """P(|T| > |`t`|) for Student's t on `df` degrees of freedom; `df` may be infinite.
+
+    Measured: 14.0 digits down to 1e-30, 13.0 down to 1e-300.
+    """
     return shaped(t, _t_tails(np.abs(real_values(t, "t")), df).survival())
 
 
 def t_two_sided_log10(t: Values, df: float) -> Values:
-    """The base-10 logarithm of `t_two_sided`, finite also where that is below the smallest double."""
+    """The base-10 logarithm of `t_two_sided`, finite also where that is below the smallest double.
+
+    Measured: 12.6 digits of the tail down to 1e-300; beyond, 15 of the logarithm itself.
+    """
     return shaped(t, _t_tails(np.abs(real_values(t, "t")), df).log_survival() / _LN10)
 
 
@@ -80,6 +101,7 @@ def t_isf(p: Values, df: float) -> Values:
     """The point that Student's t on `df` degrees of freedom exceeds with probability `p`.
 
     For a two-sided level alpha pass alpha/2. Negative for p > 1/2, and exactly 0 for p = 1/2.
+    Measured: 14.8 digits for p from 0.99 to 1e-14.
     """
     upper = probabilities(p)
     half = _half_of_t(df)
@@ -91,17 +113,26 @@ def t_isf(p: Values, df: float) -> Values:
 
 
 def chi2_sf(x: Values, df: float) -> Values:
-    """P(X > `x`) for chi-square on `df` degrees of freedom."""
+    """P(X > `x`) for chi-square on `df` degrees of freedom.
+
+    Measured: 13.7 digits down to 1e-30, 12.9 down to 1e-300.
+    """
     return shaped(x, _chi2_tails(x, df).survival())
 
 
 def chi2_log10_sf(x: Values, df: float) -> Values:
-    """The base-10 logarithm of `chi2_sf`, finite also where that is below the smallest double."""
+    """The base-10 logarithm of `chi2_sf`, finite also where that is below the smallest double.
+
+    Measured: 12.6 digits of the tail down to 1e-300; beyond, 15 of the logarithm itself.
+    """
     return shaped(x, _chi2_tails(x, df).log_survival() / _LN10)
 
 
 def chi2_isf(p: Values, df: float) -> Values:
-    """The point that chi-square on `df` degrees of freedom exceeds with probability `p`."""
+    """The point that chi-square on `df` degrees of freedom exceeds with probability `p`.
+
+    Measured: 14 digits for p from 0.99 to 1e-14.
+    """
     df = degrees_of_freedom(df)
     return shaped(p, df * points_above(probabilities(p), df / 2, math.inf, RATIO))
 
@@ -110,6 +141,7 @@ def chi2_ppf(p: Values, df: float) -> Values:
     """The point that chi-square on `df` degrees of freedom stays below with probability `p`.
 
     As `chi2_isf` of 1 - p, without the digits that 1 - p loses where `p` is small.
+    Measured: 14 digits for p from 0.99 to 1e-14.
     """
     df = degrees_of_freedom(df)
     return shaped(p, df * points_below(probabilities(p), df / 2, math.inf, RATIO))
@@ -127,12 +159,18 @@ def normal_sf(z: Values) -> Values:
 
 
 def normal_log10_sf(z: Values) -> Values:
-    """The base-10 logarithm of `normal_sf`, finite also where that is below the smallest double."""
+    """The base-10 logarithm of `normal_sf`, finite also where that is below the smallest double.
+
+    By scipy's log_ndtr. Measured: 12 digits of the tail down to 1e-300.
+    """
     return shaped(z, log_ndtr(-real_values(z, "z")) / _LN10)
 
 
 def normal_isf(p: Values) -> Values:
-    """The point that a standard normal variable exceeds with probability `p`."""
+    """The point that a standard normal variable exceeds with probability `p`.
+
+    By scipy's ndtri. Measured: 15 digits for p from 0.99 to 1e-299.
+    """
     return shaped(p, -ndtri(probabilities(p)))
 
 

@@ -1,0 +1,201 @@
+"""How many digits the distribution functions have, measured: the table of DEVELOPERS.md.
+
+    python tests/generate/measure_digits.py
+
+Digits are -log10 of the largest relative difference on the grid that the row names. Tails are compared at the
+exact binary value of the argument; a point by how far it would have to move to have exactly the tail it was
+asked for. Takes about a minute.
+"""
+
+import itertools
+import math
+import sys
+from collections.abc import Callable, Iterable, Iterator
+from pathlib import Path
+
+import mpmath as mp
+
+sys.path.insert(0, str(Path(__file__).resolve().parents[1]))
+
+from assayfolio.statistics import tails
+from assayfolio.statistics.distributions import (
+    studentized_range_isf,
+    studentized_range_log10_sf,
+    studentized_range_sf,
+)
+from support.high_precision import (
+    chi2_below,
+    chi2_tail,
+    distance,
+    distance_by_log10,
+    f_tail,
+    normal_tail,
+    t_tail,
+)
+from support.range_by_trapezoid import studentized_range_tails
+from support.reference import cases_of
+
+Row = tuple[str, str, Iterable[float], str]
+
+DFS = (1.0, 1.5, 2.0, 5.0, 12.7, 60.0, 300.0, 5000.0, 1e6)
+NUMERATORS = (1.0, 2.0, 3.5, 8.0, 40.0, 1000.0)
+SHARES = (0.98, 0.7, 0.3, 0.05, 1e-3, 1e-8, 1e-15, 1e-29)
+SMALL = (1e-31, 1e-60, 1e-120, 1e-200, 1e-299)
+LEVELS = (0.99, 0.7, 0.3, 0.05, 0.005, 1e-6, 1e-14)
+
+
+def f_errors(
+    shares: Iterable[float], measure: Callable[[float, mp.mpf], float], name: str
+) -> Iterator[float]:
+    """Over all degrees of freedom, at points with about these tails."""
+    for share, dfn, dfd in itertools.product(shares, NUMERATORS, DFS):
+        f = tails.f_isf(share, dfn, dfd)
+        if math.isfinite(f):
+            yield measure(getattr(tails, name)(f, dfn, dfd), f_tail(f, dfn, dfd))
+
+
+def t_errors(
+    shares: Iterable[float], measure: Callable[[float, mp.mpf], float], name: str
+) -> Iterator[float]:
+    """Over all degrees of freedom, infinity included, at points with about these tails."""
+    for share, df in itertools.product(shares, (*DFS, math.inf)):
+        t = tails.t_isf(share, df)
+        yield measure(getattr(tails, name)(t, df), t_tail(t, df))
+
+
+def chi2_errors(shares: Iterable[float]) -> Iterator[float]:
+    """Over all degrees of freedom, at points with about these tails."""
+    for share, df in itertools.product(shares, DFS):
+        x = tails.chi2_isf(share, df)
+        yield distance(tails.chi2_sf(x, df), chi2_tail(x, df))
+
+
+def point_error(point: float, level: float, tail: Callable[[float], mp.mpf]) -> float:
+    """By what share of itself `point` misses the place where `tail` is `level`."""
+    with mp.workdps(40):
+        at, beyond = tail(point), tail(point * (1 + 1e-6))
+        slope = (beyond - at) / (mp.mpf(point * (1 + 1e-6)) / mp.mpf(point) - 1)
+        return float(abs((at - mp.mpf(level)) / slope))
+
+
+def f_point_errors() -> Iterator[float]:
+    """Of `f_isf`."""
+    for level, dfn, dfd in itertools.product(LEVELS, NUMERATORS, DFS):
+        yield point_error(tails.f_isf(level, dfn, dfd), level, lambda f, n=dfn, d=dfd: f_tail(f, n, d))
+
+
+def t_point_errors() -> Iterator[float]:
+    """Of `t_isf`."""
+    for level, df in itertools.product(LEVELS, (*DFS, math.inf)):
+        yield point_error(tails.t_isf(level, df), level, lambda t, d=df: t_tail(t, d))
+
+
+def chi2_point_errors() -> Iterator[float]:
+    """Of `chi2_isf` and `chi2_ppf`."""
+    for level, df in itertools.product(LEVELS, DFS):
+        yield point_error(tails.chi2_isf(level, df), level, lambda x, d=df: chi2_tail(x, d))
+        yield point_error(tails.chi2_ppf(level, df), level, lambda x, d=df: chi2_below(x, d))
+
+
+def normal_errors() -> Iterator[float]:
+    """Of `normal_sf`, by steps of 0.37 up to 37."""
+    for step in range(-100, 101):
+        yield distance(tails.normal_sf(0.37 * step), normal_tail(0.37 * step))
+
+
+def normal_point_errors() -> Iterator[float]:
+    """Of `normal_isf`."""
+    for level in (*LEVELS, *SMALL):
+        yield point_error(tails.normal_isf(level), level, normal_tail)
+
+
+def reference_tail_errors() -> Iterator[float]:
+    """Of `studentized_range_sf` against the reference vectors."""
+    for case in cases_of("studentized_range").values():
+        inputs = case["inputs"]
+        if "q" in inputs:
+            tail = studentized_range_sf(float(inputs["q"]), inputs["k"], float(inputs["df"]))
+            yield distance(tail, mp.mpf(case["expected"]["sf"]))
+
+
+def reference_point_errors() -> Iterator[float]:
+    """Of `studentized_range_isf` against the reference vectors."""
+    for case in cases_of("studentized_range").values():
+        inputs = case["inputs"]
+        if "upper_tail" in inputs:
+            point = studentized_range_isf(float(inputs["upper_tail"]), inputs["k"], float(inputs["df"]))
+            yield distance(point, mp.mpf(case["expected"]["q"]))
+
+
+def pair_errors(shares: Iterable[float]) -> Iterator[float]:
+    """Of `studentized_range_log10_sf` for two means, which is Student's t."""
+    for share, df in itertools.product(shares, (*DFS, math.inf)):
+        t = tails.t_isf(share / 2, df)
+        q = t * math.sqrt(2)
+        with mp.workdps(40):
+            truth = 2 * t_tail(mp.mpf(q) / mp.sqrt(2), df)
+        yield distance_by_log10(studentized_range_log10_sf(q, 2, df), truth)
+
+
+def trapezoid_errors(levels: Iterable[float]) -> Iterator[float]:
+    """Of `studentized_range_sf` against the nested trapezoidal rule."""
+    for level, k, df in itertools.product(
+        levels, (3, 10, 50, 200), (2.0, 6.3, 20.0, 120.0, 1e4, 1e6, math.inf)
+    ):
+        q = studentized_range_isf(level, k, df)
+        upper, lower = studentized_range_tails(q, k, df)
+        tail = studentized_range_sf(q, k, df)
+        yield max(abs(tail / upper - 1), abs((1 - tail) - lower))
+
+
+def rows() -> Iterator[Row]:
+    """The table."""
+    library, plain = "mpmath, 50 digits", "nested trapezoidal rule, doubles"
+    vectors = "tests/vectors/studentized_range.json, 18 digits and more"
+    df = "df 1 to 1e6"
+    yield "f_sf", f"p >= 1e-30, {df}", f_errors(SHARES, distance, "f_sf"), library
+    yield "f_sf", f"1e-30 > p >= 1e-300, {df}", f_errors(SMALL, distance, "f_sf"), library
+    yield (
+        "f_log10_sf, as a tail",
+        f"p >= 1e-300, {df}",
+        f_errors((*SHARES, *SMALL), distance_by_log10, "f_log10_sf"),
+        library,
+    )
+    yield "f_isf", f"p 0.99 to 1e-14, {df}", f_point_errors(), library
+    yield "t_sf", f"p >= 1e-30, {df} and infinite", t_errors(SHARES, distance, "t_sf"), library
+    yield "t_sf", f"1e-30 > p >= 1e-300, {df} and infinite", t_errors(SMALL, distance, "t_sf"), library
+    yield "t_isf", f"p 0.99 to 1e-14, {df} and infinite", t_point_errors(), library
+    yield "chi2_sf", f"p >= 1e-30, {df}", chi2_errors(SHARES), library
+    yield "chi2_sf", f"1e-30 > p >= 1e-300, {df}", chi2_errors(SMALL), library
+    yield "chi2_isf, chi2_ppf", f"p 0.99 to 1e-14, {df}", chi2_point_errors(), library
+    yield "normal_sf", "z from -37 to 37", normal_errors(), library
+    yield "normal_isf", "p 0.99 to 1e-299", normal_point_errors(), library
+    yield "studentized_range_sf", "15 cases, p down to 2e-20", reference_tail_errors(), vectors
+    yield "studentized_range_isf", "13 cases, p 0.999 to 1e-10", reference_point_errors(), vectors
+    yield (
+        "studentized_range_sf",
+        "k 3 to 200, df 2 to 1e6 and infinite, p 0.99 to 1e-14",
+        trapezoid_errors((0.99, 0.5, 0.05, 1e-4, 1e-9, 1e-14)),
+        plain,
+    )
+    yield (
+        "studentized_range_log10_sf, as a tail",
+        f"k = 2, p >= 1e-30, {df} and infinite",
+        pair_errors(SHARES),
+        library,
+    )
+    yield "studentized_range_log10_sf, as a tail", "k = 2, 1e-30 > p >= 1e-299", pair_errors(SMALL), library
+
+
+def main() -> None:
+    """Print the table."""
+    print("| function | range | digits | against |")
+    print("|---|---|---|---|")
+    for name, where, errors, against in rows():
+        worst = max(errors)
+        digits = 16.0 if worst < 1e-16 else -math.log10(worst)
+        print(f"| {name} | {where} | {digits:.1f} | {against} |", flush=True)
+
+
+if __name__ == "__main__":
+    main()
