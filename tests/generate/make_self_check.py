@@ -83,7 +83,7 @@ def function_cases() -> list[dict[str, object]]:
 def far_tail() -> dict[str, object]:
     """The logarithm of an F tail that is far below the range of doubles, by mpmath with 40 digits."""
     with mpmath.workdps(40):
-        f, df1, df2 = 9, 18000, 200
+        f, df1, df2 = 14, 200, 18000
         beyond = mpmath.mpf(df2) / (df2 + df1 * f)
         tail = mpmath.betainc(mpmath.mpf(df2) / 2, mpmath.mpf(df1) / 2, 0, beyond, regularized=True)
         value = mpmath.nstr(mpmath.log10(tail), 20)

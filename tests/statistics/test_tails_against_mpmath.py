@@ -141,7 +141,9 @@ def test_chi_square_points_on_both_sides_have_their_tails(p: float, df: float) -
     assert chi2_below(lower * (1 - 1e-12), df) < p < chi2_below(lower * (1 + 1e-12), df)
 
 
-@pytest.mark.parametrize("z", [-38.0, -3.0, -1e-8, 0.0, 0.3, 1.96, 5.0, 12.3456, 27.7, 33.337, 35.123, 36.71, 37.0])
+@pytest.mark.parametrize(
+    "z", [-38.0, -3.0, -1e-8, 0.0, 0.3, 1.96, 5.0, 12.3456, 27.7, 33.337, 35.123, 36.71, 37.0]
+)
 def test_a_normal_tail_has_fourteen_digits(z: float) -> None:
     assert distance(normal_sf(z), normal_tail(z)) < 1e-14
     assert distance_by_log10(normal_log10_sf(z), normal_tail(z)) < 1e-12

@@ -24,21 +24,21 @@ ADJUSTMENTS: dict[str, Adjustment] = {
         "no adjustment",
         "individual",
         "No adjustment: each comparison has the level *α* by itself, and the interval uses "
-        "*c* = *t*_1−*α*/2; *N*−*k*_.",
+        "*c* = *t*_1−*α*/2;\u00a0*N*−*k*_.",
         (),
     ),
     "bonferroni": Adjustment(
         "Bonferroni",
         "simultaneous",
         "Bonferroni: adjusted *p* is the smaller of 1 and *m* × *p* for a family of *m* comparisons; the "
-        "interval uses *c* = *t*_1−*α*/(2*m*); *N*−*k*_.",
+        "interval uses *c* = *t*_1−*α*/(2*m*);\u00a0*N*−*k*_.",
         ("dunn",),
     ),
     "sidak": Adjustment(
         "Šidák",
         "simultaneous",
         "Šidák: adjusted *p* is 1 − (1 − *p*)^*m*^ for a family of *m* comparisons; the interval uses "
-        "*c* = *t*_1−*α*′/2; *N*−*k*_ with *α*′ = 1 − (1 − *α*)^1/*m*^.",
+        "*c* = *t*_1−*α*′/2;\u00a0*N*−*k*_ with *α*′ = 1 − (1 − *α*)^1/*m*^.",
         ("sidak",),
     ),
     "holm": Adjustment(
@@ -53,8 +53,8 @@ ADJUSTMENTS: dict[str, Adjustment] = {
         "Tukey–Kramer",
         "simultaneous",
         "Tukey–Kramer: adjusted *p* = P(*Q* ≥ √2 |*t*|) for the studentised range *Q* of *k* means with *N* "
-        "− *k* degrees of freedom; the interval uses *c* = *q*_1−*α*; *k*, *N*−*k*_ / √2. With unequal *n* "
-        "the method keeps its level and is somewhat conservative.",
+        "− *k* degrees of freedom; the interval uses *c* = *q*_1−*α*;\u00a0*k*,\u00a0*N*−*k*_ / √2. With "
+        "unequal *n* the method keeps its level and is somewhat conservative.",
         ("tukey", "kramer", "hayter"),
     ),
 }

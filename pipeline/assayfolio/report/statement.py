@@ -5,11 +5,12 @@ import re
 from assayfolio.report.basis import Basis
 from assayfolio.report.content import Block, Formula, Heading, Items, Paragraph, Quotient, Section
 from assayfolio.report.methods import REFERENCES, adjustment_of
+from assayfolio.report.notation import NO_BREAK
 from assayfolio.report.numbering import ANCHORS, METHOD
 from assayfolio.report.prose import Prose, Span, prose
 from assayfolio.report.wording import alpha_words
 
-_PAGES = re.compile(r"(\d+–\d+)")
+_INITIAL = re.compile(r"(?<=\b[A-ZŠ]\.) ")
 
 
 def method_section(basis: Basis) -> Section:
@@ -52,9 +53,8 @@ def _formula(what: str, *parts: str | tuple[str, str]) -> Formula:
 
 
 def _reference(text: str) -> Prose:
-    """A reference whose range of pages is never broken."""
-    parts = _PAGES.split(text)
-    return tuple(Span(part, "whole" if index % 2 else "") for index, part in enumerate(parts) if part)
+    """A reference in which a name's initials are never broken."""
+    return (Span(_INITIAL.sub(NO_BREAK, text)),)
 
 
 def _analysis() -> list[Block]:

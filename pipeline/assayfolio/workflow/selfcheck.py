@@ -50,7 +50,7 @@ def self_check() -> str:
     return (
         f"{values} certified values of {len(references['one_way'])} NIST StRD data sets reproduced to every "
         f"printed digit, {len(references['functions'])} reference values of distribution functions to 1 part "
-        "in 10^10"
+        "in 10¹⁰"
     )
 
 
