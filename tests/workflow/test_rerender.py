@@ -33,7 +33,7 @@ def folio(tmp_path_factory):
 
 def rerender(folio, output, **changes):
     return subprocess.run(
-        [sys.executable, "-m", "assayfolio.workflow.rerender", folio, output],
+        [sys.executable, "-m", "assayfolio.cli.rerender", folio, output],
         env={**os.environ, **changes},
         cwd=output.parent,
         capture_output=True,

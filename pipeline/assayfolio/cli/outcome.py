@@ -30,14 +30,14 @@ def complain(text: str) -> None:
     click.echo(printable(text), err=True)
 
 
-def run_command(command: click.Command, arguments: Sequence[str] | None) -> int:
+def run_command(command: click.Command, arguments: Sequence[str] | None, name: str = "assayfolio") -> int:
     """Run `command`; turn every error into words on standard error; return the exit code."""
     for stream in (sys.stdout, sys.stderr):
         reconfigure = getattr(stream, "reconfigure", None)
         if reconfigure is not None:
             reconfigure(errors="backslashreplace")
     try:
-        answer = command.main(args=arguments, prog_name="assayfolio", standalone_mode=False)
+        answer = command.main(args=arguments, prog_name=name, standalone_mode=False)
         sys.stdout.flush()
     except click.ClickException as error:
         error.show()

@@ -1,18 +1,15 @@
 """Rendering a report again from its folio alone: the same bytes, on any machine with the same renderer.
 
-    python -m assayfolio.workflow.rerender FOLIO OUTPUT.pdf
-
 The folio's own study definition, raw data, settings and records are read, the findings computed again and
 compared with the archived ones, and the report rendered. The folio is not touched.
 """
 
 import json
-import sys
 from pathlib import Path
 from typing import Any
 
 from assayfolio.canonical import sha256_hex
-from assayfolio.errors import AssayfolioError, Fault, InputError, MachineError, Place
+from assayfolio.errors import Fault, InputError, MachineError, Place
 from assayfolio.evaluation import evaluate
 from assayfolio.findings import findings_bytes
 from assayfolio.report.render import RenderedReport, render_report
@@ -50,19 +47,3 @@ def _record(folio: Path, name: str) -> dict[str, Any]:
     if not isinstance(loaded, dict):
         raise InputError(f"{path} is not a record.")
     return loaded
-
-
-def main() -> None:
-    """Render the report of the folio named on the command line into the file named after it."""
-    if len(sys.argv) != 3:
-        sys.exit("usage: python -m assayfolio.workflow.rerender FOLIO OUTPUT.pdf")
-    try:
-        report = rerender(Path(sys.argv[1]))
-    except AssayfolioError as error:
-        sys.stderr.write(f"{error}\n")
-        sys.exit(int(error.exit_code))
-    Path(sys.argv[2]).write_bytes(report.pdf)
-
-
-if __name__ == "__main__":
-    main()
