@@ -10,4 +10,9 @@ checkout=$(CDPATH='' cd -- "$(dirname -- "$0")/.." && pwd -P)
 . "$checkout/pipeline/setup.sh"
 
 prepare .venv pipeline/assayfolio/requirements.lock
+case $0 in
+    *[!A-Za-z0-9_./-]*) ASSAYFOLIO_CALLED_AS="sh '$0'" ;;
+    *) ASSAYFOLIO_CALLED_AS="sh $0" ;;
+esac
+export ASSAYFOLIO_CALLED_AS
 exec "$environment/bin/assayfolio" "$@"

@@ -25,12 +25,6 @@ settings.register_profile(
 )
 settings.load_profile("assayfolio")
 
-_not_run = pytest.StashKey[dict[str, str]]()
-
-
-def pytest_configure(config: pytest.Config) -> None:
-    config.stash[_not_run] = {}
-
 
 def lacking(tool: str) -> str:
     """What this machine lacks for a tool named in a `needs` mark; empty if nothing."""
@@ -57,39 +51,37 @@ def _words(longrepr: object) -> str:
     return str(reason).removeprefix("Skipped: ")
 
 
-def _count(config: pytest.Config, report: pytest.TestReport | pytest.CollectReport) -> None:
-    """Keep the name of what was skipped; in continuous integration, turn the skip into a failure."""
-    if report.outcome != "skipped" or hasattr(report, "wasxfail"):
-        return
-    reason = _words(report.longrepr)
-    config.stash[_not_run][report.nodeid] = reason
-    if IN_CI:
+def _fail_in_ci(report: pytest.TestReport | pytest.CollectReport) -> None:
+    """In continuous integration, turn a skip into a failure."""
+    if IN_CI and report.outcome == "skipped" and not hasattr(report, "wasxfail"):
         report.outcome = "failed"
+        reason = _words(report.longrepr)
         report.longrepr = f"Not run: {reason}. In continuous integration every test has to run."
 
 
 @pytest.hookimpl(wrapper=True)
-def pytest_runtest_makereport(item: pytest.Item) -> Iterator[None]:
+def pytest_runtest_makereport() -> Iterator[None]:
     report = yield
-    _count(item.config, report)
+    _fail_in_ci(report)
     return report
 
 
 @pytest.hookimpl(wrapper=True)
-def pytest_make_collect_report(collector: pytest.Collector) -> Iterator[None]:
+def pytest_make_collect_report() -> Iterator[None]:
     report = yield
-    _count(collector.config, report)
+    _fail_in_ci(report)
     return report
 
 
-def pytest_terminal_summary(terminalreporter: pytest.TerminalReporter, config: pytest.Config) -> None:
-    """Name every test that did not run, last of all before the closing line."""
-    not_run = config.stash[_not_run]
+def pytest_terminal_summary(terminalreporter: pytest.TerminalReporter) -> None:
+    """Name every test or file that did not run, last of all before the closing line."""
+    skipped = terminalreporter.stats.get("skipped", [])
+    not_run = sorted({f"{report.nodeid}: {_words(report.longrepr)}" for report in skipped})
     if not not_run:
         return
     terminalreporter.section(f"{len(not_run)} NOT RUN", sep="!", red=True, bold=True)
-    for name, reason in not_run.items():
-        terminalreporter.line(f"{name}: {reason}", red=True)
+    for line in not_run:
+        terminalreporter.line(line, red=True)
     terminalreporter.line("Continuous integration counts each of these as a failure.")
 
 

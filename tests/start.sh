@@ -52,4 +52,6 @@ while [ "$remaining" -gt 0 ]; do
     remaining=$((remaining - 1))
 done
 cd "$checkout"
+# The whole suite takes one process a core; whoever asks for a part of it may want to look over its shoulder.
+[ $# -gt 0 ] || set -- --numprocesses auto --dist loadfile --benchmark-disable
 exec "$environment/bin/pytest" --cov --cov-report=term "$@"

@@ -34,10 +34,12 @@ def small_suite(checkout, tmp_path):
     return tmp_path
 
 
-def run_suite(folder, *, path: str | None = None, **environment: str) -> subprocess.CompletedProcess[str]:
+def run_suite(
+    folder, *options, path: str | None = None, **environment: str
+) -> subprocess.CompletedProcess[str]:
     inherited = {name: value for name, value in os.environ.items() if name != "CI"}
     return subprocess.run(
-        [sys.executable, "-m", "pytest", "-p", "no:cacheprovider", "--color=no", folder],
+        [sys.executable, "-m", "pytest", "-p", "no:cacheprovider", "--color=no", *options, folder],
         cwd=folder,
         env=inherited | ({} if path is None else {"PATH": path}) | environment,
         capture_output=True,
@@ -46,8 +48,12 @@ def run_suite(folder, *, path: str | None = None, **environment: str) -> subproc
     )
 
 
-def test_a_skipped_test_is_named_with_its_reason(small_suite):
-    outcome = run_suite(small_suite)
+IN_ONE_PROCESS, IN_TWO = (), ("--numprocesses=2", "--benchmark-disable")
+
+
+@pytest.mark.parametrize("options", [IN_ONE_PROCESS, IN_TWO])
+def test_a_skipped_test_is_named_with_its_reason(small_suite, options):
+    outcome = run_suite(small_suite, *options)
     assert outcome.returncode == 0
     assert "NOT RUN" in outcome.stdout
     assert "test_small.py::test_left_out: left out by hand" in outcome.stdout
@@ -60,16 +66,18 @@ def test_a_missing_program_is_named(small_suite):
     assert "test_small.py::test_with_a_program: this machine lacks the program qpdf" in outcome.stdout
 
 
-def test_in_continuous_integration_a_skipped_test_fails(small_suite):
-    outcome = run_suite(small_suite, path="/nowhere", CI="true")
+@pytest.mark.parametrize("options", [IN_ONE_PROCESS, IN_TWO])
+def test_in_continuous_integration_a_skipped_test_fails(small_suite, options):
+    outcome = run_suite(small_suite, *options, path="/nowhere", CI="true")
     assert outcome.returncode == 1
     assert "Not run: left out by hand. In continuous integration every test has to run." in outcome.stdout
     assert "1 passed, 2 errors" in outcome.stdout
 
 
-def test_in_continuous_integration_a_skipped_file_fails(small_suite):
+@pytest.mark.parametrize("options", [IN_ONE_PROCESS, IN_TWO])
+def test_in_continuous_integration_a_skipped_file_fails(small_suite, options):
     (small_suite / "test_small.py").write_text(WHOLE_FILE)
-    outcome = run_suite(small_suite, CI="true")
+    outcome = run_suite(small_suite, *options, CI="true")
     assert outcome.returncode != 0
     assert "Not run: could not import 'surely_not_a_module'" in outcome.stdout
 

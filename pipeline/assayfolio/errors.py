@@ -100,6 +100,12 @@ class RenderingError(MachineError):
     """The report could not be set exactly as written, so none is issued."""
 
 
+class ChangedError(AssayfolioError):
+    """Something that was sealed or archived is not as it was."""
+
+    exit_code = ExitCode.FINDING
+
+
 class BusyError(AssayfolioError):
     """Another writer holds the workspace."""
 

@@ -86,7 +86,9 @@ def _why_not(text: str, decimal_mark: str) -> str:
         return "not a number"
     if text[0] in "<>\u2264\u2265":
         return "a value reported against a limit"
-    if decimal_mark == "," and "." in text:
+    if "." in text and "," in text:
+        return "not a number: it holds both a point and a comma"
+    if decimal_mark == "," and _NUMBER.match(text):
         return "a decimal point where a decimal comma is declared"
     for character, name in _LOOKALIKES.items():
         if character in text:

@@ -69,6 +69,11 @@ def test_a_founded_workspace_runs_its_first_study(tmp_path):
     founded = command("workspace", root)
     assert founded.code == 0
     assert command("workspace", root).code == 2
+    unnamed = command("run", root / "configs/first-study.yaml")
+    assert unnamed.code == 2
+    assert "put your laboratory's name there" in unnamed.err
+    settings = root / "configs/lab.yaml"
+    settings.write_text(settings.read_text().replace("Name of your laboratory", "Invented laboratory"))
     assert command("check", root / "configs/first-study.yaml").code == 0
     assert command("run", root / "configs/first-study.yaml").code == 0
     assert command("verify", "--workspace", root).code == 0
@@ -137,3 +142,35 @@ def test_control_characters_do_not_reach_the_terminal(tmp_path):
     answer = command("run", tmp_path / "a\x1b[31m.yaml")
     assert answer.code == 2
     assert "\x1b" not in answer.err
+
+
+def test_a_program_gets_the_faults_as_json(tmp_path):
+    bench = Bench(tmp_path / "w", data="method,sulfate\ngravimetric,x\n")
+    for name in ("check", "run"):
+        answer = bench(name, bench.study, "--json")
+        assert answer.code == 2
+        assert answer.document["exit_code"] == 2
+        assert answer.document["faults"][0]["file"] == "configs/data/values.csv"
+        assert answer.document["faults"][0]["line"] == 2
+
+
+def test_a_reader_that_goes_away_is_no_finding(tmp_path):
+    bench = Bench(tmp_path / "w")
+    bench.run()
+    ended = subprocess.run(
+        f"{sys.executable} -m assayfolio trail --workspace '{bench.root}' --json > /dev/full",
+        shell=True,
+        capture_output=True,
+        text=True,
+        check=False,
+    )
+    assert ended.returncode == 3
+    assert "Traceback" not in ended.stderr
+
+
+def test_a_misspelt_data_file_is_hinted_at(tmp_path):
+    bench = Bench(tmp_path / "w", data=None)
+    (bench.data.parent / "value.csv").write_text("")
+    answer = bench("check", bench.study)
+    assert answer.code == 0
+    assert "value.csv" in answer.out

@@ -102,7 +102,7 @@ class TestParsing:
             ("<0.05", "a value reported against a limit"),
             ("\u22640.05", "a value reported against a limit"),
             ("1,5", "not a number: it holds a comma"),
-            ("1,234.5", "not a number: it holds a comma"),
+            ("1,234.5", "not a number: it holds both a point and a comma"),
             ("1 000", "not a number: it holds a space"),
             ("1'000", "not a number: it holds an apostrophe"),
             ("1\u202f000", "not a number: it holds a narrow no-break space"),
@@ -135,7 +135,7 @@ class TestParsing:
         ("text", "reason"),
         [
             ("1.5", "a decimal point where a decimal comma is declared"),
-            ("1.234,5", "a decimal point where a decimal comma is declared"),
+            ("1.234,5", "not a number: it holds both a point and a comma"),
             ("<0.05", "a value reported against a limit"),
             ("<0,05", "a value reported against a limit"),
             ("1,2,3", "not a number"),

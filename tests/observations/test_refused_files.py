@@ -42,8 +42,8 @@ NUMBERS = [
         "column `nitrate` holds `lost`: not a number",
         "such as 12.50",
     ),
-    Bad("a blank value", with_row("kit-a,"), ":3:7", "column `nitrate` is blank", "give the value"),
-    Bad("only blanks", with_row("kit-a,   "), ":3:7", "column `nitrate` is blank", "give the value"),
+    Bad("a blank value", with_row("kit-a,"), ":3:7", "column `nitrate` is blank", "keep the original"),
+    Bad("only blanks", with_row("kit-a,   "), ":3:7", "column `nitrate` is blank", "keep the original"),
     Bad("NaN", with_row("kit-a,NaN"), ":3:7", "holds `NaN`: not a number", "plain number"),
     Bad("infinity", with_row("kit-a,-inf"), ":3:7", "holds `-inf`: not a number", "plain number"),
     Bad("n/a", with_row("kit-a,N/A"), ":3:7", "holds `N/A`: not a number", "plain number"),
@@ -52,10 +52,14 @@ NUMBERS = [
         with_row("kit-a,<0.05"),
         ":3:7",
         "`<0.05`: a value reported against a limit",
-        "measured",
+        "keep the original",
     ),
     Bad(
-        "above a limit", with_row("kit-a,>99"), ":3:7", "`>99`: a value reported against a limit", "measured"
+        "above a limit",
+        with_row("kit-a,>99"),
+        ":3:7",
+        "`>99`: a value reported against a limit",
+        "keep the original",
     ),
     Bad(
         "39 digits", with_row("kit-a,1." + "2" * 38), ":3:7", "more than 38 digits (39)", "as it was recorded"

@@ -59,9 +59,42 @@ def test_altered_data_are_not_rendered(folio, tmp_path):
     data.chmod(0o644)
     data.write_text(data.read_text().replace("48.2", "48.3"))
     answer = rerender(copy, tmp_path / "again.pdf")
-    assert answer.returncode == 3
-    assert "differ" in answer.stderr
+    assert answer.returncode == 1
+    assert "data/inputs/values.csv" in answer.stderr
     assert not (tmp_path / "again.pdf").exists()
+
+
+def test_an_altered_laboratory_is_not_rendered(folio, tmp_path):
+    copy = tmp_path / "copy"
+    shutil.copytree(folio, copy)
+    settings = copy / "data/context/lab.yaml"
+    settings.chmod(0o644)
+    settings.write_text("laboratory: Another laboratory\n")
+    answer = rerender(copy, tmp_path / "again.pdf")
+    assert answer.returncode == 1
+    assert "data/context/lab.yaml" in answer.stderr
+    assert not (tmp_path / "again.pdf").exists()
+
+
+def test_neither_the_folio_nor_a_file_that_is_there_is_written_over(folio, tmp_path):
+    there = tmp_path / "there.pdf"
+    there.write_text("mine")
+    for output in (
+        folio / "data/report.pdf",
+        folio / "again.pdf",
+        there,
+        tmp_path / "no-such-folder/again.pdf",
+    ):
+        before = output.read_bytes() if output.exists() else None
+        answer = subprocess.run(
+            [sys.executable, "-m", "assayfolio.cli.rerender", folio, output],
+            capture_output=True,
+            text=True,
+            check=False,
+        )
+        assert answer.returncode == 2
+        assert "Traceback" not in answer.stderr
+        assert (output.read_bytes() if output.exists() else None) == before
 
 
 def test_a_folder_that_is_no_folio_is_refused_in_words(tmp_path):

@@ -194,3 +194,61 @@ def test_a_failure_while_staging_leaves_no_digest_of_a_report_that_is_not_there(
     assert record["outcome"] == "failed"
     assert "report_sha256" not in record
     assert bench("verify").code == 0
+
+
+def test_a_run_that_is_stopped_seals_its_folio_and_says_where(tmp_path, monkeypatch):
+    def stop(*_):
+        raise KeyboardInterrupt
+
+    bench = Bench(tmp_path / "w")
+    monkeypatch.setattr(workflow_run, "evaluate", stop)
+    answer = bench("run", bench.study)
+    assert answer.code == 3
+    assert "Stopped by the person" in answer.err
+    assert "run-0001" in answer.err
+    assert bench("verify").code == 0
+
+
+def test_a_folder_that_may_not_be_written_to_is_left_as_it_is(tmp_path, monkeypatch):
+    from assayfolio.evidence import locks
+
+    bench = Bench(tmp_path / "w")
+    bench.run()
+    before = {path: path.read_bytes() for path in bench.runs.rglob("*") if path.is_file()}
+    monkeypatch.setattr(locks.os, "access", lambda path, mode, **_: path != bench.runs)
+    answer = bench("run", bench.study)
+    assert answer.code == 3
+    assert "may not write" in answer.err
+    assert {path: path.read_bytes() for path in bench.runs.rglob("*") if path.is_file()} == before
+
+
+def test_an_unreadable_data_file_is_the_machines_fault_and_is_recorded(tmp_path, monkeypatch):
+    from assayfolio.workflow import workspace
+
+    real = workspace.Path.read_bytes
+
+    def refuse(path):
+        if path.name == "values.csv":
+            raise PermissionError(13, "Permission denied")
+        return real(path)
+
+    bench = Bench(tmp_path / "w")
+    monkeypatch.setattr(workspace.Path, "read_bytes", refuse)
+    answer = bench("run", bench.study)
+    assert answer.code == 3
+    assert bench.entries()[-1]["action"] == "refused"
+
+
+def test_a_report_without_planned_signatures_says_so(tmp_path):
+    bench = Bench(tmp_path / "w", STUDY[: STUDY.index("sign-off")])
+    answer = bench("run", bench.study)
+    assert answer.code == 0
+    assert "No signatures are planned" in answer.out
+
+
+def test_what_is_said_at_the_end_names_the_folio_as_the_person_can_reach_it(tmp_path, monkeypatch):
+    bench = Bench(tmp_path / "my lab")
+    answer = bench("run", bench.study)
+    assert f"verify '{bench.runs / 'TST-1/run-0001'}'" in answer.out
+    monkeypatch.chdir(bench.root)
+    assert "verify runs/TST-1/run-0002" in bench("run", bench.study).out

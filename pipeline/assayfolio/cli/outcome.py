@@ -1,5 +1,7 @@
 """The one funnel from errors to words and exit codes."""
 
+import json
+import os
 import sys
 import traceback
 import unicodedata
@@ -7,7 +9,7 @@ from collections.abc import Sequence
 
 import click
 
-from assayfolio.errors import AssayfolioError, ExitCode
+from assayfolio.errors import AssayfolioError, ExitCode, InputError
 
 
 def printable(text: str) -> str:
@@ -20,6 +22,11 @@ def printable(text: str) -> str:
     )
 
 
+def called_as() -> str:
+    """How the person calls this program: the start script says so, otherwise its own name."""
+    return os.environ.get("ASSAYFOLIO_CALLED_AS", "assayfolio")
+
+
 def say(text: str) -> None:
     """One piece of text on standard output."""
     click.echo(printable(text))
@@ -30,8 +37,28 @@ def complain(text: str) -> None:
     click.echo(printable(text), err=True)
 
 
+def _error_document(error: AssayfolioError) -> dict[str, object]:
+    faults = error.faults if isinstance(error, InputError) else ()
+    return {
+        "exit_code": int(error.exit_code),
+        "error": error.headline if isinstance(error, InputError) else str(error),
+        "faults": [
+            {
+                "file": fault.place.file,
+                "line": fault.place.line,
+                "column": fault.place.column,
+                "found": fault.found,
+                "advice": fault.advice,
+            }
+            for fault in faults
+        ],
+        "more_faults": error.hidden if isinstance(error, InputError) else 0,
+    }
+
+
 def run_command(command: click.Command, arguments: Sequence[str] | None, name: str = "assayfolio") -> int:
     """Run `command`; turn every error into words on standard error; return the exit code."""
+    wants_json = "--json" in (sys.argv[1:] if arguments is None else arguments)
     for stream in (sys.stdout, sys.stderr):
         reconfigure = getattr(stream, "reconfigure", None)
         if reconfigure is not None:
@@ -44,7 +71,11 @@ def run_command(command: click.Command, arguments: Sequence[str] | None, name: s
         return int(ExitCode.INPUT)
     except AssayfolioError as error:
         complain(str(error))
+        if wants_json:
+            say(json.dumps(_error_document(error), ensure_ascii=False, indent=1))
         return int(error.exit_code)
+    except SystemExit:  # the library's answer to a reader of our output that has gone
+        return int(ExitCode.MACHINE)
     except (click.Abort, KeyboardInterrupt):
         complain("Stopped by the person who started it.")
         return int(ExitCode.MACHINE)

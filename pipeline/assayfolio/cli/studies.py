@@ -1,12 +1,14 @@
 """Commands about studies: found a workspace, check a study, run it."""
 
 import json
+import shlex
+from contextlib import suppress
 from pathlib import Path
 
 import click
 
 from assayfolio.cli.options import json_option, study_argument, workspace_option
-from assayfolio.cli.outcome import complain, say
+from assayfolio.cli.outcome import called_as, complain, say
 from assayfolio.workflow.steps import Step
 
 
@@ -24,8 +26,8 @@ def workspace(folder: Path) -> None:
     for name in STARTER_FILES:
         say(f"  {name}")
     say("  runs/audit-trail.jsonl")
-    say(f"Next: put your laboratory's name into {SETTINGS}, then")
-    say(f"  assayfolio run {founded.root / 'configs/first-study.yaml'}")
+    say(f"Next: put your laboratory's name into {founded.root / SETTINGS}, then")
+    say(f"  {called_as()} run {shlex.quote(str(founded.root / 'configs/first-study.yaml'))}")
 
 
 @click.command(epilog="\b\nExample:\n  assayfolio check configs/whey-moisture.yaml")
@@ -67,12 +69,13 @@ def run(study: Path, named_workspace: Path | None, as_json: bool) -> None:
     if as_json:
         say(json.dumps(outcome_document(place, outcome), ensure_ascii=False, indent=1))
     else:
-        for line in outcome_lines(place, outcome):
+        for line in outcome_lines(outcome, Path.cwd(), called_as()):
             say(line)
 
 
 def _say_step(step: Step, text: str) -> None:
-    complain(f"{int(step)}  {step.name.lower().replace('_', '-'):<11} {text}")
+    with suppress(OSError):  # a run does not fail because nobody can be told of its progress
+        complain(f"{int(step)}  {step.name.lower().replace('_', '-'):<11} {text}")
 
 
 def _say_nothing(step: Step, text: str) -> None:

@@ -13,7 +13,7 @@ from contextlib import contextmanager
 from pathlib import Path
 
 from assayfolio.canonical import Json, canonical_bytes
-from assayfolio.errors import BusyError
+from assayfolio.errors import BusyError, MachineError
 from assayfolio.evidence.files import explained, make_folder
 from assayfolio.evidence.strict_json import NotCanonicalError, parse_canonical
 
@@ -55,6 +55,11 @@ def take_lock(path: Path, wait_seconds: float, holder: Json = None) -> int:
     """
     deadline = time.monotonic() + wait_seconds
     make_folder(path.parent)
+    if not os.access(path.parent, os.W_OK | os.X_OK):
+        raise MachineError(
+            f"{path.parent}: this account may not write here, so nothing was entered. "
+            "Give it the right to write, or work under an account that has it."
+        )
     with explained("take the lock", path):
         while True:
             descriptor = os.open(path, os.O_RDWR | os.O_CREAT | os.O_NOFOLLOW, 0o644)

@@ -151,9 +151,9 @@ class _Intake:
 
 def _number_advice(reason: str, cell: str) -> str:
     if reason == "blank":
-        return "give the value, or delete the row where nothing was measured"
+        return "this version leaves no result out; keep the original and ask the statistician"
     if "against a limit" in reason:
-        return "give the measured value; a mean cannot be formed from a limit"
+        return "a mean cannot be formed from a limit; keep the original and ask the statistician"
     if "decimal comma is declared" in reason:
         return "write the value with a comma, or take decimal-mark out of the study's data"
     if "comma" in reason and cell.count(",") == 1:

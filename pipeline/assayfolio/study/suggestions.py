@@ -29,19 +29,24 @@ def nearest(word: str, known: Sequence[str]) -> str | None:
 
     Near means at most one edit for every three letters, and at most three, or else the beginning of a word;
     case counts as no difference, nor does an underscore or a blank for a hyphen. Among equally near words
-    the first wins. A very long word, or one among very many, gets no suggestion, since looking would be dear.
+    there is no suggestion: it would be a guess. A very long word, or one among very many, gets none either,
+    since looking would be dear.
     """
     if len(word) > _LONGEST or len(known) > _MOST_KNOWN:
         return None
     plain = _plain(word)
-    best: str | None = None
-    limit = min(3, max(1, len(plain) // 3)) + 1
-    for candidate in known:
-        if abs(len(candidate) - len(plain)) < limit:
+    best: list[str] = []
+    limit = min(3, max(1, len(plain) // 3))
+    for candidate in dict.fromkeys(known):
+        if abs(len(candidate) - len(plain)) <= limit:
             distance = edit_distance(plain, _plain(candidate))
-            if distance < limit:
-                best, limit = candidate, distance
-    return best or next((word for word in known if len(plain) > 3 and word.startswith(plain)), None)
+            if distance < limit or (distance == limit and not best):
+                best, limit = [candidate], distance
+            elif distance == limit:
+                best.append(candidate)
+    if not best:
+        best = [word for word in known if len(plain) > 3 and word.startswith(plain)][:1]
+    return best[0] if len(best) == 1 else None
 
 
 def _plain(word: str) -> str:

@@ -8,6 +8,7 @@ from pathlib import Path
 from assayfolio.canonical import Json
 from assayfolio.observations.values import Observations
 from assayfolio.study.plan import AllPairs, Comparison, Contrast, StudyDefinition
+from assayfolio.study.suggestions import nearest
 from assayfolio.workflow.intake import SeenFiles, data_file_exists, read_intake, read_plan
 from assayfolio.workflow.workspace import Workspace
 
@@ -18,6 +19,7 @@ class CheckedStudy:
 
     study: StudyDefinition
     observations: Observations | None
+    files_there: tuple[str, ...] = ()
 
     def lines(self) -> list[str]:
         """What was found, for people."""
@@ -28,7 +30,11 @@ class CheckedStudy:
             *(f"  plan   {_described(comparison)}" for comparison in study.comparisons),
         ]
         if self.observations is None:
-            return [*lines, f"  data   {data.file} does not exist yet; the plan can be kept as it is"]
+            return [
+                *lines,
+                f"  data   {data.file} does not exist yet; the plan itself is in order",
+                *self._hint(),
+            ]
         counts = self.counts()
         layout = f"separator {self.observations.separator}, decimal {data.decimal_mark}"
         listed = ", ".join(f"{level} {n}" for level, n in counts.items())
@@ -37,6 +43,10 @@ class CheckedStudy:
             f"  data   {self.observations.file}: {sum(counts.values()):,} values, {layout}",
             f"  data   fits the plan: {listed}",
         ]
+
+    def _hint(self) -> list[str]:
+        near = nearest(Path(self.study.data.file).name, self.files_there)
+        return [] if near is None else [f"  data   there is a file {near} in that folder; is it the one?"]
 
     def document(self) -> Mapping[str, Json]:
         """What was found, for programs."""
@@ -72,5 +82,7 @@ def check_study(workspace: Workspace, study_path: Path) -> CheckedStudy:
     """
     study, _ = read_plan(workspace, study_path, SeenFiles())
     if not data_file_exists(study_path, study):
-        return CheckedStudy(study, None)
+        folder = (study_path.resolve().parent / study.data.file).parent
+        there = tuple(sorted(path.name for path in folder.iterdir())) if folder.is_dir() else ()
+        return CheckedStudy(study, None, there)
     return CheckedStudy(study, read_intake(workspace, study_path, SeenFiles()).observations)

@@ -9,7 +9,7 @@ from pathlib import Path
 from typing import Literal
 
 from assayfolio.canonical import sha256_hex
-from assayfolio.errors import DataError, Fault, InputError, Place
+from assayfolio.errors import DataError, Fault, InputError, Place, StudyError
 from assayfolio.evidence.folio import name_fault
 from assayfolio.fit import check_fit
 from assayfolio.observations.reading import read_observations
@@ -20,6 +20,9 @@ from assayfolio.study.reading import read_laboratory, read_study
 from assayfolio.workflow.workspace import Workspace, read_input, shown_path
 
 Role = Literal["study definition", "raw data", "laboratory settings"]
+
+
+PLACEHOLDER = "Name of your laboratory"
 
 
 @dataclass(frozen=True, slots=True)
@@ -67,11 +70,18 @@ def read_plan(workspace: Workspace, study_path: Path, seen: SeenFiles) -> tuple[
     study_file = workspace.name_of(study_path.resolve())
     seen.files.append(InputFile("study definition", study_file, "data/study.yaml", content))
     laboratory = read_laboratory(settings, lab_file)
+    _require_name(laboratory, lab_file)
     study = read_study(content, study_file)
     seen.study_id = study.study
     check_available(study)
     check_required(study, laboratory)
     return study, laboratory
+
+
+def _require_name(laboratory: Laboratory, lab_file: str) -> None:
+    if laboratory.name == PLACEHOLDER:
+        fault = Fault(Place(lab_file), f"it still says {PLACEHOLDER!r}", "put your laboratory's name there")
+        raise StudyError("The laboratory has no name yet.", (fault,))
 
 
 def read_intake(workspace: Workspace, study_path: Path, seen: SeenFiles) -> Intake:

@@ -38,6 +38,6 @@ def acknowledge_interruptions(workspace: Workspace, trail: TrailWriter) -> None:
             trail.append(
                 "interrupted",
                 run.subject,
-                f"the run was killed after its entry {last.action!r}; it has no folio",
+                f"the run ended without a word after its entry {last.action!r}; it has no folio",
                 {"last_seq": last.seq, **leftover_record(folder, run.name)},
             )

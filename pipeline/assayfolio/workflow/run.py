@@ -21,6 +21,7 @@ from assayfolio.evidence.trail import TrailEntry, TrailHead, open_trail
 from assayfolio.findings import Findings, findings_bytes
 from assayfolio.report.loading import load_renderer
 from assayfolio.report.render import render_report
+from assayfolio.study.plan import SignOff
 from assayfolio.workflow.failure import failure_text
 from assayfolio.workflow.intake import Intake, SeenFiles, read_intake
 from assayfolio.workflow.records import (
@@ -43,12 +44,13 @@ DEFAULT_WAIT_SECONDS = 10.0
 
 @dataclass(frozen=True, slots=True)
 class RunOutcome:
-    """A run that came to its end: its findings, its folio and the folio's seal."""
+    """A run that came to its end: its findings, its folio and the folio's seal, and who is to sign it."""
 
     subject: str
     folio: Path
     seal: str
     findings: Findings
+    sign_off: tuple[SignOff, ...]
 
 
 @dataclass(slots=True)
@@ -100,7 +102,7 @@ def run_study(workspace: Workspace, study_path: Path, progress: Progress) -> Run
     seen = SeenFiles()
     try:
         intake = read_intake(workspace, study_path, seen)
-    except InputError as error:
+    except AssayfolioError as error:
         try:
             _refuse(workspace, study_path, seen, error)
         except AssayfolioError as second:
@@ -118,17 +120,18 @@ def run_study(workspace: Workspace, study_path: Path, progress: Progress) -> Run
             raise _seal_failed(run, error) from error
 
 
-def _refuse(workspace: Workspace, study_path: Path, seen: SeenFiles, error: InputError) -> None:
+def _refuse(workspace: Workspace, study_path: Path, seen: SeenFiles, error: AssayfolioError) -> None:
     subject = seen.study_id or _relative_name(workspace, study_path)
     details: dict[str, Json] = {
         "step": int(Step.READ),
         "inputs": {file.path: file.sha256 for file in seen.files},
-        "faults": [_holdable(str(fault)) for fault in error.faults],
-        "more_faults": error.hidden,
+        "faults": [_holdable(str(fault)) for fault in error.faults] if isinstance(error, InputError) else [],
+        "more_faults": error.hidden if isinstance(error, InputError) else 0,
     }
+    reason = error.headline if isinstance(error, InputError) else str(error)
     with open_trail(workspace.runs, account_name(), utc_now, DEFAULT_WAIT_SECONDS) as trail:
         found_trail(workspace, trail)
-        trail.append("refused", _holdable(subject), _holdable(error.headline), details)
+        trail.append("refused", _holdable(subject), _holdable(reason), details)
 
 
 def _relative_name(workspace: Workspace, path: Path) -> str:
@@ -191,7 +194,7 @@ def _compute_and_render(run: _Run) -> Findings:
 
 def _seal_completed(run: _Run, findings: Findings) -> RunOutcome:
     folio, seal = _seal(run, "completed")
-    return RunOutcome(run.subject, folio, seal, findings)
+    return RunOutcome(run.subject, folio, seal, findings, run.intake.study.sign_off)
 
 
 def _seal(run: _Run, outcome: str) -> tuple[Path, str]:
@@ -223,6 +226,4 @@ def _seal_failed(run: _Run, error: BaseException) -> BaseException:
         where = f"{where}, and its folio says why: {shown_path(folio)}"
     except Exception as second:  # noqa: BLE001 - the first error is the one to tell; this one beside it
         where = f"{where}, but its folio could not be sealed ({second})"
-    if isinstance(error, KeyboardInterrupt):
-        return error
     return MachineError(f"{reason}\n{where}.")

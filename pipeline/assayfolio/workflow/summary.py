@@ -1,6 +1,8 @@
 """How a finished run ends on the terminal: verdicts, folio, seal, what to do next."""
 
+import shlex
 from collections.abc import Mapping
+from pathlib import Path
 
 from assayfolio.canonical import Json
 from assayfolio.errors import ExitCode
@@ -9,13 +11,14 @@ from assayfolio.workflow.run import RunOutcome
 from assayfolio.workflow.workspace import Workspace, shown_path
 
 
-def outcome_lines(workspace: Workspace, outcome: RunOutcome) -> list[str]:
-    """For people."""
+def outcome_lines(outcome: RunOutcome, here: Path, command: str) -> list[str]:
+    """For people who work in the folder `here` and call the program by `command`."""
     lines = [""]
     for response in outcome.findings.responses:
         lines.extend(_verdicts(response))
     lines.extend(f"Not reported: {item.what} - {item.reason}" for item in outcome.findings.not_reported)
-    folio = shown_path(outcome.folio.relative_to(workspace.root))
+    near = outcome.folio.relative_to(here) if outcome.folio.is_relative_to(here) else outcome.folio
+    folio = shown_path(near)
     return [
         *lines,
         "",
@@ -23,9 +26,16 @@ def outcome_lines(workspace: Workspace, outcome: RunOutcome) -> list[str]:
         f"Report  {folio}/data/report.pdf",
         f"Seal    {outcome.seal}",
         "",
-        "The plan was not pre-registered, and nothing is signed yet. The report is a draft until every",
-        f"sign-off field on its first page carries a valid signature. Verify with: assayfolio verify {folio}",
+        "The plan was not pre-registered; every result is exploratory.",
+        _standing(outcome),
+        f"Verify with: {command} verify {shlex.quote(folio)}",
     ]
+
+
+def _standing(outcome: RunOutcome) -> str:
+    if not outcome.sign_off:
+        return "No signatures are planned for this report."
+    return "The report is a draft until every sign-off field on its first page carries a valid signature."
 
 
 def _verdicts(response: ResponseFindings) -> list[str]:

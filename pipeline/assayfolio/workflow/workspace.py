@@ -67,8 +67,8 @@ def find_workspace(named: Path | None, start: Path) -> Workspace:
 def read_input(workspace: Workspace, path: Path, what: str) -> bytes:
     """The bytes of an input file, read once.
 
-    Raises InputError where the file is missing, not a regular file, unreadable, too large, or outside the
-    workspace (also by way of a symbolic link).
+    Raises InputError where the file is missing, not a regular file, too large, or outside the workspace (also
+    by way of a symbolic link); MachineError where the machine refuses to read it.
     """
     shown = shown_path(path)
     try:
@@ -91,8 +91,7 @@ def read_input(workspace: Workspace, path: Path, what: str) -> bytes:
     try:
         return real.read_bytes()
     except OSError as error:
-        fault = Fault(Place(shown), str(error.strerror))
-        raise InputError(f"The {what} cannot be read.", (fault,)) from error
+        raise MachineError(f"{shown}: the {what} cannot be read: {error.strerror}.") from error
 
 
 def found_workspace(folder: Path) -> Workspace:
