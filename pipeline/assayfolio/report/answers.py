@@ -1,5 +1,7 @@
 """The first page: every planned question, its verdict in words, the estimate, and what it does not mean."""
 
+from collections.abc import Mapping
+
 from assayfolio.findings import (
     DIFFERENCE_NOT_SHOWN,
     DIFFERENCE_SHOWN,
@@ -23,23 +25,29 @@ from assayfolio.report.wording import (
     capitalised,
     check_words,
     counted,
+    first_of,
     interval_kind,
     interval_words,
     p_words,
 )
 from assayfolio.study.plan import AgainstReference, AllPairs, Comparison
 
-_MOST_NAMED = 5
-_MOST_NAMED_CHARACTERS = 130
+_MOST_NAMED = 4
 
 
-def cards(basis: Basis, accent: str) -> tuple[Card, ...]:
-    """One card a planned question, the overall question first, then the families in the order of the plan."""
+def cards(basis: Basis, accent: str, tables: Mapping[str, str]) -> tuple[Card, ...]:
+    """One card a planned question, the overall question first, then the families in the order of the plan.
+
+    `tables` gives the label of the table with the figures behind each anchor.
+    """
     axis = comparison_axis(basis)
-    found = [_overall(basis, accent)]
+    found = [_overall(basis, accent, tables[ANCHORS[DATA]])]
     for number, family in enumerate(basis.response.comparisons, start=1):
+        anchor = f"family-{number}"
         name = f"answer-comparison-{number}.svg"
-        picture = None if axis is None else family_picture(basis, family, axis, accent, name)
+        picture = None
+        if axis is not None:
+            picture = family_picture(basis, family, axis, accent, name, tables[anchor])
         found.append(
             Card(
                 family=prose("{name} · {method}", name=family.name, method=adjustment_of(family).name),
@@ -49,7 +57,7 @@ def cards(basis: Basis, accent: str) -> tuple[Card, ...]:
                 caution=prose(_family_caution(family)),
                 picture=picture,
                 section=COMPARISONS,
-                anchor=f"family-{number}",
+                anchor=anchor,
             )
         )
     return (*found, *_unreported(basis))
@@ -80,7 +88,7 @@ def _unreported(basis: Basis) -> list[Card]:
     ]
 
 
-def _overall(basis: Basis, accent: str) -> Card:
+def _overall(basis: Basis, accent: str, table: str) -> Card:
     anova = basis.response.anova
     count = len(basis.levels)
     question = prose(
@@ -110,7 +118,7 @@ def _overall(basis: Basis, accent: str) -> Card:
         verdict=capitalised(anova.verdict),
         lines=tuple(lines),
         caution=prose(caution),
-        picture=means_picture(basis, accent, "answer-means.svg"),
+        picture=means_picture(basis, accent, "answer-means.svg", table),
         section=ANOVA,
         anchor=ANCHORS[ANOVA],
     )
@@ -192,8 +200,7 @@ def _family_lines(basis: Basis, family: ComparisonFamily) -> list[Prose]:
     shown = [item for item in family.rows if item.verdict == DIFFERENCE_SHOWN]
     if 0 < len(shown) < len(family.rows):
         names = [basis.label(item) for item in shown]
-        if len(names) <= _MOST_NAMED and sum(map(len, names)) <= _MOST_NAMED_CHARACTERS:
-            lines.append(prose("shown: {names}", names="; ".join(names)))
+        lines.append(prose("shown: {names}", names=first_of(names, _MOST_NAMED, "; ")))
     return lines
 
 
@@ -236,13 +243,17 @@ def _family_caution(family: ComparisonFamily) -> str:
     return CAUTION_NOT_SHOWN if is_single_step(family) else CAUTION_NO_INTERVAL
 
 
+_NO_DEVIATIONS = "this version records none; the laboratory’s own records apply"
+_NO_EXCLUSIONS = "this version has no exclusions"
+
+
 def summary(basis: Basis) -> tuple[SummaryLine, ...]:
     """The lines under the answers: data, checks, deviations, and what was asked for and is not reported."""
     unreported = len(basis.content.findings.not_reported)
     lines = [
         SummaryLine("Data", _data_line(basis), DATA, ANCHORS[DATA]),
         SummaryLine("Checks", _checks_line(basis), CHECKS, ANCHORS[CHECKS]),
-        SummaryLine("Deviations", prose("none recorded"), PLAN, ANCHORS[PLAN]),
+        SummaryLine("Deviations", prose(_NO_DEVIATIONS), PLAN, ANCHORS[PLAN]),
     ]
     if unreported:
         words = prose(
@@ -269,8 +280,9 @@ def _data_line(basis: Basis) -> Prose:
         scale = basis.difference_scale
         pooled = prose("; residual SD {sd}", sd=scale.with_unit(scale.spread(residual, residual)))
     return prose(
-        "{total} received, 0 excluded, {total} analysed; {each}{pooled}",
+        "{total} received, 0 excluded, {total} analysed ({exclusions}); {each}{pooled}",
         total=str(basis.total),
+        exclusions=_NO_EXCLUSIONS,
         each=each,
         pooled=pooled,
     )

@@ -6,18 +6,20 @@ from assayfolio.errors import RenderingError
 from assayfolio.report.analysis import anova_section, checks_section, not_reported_section
 from assayfolio.report.answers import cards, summary
 from assayfolio.report.basis import Basis
-from assayfolio.report.content import ReportContent, SignatureBox
+from assayfolio.report.content import Heading, ReportContent, Section, SignatureBox, TableBlock
 from assayfolio.report.facts import ReportInput
 from assayfolio.report.families import comparisons_section
+from assayfolio.report.notation import kept_together
 from assayfolio.report.numbering import Numbering
 from assayfolio.report.plan_and_data import data_section, plan_section
-from assayfolio.report.prose import Prose, prose
+from assayfolio.report.prose import Prose, prose, verbatim
 from assayfolio.report.provenance import listing_section, provenance_section
 from assayfolio.report.statement import method_section
 from assayfolio.report.typeface import wrapped
 from assayfolio.report.wording import (
     CAUTIONS,
     DRAFT_SENTENCE,
+    EXPLORATORY,
     NO_SIGN_OFF,
     NOT_REGISTERED,
     alpha_words,
@@ -55,7 +57,7 @@ def compose(content: ReportInput) -> ReportContent:
     )
     number = f"{study.study} · {run.label}"
     return ReportContent(
-        title=study.title,
+        title=kept_together(study.title),
         document_title=f"{study.title} ({study.study}, {run.label})",
         laboratory=laboratory.name,
         address=", ".join(laboratory.address),
@@ -63,8 +65,9 @@ def compose(content: ReportInput) -> ReportContent:
         number=number,
         created=f"{run.started_utc[:19]}Z",
         generator=f"Assayfolio {VERSION}",
+        standing=EXPLORATORY,
         facts=_facts(basis),
-        cards=cards(basis, accent),
+        cards=cards(basis, accent, _table_labels(sections)),
         summary=summary(basis),
         sign_off=boxes,
         sign_off_words="" if boxes else "No signatures are planned for this report.",
@@ -78,6 +81,19 @@ def compose(content: ReportInput) -> ReportContent:
         sections=sections,
         end_mark=f"End of the report on {study.study}, {run.label}",
     )
+
+
+def _table_labels(sections: tuple[Section, ...]) -> dict[str, str]:
+    """The label of the first table behind each anchor, be it that of a section or of a heading in it."""
+    labels: dict[str, str] = {}
+    for section in sections:
+        anchor = section.anchor
+        for block in section.blocks:
+            if isinstance(block, Heading) and block.anchor:
+                anchor = block.anchor
+            elif isinstance(block, TableBlock):
+                labels.setdefault(anchor, block.table.label)
+    return labels
 
 
 def _signature_boxes(content: ReportInput) -> tuple[SignatureBox, ...]:
@@ -116,7 +132,7 @@ def _facts(basis: Basis) -> tuple[Prose, ...]:
         prose(
             "{total} from {file} · run on {date} at {time} UTC by {actor}",
             total=counted(basis.total, "value"),
-            file=basis.content.observations.file,
+            file=verbatim(basis.content.observations.file),
             date=run.started_utc[:10],
             time=run.started_utc[11:16],
             actor=run.actor,

@@ -174,6 +174,7 @@ class ReportContent:
     number: str
     created: str
     generator: str
+    standing: str
     facts: tuple[Prose, ...]
     cards: tuple[Card, ...]
     summary: tuple[SummaryLine, ...]

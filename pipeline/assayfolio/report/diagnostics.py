@@ -46,7 +46,7 @@ def _frame(basis: Basis, vertical: list[Fraction]) -> tuple[Drawing, Axis, float
         y = axis.at(tick)
         drawing.line(left, y, left - 3, y, stroke=SECOND_INK, width=THIN_LINE)
         drawing.figures(left - 5, y + 2.5, label, size=_SIZE, anchor="end", fill=SECOND_INK)
-    drawing.line(left, axis.at(axis.ticks[0]), left, axis.at(axis.ticks[-1]), stroke=SECOND_INK)
+    drawing.line(left, axis.start, left, axis.end, stroke=SECOND_INK)
     title = axis_title(axis, "residual", scale)
     drawing.text(7, (8 + HEIGHT - 34) / 2, title, size=_SIZE, anchor="middle", upright=False)
     return drawing, axis, left
@@ -54,7 +54,7 @@ def _frame(basis: Basis, vertical: list[Fraction]) -> tuple[Drawing, Axis, float
 
 def _horizontal(drawing: Drawing, axis: Axis, title: str) -> None:
     y = HEIGHT - 28
-    drawing.line(axis.at(axis.ticks[0]), y, axis.at(axis.ticks[-1]), y, stroke=SECOND_INK)
+    drawing.line(axis.start, y, axis.end, y, stroke=SECOND_INK)
     for tick, label in zip(axis.ticks, axis.labels, strict=True):
         x = axis.at(tick)
         drawing.line(x, y, x, y + 3, stroke=SECOND_INK, width=THIN_LINE)

@@ -7,18 +7,20 @@ from assayfolio.report.figures import MOST_ROWS, interval_plot
 from assayfolio.report.methods import adjustment_of
 from assayfolio.report.notation import INFINITY, MINUS, probability, statistic
 from assayfolio.report.numbering import ANCHORS, COMPARISONS, Numbering
-from assayfolio.report.prose import Prose, Words, prose
+from assayfolio.report.prose import Prose, Words, joined, prose
 from assayfolio.report.tables import Column, Table, lay_out
 from assayfolio.report.wording import (
-    NOT_REGISTERED,
     adjusted_p,
     alpha_words,
     counted,
+    first_of,
     interval_kind,
     row_verdict,
 )
 
 _BLANK = "–"
+_STANDING = "exploratory, as the plan was not pre-registered"
+_MOST_NAMED = 4
 
 
 def comparisons_section(basis: Basis, numbering: Numbering, accent: str) -> Section:
@@ -45,27 +47,51 @@ def _family_words(basis: Basis, family: ComparisonFamily) -> Prose:
     df = counted(family.rows[0].df, "degree of freedom", "degrees of freedom")
     if count == 1:
         words = prose(
-            "One comparison, {side}, {df}; planned, {registered}.",
+            "One comparison, {side}, {df}; {standing}.",
             side=side,
             df=df,
-            registered=NOT_REGISTERED,
+            standing=_STANDING,
         )
     else:
         words = prose(
-            "A family of {count} comparisons, {side}, {adjusted}, {df}; planned, {registered}.",
+            "A family of {count} comparisons, {side}, {adjusted}, {df}; {standing}.",
             count=str(count),
             side=side,
             adjusted=_how_adjusted(family),
             df=df,
-            registered=NOT_REGISTERED,
+            standing=_STANDING,
         )
     verdict = prose(
-        " A difference is shown where the {kind}*p* is at most {alpha}; whether it matters, its size and "
-        "interval say.",
-        kind="" if family.adjust == "none" else "adjusted ",
+        " A difference is shown where {kind}*p* is at most {alpha}; whether it matters, its size and "
+        "interval say.{unit}",
+        kind="" if family.adjust == "none" else "the adjusted ",
+        unit=" Differences are in percentage points." if basis.response.unit == "%" else "",
         alpha=alpha_words(basis),
     )
-    return (*words, *verdict)
+    return (*words, *verdict, *_other_verdicts(basis, family))
+
+
+def _other_verdicts(basis: Basis, family: ComparisonFamily) -> Prose:
+    """Which pairs an earlier family holds, in either direction, with another verdict."""
+    sentences: list[Prose] = []
+    for earlier in basis.response.comparisons:
+        if earlier is family:
+            break
+        before = {frozenset(pair): row.verdict for row in earlier.rows if (pair := basis.pair(row))}
+        names = []
+        for row in family.rows:
+            pair = basis.pair(row)
+            if pair and before.get(frozenset(pair), row.verdict) != row.verdict:
+                names.append(f"{basis.label(row)} ({row_verdict(row.verdict)} here)")
+        if names:
+            sentences.append(
+                prose(
+                    " Each family is judged by itself; the verdict differs from that in {earlier} for {names}.",
+                    earlier=f"“{earlier.name}”",
+                    names=first_of(names, _MOST_NAMED, "; "),
+                )
+            )
+    return joined(sentences, "")
 
 
 def _how_adjusted(family: ComparisonFamily) -> str:
@@ -133,20 +159,22 @@ def _family_figure(
             f" Drawn are the {MOST_ROWS} of {total} with the smallest adjusted *p*, in the order of the "
             "plan; the table has all."
         )
+    dots = "Estimated differences (dots)" if total > 1 else "Estimated difference (dot)"
     with_ci = is_single_step(family)
     picture = interval_plot(basis, rows, accent, f"comparisons-{number}.svg", f"{basis.confidence} interval")
     if with_ci:
         what = prose(
-            "Estimated differences (dots) with {kind}, {name}. An interval that leaves out zero is a "
-            "difference shown.",
+            "{dots} with {kind}, {name}. An interval that leaves out zero is a difference shown.",
+            dots=dots,
             name=family.name,
             kind=interval_kind(basis, family) + ("s" if total > 1 else ""),
         )
     else:
         what = prose(
-            "Estimated differences (dots), {name}. {method} has no intervals; the verdicts stand in the "
-            "table.",
+            "{dots}, {name}. {method} has no intervals; the {verdicts} in the table.",
+            dots=dots,
             name=family.name,
+            verdicts="verdicts stand" if total > 1 else "verdict stands",
             method=adjustment_of(family).name,
         )
     return [FigureBlock(numbering.figure(), (picture,), (*what, *prose(limited)))]

@@ -6,7 +6,7 @@ from fractions import Fraction
 from assayfolio.findings import ComparisonRow, Interval, LevelFindings
 from assayfolio.report.axes import Axis, make_axis
 from assayfolio.report.basis import Basis
-from assayfolio.report.notation import INFINITY, MINUS, Scale
+from assayfolio.report.notation import INFINITY, MINUS, Scale, kept_together
 from assayfolio.report.svg import HAIR, HAIRLINE, INK, SECOND_INK, STRONG_LINE, THIN_LINE, Drawing
 from assayfolio.report.swarm import lanes, offsets
 from assayfolio.report.typeface import figures_width, text_width, wrapped
@@ -120,7 +120,7 @@ def _dot_plot(basis: Basis, levels: tuple[LevelFindings, ...], accent: str, name
 
 
 def _row(basis: Basis, level: LevelFindings, axis: Axis, column: float, count: int) -> _Row:
-    words = wrapped(level.level, _SIZE, column, "semibold")
+    words = wrapped(kept_together(level.level), _SIZE, column, "semibold")
     places = [axis.at(value) for value in basis.values_by_level[level.level]]
     name_lines = len(words) + (0 if count > _MANY_LEVELS else 1)
     least = 30.0 if count <= _FEW_LEVELS else 22.0 if count <= _MANY_LEVELS else 17.0
@@ -192,7 +192,7 @@ def interval_plot(
     scale = basis.difference_scale
     labels = [basis.label(row) for row in rows]
     column = _label_column(labels, 168)
-    lines = [wrapped(label, _SIZE, column) for label in labels]
+    lines = [wrapped(kept_together(label), _SIZE, column) for label in labels]
     heights = [max(15.0, _LINE * len(words) + 6) for words in lines]
     figures = [_figures(row, scale) for row in rows]
     columns = _number_columns(figures)

@@ -36,22 +36,37 @@ def _crowd(drawing: Drawing, places: list[float], accent: str) -> None:
         drawing.dot(x, middle - offset, 1.1, fill=accent)
 
 
-def _ticks(drawing: Drawing, axis: Axis, y: float, unit: str) -> None:
-    drawing.line(axis.at(axis.ticks[0]), y, axis.at(axis.ticks[-1]), y, stroke=SECOND_INK, width=0.5)
+def _order(count: int, what: str, table: str, *, drawn_alone: bool) -> str:
+    """Where the names of the rows stand; a crowd of dots has neither names nor intervals."""
+    if drawn_alone:
+        return f"{count} {what}, without intervals; all in {table}"
+    return f"from the top: in the order of {table}" if count > 1 else ""
+
+
+def _ticks(drawing: Drawing, axis: Axis, y: float, unit: str, order: str) -> None:
+    drawing.line(axis.start, y, axis.end, y, stroke=SECOND_INK, width=0.5)
     for tick, label in zip(axis.ticks, axis.labels, strict=True):
         x = axis.at(tick)
         drawing.line(x, y, x, y + 2, stroke=SECOND_INK, width=0.5)
         drawing.figures(x, y + 9, label, size=_SIZE, anchor="middle", fill=SECOND_INK)
     drawing.text(WIDTH / 2, y + 18, unit, size=_SIZE, anchor="middle", fill=SECOND_INK)
+    if order:
+        drawing.text(WIDTH / 2, y + 26, order, size=_SIZE, anchor="middle", fill=SECOND_INK)
 
 
-def family_picture(basis: Basis, family: ComparisonFamily, axis: Axis, accent: str, name: str) -> Picture:
-    """The estimates of a family with their intervals; as dots alone where there are very many."""
+def family_picture(
+    basis: Basis, family: ComparisonFamily, axis: Axis, accent: str, name: str, table: str
+) -> Picture:
+    """The estimates of a family with their intervals; as dots alone where there are very many.
+
+    `table` is the label of the table that has its rows in the same order.
+    """
     rows = family.rows
     many = len(rows) > _MOST_LINES
     pitch = max(3.4, min(7.2, 44.0 / len(rows)))
     body = 36.0 if many else pitch * len(rows) + 6
-    drawing = Drawing(WIDTH, body + 22)
+    order = _order(len(rows), "differences", table, drawn_alone=many)
+    drawing = Drawing(WIDTH, body + (30 if order else 22))
     zero = axis.at(0)
     drawing.line(zero, 0, zero, body, stroke=SECOND_INK, width=THIN_LINE)
     if many:
@@ -63,13 +78,13 @@ def family_picture(basis: Basis, family: ComparisonFamily, axis: Axis, accent: s
             draw_interval(drawing, axis, y, row.ci, stroke=accent, cap=pitch * 0.26)
         drawing.dot(axis.at(row.estimate), y, min(1.7, pitch * 0.34), fill=accent)
     scale = basis.difference_scale
-    _ticks(drawing, axis, body, f"difference, {scale.heading}" if scale.heading else "difference")
+    _ticks(drawing, axis, body, f"difference, {scale.heading}" if scale.heading else "difference", order)
     title = f"{len(rows)} estimates of {family.name} on a scale with zero; figures stand in section 5."
     return Picture(name, drawing.svg(title), title, WIDTH_MM)
 
 
-def means_picture(basis: Basis, accent: str, name: str) -> Picture:
-    """The level means with their intervals, in the order of the plan from top to bottom."""
+def means_picture(basis: Basis, accent: str, name: str, table: str) -> Picture:
+    """The level means with their intervals, from top to bottom in the order of the plan and of `table`."""
     levels = basis.levels
     values = [level.mean for level in levels]
     values += [Fraction(end) for level in levels for end in level.ci or () if end is not None]
@@ -77,7 +92,8 @@ def means_picture(basis: Basis, accent: str, name: str) -> Picture:
     many = len(levels) > _MOST_LINES
     pitch = max(3.4, min(7.2, 44.0 / len(levels)))
     body = 36.0 if many else pitch * len(levels) + 6
-    drawing = Drawing(WIDTH, body + 22)
+    order = _order(len(levels), "means", table, drawn_alone=many)
+    drawing = Drawing(WIDTH, body + (30 if order else 22))
     if many:
         places = [axis.at(level.mean) for level in levels]
         _crowd(drawing, places, accent)
@@ -90,6 +106,6 @@ def means_picture(basis: Basis, accent: str, name: str) -> Picture:
         f" {MINUS} {basis.scale.mean(axis.origin).rstrip('0').rstrip('.')}" if axis.origin else ""
     )
     unit += f", {basis.scale.heading}" if basis.scale.heading else ""
-    _ticks(drawing, axis, body, unit)
+    _ticks(drawing, axis, body, unit, order)
     title = f"The means of the {len(levels)} levels with their intervals; figures stand in section 2."
     return Picture(name, drawing.svg(title), title, WIDTH_MM)

@@ -11,6 +11,7 @@ The rules, in one place:
 * a sum of squares or mean square has as many decimals as give the within mean square four digits.
 """
 
+import re
 from collections.abc import Iterable
 from dataclasses import dataclass
 from fractions import Fraction
@@ -33,6 +34,14 @@ _FLOOR_POWER = -300
 _WIDEST = 14
 
 Number = Exact | float | int
+
+_UNIT = r"(?:[°º][CF]|%|‰|pp[mbt]|[kMhcdmµμnp]?(?:mol|Pa|Hz|eV|Bq|Gy|Sv|bar|rad|ohm|[gLlmsKVAWJNSΩ])|min|h|d|kDa|rpm)"
+_BEFORE_UNIT = re.compile(rf"(?<=\d) (?={_UNIT}(?:[²³⁻¹]|(?!\w)))")
+
+
+def kept_together(text: str) -> str:
+    """`text` with a space that does not break between a number and the unit that seems to follow it."""
+    return _BEFORE_UNIT.sub(NO_BREAK, text)
 
 
 def power_of_ten(power: int) -> str:

@@ -16,10 +16,16 @@ from assayfolio.report.numbering import (
     PLAN,
     Numbering,
 )
-from assayfolio.report.prose import Prose, Words, prose
+from assayfolio.report.prose import Prose, Words, prose, verbatim
 from assayfolio.report.tables import Column, Table, fits, lay_out
 from assayfolio.report.wording import alpha_words, counted
 from assayfolio.study.plan import AgainstReference, AllPairs, Comparison
+
+
+_LEVEL_WORDS = (
+    "{alpha} for each family of comparisons; each family keeps its own error rate, so the same pair can be "
+    "shown in one family and not in another"
+)
 
 
 def plan_section(basis: Basis, numbering: Numbering) -> Section:
@@ -31,15 +37,16 @@ def plan_section(basis: Basis, numbering: Numbering) -> Section:
         Entry(prose("Factor"), _levels(basis)),
         Entry(prose("Replicates"), _replicates(basis)),
         Entry(prose("Design"), prose(_design(basis))),
-        Entry(prose("Level *α*"), prose("{alpha} for each family of comparisons", alpha=alpha_words(basis))),
+        Entry(prose("Level *α*"), prose(_LEVEL_WORDS, alpha=alpha_words(basis))),
     ]
     blocks: list[Block] = [
         Paragraph(
             prose(
                 "The plan is the study definition attached to this document, as it stood when the run "
                 "began. It was #not pre-registered#: nothing shows that it was fixed before the data were "
-                "seen, so every result here is exploratory in that sense. No deviations from the plan are "
-                "recorded."
+                "seen, so every result here is exploratory; “planned” says that it stands in the study "
+                "definition, no more. This version records no deviations from the plan; whether there were "
+                "any, the laboratory’s own records say."
             )
         ),
         Facts(tuple(entries)),
@@ -150,12 +157,12 @@ def data_section(basis: Basis, numbering: Numbering, accent: str) -> Section:
     blocks: list[Block] = [
         Paragraph(
             prose(
-                "{total} received from {file}, 0 excluded, {total2} analysed. Values were read as exact "
-                "decimals from their text (columns separated by {separator}, decimal {mark}); at most "
-                "{places} recorded.",
+                "{total} received from {file}, 0 excluded, {total2} analysed; this version has no exclusions, "
+                "it analyses every value in the file. Values were read as exact decimals from their text "
+                "(columns separated by {separator}, decimal {mark}); at most {places} recorded.",
                 total=counted(basis.total, "value"),
                 total2=str(basis.total),
-                file=observations.file,
+                file=verbatim(observations.file),
                 separator=separator,
                 mark=basis.content.study.data.decimal_mark,
                 places=counted(observations.places, "decimal place"),
@@ -233,7 +240,7 @@ def _interval_caption(basis: Basis) -> Prose:
 
 
 def _descriptive_notes(basis: Basis) -> list[Prose]:
-    notes = []
+    notes = [prose("A mean that lies exactly between two printed figures is rounded to the even digit.")]
     if any(level.n == 1 for level in basis.levels):
         notes.append(prose("A level with one value has no standard deviation of its own (–)."))
     if all(level.ci is None for level in basis.levels):
@@ -263,7 +270,8 @@ def _dot_caption(basis: Basis, number: int, count: int) -> Prose:
         else "."
     )
     how = (
-        " Two intervals that overlap do not say that the means agree: section 5 compares them."
+        " Two intervals that overlap do not say that the means agree"
+        + (": section 5 compares them." if basis.response.comparisons else ".")
         if has_interval
         else ""
     )

@@ -1,12 +1,14 @@
 """Words with a little emphasis: text in spans, so that nothing a user typed is ever taken for markup.
 
 Patterns are written by this package alone. In a pattern `*x*` is a symbol (italic), `#x#` strong, `~x~`
-quiet, `_x_` a subscript, `^x^` a superscript, and `{name}` a value put in as it is, never looked into.
+quiet, `_x_` a subscript, `^x^` a superscript, and `{name}` a value put in as it is, never looked into for marks.
 """
 
 import re
 from dataclasses import dataclass
 from typing import TypeAlias
+
+from assayfolio.report.notation import kept_together
 
 _STYLES = {"*": "symbol", "#": "strong", "~": "quiet", "_": "sub", "^": "sup"}
 _LONG_WORD = re.compile(r"\w{8}")
@@ -51,15 +53,20 @@ def prose(pattern: str, **values: Words) -> Prose:
 def _given(words: Words) -> Prose:
     """A value put into a pattern; where it holds long words, it is marked so that none is ever hyphenated."""
     if isinstance(words, str) and _LONG_WORD.search(words):
-        return (Span(words, "given"),)
+        return (Span(kept_together(words), "given"),)
     return as_prose(words)
 
 
 def as_prose(words: Words) -> Prose:
-    """`words` as spans; a plain text is one unstyled span."""
+    """`words` as spans; a plain text is one unstyled span, in which no number parts from its unit."""
     if isinstance(words, str):
-        return (Span(words),) if words else ()
+        return (Span(kept_together(words)),) if words else ()
     return words
+
+
+def verbatim(text: str) -> Prose:
+    """`text` character by character, such as a path that a reader may copy."""
+    return (Span(text, "given"),)
 
 
 def plain(words: Words) -> str:

@@ -14,9 +14,9 @@ from assayfolio.report.content import (
     Section,
 )
 from assayfolio.report.facts import InputFacts
-from assayfolio.report.notation import split_at_point
+from assayfolio.report.notation import kept_together, split_at_point
 from assayfolio.report.numbering import ANCHORS, LISTING, PROVENANCE, Numbering
-from assayfolio.report.prose import Prose, prose
+from assayfolio.report.prose import Prose, prose, verbatim
 from assayfolio.report.tables import TEXT_WIDTH_MM, UNBROKEN_TO
 from assayfolio.report.typeface import POINTS_PER_MM, figures_width, text_width
 from assayfolio.report.wording import counted
@@ -24,6 +24,12 @@ from assayfolio.report.wording import counted
 MOST_LISTED = 600
 _SIZE = 8.0
 _LINE_SIZE = 6.4
+
+
+_SIGNING = (
+    "~Signatures: this version does not sign. Until signing is part of this program, the sign-off fields on "
+    "page 1 are signed on a copy outside the folio; signing the file inside the folio would break its seal.~"
+)
 
 
 def provenance_section(basis: Basis) -> Section:
@@ -68,9 +74,9 @@ def _input(item: InputFacts) -> Entry:
         prose("{role}", role=item.role[:1].upper() + item.role[1:]),
         prose(
             "{path} ~({size} bytes; in the folio {folio})~",
-            path=item.path,
+            path=verbatim(item.path),
             size=str(item.size),
-            folio=item.folio_path,
+            folio=verbatim(item.folio_path),
         ),
         item.sha256,
     )
@@ -100,24 +106,27 @@ def _how_to_check(basis: Basis) -> tuple[Prose, ...]:
         prose(
             "With the software: #assayfolio verify {folio}# checks every file of the folio, its seal and "
             "the audit trail.",
-            folio=folio,
+            folio=verbatim(folio),
         ),
         prose(
             "Without it: in the folder {folio}, #sha256sum -c manifest-sha256.txt# compares every file with "
             "its digest. The audit trail is one entry a line, each holding the SHA-256 of the line before; "
             "the head printed above must be the SHA-256 of line {line}.",
-            folio=folio,
+            folio=verbatim(folio),
             line=str(run.trail_seq),
         ),
         prose(
             "To repeat the analysis: #assayfolio run {study}# with the same inputs gives a new run number "
             "and the same findings.json, byte for byte on the same versions of the software.",
-            study=study,
+            study=verbatim(study),
         ),
         prose(
-            "By hand: means, sums of squares and *F* follow from the listing in section 9 with the formulas "
-            "of section 7."
+            "By hand: means, sums of squares and *F* follow from {source} with the formulas of section 7.",
+            source="the listing in section 9"
+            if basis.total <= MOST_LISTED
+            else "the exact sums of each level (“sums” in findings.json)",
         ),
+        *([prose(_SIGNING)] if basis.content.study.sign_off else []),
     )
 
 
@@ -126,7 +135,7 @@ def _attached(basis: Basis) -> list[Prose]:
     listed = [
         prose(
             "{name} ~({description}, {size} bytes)~",
-            name=file.name,
+            name=verbatim(file.name),
             description=file.description,
             size=str(len(file.content)),
         )
@@ -135,7 +144,7 @@ def _attached(basis: Basis) -> list[Prose]:
     raw = next(item.folio_path for item in basis.content.run.inputs if item.role == "raw data")
     if raw.rpartition("/")[2] not in {file.name for file in files}:
         words = "The raw data are too large to attach; they stand in the folio as {path}."
-        listed.append(prose(words, path=raw))
+        listed.append(prose(words, path=verbatim(raw)))
     return listed
 
 
@@ -156,14 +165,16 @@ def listing_section(basis: Basis, numbering: Numbering) -> Section:
                     words,
                     total=counted(basis.total, "value"),
                     most=str(MOST_LISTED),
-                    file=observations.file,
+                    file=verbatim(observations.file),
                     columns=", ".join(observations.extra_columns),
                 )
             ),
         )
     else:
         words = "Values as typed, each beside the number of its line in {file}." + extra
-        caption = prose(words, file=observations.file, columns=", ".join(observations.extra_columns))
+        caption = prose(
+            words, file=verbatim(observations.file), columns=", ".join(observations.extra_columns)
+        )
         blocks = (_listing(basis, numbering.table(), caption),)
     return Section(ANCHORS[LISTING], LISTING, "Data listing", blocks)
 
@@ -190,7 +201,7 @@ def _listing(basis: Basis, label: str, caption: Prose) -> Listing:
             part = own[start : start + per_row]
             listed.append(
                 ListingRow(
-                    level=level.level if start == 0 else "",
+                    level=kept_together(level.level) if start == 0 else "",
                     count=_count(level.n) if start == 0 else "",
                     values=tuple((str(row.line), _as_typed(row), f"{shifts[id(row)]:.2f}pt") for row in part),
                     gaps=per_row - len(part),

@@ -14,6 +14,7 @@ from assayfolio.report.notation import Scale, decimal, equals, probability
 from assayfolio.report.prose import Prose, prose
 
 NOT_REGISTERED = "not pre-registered"
+EXPLORATORY = "Not pre-registered: every result is exploratory."
 DRAFT_SENTENCE = "draft unless every sign-off field on page 1 carries a valid signature"
 NO_SIGN_OFF = "the study plans no sign-off: this report carries no signatures"
 
@@ -100,3 +101,9 @@ def capitalised(text: str) -> str:
 def counted(number: int, singular: str, plural: str | None = None) -> str:
     """`number` with its noun."""
     return f"{number} {singular if number == 1 else plural or singular + 's'}"
+
+
+def first_of(names: list[str], most: int, separator: str) -> str:
+    """The first `most` of `names`, and how many more there are."""
+    rest = len(names) - most
+    return separator.join(names[:most]) + (f" and {rest} more" if rest > 0 else "")
