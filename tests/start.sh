@@ -54,4 +54,8 @@ done
 cd "$checkout"
 # The whole suite takes one process a core; whoever asks for a part of it may want to look over its shoulder.
 [ $# -gt 0 ] || set -- --numprocesses auto --dist loadfile --benchmark-disable
+# Processes that tests kill leave their part of the coverage behind; not in the checkout, nor for the next time.
+COVERAGE_FILE=$environment/coverage
+export COVERAGE_FILE
+rm -f "$COVERAGE_FILE"*
 exec "$environment/bin/pytest" --cov --cov-report=term "$@"
