@@ -1,6 +1,8 @@
 """Figures hold every value, say in words what they show, and are the same bytes each time."""
 
+import re
 import xml.etree.ElementTree as ET
+from dataclasses import replace
 from fractions import Fraction
 
 import pytest
@@ -8,6 +10,8 @@ import pytest
 from assayfolio.report.basis import Basis
 from assayfolio.report.diagnostics import blom_position, envelope, normal_plot, residual_plots
 from assayfolio.report.figures import FULL_WIDTH, MOST_ROWS, dot_plots, interval_plot
+from assayfolio.report.miniatures import WIDTH, comparison_axis, family_picture, means_picture
+from assayfolio.report.typeface import text_width
 from report.samples import CASES
 
 SVG = "{http://www.w3.org/2000/svg}"
@@ -109,3 +113,50 @@ def test_plotting_positions_are_those_of_blom():
 def test_the_envelope_in_the_middle_is_that_of_a_median():
     # sqrt(1/4 / N) / density(0) = sqrt(2 pi) / (2 sqrt(N))
     assert envelope(Fraction(1, 2), 0.0, 100, 1.0) == pytest.approx(0.12533141373155002)
+
+
+@pytest.mark.parametrize("case", [case for case in CASES if case != "without scatter"])
+def test_every_small_picture_has_its_dots_above_its_axis_and_its_words_within_its_width(case):
+    basis = Basis(CASES[case]())
+    axis = comparison_axis(basis)
+    pictures = [
+        means_picture(basis, ACCENT, "m.svg", "Table 2"),
+        *(
+            family_picture(basis, family, axis, ACCENT, "f.svg", "Table 12")
+            for family in basis.response.comparisons
+        ),
+    ]
+    for picture in pictures:
+        level = [
+            [float(place) for place in re.findall(r"[\d.]+", path.get("d"))]
+            for path in elements(picture.svg, "path")
+            if path.get("stroke-width") == "0.5"
+        ]
+        (line,) = [places for places in level if places[1] == places[3]]
+        dots = [float(circle.get("cx")) for circle in elements(picture.svg, "circle")]
+        assert dots
+        assert all(line[0] <= x <= line[2] for x in dots)
+        for text in elements(picture.svg, "text"):
+            assert text_width(text.text, 6.6) <= WIDTH
+
+
+def test_dots_without_names_say_where_the_names_are():
+    basis = Basis(CASES["many levels"]())
+    few = basis.response.comparisons[1].rows[:3]
+    family = replace(basis.response.comparisons[1], rows=few)
+    crowd = family_picture(
+        basis, basis.response.comparisons[0], comparison_axis(basis), ACCENT, "f.svg", "Table 5"
+    )
+    rows = family_picture(basis, family, comparison_axis(basis), ACCENT, "f.svg", "Table 6")
+    assert b"231 differences without intervals: see Table 5" in crowd.svg
+    assert b"difference, mg; in the order of Table 6" in rows.svg
+
+
+def test_shaded_squares_lie_between_the_first_and_the_last_value():
+    basis = Basis(CASES["large file"]())
+    by_order, _ = residual_plots(basis)
+    squares = elements(by_order.svg, "rect")
+    columns: dict[str, int] = {}
+    for square in squares:
+        columns[square.get("x")] = columns.get(square.get("x"), 0) + 1
+    assert min(columns.values()) > 5  # no value of a file in even order stands in a column of its own

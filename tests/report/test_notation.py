@@ -12,6 +12,7 @@ from assayfolio.report.notation import (
     decimal,
     equals,
     fixed,
+    kept_together,
     percent,
     probability,
     scientific,
@@ -205,3 +206,17 @@ def test_columns_align_where_the_decimal_point_stands_or_would_stand(text, parts
 
 def test_a_bound_is_not_introduced_by_an_equals_sign():
     assert [read(equals(text)) for text in ("0.0123", "< 1", "> 0.9999")] == ["= 0.0123", "< 1", "> 0.9999"]
+
+
+@pytest.mark.parametrize(
+    ("typed", "set_as"),
+    [
+        ("drying at 102 °C", "drying at 102\u00a0°C"),
+        ("5 mg/L of 20 % acid", "5\u00a0mg/L of 20\u00a0% acid"),
+        ("12 m² in 3 h", "12\u00a0m² in 3\u00a0h"),
+        ("kit 4 in use, 2 men, lot 7 granules", "kit 4 in use, 2 men, lot 7 granules"),
+        ("one °C", "one °C"),
+    ],
+)
+def test_a_number_is_kept_with_the_unit_that_follows_it(typed, set_as):
+    assert kept_together(typed) == set_as

@@ -45,7 +45,8 @@ def test_the_last_page_ends_with_an_end_mark(case, pages_of):
 
 
 REQUIRED_ON_THE_FIRST_PAGE = [
-    "Report on a planned comparison",
+    "Report on a comparison",
+    "Not pre-registered: every result is exploratory.",
     "Tarn Valley Water Laboratory",
     "3 Weir Lane, Tarn Valley",
     "Invented laboratory",
@@ -60,9 +61,12 @@ REQUIRED_ON_THE_FIRST_PAGE = [
     "mg/L",
     "simultaneous 95 %",
     "Equivalence was not tested.",
-    "24 received, 0 excluded, 24 analysed",
+    "24 received, 0 excluded, 24 analysed (this version has no exclusions)",
     "Deviations",
-    "none recorded",
+    "this version records none",
+    "level means, mg/L; in the order of Table 2",
+    "difference, mg/L; in the order of Table 5",
+    "difference, mg/L; in the order of Table 6",
     "Author",
     "Reviewer",
     "Approver",
@@ -93,6 +97,12 @@ REQUIRED_IN_THE_REPORT = [
     "Variance ratio F",
     "Within levels (residual)",
     "Everything that the plan asks for is reported.",
+    "This version records no deviations from the plan",
+    "this version has no exclusions and analyses every value in the file",
+    "each family keeps its own error rate",
+    "A mean that lies exactly between two printed figures is rounded to the even digit.",
+    "exploratory, as the plan was not pre-registered",
+    "Estimated difference (dot) with 95 % interval, kits against instruments.",
     # the method
     "Tukey–Kramer: adjusted p",
     "Holm: with the p values",
@@ -110,6 +120,8 @@ REQUIRED_IN_THE_REPORT = [
     "5 certified references were recomputed",
     "assayfolio verify runs/WTR-017/run-0001",
     "sha256sum -c manifest-sha256.txt",
+    "follow from the listing in section 9",
+    "signed on a copy outside the folio",
     "assayfolio run configs/nitrate.yaml",
     "findings.json (Findings",
 ]
@@ -137,6 +149,8 @@ def test_every_value_is_listed_beside_its_line(pages_of):
 def test_a_long_file_is_not_listed_but_named(pages_of):
     text = " ".join(pages_of("large file"))
     assert "The file has 6000 values; a listing stops at 600 and is left to the file itself" in text
+    assert "follow from the exact sums of each level (“sums” in findings.json)" in text
+    assert "follow from the listing" not in text
 
 
 def test_missing_inference_is_said_and_reasoned(pages_of):
@@ -182,6 +196,11 @@ def test_heads_of_tables_are_repeated_on_every_page_they_reach(pages_of):
 
 def test_further_answers_are_announced_on_the_first_page(pages_of):
     pages = pages_of("unequal")
-    announced = re.search(r"Answers to further planned questions \((\d+)\): page (\d+)", pages[0])
+    announced = re.search(r"Answers to further questions \((\d+)\): page (\d+)", pages[0])
     assert announced is not None
     assert "Answers, continued" in pages[int(announced[2]) - 1]
+
+
+@pytest.mark.parametrize("case", CASES)
+def test_every_first_page_says_that_results_are_exploratory(case, pages_of):
+    assert "Not pre-registered: every result is exploratory." in pages_of(case)[0]

@@ -9,6 +9,7 @@ from assayfolio.report.assets import template_folder
 from assayfolio.report.compose import compose
 from assayfolio.report.content import ReportContent
 from assayfolio.report.pages import html_of
+from assayfolio.report.prose import plain
 from report.samples import CASES
 
 FORBIDDEN = {
@@ -71,7 +72,7 @@ def test_every_planned_question_has_an_answer(case):
     content = CASES[case]()
     cards = compose(content).cards
     assert len(cards) == 1 + len(content.study.comparisons)
-    families = " | ".join("".join(span.text for span in card.family) for card in cards)
+    families = " | ".join(plain(card.family).replace("\u00a0", " ") for card in cards)
     assert all(plan.name in families for plan in content.study.comparisons)
 
 
@@ -110,3 +111,62 @@ def test_a_study_without_sign_off_says_so_instead_of_draft():
     assert content.sign_off == ()
     assert content.foot_left == "the study plans no sign-off: this report carries no signatures"
     assert content.sign_off_words == "No signatures are planned for this report."
+
+
+def words_of_section(case: str, number: int) -> str:
+    section = compose(CASES[case]()).sections[number - 1]
+    return " ".join(plain(block.words) for block in section.blocks if block.kind == "paragraph")
+
+
+def test_a_later_family_names_the_pairs_it_judges_otherwise():
+    words = words_of_section("unequal", 5)
+    assert words.count("here the verdict differs") == 4
+    assert (
+        "here the verdict differs from that in “all pairs” for "
+        "analyst 4 \u2212 analyst 5 (shown here), analyst 5 \u2212 analyst 6 (shown here)"
+    ) in words
+
+
+def test_families_that_agree_on_every_shared_pair_have_nothing_to_explain():
+    assert "the verdict differs" not in words_of_section("balanced", 5)
+
+
+def test_differences_of_percentages_are_in_percentage_points():
+    assert words_of_section("unequal", 5).count("in percentage points") == 6
+    assert "percentage points" not in words_of_section("balanced", 5)
+
+
+def test_only_comparisons_that_are_reported_are_referred_to():
+    captions = [
+        plain(block.caption)
+        for block in compose(CASES["without scatter"]()).sections[1].blocks
+        if block.kind == "figure"
+    ]
+    assert captions
+    assert not any("section 5" in caption for caption in captions)
+
+
+def test_a_card_names_up_to_four_pairs_and_counts_the_others():
+    lines = [plain(line) for card in compose(CASES["many levels"]()).cards for line in card.lines]
+    (shown,) = [line for line in lines if line.startswith("shown: ") and " more" in line]
+    assert re.fullmatch(
+        r"shown: (lot \d{3} \u2212 lot \d{3}; ){3}lot \d{3} \u2212 lot \d{3} and \d+ more", shown
+    )
+
+
+def test_a_card_names_fewer_pairs_where_the_names_are_long():
+    lines = [plain(line) for card in compose(CASES["long names"]()).cards for line in card.lines]
+    assert any(re.search(r"^shown: [^;]* and \d more$", line) for line in lines)
+
+
+def test_no_line_ends_between_a_number_and_its_unit():
+    html = html_of(compose(CASES["long names"]()), 1)
+    assert "at 254\u00a0nm, column kept at 40\u00a0°C" in html
+    seen = re.sub(r'alt="[^"]*"', "", html.split("<body>")[1])
+    assert "40 °C" not in seen
+
+
+def test_without_planned_signatures_nothing_is_said_about_signing():
+    signing = "signed on a copy outside the folio"
+    assert signing in words_of(compose(CASES["balanced"]()))
+    assert signing not in words_of(compose(CASES["single values"]()))

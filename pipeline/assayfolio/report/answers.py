@@ -33,6 +33,7 @@ from assayfolio.report.wording import (
 from assayfolio.study.plan import AgainstReference, AllPairs, Comparison
 
 _MOST_NAMED = 4
+_MOST_NAMED_CHARACTERS = 96
 
 
 def cards(basis: Basis, accent: str, tables: Mapping[str, str]) -> tuple[Card, ...]:
@@ -200,8 +201,16 @@ def _family_lines(basis: Basis, family: ComparisonFamily) -> list[Prose]:
     shown = [item for item in family.rows if item.verdict == DIFFERENCE_SHOWN]
     if 0 < len(shown) < len(family.rows):
         names = [basis.label(item) for item in shown]
-        lines.append(prose("shown: {names}", names=first_of(names, _MOST_NAMED, "; ")))
+        lines.append(prose("shown: {names}", names=first_of(names, _how_many_named(names), "; ")))
     return lines
+
+
+def _how_many_named(names: list[str]) -> int:
+    """How many of `names` a card holds: at most four, as far as two lines go, and one in any case."""
+    count = min(_MOST_NAMED, len(names))
+    while count > 1 and len("; ".join(names[:count])) > _MOST_NAMED_CHARACTERS:
+        count -= 1
+    return count
 
 
 def _foremost(family: ComparisonFamily) -> tuple[str, ComparisonRow]:

@@ -87,17 +87,33 @@ def _scatter(basis: Basis, across: list[Fraction], quantity: str | None, title: 
 
 
 def _cells(drawing: Drawing, places: list[tuple[float, float]]) -> None:
-    """Shaded squares: the darker, the more values lie in it."""
+    """Shaded squares that together reach from the first value to the last: the darker, the more values."""
+    columns, left, width = _classes([x for x, _ in places])
+    rows, top, height = _classes([y for _, y in places])
     counts: dict[tuple[int, int], int] = {}
-    for x, y in places:
-        cell = (int(x // _CELL), int(y // _CELL))
+    for cell in zip(columns, rows, strict=True):
         counts[cell] = counts.get(cell, 0) + 1
     most = max(counts.values())
     for (column, row), count in sorted(counts.items()):
         grey = 225 - round(160 * sqrt(count / most))
         drawing.box(
-            column * _CELL, row * _CELL, _CELL - 0.2, _CELL - 0.2, fill=f"#{grey:02x}{grey:02x}{grey:02x}"
+            left + column * width,
+            top + row * height,
+            width - 0.2,
+            height - 0.2,
+            fill=f"#{grey:02x}{grey:02x}{grey:02x}",
         )
+
+
+def _classes(places: list[float]) -> tuple[list[int], float, float]:
+    """The class of each place among equal ones from the least place to the largest, their start and width.
+
+    Classes on a fixed grid would cut off the first or the last values as a square of their own.
+    """
+    low, high = min(places), max(places)
+    count = max(1, round((high - low) / _CELL))
+    width = (high - low) / count or _CELL
+    return [min(count - 1, int((place - low) / width)) for place in places], low, width
 
 
 def blom_position(rank: int, total: int) -> Fraction:

@@ -73,7 +73,7 @@ def _family_words(basis: Basis, family: ComparisonFamily) -> Prose:
 
 def _other_verdicts(basis: Basis, family: ComparisonFamily) -> Prose:
     """Which pairs an earlier family holds, in either direction, with another verdict."""
-    sentences: list[Prose] = []
+    found: list[Prose] = []
     for earlier in basis.response.comparisons:
         if earlier is family:
             break
@@ -84,14 +84,12 @@ def _other_verdicts(basis: Basis, family: ComparisonFamily) -> Prose:
             if pair and before.get(frozenset(pair), row.verdict) != row.verdict:
                 names.append(f"{basis.label(row)} ({row_verdict(row.verdict)} here)")
         if names:
-            sentences.append(
-                prose(
-                    " Each family is judged by itself; the verdict differs from that in {earlier} for {names}.",
-                    earlier=f"“{earlier.name}”",
-                    names=first_of(names, _MOST_NAMED, "; "),
-                )
-            )
-    return joined(sentences, "")
+            listed = first_of(names, _MOST_NAMED, ", ")
+            found.append(prose("from that in “{earlier}” for {names}", earlier=earlier.name, names=listed))
+    if not found:
+        return ()
+    words = " Each family has its own question and its own error rate: here the verdict differs {found}."
+    return prose(words, found=joined(found, "; "))
 
 
 def _how_adjusted(family: ComparisonFamily) -> str:

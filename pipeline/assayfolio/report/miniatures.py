@@ -9,6 +9,7 @@ from assayfolio.report.figures import Picture, draw_interval
 from assayfolio.report.notation import MINUS
 from assayfolio.report.svg import SECOND_INK, THIN_LINE, Drawing
 from assayfolio.report.swarm import lanes, offsets
+from assayfolio.report.typeface import text_width
 
 WIDTH = 153.1  # 54 mm
 WIDTH_MM = 54.0
@@ -39,19 +40,24 @@ def _crowd(drawing: Drawing, places: list[float], accent: str) -> None:
 def _order(count: int, what: str, table: str, *, drawn_alone: bool) -> str:
     """Where the names of the rows stand; a crowd of dots has neither names nor intervals."""
     if drawn_alone:
-        return f"{count} {what}, without intervals; all in {table}"
-    return f"from the top: in the order of {table}" if count > 1 else ""
+        return f"{count} {what} without intervals: see {table}"
+    return f"in the order of {table}" if count > 1 else ""
 
 
-def _ticks(drawing: Drawing, axis: Axis, y: float, unit: str, order: str) -> None:
+def _below(unit: str, order: str) -> list[str]:
+    """The lines below an axis: its unit and where the names stand, on one line where both fit."""
+    together = f"{unit}; {order}" if order else unit
+    return [together] if text_width(together, _SIZE) <= WIDTH else [unit, order]
+
+
+def _ticks(drawing: Drawing, axis: Axis, y: float, words: list[str]) -> None:
     drawing.line(axis.start, y, axis.end, y, stroke=SECOND_INK, width=0.5)
     for tick, label in zip(axis.ticks, axis.labels, strict=True):
         x = axis.at(tick)
         drawing.line(x, y, x, y + 2, stroke=SECOND_INK, width=0.5)
         drawing.figures(x, y + 9, label, size=_SIZE, anchor="middle", fill=SECOND_INK)
-    drawing.text(WIDTH / 2, y + 18, unit, size=_SIZE, anchor="middle", fill=SECOND_INK)
-    if order:
-        drawing.text(WIDTH / 2, y + 26, order, size=_SIZE, anchor="middle", fill=SECOND_INK)
+    for number, line in enumerate(words):
+        drawing.text(WIDTH / 2, y + 18 + 8 * number, line, size=_SIZE, anchor="middle", fill=SECOND_INK)
 
 
 def family_picture(
@@ -65,8 +71,10 @@ def family_picture(
     many = len(rows) > _MOST_LINES
     pitch = max(3.4, min(7.2, 44.0 / len(rows)))
     body = 36.0 if many else pitch * len(rows) + 6
-    order = _order(len(rows), "differences", table, drawn_alone=many)
-    drawing = Drawing(WIDTH, body + (30 if order else 22))
+    scale = basis.difference_scale
+    unit = f"difference, {scale.heading}" if scale.heading else "difference"
+    words = _below(unit, _order(len(rows), "differences", table, drawn_alone=many))
+    drawing = Drawing(WIDTH, body + 14 + 8 * len(words))
     zero = axis.at(0)
     drawing.line(zero, 0, zero, body, stroke=SECOND_INK, width=THIN_LINE)
     if many:
@@ -77,8 +85,7 @@ def family_picture(
         if row.ci is not None:
             draw_interval(drawing, axis, y, row.ci, stroke=accent, cap=pitch * 0.26)
         drawing.dot(axis.at(row.estimate), y, min(1.7, pitch * 0.34), fill=accent)
-    scale = basis.difference_scale
-    _ticks(drawing, axis, body, f"difference, {scale.heading}" if scale.heading else "difference", order)
+    _ticks(drawing, axis, body, words)
     title = f"{len(rows)} estimates of {family.name} on a scale with zero; figures stand in section 5."
     return Picture(name, drawing.svg(title), title, WIDTH_MM)
 
@@ -92,8 +99,12 @@ def means_picture(basis: Basis, accent: str, name: str, table: str) -> Picture:
     many = len(levels) > _MOST_LINES
     pitch = max(3.4, min(7.2, 44.0 / len(levels)))
     body = 36.0 if many else pitch * len(levels) + 6
-    order = _order(len(levels), "means", table, drawn_alone=many)
-    drawing = Drawing(WIDTH, body + (30 if order else 22))
+    unit = "level means" + (
+        f" {MINUS} {basis.scale.mean(axis.origin).rstrip('0').rstrip('.')}" if axis.origin else ""
+    )
+    unit += f", {basis.scale.heading}" if basis.scale.heading else ""
+    words = _below(unit, _order(len(levels), "means", table, drawn_alone=many))
+    drawing = Drawing(WIDTH, body + 14 + 8 * len(words))
     if many:
         places = [axis.at(level.mean) for level in levels]
         _crowd(drawing, places, accent)
@@ -102,10 +113,6 @@ def means_picture(basis: Basis, accent: str, name: str, table: str) -> Picture:
         if level.ci is not None:
             draw_interval(drawing, axis, y, level.ci, stroke=accent, cap=pitch * 0.26)
         drawing.dot(axis.at(level.mean), y, min(1.7, pitch * 0.34), fill=accent)
-    unit = "level means" + (
-        f" {MINUS} {basis.scale.mean(axis.origin).rstrip('0').rstrip('.')}" if axis.origin else ""
-    )
-    unit += f", {basis.scale.heading}" if basis.scale.heading else ""
-    _ticks(drawing, axis, body, unit, order)
+    _ticks(drawing, axis, body, words)
     title = f"The means of the {len(levels)} levels with their intervals; figures stand in section 2."
     return Picture(name, drawing.svg(title), title, WIDTH_MM)

@@ -35,7 +35,10 @@ _WIDEST = 14
 
 Number = Exact | float | int
 
-_UNIT = r"(?:[°º][CF]|%|‰|pp[mbt]|[kMhcdmµμnp]?(?:mol|Pa|Hz|eV|Bq|Gy|Sv|bar|rad|ohm|[gLlmsKVAWJNSΩ])|min|h|d|kDa|rpm)"
+_UNIT = (
+    r"(?:[°º][CF]|%|‰|pp[mbt]|min|h|d|rpm|"
+    r"[kMhcdmµμnp]?(?:mol|Pa|Hz|eV|Da|Bq|Gy|Sv|bar|[gLlmsKVAWJNSΩ]))"
+)
 _BEFORE_UNIT = re.compile(rf"(?<=\d) (?={_UNIT}(?:[²³⁻¹]|(?!\w)))")
 
 

@@ -21,7 +21,6 @@ from assayfolio.report.tables import Column, Table, fits, lay_out
 from assayfolio.report.wording import alpha_words, counted
 from assayfolio.study.plan import AgainstReference, AllPairs, Comparison
 
-
 _LEVEL_WORDS = (
     "{alpha} for each family of comparisons; each family keeps its own error rate, so the same pair can be "
     "shown in one family and not in another"
@@ -157,9 +156,9 @@ def data_section(basis: Basis, numbering: Numbering, accent: str) -> Section:
     blocks: list[Block] = [
         Paragraph(
             prose(
-                "{total} received from {file}, 0 excluded, {total2} analysed; this version has no exclusions, "
-                "it analyses every value in the file. Values were read as exact decimals from their text "
-                "(columns separated by {separator}, decimal {mark}); at most {places} recorded.",
+                "{total} received from {file}, 0 excluded, {total2} analysed: this version has no "
+                "exclusions and analyses every value in the file. Values were read as exact decimals from "
+                "their text (columns separated by {separator}, decimal {mark}); at most {places} recorded.",
                 total=counted(basis.total, "value"),
                 total2=str(basis.total),
                 file=verbatim(observations.file),

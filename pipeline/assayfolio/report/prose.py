@@ -1,7 +1,8 @@
 """Words with a little emphasis: text in spans, so that nothing a user typed is ever taken for markup.
 
 Patterns are written by this package alone. In a pattern `*x*` is a symbol (italic), `#x#` strong, `~x~`
-quiet, `_x_` a subscript, `^x^` a superscript, and `{name}` a value put in as it is, never looked into for marks.
+quiet, `_x_` a subscript, `^x^` a superscript, and `{name}` a value put in as it is, never taken for
+marks.
 """
 
 import re
