@@ -174,3 +174,17 @@ def test_a_misspelt_data_file_is_hinted_at(tmp_path):
     answer = bench("check", bench.study)
     assert answer.code == 0
     assert "value.csv" in answer.out
+
+
+def test_among_many_checks_the_failed_ones_are_named_again_at_the_end(tmp_path):
+    bench = Bench(tmp_path / "w")
+    first = bench.run()
+    bench.run()
+    extra = first / "data/extra.txt"
+    extra.write_text("x")
+    answer = bench("verify")
+    assert answer.code == 1
+    *_, failed, counts = answer.out.splitlines()
+    assert failed.startswith("Failed: 3.")
+    assert "TST-1/run-0001" in failed
+    assert ", 0 failed," not in counts

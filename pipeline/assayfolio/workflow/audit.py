@@ -9,6 +9,9 @@ from assayfolio.evidence.trail import TrailReading, read_trail
 from assayfolio.evidence.verification import Verification, verify_lone_folios, verify_workspace
 from assayfolio.workflow.workspace import find_workspace
 
+ONE_SCREEN = 24
+"""From this many checks on, the failed ones are named again at the end."""
+
 
 def verify_all(named_workspace: Path | None, folios: Sequence[Path]) -> Verification:
     """Verify `folios`, or every folio of the workspace, and the whole trail.
@@ -32,6 +35,11 @@ def verification_lines(verification: Verification) -> list[str]:
     for outcome in verification.outcomes:
         lines.append(f"{outcome.number:<4}  {outcome.outcome:<{width}}  {outcome.subject}: {outcome.title}")
         lines.extend(f"      {'':<{width}}    {note}" for note in outcome.notes)
+    if len(verification.outcomes) > ONE_SCREEN:
+        lines.extend(
+            f"Failed: {outcome.number} {outcome.subject}: {outcome.title}"
+            for outcome in verification.with_outcome("failed")
+        )
     counts = _counts(verification)
     lines.append(", ".join(f"{count} {word}" for word, count in counts.items()))
     return lines
