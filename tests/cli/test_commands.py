@@ -1,6 +1,7 @@
 """The command line as a person meets it: help, versions, words for mistakes, exit codes."""
 
 import json
+import os
 import subprocess
 import sys
 
@@ -154,16 +155,24 @@ def test_a_program_gets_the_faults_as_json(tmp_path):
         assert answer.document["faults"][0]["line"] == 2
 
 
+def test_output_that_cannot_be_written_is_no_finding(tmp_path):
+    bench = Bench(tmp_path / "w")
+    bench.run()
+    command_line = [sys.executable, "-m", "assayfolio", "verify", "--workspace", bench.root]
+    with open("/dev/full", "w") as full:  # noqa: PTH123 - a device
+        ended = subprocess.run(command_line, stdout=full, stderr=subprocess.PIPE, text=True, check=False)
+    assert ended.returncode == 3
+    assert "Traceback" not in ended.stderr
+
+
 def test_a_reader_that_goes_away_is_no_finding(tmp_path):
     bench = Bench(tmp_path / "w")
     bench.run()
-    ended = subprocess.run(
-        f"{sys.executable} -m assayfolio trail --workspace '{bench.root}' --json > /dev/full",
-        shell=True,
-        capture_output=True,
-        text=True,
-        check=False,
-    )
+    reader, writer = os.pipe()
+    os.close(reader)
+    command_line = [sys.executable, "-m", "assayfolio", "verify", "--workspace", bench.root]
+    ended = subprocess.run(command_line, stdout=writer, stderr=subprocess.PIPE, text=True, check=False)
+    os.close(writer)
     assert ended.returncode == 3
     assert "Traceback" not in ended.stderr
 
