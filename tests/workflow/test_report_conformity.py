@@ -23,6 +23,7 @@ def tool(*arguments, cwd=None):
     return subprocess.run(arguments, cwd=cwd, capture_output=True, text=True, check=False)
 
 
+@pytest.mark.needs("sha256sum")
 @pytest.mark.parametrize("manifest", ["manifest-sha256.txt", "tagmanifest-sha256.txt"])
 def test_sha256sum_agrees_with_the_manifests(folio, manifest):
     ended = tool("sha256sum", "--strict", "-c", manifest, cwd=folio)
@@ -36,11 +37,13 @@ def test_an_independent_bagit_validator_agrees(folio, monkeypatch):
     bag.validate()
 
 
+@pytest.mark.needs("qpdf")
 def test_qpdf_finds_nothing_wrong(folio):
     ended = tool("qpdf", "--check", folio / "data/report.pdf")
     assert ended.returncode == 0, ended.stdout + ended.stderr
 
 
+@pytest.mark.needs("pdffonts")
 def test_all_fonts_are_embedded_and_of_one_family(folio):
     rows = tool("pdffonts", folio / "data/report.pdf").stdout.splitlines()[2:]
     assert rows
@@ -50,6 +53,7 @@ def test_all_fonts_are_embedded_and_of_one_family(folio):
         assert "Inter" in name
 
 
+@pytest.mark.needs("pdfinfo")
 def test_the_report_is_tagged_and_marked(folio):
     info = tool("pdfinfo", folio / "data/report.pdf").stdout
     assert "Tagged:          yes" in info
@@ -60,10 +64,12 @@ def test_the_report_is_tagged_and_marked(folio):
     assert "pdfuaid:part>1" in metadata or 'pdfuaid:part="1"' in metadata
 
 
+@pytest.mark.needs("verapdf")
 def test_the_report_conforms_to_pdf_a_3a_and_pdf_ua_1(folio):
     assert validate(folio / "data/report.pdf", ("3a", "ua1")) == []
 
 
+@pytest.mark.needs("pdfdetach")
 def test_study_data_and_findings_travel_inside_the_report(folio, tmp_path):
     tool("pdfdetach", "-saveall", "-o", tmp_path, folio / "data/report.pdf")
     for name, kept in (

@@ -2,6 +2,7 @@
 
 import hashlib
 import json
+import subprocess
 
 import pytest
 
@@ -252,3 +253,17 @@ def test_what_is_said_at_the_end_names_the_folio_as_the_person_can_reach_it(tmp_
     assert f"verify '{bench.runs / 'TST-1/run-0001'}'" in answer.out
     monkeypatch.chdir(bench.root)
     assert "verify runs/TST-1/run-0002" in bench("run", bench.study).out
+
+
+@pytest.mark.needs("pdftotext")
+def test_a_later_report_says_how_many_runs_came_before(tmp_path):
+    bench = Bench(tmp_path / "w")
+    texts = [
+        subprocess.run(
+            ["pdftotext", bench.run() / "data/report.pdf", "-"], capture_output=True, text=True, check=True
+        ).stdout
+        for _ in range(2)
+    ]
+    assert "none of this study" in texts[0]
+    assert "earlier runs of this study" not in texts[0]
+    assert "earlier runs of this study: 1" in texts[1]

@@ -130,11 +130,12 @@ def _facts(basis: Basis) -> tuple[Prose, ...]:
             alpha=alpha_words(basis),
         ),
         prose(
-            "{total} from {file} · run on {date} at {time} UTC by {actor}",
+            "{total} from {file} · run on {date} at {time} UTC by {actor}{earlier}",
             total=counted(basis.total, "value"),
             file=verbatim(basis.content.observations.file),
             date=run.started_utc[:10],
             time=run.started_utc[11:16],
             actor=run.actor,
+            earlier=f" · earlier runs of this study: {run.number - 1}" if run.number > 1 else "",
         ),
     )

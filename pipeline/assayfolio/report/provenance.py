@@ -13,7 +13,7 @@ from assayfolio.report.content import (
     Paragraph,
     Section,
 )
-from assayfolio.report.facts import InputFacts
+from assayfolio.report.facts import InputFacts, RunFacts
 from assayfolio.report.notation import kept_together, split_at_point
 from assayfolio.report.numbering import ANCHORS, LISTING, PROVENANCE, Numbering
 from assayfolio.report.prose import Prose, prose, verbatim
@@ -42,6 +42,7 @@ def provenance_section(basis: Basis) -> Section:
         Facts(
             (
                 _entry("Run", f"{run.study}, {run.label}"),
+                _entry("Earlier runs", _earlier_runs(run)),
                 _entry("Started", f"{_time(run.started_utc)} UTC, {_time(run.started_local)} local time"),
                 _entry("Started by", f"{run.actor} on {run.host}"),
                 _entry("Self-check", run.self_check),
@@ -86,6 +87,14 @@ def _time(rfc3339: str) -> str:
     """A time to the second: date, time of day, and the offset where there is one."""
     offset = rfc3339[-6:] if rfc3339[-6] in "+-" else ""
     return f"{rfc3339[:10]} {rfc3339[11:19]} {offset}".rstrip()
+
+
+def _earlier_runs(run: RunFacts) -> str:
+    """Numbers are gapless, so a run's own number says how many came before; their fate is in the trail."""
+    if run.number == 1:
+        return "none of this study"
+    count = counted(run.number - 1, "run")
+    return f"{count} of this study; the audit trail holds what each one read and what became of it"
 
 
 def _interpreter(python: str) -> str:
