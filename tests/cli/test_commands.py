@@ -155,23 +155,39 @@ def test_a_program_gets_the_faults_as_json(tmp_path):
         assert answer.document["faults"][0]["line"] == 2
 
 
-def test_output_that_cannot_be_written_is_no_finding(tmp_path):
+@pytest.mark.parametrize("unbuffered", ["", "1"])
+def test_output_that_cannot_be_written_is_no_finding(unbuffered, tmp_path):
     bench = Bench(tmp_path / "w")
     bench.run()
     command_line = [sys.executable, "-m", "assayfolio", "verify", "--workspace", bench.root]
     with open("/dev/full", "w") as full:  # noqa: PTH123 - a device
-        ended = subprocess.run(command_line, stdout=full, stderr=subprocess.PIPE, text=True, check=False)
+        ended = subprocess.run(
+            command_line,
+            stdout=full,
+            stderr=subprocess.PIPE,
+            text=True,
+            check=False,
+            env={**os.environ, "PYTHONUNBUFFERED": unbuffered},
+        )
     assert ended.returncode == 3
     assert "Traceback" not in ended.stderr
 
 
-def test_a_reader_that_goes_away_is_no_finding(tmp_path):
+@pytest.mark.parametrize("unbuffered", ["", "1"])
+def test_a_reader_that_goes_away_is_no_finding(unbuffered, tmp_path):
     bench = Bench(tmp_path / "w")
     bench.run()
     reader, writer = os.pipe()
     os.close(reader)
     command_line = [sys.executable, "-m", "assayfolio", "verify", "--workspace", bench.root]
-    ended = subprocess.run(command_line, stdout=writer, stderr=subprocess.PIPE, text=True, check=False)
+    ended = subprocess.run(
+        command_line,
+        stdout=writer,
+        stderr=subprocess.PIPE,
+        text=True,
+        check=False,
+        env={**os.environ, "PYTHONUNBUFFERED": unbuffered},
+    )
     os.close(writer)
     assert ended.returncode == 3
     assert "Traceback" not in ended.stderr

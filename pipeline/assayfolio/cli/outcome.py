@@ -37,6 +37,17 @@ def complain(text: str) -> None:
     click.echo(printable(text), err=True)
 
 
+def _drop_output() -> None:
+    """Send what is still waiting to be written nowhere: the interpreter's end would only fail on it again."""
+    try:
+        descriptor = sys.stdout.fileno()
+    except (OSError, ValueError):
+        return  # not a file of the system
+    nowhere = os.open(os.devnull, os.O_WRONLY)
+    os.dup2(nowhere, descriptor)
+    os.close(nowhere)
+
+
 def _error_document(error: AssayfolioError) -> dict[str, object]:
     faults = error.faults if isinstance(error, InputError) else ()
     return {
@@ -75,14 +86,13 @@ def run_command(command: click.Command, arguments: Sequence[str] | None, name: s
             say(json.dumps(_error_document(error), ensure_ascii=False, indent=1))
         return int(error.exit_code)
     except SystemExit:  # the library's answer to a reader of our output that has gone
+        _drop_output()
         return int(ExitCode.MACHINE)
     except (click.Abort, KeyboardInterrupt):
         complain("Stopped by the person who started it.")
         return int(ExitCode.MACHINE)
-    except BrokenPipeError:
-        sys.stderr.close()  # the reader of our output has gone; there is nobody to tell
-        return int(ExitCode.MACHINE)
     except OSError as error:
+        _drop_output()
         complain(f"The machine refused a file operation: {error}.")
         return int(ExitCode.MACHINE)
     except Exception:  # noqa: BLE001 - the last resort: a fault of ours, told with its traceback
