@@ -12,7 +12,6 @@ INK = "#1d2429"
 SECOND_INK = "#5b666d"
 DOT_INK = "#616669"  # ink at 70 % on white
 HAIRLINE = "#c9d0d4"
-PAPER = "#ffffff"
 
 HAIR = 0.45
 THIN_LINE = 0.7

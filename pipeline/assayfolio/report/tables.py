@@ -9,7 +9,6 @@ from assayfolio.report.prose import Prose, Words, as_prose, plain
 from assayfolio.report.typeface import POINTS_PER_MM, figures_width, text_width
 
 TEXT_WIDTH_MM = 164.0
-_BODY = 8.4
 _HEAD = 0.9  # of the size of the body
 _GAP = 3.4
 _EASY_TEXT = 34.0

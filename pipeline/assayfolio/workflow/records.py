@@ -6,6 +6,7 @@ from pathlib import Path
 from typing import Any
 
 from assayfolio.canonical import Json, sha256_hex
+from assayfolio.evidence.history import run_name
 from assayfolio.evidence.trail import TrailHead
 from assayfolio.findings import Findings, findings_bytes
 from assayfolio.report.facts import AttachedFile, InputFacts, ReportInput, RunFacts
@@ -37,7 +38,7 @@ def run_record(
         "format": RUN_FORMAT,
         "study": intake.study.study,
         "number": number,
-        "run": f"run-{number:04d}",
+        "run": run_name(number),
         "started": surroundings.started_utc,
         "started_local": surroundings.started_local,
         "actor": surroundings.actor,

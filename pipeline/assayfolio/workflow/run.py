@@ -16,7 +16,7 @@ from assayfolio.errors import AssayfolioError, InputError, MachineError
 from assayfolio.evaluation import evaluate
 from assayfolio.evidence.environment import environment_record
 from assayfolio.evidence.folio import folio_lock, stage_folio
-from assayfolio.evidence.history import next_number
+from assayfolio.evidence.history import next_number, run_name, run_subject, trail_extract
 from assayfolio.evidence.trail import TrailEntry, TrailHead, open_trail
 from assayfolio.findings import Findings, findings_bytes
 from assayfolio.report.loading import load_renderer
@@ -70,11 +70,11 @@ class _Run:
 
     @property
     def name(self) -> str:
-        return f"run-{self.number:04d}"
+        return run_name(self.number)
 
     @property
     def subject(self) -> str:
-        return f"{self.intake.study.study}/{self.name}"
+        return run_subject(self.intake.study.study, self.number)
 
     @property
     def folder(self) -> Path:
@@ -200,7 +200,7 @@ def _seal_completed(run: _Run, findings: Findings) -> RunOutcome:
 def _seal(run: _Run, outcome: str) -> tuple[Path, str]:
     run.payload["data/run.json"] = canonical_bytes(run.record)
     run.enter("staged", Step.STAGE, {"files": len(run.payload) + 1})
-    run.payload["data/trail.jsonl"] = b"".join(entry.line + b"\n" for entry in run.entries)
+    run.payload["data/trail.jsonl"] = trail_extract(run.entries)
     staged = stage_folio(run.folder, run.name, run.payload, bag_info(run.intake, run.surroundings, run.name))
     run.progress(Step.STAGE, f"{len(run.payload)} files written and read back")
     run.enter("sealed", Step.SEAL, {"seal": staged.seal, "outcome": outcome})
