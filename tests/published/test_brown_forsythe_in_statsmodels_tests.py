@@ -1,19 +1,20 @@
-"""The Brown-Forsythe test of equal variances on three groups.
+"""The two Brown-Forsythe tests, of equal variances and of equal means (F*), on three groups.
 
-Source: the test suite of statsmodels (test_oneway.py), whose values come from R. The test of means by the
-same authors (F*, its degrees of freedom and p) belongs to later work and is not compared.
+Source: the test suite of statsmodels (test_oneway.py), whose values come from R.
 """
 
-from assayfolio.statistics.checks import brown_forsythe_variances
-from support.reference import agrees_as_printed, decimals, examples
+from assayfolio.statistics.equal_variances import brown_forsythe_variances
+from assayfolio.statistics.welch import brown_forsythe_means
+from support.reference import agrees_as_printed, analysed, decimals, examples
 
 GROUPS = examples()["brown-forsythe-means"]
-NOT_COMPARED = {"F*", "denominator df", "p (df1 = k-1)"}
 
 
 def test_the_printed_figures():
     check = brown_forsythe_variances(decimals(GROUPS["data"]))
+    means = brown_forsythe_means(analysed(GROUPS["data"]))
     computed = {"median Levene statistic": check.f, "median Levene p": check.tail.p}
-    assert set(computed) == set(GROUPS["expected"]) - NOT_COMPARED
+    computed |= {"F*": means.f, "denominator df": means.df2, "p (df1 = k-1)": means.tail.p}
+    assert set(computed) == set(GROUPS["expected"])
     for quantity, value in computed.items():
         assert agrees_as_printed(value, GROUPS["expected"][quantity]), quantity

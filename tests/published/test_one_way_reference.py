@@ -12,7 +12,8 @@ from fractions import Fraction
 import pytest
 
 from assayfolio.exact import Root, to_double
-from assayfolio.statistics.comparisons import TWO_SIDED, compare, pair_estimates
+from assayfolio.statistics.comparisons import TWO_SIDED, compare
+from assayfolio.statistics.estimates import pair_estimates
 from assayfolio.statistics.inference import mean_interval, omnibus_test
 from assayfolio.statistics.oneway import OneWay
 from assayfolio.statistics.tails import t_isf
@@ -28,7 +29,7 @@ COMPARED = {
     *("df_between", "df_within", "ms_between", "ms_within", "exact_rational", "F", "p", "F_crit"),
     *("pooled_s", "t_crit", "mean_ci", "lsd", "eta2"),
 }
-# Effect sizes beyond the share of variation belong to later work.
+# Effect sizes beyond the share of variation are compared in test_effect_sizes_reference.py.
 NOT_COMPARED = {
     *("omega2", "omega2_truncated", "epsilon2", "epsilon2_truncated", "cohen_f", "effect_ci"),
 }

@@ -4,7 +4,8 @@ Source: the test suite of scipy (test_hypotests.py), which quotes an independent
 seven digits.
 """
 
-from assayfolio.statistics.comparisons import compare_tukey_kramer, pair_estimates
+from assayfolio.statistics.estimates import pair_estimates
+from assayfolio.statistics.simultaneous import compare_tukey_kramer
 from support.reference import agrees_as_printed, analysed, examples
 
 BRANDS = examples()["tukey-kramer-scipy"]

@@ -9,8 +9,9 @@ from math import log10, sqrt
 import pytest
 
 from assayfolio.exact import to_double
-from assayfolio.statistics.comparisons import compare_tukey_kramer, pair_estimates
 from assayfolio.statistics.distributions import studentized_range_isf
+from assayfolio.statistics.estimates import pair_estimates
+from assayfolio.statistics.simultaneous import compare_tukey_kramer
 from support.reference import analysed, cases_of, error_in_widths, relative_error, square_root
 
 CASES = cases_of("tukey_kramer")

@@ -12,6 +12,7 @@ from assayfolio.statistics.adjustment import (
     Tail,
     bonferroni,
     bonferroni_level,
+    hochberg,
     holm,
     sidak,
     sidak_level,
@@ -49,11 +50,40 @@ def test_sidak_lies_between_raw_and_bonferroni(raw):
 
 
 @given(tails)
-def test_holm_keeps_the_order_of_the_raw_p(raw):
-    adjusted = holm(raw)
+def test_hochberg_lies_between_raw_and_holm(raw):
+    for before, up, down in zip(raw, hochberg(raw), holm(raw), strict=True):
+        assert before.p <= up.p <= down.p
+        assert before.log10_p <= up.log10_p <= down.log10_p
+
+
+@given(tails)
+def test_hochberg_leaves_the_largest_as_it_is(raw):
+    largest = max(range(len(raw)), key=lambda at: raw[at].p)
+    assert hochberg(raw)[largest] == raw[largest]
+
+
+@given(tails, st.sampled_from([holm, hochberg]))
+def test_a_stepwise_method_keeps_the_order_of_the_raw_p(raw, stepwise):
+    adjusted = stepwise(raw)
     in_order = sorted(range(len(raw)), key=lambda at: raw[at].p)
     stepped = [adjusted[at].p for at in in_order]
     assert stepped == sorted(stepped)
+
+
+@given(tails, st.floats(0.001, 0.5))
+def test_hochberg_rejects_all_up_to_the_largest_that_meets_its_share_of_alpha(raw, alpha):
+    in_order = sorted(one.p for one in raw)
+    meeting = [at for at, p in enumerate(in_order) if p * (len(raw) - at) <= alpha]
+    rejected = [one.p for one in raw if meeting and one.p <= in_order[meeting[-1]]]
+    assert [
+        before.p for before, after in zip(raw, hochberg(raw), strict=True) if after.p <= alpha
+    ] == rejected
+
+
+def test_two_p_just_below_alpha_differ_by_hochberg_and_not_by_holm():
+    raw = [tail(0.04), tail(0.045)]
+    assert [one.p for one in hochberg(raw)] == [0.045, 0.045]
+    assert [one.p for one in holm(raw)] == [0.08, 0.08]
 
 
 @given(tails, st.randoms(use_true_random=False))
@@ -93,12 +123,15 @@ def test_sidak_where_p_is_too_small_for_a_double():
     assert found == Tail(0.0, pytest.approx(-399.0, abs=1e-12))
 
 
-def test_holm_and_bonferroni_where_p_is_too_small_for_a_double():
+def test_stepwise_and_bonferroni_where_p_is_too_small_for_a_double():
     raw = [Tail(0.0, -400.0), Tail(0.0, -500.0), Tail(0.2, log10(0.2))]
     assert [one.log10_p for one in bonferroni(raw)] == pytest.approx(
         [-400 + log10(3), -500 + log10(3), log10(0.6)]
     )
-    assert [one.log10_p for one in holm(raw)] == pytest.approx([-400 + log10(2), -500 + log10(3), log10(0.2)])
+    for stepwise in (holm, hochberg):
+        assert [one.log10_p for one in stepwise(raw)] == pytest.approx(
+            [-400 + log10(2), -500 + log10(3), log10(0.2)]
+        )
 
 
 @given(st.floats(1e-6, 0.5), st.integers(1, 500))

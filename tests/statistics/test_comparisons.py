@@ -8,22 +8,14 @@ from hypothesis import assume, given
 from hypothesis import strategies as st
 
 from assayfolio.exact import round_significant, to_double
-from assayfolio.statistics.comparisons import (
-    GREATER,
-    LESS,
-    TWO_SIDED,
-    centred_interval,
-    compare,
-    compare_tukey_kramer,
-    contrast_estimate,
-    pair_estimates,
-    reference_estimates,
-)
+from assayfolio.statistics.comparisons import GREATER, LESS, TWO_SIDED, centred_interval, compare
+from assayfolio.statistics.estimates import contrast_estimate, pair_estimates, reference_estimates
 from assayfolio.statistics.inference import omnibus_test
 from assayfolio.statistics.oneway import NotComputableError, OneWay
+from assayfolio.statistics.simultaneous import compare_tukey_kramer
+from support.drawn import ALTERNATIVES, excludes_zero
 from support.reference import analysed
 
-ALTERNATIVES = (TWO_SIDED, GREATER, LESS)
 LOTS = {
     "lot-1": ["10.1", "10.3", "10.0", "10.2"],
     "lot-2": ["10.9", "11.2", "11.0"],
@@ -133,10 +125,11 @@ def test_equal_means_are_no_difference_in_any_direction():
     assert tukey.statistic.sign == 0
 
 
+@pytest.mark.parametrize("adjust", ["holm", "hochberg"])
 @pytest.mark.parametrize("alternative", ALTERNATIVES)
-def test_holm_has_no_interval(alternative):
+def test_a_stepwise_method_has_no_interval(adjust, alternative):
     analysis = analysed(LOTS)
-    rows = compare(analysis, pair_estimates(analysis), "holm", alternative, 0.05)
+    rows = compare(analysis, pair_estimates(analysis), adjust, alternative, 0.05)
     assert all(row.interval is None for row in rows)
 
 
@@ -154,11 +147,6 @@ def test_without_variation_within_levels_nothing_is_compared(data):
         compare(analysis, pair, "none", TWO_SIDED, 0.05)
     with pytest.raises(NotComputableError, match="no error to compare with"):
         compare_tukey_kramer(analysis, pair, 0.05)
-
-
-def excludes_zero(interval: tuple[float | None, float | None]) -> bool:
-    lower, upper = interval
-    return (lower is not None and lower >= 0) or (upper is not None and upper <= 0)
 
 
 @given(

@@ -6,16 +6,12 @@ from hypothesis import given
 from hypothesis import strategies as st
 
 from assayfolio.exact import Decimal10, ExactSums
-from assayfolio.statistics.checks import brown_forsythe_variances
-from assayfolio.statistics.comparisons import (
-    TWO_SIDED,
-    compare,
-    compare_tukey_kramer,
-    pair_estimates,
-    reference_estimates,
-)
+from assayfolio.statistics.comparisons import TWO_SIDED, compare
+from assayfolio.statistics.equal_variances import brown_forsythe_variances
+from assayfolio.statistics.estimates import pair_estimates, reference_estimates
 from assayfolio.statistics.inference import omnibus_test
 from assayfolio.statistics.oneway import NotComputableError, OneWay, one_way
+from assayfolio.statistics.simultaneous import compare_tukey_kramer
 
 Data = dict[str, list[Decimal10]]
 

@@ -7,7 +7,8 @@ import pytest
 
 from assayfolio.exact import ExactSums, parse_decimal, to_double
 from assayfolio.statistics.adjustment import Tail
-from assayfolio.statistics.comparisons import TWO_SIDED, compare, pair_estimates
+from assayfolio.statistics.comparisons import TWO_SIDED, compare
+from assayfolio.statistics.estimates import pair_estimates
 from assayfolio.statistics.inference import mean_interval, omnibus_test, sd_interval
 from assayfolio.statistics.oneway import NotComputableError, one_way
 from support.reference import analysed

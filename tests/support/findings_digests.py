@@ -17,10 +17,12 @@ import numpy as np
 
 sys.path.insert(0, str(Path(__file__).resolve().parents[1]))
 
-from assayfolio.evaluation import evaluate
-from assayfolio.findings import Findings, findings_bytes
-from assayfolio.observations.reading import read_observations
+from assayfolio.evaluation.apply import evaluate
+from assayfolio.findings import Findings
+from assayfolio.findings_document import findings_bytes
+from assayfolio.observations.reading import read_all_observations
 from sources.nist import as_csv, read_dataset
+from support.every_option import PLANS, findings_with_every
 from support.studies import DEMO_STUDIES, demo_study, study_of
 
 NIST_HEAD = """\
@@ -40,15 +42,16 @@ checks: {equal-variances: brown-forsythe, normality: shapiro-wilk}
 
 
 def nist_findings(name: str) -> Findings:
-    """The findings of a study with every kind of comparison on one of NIST's data sets."""
+    """The findings of a study with several kinds of comparison on one of NIST's data sets."""
     study = study_of(NIST_PARTS, NIST_HEAD)
-    return evaluate(study, read_observations(as_csv(read_dataset(name)), study.data, study.data.file))
+    return evaluate(study, read_all_observations(as_csv(read_dataset(name)), study.data, study.data.file))
 
 
 def digests() -> dict[str, str]:
     """The SHA-256 of each study's findings."""
     found = {name: evaluate(*demo_study(name)) for name in DEMO_STUDIES}
     found |= {name: nist_findings(name) for name in ("SiRstv", "AtmWtAg", "SmLs07")}
+    found |= {option: findings_with_every(option) for option in PLANS}
     return {name: hashlib.sha256(findings_bytes(findings)).hexdigest() for name, findings in found.items()}
 
 

@@ -3,15 +3,22 @@
 from collections.abc import Mapping, Sequence
 from pathlib import Path
 
-from assayfolio.evaluation import evaluate
+from assayfolio.evaluation.apply import evaluate
 from assayfolio.findings import Findings
-from assayfolio.observations.reading import read_observations
+from assayfolio.observations.reading import read_all_observations
 from assayfolio.observations.values import Observations
 from assayfolio.study.plan import StudyDefinition
 from assayfolio.study.reading import read_study
 
 CONFIGS = Path(__file__).resolve().parents[2] / "configs"
-DEMO_STUDIES = ("brine-chloride", "whey-moisture")
+DEMO_STUDIES = (
+    "beet-syrup",
+    "brine-chloride",
+    "cider-vinegar",
+    "oat-drying",
+    "rye-flour",
+    "whey-moisture",
+)
 
 HEAD = """\
 study: TST-1
@@ -26,21 +33,46 @@ def study_of(parts: str = "", head: str = HEAD) -> StudyDefinition:
     return read_study((head + parts).encode(), "configs/study.yaml")
 
 
-def observations_of(study: StudyDefinition, data: Mapping[str, Sequence[str]]) -> Observations:
-    """The values of `data`, level by level, as a file of the study would give them."""
-    rows = [f"{level},{text}\n" for level, texts in data.items() for text in texts]
-    content = "".join([f"{study.data.factor},{study.data.response[0]}\n", *rows])
-    return read_observations(content.encode(), study.data, study.data.file)
+def observations_of(
+    study: StudyDefinition, data: Mapping[str, Sequence[str]], order: Sequence[int] = ()
+) -> tuple[Observations, ...]:
+    """The values of `data`, level by level, as a file of the study with one response would give them.
+
+    `order` is the measuring order of these rows, for a study that names a column with it.
+    """
+    return observations_of_each(study, {study.data.response[0]: data}, order)
 
 
-def findings_of(data: Mapping[str, Sequence[str]], parts: str = "") -> Findings:
+def observations_of_each(
+    study: StudyDefinition, data: Mapping[str, Mapping[str, Sequence[str]]], order: Sequence[int] = ()
+) -> tuple[Observations, ...]:
+    """The values of several responses, each level by level, as one file of the study would give them."""
+    levels = [level for level, texts in data[study.data.response[0]].items() for _ in texts]
+    columns = {study.data.factor: levels}
+    for response, by_level in data.items():
+        columns[response] = [text for texts in by_level.values() for text in texts]
+    if study.data.order is not None:
+        columns[study.data.order] = [str(position) for position in order]
+    rows = [columns, *zip(*columns.values(), strict=True)]
+    content = "".join(",".join(row) + "\n" for row in rows)
+    return read_all_observations(content.encode(), study.data, study.data.file)
+
+
+def findings_of(data: Mapping[str, Sequence[str]], parts: str = "", head: str = HEAD) -> Findings:
     """The findings of a study with `parts` on `data`."""
-    study = study_of(parts)
+    study = study_of(parts, head)
     return evaluate(study, observations_of(study, data))
 
 
-def demo_study(name: str) -> tuple[StudyDefinition, Observations]:
+def findings_of_each(data: Mapping[str, Mapping[str, Sequence[str]]], parts: str = "") -> Findings:
+    """The findings of a study of several responses with `parts` on `data`."""
+    head = HEAD.replace("content", f"[{', '.join(data)}]")
+    study = study_of(parts, head)
+    return evaluate(study, observations_of_each(study, data))
+
+
+def demo_study(name: str) -> tuple[StudyDefinition, tuple[Observations, ...]]:
     """A study of the demonstration laboratory, with its data."""
     study = read_study((CONFIGS / f"{name}.yaml").read_bytes(), f"configs/{name}.yaml")
     content = (CONFIGS / study.data.file).read_bytes()
-    return study, read_observations(content, study.data, study.data.file)
+    return study, read_all_observations(content, study.data, study.data.file)

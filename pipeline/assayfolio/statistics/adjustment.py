@@ -1,8 +1,9 @@
 """Adjustment of p-values and of interval levels for the size of a family.
 
 A tail is a pair: the probability itself, and its base-10 logarithm, which stays finite where the probability
-is too small for a double. Sources: Bonferroni's inequality; Sidak 1967 (J. Am. Stat. Assoc. 62, 626);
-Holm 1979 (Scand. J. Stat. 6, 65). Formulas from memory.
+is too small for a double. What each method assumes about the tests of a family is said with it. Sources:
+Bonferroni's inequality; Sidak 1967 (J. Am. Stat. Assoc. 62, 626); Holm 1979 (Scand. J. Stat. 6, 65);
+Hochberg 1988 (Biometrika 75, 800). Formulas from memory.
 """
 
 from collections.abc import Callable, Sequence
@@ -39,7 +40,7 @@ def unadjusted(tails: Sequence[Tail]) -> tuple[Tail, ...]:
 
 
 def bonferroni(tails: Sequence[Tail]) -> tuple[Tail, ...]:
-    """Each tail times the size of the family, at most 1."""
+    """Each tail times the size of the family, at most 1; holds under any dependence of the tests."""
     return tuple(_times(tail, len(tails)) for tail in tails)
 
 
@@ -49,15 +50,38 @@ def sidak(tails: Sequence[Tail]) -> tuple[Tail, ...]:
 
 
 def holm(tails: Sequence[Tail]) -> tuple[Tail, ...]:
-    """Holm's step-down: the i-th smallest of m tails times m - i + 1, never below the one before it."""
-    order = sorted(range(len(tails)), key=lambda index: (tails[index].p, tails[index].log10_p, index))
+    """Holm's step-down: the i-th smallest of m tails times m - i + 1, never below the one before it.
+
+    Holds under any dependence of the tests, and is never above Bonferroni's.
+    """
     adjusted: list[Tail] = list(tails)
     floor = Tail(0.0, float("-inf"))
-    for rank, index in enumerate(order):
+    for rank, index in enumerate(_rising(tails)):
         stepped = _times(tails[index], len(tails) - rank)
         floor = Tail(max(floor.p, stepped.p), max(floor.log10_p, stepped.log10_p))
         adjusted[index] = floor
     return tuple(adjusted)
+
+
+def hochberg(tails: Sequence[Tail]) -> tuple[Tail, ...]:
+    """Hochberg's step-up: the i-th smallest of m tails times m - i + 1, never above the one after it.
+
+    Assumes that the tests are independent or positively dependent, as Simes' inequality asks. Tests of
+    several levels against one reference are positively correlated; for all pairs of means, some of which are
+    negatively correlated, the inequality is not proved. Never above Holm's, which assumes nothing.
+    """
+    adjusted: list[Tail] = list(tails)
+    ceiling = Tail(1.0, 0.0)
+    for rank, index in reversed(list(enumerate(_rising(tails)))):
+        stepped = _times(tails[index], len(tails) - rank)
+        ceiling = Tail(min(ceiling.p, stepped.p), min(ceiling.log10_p, stepped.log10_p))
+        adjusted[index] = ceiling
+    return tuple(adjusted)
+
+
+def whole_level(alpha: float, _size: int) -> float:
+    """The level of an interval that stands by itself: alpha, whatever the size of the family."""
+    return alpha
 
 
 def bonferroni_level(alpha: float, size: int) -> float:
@@ -75,7 +99,19 @@ P_ADJUSTMENTS: dict[str, Callable[[Sequence[Tail]], tuple[Tail, ...]]] = {
     "bonferroni": bonferroni,
     "sidak": sidak,
     "holm": holm,
+    "hochberg": hochberg,
 }
+
+INTERVAL_LEVELS: dict[str, Callable[[float, int], float]] = {
+    "none": whole_level,
+    "bonferroni": bonferroni_level,
+    "sidak": sidak_level,
+}
+"""The level of each interval of a family of a size, for the adjustments that have simultaneous intervals."""
+
+
+def _rising(tails: Sequence[Tail]) -> list[int]:
+    return sorted(range(len(tails)), key=lambda index: (tails[index].p, tails[index].log10_p, index))
 
 
 def _times(tail: Tail, factor: int) -> Tail:

@@ -4,6 +4,7 @@ The error term is pooled: s^2 = MS within on N - k degrees of freedom for every 
 """
 
 from dataclasses import dataclass
+from functools import lru_cache
 from math import sqrt
 
 from assayfolio.exact import Root, round_significant, to_double
@@ -48,7 +49,7 @@ def variance_ratio_tail(analysis: OneWay) -> Tail:
 
 def mean_interval(analysis: OneWay, level: LevelSummary, alpha: float) -> tuple[float, float]:
     """The 1 - alpha interval for one level's mean: mean -+ t(N - k) * s / sqrt(n_i), s pooled."""
-    t = float(t_isf(alpha / 2, analysis.df_within))
+    t = _t_point(alpha / 2, analysis.df_within)
     se = Root.of(analysis.ms_within / level.n)
     return centred_interval(level.mean, t * to_double(se))
 
@@ -61,6 +62,16 @@ def sd_interval(level: LevelSummary, alpha: float) -> tuple[float, float] | None
     if level.n < 2 or not level.ss:
         return None
     ss = to_double(level.ss)
-    df = level.n - 1
-    upper_point, lower_point = float(chi2_isf(alpha / 2, df)), float(chi2_ppf(alpha / 2, df))
+    upper_point, lower_point = _chi2_points(alpha / 2, level.n - 1)
     return round_significant(sqrt(ss / upper_point)), round_significant(sqrt(ss / lower_point))
+
+
+# The levels of a study share their points, which are roots of equations and cost a millisecond each.
+@lru_cache(maxsize=256)
+def _t_point(tail: float, df: int) -> float:
+    return float(t_isf(tail, df))
+
+
+@lru_cache(maxsize=256)
+def _chi2_points(tail: float, df: int) -> tuple[float, float]:
+    return float(chi2_isf(tail, df)), float(chi2_ppf(tail, df))

@@ -11,7 +11,7 @@ from typing import Final
 
 import numpy as np
 
-from assayfolio.statistics.arguments import Floats
+from assayfolio.statistics.arguments import Floats, Places
 
 _NEWTON_STEPS: Final = 8
 _BLOCK: Final = 16_384
@@ -81,7 +81,7 @@ class PiecewiseCurve:
         return PiecewiseCurve(start, width, coefficients)
 
     def __call__(self, x: Floats) -> Floats:
-        """The function at `x`; beyond either end, its value there. Method: Clenshaw's recurrence."""
+        """The function at `x`; beyond either end, its value there."""
         flat = x.reshape(-1)
         out = np.empty_like(flat)
         for begin in range(0, flat.size, _BLOCK):
@@ -92,10 +92,17 @@ class PiecewiseCurve:
         pieces = self.coefficients.shape[1]
         place = np.clip((x - self.start) / self.width, 0, pieces)
         piece = np.minimum(place.astype(np.intp), pieces - 1)
-        t = 2 * (place - piece) - 1
-        twice = 2 * t
-        later, latest = np.zeros_like(x), np.zeros_like(x)
-        for row in self.coefficients[:0:-1]:
-            later, latest = row[piece] + twice * later - latest, later
-        values: Floats = self.coefficients[0][piece] + t * later - latest
-        return values
+        return chebyshev_sums(self.coefficients, piece, 2 * (place - piece) - 1)
+
+
+def chebyshev_sums(coefficients: Floats, piece: Places, t: Floats) -> Floats:
+    """The Chebyshev series in the columns `piece` of `coefficients`, at `t` from -1 to 1.
+
+    Method: Clenshaw's recurrence.
+    """
+    twice = 2 * t
+    later, latest = np.zeros_like(t), np.zeros_like(t)
+    for row in coefficients[:0:-1]:
+        later, latest = row[piece] + twice * later - latest, later
+    values: Floats = coefficients[0][piece] + t * later - latest
+    return values

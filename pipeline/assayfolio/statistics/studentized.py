@@ -67,6 +67,24 @@ def interval_above(depth: Floats, half_df: float) -> Interval:
     return Interval(-low / 2, high / 2)
 
 
+def where_tail_counts(depth: float, flat: float, x: Floats, df: float) -> tuple[Interval, Floats]:
+    """Where h(xS), times the density of S, comes within exp(-`depth`) of its maximum; and that maximum's log.
+
+    log h(r) is near min(0, (`flat` - r^2)/2), as for the upper tail of an extreme of normal values. With that
+    in its place the logarithm of the integrand is the lesser of two curves, both solved in closed form.
+    """
+    half = df / 2
+    peak = 0.5 * math.log(df) - np.log(np.hypot(math.sqrt(df), x))
+    falling = df * peak + flat / 2
+    with np.errstate(divide="ignore"):
+        kink = 0.5 * np.log(flat) - np.log(x)
+    at_kink = np.minimum(kink, 0)
+    level = np.where(peak > kink, falling, -half * (np.expm1(2 * at_kink) - 2 * at_kink))
+    everywhere = interval_above(depth - level, half)
+    beyond = interval_above(depth - level + falling, half).moved(peak)
+    return everywhere.meeting(beyond), level
+
+
 def average_over_spread(
     integrand: Integrand, interval: Interval, scale: Floats, df: float, finest: float
 ) -> Averages:

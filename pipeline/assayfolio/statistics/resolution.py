@@ -1,0 +1,52 @@
+"""Whether the values are recorded finely enough for their own spread. It informs and never chooses."""
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+from fractions import Fraction
+from math import gcd
+from typing import Final
+
+from assayfolio.exact import Decimal10, Root
+from assayfolio.statistics.oneway import OneWay
+
+COARSE_FROM: Final = Fraction(1, 2)
+"""A step of more than this share of the pooled standard deviation is called coarse."""
+
+_DISTINCT_VALUES: Final = 8
+
+
+@dataclass(frozen=True, slots=True)
+class Resolution:
+    """The step in which the values are recorded, held against the pooled standard deviation.
+
+    `rounding_share` is the variance of rounding, step^2 / 12, divided by the pooled variance; None where
+    nothing varies within the levels.
+    """
+
+    step: Fraction
+    pooled_sd: Root
+    rounding_share: Fraction | None
+    coarse: bool
+
+
+def resolution(groups: Sequence[tuple[str, Sequence[Decimal10]]], analysis: OneWay) -> Resolution:
+    """The recorded step of all values, and whether it is coarse: step > s / 2, compared exactly.
+
+    The step is one unit of the finest recorded decimal place. Where at least 8 different values all differ by
+    multiples of a larger step (readings to 0.05, say), that step: fewer values may do so by chance. Rounding
+    to a step w adds w^2 / 12 to the variance (the uniform distribution); at w = s / 2 that is 2 % of s^2. The
+    limit of s / 2 is common practice without a source. Where nothing varies within the levels the step is
+    coarse.
+    """
+    exponent = min(value.exponent for _, values in groups for value in values)
+    units = {v.mantissa * 10 ** (v.exponent - exponent) for _, values in groups for v in values}
+    lowest = min(units)
+    multiple = gcd(*(one - lowest for one in units)) if len(units) >= _DISTINCT_VALUES else 1
+    step = multiple * Fraction(10) ** exponent
+    variance = analysis.ms_within
+    return Resolution(
+        step=step,
+        pooled_sd=Root.of(variance),
+        rounding_share=step**2 / 12 / variance if variance else None,
+        coarse=step**2 > COARSE_FROM**2 * variance,
+    )
