@@ -1,57 +1,99 @@
 """Whether a plan can be applied to the observations at hand; cheap enough for every check of a study."""
 
+from collections.abc import Iterator, Sequence
+
 from assayfolio.errors import DataError, Fault, Place
 from assayfolio.observations.values import Observations
-from assayfolio.study.plan import AllPairs, Comparison, Contrast, StudyDefinition
+from assayfolio.study.labels import shared_label
+from assayfolio.study.plan import (
+    AgainstReference,
+    AllPairs,
+    Comparison,
+    Contrast,
+    ContrastFamily,
+    StudyDefinition,
+    Trend,
+)
+from assayfolio.study.scores import trend_misfits
 
 
-def check_fit(study: StudyDefinition, observations: Observations) -> None:
-    """Raise DataError with all reasons why `study` cannot be applied to `observations`.
+def check_fit(study: StudyDefinition, observations: Sequence[Observations]) -> None:
+    """Raise DataError with all reasons why `study` cannot be applied to `observations`, one set a response.
 
-    Fewer than two levels, one value at every level (nothing from which the error could be estimated), and
-    comparisons that name a level the data do not have.
+    Fewer than two levels, one value at every level (nothing from which the error could be estimated), levels
+    that are named in the plan and absent from the data, trends over levels that have no number each, and
+    levels of which two pairs would bear the same label. All responses stand in the same rows, so that the
+    levels of the first are those of all.
     """
-    place = Place(observations.file)
-    faults = []
-    if len(observations.levels) < 2:
-        names = ", ".join(observations.levels)
-        faults.append(
-            Fault(
-                place,
-                f"the data have one level only ({names})",
-                "a comparison needs at least two; check the factor column",
-            )
-        )
-    elif len(observations.rows) == len(observations.levels):
-        faults.append(
-            Fault(
-                place,
-                "one value at every level: nothing varies within the levels, so no error can be estimated",
-                "at least one level needs two or more values",
-            )
-        )
-    faults.extend(_absent_levels(study, observations))
-    if faults:
-        raise DataError(f"{observations.file} does not fit the plan.", tuple(faults))
-
-
-def _absent_levels(study: StudyDefinition, observations: Observations) -> list[Fault]:
-    present = ", ".join(observations.levels)
-    return [
-        Fault(
-            plan.place,
-            f"comparison {plan.name!r} names the level {level!r}, which the data do not have",
-            f"the data have: {present}",
-        )
-        for plan in study.comparisons
-        for level in _named_levels(plan)
-        if level not in observations.levels
+    observed = observations[0]
+    faults = [
+        *_layout_faults(observed),
+        *_absent_levels(study, observed.levels),
+        *_trend_faults(study, observed.levels),
+        *_label_faults(study, observed),
     ]
+    if faults:
+        raise DataError(f"{observed.file} does not fit the plan.", tuple(faults))
 
 
-def _named_levels(plan: Comparison) -> tuple[str, ...]:
-    if isinstance(plan, AllPairs):
-        return ()
+def _layout_faults(observed: Observations) -> Iterator[Fault]:
+    place = Place(observed.file)
+    if len(observed.levels) < 2:
+        names = ", ".join(observed.levels)
+        found = f"the data have one level only ({names})"
+        yield Fault(place, found, "a comparison needs at least two; check the factor column")
+    elif len(observed.rows) == len(observed.levels):
+        found = "one value at every level: nothing varies within the levels, so no error can be estimated"
+        yield Fault(place, found, "at least one level needs two or more values")
+
+
+def _absent_levels(study: StudyDefinition, levels: tuple[str, ...]) -> Iterator[Fault]:
+    present = frozenset(levels)
+    for what, level, place in _named_levels(study):
+        if level not in present:
+            found = f"{what} names the level {level!r}, which the data do not have"
+            yield Fault(place, found, f"the data have: {', '.join(levels)}")
+
+
+def _named_levels(study: StudyDefinition) -> Iterator[tuple[str, str, Place]]:
+    """Each level that the plan names, with what names it and where that stands."""
+    for plan in study.comparisons:
+        for level in dict.fromkeys(_levels_in(plan)):
+            yield f"comparison {plan.name!r}", level, plan.place
+    for test in study.equivalence:
+        if test.against is not None:
+            yield f"equivalence test {test.name!r}", test.against, test.place
+    if study.spread is not None:
+        yield "`spread`", study.spread.against, study.spread.place
+    for criterion in study.criteria:
+        if criterion.level is not None:
+            yield f"the criterion on {criterion.quantity}", criterion.level, criterion.place
+
+
+def _levels_in(plan: Comparison) -> tuple[str, ...]:
+    if isinstance(plan, AgainstReference):
+        return (plan.against,)
     if isinstance(plan, Contrast):
         return tuple(level for level, _ in plan.weights)
-    return (plan.against,)
+    if isinstance(plan, ContrastFamily):
+        return tuple(level for contrast in plan.contrasts for level, _ in contrast.weights)
+    if isinstance(plan, Trend):
+        return tuple(level for level, _ in plan.scores)
+    return ()
+
+
+def _trend_faults(study: StudyDefinition, levels: tuple[str, ...]) -> Iterator[Fault]:
+    for plan in study.comparisons:
+        if isinstance(plan, Trend) and len(levels) > 1:
+            for misfit in trend_misfits(plan, levels):
+                found = f"comparison {plan.name!r}: `{misfit.key}` {misfit.found}"
+                yield Fault(plan.place, found, f"expected {misfit.expected}")
+
+
+def _label_faults(study: StudyDefinition, observed: Observations) -> Iterator[Fault]:
+    of_pairs = any(isinstance(plan, AllPairs) for plan in study.comparisons)
+    if of_pairs or any(test.pairs for test in study.equivalence):
+        both = shared_label(observed.levels)
+        if both is not None:
+            found = f"two pairs of levels would bear the same label {both!r}"
+            yield Fault(Place(observed.file), found, "rename the levels, without ' - ' in the names")

@@ -6,7 +6,7 @@ from dataclasses import replace
 import pytest
 
 from assayfolio.exact import Decimal10
-from assayfolio.observations.reading import read_observations
+from assayfolio.observations.reading import read_all_observations, read_observations
 from assayfolio.observations.values import Observations
 from assayfolio.study.plan import DataPlan
 
@@ -132,3 +132,54 @@ def test_the_first_of_several_responses_is_read_and_the_others_are_carried_along
     observations = read("method,nitrite,nitrate\nkit-a,0.1,1.1\n", plan)
     assert observations.response == "nitrate"
     assert observations.rows[0].extras == ("0.1",)
+
+
+TWO = replace(PLAN, response=("nitrate", "nitrite"))
+BOTH = "method,nitrite,day,nitrate\nkit-a,0.1,1,1.10\nkit-b,0.25,2,1.2\n"
+
+
+def test_every_response_has_its_values_in_the_order_of_the_plan_and_the_same_rows() -> None:
+    nitrate, nitrite = read_all_observations(BOTH.encode(), TWO, "data/nitrate.csv")
+    assert (nitrate.response, nitrite.response) == ("nitrate", "nitrite")
+    assert cells(nitrate) == [(2, "kit-a", "1.10"), (3, "kit-b", "1.2")]
+    assert cells(nitrite) == [(2, "kit-a", "0.1"), (3, "kit-b", "0.25")]
+    assert (nitrate.places, nitrite.places) == (2, 2)
+    assert nitrate.levels == nitrite.levels == ("kit-a", "kit-b")
+    assert nitrate.sha256 == nitrite.sha256
+
+
+def test_the_column_of_another_response_is_not_one_that_is_carried_along() -> None:
+    for observations in read_all_observations(BOTH.encode(), TWO, "data/nitrate.csv"):
+        assert observations.extra_columns == ("day",)
+        assert [row.extras for row in observations.rows] == [("1",), ("2",)]
+
+
+def test_one_response_is_read_as_a_set_of_one() -> None:
+    assert read_all_observations(GOOD.encode(), PLAN, "data/nitrate.csv") == (read(GOOD),)
+
+
+def test_replicates_are_counted_once_whatever_the_number_of_responses() -> None:
+    plan = replace(TWO, replicates=1)
+    assert len(read_all_observations(BOTH.encode(), plan, "data/nitrate.csv")) == 2
+
+
+ORDERED = replace(PLAN, order="position")
+
+
+def test_the_measuring_order_is_kept_with_each_value_and_not_carried_along() -> None:
+    observations = read("method,position,nitrate\nkit-a, 12 ,1\nkit-b,003,2\nkit-a,0,3\n", ORDERED)
+    assert [row.order for row in observations.rows] == [12, 3, 0]
+    assert observations.extra_columns == ()
+    assert [row.order for row in read(GOOD).rows] == [None, None, None]
+
+
+def test_both_responses_of_a_row_have_its_place_in_the_measuring_order() -> None:
+    plan = replace(TWO, order="day")
+    for observations in read_all_observations(BOTH.encode(), plan, "data/nitrate.csv"):
+        assert [row.order for row in observations.rows] == [1, 2]
+        assert observations.extra_columns == ()
+
+
+def test_a_measuring_order_without_a_plan_for_it_is_another_column() -> None:
+    observations = read("method,position,nitrate\nkit-a,1,1\nkit-b,1,2\n")
+    assert observations.extra_columns == ("position",)

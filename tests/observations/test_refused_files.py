@@ -6,7 +6,7 @@ from typing import NamedTuple
 import pytest
 
 from assayfolio.errors import DataError, ExitCode
-from assayfolio.observations.reading import read_observations
+from assayfolio.observations.reading import read_all_observations, read_observations
 from assayfolio.study.plan import DataPlan
 
 PLAN = DataPlan("data/nitrate.csv", ("nitrate",), "method", levels=("kit-a", "kit-b"))
@@ -14,6 +14,8 @@ COUNTED = replace(PLAN, replicates=2)
 COUNTED_BY_LEVEL = replace(PLAN, replicates=(("kit-a", 1), ("kit-b", 3)))
 OPEN = replace(PLAN, levels=None)
 COMMA = replace(PLAN, decimal_mark="comma")
+ORDERED = replace(PLAN, order="position")
+TWO = replace(PLAN, response=("nitrate", "nitrite"), order="position")
 GOOD = "method,nitrate\nkit-a,1.10\nkit-a,1.20\nkit-b,1.30\nkit-b,1.40\n"
 
 
@@ -456,7 +458,46 @@ FILES = [
     ),
 ]
 
-ALL = [*NUMBERS, *LEVELS, *COLUMNS, *ROWS, *FILES]
+PLACE = "a whole number of 1 to 9 digits"
+ORDERS = [
+    Bad(
+        f"{name} as a place in the measuring order",
+        f"method,nitrate,position\nkit-a,1,1\nkit-b,2,{cell}\n",
+        ":3:9",
+        f"column `position` {found}",
+        advice,
+        ORDERED,
+    )
+    for name, cell, found, advice in (
+        ("nothing", "", "is blank", PLACE),
+        ("a word", "last", "holds `last`", PLACE),
+        ("a decimal", "1.5", "holds `1.5`", PLACE),
+        ("a number below nought", "-2", "holds `-2`", PLACE),
+        ("digits of a script", "\u0662", "holds `\u0662`", PLACE),
+        ("ten digits", "1234567890", "holds `1234567890`", PLACE),
+        ("an earlier place", "01", "holds 1 a second time", "the first is on line 2"),
+    )
+]
+ORDERS += [
+    Bad(
+        "no column with the measuring order",
+        "method,nitrate,positon\nkit-a,1,1\n",
+        ":1:16",
+        "no column `position` in the header",
+        "the nearest name is `positon`",
+        ORDERED,
+    ),
+    Bad(
+        "the response as measuring order",
+        GOOD,
+        "",
+        "`nitrate` is named both as the response and as the measuring order",
+        "name two different columns",
+        replace(PLAN, order="nitrate"),
+    ),
+]
+
+ALL = [*NUMBERS, *LEVELS, *COLUMNS, *ROWS, *FILES, *ORDERS]
 
 
 def refused(content: str | bytes, plan: DataPlan = PLAN) -> DataError:
@@ -558,3 +599,54 @@ def test_what_is_shown_of_a_cell_is_short_and_visible() -> None:
     (fault,) = refused(with_row("kit-a,\x1b[31m" + "9" * 500)).faults
     assert "<U+001B>" in fault.found
     assert len(fault.found) < 200
+
+
+def refused_together(content: str, plan: DataPlan = TWO) -> list[tuple[str, str]]:
+    """Place and finding of every fault of a file with several responses."""
+    with pytest.raises(DataError) as caught:
+        read_all_observations(content.encode(), plan, "data/nitrate.csv")
+    return [
+        (str(fault.place).removeprefix("data/nitrate.csv:"), fault.found) for fault in caught.value.faults
+    ]
+
+
+def test_the_faults_of_all_responses_are_told_in_one_pass_and_in_the_order_of_the_file() -> None:
+    content = (
+        "nitrite,method,nitrate,position\n"
+        "x,kit-a,1,1\n"  # one response
+        ",kit-a,y,1\n"  # both, and the place a second time
+        "1,kit-c,2,3\n"  # an undeclared level
+        "1,,2,z\n"  # no level, no place
+        "1,kit-b,2\n"  # a cell is missing
+        "1,kit-b,2,5\n"
+    )
+    assert refused_together(content) == [
+        ("2:1", "column `nitrite` holds `x`: not a number"),
+        ("3:1", "column `nitrite` is blank"),
+        ("3:8", "column `nitrate` holds `y`: not a number"),
+        ("3:10", "column `position` holds 1 a second time"),
+        ("4:3", "level `kit-c` is not declared"),
+        ("5:3", "column `method` is blank"),
+        ("5:6", "column `position` holds `z`"),
+        ("6:9", "this row has 3 cells, the header 4"),
+    ]
+
+
+def test_every_missing_column_is_named_at_once() -> None:
+    faults = refused_together("method,nitrat,day\nkit-a,1,2\n")
+    assert {found.partition(" in the header")[0] for _, found in faults} == {
+        "no column `nitrate`",
+        "no column `nitrite`",
+        "no column `position`",
+    }
+
+
+def test_a_decimal_comma_is_ambiguous_in_every_response() -> None:
+    content = 'method,nitrate,nitrite\nkit-a,"1,5","2,5"\nkit-b,"1,5",2\n'
+    plan = replace(TWO, order=None, decimal_mark="comma")
+    assert refused_together(content, plan) == [("3:13", "column `nitrite` holds `2` without quotation marks")]
+
+
+def test_a_second_column_of_the_name_of_a_response_is_refused() -> None:
+    faults = refused_together("method,nitrate,nitrite,nitrite\nkit-a,1,2,3\n", replace(TWO, order=None))
+    assert faults == [("1:24", "column 4 has the same name as column 3: `nitrite`")]

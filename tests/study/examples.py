@@ -17,18 +17,19 @@ alpha: 0.05
 LEVELS = "  levels: [reference, north, south]\n"
 
 FULL = """\
-# What was planned for the chloride meters
+# What was planned for the halide meters
 study: CAL-2031-04
-title: "Chloride in process water: four instruments"
+title: "Halides in process water: four instruments"
 purpose: >
   To decide which bench instruments
   may stand in for the titrator.
 
 data:
-  file: data/chloride.csv
-  response: chloride
+  file: data/halides.csv
+  response: [chloride, bromide]
   factor: instrument
-  unit: mg/L
+  unit: {chloride: mg/L, bromide: "1"}
+  order: position
   levels: [titrator, probe-1, probe-2, 012]
   replicates: {titrator: 8, probe-1: 6, probe-2: 6, 012: 6}
   missing: refuse
@@ -37,6 +38,8 @@ data:
 design:
   effects: fixed
   variances: pooled
+  omnibus: f
+  across-responses: bonferroni
 alpha: 0.050
 comparisons:
   - name: each instrument against the titrator
@@ -48,19 +51,64 @@ comparisons:
     adjust: tukey-kramer
   - name: probes against the rest
     weights: {titrator: -1/2, 012: -0.5, probe-1: 0.5, probe-2: 1/2}
+  - name: two questions
+    contrasts:
+      - {name: probe against probe, weights: {probe-1: 1, probe-2: -1}}
+      - {name: 012 against titrator, weights: {012: 1, titrator: -1}}
+    adjust: hochberg
+    alternative: greater
+  - name: trend with age
+    trend: polynomial
+    degree: 3
+    scores: {titrator: 1/2, probe-1: 2, probe-2: 4.50, 012: 12}
+    adjust: sidak
 equivalence:
-  - {name: probes, against: titrator, margin: 0.5, margin-source: bench procedure 12}
-  - {name: pairs, pairs: all, lower: -0.2, upper: 1/3, adjust: holm, alpha: 0.025}
-  - {name: relative, against: titrator, margin-percent: 2.50}
-outliers: {test: grubbs}
-checks: {equal-variances: brown-forsythe, normality: shapiro-wilk}
-precision: {estimate: true, confidence: 0.90, varied: day and analyst}
-power: {difference: 0.5, sigma: 0.3, target: 0.9}
+  - {name: probes, against: titrator, margin: 0.5, margin-source: bench procedure 12, adjust: none}
+  - {name: every pair, pairs: all, lower: -0.2, upper: 1/3, adjust: holm, alpha: 0.025}
+  - {name: relative, against: titrator, margin-percent: 2.50, adjust: bonferroni}
+  - {name: askew, against: titrator, lower-percent: -5, upper-percent: 3, adjust: none, response: bromide}
+  - {name: not lower, against: titrator, non-inferiority: not-lower, margin: 0.1, adjust: holm}
+spread: {against: titrator, adjust: bonferroni}
+outliers: {test: [grubbs, grubbs-double]}
+checks: {equal-variances: [brown-forsythe, bartlett], normality: shapiro-wilk}
+precision: {estimate: true, confidence: 0.90, varied: instrument}
+power:
+  {difference: 0.5, sigma: 0.3, target: 0.9, true-difference: -0.1, allocation: control, response: chloride}
 criteria:
   - {quantity: repeatability-rsd, at-most: 2.0, unit: "%"}
+  - {quantity: level-mean, level: 012, at-least: 4, at-most: 5.5, unit: mg/L, response: chloride}
 sign-off:
   - {role: author, meaning: I measured as planned}
   - {role: reviewer, meaning: "I checked plan, data and figures"}
+"""
+
+SAMPLE = """\
+study: VOL-3
+title: A control vinegar over ten days
+data: {file: values.csv, response: acidity, factor: day, unit: g/L, replicates: 3}
+design: {effects: random}
+alpha: 0.05
+outliers: {test: cochran}
+precision: {estimate: true, varied: day and analyst, conditions: intermediate-precision}
+criteria:
+  - {quantity: total-rsd, at-most: 0.8}
+  - {quantity: between-sd, at-most: 1/10, unit: g/L}
+"""
+
+SEPARATE = """\
+study: SYR-2
+title: Three methods of unequal precision
+data: {file: values.csv, response: sugar, factor: method, levels: [reference, north, south]}
+design: {variances: separate, omnibus: brown-forsythe}
+alpha: 0.05
+comparisons:
+  - {name: pairs, pairs: all, adjust: games-howell}
+  - {name: to the reference, against: reference, adjust: holm, alternative: greater}
+  - {name: contrast, weights: {reference: 1, north: -1}}
+equivalence:
+  - {name: alike, against: reference, margin: 0.5, adjust: holm}
+spread: {against: reference, adjust: holm}
+criteria: [{quantity: level-sd, level: north, at-most: 2}]
 """
 
 
@@ -86,6 +134,11 @@ def _lines(reader: object, text: str | bytes) -> list[str]:
     except InputError as error:
         return [str(fault).removeprefix("plan.yaml:") for fault in error.faults]
     return []
+
+
+def planned(section: str) -> str:
+    """The smallest definition with three declared levels (line 7) and `section` from line 9 on."""
+    return edited(SMALLEST, "alpha", f"{LEVELS}alpha") + section
 
 
 def edited(text: str, old: str, new: str) -> str:

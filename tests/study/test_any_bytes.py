@@ -15,7 +15,7 @@ from assayfolio.study.plan import Laboratory, StudyDefinition
 from assayfolio.study.reading import read_laboratory, read_study
 from assayfolio.study.suggestions import edit_distance, nearest
 from assayfolio.study.vocabulary import STUDY_KEYS
-from study.examples import FULL, SMALLEST
+from study.examples import FULL, SAMPLE, SEPARATE, SMALLEST
 
 
 def lines_of(content: bytes) -> list[str]:
@@ -67,12 +67,13 @@ def test_any_text_of_marks_gives_a_plan_or_faults_inside_the_file(text: str) -> 
 def test_a_full_plan_with_a_passage_exchanged_gives_a_plan_or_faults_inside_the_file(
     data: st.DataObject,
 ) -> None:
-    start = data.draw(st.integers(0, len(FULL)))
-    end = data.draw(st.integers(start, min(len(FULL), start + 30)))
+    whole = data.draw(st.sampled_from([FULL, SAMPLE, SEPARATE]))
+    start = data.draw(st.integers(0, len(whole)))
+    end = data.draw(st.integers(start, min(len(whole), start + 30)))
     passage = data.draw(
         st.text(max_size=8) | st.sampled_from(["\n", ": ", "- ", "[", "}", "'", '"', "~", "\t"])
     )
-    answer_to((FULL[:start] + passage + FULL[end:]).encode("utf-8", errors="replace"))
+    answer_to((whole[:start] + passage + whole[end:]).encode("utf-8", errors="replace"))
 
 
 @given(st.lists(st.sampled_from(SMALLEST.splitlines(keepends=True)), max_size=14))
@@ -90,6 +91,15 @@ SCALARS = st.sampled_from(
         "-1",
         "1/3",
         "holm",
+        "sidak",
+        "scheffe",
+        "linear",
+        "polynomial",
+        "not-lower",
+        "level-sd",
+        "total-sd",
+        "separate",
+        "2",
         "true",
         "fixed",
         "random",
@@ -106,7 +116,33 @@ TREES = st.recursive(
         st.lists(inner, max_size=3)
         | st.dictionaries(
             st.sampled_from(
-                ["name", "against", "pairs", "weights", "adjust", "margin", "role", "a", "b", "file"]
+                [
+                    "name",
+                    "against",
+                    "pairs",
+                    "weights",
+                    "contrasts",
+                    "trend",
+                    "degree",
+                    "scores",
+                    "adjust",
+                    "alternative",
+                    "margin",
+                    "margin-percent",
+                    "lower",
+                    "non-inferiority",
+                    "response",
+                    "quantity",
+                    "level",
+                    "at-most",
+                    "effects",
+                    "variances",
+                    "across-responses",
+                    "role",
+                    "a",
+                    "b",
+                    "file",
+                ]
             ),
             inner,
             max_size=4,
@@ -200,3 +236,24 @@ def test_a_key_with_one_slip_suggests_a_known_key(key: str, data: st.DataObject)
         suggestion = nearest(slip, STUDY_KEYS)
         assert suggestion is not None
         assert edit_distance(slip, suggestion) <= 1
+
+
+NUMBERS = st.fractions(-50, 50, max_denominator=20)
+
+
+@given(st.lists(NUMBERS, min_size=2, max_size=6), st.integers(2, 7))
+def test_a_trend_is_planned_just_where_its_levels_have_different_numbers_and_are_enough(
+    scores: list[Fraction], degree: int
+) -> None:
+    levels = [f"level-{number}" for number in range(len(scores))]
+    trend = {"name": "t", "trend": "polynomial", "degree": degree, "adjust": "holm"}
+    plan: dict[str, Any] = {
+        "study": "A",
+        "title": "t",
+        "data": {"file": "v.csv", "response": "y", "factor": "f", "levels": levels},
+        "alpha": "0.05",
+        "comparisons": [{**trend, "scores": dict(zip(levels, map(str, scores), strict=True))}],
+    }
+    answer = answer_to(json.dumps(plan).encode())
+    fits = len(set(scores)) == len(scores) and degree < len(levels)
+    assert isinstance(answer, StudyDefinition) == fits

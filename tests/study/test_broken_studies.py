@@ -9,10 +9,14 @@ ALPHA = "expected a number above 0 and below 1, such as 0.05"
 LABEL = "expected one line of text of at most 80 characters"
 TITLE = "expected one line of text of at most 200 characters"
 IDENTIFIER = "expected 1 to 40 capital letters, digits and hyphens, such as LOT-2024-07"
+QUANTITIES = (
+    "repeatability-sd, repeatability-rsd, repeatability-limit, between-sd, between-rsd, total-sd, total-rsd, "
+    "largest-difference, largest-difference-percent, level-mean, level-sd or level-rsd"
+)
 COUNT = "expected a whole number from 1 to 1000000"
 TOP_KEYS = (
-    "study, title, purpose, data, design, alpha, comparisons, equivalence, outliers, checks, precision, "
-    "power, criteria, sign-off"
+    "study, title, purpose, data, design, alpha, comparisons, equivalence, spread, outliers, checks, "
+    "precision, power, criteria, sign-off"
 )
 TITLE_LINE = "Two balances and a reference"
 
@@ -99,7 +103,7 @@ ONE_FAULT = {
         "data: values.csv\n",
         (
             "3:7: `data` is `values.csv` - "
-            "expected a mapping with the keys file, response, factor, unit, levels, "
+            "expected a mapping with the keys file, response, factor, unit, order, levels, "
             "replicates, missing, below-limit and decimal-mark"
         ),
     ),
@@ -251,20 +255,18 @@ ONE_FAULT = {
         "design: {effects: fixd}\n",
         "8:19: `design.effects` is `fixd` - expected fixed or random; did you mean `fixed`?",
     ),
-    "comparisons of random levels": (
+    "an unknown omnibus test": (
         "",
-        "design: {effects: random}\ncomparisons: [{name: x, pairs: all, adjust: holm}]\n",
-        (
-            "9:1: `comparisons` compares levels, but with `design.effects: random` they are a mere sample - "
-            "use `precision` for the spread between levels, or `effects: fixed`"
-        ),
+        "design: {omnibus: anova}\n",
+        "8:19: `design.omnibus` is `anova` - expected f, welch or brown-forsythe",
     ),
-    "equivalence of random levels": (
+    "a method for false discoveries across responses": (
         "",
-        "design: {effects: random}\nequivalence: [{name: x, pairs: all, margin: 1}]\n",
+        "design: {across-responses: bh}\n",
         (
-            "9:1: `equivalence` compares levels, but with `design.effects: random` they are a mere sample - "
-            "use `precision` for the spread between levels, or `effects: fixed`"
+            "8:28: `design.across-responses` is `bh` - expected none, bonferroni or holm; methods that "
+            "control the rate of false discoveries are not offered, because planned comparisons and tests "
+            "are confirmatory"
         ),
     ),
     "an unknown check": (
@@ -276,12 +278,115 @@ ONE_FAULT = {
             "did you mean `levene`?"
         ),
     ),
+    "a check twice": (
+        "",
+        "checks: {normality: [shapiro-wilk, shapiro-wilk]}\n",
+        ("8:36: `checks.normality` holds `shapiro-wilk` twice - expected each once; it stands on line 8"),
+    ),
+    "an unknown check in a list": (
+        "",
+        "checks: {normality: [shapiro-wilk, shapiro-wilks]}\n",
+        (
+            "8:36: `checks.normality` is `shapiro-wilks` - expected shapiro-wilk or anderson-darling; "
+            "did you mean `shapiro-wilk`?"
+        ),
+    ),
+    "no check in the list": (
+        "",
+        "checks: {normality: []}\n",
+        (
+            "8:21: `checks.normality` is an empty list - expected a check, or a list of checks, "
+            "or leave the key out"
+        ),
+    ),
+    "a misspelt outlier test": (
+        "",
+        "outliers: {test: [grubbs, grubbs-duble]}\n",
+        (
+            "8:27: `outliers.test` is `grubbs-duble` - expected grubbs, grubbs-double or cochran; "
+            "did you mean `grubbs-double`?"
+        ),
+    ),
     "an outlier test as a word": (
         "",
         "outliers: grubbs\n",
         "8:11: `outliers` is `grubbs` - expected a mapping with the keys test",
     ),
+    "an order that is the response": (
+        "alpha",
+        "  order: mass\nalpha",
+        (
+            "7:3: the column `mass` is both `data.order` and `data.response` - "
+            "name the column that holds the measuring order"
+        ),
+    ),
+    "an order that is the factor": (
+        "alpha",
+        "  order: balance\nalpha",
+        (
+            "7:3: the column `balance` is both `data.order` and `data.factor` - "
+            "name the column that holds the measuring order"
+        ),
+    ),
+    "the unit of another response": (
+        "alpha",
+        "  unit: {mass: g, mas: mg}\nalpha",
+        (
+            "7:19: `data.unit` names `mas`, which is no response of the study - "
+            "expected one of `data.response`; did you mean `mass`?"
+        ),
+    ),
+    "a response without its unit": (
+        "response: mass\n  factor: balance",
+        "response: [mass, density]\n  factor: balance\n  unit: {mass: g}",
+        (
+            "7:9: `data.unit` gives no unit for `density` - "
+            'expected one for each response, "1" for a pure number'
+        ),
+    ),
+    "units as a list": (
+        "alpha",
+        "  unit: [g]\nalpha",
+        f"7:9: `data.unit` is a list - {LABEL}",
+    ),
+    "no unit within the braces": (
+        "alpha",
+        "  unit: {}\nalpha",
+        ("7:9: `data.unit` is an empty mapping - expected a unit for each response, or leave the key out"),
+    ),
     # precision, power, criteria, sign-off
+    "conditions of another name": (
+        "",
+        "design: {effects: random}\nprecision: {estimate: true, conditions: intermediate}\n",
+        (
+            "9:41: `precision.conditions` is `intermediate` - expected intermediate-precision or "
+            "reproducibility; did you mean `intermediate-precision`?"
+        ),
+    ),
+    "an unknown allocation": (
+        "",
+        "power: {difference: 1, sigma: 1, target: 0.9, allocation: even}\n",
+        "8:59: `power.allocation` is `even` - expected equal or control",
+    ),
+    "power for one of two responses that is not named": (
+        "response: mass\n  factor: balance\nalpha: 0.05\n",
+        (
+            "response: [mass, density]\n  factor: balance\nalpha: 0.05\n"
+            "power: {difference: 1, sigma: 1, target: 0.9}\n"
+        ),
+        (
+            "8:8: the key `power.response` is missing; the study has several responses - "
+            "add the one that `difference` and `sigma` are about"
+        ),
+    ),
+    "power for a response that is none": (
+        "",
+        "power: {difference: 1, sigma: 1, target: 0.9, response: masse}\n",
+        (
+            "8:57: `power.response` names `masse`, which is no response of the study - "
+            "expected one of `data.response`; did you mean `mass`?"
+        ),
+    ),
     "yes for true": (
         "",
         "precision: {estimate: yes}\n",
@@ -304,23 +409,84 @@ ONE_FAULT = {
     ),
     "a criterion without a limit": (
         "",
-        "criteria: [{quantity: repeatability-rsd}]\n",
+        "criteria: [{quantity: largest-difference}]\n",
         "8:12: an entry of `criteria` has no limit - write `at-most`, `at-least` or both",
     ),
     "a criterion that nothing can meet": (
         "",
-        "criteria: [{quantity: rsd, at-most: 1, at-least: 2}]\n",
+        "criteria: [{quantity: largest-difference, at-most: 1, at-least: 2}]\n",
         (
-            "8:40: `criteria.at-least` is above `criteria.at-most`, so that nothing can meet both - "
+            "8:55: `criteria.at-least` is above `criteria.at-most`, so that nothing can meet both - "
             "exchange or correct them"
         ),
     ),
     "a quantity in words": (
         "",
         "criteria: [{quantity: Relative SD, at-most: 1}]\n",
+        f"8:23: `criteria.quantity` is `Relative SD` - expected {QUANTITIES}",
+    ),
+    "a misspelt quantity": (
+        "",
+        "criteria: [{quantity: level_rsd, at-most: 1, level: north}]\n",
+        f"8:23: `criteria.quantity` is `level_rsd` - expected {QUANTITIES}; did you mean `level-rsd`?",
+    ),
+    "a criterion on a level without its name": (
+        "",
+        "criteria: [{quantity: level-sd, at-most: 1}]\n",
+        "8:12: the key `criteria.level` is missing; `level-sd` is about one level - add `level: ...`",
+    ),
+    "a criterion on all levels with the name of one": (
+        "",
+        "criteria: [{quantity: largest-difference, at-most: 1, level: north}]\n",
         (
-            "8:23: `criteria.quantity` is `Relative SD` - "
-            "expected a quantity in small letters, digits and hyphens, such as repeatability-rsd"
+            "8:55: `criteria.level` stands beside `largest-difference`, which is about all levels - "
+            "leave it out, or use a quantity such as `level-sd`"
+        ),
+    ),
+    "a relative criterion in a unit of mass": (
+        "",
+        "criteria: [{quantity: largest-difference-percent, at-most: 1, unit: g}]\n",
+        (
+            "8:69: `criteria.unit` is `g`, and `largest-difference-percent` is in percent - "
+            'expected "%", or leave the key out'
+        ),
+    ),
+    "a criterion in a unit that the data do not state": (
+        "",
+        "criteria: [{quantity: largest-difference, at-most: 1, unit: g}]\n",
+        (
+            "8:61: `criteria.unit` is `g`, and `data.unit` gives no unit for `mass` - "
+            "expected the unit under `data.unit`, or leave the key out"
+        ),
+    ),
+    "a criterion in another unit than the data": (
+        "  factor: balance\nalpha: 0.05\n",
+        (
+            "  factor: balance\n  unit: mg\nalpha: 0.05\n"
+            "criteria: [{quantity: largest-difference, at-most: 1, unit: g}]\n"
+        ),
+        (
+            "9:61: `criteria.unit` is `g`, and the unit of `mass` is `mg` - "
+            "expected `mg`, or leave the key out"
+        ),
+    ),
+    "a criterion in the unit of one of two responses": (
+        "response: mass\n  factor: balance\nalpha: 0.05\n",
+        (
+            "response: [mass, density]\n  factor: balance\n  unit: {mass: g, density: g/mL}\n"
+            "alpha: 0.05\ncriteria: [{quantity: largest-difference, at-most: 1, unit: g}]\n"
+        ),
+        (
+            "9:61: `criteria.unit` is `g`, and the unit of `density` is `g/mL` - "
+            "expected `g/mL`, or leave the key out; `response` limits a criterion to one response"
+        ),
+    ),
+    "a criterion on a response that is none": (
+        "",
+        "criteria: [{quantity: largest-difference, at-most: 1, response: density}]\n",
+        (
+            "8:65: `criteria.response` names `density`, which is no response of the study - "
+            "expected one of `data.response`"
         ),
     ),
     "a role twice": (
@@ -351,7 +517,8 @@ ONE_FAULT = {
         "comparisons: [all]\n",
         (
             "8:15: `comparisons` is `all` - "
-            "expected a mapping with the keys name, against, pairs, weights, adjust and alternative"
+            "expected a mapping with the keys name, against, pairs, weights, contrasts, trend, degree, "
+            "scores, adjust and alternative"
         ),
     ),
 }
@@ -378,7 +545,7 @@ outliers: {test: dixon}
         f"4:9: `data.file` is `/values.csv`, an absolute path - {PATH}",
         "6:3: the key `faktor` is not known in `data` - did you mean `factor`?",
         f"7:8: `alpha` is `5` - {ALPHA}",
-        "8:18: `outliers.test` is `dixon` - expected grubbs or cochran",
+        "8:18: `outliers.test` is `dixon` - expected grubbs, grubbs-double or cochran",
     ]
 
 

@@ -16,7 +16,10 @@ paper: Letter
 require: [unit, sign-off]
 wait-seconds: 0
 """
-REQUIREMENTS = "unit, purpose, levels, replicates, comparisons, checks or sign-off"
+REQUIREMENTS = (
+    "unit, order, levels, replicates, purpose, comparisons, equivalence, margin-source, checks, precision, "
+    "power or sign-off"
+)
 
 
 def test_every_setting_arrives_as_a_typed_value() -> None:

@@ -5,11 +5,13 @@ from fractions import Fraction
 import pytest
 
 from assayfolio.errors import Place
+from assayfolio.study import vocabulary
 from assayfolio.study.plan import (
     AgainstReference,
     AllPairs,
     ChecksPlan,
     Contrast,
+    ContrastFamily,
     Criterion,
     DataPlan,
     DesignPlan,
@@ -18,8 +20,13 @@ from assayfolio.study.plan import (
     PowerPlan,
     PrecisionPlan,
     SignOff,
+    SpreadPlan,
+    Trend,
+    WeightedSum,
 )
-from study.examples import FULL, LEVELS, SMALLEST, edited, faults_of, study_of
+from study.examples import FULL, LEVELS, SAMPLE, SEPARATE, SMALLEST, edited, faults_of, planned, study_of
+
+HALF = Fraction(1, 2)
 
 
 def at(line: int, column: int) -> Place:
@@ -34,82 +41,217 @@ def test_six_keys_are_enough_for_a_study() -> None:
         Fraction(1, 20),
     )
     assert study.data == DataPlan("values.csv", ("mass",), "balance")
-    assert study.design == DesignPlan("fixed", "pooled")
-    assert study.checks == ChecksPlan(None, None)
-    assert (study.purpose, study.outliers, study.precision, study.power) == (None, None, None, None)
+    assert study.design == DesignPlan("fixed", "pooled", "f", "none")
+    assert study.checks == ChecksPlan((), ())
+    assert (study.purpose, study.spread, study.outliers, study.precision, study.power) == (None,) * 5
     assert study.comparisons == study.equivalence == study.criteria == study.sign_off == ()
 
 
 def test_every_part_of_a_full_definition_arrives_as_a_typed_value() -> None:
     study = study_of(FULL)
-    assert study.title == "Chloride in process water: four instruments"
+    assert study.title == "Halides in process water: four instruments"
     assert study.purpose == "To decide which bench instruments may stand in for the titrator."
     assert study.data == DataPlan(
-        file="data/chloride.csv",
-        response=("chloride",),
+        file="data/halides.csv",
+        response=("chloride", "bromide"),
         factor="instrument",
-        unit="mg/L",
+        unit=None,
+        units=(("chloride", "mg/L"), ("bromide", "1")),
+        order="position",
         levels=("titrator", "probe-1", "probe-2", "012"),
         replicates=(("titrator", 8), ("probe-1", 6), ("probe-2", 6), ("012", 6)),
         missing="refuse",
         below_limit="refuse",
         decimal_mark="comma",
     )
-    assert study.outliers == OutlierPlan("grubbs", at(36, 11))
-    assert study.checks == ChecksPlan("brown-forsythe", "shapiro-wilk")
-    assert study.precision == PrecisionPlan(True, Fraction(9, 10), "day and analyst", at(38, 12))
-    assert study.power == PowerPlan(Fraction(1, 2), Fraction(3, 10), Fraction(9, 10), at(39, 8))
-    assert study.criteria == (Criterion("repeatability-rsd", Fraction(2), None, "%", at(41, 5)),)
+    assert study.design == DesignPlan("fixed", "pooled", "f", "bonferroni")
+    assert study.spread == SpreadPlan("titrator", "bonferroni", at(52, 9))
+    assert study.outliers == OutlierPlan(("grubbs", "grubbs-double"), at(53, 11))
+    assert study.checks == ChecksPlan(("brown-forsythe", "bartlett"), ("shapiro-wilk",))
+    assert study.precision == PrecisionPlan(True, Fraction(9, 10), "instrument", None, at(55, 12))
+    assert study.power == PowerPlan(
+        HALF, Fraction(3, 10), Fraction(9, 10), Fraction(-1, 10), "control", "chloride", at(57, 3)
+    )
+    assert study.criteria == (
+        Criterion("repeatability-rsd", Fraction(2), None, "%", None, None, at(59, 5)),
+        Criterion("level-mean", Fraction(11, 2), Fraction(4), "mg/L", "012", "chloride", at(60, 5)),
+    )
     assert study.sign_off == (
         SignOff("author", "I measured as planned"),
         SignOff("reviewer", "I checked plan, data and figures"),
     )
 
 
-def test_the_three_kinds_of_comparison_are_told_apart_and_know_their_place() -> None:
-    half = Fraction(1, 2)
+def test_the_five_kinds_of_comparison_are_told_apart_and_know_their_place() -> None:
+    one, two = Fraction(1), Fraction(2)
     assert study_of(FULL).comparisons == (
-        AgainstReference("each instrument against the titrator", "titrator", "dunnett", "less", at(23, 5)),
-        AllPairs("all pairs", "tukey-kramer", at(27, 5)),
+        AgainstReference("each instrument against the titrator", "titrator", "dunnett", "less", at(26, 5)),
+        AllPairs("all pairs", "tukey-kramer", at(30, 5)),
         Contrast(
             "probes against the rest",
-            (("titrator", -half), ("012", -half), ("probe-1", half), ("probe-2", half)),
+            (("titrator", -HALF), ("012", -HALF), ("probe-1", HALF), ("probe-2", HALF)),
             "none",
             "two-sided",
-            at(30, 5),
+            at(33, 5),
+        ),
+        ContrastFamily(
+            "two questions",
+            (
+                WeightedSum("probe against probe", (("probe-1", one), ("probe-2", -one))),
+                WeightedSum("012 against titrator", (("012", one), ("titrator", -one))),
+            ),
+            "hochberg",
+            "greater",
+            at(35, 5),
+        ),
+        Trend(
+            "trend with age",
+            3,
+            (("titrator", HALF), ("probe-1", two), ("probe-2", Fraction(9, 2)), ("012", Fraction(12))),
+            "sidak",
+            "two-sided",
+            at(41, 5),
         ),
     )
 
 
-def test_a_margin_is_an_interval_that_reaches_as_far_down_as_up() -> None:
-    half = Fraction(1, 2)
-    assert study_of(FULL).equivalence == (
-        EquivalencePlan(
-            "probes", "titrator", None, -half, half, None, "bench procedure 12", "none", None, at(33, 5)
-        ),
-        EquivalencePlan(
-            "pairs",
-            None,
-            "all",
-            Fraction(-1, 5),
-            Fraction(1, 3),
-            None,
-            None,
-            "holm",
-            Fraction(1, 40),
-            at(34, 5),
-        ),
-        EquivalencePlan(
-            "relative", "titrator", None, None, None, Fraction(5, 2), None, "none", None, at(35, 5)
-        ),
+def test_every_kind_of_margin_is_a_pair_of_limits_of_which_non_inferiority_has_one() -> None:
+    tests = study_of(FULL).equivalence
+    assert tests[0] == EquivalencePlan(
+        name="probes",
+        against="titrator",
+        pairs=None,
+        lower=-HALF,
+        upper=HALF,
+        lower_percent=None,
+        upper_percent=None,
+        margin_source="bench procedure 12",
+        adjust="none",
+        alpha=None,
+        response=None,
+        place=at(47, 5),
     )
+    limits = [(test.lower, test.upper, test.lower_percent, test.upper_percent) for test in tests]
+    assert limits == [
+        (-HALF, HALF, None, None),
+        (Fraction(-1, 5), Fraction(1, 3), None, None),
+        (None, None, Fraction(-5, 2), Fraction(5, 2)),
+        (None, None, Fraction(-5), Fraction(3)),
+        (Fraction(-1, 10), None, None, None),
+    ]
+    assert [test.pairs for test in tests] == [None, "all", None, None, None]
+    assert [test.adjust for test in tests] == ["none", "holm", "bonferroni", "none", "holm"]
+    assert [test.alpha for test in tests] == [None, Fraction(1, 40), None, None, None]
+    assert [test.response for test in tests] == [None, None, None, "bromide", None]
+    assert [test.percent for test in tests] == [False, False, True, True, False]
+    assert [test.non_inferiority for test in tests] == [False, False, False, False, True]
+
+
+@pytest.mark.parametrize(
+    ("margin", "limits"),
+    [
+        ("non-inferiority: not-lower, margin: 0.5", (-HALF, None, None, None)),
+        ("non-inferiority: not-higher, margin: 0.5", (None, HALF, None, None)),
+        ("non-inferiority: not-lower, margin-percent: 0.5", (None, None, -HALF, None)),
+        ("non-inferiority: not-higher, margin-percent: 250", (None, None, None, Fraction(250))),
+    ],
+)
+def test_non_inferiority_leaves_the_other_side_open(margin: str, limits: tuple[Fraction | None, ...]) -> None:
+    text = planned(f"equivalence: [{{name: x, against: north, adjust: holm, {margin}}}]\n")
+    (test,) = study_of(text).equivalence
+    assert (test.lower, test.upper, test.lower_percent, test.upper_percent) == limits
+    assert test.non_inferiority
+
+
+def test_precision_of_a_sample_of_levels_is_planned_with_its_conditions() -> None:
+    study = study_of(SAMPLE)
+    assert study.design == DesignPlan("random", "pooled", "f", "none")
+    assert study.precision == PrecisionPlan(
+        True, Fraction(95, 100), "day and analyst", "intermediate-precision", at(7, 12)
+    )
+    assert [criterion.quantity for criterion in study.criteria] == ["total-rsd", "between-sd"]
+    assert study.criteria[1].at_most == Fraction(1, 10)
+
+
+def test_separate_variances_are_planned_with_methods_that_have_them() -> None:
+    study = study_of(SEPARATE)
+    assert study.design == DesignPlan("fixed", "separate", "brown-forsythe", "none")
+    assert [comparison.adjust for comparison in study.comparisons] == ["games-howell", "holm", "none"]
+
+
+def test_the_omnibus_test_goes_with_the_variances_where_the_plan_does_not_name_it() -> None:
+    assert study_of(planned("design: {variances: separate}\n")).design.omnibus == "welch"
+    assert study_of(planned("design: {variances: pooled}\n")).design.omnibus == "f"
+
+
+def test_one_unit_holds_for_every_response_and_a_mapping_for_each_its_own() -> None:
+    text = edited(SMALLEST, "response: mass", "response: [mass, density]\n  unit: g")
+    assert [study_of(text).data.unit_of(name) for name in ("mass", "density")] == ["g", "g"]
+    text = edited(text, "unit: g", "unit: {density: g/mL, mass: g}")
+    assert [study_of(text).data.unit_of(name) for name in ("mass", "density")] == ["g", "g/mL"]
+    assert study_of(SMALLEST).data.unit_of("mass") is None
+
+
+def test_one_word_is_a_list_of_one() -> None:
+    study = study_of(planned("checks: {normality: anderson-darling}\noutliers: {test: cochran}\n"))
+    assert study.checks == ChecksPlan((), ("anderson-darling",))
+    assert study.outliers == OutlierPlan(("cochran",), at(10, 11))
+
+
+def test_levels_that_are_numbers_are_their_own_scores() -> None:
+    text = edited(SMALLEST, "alpha", '  levels: ["80", 1.05e2, "140"]\nalpha')
+    (trend,) = study_of(text + "comparisons: [{name: x, trend: linear, alternative: greater}]\n").comparisons
+    assert trend == Trend("x", 1, (), "none", "greater", at(9, 15))
+    assert [trend.score_of(level) for level in ("80", "1.05e2", "140")] == [80, 105, 140]
+    with pytest.raises(KeyError):
+        trend.score_of("hot")
+
+
+def test_scores_take_the_place_of_the_names() -> None:
+    (*_, trend) = study_of(FULL).comparisons
+    assert isinstance(trend, Trend)
+    assert [trend.score_of(level) for level in ("titrator", "012")] == [HALF, 12]
+    with pytest.raises(KeyError):
+        trend.score_of("13")
+
+
+def test_power_is_planned_for_equal_sizes_and_no_true_difference_unless_it_says_otherwise() -> None:
+    power = study_of(planned("power: {difference: 1, sigma: 2, target: 0.8}\n")).power
+    assert power == PowerPlan(Fraction(1), Fraction(2), Fraction(4, 5), Fraction(0), "equal", None, at(9, 8))
+
+
+def keys_in(text: str) -> set[str]:
+    """Every key of every mapping in a study definition."""
+    from assayfolio.study.document import compose
+    from assayfolio.study.faults import Faults
+    from assayfolio.study.nodes import MappingNode, Node, SequenceNode
+
+    def walk(node: Node | None) -> set[str]:
+        if isinstance(node, SequenceNode):
+            return set().union(*(walk(item) for item in node.items))
+        if isinstance(node, MappingNode):
+            return {entry.key.text for entry in node.entries}.union(*(walk(e.value) for e in node.entries))
+        return set()
+
+    return walk(compose(text.encode(), Faults("plan.yaml")))
+
+
+def test_the_examples_together_use_every_key() -> None:
+    tables = [
+        table
+        for name, table in vars(vocabulary).items()
+        if name.endswith("_KEYS") and name != "LABORATORY_KEYS"
+    ]
+    assert len(tables) == 13
+    known = {key for table in tables for key in table}
+    assert known <= keys_in(FULL) | keys_in(SAMPLE) | keys_in(SEPARATE)
 
 
 def test_a_definition_knows_where_its_keys_stand() -> None:
     study = study_of(FULL)
-    assert study.place_of("alpha") == at(21, 1)
-    assert study.place_of("data.levels") == at(13, 3)
-    assert study.place_of("checks.normality") == at(37, 43)
+    assert study.place_of("alpha") == at(24, 1)
+    assert study.place_of("data.levels") == at(14, 3)
+    assert study.place_of("checks.normality") == at(54, 55)
     assert study.place_of("data.nothing") is None
     lines = [place.line or 0 for _, place in study.places]
     assert lines == sorted(lines)

@@ -21,7 +21,9 @@ MAPPINGS = {
     "data": vocabulary.DATA_KEYS,
     "design": vocabulary.DESIGN_KEYS,
     "comparison": vocabulary.COMPARISON_KEYS,
+    "contrast": vocabulary.CONTRAST_KEYS,
     "equivalence": vocabulary.EQUIVALENCE_KEYS,
+    "spread": vocabulary.SPREAD_KEYS,
     "outliers": vocabulary.OUTLIER_KEYS,
     "checks": vocabulary.CHECK_KEYS,
     "precision": vocabulary.PRECISION_KEYS,
@@ -35,14 +37,22 @@ WORDS: dict[tuple[str, str], tuple[str, ...]] = {
     ("data", "decimal-mark"): vocabulary.DECIMAL_MARKS,
     ("design", "effects"): vocabulary.EFFECTS,
     ("design", "variances"): vocabulary.VARIANCES,
+    ("design", "omnibus"): vocabulary.OMNIBUS_TESTS,
+    ("design", "across-responses"): vocabulary.ACROSS_RESPONSES,
     ("comparison", "pairs"): vocabulary.PAIRS,
+    ("comparison", "trend"): vocabulary.TRENDS,
     ("comparison", "adjust"): vocabulary.ADJUSTMENTS,
     ("comparison", "alternative"): vocabulary.ALTERNATIVES,
     ("equivalence", "pairs"): vocabulary.PAIRS,
     ("equivalence", "adjust"): vocabulary.EQUIVALENCE_ADJUSTMENTS,
+    ("equivalence", "non-inferiority"): vocabulary.NON_INFERIORITY,
+    ("spread", "adjust"): vocabulary.EQUIVALENCE_ADJUSTMENTS,
     ("outliers", "test"): vocabulary.OUTLIER_TESTS,
     ("checks", "equal-variances"): vocabulary.VARIANCE_CHECKS,
     ("checks", "normality"): vocabulary.NORMALITY_CHECKS,
+    ("precision", "conditions"): vocabulary.PRECISION_CONDITIONS,
+    ("power", "allocation"): vocabulary.ALLOCATIONS,
+    ("criterion", "quantity"): vocabulary.QUANTITIES,
     ("sign-off", "role"): vocabulary.ROLES,
 }
 TYPED_FIELDS = {
@@ -51,12 +61,18 @@ TYPED_FIELDS = {
     ("data", "decimal-mark"): (plan.DataPlan, "decimal_mark"),
     ("design", "effects"): (plan.DesignPlan, "effects"),
     ("design", "variances"): (plan.DesignPlan, "variances"),
+    ("design", "omnibus"): (plan.DesignPlan, "omnibus"),
+    ("design", "across-responses"): (plan.DesignPlan, "across_responses"),
     ("comparison", "adjust"): (plan.AllPairs, "adjust"),
     ("comparison", "alternative"): (plan.Contrast, "alternative"),
     ("equivalence", "adjust"): (plan.EquivalencePlan, "adjust"),
-    ("outliers", "test"): (plan.OutlierPlan, "test"),
+    ("spread", "adjust"): (plan.SpreadPlan, "adjust"),
+    ("outliers", "test"): (plan.OutlierPlan, "tests"),
     ("checks", "equal-variances"): (plan.ChecksPlan, "equal_variances"),
     ("checks", "normality"): (plan.ChecksPlan, "normality"),
+    ("precision", "conditions"): (plan.PrecisionPlan, "conditions"),
+    ("power", "allocation"): (plan.PowerPlan, "allocation"),
+    ("criterion", "quantity"): (plan.Criterion, "quantity"),
     ("sign-off", "role"): (plan.SignOff, "role"),
 }
 LENGTHS = {
@@ -75,15 +91,24 @@ EVERYTHING: dict[str, Any] = {
         "response": "mass",
         "factor": "lot",
         "unit": "g",
+        "order": "position",
         "levels": ["a", "b"],
         "replicates": 3,
         "missing": "refuse",
         "below-limit": "refuse",
         "decimal-mark": "point",
     },
-    "design": {"effects": "fixed", "variances": "pooled"},
+    "design": {
+        "effects": "fixed",
+        "variances": "pooled",
+        "omnibus": "f",
+        "across-responses": "none",
+    },
     "alpha": "0.05",
-    "comparisons": [{"name": "c", "against": "a", "adjust": "holm", "alternative": "less"}],
+    "comparisons": [
+        {"name": "c", "against": "a", "adjust": "holm", "alternative": "less"},
+        {"name": "f", "contrasts": [{"name": "g", "weights": {"a": 1, "b": -1}}], "adjust": "none"},
+    ],
     "equivalence": [
         {
             "name": "e",
@@ -92,13 +117,22 @@ EVERYTHING: dict[str, Any] = {
             "margin-source": "s",
             "adjust": "holm",
             "alpha": "0.05",
+            "response": "mass",
         }
     ],
+    "spread": {"against": "a", "adjust": "holm"},
     "outliers": {"test": "grubbs"},
     "checks": {"equal-variances": "levene", "normality": "shapiro-wilk"},
     "precision": {"estimate": "true", "confidence": "0.95", "varied": "v"},
-    "power": {"difference": "1", "sigma": "1", "target": "0.9"},
-    "criteria": [{"quantity": "q", "at-most": "1", "unit": "g"}],
+    "power": {
+        "difference": "1",
+        "sigma": "1",
+        "target": "0.9",
+        "true-difference": "0.1",
+        "allocation": "control",
+        "response": "mass",
+    },
+    "criteria": [{"quantity": "largest-difference", "at-most": "1", "unit": "g", "response": "mass"}],
     "sign-off": [{"role": "author", "meaning": "m"}],
 }
 SECTIONS = {
@@ -107,10 +141,12 @@ SECTIONS = {
     "design": "design",
     "comparison": "comparisons",
     "equivalence": "equivalence",
+    "spread": "spread",
     "outliers": "outliers",
     "checks": "checks",
     "precision": "precision",
     "power": "power",
+    "contrast": "comparisons.contrasts",
     "criterion": "criteria",
     "sign-off": "sign-off",
 }
@@ -140,9 +176,21 @@ def test_no_mapping_of_the_schema_escapes_the_comparison() -> None:
     assert len(list(objects(SCHEMA))) == len(MAPPINGS)
 
 
+def word_lists(schema: dict[str, Any]) -> list[tuple[str, ...]]:
+    """The words that a value may be; twice where it may also be a list of them."""
+    if "enum" in schema:
+        return [tuple(schema["enum"])]
+    choices = schema.get("anyOf", [])
+    return [
+        words for part in (*choices, schema.get("items", {})) for words in (word_lists(part) if part else [])
+    ]
+
+
 @pytest.mark.parametrize(("name", "key"), WORDS)
 def test_a_fixed_word_is_one_that_the_reader_knows(name: str, key: str) -> None:
-    assert tuple(DEFINITIONS[name]["properties"][key]["enum"]) == WORDS[name, key]
+    listed = word_lists(DEFINITIONS[name]["properties"][key])
+    assert listed
+    assert set(listed) == {WORDS[name, key]}
 
 
 def test_no_list_of_words_in_the_schema_escapes_the_comparison() -> None:
@@ -150,7 +198,7 @@ def test_no_list_of_words_in_the_schema_escapes_the_comparison() -> None:
         (name, key)
         for name in MAPPINGS
         for key, value in mapping_schema(name)["properties"].items()
-        if "enum" in value
+        if word_lists(value)
     }
     assert found == set(WORDS)
 
@@ -158,11 +206,17 @@ def test_no_list_of_words_in_the_schema_escapes_the_comparison() -> None:
 @pytest.mark.parametrize(("name", "key"), TYPED_FIELDS)
 def test_the_words_are_those_of_the_typed_plan(name: str, key: str) -> None:
     owner, field = TYPED_FIELDS[name, key]
-    hint = typing.get_type_hints(owner)[field]
-    words = [
-        word for part in (hint, *typing.get_args(hint)) for word in typing.get_args(part) if part is not None
-    ]
-    assert tuple(word for word in dict.fromkeys(words) if isinstance(word, str)) == WORDS[name, key]
+    words = words_of(typing.get_type_hints(owner)[field])
+    assert tuple(dict.fromkeys(words)) == WORDS[name, key]
+
+
+def words_of(hint: Any) -> Iterator[str]:
+    """The words that a type allows, alone or in tuples."""
+    for part in typing.get_args(hint):
+        if isinstance(part, str):
+            yield part
+        else:
+            yield from words_of(part)
 
 
 @pytest.mark.parametrize("name", LENGTHS)
@@ -180,7 +234,10 @@ def test_a_key_is_compulsory_in_the_schema_just_where_the_reader_misses_it(name:
     missed = []
     for key in MAPPINGS[name]:
         definition = json.loads(json.dumps(EVERYTHING))
-        holder = definition if section is None else definition[section]
+        if name == "contrast":
+            holder = definition["comparisons"][1]["contrasts"]
+        else:
+            holder = definition if section is None else definition[section]
         holder = holder[0] if isinstance(holder, list) else holder
         holder.pop(key, None)
         path = f"{section}.{key}" if section else key

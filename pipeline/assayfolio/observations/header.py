@@ -1,4 +1,4 @@
-"""The header row: which separator the file uses and in which columns response and factor stand."""
+"""The header row: which separator the file uses and in which columns what the plan names stands."""
 
 from collections.abc import Sequence
 from dataclasses import dataclass
@@ -8,6 +8,7 @@ from assayfolio.observations.faults import FaultList, listed, raise_faults, refu
 from assayfolio.observations.labels import first_unsettable, unprintable
 from assayfolio.observations.rows import Broken, Row, rows
 from assayfolio.study.faults import shown
+from assayfolio.study.plan import DataPlan
 from assayfolio.study.suggestions import nearest
 
 Separator = Literal["comma", "semicolon", "tab"]
@@ -21,27 +22,31 @@ CHARACTERS: dict[Separator, str] = {"comma": ",", "semicolon": ";", "tab": "\t"}
 class Header:
     """The columns of a file.
 
-    `response` and `factor` are positions in `names`; the rows begin at `next_line`, counted from zero.
+    `responses`, `factor` and `order` (None where there is none) are positions in `names`; the rows begin at
+    `next_line`, counted from zero.
     """
 
     separator: Separator
     names: tuple[str, ...]
-    response: int
+    responses: tuple[int, ...]
     factor: int
+    order: int | None
     next_line: int
 
     @property
     def extras(self) -> tuple[int, ...]:
         """The positions of the columns that are carried along."""
-        return tuple(at for at in range(len(self.names)) if at not in (self.response, self.factor))
+        named = {*self.responses, self.factor, self.order}
+        return tuple(at for at in range(len(self.names)) if at not in named)
 
 
-def find_header(lines: Sequence[str], response: str, factor: str, file: str, faults: FaultList) -> Header:
-    """The header of `lines`, by the one separator under which it holds both `response` and `factor`.
+def find_header(lines: Sequence[str], plan: DataPlan, file: str, faults: FaultList) -> Header:
+    """The header of `lines`, by the one separator under which it holds every column that `plan` names.
 
     Adds to `faults` what is wrong with other columns. Raises DataError where the separator or one of the
-    two columns cannot be told.
+    columns cannot be told.
     """
+    wanted = (*plan.response, plan.factor, *(() if plan.order is None else (plan.order,)))
     if lines[0] == "" or lines[0].isspace():
         raise refusal(file, "a blank line", "the column names are expected in the first line", 1, 1)
     read = {name: next(rows(lines, character)) for name, character in CHARACTERS.items()}
@@ -49,23 +54,28 @@ def find_header(lines: Sequence[str], response: str, factor: str, file: str, fau
     if not found:
         broken = next(row for row in read.values() if isinstance(row, Broken))
         raise refusal(file, broken.found, broken.advice, broken.line, broken.column)
-    fitting = [name for name, row in found.items() if response in row.cells and factor in row.cells]
+    fitting = [name for name, row in found.items() if all(column in row.cells for column in wanted)]
     if not fitting:
-        _refuse_missing_columns(found, (response, factor), file)
+        _refuse_missing_columns(found, wanted, file)
     if len(fitting) > 1:
         columns = "; ".join(f"by {name}: {listed(found[name].cells)}" for name in fitting)
-        advice = "rename a column so that only one separator gives both"
+        advice = "rename a column so that only one separator gives them"
         raise refusal(file, f"more than one separator fits the header ({columns})", advice, 1, 1)
     header = found[fitting[0]]
     _check_names(header, faults)
-    if any(header.cells.count(name) > 1 for name in (response, factor)):
+    if any(header.cells.count(name) > 1 for name in wanted):
         raise_faults(file, faults)
-    at_response, at_factor = header.cells.index(response), header.cells.index(factor)
-    next_line = header.line + sum(cell.count("\n") for cell in header.cells)
-    return Header(fitting[0], tuple(header.cells), at_response, at_factor, next_line)
+    return Header(
+        separator=fitting[0],
+        names=tuple(header.cells),
+        responses=tuple(header.cells.index(response) for response in plan.response),
+        factor=header.cells.index(plan.factor),
+        order=None if plan.order is None else header.cells.index(plan.order),
+        next_line=header.line + sum(cell.count("\n") for cell in header.cells),
+    )
 
 
-def _refuse_missing_columns(found: dict[Separator, Row], wanted: tuple[str, str], file: str) -> None:
+def _refuse_missing_columns(found: dict[Separator, Row], wanted: tuple[str, ...], file: str) -> None:
     """Raise DataError naming each missing column under the reading that comes closest, and its columns."""
 
     def closeness(name: Separator) -> tuple[int, int]:

@@ -10,7 +10,8 @@ from assayfolio.exact import Decimal10
 class Observation:
     """One value: the line of the file it starts on, its level, the number, the text as typed.
 
-    `extras` holds the cells of the other columns, in the order of `Observations.extra_columns`.
+    `extras` holds the cells of the other columns, in the order of `Observations.extra_columns`; `order` is
+    the position in the measuring order, None where the plan names no column with it.
     """
 
     line: int
@@ -18,14 +19,16 @@ class Observation:
     value: Decimal10
     text: str
     extras: tuple[str, ...] = ()
+    order: int | None = None
 
 
 @dataclass(frozen=True, slots=True)
 class Observations:
-    """A raw-data file as read once: the bytes that were parsed are the bytes that were hashed.
+    """One response of a raw-data file, read once: the bytes that were parsed are the bytes that were hashed.
 
     `levels` is in the order of the plan where the plan declares levels, else in order of first appearance.
-    `rows` is in the order of the file. `places` is the largest number of decimal places recorded.
+    `rows` is in the order of the file. `extra_columns` are those that the plan does not name. `places` is
+    the largest number of decimal places recorded.
     """
 
     file: str

@@ -6,19 +6,18 @@ from assayfolio.study.faults import shown
 from assayfolio.study.fields import (
     Fields,
     Reader,
-    T,
     Value,
     choice,
     distinct,
-    each,
     label,
     line_of_text,
     list_of,
+    one_or_more,
 )
+from assayfolio.study.names import Surroundings, by_name, level_of, report_absent, response_of
 from assayfolio.study.nodes import MappingNode, ScalarNode
 from assayfolio.study.numbers import whole_number
 from assayfolio.study.plan import DataPlan
-from assayfolio.study.suggestions import nearest
 from assayfolio.study.vocabulary import (
     BELOW_LIMIT,
     DECIMAL_MARKS,
@@ -36,34 +35,78 @@ _missing: Reader[Missing] = choice(MISSING)
 _below_limit: Reader[BelowLimit] = choice(BELOW_LIMIT)
 _decimal_mark: Reader[DecimalMark] = choice(DECIMAL_MARKS)
 _path_text = line_of_text(LONGEST_PATH)
-_columns = distinct(list_of(label, "a column, or a list of columns"))
+_response = one_or_more(label, "a column, or a list of columns")
 _level_list = distinct(list_of(label, "a list of levels, such as [lot-a, lot-b]"))
 _count = whole_number(1, MOST_REPLICATES)
 _DRIVE = re.compile(r"[A-Za-z]:")
 
 
-def read_data(fields: Fields) -> tuple[DataPlan | None, tuple[str, ...] | None]:
-    """`data:` as a plan, None where a compulsory key is missing or unreadable; and the declared levels.
-
-    The levels are empty where none are declared and None where they cannot be read.
-    """
+def read_data(fields: Fields) -> tuple[DataPlan | None, Surroundings]:
+    """`data:` as a plan, None where a compulsory key is missing or unreadable; and what others need of it."""
     file = fields.required("file", _path)
     response = fields.required("response", _response)
     factor = fields.required("factor", label)
-    unit = fields.optional("unit", label)
+    unit, units = _units(fields, response)
+    order = fields.optional("order", label)
     levels = fields.optional("levels", _levels)
     replicates = fields.optional("replicates", _replicates_of(levels))
     missing = fields.optional("missing", _missing) or "refuse"
     below_limit = fields.optional("below-limit", _below_limit) or "refuse"
     decimal_mark = fields.optional("decimal-mark", _decimal_mark) or "point"
+    _report_shared_columns(fields, response, factor, order)
     declared = None if fields.unreadable("levels") else levels or ()
+    known_units = None if fields.unreadable("unit") else dict.fromkeys(response or (), unit) | dict(units)
+    surroundings = Surroundings(declared, response, known_units)
+    if file is None or response is None or factor is None:
+        return None, surroundings
+    plan = DataPlan(
+        file=file,
+        response=response,
+        factor=factor,
+        unit=unit,
+        units=units,
+        order=order,
+        levels=levels,
+        replicates=replicates,
+        missing=missing,
+        below_limit=below_limit,
+        decimal_mark=decimal_mark,
+    )
+    return plan, surroundings
+
+
+def _report_shared_columns(
+    fields: Fields, response: tuple[str, ...] | None, factor: str | None, order: str | None
+) -> None:
     if factor is not None and factor in (response or ()):
         found = f"the column {shown(factor)} is both `data.factor` and `data.response`"
         fields.faults.add(fields.place_of("factor"), found, "name the column that holds the levels")
-    if file is None or response is None or factor is None:
-        return None, declared
-    plan = DataPlan(file, response, factor, unit, levels, replicates, missing, below_limit, decimal_mark)
-    return plan, declared
+    if order is not None and (order == factor or order in (response or ())):
+        other = "data.factor" if order == factor else "data.response"
+        found = f"the column {shown(order)} is both `data.order` and `{other}`"
+        fields.faults.add(fields.place_of("order"), found, "name the column that holds the measuring order")
+
+
+def _units(
+    fields: Fields, response: tuple[str, ...] | None
+) -> tuple[str | None, tuple[tuple[str, str], ...]]:
+    """The unit of all responses, and the units that are given response by response."""
+    value = fields.value("unit")
+    if value is None or not isinstance(value.node, MappingNode):
+        return fields.optional("unit", label), ()
+    return None, fields.optional("unit", _units_of(response)) or ()
+
+
+def _units_of(response: tuple[str, ...] | None) -> Reader[tuple[tuple[str, str], ...]]:
+    def read(value: Value) -> tuple[tuple[str, str], ...]:
+        node = value.node
+        assert isinstance(node, MappingNode), "other nodes are read as one unit"
+        if not node.entries:
+            raise value.unreadable("is an empty mapping", "a unit for each response, or leave the key out")
+        report_absent(value, node, response, "unit", 'one for each response, "1" for a pure number')
+        return by_name(value, node, lambda key: response_of(key, response), label)
+
+    return read
 
 
 def _path(value: Value) -> str:
@@ -81,10 +124,6 @@ def _path(value: Value) -> str:
     if any(part != part.strip() for part in parts):
         raise value.unreadable(f"is {shown(path)}, with a blank beside a /", expected)
     return path
-
-
-def _response(value: Value) -> tuple[str, ...]:
-    return (label(value),) if isinstance(value.node, ScalarNode) else _columns(value)
 
 
 def _levels(value: Value) -> tuple[str, ...]:
@@ -113,30 +152,5 @@ def _per_level(
 ) -> tuple[tuple[str, int], ...]:
     if not node.entries:
         raise value.unreadable("is an empty mapping", "a whole number for each level, or leave the key out")
-    present = {entry.key.text for entry in node.entries}
-    absent = [level for level in levels or () if level not in present]
-    if absent:
-        names = ", ".join(shown(level) for level in absent[:3])
-        more = f" and {len(absent) - 3} more" if len(absent) > 3 else ""
-        value.report(f"gives no number for {names}{more}", "one for each declared level")
-    return by_level(value, node, levels, _count)
-
-
-def by_level(
-    value: Value, node: MappingNode, levels: tuple[str, ...] | None, reader: Reader[T]
-) -> tuple[tuple[str, T], ...]:
-    """The levels that are the keys of a mapping, each with what stands under it."""
-    keys = [Value(entry.key, value.name, value.faults) for entry in node.entries]
-    values = [Value(entry.value, value.name, value.faults) for entry in node.entries]
-    names = each(lambda key: level_of(key, levels), keys)
-    return tuple(zip(names, each(reader, values), strict=True))
-
-
-def level_of(value: Value, levels: tuple[str, ...] | None) -> str:
-    """A level by name; where `levels` are declared it must be one of them."""
-    name = label(value)
-    if levels is None or name in levels:
-        return name
-    near = None if value.faults.full else nearest(name, levels)
-    expected = "one of `data.levels`" + (f"; did you mean {shown(near)}?" if near else "")
-    raise value.unreadable(f"names the level {shown(name)}, which is not declared", expected)
+    report_absent(value, node, levels, "number", "one for each declared level")
+    return by_name(value, node, lambda key: level_of(key, levels), _count)

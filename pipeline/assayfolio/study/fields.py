@@ -50,6 +50,13 @@ class Value:
         nodes = self.node.items if isinstance(self.node, SequenceNode) else ()
         return tuple(Value(node, self.name, self.faults) for node in nodes)
 
+    def under(self, key: str) -> "tuple[Value, ...]":
+        """What stands under `key` in each mapping among the items of a sequence."""
+        mappings = (item.node for item in self.items() if isinstance(item.node, MappingNode))
+        entries = (mapping.entry(key) for mapping in mappings)
+        name = f"{self.name}.{key}"
+        return tuple(Value(entry.value, name, self.faults) for entry in entries if entry is not None)
+
 
 Reader: TypeAlias = Callable[[Value], T]
 
@@ -58,6 +65,7 @@ class Fields:
     """The keys of one mapping. Unknown keys are reported at once, missing ones when they are asked for."""
 
     def __init__(self, node: MappingNode, name: str, known: tuple[str, ...], faults: Faults) -> None:
+        self.node = node
         self.place = node.place
         self.faults = faults
         self._name = name
@@ -87,6 +95,11 @@ class Fields:
     def __contains__(self, key: str) -> bool:
         return key in self._values
 
+    @property
+    def keys(self) -> frozenset[str]:
+        """The keys that are present."""
+        return frozenset(self._values)
+
     def named(self, key: str) -> str:
         """`key` as people find it: under the keys that enclose it."""
         return f"{self._name}.{key}" if self._name else key
@@ -95,6 +108,11 @@ class Fields:
         """The value under `key`, or None where it is absent."""
         node = self._values.get(key)
         return None if node is None else Value(node, self.named(key), self.faults)
+
+    def text(self, key: str) -> str | None:
+        """The text under `key`, whatever it means; None where it is absent or no scalar."""
+        node = self._values.get(key)
+        return node.text if isinstance(node, ScalarNode) else None
 
     def place_of(self, key: str) -> Place:
         """Where the key stands, or the mapping where it is absent."""
@@ -261,6 +279,16 @@ def each(reader: Reader[T], values: Iterable[Value]) -> tuple[T, ...]:
     return tuple(read)
 
 
+def one_or_more(reader: Reader[T], expected: str) -> Reader[tuple[T, ...]]:
+    """One item as a scalar, or a list of different ones."""
+    several = distinct(list_of(reader, expected))
+
+    def read(value: Value) -> tuple[T, ...]:
+        return (reader(value),) if isinstance(value.node, ScalarNode) else several(value)
+
+    return read
+
+
 def distinct(reader: Reader[tuple[T, ...]]) -> Reader[tuple[T, ...]]:
     """A list of scalars of which none stands there twice."""
 
@@ -288,10 +316,3 @@ def report_repeats(values: Iterable[Value]) -> bool:
             )
         first.setdefault(node.text, node.place)
     return repeated
-
-
-def report_repeats_of(value: Value, key: str) -> None:
-    """Report each mapping in the list `value` whose text under `key` stood in an earlier one."""
-    mappings = [item.node for item in value.items() if isinstance(item.node, MappingNode)]
-    entries = [entry for entry in (node.entry(key) for node in mappings) if entry is not None]
-    report_repeats(Value(entry.value, f"{value.name}.{key}", value.faults) for entry in entries)

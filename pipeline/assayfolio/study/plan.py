@@ -9,6 +9,7 @@ from fractions import Fraction
 from typing import Literal
 
 from assayfolio.errors import Place
+from assayfolio.exact import NotADecimalError, parse_decimal
 
 Adjustment = Literal[
     "none",
@@ -23,21 +24,51 @@ Adjustment = Literal[
     "dunnett-step-down",
 ]
 Alternative = Literal["two-sided", "greater", "less"]
+Omnibus = Literal["f", "welch", "brown-forsythe"]
+AcrossResponses = Literal["none", "bonferroni", "holm"]
+VarianceCheck = Literal["brown-forsythe", "levene", "bartlett", "cochran"]
+NormalityCheck = Literal["shapiro-wilk", "anderson-darling"]
+OutlierTest = Literal["grubbs", "grubbs-double", "cochran"]
+Quantity = Literal[
+    "repeatability-sd",
+    "repeatability-rsd",
+    "repeatability-limit",
+    "between-sd",
+    "between-rsd",
+    "total-sd",
+    "total-rsd",
+    "largest-difference",
+    "largest-difference-percent",
+    "level-mean",
+    "level-sd",
+    "level-rsd",
+]
+PrecisionConditions = Literal["intermediate-precision", "reproducibility"]
 
 
 @dataclass(frozen=True, slots=True)
 class DataPlan:
-    """`data:` - where the values stand and what they are."""
+    """`data:` - where the values stand and what they are.
+
+    `unit` holds for every response; `units` are those given response by response. `order` names the column
+    with the measuring order.
+    """
 
     file: str
     response: tuple[str, ...]
     factor: str
     unit: str | None = None
+    units: tuple[tuple[str, str], ...] = ()
+    order: str | None = None
     levels: tuple[str, ...] | None = None
     replicates: int | tuple[tuple[str, int], ...] | None = None
     missing: Literal["refuse", "omit"] = "refuse"
     below_limit: Literal["refuse", "omit", "half-limit", "limit"] = "refuse"
     decimal_mark: Literal["point", "comma"] = "point"
+
+    def unit_of(self, response: str) -> str | None:
+        """The unit of one response, or None where the plan does not say."""
+        return dict(self.units).get(response, self.unit)
 
     def planned_replicates(self, level: str) -> int | None:
         """How many values the plan wants at `level`, or None where it does not say."""
@@ -48,10 +79,15 @@ class DataPlan:
 
 @dataclass(frozen=True, slots=True)
 class DesignPlan:
-    """`design:` - how the levels were chosen and whether they share one variance."""
+    """`design:` - how the levels were chosen, whether they share one variance, and the planned overall test.
+
+    `across_responses` is how p-values are adjusted for the number of responses.
+    """
 
     effects: Literal["fixed", "random"] = "fixed"
     variances: Literal["pooled", "separate"] = "pooled"
+    omnibus: Omnibus = "f"
+    across_responses: AcrossResponses = "none"
 
 
 @dataclass(frozen=True, slots=True)
@@ -85,30 +121,100 @@ class Contrast:
     place: Place
 
 
-Comparison = AllPairs | AgainstReference | Contrast
+@dataclass(frozen=True, slots=True)
+class WeightedSum:
+    """One contrast of a family of several: its name, and weights that sum to zero."""
+
+    name: str
+    weights: tuple[tuple[str, Fraction], ...]
+
+
+@dataclass(frozen=True, slots=True)
+class ContrastFamily:
+    """A family of several contrasts with one error rate."""
+
+    name: str
+    contrasts: tuple[WeightedSum, ...]
+    adjust: Adjustment
+    alternative: Alternative
+    place: Place
+
+
+@dataclass(frozen=True, slots=True)
+class Trend:
+    """Orthogonal polynomial contrasts over numeric levels, linear first, up to `degree`.
+
+    `scores` gives the number of each level; empty where the names of the levels are the numbers.
+    """
+
+    name: str
+    degree: int
+    scores: tuple[tuple[str, Fraction], ...]
+    adjust: Adjustment
+    alternative: Alternative
+    place: Place
+
+    def score_of(self, level: str) -> Fraction:
+        """The number of a level. Raises KeyError where it has none."""
+        if self.scores:
+            return dict(self.scores)[level]
+        try:
+            return parse_decimal(level).fraction
+        except NotADecimalError:
+            raise KeyError(level) from None
+
+
+Comparison = AllPairs | AgainstReference | Contrast | ContrastFamily | Trend
 
 
 @dataclass(frozen=True, slots=True)
 class EquivalencePlan:
-    """One entry of `equivalence:`; margins in units of the response, or in percent of the reference mean."""
+    """One entry of `equivalence:` - two one-sided tests, or one of them for non-inferiority.
+
+    `lower` and `upper` are the limits of the difference in units of the response, `lower_percent` and
+    `upper_percent` in percent of the reference mean; exactly one kind is given. A limit that is None leaves
+    that side open (non-inferiority). `response` names the one response it is about, where it is not all.
+    """
 
     name: str
     against: str | None
     pairs: Literal["all"] | None
     lower: Fraction | None
     upper: Fraction | None
-    margin_percent: Fraction | None
+    lower_percent: Fraction | None
+    upper_percent: Fraction | None
     margin_source: str | None
     adjust: Literal["none", "bonferroni", "holm"]
     alpha: Fraction | None
+    response: str | None
+    place: Place
+
+    @property
+    def percent(self) -> bool:
+        """Whether the margins are in percent of the reference mean."""
+        return self.lower_percent is not None or self.upper_percent is not None
+
+    @property
+    def non_inferiority(self) -> bool:
+        """Whether one side is left open."""
+        limits = (self.lower, self.upper, self.lower_percent, self.upper_percent)
+        return sum(limit is not None for limit in limits) == 1
+
+
+@dataclass(frozen=True, slots=True)
+class SpreadPlan:
+    """`spread:` - the variance of each level against that of a reference."""
+
+    against: str
+    adjust: Literal["none", "bonferroni", "holm"]
     place: Place
 
 
 @dataclass(frozen=True, slots=True)
 class OutlierPlan:
-    """`outliers:` - which test proposes values for investigation."""
+    """`outliers:` - which tests propose values or levels for investigation; nothing is removed."""
 
-    test: Literal["grubbs", "cochran"]
+    tests: tuple[OutlierTest, ...]
     place: Place
 
 
@@ -116,38 +222,57 @@ class OutlierPlan:
 class ChecksPlan:
     """`checks:` - checks that inform and never choose the analysis."""
 
-    equal_variances: Literal["brown-forsythe", "levene", "bartlett", "cochran"] | None = None
-    normality: Literal["shapiro-wilk", "anderson-darling"] | None = None
+    equal_variances: tuple[VarianceCheck, ...] = ()
+    normality: tuple[NormalityCheck, ...] = ()
 
 
 @dataclass(frozen=True, slots=True)
 class PrecisionPlan:
-    """`precision:` - estimates of repeatability and of the spread between levels."""
+    """`precision:` - estimates of repeatability and of the spread between levels.
+
+    `varied` says in words what changed from level to level, `conditions` what the total is therefore called;
+    None where the plan does not say.
+    """
 
     estimate: bool
     confidence: Fraction
     varied: str | None
+    conditions: PrecisionConditions | None
     place: Place
 
 
 @dataclass(frozen=True, slots=True)
 class PowerPlan:
-    """`power:` - two extreme levels differ by `difference`, the rest lie midway."""
+    """`power:` - what the plan has to be able to show.
+
+    Two extreme levels differ by `difference`, the rest lie midway; every other level differs from a reference
+    by it; a contrast has it as its value. `true_difference` is what equivalence is computed at. `allocation`
+    is how the sample sizes that are looked for divide among the levels. `response` names the one response
+    that difference and sigma are about, where the study has several.
+    """
 
     difference: Fraction
     sigma: Fraction
     target: Fraction
+    true_difference: Fraction
+    allocation: Literal["equal", "control"]
+    response: str | None
     place: Place
 
 
 @dataclass(frozen=True, slots=True)
 class Criterion:
-    """One entry of `criteria:` - a limit that was set in advance."""
+    """One entry of `criteria:` - a limit that was set in advance.
 
-    quantity: str
+    `level` names the level a criterion on one level is about; `response` as in EquivalencePlan.
+    """
+
+    quantity: Quantity
     at_most: Fraction | None
     at_least: Fraction | None
     unit: str | None
+    level: str | None
+    response: str | None
     place: Place
 
 
@@ -175,6 +300,7 @@ class StudyDefinition:
     alpha: Fraction
     comparisons: tuple[Comparison, ...]
     equivalence: tuple[EquivalencePlan, ...]
+    spread: SpreadPlan | None
     outliers: OutlierPlan | None
     checks: ChecksPlan
     precision: PrecisionPlan | None

@@ -1,15 +1,18 @@
 """Reading a study definition and a laboratory's settings from bytes: all faults of a file in one pass."""
 
 import re
+from fractions import Fraction
 
 from assayfolio.errors import Place
-from assayfolio.study.comparison_section import Surroundings, comparison_in, equivalence_in
+from assayfolio.study.comparison_section import comparison_in
+from assayfolio.study.criteria_section import criterion_in
 from assayfolio.study.data_section import read_data
-from assayfolio.study.faults import Faults, listed
+from assayfolio.study.equivalence_section import equivalence_in, spread_in
+from assayfolio.study.faults import Faults, listed, shown
 from assayfolio.study.fields import (
     Fields,
     Reader,
-    T,
+    Value,
     choice,
     distinct,
     label,
@@ -18,17 +21,25 @@ from assayfolio.study.fields import (
     mapping_of,
     matching,
     paragraphs,
-    report_repeats_of,
+    report_repeats,
 )
+from assayfolio.study.labels import shared_label
+from assayfolio.study.names import Surroundings
 from assayfolio.study.nodes import MappingNode, RefusedNode
 from assayfolio.study.numbers import probability, whole_number
-from assayfolio.study.plan import ChecksPlan, DesignPlan, Laboratory, StudyDefinition
+from assayfolio.study.plan import (
+    ChecksPlan,
+    DesignPlan,
+    Laboratory,
+    PrecisionPlan,
+    StudyDefinition,
+)
+from assayfolio.study.rules import Outline, report_breaches
 from assayfolio.study.small_sections import (
+    power_in,
     read_checks,
-    read_criterion,
     read_design,
     read_outliers,
-    read_power,
     read_precision,
     read_sign_off,
 )
@@ -44,7 +55,6 @@ from assayfolio.study.vocabulary import (
     REQUIREMENTS,
     STUDY_KEYS,
     Paper,
-    Variances,
 )
 
 MOST_WAIT_SECONDS = 600
@@ -57,6 +67,7 @@ _identifier = matching(
 _colour = matching(re.compile(r"#[0-9A-Fa-f]{6}", re.ASCII), 'a colour in quotation marks, such as "#0f5b66"')
 _paper: Reader[Paper] = choice(PAPERS)
 _ENTRIES = "a list of entries, each beginning with a hyphen"
+_NOTHING_READ = Surroundings(None, None, None)
 _REQUIREMENT_LIST = f"a list of {listed(REQUIREMENTS)}"
 
 
@@ -105,63 +116,91 @@ def _study(fields: Fields) -> StudyDefinition | None:
     purpose = fields.optional("purpose", paragraphs(LONGEST_PARAGRAPHS))
     alpha = fields.required("alpha", probability)
     data_fields = fields.required("data", mapping_of(DATA_KEYS))
-    data, levels = (None, None) if data_fields is None else read_data(data_fields)
+    data, around = (None, _NOTHING_READ) if data_fields is None else read_data(data_fields)
     design_fields = fields.optional("design", mapping_of(DESIGN_KEYS))
     design = DesignPlan() if design_fields is None else read_design(design_fields)
     checks_fields = fields.optional("checks", mapping_of(CHECK_KEYS))
     checks = ChecksPlan() if checks_fields is None else read_checks(checks_fields)
-    surroundings = Surroundings(levels, _variances(fields, design_fields, design))
-    comparisons = _named_entries(fields, "comparisons", "name", comparison_in(surroundings))
-    equivalence = _named_entries(fields, "equivalence", "name", equivalence_in(surroundings))
+    comparisons = fields.optional("comparisons", list_of(comparison_in(around), _ENTRIES)) or ()
+    equivalence = fields.optional("equivalence", list_of(equivalence_in(around), _ENTRIES)) or ()
+    spread = fields.optional("spread", spread_in(around))
     outliers = fields.optional("outliers", read_outliers)
     precision = fields.optional("precision", read_precision)
-    power = fields.optional("power", read_power)
-    criteria = fields.optional("criteria", list_of(read_criterion, _ENTRIES)) or ()
-    sign_off = _named_entries(fields, "sign-off", "role", read_sign_off)
-    if design.effects == "random":
-        _refuse_comparisons_of_random_levels(fields)
+    power = fields.optional("power", power_in(around))
+    criteria = fields.optional("criteria", list_of(criterion_in(around), _ENTRIES)) or ()
+    sign_off = fields.optional("sign-off", list_of(read_sign_off, _ENTRIES)) or ()
+    _report_repeated_names(fields)
+    _report_shared_labels(fields, data_fields, around)
+    report_breaches(_outline(fields, design_fields, design, around, precision, alpha), fields.faults)
     if study is None or title is None or alpha is None or data is None:
         return None
     return StudyDefinition(
-        study,
-        title,
-        purpose,
-        data,
-        design,
-        alpha,
-        comparisons,
-        equivalence,
-        outliers,
-        checks,
-        precision,
-        power,
-        criteria,
-        sign_off,
-        _places(fields, data_fields, design_fields, checks_fields),
+        study=study,
+        title=title,
+        purpose=purpose,
+        data=data,
+        design=design,
+        alpha=alpha,
+        comparisons=comparisons,
+        equivalence=equivalence,
+        spread=spread,
+        outliers=outliers,
+        checks=checks,
+        precision=precision,
+        power=power,
+        criteria=criteria,
+        sign_off=sign_off,
+        places=_places(fields, data_fields, design_fields, checks_fields),
     )
 
 
-def _variances(fields: Fields, design_fields: Fields | None, design: DesignPlan) -> Variances | None:
-    if design_fields is None:
-        return None if fields.unreadable("design") else design.variances
-    return None if design_fields.unreadable("variances") else design.variances
+def _outline(
+    fields: Fields,
+    design_fields: Fields | None,
+    design: DesignPlan,
+    around: Surroundings,
+    precision: PrecisionPlan | None,
+    alpha: Fraction | None,
+) -> Outline:
+    def unreadable(key: str) -> bool:
+        return fields.unreadable("design") if design_fields is None else design_fields.unreadable(key)
+
+    estimates = precision is not None and precision.estimate
+    return Outline(
+        root=fields.node,
+        effects=None if unreadable("effects") else design.effects,
+        variances=None if unreadable("variances") else design.variances,
+        across_responses=None if unreadable("across-responses") else design.across_responses,
+        levels=around.levels,
+        responses=around.responses,
+        estimates=None if fields.unreadable("precision") else estimates,
+        alpha=alpha,
+    )
 
 
-def _named_entries(fields: Fields, key: str, name: str, reader: Reader[T]) -> tuple[T, ...]:
-    """The entries of the list under `key`, which differ in what stands under `name`; none where absent."""
-    entries = fields.optional(key, list_of(reader, _ENTRIES)) or ()
-    value = fields.value(key)
-    if value is not None:
-        report_repeats_of(value, name)
-    return entries
+def _report_repeated_names(fields: Fields) -> None:
+    """Report a name that two comparisons or equivalence tests share, and a role that stands twice."""
+    families = [name for key in ("comparisons", "equivalence") for name in _texts_in(fields, key, "name")]
+    report_repeats(
+        sorted(families, key=lambda name: (name.node.place.line or 0, name.node.place.column or 0))
+    )
+    report_repeats(_texts_in(fields, "sign-off", "role"))
 
 
-def _refuse_comparisons_of_random_levels(fields: Fields) -> None:
-    for key in ("comparisons", "equivalence"):
-        if key in fields:
-            found = f"`{key}` compares levels, but with `design.effects: random` they are a mere sample"
-            advice = "use `precision` for the spread between levels, or `effects: fixed`"
-            fields.faults.add(fields.place_of(key), found, advice)
+def _texts_in(fields: Fields, section: str, key: str) -> tuple[Value, ...]:
+    value = fields.value(section)
+    return () if value is None else value.under(key)
+
+
+def _report_shared_labels(fields: Fields, data_fields: Fields | None, around: Surroundings) -> None:
+    """Report levels of which two pairs could not be told apart in a table of pairs."""
+    value = None if data_fields is None else data_fields.value("levels")
+    if not any(_texts_in(fields, key, "pairs") for key in ("comparisons", "equivalence")):
+        return
+    both = shared_label(around.levels or ())
+    if value is not None and both is not None:
+        found = f"let two pairs of levels bear the same label {shown(both)}"
+        value.report(found, "level names without ` - ` in them")
 
 
 def _places(*sections: Fields | None) -> tuple[tuple[str, Place], ...]:

@@ -5,7 +5,17 @@ The readers, the suggestions for misspelt keys and the published JSON Schema all
 
 from typing import Literal, get_args
 
-from assayfolio.study.plan import Adjustment, Alternative
+from assayfolio.study.plan import (
+    AcrossResponses,
+    Adjustment,
+    Alternative,
+    NormalityCheck,
+    Omnibus,
+    OutlierTest,
+    PrecisionConditions,
+    Quantity,
+    VarianceCheck,
+)
 
 STUDY_KEYS = (
     "study",
@@ -16,6 +26,7 @@ STUDY_KEYS = (
     "alpha",
     "comparisons",
     "equivalence",
+    "spread",
     "outliers",
     "checks",
     "precision",
@@ -28,14 +39,27 @@ DATA_KEYS = (
     "response",
     "factor",
     "unit",
+    "order",
     "levels",
     "replicates",
     "missing",
     "below-limit",
     "decimal-mark",
 )
-DESIGN_KEYS = ("effects", "variances")
-COMPARISON_KEYS = ("name", "against", "pairs", "weights", "adjust", "alternative")
+DESIGN_KEYS = ("effects", "variances", "omnibus", "across-responses")
+COMPARISON_KEYS = (
+    "name",
+    "against",
+    "pairs",
+    "weights",
+    "contrasts",
+    "trend",
+    "degree",
+    "scores",
+    "adjust",
+    "alternative",
+)
+CONTRAST_KEYS = ("name", "weights")
 EQUIVALENCE_KEYS = (
     "name",
     "against",
@@ -44,15 +68,20 @@ EQUIVALENCE_KEYS = (
     "lower",
     "upper",
     "margin-percent",
+    "lower-percent",
+    "upper-percent",
+    "non-inferiority",
     "margin-source",
     "adjust",
     "alpha",
+    "response",
 )
+SPREAD_KEYS = ("against", "adjust")
 OUTLIER_KEYS = ("test",)
 CHECK_KEYS = ("equal-variances", "normality")
-PRECISION_KEYS = ("estimate", "confidence", "varied")
-POWER_KEYS = ("difference", "sigma", "target")
-CRITERION_KEYS = ("quantity", "at-most", "at-least", "unit")
+PRECISION_KEYS = ("estimate", "confidence", "varied", "conditions")
+POWER_KEYS = ("difference", "sigma", "target", "true-difference", "allocation", "response")
+CRITERION_KEYS = ("quantity", "at-most", "at-least", "unit", "level", "response")
 SIGN_OFF_KEYS = ("role", "meaning")
 LABORATORY_KEYS = ("laboratory", "address", "note", "accent", "paper", "require", "wait-seconds")
 
@@ -62,29 +91,63 @@ DecimalMark = Literal["point", "comma"]
 Effects = Literal["fixed", "random"]
 Variances = Literal["pooled", "separate"]
 Pairs = Literal["all"]
+TrendKind = Literal["linear", "polynomial"]
 EquivalenceAdjustment = Literal["none", "bonferroni", "holm"]
-OutlierTest = Literal["grubbs", "cochran"]
-VarianceCheck = Literal["brown-forsythe", "levene", "bartlett", "cochran"]
-NormalityCheck = Literal["shapiro-wilk", "anderson-darling"]
+NonInferiority = Literal["not-lower", "not-higher"]
+Allocation = Literal["equal", "control"]
 Role = Literal["author", "reviewer", "approver"]
 Paper = Literal["A4", "Letter"]
-Requirement = Literal["unit", "purpose", "levels", "replicates", "comparisons", "checks", "sign-off"]
+Requirement = Literal[
+    "unit",
+    "order",
+    "levels",
+    "replicates",
+    "purpose",
+    "comparisons",
+    "equivalence",
+    "margin-source",
+    "checks",
+    "precision",
+    "power",
+    "sign-off",
+]
 
 MISSING: tuple[Missing, ...] = get_args(Missing)
 BELOW_LIMIT: tuple[BelowLimit, ...] = get_args(BelowLimit)
 DECIMAL_MARKS: tuple[DecimalMark, ...] = get_args(DecimalMark)
 EFFECTS: tuple[Effects, ...] = get_args(Effects)
 VARIANCES: tuple[Variances, ...] = get_args(Variances)
+OMNIBUS_TESTS: tuple[Omnibus, ...] = get_args(Omnibus)
+ACROSS_RESPONSES: tuple[AcrossResponses, ...] = get_args(AcrossResponses)
 PAIRS: tuple[Pairs, ...] = get_args(Pairs)
+TRENDS: tuple[TrendKind, ...] = get_args(TrendKind)
 ADJUSTMENTS: tuple[Adjustment, ...] = get_args(Adjustment)
 ALTERNATIVES: tuple[Alternative, ...] = get_args(Alternative)
 EQUIVALENCE_ADJUSTMENTS: tuple[EquivalenceAdjustment, ...] = get_args(EquivalenceAdjustment)
+NON_INFERIORITY: tuple[NonInferiority, ...] = get_args(NonInferiority)
 OUTLIER_TESTS: tuple[OutlierTest, ...] = get_args(OutlierTest)
 VARIANCE_CHECKS: tuple[VarianceCheck, ...] = get_args(VarianceCheck)
 NORMALITY_CHECKS: tuple[NormalityCheck, ...] = get_args(NormalityCheck)
+PRECISION_CONDITIONS: tuple[PrecisionConditions, ...] = get_args(PrecisionConditions)
+ALLOCATIONS: tuple[Allocation, ...] = get_args(Allocation)
+QUANTITIES: tuple[Quantity, ...] = get_args(Quantity)
 ROLES: tuple[Role, ...] = get_args(Role)
 PAPERS: tuple[Paper, ...] = get_args(Paper)
 REQUIREMENTS: tuple[Requirement, ...] = get_args(Requirement)
+
+# Words for methods that control the rate of false discoveries: known, and refused with a reason.
+FALSE_DISCOVERY_WORDS = (
+    "benjamini-hochberg",
+    "benjamini-yekutieli",
+    "bh",
+    "by",
+    "fdr",
+    "fdr-bh",
+    "fdr-by",
+    "false-discovery-rate",
+    "storey",
+    "q-value",
+)
 
 LONGEST_TITLE = 200
 LONGEST_LABEL = 80

@@ -1,0 +1,326 @@
+"""What one section of a definition rules out in another: a table of refusals, each with what to use instead.
+
+The rules speak of words as they were typed, so that they hold in an entry of which other parts cannot be
+read. A word that is misspelt breaks no rule: it is reported where it stands.
+"""
+
+from collections.abc import Callable, Iterator
+from dataclasses import dataclass
+from fractions import Fraction
+
+from assayfolio.study.adjustments import several_rows
+from assayfolio.study.faults import Faults
+from assayfolio.study.nodes import Entry, MappingNode, ScalarNode, SequenceNode
+from assayfolio.study.vocabulary import (
+    ACROSS_RESPONSES,
+    ADJUSTMENTS,
+    EQUIVALENCE_ADJUSTMENTS,
+    QUANTITIES,
+    Effects,
+    Variances,
+)
+
+
+@dataclass(frozen=True, slots=True)
+class Outline:
+    """What the rules ask of a whole definition; None where it could not be read, which breaks no rule.
+
+    `levels` is empty where none are declared; `estimates` tells whether estimates of precision are planned.
+    """
+
+    root: MappingNode
+    effects: Effects | None
+    variances: Variances | None
+    across_responses: str | None
+    levels: tuple[str, ...] | None
+    responses: tuple[str, ...] | None
+    estimates: bool | None
+    alpha: Fraction | None
+
+    @property
+    def random(self) -> bool:
+        """Whether the levels are a sample."""
+        return self.effects == "random"
+
+    @property
+    def fixed(self) -> bool:
+        """Whether the levels themselves are of interest."""
+        return self.effects == "fixed"
+
+    @property
+    def pooled(self) -> bool:
+        """Whether fixed levels share one variance."""
+        return self.fixed and self.variances == "pooled"
+
+    @property
+    def separate(self) -> bool:
+        """Whether each fixed level has its own variance; random levels rule that out, and are told alone."""
+        return self.fixed and self.variances == "separate"
+
+
+@dataclass(frozen=True, slots=True)
+class Rule:
+    """`key` may not hold one of `words` (no words: may not be there) where `broken` holds.
+
+    `broken` is asked about the definition and the mapping in which the key stands. `why` continues the
+    sentence that names key and word; `instead` is what to do.
+    """
+
+    key: str
+    words: tuple[str, ...]
+    broken: Callable[[Outline, MappingNode], bool]
+    why: str
+    instead: str
+
+
+def report_breaches(outline: Outline, faults: Faults) -> None:
+    """Report every rule that the definition breaks, each at the word or key that breaks it."""
+    for rule in RULES:
+        for mapping, entry in _places(outline.root, rule.key):
+            word = entry.value.text if isinstance(entry.value, ScalarNode) else None
+            if rule.words and word in rule.words and rule.broken(outline, mapping):
+                faults.add(entry.value.place, f"`{rule.key}` is `{word}`{rule.why}", rule.instead)
+            elif not rule.words and rule.broken(outline, mapping):
+                faults.add(entry.key.place, f"`{rule.key}`{rule.why}", rule.instead)
+
+
+def _places(root: MappingNode, key: str) -> Iterator[tuple[MappingNode, Entry]]:
+    """Each mapping that holds the last part of `key`, in the section that its first part names."""
+    section, _, last = key.rpartition(".")
+    for mapping in _mappings(root, section) if section else (root,):
+        entry = mapping.entry(last)
+        if entry is not None:
+            yield mapping, entry
+
+
+def _mappings(root: MappingNode, section: str) -> Iterator[MappingNode]:
+    entry = root.entry(section)
+    node = None if entry is None else entry.value
+    for item in node.items if isinstance(node, SequenceNode) else (node,):
+        if isinstance(item, MappingNode):
+            yield item
+
+
+def _word(mapping: MappingNode, key: str) -> str | None:
+    entry = mapping.entry(key)
+    return entry.value.text if entry is not None and isinstance(entry.value, ScalarNode) else None
+
+
+def _several_rows(outline: Outline, mapping: MappingNode) -> bool:
+    """Whether the family has, or could have, more than one row."""
+    keys = {entry.key.text for entry in mapping.entries}
+    return several_rows(keys, _word(mapping, "trend"), outline.levels or ()) is not False
+
+
+def _separate_and_one_row(outline: Outline, mapping: MappingNode) -> bool:
+    return outline.separate and not _several_rows(outline, mapping)
+
+
+def _separate_and_several_rows(outline: Outline, mapping: MappingNode) -> bool:
+    return outline.separate and _several_rows(outline, mapping)
+
+
+def _sidak_of_contrasts(_: Outline, mapping: MappingNode) -> bool:
+    of_contrasts = mapping.entry("contrasts") is not None or mapping.entry("trend") is not None
+    return of_contrasts and _word(mapping, "adjust") == "sidak"
+
+
+def _beyond_holm(outline: Outline, mapping: MappingNode) -> bool:
+    """Whether the family cannot be adjusted together with the same family of the other responses."""
+    if outline.across_responses != "holm" or outline.levels is None or len(outline.responses or ()) < 2:
+        return False
+    return _word(mapping, "adjust") != "none" or _several_rows(outline, mapping)
+
+
+def _without_reference(outline: Outline, _: MappingNode) -> bool:
+    places = [f"{section}.against" for section in ("comparisons", "equivalence", "spread")]
+    return not outline.random and not any(list(_places(outline.root, place)) for place in places)
+
+
+def _too_large_for_equivalence(outline: Outline, _: MappingNode) -> bool:
+    return (
+        outline.alpha is not None
+        and outline.alpha >= Fraction(1, 2)
+        and any(entry.entry("alpha") is None for entry in _mappings(outline.root, "equivalence"))
+    )
+
+
+def _without_estimates(outline: Outline, mapping: MappingNode) -> bool:
+    if outline.estimates is not False or outline.separate:
+        return False
+    return outline.random or (outline.fixed and _word(mapping, "quantity") in _WITHIN)
+
+
+_WITHIN = tuple(quantity for quantity in QUANTITIES if quantity.startswith("repeatability-"))
+_BETWEEN = tuple(quantity for quantity in QUANTITIES if quantity.startswith(("between-", "total-")))
+_ONE_VARIANCE = ", which needs one variance for all levels, and `design.variances` is separate"
+_NOT_FOR_A_SAMPLE = "use `precision` for the spread between levels, or `effects: fixed`"
+_TOGETHER = (
+    ", and `design.across-responses: holm` adjusts the rows of a family of all responses together, by Holm"
+)
+_HOLM = "use `adjust: holm` (`none` for a single row), or `across-responses: bonferroni`"
+
+RULES = (
+    # methods against variances
+    Rule(
+        "comparisons.adjust",
+        ("tukey-kramer",),
+        lambda outline, _: outline.separate,
+        _ONE_VARIANCE,
+        "use `games-howell`, or `variances: pooled`",
+    ),
+    Rule(
+        "comparisons.adjust",
+        ("scheffe", "dunnett", "dunnett-step-down"),
+        _separate_and_several_rows,
+        _ONE_VARIANCE,
+        "use `holm`, `bonferroni` or `sidak`, or `variances: pooled`",
+    ),
+    Rule(
+        "comparisons.adjust",
+        ("scheffe",),
+        _separate_and_one_row,
+        _ONE_VARIANCE,
+        "use `none` for a single comparison, or `variances: pooled`",
+    ),
+    Rule(
+        "comparisons.adjust",
+        ("games-howell",),
+        lambda outline, _: outline.pooled,
+        ", which needs separate variances",
+        "use `design.variances: separate` with it, or another method such as `tukey-kramer`",
+    ),
+    Rule(
+        "design.omnibus",
+        ("f",),
+        lambda outline, _: outline.separate,
+        _ONE_VARIANCE,
+        "use `welch` or `brown-forsythe`, or `variances: pooled`",
+    ),
+    Rule(
+        "design.omnibus",
+        ("welch", "brown-forsythe"),
+        lambda outline, _: outline.pooled,
+        ", which is for separate variances",
+        "use `f`, or `variances: separate`",
+    ),
+    # methods against alternatives
+    Rule(
+        "comparisons.alternative",
+        ("greater", "less"),
+        lambda _, mapping: _word(mapping, "adjust") == "scheffe",
+        ", and scheffe is two-sided by construction",
+        "use `two-sided`, or another method such as `holm` (`none` for a single comparison)",
+    ),
+    Rule(
+        "comparisons.alternative",
+        ("greater", "less"),
+        _sidak_of_contrasts,
+        ", and the inequality behind sidak is for two-sided contrasts",
+        "use `bonferroni` or `holm`, or `two-sided`",
+    ),
+    Rule(
+        "alpha",
+        (),
+        _too_large_for_equivalence,
+        " is 0.5 or more, with which no equivalence test can be made",
+        "write a smaller one, such as `alpha: 0.05`",
+    ),
+    # random levels
+    *(
+        Rule(
+            key,
+            (),
+            lambda outline, _: outline.random,
+            f" {does}, but with `design.effects: random` they are a mere sample",
+            _NOT_FOR_A_SAMPLE,
+        )
+        for key, does in (
+            ("comparisons", "compares levels"),
+            ("equivalence", "compares levels"),
+            ("spread", "compares the variances of levels"),
+            ("power", "is about comparing levels"),
+            ("design.omnibus", "compares levels"),
+        )
+    ),
+    Rule(
+        "design.variances",
+        ("separate",),
+        lambda outline, _: outline.random,
+        ", for which there is no method here with `design.effects: random`",
+        "use `variances: pooled`",
+    ),
+    # precision and criteria on it
+    Rule(
+        "precision.estimate",
+        ("true", "True", "TRUE"),
+        lambda outline, _: outline.separate,
+        ", and with `design.variances: separate` the levels share no repeatability",
+        "use `spread` or criteria on `level-sd`, or `variances: pooled`",
+    ),
+    Rule(
+        "precision.conditions",
+        (),
+        lambda outline, _: outline.fixed,
+        " names the total of a sample of levels, and `design.effects` is fixed",
+        "leave it out, or use `effects: random` if the levels are a sample",
+    ),
+    Rule(
+        "criteria.quantity",
+        _BETWEEN,
+        lambda outline, _: outline.fixed,
+        ", which only a sample of levels has, and `design.effects` is fixed",
+        "use a `repeatability-` quantity or `largest-difference`, or `effects: random`",
+    ),
+    Rule(
+        "criteria.quantity",
+        _WITHIN,
+        lambda outline, _: outline.separate,
+        ", and with `design.variances: separate` the levels share no repeatability",
+        "use `level-sd` or `level-rsd`, or `variances: pooled`",
+    ),
+    Rule(
+        "criteria.quantity",
+        (*_WITHIN, *_BETWEEN),
+        _without_estimates,
+        ", which `precision` has to estimate",
+        "add `precision: {estimate: true}`",
+    ),
+    # several responses
+    Rule(
+        "design.across-responses",
+        tuple(word for word in ACROSS_RESPONSES if word != "none"),
+        lambda outline, _: len(outline.responses or ()) == 1,
+        ", and the study has one response",
+        "leave it out, or use `none`",
+    ),
+    Rule(
+        "comparisons.adjust",
+        tuple(word for word in ADJUSTMENTS if word != "holm"),
+        _beyond_holm,
+        _TOGETHER,
+        _HOLM,
+    ),
+    Rule(
+        "equivalence.adjust",
+        tuple(word for word in EQUIVALENCE_ADJUSTMENTS if word != "holm"),
+        _beyond_holm,
+        _TOGETHER,
+        _HOLM,
+    ),
+    # planning
+    Rule(
+        "power",
+        (),
+        lambda outline, _: outline.separate,
+        " needs one standard deviation, and `design.variances` is separate",
+        "leave it out, or use `variances: pooled`",
+    ),
+    Rule(
+        "power.allocation",
+        ("control",),
+        _without_reference,
+        ", and nothing is compared with a reference",
+        "use `equal`, or plan comparisons with `against`",
+    ),
+)

@@ -1,0 +1,336 @@
+"""What one section of a study definition rules out in another, and what is to be used instead."""
+
+import pytest
+
+from assayfolio.study.rules import RULES
+from study.examples import SAMPLE, SEPARATE, SMALLEST, edited, faults_of, planned
+
+ONE_VARIANCE = "which needs one variance for all levels, and `design.variances` is separate"
+SAMPLE_ONLY = "with `design.effects: random` they are a mere sample"
+NOT_FOR_A_SAMPLE = "use `precision` for the spread between levels, or `effects: fixed`"
+NOT_SHARED = "and with `design.variances: separate` the levels share no repeatability"
+TOGETHER = (
+    "and `design.across-responses: holm` adjusts the rows of a family of all responses together, by Holm"
+)
+HOLM = "use `adjust: holm` (`none` for a single row), or `across-responses: bonferroni`"
+SCORES = "scores: {reference: 0, north: 1, south: 2}"
+
+
+def separate(section: str) -> str:
+    """Three levels with a variance for each, `section` from line 10 on."""
+    return planned("design: {variances: separate}\n" + section)
+
+
+def sample(section: str) -> str:
+    """Levels that are a sample, `section` from line 9 on."""
+    return SMALLEST + "design: {effects: random}\n" + section
+
+
+def responses(design: str, section: str) -> str:
+    """Three levels and two responses, `section` from line 10 on."""
+    two = edited(planned(f"design: {design}\n"), "response: mass", "response: [mass, density]")
+    return two + section
+
+
+REFUSED = {
+    "Tukey and Kramer with separate variances": (
+        separate("comparisons: [{name: x, pairs: all, adjust: tukey-kramer}]\n"),
+        (
+            f"10:45: `comparisons.adjust` is `tukey-kramer`, {ONE_VARIANCE} - "
+            "use `games-howell`, or `variances: pooled`"
+        ),
+    ),
+    "Scheffe with separate variances": (
+        separate("comparisons: [{name: x, pairs: all, adjust: scheffe}]\n"),
+        (
+            f"10:45: `comparisons.adjust` is `scheffe`, {ONE_VARIANCE} - "
+            "use `holm`, `bonferroni` or `sidak`, or `variances: pooled`"
+        ),
+    ),
+    "Scheffe for one contrast with separate variances": (
+        separate("comparisons: [{name: x, weights: {north: 1, south: -1}, adjust: scheffe}]\n"),
+        (
+            f"10:65: `comparisons.adjust` is `scheffe`, {ONE_VARIANCE} - "
+            "use `none` for a single comparison, or `variances: pooled`"
+        ),
+    ),
+    "Scheffe for a linear trend with separate variances": (
+        separate(f"comparisons: [{{name: x, trend: linear, adjust: scheffe, {SCORES}}}]\n"),
+        (
+            f"10:48: `comparisons.adjust` is `scheffe`, {ONE_VARIANCE} - "
+            "use `none` for a single comparison, or `variances: pooled`"
+        ),
+    ),
+    "Dunnett with separate variances": (
+        separate("comparisons: [{name: x, against: north, adjust: dunnett}]\n"),
+        (
+            f"10:49: `comparisons.adjust` is `dunnett`, {ONE_VARIANCE} - "
+            "use `holm`, `bonferroni` or `sidak`, or `variances: pooled`"
+        ),
+    ),
+    "Dunnett in steps with separate variances": (
+        separate("comparisons: [{name: x, against: north, adjust: dunnett-step-down}]\n"),
+        (
+            f"10:49: `comparisons.adjust` is `dunnett-step-down`, {ONE_VARIANCE} - "
+            "use `holm`, `bonferroni` or `sidak`, or `variances: pooled`"
+        ),
+    ),
+    "Games and Howell with a pooled variance": (
+        planned("comparisons: [{name: x, pairs: all, adjust: games-howell}]\n"),
+        (
+            "9:45: `comparisons.adjust` is `games-howell`, which needs separate variances - "
+            "use `design.variances: separate` with it, or another method such as `tukey-kramer`"
+        ),
+    ),
+    "F with separate variances": (
+        planned("design: {variances: separate, omnibus: f}\n"),
+        (
+            f"9:40: `design.omnibus` is `f`, {ONE_VARIANCE} - "
+            "use `welch` or `brown-forsythe`, or `variances: pooled`"
+        ),
+    ),
+    "Welch's test with a pooled variance": (
+        planned("design: {omnibus: welch}\n"),
+        (
+            "9:19: `design.omnibus` is `welch`, which is for separate variances - "
+            "use `f`, or `variances: separate`"
+        ),
+    ),
+    "the test of Brown and Forsythe with a pooled variance": (
+        planned("design: {variances: pooled, omnibus: brown-forsythe}\n"),
+        (
+            "9:38: `design.omnibus` is `brown-forsythe`, which is for separate variances - "
+            "use `f`, or `variances: separate`"
+        ),
+    ),
+    "Scheffe in one direction": (
+        planned("comparisons: [{name: x, against: north, adjust: scheffe, alternative: less}]\n"),
+        (
+            "9:71: `comparisons.alternative` is `less`, and scheffe is two-sided by construction - "
+            "use `two-sided`, or another method such as `holm` (`none` for a single comparison)"
+        ),
+    ),
+    "Sidak for contrasts in one direction": (
+        planned(
+            "comparisons: [{name: x, contrasts: [{name: y, weights: {north: 1, south: -1}}], adjust: sidak, "
+            "alternative: greater}]\n"
+        ),
+        (
+            "9:109: `comparisons.alternative` is `greater`, and the inequality behind sidak is for two-sided "
+            "contrasts - use `bonferroni` or `holm`, or `two-sided`"
+        ),
+    ),
+    "Sidak for a trend in one direction": (
+        planned(
+            "comparisons: [{name: x, trend: polynomial, degree: 2, adjust: sidak, alternative: less, "
+            f"{SCORES}}}]\n"
+        ),
+        (
+            "9:83: `comparisons.alternative` is `less`, and the inequality behind sidak is for two-sided "
+            "contrasts - use `bonferroni` or `holm`, or `two-sided`"
+        ),
+    ),
+    "equivalence at an alpha of a half": (
+        edited(
+            planned("equivalence: [{name: x, pairs: all, margin: 1, adjust: holm}]\n"),
+            "alpha: 0.05",
+            "alpha: 0.5",
+        ),
+        (
+            "8:1: `alpha` is 0.5 or more, with which no equivalence test can be made - "
+            "write a smaller one, such as `alpha: 0.05`"
+        ),
+    ),
+    "comparisons of random levels": (
+        sample("comparisons: [{name: x, pairs: all, adjust: holm}]\n"),
+        f"9:1: `comparisons` compares levels, but {SAMPLE_ONLY} - {NOT_FOR_A_SAMPLE}",
+    ),
+    "equivalence of random levels": (
+        sample("equivalence: [{name: x, pairs: all, margin: 1, adjust: holm}]\n"),
+        f"9:1: `equivalence` compares levels, but {SAMPLE_ONLY} - {NOT_FOR_A_SAMPLE}",
+    ),
+    "spread of random levels": (
+        sample("spread: {against: a, adjust: holm}\n"),
+        f"9:1: `spread` compares the variances of levels, but {SAMPLE_ONLY} - {NOT_FOR_A_SAMPLE}",
+    ),
+    "power for random levels": (
+        sample("power: {difference: 1, sigma: 1, target: 0.9}\n"),
+        f"9:1: `power` is about comparing levels, but {SAMPLE_ONLY} - {NOT_FOR_A_SAMPLE}",
+    ),
+    "an omnibus test of random levels": (
+        SMALLEST + "design: {effects: random, omnibus: f}\n",
+        f"8:27: `design.omnibus` compares levels, but {SAMPLE_ONLY} - {NOT_FOR_A_SAMPLE}",
+    ),
+    "separate variances of random levels": (
+        SMALLEST + "design: {effects: random, variances: separate}\nprecision: {estimate: true}\n",
+        (
+            "8:38: `design.variances` is `separate`, for which there is no method here with "
+            "`design.effects: random` - use `variances: pooled`"
+        ),
+    ),
+    "precision with separate variances": (
+        separate("precision: {estimate: true}\n"),
+        (
+            f"10:23: `precision.estimate` is `true`, {NOT_SHARED} - "
+            "use `spread` or criteria on `level-sd`, or `variances: pooled`"
+        ),
+    ),
+    "the conditions of fixed levels": (
+        planned("precision: {estimate: true, conditions: reproducibility}\n"),
+        (
+            "9:29: `precision.conditions` names the total of a sample of levels, and `design.effects` is "
+            "fixed - leave it out, or use `effects: random` if the levels are a sample"
+        ),
+    ),
+    "a criterion on the spread between fixed levels": (
+        planned("criteria: [{quantity: between-sd, at-most: 1}]\n"),
+        (
+            "9:23: `criteria.quantity` is `between-sd`, which only a sample of levels has, and "
+            "`design.effects` is fixed - use a `repeatability-` quantity or `largest-difference`, or "
+            "`effects: random`"
+        ),
+    ),
+    "a criterion on the total of fixed levels": (
+        planned("precision: {estimate: true}\ncriteria: [{quantity: total-rsd, at-most: 1}]\n"),
+        (
+            "10:23: `criteria.quantity` is `total-rsd`, which only a sample of levels has, and "
+            "`design.effects` is fixed - use a `repeatability-` quantity or `largest-difference`, or "
+            "`effects: random`"
+        ),
+    ),
+    "a criterion on repeatability with separate variances": (
+        separate("criteria: [{quantity: repeatability-limit, at-most: 1}]\n"),
+        (
+            f"10:23: `criteria.quantity` is `repeatability-limit`, {NOT_SHARED} - "
+            "use `level-sd` or `level-rsd`, or `variances: pooled`"
+        ),
+    ),
+    "a criterion on repeatability that nothing estimates": (
+        planned("criteria: [{quantity: repeatability-sd, at-most: 1}]\n"),
+        (
+            "9:23: `criteria.quantity` is `repeatability-sd`, which `precision` has to estimate - "
+            "add `precision: {estimate: true}`"
+        ),
+    ),
+    "a criterion on a total that is not to be estimated": (
+        sample("precision: {estimate: false}\ncriteria: [{quantity: total-sd, at-most: 1}]\n"),
+        (
+            "10:23: `criteria.quantity` is `total-sd`, which `precision` has to estimate - "
+            "add `precision: {estimate: true}`"
+        ),
+    ),
+    "an adjustment across one response": (
+        planned("design: {across-responses: bonferroni}\n"),
+        (
+            "9:28: `design.across-responses` is `bonferroni`, and the study has one response - "
+            "leave it out, or use `none`"
+        ),
+    ),
+    "Tukey and Kramer under Holm across responses": (
+        responses("{across-responses: holm}", "comparisons: [{name: x, pairs: all, adjust: tukey-kramer}]\n"),
+        f"10:45: `comparisons.adjust` is `tukey-kramer`, {TOGETHER} - {HOLM}",
+    ),
+    "several rows without adjustment under Holm across responses": (
+        responses("{across-responses: holm}", "comparisons: [{name: x, against: north, adjust: none}]\n"),
+        f"10:49: `comparisons.adjust` is `none`, {TOGETHER} - {HOLM}",
+    ),
+    "Scheffe for one row under Holm across responses": (
+        responses(
+            "{across-responses: holm}",
+            "comparisons: [{name: x, weights: {north: 1, south: -1}, adjust: scheffe}]\n",
+        ),
+        f"10:65: `comparisons.adjust` is `scheffe`, {TOGETHER} - {HOLM}",
+    ),
+    "equivalence by Bonferroni under Holm across responses": (
+        responses(
+            "{across-responses: holm}",
+            "equivalence: [{name: x, against: north, margin: 1, adjust: bonferroni}]\n",
+        ),
+        f"10:60: `equivalence.adjust` is `bonferroni`, {TOGETHER} - {HOLM}",
+    ),
+    "power with separate variances": (
+        separate("power: {difference: 1, sigma: 1, target: 0.9}\n"),
+        (
+            "10:1: `power` needs one standard deviation, and `design.variances` is separate - "
+            "leave it out, or use `variances: pooled`"
+        ),
+    ),
+    "an allocation to a control that is none": (
+        planned("power: {difference: 1, sigma: 1, target: 0.9, allocation: control}\n"),
+        (
+            "9:59: `power.allocation` is `control`, and nothing is compared with a reference - "
+            "use `equal`, or plan comparisons with `against`"
+        ),
+    ),
+}
+
+
+@pytest.mark.parametrize(("text", "fault"), REFUSED.values(), ids=REFUSED.keys())
+def test_it_is_refused_with_its_place_and_what_to_use_instead(text: str, fault: str) -> None:
+    assert faults_of(text) == [fault]
+
+
+@pytest.mark.parametrize("rule", RULES, ids=lambda rule: f"{rule.key} {' '.join(rule.words)}")
+def test_every_rule_of_the_table_is_broken_by_one_of_these_studies(rule: object) -> None:
+    advice = {fault.rpartition(" - ")[2] for _, fault in REFUSED.values()}
+    assert getattr(rule, "instead", None) in advice
+
+
+LET_THROUGH = {
+    "every method with one variance": planned(
+        "comparisons:\n"
+        "  - {name: a, pairs: all, adjust: scheffe}\n"
+        "  - {name: b, against: north, adjust: dunnett-step-down, alternative: greater}\n"
+        "  - {name: c, weights: {north: 1, south: -1}, adjust: scheffe}\n"
+        f"  - {{name: d, trend: polynomial, degree: 2, {SCORES}, adjust: hochberg, alternative: less}}\n"
+        "  - {name: e, against: north, adjust: sidak, alternative: less}\n"
+    ),
+    "separate variances": SEPARATE,
+    "a sample of levels": SAMPLE,
+    "Welch's test with separate variances": separate("").replace("separate", "separate, omnibus: welch"),
+    "repeatability within fixed levels": planned(
+        "precision: {estimate: true}\ncriteria: [{quantity: repeatability-sd, at-most: 1}]\n"
+    ),
+    "Holm across responses": responses(
+        "{across-responses: holm}",
+        "comparisons:\n"
+        "  - {name: a, pairs: all, adjust: holm}\n"
+        "  - {name: b, weights: {north: 1, south: -1}, adjust: none}\n"
+        f"  - {{name: c, trend: linear, {SCORES}}}\n"
+        "equivalence: [{name: d, against: north, margin: 1, adjust: holm}]\n",
+    ),
+    "Bonferroni across responses beside any method": responses(
+        "{across-responses: bonferroni}", "comparisons: [{name: a, pairs: all, adjust: tukey-kramer}]\n"
+    ),
+    "no adjustment across one response": planned("design: {across-responses: none}\n"),
+    "an alpha of its own beside a large one": edited(
+        planned("equivalence: [{name: x, pairs: all, margin: 1, adjust: holm, alpha: 0.05}]\n"),
+        "alpha: 0.05\n",
+        "alpha: 0.6\n",
+    ),
+    "an allocation to a control": planned(
+        "spread: {against: north, adjust: holm}\n"
+        "power: {difference: 1, sigma: 1, target: 0.9, allocation: control}\n"
+    ),
+}
+
+
+@pytest.mark.parametrize("text", LET_THROUGH.values(), ids=LET_THROUGH.keys())
+def test_what_no_rule_forbids_is_read(text: str) -> None:
+    assert faults_of(text) == []
+
+
+def test_a_design_that_cannot_be_read_is_not_held_against_the_rest() -> None:
+    for design in ("{variances: seperate}", "{varainces: separate}", "separate"):
+        text = planned(f"design: {design}\ncomparisons: [{{name: x, pairs: all, adjust: games-howell}}]\n")
+        assert [fault.partition(":")[0] for fault in faults_of(text)] == ["9"]
+
+
+def test_a_precision_that_cannot_be_read_is_not_held_against_the_criteria() -> None:
+    text = planned("precision: {estimate: yes}\ncriteria: [{quantity: repeatability-sd, at-most: 1}]\n")
+    assert [fault.partition(":")[0] for fault in faults_of(text)] == ["9"]
+
+
+def test_a_rule_holds_in_an_entry_of_which_other_parts_cannot_be_read() -> None:
+    text = separate("comparisons: [{pairs: all, adjust: tukey-kramer, alternative: up}]\n")
+    assert [fault.partition(": ")[0] for fault in faults_of(text)] == ["10:15", "10:36", "10:50", "10:63"]
