@@ -6,8 +6,8 @@ from pathlib import Path
 import pytest
 
 from assayfolio.cli.root import cli
-from assayfolio.errors import ExitCode
-from assayfolio.study.availability import AVAILABLE_FOR_PAIRS
+from assayfolio.errors import ExitCode, StudyError
+from assayfolio.study import vocabulary
 from assayfolio.study.reading import read_study
 from assayfolio.workflow.steps import Step
 
@@ -52,10 +52,62 @@ def test_the_example_in_the_readme_is_a_study_definition():
     assert len(study.comparisons) == 3
 
 
-@pytest.mark.parametrize("method", AVAILABLE_FOR_PAIRS)
-def test_every_adjustment_that_is_available_is_in_the_readme(method):
-    words = {"none": "no adjustment", "sidak": "Sidak", "tukey-kramer": "Tukey-Kramer"}
-    assert words.get(method, method).lower() in README.lower()
+HEAD = "study: A\ntitle: t\nalpha: 0.05\n"
+COLUMNS = "  file: a.csv\n  factor: f\n  levels: [wet, nir-1, nir-2]\n"
+
+
+def test_the_other_keys_in_the_readme_are_those_of_a_study_definition():
+    section = README.partition("The other keys, none of them compulsory:")[2]
+    keys = re.search(r"```yaml\n(.*?)```", section, re.DOTALL)[1]
+    text = HEAD + keys.replace("data:\n", f"data:\n{COLUMNS}", 1)
+    study = read_study(text.encode("utf-8"), "README.md")
+    assert len(study.equivalence) == 5
+
+
+@pytest.mark.parametrize(
+    "table", [name for name in vars(vocabulary) if name.endswith("_KEYS") and name != "LABORATORY_KEYS"]
+)
+def test_every_key_of_a_study_definition_is_in_the_readme(table):
+    section = README.partition("## Study definition")[2].partition("\n## ")[0]
+    unnamed = [key for key in vars(vocabulary)[table] if not re.search(rf"\b{key}\b", section)]
+    refused = {"missing", "below-limit"}
+    assert set(unnamed) <= refused | {"purpose"}
+
+
+SCORES = "scores: {wet: 0, nir-1: 1, nir-2: 2}"
+FAMILIES = {
+    "`pairs: all`": "pairs: all",
+    "`against:` a level": "against: wet",
+    "`contrasts:`, `trend: polynomial`": f"trend: polynomial, degree: 2, {SCORES}",
+    "`weights:`, `trend: linear`": f"trend: linear, {SCORES}",
+}
+
+
+def methods_for(family, variances):
+    """The words for `adjust` with which a study definition is accepted."""
+    accepted = set()
+    for method in vocabulary.ADJUSTMENTS:
+        comparison = f"comparisons: [{{name: c, {family}, adjust: {method}}}]\n"
+        text = f"{HEAD}data:\n  response: y\n{COLUMNS}design: {{variances: {variances}}}\n{comparison}"
+        try:
+            read_study(text.encode("utf-8"), "study.yaml")
+        except StudyError:
+            continue
+        accepted.add(method)
+    return accepted
+
+
+@pytest.mark.parametrize("row", FAMILIES)
+def test_the_methods_in_the_table_of_the_readme_are_those_that_are_accepted(row):
+    cells = re.search(rf"^\| {re.escape(row)} \| (.*) \| (.*) \|$", README, re.MULTILINE).groups()
+    pooled, separate = (set(cell.split(", ")) for cell in cells)
+    assert pooled == methods_for(FAMILIES[row], "pooled")
+    assert separate == methods_for(FAMILIES[row], "separate")
+
+
+@pytest.mark.parametrize("requirement", vocabulary.REQUIREMENTS)
+def test_everything_that_a_laboratory_can_require_is_in_the_readme(requirement):
+    assert f"`{requirement}`" in README.partition("`require:` list")[2].partition("\n## ")[0]
 
 
 @pytest.mark.parametrize("step", list(Step))

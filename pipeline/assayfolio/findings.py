@@ -1,33 +1,40 @@
-"""The findings of a run: typed values, and the document `findings.json` made from them.
+"""The findings of a run as typed values; `findings_document` turns them into `findings.json`.
 
 Quantities that are rational, or the square root of a rational, stay exact here (`Fraction`, `Root`) and
 become the correctly rounded double in the document. Quantities through a distribution function are floats
 already rounded to 12 significant digits.
 """
 
-from collections.abc import Mapping
-from dataclasses import dataclass, field
+from dataclasses import dataclass
 from fractions import Fraction
 
-from assayfolio.canonical import Json, canonical_bytes
-from assayfolio.exact import Exact, ExactSums, Root, to_double
-
-FORMAT = "assayfolio-findings/1"
+from assayfolio.exact import Exact, ExactSums, Root
 
 DIFFERENCE_SHOWN = "difference shown"
 DIFFERENCE_NOT_SHOWN = "difference not shown"
+EQUIVALENCE_SHOWN = "equivalence shown"
+EQUIVALENCE_NOT_SHOWN = "equivalence not shown"
+NON_INFERIORITY_SHOWN = "non-inferiority shown"
+NON_INFERIORITY_NOT_SHOWN = "non-inferiority not shown"
+CRITERION_MET = "criterion met"
+CRITERION_NOT_MET = "criterion not met"
 NOT_ASSESSABLE = "not assessable"
+OUTLIER = "outlier"
+STRAGGLER = "straggler"
+NEITHER = "neither straggler nor outlier"
 
 Interval = tuple[float | None, float | None]
 
 
 @dataclass(frozen=True, slots=True)
 class LevelFindings:
-    """One level: n, mean, standard deviation and their intervals (pooled error, N - k degrees of freedom).
+    """One level: n, mean, standard deviation and their intervals.
 
-    `sd_ci` is the chi-square interval of this level's own standard deviation with n - 1 degrees of freedom.
-    `sd` and `sd_ci` are None where n = 1, `sd_ci` also where all values of the level are equal; `ci` is None
-    where inference is not reported.
+    The interval of the mean uses the error that the plan names: pooled, on N - k degrees of freedom, or the
+    level's own on n - 1. `sd_ci` is the chi-square interval of this level's own standard deviation with n - 1
+    degrees of freedom. `sd` and `sd_ci` are None where n = 1, `sd_ci` also where all values of the level are
+    equal; `ci` is None where inference is not reported. These intervals are at 1 - alpha each, whatever
+    adjustment over several responses is planned.
     """
 
     level: str
@@ -52,7 +59,13 @@ class Source:
 
 @dataclass(frozen=True, slots=True)
 class AnovaFindings:
-    """The analysis of variance. `f` and what follows from it are None where inference is not reported."""
+    """The analysis of variance with its F test.
+
+    `f` and what follows from it are None where inference is not reported. `p_adjusted` is p adjusted for the
+    number of responses, p itself where no such adjustment is planned; the verdict follows it. `f_critical` is
+    at the level that one response is tested at, and None with Holm over the responses, which has no such
+    level.
+    """
 
     between: Source
     within: Source
@@ -62,18 +75,65 @@ class AnovaFindings:
     f: Fraction | None
     p: float | None
     log10_p: float | None
+    p_adjusted: float | None
     f_critical: float | None
     verdict: str
 
 
 @dataclass(frozen=True, slots=True)
+class WelchFindings:
+    """Welch's test of equal means with a variance for each level."""
+
+    f: Fraction
+    df1: int
+    df2: Fraction
+    p: float
+    log10_p: float
+    p_adjusted: float
+    verdict: str
+
+
+@dataclass(frozen=True, slots=True)
+class BrownForsytheMeansFindings:
+    """The Brown-Forsythe test of equal means (F*), with its own and with Mehrotra's first degrees of freedom.
+
+    The verdict follows the test as published by Brown and Forsythe, on k - 1.
+    """
+
+    f: Fraction
+    df1: int
+    df2: Fraction
+    p: float
+    log10_p: float
+    p_adjusted: float
+    df1_mehrotra: Fraction
+    p_mehrotra: float
+    verdict: str
+
+
+@dataclass(frozen=True, slots=True)
+class EffectFindings:
+    """Effect sizes, with the interval of Cohen's f at `confidence`; None where it cannot be given."""
+
+    eta_squared: Fraction
+    omega_squared: Fraction
+    epsilon_squared: Fraction
+    cohen_f: Root | None
+    cohen_f_ci: Interval | None
+    confidence: Fraction
+
+
+@dataclass(frozen=True, slots=True)
 class ComparisonRow:
-    """One comparison. `ci` is None where the method has no interval; an open end is None."""
+    """One comparison. `ci` is None where the method has no interval; an open end is None.
+
+    `df` is a whole number with the pooled error, Welch-Satterthwaite's number with separate variances.
+    """
 
     label: str
     estimate: Fraction
     se: Root
-    df: int
+    df: int | float
     statistic: Exact
     p: float
     p_adjusted: float
@@ -84,14 +144,96 @@ class ComparisonRow:
 
 @dataclass(frozen=True, slots=True)
 class ComparisonFamily:
-    """A registered family of comparisons with its own error rate."""
+    """A family of comparisons with its own error rate.
+
+    `kind` is pairs, against, contrast, contrasts or trend, `against` the reference of the second kind;
+    `method` the standard name of the procedure.
+    `responses` is over how many responses the family is adjusted as well, `across_responses` how: none,
+    bonferroni or holm.
+    """
 
     name: str
+    kind: str
     adjust: str
+    method: str
     alternative: str
     registered: bool
     family_size: int
+    responses: int
     rows: tuple[ComparisonRow, ...]
+    across_responses: str = "none"
+    against: str | None = None
+
+
+@dataclass(frozen=True, slots=True)
+class EquivalenceRow:
+    """One pair: two one-sided tests, or one of them for non-inferiority (the other p is None).
+
+    With percent margins estimate and interval are 100 (mean_X / mean_R - 1), and `se` and `df` are None.
+    """
+
+    label: str
+    estimate: Fraction
+    se: Root | None
+    df: int | float | None
+    ci: Interval
+    p_lower: float | None
+    p_upper: float | None
+    p: float
+    p_adjusted: float
+    log10_p_adjusted: float
+    verdict: str
+
+
+@dataclass(frozen=True, slots=True)
+class EquivalenceFamily:
+    """A family of equivalence or non-inferiority tests.
+
+    `claim` is equivalence or non-inferiority, `scale` units or percent (of the reference mean): that of
+    `lower` and `upper`, None where that side is open. `against` is the reference, None for all pairs. `alpha`
+    is the level of each one-sided test; `responses` and `across_responses` as in ComparisonFamily.
+    """
+
+    name: str
+    claim: str
+    scale: str
+    lower: Fraction | None
+    upper: Fraction | None
+    margin_source: str | None
+    adjust: str
+    method: str
+    alpha: Fraction
+    registered: bool
+    family_size: int
+    responses: int
+    rows: tuple[EquivalenceRow, ...]
+    across_responses: str = "none"
+    against: str | None = None
+
+
+@dataclass(frozen=True, slots=True)
+class SpreadRow:
+    """The variance of one level divided by that of the reference."""
+
+    label: str
+    ratio: Fraction
+    df: tuple[int, int]
+    p: float
+    p_adjusted: float
+    ci: Interval | None
+    verdict: str
+
+
+@dataclass(frozen=True, slots=True)
+class SpreadFindings:
+    """Variance ratios against the reference; `responses` and `across_responses` as in ComparisonFamily."""
+
+    against: str
+    adjust: str
+    method: str
+    rows: tuple[SpreadRow, ...]
+    responses: int = 1
+    across_responses: str = "none"
 
 
 @dataclass(frozen=True, slots=True)
@@ -103,148 +245,182 @@ class CheckFindings:
 
     name: str
     statistic: Exact | float | None
-    df: tuple[int, ...] | None
+    df: tuple[int | float, ...] | None
     p: float | None
     note: str
 
 
 @dataclass(frozen=True, slots=True)
+class OutlierFindings:
+    """One outlier test on one level: what it proposes to look into; nothing is removed.
+
+    `test` is the word of the plan. `lines` and `values` are the values in question with their lines in the
+    data file, empty where the test is about the level's variance. `p` is a bound, never too small. Statistic,
+    limits and p are None where the test is not assessable; `note` says why, and `level` is empty where that
+    is so of all levels.
+    """
+
+    test: str
+    level: str
+    lines: tuple[int, ...]
+    values: tuple[Fraction, ...]
+    statistic: Exact | float | None
+    straggler_limit: float | None
+    outlier_limit: float | None
+    verdict: str
+    note: str
+    p: float | None = None
+
+
+@dataclass(frozen=True, slots=True)
+class MeanUncertaintyFindings:
+    """A mean with its standard uncertainty and interval, one of the two ways of GUM H.5.
+
+    `way` is "between levels" or "pooled"; `ci` is None where the uncertainty is zero.
+    """
+
+    way: str
+    mean: Fraction
+    u: Root
+    df: int
+    ci: Interval | None
+
+
+@dataclass(frozen=True, slots=True)
+class PrecisionFindings:
+    """Precision from the one-way layout, intervals at `confidence`.
+
+    With fixed levels only the repeatability part is there and the rest is None. `total_name` says what the
+    total is called: intermediate precision, reproducibility, or total. Relative quantities are in percent of
+    the grand mean; None where that is zero. `interval_method` names how `total_sd_ci` was formed,
+    `total_sd_ci_satterthwaite` is the second way, on `total_df`. `mean` and what follows are the one to state
+    of `mean_ways`.
+    """
+
+    confidence: Fraction
+    varied: str | None
+    repeatability_sd: Root
+    repeatability_sd_ci: Interval | None
+    repeatability_rsd: Root | None
+    repeatability_limit: Root
+    total_name: str | None = None
+    between_sd: Root | None = None
+    between_variance_raw: Fraction | None = None
+    between_rsd: Root | None = None
+    total_sd: Root | None = None
+    total_sd_ci: Interval | None = None
+    total_sd_ci_satterthwaite: Interval | None = None
+    total_df: float | None = None
+    total_rsd: Root | None = None
+    total_limit: Root | None = None
+    interval_method: str | None = None
+    n0: Fraction | None = None
+    icc: Fraction | None = None
+    icc_ci: Interval | None = None
+    icc_method: str | None = None
+    mean: Fraction | None = None
+    mean_u: Root | None = None
+    mean_df: float | None = None
+    mean_method: str | None = None
+    mean_ci: Interval | None = None
+    mean_ways: tuple[MeanUncertaintyFindings, ...] = ()
+
+
+@dataclass(frozen=True, slots=True)
+class CriterionFindings:
+    """One limit set in advance: `relation` is "at most" or "at least"; compared on the exact value."""
+
+    quantity: str
+    level: str | None
+    value: Exact | None
+    relation: str
+    limit: Fraction
+    unit: str | None
+    verdict: str
+
+
+@dataclass(frozen=True, slots=True)
+class PowerRow:
+    """One planned test: its power at the planned numbers, and what would reach the target.
+
+    `n_for_target` is by level, None where no number up to the limit of the search reaches it;
+    `detectable_difference` the smallest difference with the target power at the planned numbers;
+    `half_width` that of the interval where s equals the planning sigma.
+    """
+
+    question: str
+    method: str
+    meaning: str
+    power: float
+    n_for_target: tuple[int, ...] | None
+    detectable_difference: float | None
+    half_width: float | None
+
+
+@dataclass(frozen=True, slots=True)
+class PowerFindings:
+    """The power of the plan, from the plan alone; never from the data."""
+
+    response: str
+    unit: str | None
+    levels: tuple[str, ...]
+    replicates: tuple[int, ...]
+    alpha: Fraction
+    difference: Fraction
+    sigma: Fraction
+    target: Fraction
+    true_difference: Fraction
+    allocation: str
+    rows: tuple[PowerRow, ...]
+
+
+@dataclass(frozen=True, slots=True)
 class NotReported:
-    """Something that was asked for and cannot be given, with the reason."""
+    """Something that was asked for and cannot be given, with the reason; `response` where it is about one."""
 
     what: str
     reason: str
+    response: str | None = None
 
 
 @dataclass(frozen=True, slots=True)
 class ResponseFindings:
-    """All findings on one response. `comparisons` keeps the order of the plan."""
+    """All findings on one response. `comparisons` and `equivalence` keep the order of the plan.
+
+    `omnibus` names the overall test that was planned (f, welch, brown-forsythe), whose verdict answers the
+    overall question.
+    """
 
     response: str
     unit: str | None
     alpha: Fraction
     levels: tuple[LevelFindings, ...]
     anova: AnovaFindings
+    omnibus: str = "f"
+    welch: WelchFindings | None = None
+    brown_forsythe_means: BrownForsytheMeansFindings | None = None
+    effect: EffectFindings | None = None
     comparisons: tuple[ComparisonFamily, ...] = ()
+    equivalence: tuple[EquivalenceFamily, ...] = ()
+    spread: SpreadFindings | None = None
     checks: tuple[CheckFindings, ...] = ()
+    outliers: tuple[OutlierFindings, ...] = ()
+    precision: PrecisionFindings | None = None
+    criteria: tuple[CriterionFindings, ...] = ()
+
+    @property
+    def overall_verdict(self) -> str:
+        """The answer to the overall question: the verdict of the overall test that was planned."""
+        tests = {"f": self.anova, "welch": self.welch, "brown-forsythe": self.brown_forsythe_means}
+        planned = tests[self.omnibus]
+        return NOT_ASSESSABLE if planned is None else planned.verdict
 
 
 @dataclass(frozen=True, slots=True)
 class Findings:
-    """The findings of a study: one entry a response, and what could not be reported."""
+    """The findings of a study: one entry a response, the power of the plan, what could not be reported."""
 
     study: str
     responses: tuple[ResponseFindings, ...]
-    not_reported: tuple[NotReported, ...] = field(default=())
-
-
-def findings_document(findings: Findings) -> Mapping[str, Json]:
-    """`findings` as the value of `findings.json`: doubles, texts, lists; keys as published."""
-    return {
-        "format": FORMAT,
-        "study": findings.study,
-        "responses": {response.response: _response(response) for response in findings.responses},
-        "exclusions": [],
-        "deviations": [],
-        "not_reported": [{"what": item.what, "reason": item.reason} for item in findings.not_reported],
-    }
-
-
-def findings_bytes(findings: Findings) -> bytes:
-    """`findings.json`: the document as canonical JSON (RFC 8785)."""
-    return canonical_bytes(findings_document(findings))
-
-
-def _number(value: Exact | float | int | None) -> float | int | None:
-    if isinstance(value, Fraction | Root):
-        return to_double(value)
-    return value
-
-
-def _interval(interval: Interval | None) -> Json:
-    return None if interval is None else [interval[0], interval[1]]
-
-
-def _response(found: ResponseFindings) -> Mapping[str, Json]:
-    document: dict[str, Json] = {
-        "unit": found.unit,
-        "alpha": to_double(found.alpha),
-        "levels": [_level(level) for level in found.levels],
-        "anova": _anova(found.anova),
-    }
-    if found.comparisons:
-        document["comparisons"] = [_family(family) for family in found.comparisons]
-    if found.checks:
-        document["checks"] = [
-            {
-                "name": check.name,
-                "statistic": _number(check.statistic),
-                "df": None if check.df is None else list(check.df),
-                "p": check.p,
-                "note": check.note,
-            }
-            for check in found.checks
-        ]
-    return document
-
-
-def _level(level: LevelFindings) -> Mapping[str, Json]:
-    return {
-        "level": level.level,
-        "n": level.n,
-        "mean": _number(level.mean),
-        "sd": _number(level.sd),
-        "sd_ci": _interval(level.sd_ci),
-        "min": _number(level.minimum),
-        "max": _number(level.maximum),
-        "ci": _interval(level.ci),
-        "sums": {
-            "n": str(level.sums.n),
-            "sum": level.sums.sum_text,
-            "sum_of_squares": level.sums.sum_of_squares_text,
-        },
-    }
-
-
-def _anova(anova: AnovaFindings) -> Mapping[str, Json]:
-    return {
-        "between": _source(anova.between),
-        "within": _source(anova.within),
-        "total": {"ss": _number(anova.total.ss), "df": anova.total.df},
-        "residual_sd": _number(anova.residual_sd),
-        "r_squared": _number(anova.r_squared),
-        "f": _number(anova.f),
-        "p": anova.p,
-        "log10_p": anova.log10_p,
-        "f_critical": anova.f_critical,
-        "verdict": anova.verdict,
-    }
-
-
-def _source(source: Source) -> Mapping[str, Json]:
-    return {"ss": _number(source.ss), "df": source.df, "ms": _number(source.ms)}
-
-
-def _family(family: ComparisonFamily) -> Mapping[str, Json]:
-    return {
-        "name": family.name,
-        "adjust": family.adjust,
-        "alternative": family.alternative,
-        "registered": family.registered,
-        "family_size": family.family_size,
-        "rows": [
-            {
-                "label": row.label,
-                "estimate": _number(row.estimate),
-                "se": _number(row.se),
-                "df": row.df,
-                "statistic": _number(row.statistic),
-                "p": row.p,
-                "p_adjusted": row.p_adjusted,
-                "log10_p_adjusted": row.log10_p_adjusted,
-                "ci": _interval(row.ci),
-                "verdict": row.verdict,
-            }
-            for row in family.rows
-        ],
-    }
+    not_reported: tuple[NotReported, ...] = ()
+    power: PowerFindings | None = None

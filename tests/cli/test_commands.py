@@ -10,7 +10,7 @@ import pytest
 from assayfolio.version import VERSION
 from support.workspaces import Bench, command, process
 
-COMMANDS = ("workspace", "check", "run", "verify", "trail")
+COMMANDS = ("workspace", "check", "power", "run", "verify", "trail")
 
 
 def test_help_lists_the_commands_that_work_and_no_others():

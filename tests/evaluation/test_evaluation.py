@@ -6,15 +6,15 @@ from math import log10
 import pytest
 
 from assayfolio.errors import DataError
-from assayfolio.evaluation import evaluate
+from assayfolio.evaluation.apply import evaluate
 from assayfolio.findings import DIFFERENCE_NOT_SHOWN, DIFFERENCE_SHOWN, NOT_ASSESSABLE
 from assayfolio.fit import check_fit
 from support.studies import demo_study, findings_of, observations_of, study_of
 
 LOTS = {
-    "lot-1": ["10.1", "10.3", "10.0", "10.2"],
-    "lot-2": ["10.9", "11.2", "11.0"],
-    "lot-3": ["10.2", "10.4", "10.1", "10.6", "10.3"],
+    "lot-1": ["10.11", "10.30", "10.02", "10.19"],
+    "lot-2": ["10.90", "11.20", "11.03"],
+    "lot-3": ["10.20", "10.41", "10.10", "10.60", "10.29"],
 }
 PARTS = """\
 comparisons:
@@ -53,7 +53,7 @@ def test_levels_and_alpha_are_those_of_plan_and_data():
     assert response.alpha == Fraction(1, 20)
     described = [(level.level, level.n, level.minimum, level.maximum) for level in response.levels]
     assert described == [
-        ("lot-1", 4, Fraction("10"), Fraction("10.3")),
+        ("lot-1", 4, Fraction("10.02"), Fraction("10.3")),
         ("lot-2", 3, Fraction("10.9"), Fraction("11.2")),
         ("lot-3", 5, Fraction("10.1"), Fraction("10.6")),
     ]
@@ -61,8 +61,9 @@ def test_levels_and_alpha_are_those_of_plan_and_data():
 
 def test_what_was_not_asked_for_is_not_there():
     (response,) = findings_of(LOTS).responses
-    assert response.comparisons == ()
-    assert response.checks == ()
+    assert response.comparisons == response.equivalence == response.checks == response.outliers == ()
+    assert response.criteria == ()
+    assert response.spread is response.precision is response.welch is response.brown_forsythe_means is None
 
 
 def test_verdicts_follow_the_adjusted_p_alone():
@@ -181,13 +182,34 @@ def test_a_p_too_small_for_a_double_has_its_logarithm():
     assert anova.verdict == DIFFERENCE_SHOWN
 
 
+def test_the_power_of_a_plan_depends_on_the_plan_alone():
+    head = (
+        "study: T\ntitle: t\ndata: {file: f.csv, response: y, factor: x, levels: [a, b], replicates: 3}\n"
+        "alpha: 0.05\n"
+    )
+    parts = "power: {difference: 1, sigma: 0.5, target: 0.9}\n"
+    plain = findings_of({"a": ["1.01", "1.12", "1.33"], "b": ["2.01", "2.22", "2.43"]}, parts, head)
+    other = findings_of({"a": ["7.01", "1.12", "9.33"], "b": ["2.01", "0.22", "2.43"]}, parts, head)
+    assert plain.power is not None
+    assert plain.power == other.power
+    assert findings_of(LOTS).power is None
+
+
+def test_a_plan_without_numbers_of_values_has_no_power_and_says_so():
+    findings = findings_of(LOTS, "power: {difference: 1, sigma: 0.5, target: 0.9}\n")
+    assert findings.power is None
+    (gap,) = findings.not_reported
+    assert gap.what == "power"
+    assert gap.response is None
+
+
 @pytest.mark.parametrize("name", ["brine-chloride", "whey-moisture"])
 def test_the_demonstration_studies_can_be_evaluated(name):
     study, observations = demo_study(name)
     findings = evaluate(study, observations)
     assert findings.not_reported == ()
     assert [f.name for f in findings.responses[0].comparisons] == [c.name for c in study.comparisons]
-    assert sum(level.n for level in findings.responses[0].levels) == len(observations.rows)
+    assert sum(level.n for level in findings.responses[0].levels) == len(observations[0].rows)
 
 
 @pytest.mark.parametrize(

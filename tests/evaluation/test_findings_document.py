@@ -7,29 +7,32 @@ from typing import Any
 
 import pytest
 
-from assayfolio.evaluation import evaluate
-from assayfolio.findings import findings_bytes, findings_document
+from assayfolio.evaluation.apply import evaluate
+from assayfolio.findings_document import findings_bytes, findings_document
 from support.reference import square_root
-from support.studies import DEMO_STUDIES, demo_study, findings_of
+from support.studies import demo_study, findings_of
 
 TOP = {"format", "study", "responses", "exclusions", "deviations", "not_reported"}
-RESPONSE = {"unit", "alpha", "levels", "anova", "comparisons", "checks"}
+RESPONSE = {"unit", "alpha", "omnibus", "levels", "anova", "effect", "comparisons", "checks"}
 LEVEL = {"level", "n", "mean", "sd", "sd_ci", "min", "max", "ci", "sums"}
 SUMS = {"n", "sum", "sum_of_squares"}
 ANOVA = {
     *("between", "within", "total", "residual_sd", "r_squared"),
-    *("f", "p", "log10_p", "f_critical", "verdict"),
+    *("f", "p", "log10_p", "p_adjusted", "f_critical", "verdict"),
 }
-FAMILY = {"name", "adjust", "alternative", "registered", "family_size", "rows"}
+FAMILY = {
+    *("name", "kind", "against", "adjust", "method", "alternative", "registered", "family_size"),
+    *("responses", "across_responses", "rows"),
+}
 ROW = {
     *("label", "estimate", "se", "df", "statistic", "p", "p_adjusted"),
     *("log10_p_adjusted", "ci", "verdict"),
 }
 CHECK = {"name", "statistic", "df", "p", "note"}
-NOT_REPORTED = {"what", "reason"}
+NOT_REPORTED = {"what", "reason", "response"}
 
 
-@pytest.fixture(params=DEMO_STUDIES)
+@pytest.fixture(params=("brine-chloride", "whey-moisture"))
 def name(request: pytest.FixtureRequest) -> str:
     return str(request.param)
 
@@ -48,7 +51,7 @@ def response(document: dict[str, Any]) -> dict[str, Any]:
 
 @pytest.fixture
 def values(name: str) -> dict[str, list[Fraction]]:
-    _, observations = demo_study(name)
+    _, (observations,) = demo_study(name)
     return {
         level: [Fraction(row.text.replace(",", ".")) for row in observations.rows if row.level == level]
         for level in observations.levels
@@ -122,7 +125,7 @@ def test_what_cannot_be_given_stands_with_its_reason():
 
 
 def test_a_part_that_was_not_asked_for_is_absent():
-    (response,) = findings_document(findings_of({"A": ["1", "2"], "B": ["3"]}))["responses"].values()
+    (response,) = findings_document(findings_of({"A": ["1.0", "2.0"], "B": ["3.0"]}))["responses"].values()
     assert set(response) == RESPONSE - {"comparisons", "checks"}
 
 

@@ -22,6 +22,7 @@ FUNCTION_VALUES = (
     ("bal_k3_n5", "t_isf", ("half_alpha", "df_within"), "t_crit"),
 )
 RANGE_CASES = ("cdf_q3.5_k3_df10",)
+MANY_TO_ONE_CASES = ("crit_two_a0.05_n0=6_m=4_df25",)
 
 
 def nist_case(name: str) -> dict[str, object]:
@@ -77,7 +78,21 @@ def function_cases() -> list[dict[str, object]]:
             cases.append({"function": "studentized_range_sf", "arguments": arguments, "value": value})
             turned = [value, *arguments[1:]]
             cases.append({"function": "studentized_range_isf", "arguments": turned, "value": arguments[0]})
-    return [*cases, far_tail()]
+    return [*cases, *many_to_one_cases(vectors), far_tail()]
+
+
+def many_to_one_cases(vectors: Path) -> list[dict[str, object]]:
+    """A tail of the largest difference from one reference, and the point that belongs to it."""
+    cases: list[dict[str, object]] = []
+    for case in json.loads((vectors / "dunnett.json").read_text("utf-8"))["cases"]:
+        if case["name"] in MANY_TO_ONE_CASES:
+            inputs, point = case["inputs"], case["expected"]["d"]
+            sizes = " ".join(map(str, inputs["n_treatments"]))
+            rest = [str(inputs["n_control"]), sizes, str(inputs["df"])]
+            alpha = inputs["alpha"]
+            cases.append({"function": "many_to_one_sf", "arguments": [point, *rest], "value": alpha})
+            cases.append({"function": "many_to_one_isf", "arguments": [alpha, *rest], "value": point})
+    return cases
 
 
 def far_tail() -> dict[str, object]:

@@ -4,7 +4,7 @@
 
 Digits are -log10 of the largest relative difference on the grid that the row names. Tails are compared at the
 exact binary value of the argument; a point by how far it would have to move to have exactly the tail it was
-asked for. Takes about a minute.
+asked for. Takes some minutes.
 """
 
 import itertools
@@ -19,6 +19,9 @@ sys.path.insert(0, str(Path(__file__).resolve().parents[1]))
 
 from assayfolio.statistics import tails
 from assayfolio.statistics.distributions import (
+    many_to_one_isf,
+    many_to_one_log10_sf,
+    many_to_one_sf,
     studentized_range_isf,
     studentized_range_log10_sf,
     studentized_range_sf,
@@ -32,6 +35,8 @@ from support.high_precision import (
     normal_tail,
     t_tail,
 )
+from support.many_to_one_by_trapezoid import many_to_one_tail
+from support.many_to_one_in_high_precision import normal_maximum_tail
 from support.range_by_trapezoid import studentized_range_tails
 from support.reference import cases_of
 
@@ -148,11 +153,59 @@ def trapezoid_errors(levels: Iterable[float]) -> Iterator[float]:
         yield max(abs(tail / upper - 1), abs((1 - tail) - lower))
 
 
+def many_to_one_reference_errors(given: str) -> Iterator[float]:
+    """Of `many_to_one_sf` where a statistic t is `given`, else of `many_to_one_isf`, against the vectors."""
+    for case in cases_of("dunnett").values():
+        inputs, expected = case["inputs"], case["expected"]
+        if given in inputs:
+            law = (inputs["n_control"], inputs["n_treatments"], float(inputs["df"]), inputs["sided"] == "two")
+            if given == "t":
+                yield distance(many_to_one_sf(float(inputs["t"]), *law), mp.mpf(expected["sf"]))
+            else:
+                yield distance(many_to_one_isf(float(inputs["alpha"]), *law), mp.mpf(expected["d"]))
+
+
+def many_to_one_trapezoid_errors(levels: Iterable[float], dfs: Iterable[float]) -> Iterator[float]:
+    """Of `many_to_one_log10_sf` against the nested trapezoidal rule."""
+    sizes: list[tuple[float, list[float]]] = [
+        (6, [6] * 20),
+        (4, [4] * 199),
+        (10, [4, 6, 20]),
+        (1, [40, 7]),
+        (100, [3] * 30),
+    ]
+    for level, (n_control, n_others), df, sides in itertools.product(levels, sizes, dfs, (1, 2)):
+        d = many_to_one_isf(level, n_control, n_others, df, two_sided=sides == 2)
+        truth = many_to_one_tail(d, n_control, n_others, df, sides)
+        tail = many_to_one_log10_sf(d, n_control, n_others, df, two_sided=sides == 2)
+        yield distance_by_log10(tail, mp.mpf(truth))
+
+
+def unequal_sizes_errors(levels: Iterable[float]) -> Iterator[float]:
+    """Of `many_to_one_log10_sf` with sigma known and sizes up to a million apart."""
+    sizes: list[tuple[float, list[float]]] = [
+        (1, [1e6] * 5),
+        (1e6, [1] * 199),
+        (1, [1e4] * 199),
+        (1, [1e6, 30]),
+    ]
+    for level, (n_control, n_others), sides in itertools.product(levels, sizes, (1, 2)):
+        d = many_to_one_isf(level, n_control, n_others, math.inf, two_sided=sides == 2)
+        truth = normal_maximum_tail(d, n_control, n_others, sides)
+        tail = many_to_one_log10_sf(d, n_control, n_others, math.inf, two_sided=sides == 2)
+        yield distance_by_log10(tail, truth)
+
+
 def rows() -> Iterator[Row]:
     """The table."""
-    library, plain = "mpmath, 50 digits", "nested trapezoidal rule, doubles"
-    vectors = "tests/vectors/studentized_range.json, 18 digits and more"
-    df = "df 1 to 1e6"
+    yield from tail_rows()
+    yield from studentized_range_rows()
+    yield from many_to_one_rows()
+
+
+def tail_rows() -> Iterator[Row]:
+    """F, t, chi-square and the normal distribution."""
+    library, df = "mpmath, 50 digits", "df 1 to 1e6"
     yield "f_sf", f"p >= 1e-30, {df}", f_errors(SHARES, distance, "f_sf"), library
     yield "f_sf", f"1e-30 > p >= 1e-300, {df}", f_errors(SMALL, distance, "f_sf"), library
     yield (
@@ -170,6 +223,13 @@ def rows() -> Iterator[Row]:
     yield "chi2_isf, chi2_ppf", f"p 0.99 to 1e-14, {df}", chi2_point_errors(), library
     yield "normal_sf", "z from -37 to 37", normal_errors(), library
     yield "normal_isf", "p 0.99 to 1e-299", normal_point_errors(), library
+
+
+def studentized_range_rows() -> Iterator[Row]:
+    """The studentized range."""
+    library, plain = "mpmath, 50 digits", "nested trapezoidal rule, doubles"
+    vectors = "tests/vectors/studentized_range.json, 18 digits and more"
+    df = "df 1 to 1e6"
     yield "studentized_range_sf", "15 cases, p down to 2e-20", reference_tail_errors(), vectors
     yield "studentized_range_isf", "13 cases, p 0.999 to 1e-10", reference_point_errors(), vectors
     yield (
@@ -185,6 +245,39 @@ def rows() -> Iterator[Row]:
         library,
     )
     yield "studentized_range_log10_sf, as a tail", "k = 2, 1e-30 > p >= 1e-299", pair_errors(SMALL), library
+
+
+def many_to_one_rows() -> Iterator[Row]:
+    """The many-to-one distribution, two-sided and one-sided in every row."""
+    plain, vectors = "nested trapezoidal rule, doubles", "tests/vectors/dunnett.json, 18 digits and more"
+    yield "many_to_one_sf", "6 cases, p down to 6e-9", many_to_one_reference_errors("t"), vectors
+    yield "many_to_one_isf", "14 cases, p 0.999 to 1e-10", many_to_one_reference_errors("alpha"), vectors
+    yield (
+        "many_to_one_log10_sf, as a tail",
+        "2 to 199 others, df 1 to 1e6 and infinite, p 0.999 to 1e-14",
+        many_to_one_trapezoid_errors(
+            (0.999, 0.9, 0.5, 0.05, 1e-5, 1e-14), (1.0, 2.5, 12.0, 120.0, 1e6, math.inf)
+        ),
+        plain,
+    )
+    yield (
+        "many_to_one_log10_sf, as a tail",
+        "2 to 199 others, df 100 to 1e6 and infinite, p 1e-30 to 1e-200",
+        many_to_one_trapezoid_errors((1e-30, 1e-60, 1e-200), (100.0, 1e6, math.inf)),
+        plain,
+    )
+    yield (
+        "many_to_one_log10_sf, as a tail",
+        "sizes up to a million apart, df infinite, p 0.9 to 1e-14",
+        unequal_sizes_errors((0.9, 0.05, 1e-14)),
+        "mpmath, 20 digits",
+    )
+    yield (
+        "many_to_one_log10_sf, as a tail",
+        "the same, p 1e-60 to 1e-290",
+        unequal_sizes_errors((1e-60, 1e-290)),
+        "mpmath, 20 digits",
+    )
 
 
 def main() -> None:

@@ -8,7 +8,7 @@ from pathlib import Path
 import pytest
 
 from assayfolio.report.render import RenderedReport, render_report
-from report.samples import CASES
+from report.cases import CASES
 
 
 @cache

@@ -5,9 +5,9 @@ from collections.abc import Callable
 from fractions import Fraction
 
 from assayfolio.errors import Place
-from assayfolio.evaluation import evaluate
+from assayfolio.evaluation.apply import evaluate
 from assayfolio.exact import parse_decimal
-from assayfolio.findings import findings_bytes
+from assayfolio.findings_document import findings_bytes
 from assayfolio.observations.values import Observation, Observations
 from assayfolio.report.facts import AttachedFile, InputFacts, ReportInput, RunFacts
 from assayfolio.study.plan import (
@@ -29,7 +29,7 @@ SIGN_OFF = (
     SignOff("reviewer", "I checked data, plan and result"),
     SignOff("approver", "I approve this report"),
 )
-BOTH_CHECKS = ChecksPlan("brown-forsythe", "shapiro-wilk")
+BOTH_CHECKS = ChecksPlan(("brown-forsythe",), ("shapiro-wilk",))
 LABORATORY = Laboratory(
     name="Tarn Valley Water Laboratory",
     address=("3 Weir Lane", "Tarn Valley"),
@@ -102,11 +102,12 @@ def study(
         study=name,
         title=title,
         purpose="Find out whether the methods in use give the same mean result on one homogenised sample.",
-        data=DataPlan(seen.file, (seen.response,), seen.factor, unit, seen.levels),
+        data=DataPlan(seen.file, (seen.response,), seen.factor, unit, levels=seen.levels),
         design=DesignPlan(),
         alpha=alpha,
         comparisons=comparisons,
         equivalence=(),
+        spread=None,
         outliers=None,
         checks=checks,
         precision=None,
@@ -118,9 +119,10 @@ def study(
 
 
 def report_input(
-    definition: StudyDefinition, seen: Observations, laboratory: Laboratory = LABORATORY
+    definition: StudyDefinition, *observed: Observations, laboratory: Laboratory = LABORATORY
 ) -> ReportInput:
-    findings = evaluate(definition, seen)
+    findings = evaluate(definition, observed)
+    seen = observed[0]
     document = findings_bytes(findings)
     yaml = f"study: {definition.study}\ntitle: {definition.title}\n".encode()
     digest = hashlib.sha256(yaml).hexdigest()
@@ -163,7 +165,7 @@ def report_input(
         AttachedFile("values.csv", "text/csv", "Raw data", "Source", b"method,nitrate\n"),
         AttachedFile("findings.json", "application/json", "Findings", "Data", document),
     )
-    return ReportInput(definition, laboratory, seen, findings, run, attachments)
+    return ReportInput(definition, laboratory, observed, findings, run, attachments)
 
 
 def all_pairs(adjust: str = "tukey-kramer", name: str = "all pairs") -> AllPairs:
@@ -324,7 +326,7 @@ def large_file() -> ReportInput:
     )
 
 
-CASES: dict[str, Callable[[], ReportInput]] = {
+CASES_OF_DIFFERENCES: dict[str, Callable[[], ReportInput]] = {
     "balanced": balanced,
     "unequal": unequal,
     "without scatter": without_scatter,

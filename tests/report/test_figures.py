@@ -9,10 +9,27 @@ import pytest
 
 from assayfolio.report.basis import Basis
 from assayfolio.report.diagnostics import blom_position, envelope, normal_plot, residual_plots
-from assayfolio.report.figures import FULL_WIDTH, MOST_ROWS, dot_plots, interval_plot
-from assayfolio.report.miniatures import WIDTH, comparison_axis, family_picture, means_picture
+from assayfolio.report.equivalence import estimates_of, margins_of
+from assayfolio.report.figures import FULL_WIDTH, MOST_HEIGHT, dot_plots
+from assayfolio.report.interval_plots import (
+    MOST_ROWS,
+    Estimate,
+    Measure,
+    band_colour,
+    interval_plot,
+    most_rows,
+)
+from assayfolio.report.miniatures import (
+    WIDTH,
+    Sketch,
+    comparison_axis,
+    equivalence_axis,
+    equivalence_picture,
+    family_picture,
+    means_picture,
+)
 from assayfolio.report.typeface import text_width
-from report.samples import CASES
+from report.cases import CASES
 
 SVG = "{http://www.w3.org/2000/svg}"
 ACCENT = "#0f5b66"
@@ -35,7 +52,10 @@ def test_every_value_is_one_circle_in_the_plot_of_values(case):
     assert sum(len(rings(picture.svg)) for picture in dot_plots(basis, ACCENT)) == basis.total
 
 
-@pytest.mark.parametrize("case", [case for case in DRAWN if case != "without scatter"])
+WITHOUT_SCATTER = ("without scatter", "nothing to compare")
+
+
+@pytest.mark.parametrize("case", [case for case in DRAWN if case not in WITHOUT_SCATTER])
 def test_every_residual_is_one_circle_in_each_plot_of_residuals(case):
     basis = Basis(CASES[case]())
     pictures = [*residual_plots(basis), normal_plot(basis, ACCENT)]
@@ -52,7 +72,9 @@ def test_many_thousand_values_are_counted_in_classes():
 def test_every_comparison_has_its_estimate_and_interval():
     basis = Basis(CASES["unequal"]())
     family = basis.response.comparisons[0]
-    picture = interval_plot(basis, family.rows, ACCENT, "x.svg", "95 % interval")
+    rows = [Estimate(basis.label(row), row.estimate, row.ci) for row in family.rows]
+    measure = Measure("difference", basis.difference_scale, "95 % interval")
+    picture = interval_plot(rows, measure, ACCENT, "x.svg")
     filled = [circle for circle in elements(picture.svg, "circle") if circle.get("fill") == ACCENT]
     assert len(filled) == len(family.rows) == 15
     intervals = [path for path in elements(picture.svg, "path") if path.get("stroke") == ACCENT]
@@ -115,15 +137,25 @@ def test_the_envelope_in_the_middle_is_that_of_a_median():
     assert envelope(Fraction(1, 2), 0.0, 100, 1.0) == pytest.approx(0.12533141373155002)
 
 
-@pytest.mark.parametrize("case", [case for case in CASES if case != "without scatter"])
+@pytest.mark.parametrize("case", [case for case in CASES if case not in WITHOUT_SCATTER])
 def test_every_small_picture_has_its_dots_above_its_axis_and_its_words_within_its_width(case):
     basis = Basis(CASES[case]())
     axis = comparison_axis(basis)
     pictures = [
-        means_picture(basis, ACCENT, "m.svg", "Table 2"),
+        means_picture(basis, Sketch(ACCENT, "m.svg", "Table 2")),
         *(
-            family_picture(basis, family, axis, ACCENT, "f.svg", "Table 12")
+            family_picture(basis, family, axis, Sketch(ACCENT, "f.svg", "Table 12"))
             for family in basis.response.comparisons
+            if family.kind != "trend"
+        ),
+        *(
+            equivalence_picture(
+                basis,
+                family,
+                equivalence_axis(basis, percent=family.scale == "percent"),
+                Sketch(ACCENT, "e.svg", "Table 13"),
+            )
+            for family in basis.response.equivalence
         ),
     ]
     for picture in pictures:
@@ -144,10 +176,9 @@ def test_dots_without_names_say_where_the_names_are():
     basis = Basis(CASES["many levels"]())
     few = basis.response.comparisons[1].rows[:3]
     family = replace(basis.response.comparisons[1], rows=few)
-    crowd = family_picture(
-        basis, basis.response.comparisons[0], comparison_axis(basis), ACCENT, "f.svg", "Table 5"
-    )
-    rows = family_picture(basis, family, comparison_axis(basis), ACCENT, "f.svg", "Table 6")
+    axis = comparison_axis(basis)
+    crowd = family_picture(basis, basis.response.comparisons[0], axis, Sketch(ACCENT, "f.svg", "Table 5"))
+    rows = family_picture(basis, family, axis, Sketch(ACCENT, "f.svg", "Table 6"))
     assert b"231 differences without intervals: see Table 5" in crowd.svg
     assert b"difference, mg; in the order of Table 6" in rows.svg
 
@@ -160,3 +191,62 @@ def test_shaded_squares_lie_between_the_first_and_the_last_value():
     for square in squares:
         columns[square.get("x")] = columns.get(square.get("x"), 0) + 1
     assert min(columns.values()) > 5  # no value of a file in even order stands in a column of its own
+
+
+def test_the_band_between_margins_is_the_accent_at_eight_per_cent():
+    assert band_colour("#000000") == "#ebebeb"
+    assert band_colour("#ffffff") == "#ffffff"
+    assert band_colour(ACCENT) == "#ecf2f3"
+
+
+def plotted(case: str, number: int) -> tuple[ET.Element, list[ET.Element]]:
+    """The drawing of an equivalence family, and the lines at its margins."""
+    basis = Basis(CASES[case]())
+    family = basis.response.equivalence[number]
+    measure = Measure("difference", basis.difference_scale, "90 % interval", margins_of(family))
+    svg = interval_plot(estimates_of(basis, family), measure, ACCENT, "x.svg").svg
+    edges = [path for path in elements(svg, "path") if path.get("stroke-width") == "0.45"]
+    return ET.fromstring(svg), [path for path in edges if path.get("stroke") == ACCENT]
+
+
+def test_the_margin_is_a_band_with_a_line_at_each_limit():
+    drawing, edges = plotted("separate variances", 0)
+    (band,) = [box for box in drawing.iter(SVG + "rect") if box.get("fill") == band_colour(ACCENT)]
+    places = sorted(float(re.search(r"M([\d.]+) ", edge.get("d"))[1]) for edge in edges)
+    left, width = float(band.get("x")), float(band.get("width"))
+    assert places == pytest.approx([left, left + width], abs=0.02)
+
+
+def test_non_inferiority_has_one_line_and_a_band_to_the_end_of_the_axis():
+    _, edges = plotted("separate variances", 2)
+    assert len(edges) == 1
+
+
+def test_percent_margins_stand_on_a_percent_axis():
+    basis = Basis(CASES["two responses"](), 1)
+    family = basis.response.equivalence[0]
+    axis = equivalence_axis(basis, percent=True)
+    picture = equivalence_picture(basis, family, axis, Sketch(ACCENT, "e.svg", "Table 1"))
+    assert family.scale == "percent"
+    assert "difference, %" in picture.svg.decode()
+    assert axis.low < family.lower < family.upper < axis.high
+
+
+@pytest.mark.parametrize("case", ["sixty levels", "many levels", "long names"])
+def test_no_figure_is_too_tall_for_its_page(case, rendered):
+    room = MOST_HEIGHT + 60
+    for name, svg in rendered(case).figures:
+        assert float(ET.fromstring(svg).get("height").removesuffix("pt")) <= room, name
+
+
+def test_long_labels_leave_room_for_fewer_rows():
+    assert most_rows(["a - b"]) == MOST_ROWS
+    assert most_rows(["a label of many words that takes several lines " * 4]) < MOST_ROWS
+
+
+def test_each_response_has_figures_of_its_own_names(rendered):
+    names = [name for name, _ in rendered("two responses").figures]
+    assert len(names) == len(set(names))
+    assert {"response-1-values-1.svg", "response-2-values-1.svg", "response-1-equivalence-1.svg"} <= set(
+        names
+    )

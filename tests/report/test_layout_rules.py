@@ -134,3 +134,10 @@ def test_figures_of_a_column_stand_on_their_decimal_point():
     short, long = (row[1].shift for row in table.rows)
     assert long == ""
     assert float(short.removesuffix("pt")) == pytest.approx(figures_width("2", 8.4), abs=0.01)
+
+
+def test_many_columns_of_text_share_the_width_and_no_more():
+    columns = [Column(f"column {number}", kind="text") for number in range(5)] + [Column("Value", "mg/L")] * 4
+    row = [*["several words in every cell of the row " * 3] * 2, "a", "b", "c", *["10.02"] * 4]
+    table = lay_out("Table 1", "x", columns, [row])
+    assert width_in_mm(table.width) <= TEXT_WIDTH_MM + 0.01

@@ -9,7 +9,9 @@ from hypothesis import strategies as st
 from assayfolio.exact import Root
 from assayfolio.report.notation import (
     Scale,
+    confidence,
     decimal,
+    degrees_of_freedom,
     equals,
     fixed,
     kept_together,
@@ -20,6 +22,7 @@ from assayfolio.report.notation import (
     squared_unit,
     squares,
     statistic,
+    three_digits,
 )
 
 NARROW = "\u202f"
@@ -220,3 +223,52 @@ def test_a_bound_is_not_introduced_by_an_equals_sign():
 )
 def test_a_number_is_kept_with_the_unit_that_follows_it(typed, set_as):
     assert kept_together(typed) == set_as
+
+
+@pytest.mark.parametrize(
+    ("value", "printed"),
+    [
+        (Fraction(0), "0"),
+        (Root.of(Fraction(2)), "1.41"),
+        (-0.00012345, "-0.000123"),
+        (1234567.0, "1.23 × 10⁶"),
+        (12345.6, "12346"),
+        (9.999e-7, "1.00 × 10⁻⁶"),
+    ],
+)
+def test_three_digits_are_a_plain_figure_where_that_is_not_long(value, printed):
+    assert read(three_digits(value)) == printed
+
+
+@pytest.mark.parametrize(
+    ("df", "printed"),
+    [(20, "20"), (20.0, "20"), (12.7418, "12.74"), (Fraction(25, 2), "12.50"), (0.004, "0.00400")],
+)
+def test_degrees_of_freedom_are_whole_or_have_two_decimals(df, printed):
+    assert read(degrees_of_freedom(df)) == printed
+
+
+@pytest.mark.parametrize(
+    ("share", "printed"),
+    [
+        (Fraction(19, 20), "95 %"),
+        (1 - Fraction(1, 40), "97.5 %"),
+        (1 - Fraction(1, 60), "98.33 %"),
+        (Fraction(9999, 10000), "99.99 %"),
+    ],
+)
+def test_the_level_of_an_interval_has_two_decimals_at_most(share, printed):
+    assert read(confidence(share)) == printed
+
+
+@pytest.mark.parametrize(
+    ("value", "printed"),
+    [
+        (Fraction("5e-31"), "5 × 10⁻³¹"),
+        (Fraction("1.25e14"), "1.25 × 10¹⁴"),
+        (Fraction(1, 3), "1/3"),
+        (Fraction("-0.045"), "-0.045"),
+    ],
+)
+def test_a_planned_number_keeps_all_its_digits(value, printed):
+    assert read(decimal(value)) == printed

@@ -10,7 +10,8 @@ import pytest
 
 from assayfolio.report.render import render_report
 from pdfa.verapdf import validate
-from report.samples import CASES, single_values
+from report.cases import CASES
+from report.samples import single_values
 
 
 @pytest.fixture

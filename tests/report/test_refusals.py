@@ -10,7 +10,7 @@ from assayfolio.errors import MachineError, RenderingError
 from assayfolio.report import fetching, pages, pdf, render
 from assayfolio.report.content import ReportContent
 from assayfolio.report.fetching import make_fetcher
-from report.samples import CASES
+from report.cases import CASES
 
 LOOK = pdf.Look("A4", "#0f5b66")
 
@@ -111,9 +111,22 @@ def test_an_accent_that_is_no_colour_is_refused():
 
 def test_findings_about_other_data_are_refused():
     content = CASES["balanced"]()
-    fewer = replace(content.observations, rows=content.observations.rows[1:])
+    fewer = replace(content.observations[0], rows=content.observations[0].rows[1:])
     with pytest.raises(RenderingError, match="do not count the same values"):
-        render.render_report(replace(content, observations=fewer))
+        render.render_report(replace(content, observations=(fewer,)))
+
+
+def test_observations_of_another_response_are_refused():
+    content = CASES["two responses"]()
+    swapped = tuple(reversed(content.observations))
+    with pytest.raises(RenderingError, match="not about the same response"):
+        render.render_report(replace(content, observations=swapped))
+
+
+def test_a_response_without_its_observations_is_refused():
+    content = CASES["two responses"]()
+    with pytest.raises(RenderingError, match="findings are on 2 responses, the observations on 1"):
+        render.render_report(replace(content, observations=content.observations[:1]))
 
 
 def test_a_first_page_that_cannot_hold_what_it_must_is_refused():

@@ -12,7 +12,7 @@ PROGRAM = """
 import hashlib, sys
 sys.path.insert(0, sys.argv[1])
 {before}
-from report.samples import CASES
+from report.cases import CASES
 from assayfolio.report.render import render_report
 {other}
 rendered = render_report(CASES[sys.argv[2]]())
@@ -67,7 +67,7 @@ def test_rendering_leaves_the_environment_and_the_folder_as_they_were(rendered, 
 
     pdf._styles.cache_clear()
     from assayfolio.report.render import render_report
-    from report.samples import CASES
+    from report.cases import CASES
 
     assert render_report(CASES["balanced"]()).pdf == rendered("balanced").pdf
     assert os.environ["FONTCONFIG_FILE"] == "/some/where.conf"

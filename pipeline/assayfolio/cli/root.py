@@ -7,13 +7,13 @@ import click
 
 from assayfolio.cli.evidence import trail, verify
 from assayfolio.cli.outcome import run_command
-from assayfolio.cli.studies import check, run, workspace
+from assayfolio.cli.studies import check, power, run, workspace
 from assayfolio.version import VERSION
 
 EXIT_CODES = """\b
 Exit codes:
-  0  done
-  1  done, but a verification found a change
+  0  done, and every criterion of a study is met
+  1  done, but a criterion is not met, or a verification found a change
   2  the study, the data or the command line is wrong; nothing was lost
   3  the machine failed: disk, permission, font, clock
   4  busy: another writer holds the workspace
@@ -34,7 +34,7 @@ def cli() -> None:
     """
 
 
-for command in (workspace, check, run, verify, trail):
+for command in (workspace, check, power, run, verify, trail):
     cli.add_command(command)
 
 

@@ -4,6 +4,7 @@ import json
 import shlex
 from contextlib import suppress
 from pathlib import Path
+from shutil import get_terminal_size
 
 import click
 
@@ -50,11 +51,45 @@ def check(study: Path, named_workspace: Path | None, as_json: bool) -> None:
             say(line)
 
 
-@click.command(epilog="\b\nExample:\n  assayfolio run configs/whey-moisture.yaml")
+@click.command(epilog="\b\nExample:\n  assayfolio power configs/oat-drying.yaml")
+@study_argument
+@workspace_option
+@click.option(
+    "--figure",
+    type=click.Path(path_type=Path, dir_okay=False),
+    metavar="FILE",
+    help="Where the figure goes; by default beside STUDY, as <name of STUDY>-power.svg.",
+)
+@json_option
+def power(study: Path, named_workspace: Path | None, figure: Path | None, as_json: bool) -> None:
+    """Say what a plan can show, before there are data.
+
+    Prints the power of every planned test, the numbers of values that would reach the target, and the
+    smallest difference that could be seen; and draws how power rises with the number of values. The plan
+    alone is read: `power`, `data.levels` and `data.replicates` have to be in it.
+    """
+    from assayfolio.workflow.power import study_power, write_figure
+    from assayfolio.workflow.workspace import find_workspace
+
+    planned = study_power(find_workspace(named_workspace, study.parent), study)
+    target = figure or study.with_name(f"{study.stem}-power.svg")
+    write_figure(target, planned.figure)
+    if as_json:
+        say(json.dumps(planned.document(str(target)), ensure_ascii=False, indent=1))
+        return
+    for line in planned.lines(get_terminal_size((100, 24)).columns):
+        say(line)
+    say(f"  Figure: {target}")
+
+
+@click.command(
+    epilog="\b\nExample:\n  assayfolio run configs/whey-moisture.yaml\n\n"
+    "Exit code 0: done, and every criterion of the study is met; 1: done, but a criterion is not met."
+)
 @study_argument
 @workspace_option
 @json_option
-def run(study: Path, named_workspace: Path | None, as_json: bool) -> None:
+def run(study: Path, named_workspace: Path | None, as_json: bool) -> int:
     """Run a study and seal its report.
 
     Reads STUDY and its data once, computes, renders the report, and seals all of it in a numbered folder,
@@ -71,6 +106,7 @@ def run(study: Path, named_workspace: Path | None, as_json: bool) -> None:
     else:
         for line in outcome_lines(outcome, Path.cwd(), called_as()):
             say(line)
+    return int(outcome.exit_code)
 
 
 def _say_step(step: Step, text: str) -> None:

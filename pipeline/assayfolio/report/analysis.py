@@ -1,119 +1,76 @@
-"""Sections 3, 4 and 6: checks, analysis of variance, and what is not reported."""
+"""The analysis of variance, the test of equal means that was planned, and effect sizes."""
 
-from assayfolio.findings import CheckFindings
+from assayfolio.findings import (
+    NOT_ASSESSABLE,
+    AnovaFindings,
+    BrownForsytheMeansFindings,
+    WelchFindings,
+)
 from assayfolio.report.basis import Basis
-from assayfolio.report.content import Block, FigureBlock, Paragraph, Section, TableBlock
-from assayfolio.report.diagnostics import normal_plot, residual_plots
-from assayfolio.report.figures import MOST_DOTS
-from assayfolio.report.notation import probability, squared_unit, squares, statistic
-from assayfolio.report.numbering import ANCHORS, ANOVA, CHECKS, NOT_REPORTED, Numbering
+from assayfolio.report.content import Block, Heading, Paragraph, Section, TableBlock
+from assayfolio.report.effects import effects_table
+from assayfolio.report.families import ACROSS_NAMES
+from assayfolio.report.notation import degrees_of_freedom, probability, squared_unit, squares, statistic
+from assayfolio.report.numbering import Numbering, Part
 from assayfolio.report.prose import Prose, Words, prose
 from assayfolio.report.tables import Column, Table, lay_out
-from assayfolio.report.wording import (
-    alpha_words,
-    capitalised,
-    typographic,
-)
+from assayfolio.report.wording import BLANK, alpha_words, capitalised, spread_of
 
 _NAMED_LEVELS = 6
-_BLANK = "–"
+WELCH = "Welch’s F"
+BROWN_FORSYTHE_MEANS = "Brown–Forsythe test of equal means (F*)"
 
-
-def checks_section(basis: Basis, numbering: Numbering, accent: str) -> Section:
-    """What the planned checks found, and the residuals for the eye."""
-    blocks: list[Block] = [
-        Paragraph(
-            prose(
-                "The analysis assumes independent values, one variance at all levels, and errors that are "
-                "close to normal. The checks inform; they never choose the analysis. A check that shows "
-                "nothing does not show that an assumption holds. No check can see how the measurements were "
-                "made: independence rests on how they were ordered and prepared."
-            )
-        )
-    ]
-    if basis.response.checks:
-        blocks.append(TableBlock(_check_table(basis, numbering)))
-    else:
-        blocks.append(Paragraph(prose("No tests of assumptions were planned.")))
-    if not basis.response.anova.within.ss:
-        blocks.append(Paragraph(prose("All residuals are zero, so there is nothing to plot.")))
-    else:
-        blocks += _residual_figures(basis, numbering, accent)
-    return Section(ANCHORS[CHECKS], CHECKS, "Checks of the assumptions", tuple(blocks))
-
-
-def _check_table(basis: Basis, numbering: Numbering) -> Table:
-    columns = [
-        Column("Check", kind="text"),
-        Column("Statistic", kind="words"),
-        Column("Value"),
-        Column("Degrees of freedom", kind="words"),
-        Column(prose("*p*")),
-        Column("Reading", kind="text"),
-    ]
-    return lay_out(
-        numbering.table(),
-        prose("Checks of the assumptions, read at level {alpha}.", alpha=alpha_words(basis)),
-        columns,
-        [_check_row(basis, check) for check in basis.response.checks],
-    )
-
-
-def _check_row(basis: Basis, check: CheckFindings) -> list[Words]:
-    symbol = prose("*W*") if check.df is None else prose("*F*")
-    return [
-        typographic(check.name),
-        _BLANK if check.statistic is None else symbol,
-        _BLANK if check.statistic is None else statistic(check.statistic),
-        _BLANK if check.df is None else " and ".join(str(df) for df in check.df),
-        _BLANK if check.p is None else probability(check.p, basis.response.alpha),
-        check.note.split(";")[0],
-    ]
-
-
-def _residual_figures(basis: Basis, numbering: Numbering, accent: str) -> list[Block]:
-    order, against = residual_plots(basis)
-    many = basis.total > MOST_DOTS
-    how = " Shaded squares: the darker, the more values." if many else ""
-    figures: list[Block] = [
-        FigureBlock(
-            numbering.figure(),
-            (order, against),
-            prose(
-                "Residuals (value minus the mean of its level), {total} in all. Left: in the order of the "
-                "file; a drift or steps would speak against independence. Right: against the mean of the "
-                "level; a widening spread would speak against one variance." + how,
-                total=str(basis.total),
-            ),
-        )
-    ]
-    normal = normal_plot(basis, accent)
-    if normal is not None:
-        figures.append(
-            FigureBlock(
-                numbering.figure(),
-                (normal,),
-                prose(
-                    "Normal plot of the residuals, {total} in all. The line is a normal distribution with "
-                    "mean zero and the residuals’ own root mean square. The grey area is the pointwise "
-                    "{confidence} envelope of an order statistic (Chambers and others, 1983); it treats "
-                    "residuals as independent, which they nearly are. Points that leave it in a curve speak "
-                    "against normal errors; a single point at its edge says "
-                    "little." + (" Only part of the points is drawn between the ends." if many else ""),
-                    total=str(basis.total),
-                    confidence=basis.confidence,
-                ),
-            )
-        )
-    return figures
+Omnibus = AnovaFindings | WelchFindings | BrownForsytheMeansFindings
 
 
 def anova_section(basis: Basis, numbering: Numbering) -> Section:
-    """The hypotheses for the levels at hand and the table of the analysis of variance."""
-    anova = basis.response.anova
+    """The hypotheses, the table of the analysis of variance, the planned test, and effect sizes."""
+    place = basis.place(Part.ANOVA)
+    hypotheses = _random_hypotheses(basis) if basis.is_random else _fixed_hypotheses(basis)
+    blocks: list[Block] = [*hypotheses, TableBlock(_anova_table(basis, numbering))]
+    if _has_separate_tests(basis):
+        blocks.append(Paragraph(prose(_WHY_SEPARATE)))
+        blocks.append(TableBlock(_tests_table(basis, numbering)))
+    blocks.append(Paragraph(_verdict(basis), "lead"))
+    if planned_test(basis) is None:
+        number = str(basis.place(Part.NOT_REPORTED).number)
+        blocks.append(Paragraph(prose("The reason stands in section {number}.", number=number), "note"))
+    if basis.response.effect is not None:
+        blocks.append(Heading(prose("Effect sizes")))
+        blocks.append(TableBlock(effects_table(basis, basis.response.effect, numbering)))
+    return Section(place.anchor, place.number, basis.title("Analysis of variance"), tuple(blocks))
+
+
+_WHY_SEPARATE = (
+    "The *F* test above takes one variance for all levels. The plan gives each level its own, so the planned "
+    "test of equal means is the one marked below; the others stand beside it for comparison."
+)
+
+
+def planned_test(basis: Basis) -> Omnibus | None:
+    """The overall test that was planned, None where it could not be given."""
+    response = basis.response
+    if response.omnibus == "welch":
+        return response.welch
+    if response.omnibus == "brown-forsythe":
+        return response.brown_forsythe_means
+    return response.anova if response.anova.f is not None else None
+
+
+def overall_verdict(basis: Basis) -> str:
+    """The verdict on the overall question."""
+    test = planned_test(basis)
+    return NOT_ASSESSABLE if test is None else test.verdict
+
+
+def _has_separate_tests(basis: Basis) -> bool:
+    return basis.response.welch is not None or basis.response.brown_forsythe_means is not None
+
+
+def _fixed_hypotheses(basis: Basis) -> list[Block]:
     count = len(basis.levels)
     names = [level.level for level in basis.levels]
-    blocks: list[Block] = [
+    return [
         Paragraph(
             prose(
                 "#Null hypothesis.# The {count} levels of {factor}{names} have the same mean {response}: "
@@ -134,12 +91,27 @@ def anova_section(basis: Basis, numbering: Numbering) -> Section:
                 alpha=alpha_words(basis),
             )
         ),
-        TableBlock(_anova_table(basis, numbering)),
-        Paragraph(_anova_verdict(basis), "lead"),
     ]
-    if anova.f is None:
-        blocks.append(Paragraph(prose("The reason stands in section 6."), "note"))
-    return Section(ANCHORS[ANOVA], ANOVA, "Analysis of variance", tuple(blocks))
+
+
+def _random_hypotheses(basis: Basis) -> list[Block]:
+    return [
+        Paragraph(
+            prose(
+                "#Null hypothesis.# Levels of {factor} add nothing to the spread of {response}: the variance "
+                "between levels is zero, *σ*_L_² = 0.",
+                factor=basis.factor,
+                response=basis.response.response,
+            )
+        ),
+        Paragraph(
+            prose(
+                "#Alternative.# *σ*_L_² > 0. Level *α* = {alpha}. The levels are a sample, so single levels "
+                "are not compared with one another.",
+                alpha=alpha_words(basis),
+            )
+        ),
+    ]
 
 
 def _equal_means(count: int) -> Prose:
@@ -156,11 +128,11 @@ def _anova_table(basis: Basis, numbering: Numbering) -> Table:
     measure = within_ms or between_ms or 0
     texts = squares(present, measure)
     sums, means = texts[:3], iter(texts[3:])
-    mean_between = next(means) if between_ms is not None else _BLANK
-    mean_within = next(means) if within_ms is not None else _BLANK
+    mean_between = next(means) if between_ms is not None else BLANK
+    mean_within = next(means) if within_ms is not None else BLANK
     unit = squared_unit(basis.response.unit)
-    f = _BLANK if anova.f is None else statistic(anova.f)
-    p = _BLANK if anova.p is None else probability(anova.p, basis.response.alpha, anova.log10_p)
+    f = BLANK if anova.f is None else statistic(anova.f)
+    p = BLANK if anova.p is None else probability(anova.p, basis.response.alpha, anova.log10_p)
     columns = [
         Column("Source of variation", kind="text"),
         Column("Degrees of freedom"),
@@ -181,49 +153,112 @@ def _anova_table(basis: Basis, numbering: Numbering) -> Table:
 def _anova_notes(basis: Basis) -> list[Prose]:
     anova = basis.response.anova
     notes = []
-    if anova.f_critical is not None:
+    if anova.f_critical is not None and not basis.is_separate:
+        divided = basis.study.design.across_responses == "bonferroni" and basis.several
         notes.append(
             prose(
-                "Critical value of *F* at level {alpha}: {critical}.",
+                "Critical value of *F* at level {alpha}{divided}: {critical}.",
                 alpha=alpha_words(basis),
+                divided=f"/{len(basis.content.findings.responses)}" if divided else "",
                 critical=statistic(anova.f_critical),
             )
         )
     if anova.residual_sd is not None:
-        scale = basis.difference_scale
-        sd = scale.spread(anova.residual_sd, anova.residual_sd)
-        notes.append(prose("Residual standard deviation {sd}.", sd=scale.with_unit(sd)))
+        sd = spread_of(basis.difference_scale, anova.residual_sd)
+        notes.append(prose("Residual standard deviation {sd}.", sd=sd))
     if anova.r_squared is not None:
         notes.append(prose("*R*^2^ = {value}.", value=statistic(anova.r_squared)))
+    if anova.p_adjusted is not None and _is_across(basis) and not basis.is_separate:
+        notes.append(_across_note(basis, anova.p_adjusted))
     return [tuple(span for note in notes for span in (*note, *prose(" ")))] if notes else []
 
 
-def _anova_verdict(basis: Basis) -> Prose:
-    anova = basis.response.anova
-    if anova.p is None:
-        return prose("#{verdict}.# No test is reported.", verdict=capitalised(anova.verdict))
+def _is_across(basis: Basis) -> bool:
+    return basis.several and basis.study.design.across_responses != "none"
+
+
+def _across_note(basis: Basis, p: float) -> Prose:
     return prose(
-        "#{verdict}# between the means of the {count} levels, at level {alpha}.",
-        verdict=capitalised(anova.verdict),
-        count=str(len(basis.levels)),
-        alpha=alpha_words(basis),
+        "Adjusted for {count} responses by {how}: *p* = {p}; the verdict follows it.",
+        count=str(len(basis.content.findings.responses)),
+        how=ACROSS_NAMES[basis.study.design.across_responses],
+        p=probability(p, basis.response.alpha),
     )
 
 
-def not_reported_section(basis: Basis) -> Section:
-    """What was asked for and cannot be given, with the reason."""
-    missing = basis.content.findings.not_reported
-    blocks: list[Block] = []
-    if not missing:
-        blocks.append(Paragraph(prose("Everything that the plan asks for is reported.")))
-    blocks += [
-        Paragraph(
-            prose(
-                "#{what}.# {reason}.",
-                what=capitalised(item.what),
-                reason=capitalised(item.reason.rstrip(".")),
-            )
-        )
-        for item in missing
+def _tests_table(basis: Basis, numbering: Numbering) -> Table:
+    """Welch's F and F*, the latter on both degrees of freedom, the planned one marked."""
+    response, alpha = basis.response, basis.response.alpha
+    across = _is_across(basis)
+    columns = [
+        Column("Test of equal means", kind="text"),
+        Column(prose("*F*")),
+        Column("Degrees of freedom", kind="words"),
+        Column(prose("*p*")),
+        *([Column(prose("Adjusted *p*"))] if across else []),
+        Column("In the plan", kind="words"),
     ]
-    return Section(ANCHORS[NOT_REPORTED], NOT_REPORTED, "Asked for and not reported", tuple(blocks))
+    rows: list[list[Words]] = []
+
+    def add(name: str, f: Words, df: tuple[Words, Words], p: Words, adjusted: Words, planned: str) -> None:
+        last: list[Words] = [planned or "for comparison"]
+        rows.append(
+            [name, f, prose("{a} and {b}", a=df[0], b=df[1]), p, *([adjusted] if across else []), *last]
+        )
+
+    if (welch := response.welch) is not None:
+        add(
+            WELCH,
+            statistic(welch.f),
+            (str(welch.df1), degrees_of_freedom(welch.df2)),
+            probability(welch.p, alpha, welch.log10_p),
+            probability(welch.p_adjusted, alpha),
+            "the planned test" if response.omnibus == "welch" else "",
+        )
+    if (means := response.brown_forsythe_means) is not None:
+        f, df2 = statistic(means.f), degrees_of_freedom(means.df2)
+        add(
+            BROWN_FORSYTHE_MEANS,
+            f,
+            (str(means.df1), df2),
+            probability(means.p, alpha, means.log10_p),
+            probability(means.p_adjusted, alpha),
+            "the planned test" if response.omnibus == "brown-forsythe" else "",
+        )
+        mehrotra = (degrees_of_freedom(means.df1_mehrotra), df2)
+        add(
+            f"{BROWN_FORSYTHE_MEANS}, with Mehrotra’s degrees of freedom",
+            f,
+            mehrotra,
+            probability(means.p_mehrotra, alpha),
+            BLANK,
+            "",
+        )
+    caption = prose(
+        "Tests of equal means with a variance for each level, {response}.", response=response.response
+    )
+    note = "Two tests bear the names of Brown and Forsythe: this one is about means, not variances."
+    return lay_out(numbering.table(), caption, columns, rows, [prose(note)] if means is not None else [])
+
+
+def _verdict(basis: Basis) -> Prose:
+    verdict = capitalised(overall_verdict(basis))
+    test = planned_test(basis)
+    if test is None:
+        return prose("#{verdict}.# No test is reported.", verdict=verdict)
+    by = {
+        "welch": f" by {WELCH}",
+        "brown-forsythe": f" by the {BROWN_FORSYTHE_MEANS}",
+    }.get(basis.response.omnibus, "")
+    where = (
+        " the {count} levels, beyond the spread within them"
+        if basis.is_random
+        else (" the means of the {count} levels")
+    )
+    return prose(
+        "#{verdict}# between" + where + "{by}, at level {alpha}.",
+        verdict=verdict,
+        count=str(len(basis.levels)),
+        by=by,
+        alpha=alpha_words(basis),
+    )

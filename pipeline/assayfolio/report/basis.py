@@ -3,36 +3,98 @@
 from dataclasses import dataclass
 from fractions import Fraction
 from functools import cached_property
+from typing import Protocol
 
 from assayfolio.errors import RenderingError
-from assayfolio.exact import Exact
-from assayfolio.findings import ComparisonFamily, ComparisonRow, LevelFindings, ResponseFindings
+from assayfolio.exact import Exact, magnitude
+from assayfolio.findings import ComparisonFamily, LevelFindings, ResponseFindings
+from assayfolio.observations.values import Observations
 from assayfolio.report.facts import ReportInput
 from assayfolio.report.notation import MINUS, Scale, percent
+from assayfolio.report.numbering import Outline, Part, SectionPlace
+from assayfolio.study.plan import Criterion, EquivalencePlan, StudyDefinition
+
+
+class Labelled(Protocol):
+    """A row with the label of a comparison."""
+
+    @property
+    def label(self) -> str:
+        """The label as in the findings."""
 
 
 @dataclass(frozen=True)
 class Basis:
-    """The input of a report and what is read off it more than once."""
+    """The input of a report as seen from one response, and what is read off it more than once."""
 
     content: ReportInput
+    index: int = 0
+
+    @staticmethod
+    def of_each(content: ReportInput) -> "tuple[Basis, ...]":
+        """A basis for each response, in the order of the findings.
+
+        Raises RenderingError where there is no response, or not one set of observations for each.
+        """
+        count = len(content.findings.responses)
+        if not count or count != len(content.observations):
+            raise RenderingError(
+                f"the findings are on {count} responses, the observations on {len(content.observations)}"
+            )
+        return tuple(Basis(content, index) for index in range(count))
 
     @cached_property
     def response(self) -> ResponseFindings:
-        """The findings on the one response, checked to be about these observations.
+        """The findings on the response, checked to be about these observations.
 
         Raises RenderingError where the findings do not count the observations that are to be listed.
         """
-        found = self.content.findings.responses
-        if len(found) != 1:
-            raise RenderingError(f"a report is about one response; the findings have {len(found)}")
-        counted = {level.level: level.n for level in found[0].levels}
+        found = self.content.findings.responses[self.index]
+        if found.response != self.observations.response:
+            raise RenderingError("the findings and the observations are not about the same response")
+        counted = {level.level: level.n for level in found.levels}
         listed = dict.fromkeys(counted, 0)
-        for row in self.content.observations.rows:
+        for row in self.observations.rows:
             listed[row.level] = listed.get(row.level, 0) + 1
         if counted != listed:
             raise RenderingError("the findings and the observations do not count the same values")
-        return found[0]
+        return found
+
+    @cached_property
+    def observations(self) -> Observations:
+        """The observations of the response."""
+        return self.content.observations[self.index]
+
+    @cached_property
+    def study(self) -> StudyDefinition:
+        """The study definition."""
+        return self.content.study
+
+    @cached_property
+    def several(self) -> bool:
+        """Whether the study has several responses."""
+        return len(self.content.findings.responses) > 1
+
+    @cached_property
+    def outline(self) -> Outline:
+        """The sections of the report."""
+        return Outline(self.content)
+
+    def place(self, part: Part) -> SectionPlace:
+        """The place of a section on this response, or of one that all responses share."""
+        return self.outline.place(part, self.index)
+
+    def anchor(self, name: str) -> str:
+        """An anchor of this response's own."""
+        return f"{name}-of-{self.index + 1}" if self.index else name
+
+    def file(self, name: str) -> str:
+        """The name of a figure's file; with several responses it says which one the figure is on."""
+        return f"response-{self.index + 1}-{name}" if self.several else name
+
+    def title(self, words: str) -> str:
+        """The title of a section; with several responses it names the one it is on."""
+        return f"{words}: {self.response.response}" if self.several else words
 
     @cached_property
     def levels(self) -> tuple[LevelFindings, ...]:
@@ -47,12 +109,34 @@ class Basis:
     @cached_property
     def factor(self) -> str:
         """The name of the factor."""
-        return self.content.observations.factor
+        return self.observations.factor
+
+    @cached_property
+    def is_random(self) -> bool:
+        """Whether the levels are a sample of those that could have been chosen."""
+        return self.study.design.effects == "random"
+
+    @cached_property
+    def is_separate(self) -> bool:
+        """Whether each level has an error variance of its own."""
+        return self.study.design.variances == "separate"
+
+    @cached_property
+    def equivalence_plans(self) -> tuple[EquivalencePlan, ...]:
+        """The planned equivalence families on this response."""
+        about = (None, self.response.response)
+        return tuple(plan for plan in self.study.equivalence if plan.response in about)
+
+    @cached_property
+    def criteria_plans(self) -> tuple[Criterion, ...]:
+        """The planned acceptance criteria on this response."""
+        about = (None, self.response.response)
+        return tuple(plan for plan in self.study.criteria if plan.response in about)
 
     @cached_property
     def last_digit(self) -> int:
         """The power of ten of the last digit that was recorded."""
-        return min(row.value.exponent for row in self.content.observations.rows)
+        return min(row.value.exponent for row in self.observations.rows)
 
     @cached_property
     def scale(self) -> Scale:
@@ -69,15 +153,32 @@ class Basis:
         return Scale.of(sizes, self.last_digit, self.response.unit)
 
     @cached_property
+    def percent_scale(self) -> Scale:
+        """How differences in percent of a mean are printed: as fine as those in units, within reason."""
+        largest = max(abs(level.mean) for level in self.levels)
+        last = magnitude(100 * Fraction(10) ** self.last_digit / largest) if largest else 0
+        return Scale.of([Fraction(100)], max(-3, min(0, last)), "%")
+
+    @cached_property
     def values(self) -> tuple[Fraction, ...]:
         """The values in the order of the file."""
-        return tuple(row.value.fraction for row in self.content.observations.rows)
+        return tuple(row.value.fraction for row in self.observations.rows)
+
+    @cached_property
+    def measuring_order(self) -> tuple[int, ...] | None:
+        """The place of each value in the measuring order, counted from one; None where it is not known."""
+        numbers = [row.order for row in self.observations.rows]
+        known = [number for number in numbers if number is not None]
+        if len(known) < len(numbers):
+            return None
+        place = {number: rank for rank, number in enumerate(sorted(known), start=1)}
+        return tuple(place[number] for number in known)
 
     @cached_property
     def values_by_level(self) -> dict[str, list[Fraction]]:
         """The values of each level in the order of the file."""
         grouped: dict[str, list[Fraction]] = {level.level: [] for level in self.levels}
-        for value, row in zip(self.values, self.content.observations.rows, strict=True):
+        for value, row in zip(self.values, self.observations.rows, strict=True):
             grouped[row.level].append(value)
         return grouped
 
@@ -85,7 +186,7 @@ class Basis:
     def residuals(self) -> tuple[Fraction, ...]:
         """Each value minus the exact mean of its level, in the order of the file."""
         means = {level.level: level.mean for level in self.levels}
-        rows = self.content.observations.rows
+        rows = self.observations.rows
         return tuple(value - means[row.level] for value, row in zip(self.values, rows, strict=True))
 
     @cached_property
@@ -98,11 +199,11 @@ class Basis:
         names = [level.level for level in self.levels]
         return {f"{a} - {b}": (a, b) for a in names for b in names if a != b}
 
-    def pair(self, row: ComparisonRow) -> tuple[str, str] | None:
+    def pair(self, row: Labelled) -> tuple[str, str] | None:
         """The two levels that `row` compares, or None for a contrast."""
         return self._pairs.get(row.label)
 
-    def label(self, row: ComparisonRow) -> str:
+    def label(self, row: Labelled) -> str:
         """The label of a comparison as it is printed, with a true minus sign between two levels."""
         pair = self.pair(row)
         return row.label if pair is None else f"{pair[0]} {MINUS} {pair[1]}"

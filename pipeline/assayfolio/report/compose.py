@@ -1,21 +1,32 @@
 """From the input of a report to its content: every sentence and every digit final."""
 
 import re
+from collections.abc import Callable
 
 from assayfolio.errors import RenderingError
-from assayfolio.report.analysis import anova_section, checks_section, not_reported_section
-from assayfolio.report.answers import cards, summary
+from assayfolio.report.analysis import anova_section
+from assayfolio.report.answers import cards
+from assayfolio.report.assumptions import checks_section
 from assayfolio.report.basis import Basis
 from assayfolio.report.content import Heading, ReportContent, Section, SignatureBox, TableBlock
+from assayfolio.report.criteria import criteria_section
+from assayfolio.report.data import data_section
+from assayfolio.report.equivalence import equivalence_section
 from assayfolio.report.facts import ReportInput
 from assayfolio.report.families import comparisons_section
+from assayfolio.report.listing import listing_section
 from assayfolio.report.notation import kept_together
-from assayfolio.report.numbering import Numbering
-from assayfolio.report.plan_and_data import data_section, plan_section
+from assayfolio.report.numbering import Numbering, Part
+from assayfolio.report.outliers import outliers_section
+from assayfolio.report.planned import plan_section
+from assayfolio.report.precision import precision_section
 from assayfolio.report.prose import Prose, prose, verbatim
-from assayfolio.report.provenance import listing_section, provenance_section
+from assayfolio.report.provenance import provenance_section
+from assayfolio.report.spread import spread_section
 from assayfolio.report.statement import method_section
+from assayfolio.report.summary import summary
 from assayfolio.report.typeface import wrapped
+from assayfolio.report.unreported import not_reported_section
 from assayfolio.report.wording import (
     CAUTIONS,
     DRAFT_SENTENCE,
@@ -30,6 +41,7 @@ from assayfolio.version import VERSION
 _MEANING_SIZE, _MEANING_LINE = 7.6, 9.8
 _BOX_WIDTH = 143.0  # a little less than 51.3 mm
 _COLOUR = re.compile(r"#[0-9a-fA-F]{6}\Z")
+_MOST_RESPONSES_NAMED = 4
 
 
 def compose(content: ReportInput) -> ReportContent:
@@ -40,21 +52,10 @@ def compose(content: ReportInput) -> ReportContent:
     accent = content.laboratory.accent
     if not _COLOUR.match(accent):
         raise RenderingError(f"the laboratory's accent {accent!r} is not a colour such as #0f5b66")
-    basis = Basis(content)
-    numbering = Numbering()
+    bases = Basis.of_each(content)
     study, run, laboratory = content.study, content.run, content.laboratory
     boxes = _signature_boxes(content)
-    sections = (
-        plan_section(basis, numbering),
-        data_section(basis, numbering, accent),
-        checks_section(basis, numbering, accent),
-        anova_section(basis, numbering),
-        comparisons_section(basis, numbering, accent),
-        not_reported_section(basis),
-        method_section(basis),
-        provenance_section(basis),
-        listing_section(basis, numbering),
-    )
+    sections = _sections(bases, accent)
     number = f"{study.study} · {run.label}"
     return ReportContent(
         title=kept_together(study.title),
@@ -66,9 +67,9 @@ def compose(content: ReportInput) -> ReportContent:
         created=f"{run.started_utc[:19]}Z",
         generator=f"Assayfolio {VERSION}",
         standing=EXPLORATORY,
-        facts=_facts(basis),
-        cards=cards(basis, accent, _table_labels(sections)),
-        summary=summary(basis),
+        facts=_facts(bases),
+        cards=cards(bases, accent, _table_labels(sections)),
+        summary=summary(bases),
         sign_off=boxes,
         sign_off_words="" if boxes else "No signatures are planned for this report.",
         meaning_height=_meaning_height(boxes),
@@ -81,6 +82,34 @@ def compose(content: ReportInput) -> ReportContent:
         sections=sections,
         end_mark=f"End of the report on {study.study}, {run.label}",
     )
+
+
+def _sections(bases: tuple[Basis, ...], accent: str) -> tuple[Section, ...]:
+    """All sections in the order of the report; tables and figures are numbered through."""
+    numbering = Numbering()
+    sections = [plan_section(bases, numbering)]
+    for basis in bases:
+        sections += _sections_of(basis, numbering, accent)
+    sections.append(not_reported_section(bases[0]))
+    sections.append(method_section(bases))
+    sections.append(provenance_section(bases[0]))
+    sections.append(listing_section(bases, numbering))
+    return tuple(sections)
+
+
+def _sections_of(basis: Basis, numbering: Numbering, accent: str) -> list[Section]:
+    makers: dict[Part, Callable[[], Section]] = {
+        Part.DATA: lambda: data_section(basis, numbering, accent),
+        Part.CHECKS: lambda: checks_section(basis, numbering, accent),
+        Part.OUTLIERS: lambda: outliers_section(basis, numbering),
+        Part.ANOVA: lambda: anova_section(basis, numbering),
+        Part.COMPARISONS: lambda: comparisons_section(basis, numbering, accent),
+        Part.EQUIVALENCE: lambda: equivalence_section(basis, numbering, accent),
+        Part.SPREAD: lambda: spread_section(basis, numbering),
+        Part.PRECISION: lambda: precision_section(basis, numbering),
+        Part.CRITERIA: lambda: criteria_section(basis, numbering),
+    }
+    return [make() for part, make in makers.items() if basis.outline.has(part, basis.index)]
 
 
 def _table_labels(sections: tuple[Section, ...]) -> dict[str, str]:
@@ -113,16 +142,15 @@ def _meaning_height(boxes: tuple[SignatureBox, ...]) -> str:
     return f"{lines * _MEANING_LINE:.1f}pt"
 
 
-def _facts(basis: Basis) -> tuple[Prose, ...]:
-    study, run = basis.content.study, basis.content.run
+def _facts(bases: tuple[Basis, ...]) -> tuple[Prose, ...]:
+    basis = bases[0]
+    study, run = basis.study, basis.content.run
     effects = {"fixed": "fixed levels", "random": "random levels"}[study.design.effects]
     variances = {"pooled": "one error variance", "separate": "separate variances"}[study.design.variances]
-    unit = f" in {basis.response.unit}" if basis.response.unit else ""
     return (
         prose(
-            "{response}{unit} by {factor} ({levels}) · {effects}, {variances} · *α* = {alpha}",
-            response=basis.response.response,
-            unit=unit,
+            "{responses} by {factor} ({levels}) · {effects}, {variances} · *α* = {alpha}",
+            responses=_responses(bases),
             factor=basis.factor,
             levels=counted(len(basis.levels), "level"),
             effects=effects,
@@ -131,11 +159,20 @@ def _facts(basis: Basis) -> tuple[Prose, ...]:
         ),
         prose(
             "{total} from {file} · run on {date} at {time} UTC by {actor}{earlier}",
-            total=counted(basis.total, "value"),
-            file=verbatim(basis.content.observations.file),
+            total=counted(sum(one.total for one in bases), "value"),
+            file=verbatim(basis.observations.file),
             date=run.started_utc[:10],
             time=run.started_utc[11:16],
             actor=run.actor,
             earlier=f" · earlier runs of this study: {run.number - 1}" if run.number > 1 else "",
         ),
     )
+
+
+def _responses(bases: tuple[Basis, ...]) -> str:
+    named = [
+        one.response.response + (f" in {one.response.unit}" if one.response.unit else "")
+        for one in bases[:_MOST_RESPONSES_NAMED]
+    ]
+    rest = len(bases) - len(named)
+    return ", ".join(named) + (f" and {rest} more responses" if rest else "")

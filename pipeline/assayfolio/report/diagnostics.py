@@ -20,19 +20,21 @@ _MOST_POINTS_OF_NORMAL_PLOT = 400
 
 
 def residual_plots(basis: Basis) -> tuple[Picture, Picture]:
-    """Residuals in the order of the file, and against the mean of their level."""
+    """Residuals in measuring order, or that of the file, and against the mean of their level."""
     means = {level.level: level.mean for level in basis.levels}
-    order = [Fraction(number) for number in range(1, basis.total + 1)]
-    against = [means[row.level] for row in basis.content.observations.rows]
-    in_order = _scatter(basis, order, None, "order of the values in the file")
+    places = basis.measuring_order or range(1, basis.total + 1)
+    by = "the measuring order" if basis.measuring_order else "the order of the values in the file"
+    order = [Fraction(place) for place in places]
+    against = [means[row.level] for row in basis.observations.rows]
+    in_order = _scatter(basis, order, None, by.removeprefix("the "))
     by_mean = _scatter(basis, against, basis.response.response, "mean of the level")
     largest = max(abs(residual) for residual in basis.residuals)
     size = basis.difference_scale.with_unit(basis.difference_scale.mean(largest))
     words = f"{basis.total} residuals, the largest {size} from zero, against "
-    by_order, by_level = words + "the order of the values in the file.", words + "the mean of their level."
+    by_order, by_level = words + f"{by}.", words + "the mean of their level."
     return (
-        Picture("residuals-order.svg", in_order.svg(by_order), by_order, 78),
-        Picture("residuals-mean.svg", by_mean.svg(by_level), by_level, 78),
+        Picture(basis.file("residuals-order.svg"), in_order.svg(by_order), by_order, 78),
+        Picture(basis.file("residuals-mean.svg"), by_mean.svg(by_level), by_level, 78),
     )
 
 
@@ -159,7 +161,7 @@ def normal_plot(basis: Basis, accent: str) -> Picture | None:
     _horizontal(drawing, axis, "quantile of the standard normal distribution")
     outside = sum(not low <= value <= high for value, low, high in zip(ordered, lower, upper, strict=True))
     words = f"Normal plot of {total} residuals; {outside} lie outside the pointwise envelope."
-    return Picture("residuals-normal.svg", drawing.svg(words), words, 78)
+    return Picture(basis.file("residuals-normal.svg"), drawing.svg(words), words, 78)
 
 
 def _quantiles(positions: Sequence[Fraction]) -> list[float]:

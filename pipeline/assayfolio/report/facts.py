@@ -71,11 +71,11 @@ class AttachedFile:
 
 @dataclass(frozen=True, slots=True)
 class ReportInput:
-    """All a report is made from."""
+    """All a report is made from; `observations` holds one entry a response, in the order of the findings."""
 
     study: StudyDefinition
     laboratory: Laboratory
-    observations: Observations
+    observations: tuple[Observations, ...]
     findings: Findings
     run: RunFacts
     attachments: tuple[AttachedFile, ...]

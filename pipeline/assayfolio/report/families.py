@@ -1,74 +1,121 @@
-"""Section 5: the comparisons, family by family."""
+"""The comparisons, family by family."""
+
+from collections.abc import Sequence
 
 from assayfolio.findings import ComparisonFamily, ComparisonRow
 from assayfolio.report.basis import Basis, is_single_step
 from assayfolio.report.content import Block, FigureBlock, Heading, Paragraph, Section, TableBlock
-from assayfolio.report.figures import MOST_ROWS, interval_plot
+from assayfolio.report.interval_plots import Estimate, Measure, interval_plot, most_rows
 from assayfolio.report.methods import adjustment_of
-from assayfolio.report.notation import INFINITY, MINUS, probability, statistic
-from assayfolio.report.numbering import ANCHORS, COMPARISONS, Numbering
+from assayfolio.report.notation import (
+    confidence,
+    degrees_of_freedom,
+    percent,
+    probability,
+    statistic,
+    three_digits,
+)
+from assayfolio.report.numbering import Numbering, Part
 from assayfolio.report.prose import Prose, Words, joined, prose
 from assayfolio.report.tables import Column, Table, lay_out
 from assayfolio.report.wording import (
+    STANDING,
     adjusted_p,
     alpha_words,
     counted,
     first_of,
+    interval_cells,
     interval_kind,
+    is_adjusted,
     row_verdict,
+    significant_ends,
 )
 
-_BLANK = "–"
-_STANDING = "exploratory, as the plan was not pre-registered"
 _MOST_NAMED = 4
+ACROSS_NAMES = {"bonferroni": "Bonferroni", "holm": "Holm"}
 
 
 def comparisons_section(basis: Basis, numbering: Numbering, accent: str) -> Section:
     """Each family of comparisons: how it was formed, its table, its intervals drawn."""
     families = basis.response.comparisons
+    place = basis.place(Part.COMPARISONS)
     blocks: list[Block] = []
     for number, family in enumerate(families, start=1):
-        blocks.append(Heading(prose("{name}", name=family.name), f"family-{number}"))
+        blocks.append(Heading(prose("{name}", name=family.name), basis.anchor(f"family-{number}")))
         blocks.append(Paragraph(_family_words(basis, family)))
         blocks.append(TableBlock(_family_table(basis, family, numbering)))
-        blocks += _family_figure(basis, family, numbering, accent, number)
+        if family.kind != "trend":  # its rows are in different units and share no axis
+            blocks += _family_figure(basis, family, numbering, accent, number)
     if not families:
-        planned = bool(basis.content.study.comparisons)
-        why = "None of the planned comparisons can be reported; section 6 gives the reasons."
-        blocks.append(Paragraph(prose(why if planned else "No comparisons of single levels were planned.")))
-    return Section(ANCHORS[COMPARISONS], COMPARISONS, "Comparisons", tuple(blocks))
+        why = "None of the planned comparisons can be reported; section {number} gives the reasons."
+        reasons = str(basis.place(Part.NOT_REPORTED).number)
+        blocks.append(Paragraph(prose(why, number=reasons)))
+    return Section(place.anchor, place.number, basis.title("Comparisons"), tuple(blocks))
+
+
+def side_words(basis: Basis, family: ComparisonFamily) -> str:
+    """Which sides a family asks about, the direction of a one-sided one written out."""
+    if family.alternative == "two-sided":
+        return "two-sided"
+    above = family.alternative == "greater"
+    if basis.pair(family.rows[0]) is not None:
+        meant = "the first level above the second" if above else "the first level below the second"
+    else:
+        meant = "above zero" if above else "below zero"
+    return f"one-sided ({family.alternative}: {meant})"
 
 
 def _family_words(basis: Basis, family: ComparisonFamily) -> Prose:
     count = len(family.rows)
-    side = {"two-sided": "two-sided", "greater": "one-sided (greater)", "less": "one-sided (less)"}[
-        family.alternative
-    ]
-    df = counted(family.rows[0].df, "degree of freedom", "degrees of freedom")
+    values = {
+        "count": str(count),
+        "side": side_words(basis, family),
+        "adjusted": _how_adjusted(family),
+        "df": _df_words(family),
+        "standing": STANDING,
+    }
     if count == 1:
-        words = prose(
-            "One comparison, {side}, {df}; {standing}.",
-            side=side,
-            df=df,
-            standing=_STANDING,
-        )
+        across = across_words(family.responses, family.across_responses)
+        pattern = f"One comparison, {{side}}{across}, {{df}}; {{standing}}."
     else:
-        words = prose(
-            "A family of {count} comparisons, {side}, {adjusted}, {df}; {standing}.",
-            count=str(count),
-            side=side,
-            adjusted=_how_adjusted(family),
-            df=df,
-            standing=_STANDING,
-        )
+        pattern = "A family of {count} comparisons, {side}, {adjusted}, {df}; {standing}."
     verdict = prose(
         " A difference is shown where {kind}*p* is at most {alpha}; whether it matters, its size and "
         "interval say.{unit}",
-        kind="" if family.adjust == "none" else "the adjusted ",
+        kind="the adjusted " if is_adjusted(family) else "",
         unit=" Differences are in percentage points." if basis.response.unit == "%" else "",
         alpha=alpha_words(basis),
     )
-    return (*words, *verdict, *_other_verdicts(basis, family))
+    return (*prose(pattern, **values), *verdict, *_trend_words(family), *_other_verdicts(basis, family))
+
+
+def _df_words(family: ComparisonFamily) -> str:
+    different = {row.df for row in family.rows}
+    if len(different) > 1:
+        return "each with its own degrees of freedom"
+    df = different.pop()
+    if df == int(df):
+        return counted(int(df), "degree of freedom", "degrees of freedom")
+    return f"{degrees_of_freedom(df)} degrees of freedom"
+
+
+def _trend_words(family: ComparisonFamily) -> Prose:
+    if family.kind != "trend":
+        return ()
+    slope = " The linear row is the slope for each unit of the score of a level"
+    if len(family.rows) == 1:
+        return prose(f"{slope}.")
+    return prose(
+        f"{slope}; each further row is the leading coefficient of the next orthogonal polynomial, in the "
+        "unit of the response over that power of the score’s."
+    )
+
+
+def across_words(responses: int, how: str) -> str:
+    """The words that say that a family is adjusted for the number of responses too; empty where it is not."""
+    if responses == 1:
+        return ""
+    return f", adjusted for {responses} responses by {ACROSS_NAMES.get(how, how)}"
 
 
 def _other_verdicts(basis: Basis, family: ComparisonFamily) -> Prose:
@@ -94,53 +141,83 @@ def _other_verdicts(basis: Basis, family: ComparisonFamily) -> Prose:
 
 def _how_adjusted(family: ComparisonFamily) -> str:
     if family.adjust == "none":
-        return "not adjusted for their number"
-    return f"adjusted together by {adjustment_of(family).name}"
+        within = "not adjusted for their number"
+    else:
+        within = f"adjusted together by {adjustment_of(family).name}"
+    if family.responses == 1:
+        return within
+    if family.across_responses == "holm":
+        return f"adjusted together with those of all {family.responses} responses by Holm"
+    return within + across_words(family.responses, family.across_responses)
 
 
 def _family_table(basis: Basis, family: ComparisonFamily, numbering: Numbering) -> Table:
-    scale = basis.difference_scale
+    is_trend = family.kind == "trend"
+    unit = "" if is_trend else basis.difference_scale.heading
     with_ci = is_single_step(family)
-    adjusted = family.adjust != "none"
+    adjusted = is_adjusted(family)
+    different_df = len({row.df for row in family.rows}) > 1
     columns = [
-        Column("Comparison", kind="text"),
-        Column("Estimated difference", scale.heading),
-        *([Column("Interval, from", scale.heading), Column("to", scale.heading)] if with_ci else []),
-        Column("Standard error", scale.heading),
+        Column("Trend" if is_trend else "Comparison", kind="text"),
+        Column("Estimated coefficient" if is_trend else "Estimated difference", unit),
+        *([Column("Interval, from", unit), Column("to", unit)] if with_ci else []),
+        Column("Standard error", unit),
+        *([Column("Degrees of freedom")] if different_df else []),
         Column(prose("*t*")),
         Column(prose("*p*")),
         *([Column(prose("Adjusted *p*"))] if adjusted else []),
-        Column("Difference", kind="words"),
+        Column("Trend" if is_trend else "Difference", kind="words"),
     ]
-    largest = max((row.se for row in family.rows), key=lambda se: se.square)
+    cells = _trend_cells(family.rows) if is_trend else _difference_cells(basis, family.rows)
     rows = []
-    for row in family.rows:
-        cells: list[Words] = [basis.label(row), scale.mean(row.estimate)]
-        if with_ci:
-            cells += _ends(basis, row)
-        cells += [
-            scale.spread(row.se, largest),
-            statistic(row.statistic),
-            probability(row.p, basis.response.alpha),
-        ]
-        if adjusted:
-            cells.append(adjusted_p(basis, row))
-        rows.append([*cells, row_verdict(row.verdict)])
+    for row, (estimate, ends, se) in zip(family.rows, cells, strict=True):
+        rows.append(
+            [
+                basis.label(row),
+                estimate,
+                *(ends if with_ci else []),
+                se,
+                *([degrees_of_freedom(row.df)] if different_df else []),
+                statistic(row.statistic),
+                probability(row.p, basis.response.alpha),
+                *([adjusted_p(basis, row)] if adjusted else []),
+                row_verdict(row.verdict),
+            ]
+        )
     caption = prose("Comparisons, {name}.", name=family.name)
     if with_ci:
         kind = interval_kind(basis, family) + ("s" if len(family.rows) > 1 else "")
         caption = prose("Comparisons, {name}, with {kind}.", name=family.name, kind=kind)
-    return lay_out(numbering.table(), caption, columns, rows)
+    return lay_out(numbering.table(), caption, columns, rows, _table_notes(basis, family))
 
 
-def _ends(basis: Basis, row: ComparisonRow) -> list[Words]:
-    if row.ci is None:
-        return [_BLANK, _BLANK]
-    low, high = row.ci
+_Cells = tuple[Words, list[str], Words]
+
+
+def _difference_cells(basis: Basis, rows: Sequence[ComparisonRow]) -> list[_Cells]:
+    """Estimate, ends of the interval and standard error of each row, all in the unit of the response."""
     scale = basis.difference_scale
+    largest = max((row.se for row in rows), key=lambda se: se.square)
     return [
-        f"{MINUS}{INFINITY}" if low is None else scale.mean(low),
-        INFINITY if high is None else scale.mean(high),
+        (scale.mean(row.estimate), interval_cells(scale, row.ci), scale.spread(row.se, largest))
+        for row in rows
+    ]
+
+
+def _trend_cells(rows: Sequence[ComparisonRow]) -> list[_Cells]:
+    """The same for trends: each row has a unit of its own, and three digits."""
+    return [(three_digits(row.estimate), significant_ends(row.ci), three_digits(row.se)) for row in rows]
+
+
+def _table_notes(basis: Basis, family: ComparisonFamily) -> list[Prose]:
+    if family.responses == 1 or not is_single_step(family):
+        return []
+    return [
+        prose(
+            "The intervals hold together over the {count} responses with {confidence}.",
+            count=str(family.responses),
+            confidence=percent(1 - basis.response.alpha),
+        )
     ]
 
 
@@ -150,17 +227,23 @@ def _family_figure(
     rows = family.rows
     total = len(rows)
     limited = ""
-    if total > MOST_ROWS:
+    most = most_rows([basis.label(row) for row in rows])
+    if total > most:
         order = sorted(range(total), key=lambda index: (rows[index].log10_p_adjusted, rows[index].p, index))
-        rows = tuple(rows[index] for index in sorted(order[:MOST_ROWS]))
+        rows = tuple(rows[index] for index in sorted(order[:most]))
         limited = (
-            f" Drawn are the {MOST_ROWS} of {total} with the smallest adjusted *p*, in the order of the "
+            f" Drawn are the {most} of {total} with the smallest adjusted *p*, in the order of the "
             "plan; the table has all."
         )
     dots = "Estimated differences (dots)" if total > 1 else "Estimated difference (dot)"
-    with_ci = is_single_step(family)
-    picture = interval_plot(basis, rows, accent, f"comparisons-{number}.svg", f"{basis.confidence} interval")
-    if with_ci:
+    head = f"{confidence(1 - basis.response.alpha / family.responses)} interval"
+    picture = interval_plot(
+        [Estimate(basis.label(row), row.estimate, row.ci) for row in rows],
+        Measure("difference", basis.difference_scale, head),
+        accent,
+        basis.file(f"comparisons-{number}.svg"),
+    )
+    if is_single_step(family):
         what = prose(
             "{dots} with {kind}, {name}. An interval that leaves out zero is a difference shown.",
             dots=dots,
@@ -173,6 +256,12 @@ def _family_figure(
             dots=dots,
             name=family.name,
             verdicts="verdicts stand" if total > 1 else "verdict stands",
-            method=adjustment_of(family).name,
+            method=_without_intervals(family),
         )
     return [FigureBlock(numbering.figure(), (picture,), (*what, *prose(limited)))]
+
+
+def _without_intervals(family: ComparisonFamily) -> str:
+    if family.across_responses == "holm" and family.responses > 1:
+        return "Holm’s adjustment across the responses"
+    return adjustment_of(family).name

@@ -1,29 +1,29 @@
-"""The figures on the data themselves and on the comparisons."""
+"""The figures on the data themselves, and what all figures share."""
 
 from dataclasses import dataclass
 from fractions import Fraction
 
-from assayfolio.findings import ComparisonRow, Interval, LevelFindings
+from assayfolio.findings import Interval, LevelFindings
 from assayfolio.report.axes import Axis, make_axis
 from assayfolio.report.basis import Basis
-from assayfolio.report.notation import INFINITY, MINUS, Scale, kept_together
-from assayfolio.report.svg import HAIR, HAIRLINE, INK, SECOND_INK, STRONG_LINE, THIN_LINE, Drawing
+from assayfolio.report.notation import MINUS, Scale, kept_together
+from assayfolio.report.svg import INK, SECOND_INK, STRONG_LINE, THIN_LINE, Drawing
 from assayfolio.report.swarm import lanes, offsets
-from assayfolio.report.typeface import figures_width, text_width, wrapped
+from assayfolio.report.typeface import text_width, wrapped
 
 FULL_WIDTH = 464.9  # 164 mm
+SIZE = 7.4
+LINE = 9.2
 DOT = 1.9
 DOT_ROOM = 2 * DOT + 0.6
 MOST_DOTS = 2000
 MOST_LEVELS = 32
-MOST_ROWS = 36
+MOST_HEIGHT = 600.0  # of the rows of one figure, so that axis and caption stay on its page
 
 _FEW_LEVELS = 8
 _MANY_LEVELS = 16
 _MOST_ROOM = 52.0  # for the lanes of one level
 _BESIDE_DOTS = 16.0  # a dot's own height, the lane of the interval, and air
-_SIZE = 7.4
-_LINE = 9.2
 _BINS = 90
 _CAP = 2.6
 
@@ -45,8 +45,8 @@ def draw_axis(drawing: Drawing, axis: Axis, y: float, title: str, ends: tuple[fl
     for tick, label in zip(axis.ticks, axis.labels, strict=True):
         x = axis.at(tick)
         drawing.line(x, y, x, y + 3, stroke=SECOND_INK, width=THIN_LINE)
-        drawing.figures(x, y + 11, label, size=_SIZE, anchor="middle", fill=SECOND_INK)
-    drawing.text((axis.start + axis.end) / 2, y + 22, title, size=_SIZE, anchor="middle")
+        drawing.figures(x, y + 11, label, size=SIZE, anchor="middle", fill=SECOND_INK)
+    drawing.text((axis.start + axis.end) / 2, y + 22, title, size=SIZE, anchor="middle")
 
 
 def axis_title(axis: Axis, what: str, scale: Scale) -> str:
@@ -75,14 +75,20 @@ def dot_plots(basis: Basis, accent: str) -> tuple[Picture, ...]:
     """
     count = -(-len(basis.levels) // MOST_LEVELS)
     size = -(-len(basis.levels) // count)
+    while size > 1 and any(part > MOST_HEIGHT for part in _heights(basis, size)):
+        count += 1
+        size = -(-len(basis.levels) // count)
     return tuple(
-        _dot_plot(basis, basis.levels[start : start + size], accent, f"values-{start // size + 1}.svg")
+        _dot_plot(
+            basis, basis.levels[start : start + size], accent, basis.file(f"values-{start // size + 1}.svg")
+        )
         for start in range(0, len(basis.levels), size)
     )
 
 
-def _label_column(names: list[str], share: float) -> float:
-    return min(share, max(text_width(name, _SIZE, "semibold") for name in names) + 2)
+def label_column(names: list[str], share: float) -> float:
+    """The width of a column of names, at most `share` points."""
+    return min(share, max(text_width(name, SIZE, "semibold") for name in names) + 2)
 
 
 @dataclass(frozen=True, slots=True)
@@ -97,16 +103,27 @@ class _Row:
     height: float
 
 
-def _dot_plot(basis: Basis, levels: tuple[LevelFindings, ...], accent: str, name: str) -> Picture:
-    beside = len(levels) > _MANY_LEVELS
-    column = _label_column([level.level for level in levels], 128)
+def _heights(basis: Basis, size: int) -> list[float]:
+    """How tall the figures become with `size` levels in each."""
+    parts = [basis.levels[start : start + size] for start in range(0, len(basis.levels), size)]
+    return [sum(row.height for row in _layout(basis, levels)[1]) for levels in parts]
+
+
+def _layout(basis: Basis, levels: tuple[LevelFindings, ...]) -> tuple[Axis, list[_Row], float]:
+    """The axis of a dot plot, its rows, and the width of the column of names."""
+    column = label_column([level.level for level in levels], 128)
     start = column + 16
-    if beside:
+    if len(levels) > _MANY_LEVELS:
         start += 6 + text_width(f"n = {max(level.n for level in levels)}", 6.8)
     ends: list[Fraction] = [end for level in basis.levels for end in (level.minimum, level.maximum)]
     ends += [Fraction(end) for level in basis.levels if level.ci for end in level.ci if end is not None]
     axis = make_axis(ends, start, FULL_WIDTH - 8, power=basis.scale.power)
-    rows = [_row(basis, level, axis, column, len(levels)) for level in levels]
+    return axis, [_row(basis, level, axis, column, len(levels)) for level in levels], column
+
+
+def _dot_plot(basis: Basis, levels: tuple[LevelFindings, ...], accent: str, name: str) -> Picture:
+    beside = len(levels) > _MANY_LEVELS
+    axis, rows, column = _layout(basis, levels)
     drawing = Drawing(FULL_WIDTH, sum(row.height for row in rows) + 32)
     y = 4.0
     for row in rows:
@@ -114,13 +131,20 @@ def _dot_plot(basis: Basis, levels: tuple[LevelFindings, ...], accent: str, name
         _draw_row(drawing, basis, row, axis, y, accent)
         y += row.height
     title = axis_title(axis, basis.response.response, basis.scale)
-    draw_axis(drawing, axis, y + 2, title, (axis.at(min(ends)), axis.at(max(ends))))
+    draw_axis(drawing, axis, y + 2, title, _span(basis, axis))
     words = _values_in_words(basis, levels)
     return Picture(name, drawing.svg(words), words, 164)
 
 
+def _span(basis: Basis, axis: Axis) -> tuple[float, float]:
+    """Where the values and intervals of all levels begin and end on the axis."""
+    ends: list[Fraction | float] = [end for level in basis.levels for end in (level.minimum, level.maximum)]
+    ends += [end for level in basis.levels if level.ci for end in level.ci if end is not None]
+    return axis.at(min(ends)), axis.at(max(ends))
+
+
 def _row(basis: Basis, level: LevelFindings, axis: Axis, column: float, count: int) -> _Row:
-    words = wrapped(kept_together(level.level), _SIZE, column, "semibold")
+    words = wrapped(kept_together(level.level), SIZE, column, "semibold")
     places = [axis.at(value) for value in basis.values_by_level[level.level]]
     name_lines = len(words) + (0 if count > _MANY_LEVELS else 1)
     least = 30.0 if count <= _FEW_LEVELS else 22.0 if count <= _MANY_LEVELS else 17.0
@@ -129,7 +153,7 @@ def _row(basis: Basis, level: LevelFindings, axis: Axis, column: float, count: i
     else:
         chosen = lanes(places, DOT_ROOM)
         room = min(_MOST_ROOM, DOT_ROOM * (max(chosen) - min(chosen)))
-    height = max(least, _LINE * name_lines + 4, room + _BESIDE_DOTS)
+    height = max(least, LINE * name_lines + 4, room + _BESIDE_DOTS)
     return _Row(level, words, places, chosen, room, height)
 
 
@@ -137,12 +161,12 @@ def _name_level(
     drawing: Drawing, level: LevelFindings, words: list[str], middle: float, column: float, *, beside: bool
 ) -> None:
     total = len(words) if beside else len(words) + 1
-    y = middle - _LINE * total / 2 + 7
+    y = middle - LINE * total / 2 + 7
     for word in words:
-        drawing.text(0, y, word, size=_SIZE, weight=600)
-        y += _LINE
+        drawing.text(0, y, word, size=SIZE, weight=600)
+        y += LINE
     if beside:
-        drawing.count(column + 6, middle - _LINE / 2 + 7, level.n)
+        drawing.count(column + 6, middle - LINE / 2 + 7, level.n)
     else:
         drawing.count(0, y, level.n)
 
@@ -183,80 +207,3 @@ def _values_in_words(basis: Basis, levels: tuple[LevelFindings, ...]) -> str:
     ]
     unit = f" in {scale.heading}" if scale.heading else ""
     return f"{basis.response.response}{unit} by {basis.factor}. " + "; ".join(parts) + "."
-
-
-def interval_plot(
-    basis: Basis, rows: tuple[ComparisonRow, ...], accent: str, name: str, head: str
-) -> Picture:
-    """Estimates with their intervals, one row each, in the order of the plan; figures in columns at right."""
-    scale = basis.difference_scale
-    labels = [basis.label(row) for row in rows]
-    column = _label_column(labels, 168)
-    lines = [wrapped(kept_together(label), _SIZE, column) for label in labels]
-    heights = [max(15.0, _LINE * len(words) + 6) for words in lines]
-    figures = [_figures(row, scale) for row in rows]
-    columns = _number_columns(figures)
-    right = FULL_WIDTH - sum(columns) - 10 * len(columns)
-    drawing = Drawing(FULL_WIDTH, sum(heights) + 46)
-    values = [row.estimate for row in rows]
-    values += [Fraction(end) for row in rows if row.ci for end in row.ci if end is not None]
-    axis = make_axis(values, column + 16, right, include_zero=True, power=scale.power)
-    top, y = 14.0, 14.0
-    zero = axis.at(0)
-    drawing.line(zero, top, zero, top + sum(heights) + 2, stroke=SECOND_INK, width=THIN_LINE)
-    _heads(drawing, columns, right, head, with_interval=len(columns) > 1)
-    for row, words, height, texts in zip(rows, lines, heights, figures, strict=True):
-        middle = y + height / 2
-        baseline = middle - _LINE * len(words) / 2 + 7
-        for number, word in enumerate(words):
-            drawing.text(0, baseline + number * _LINE, word, size=_SIZE)
-        if row.ci is not None:
-            draw_interval(drawing, axis, middle, row.ci, stroke=accent)
-        drawing.dot(axis.at(row.estimate), middle, 2.1, fill=accent)
-        _numbers(drawing, texts, columns, right, middle + 2.6)
-        y += height
-    ends = (axis.at(min(*values, Fraction(0))), axis.at(max(*values, Fraction(0))))
-    draw_axis(drawing, axis, y + 4, axis_title(axis, "difference", scale), ends)
-    words_for_all = _intervals_in_words(basis, rows)
-    return Picture(name, drawing.svg(words_for_all), words_for_all, 164)
-
-
-def _figures(row: ComparisonRow, scale: Scale) -> list[str]:
-    texts = [scale.mean(row.estimate)]
-    if row.ci is not None:
-        texts.append(f"{MINUS}{INFINITY}" if row.ci[0] is None else scale.mean(row.ci[0]))
-        texts.append(INFINITY if row.ci[1] is None else scale.mean(row.ci[1]))
-    return texts
-
-
-def _number_columns(figures: list[list[str]]) -> list[float]:
-    count = max(len(texts) for texts in figures)
-    return [max(figures_width(texts[i], _SIZE) for texts in figures if i < len(texts)) for i in range(count)]
-
-
-def _heads(drawing: Drawing, columns: list[float], right: float, head: str, *, with_interval: bool) -> None:
-    x = right + 10 + columns[0]
-    drawing.text(x, 6, "difference", size=6.8, fill=SECOND_INK, anchor="end")
-    if with_interval:
-        drawing.text(FULL_WIDTH, 6, head, size=6.8, fill=SECOND_INK, anchor="end")
-    drawing.line(right + 6, 10, FULL_WIDTH, 10, stroke=HAIRLINE, width=HAIR)
-
-
-def _numbers(drawing: Drawing, texts: list[str], columns: list[float], right: float, baseline: float) -> None:
-    x = right
-    for text, width in zip(texts, columns, strict=False):
-        x += 10 + width
-        drawing.figures(x, baseline, text, size=_SIZE)
-
-
-def _intervals_in_words(basis: Basis, rows: tuple[ComparisonRow, ...]) -> str:
-    scale = basis.difference_scale
-    parts = []
-    for row in rows:
-        words = f"{basis.label(row)}: {scale.mean(row.estimate)}"
-        if row.ci is not None:
-            low, high = _figures(row, scale)[1:]
-            words += f", interval {low} to {high}"
-        parts.append(words)
-    unit = f" in {scale.heading}" if scale.heading else ""
-    return f"Differences{unit}. " + "; ".join(parts) + "."

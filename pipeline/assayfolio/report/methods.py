@@ -1,16 +1,22 @@
-"""What the methods are called, how they work in formulas, and where they are published."""
+"""What the methods for several comparisons are called and how they work, in words and formulas.
+
+In a rule `{df}` stands for the degrees of freedom of a comparison: N - k with one error variance, the number
+of Welch and Satterthwaite with separate ones.
+"""
 
 from dataclasses import dataclass
 
 from assayfolio.findings import ComparisonFamily
+from assayfolio.study.plan import Adjustment
 
 
 @dataclass(frozen=True, slots=True)
-class Adjustment:
+class AdjustmentWords:
     """How a report speaks of a way to adjust for several comparisons.
 
-    `name` as in running text; `interval` is the kind of interval it comes with; `rule` says how the adjusted
-    p and the interval are formed; `references` are keys of REFERENCES.
+    `name` as in running text; `interval` is the kind of interval it comes with, empty where it has none;
+    `rule` says how the adjusted p and the interval are formed and what is assumed; `references` are keys of
+    REFERENCES.
     """
 
     name: str
@@ -19,37 +25,58 @@ class Adjustment:
     references: tuple[str, ...]
 
 
-ADJUSTMENTS: dict[str, Adjustment] = {
-    "none": Adjustment(
+_NO_INTERVALS = " A stepwise method of this kind has no simultaneous intervals of its own, so none are given."
+
+ADJUSTMENTS: dict[Adjustment, AdjustmentWords] = {
+    "none": AdjustmentWords(
         "no adjustment",
         "individual",
         "No adjustment: each comparison has the level *α* by itself, and the interval uses "
-        "*c* = *t*_1−*α*/2;\u00a0*N*−*k*_.",
+        "*c* = *t*_1−*α*/2;\u00a0{df}_.",
         (),
     ),
-    "bonferroni": Adjustment(
+    "bonferroni": AdjustmentWords(
         "Bonferroni",
         "simultaneous",
         "Bonferroni: adjusted *p* is the smaller of 1 and *m* × *p* for a family of *m* comparisons; the "
-        "interval uses *c* = *t*_1−*α*/(2*m*);\u00a0*N*−*k*_.",
+        "interval uses *c* = *t*_1−*α*/(2*m*);\u00a0{df}_. Nothing is assumed about how the comparisons "
+        "depend on one another.",
         ("dunn",),
     ),
-    "sidak": Adjustment(
+    "sidak": AdjustmentWords(
         "Šidák",
         "simultaneous",
         "Šidák: adjusted *p* is 1 − (1 − *p*)^*m*^ for a family of *m* comparisons; the interval uses "
-        "*c* = *t*_1−*α*′/2;\u00a0*N*−*k*_ with *α*′ = 1 − (1 − *α*)^1/*m*^.",
+        "*c* = *t*_1−*α*′/2;\u00a0{df}_ with *α*′ = 1 − (1 − *α*)^1/*m*^. It holds for two-sided comparisons "
+        "however they depend on one another, as their estimates are jointly normal.",
         ("sidak",),
     ),
-    "holm": Adjustment(
+    "holm": AdjustmentWords(
         "Holm",
         "",
         "Holm: with the *p* values of a family of *m* in rising order, the adjusted *p* in place *i* is the "
-        "largest of min(1, (*m* − *j* + 1) × *p*_(*j*)_) over *j* ≤ *i*. A stepwise method of this kind has "
-        "no simultaneous intervals of its own, so none are given.",
+        "largest of min(1, (*m* − *j* + 1) × *p*_(*j*)_) over *j* ≤ *i*. Nothing is assumed about how the "
+        "comparisons depend on one another." + _NO_INTERVALS,
         ("holm",),
     ),
-    "tukey-kramer": Adjustment(
+    "hochberg": AdjustmentWords(
+        "Hochberg",
+        "",
+        "Hochberg: with the *p* values of a family of *m* in rising order, the adjusted *p* in place *i* is "
+        "the smallest of min(1, (*m* − *j* + 1) × *p*_(*j*)_) over *j* ≥ *i*. It assumes that the tests are "
+        "independent or positively dependent (so that Simes’ inequality holds); with two-sided or "
+        "negatively correlated comparisons that is not certain." + _NO_INTERVALS,
+        ("hochberg", "sarkar"),
+    ),
+    "scheffe": AdjustmentWords(
+        "Scheffé",
+        "simultaneous",
+        "Scheffé: adjusted *p* = P(*F*_*k*−1, *N*−*k*_ ≥ *t*²/(*k* − 1)); the interval uses *c* = "
+        "√((*k* − 1) *F*_1−*α*;\u00a0*k*−1, *N*−*k*_). It keeps the level over every contrast of the *k* "
+        "means that could be asked, two-sided, and so is wide for few.",
+        ("scheffe1953",),
+    ),
+    "tukey-kramer": AdjustmentWords(
         "Tukey–Kramer",
         "simultaneous",
         "Tukey–Kramer: adjusted *p* = P(*Q* ≥ √2 |*t*|) for the studentised range *Q* of *k* means with *N* "
@@ -57,57 +84,43 @@ ADJUSTMENTS: dict[str, Adjustment] = {
         "unequal *n* the method keeps its level and is somewhat conservative.",
         ("tukey", "kramer", "hayter"),
     ),
-}
-
-REFERENCES: dict[str, str] = {
-    "scheffe": "H. Scheffé, The Analysis of Variance, Wiley, New York, 1959 (one-way layout, chapter 3).",
-    "iso3534": "ISO 3534-3:2013, Statistics – Vocabulary and symbols – Part 3: Design of experiments.",
-    "tukey": (
-        "J. W. Tukey, The problem of multiple comparisons, 1953; in The Collected Works of John W. Tukey, "
-        "vol. VIII, Chapman & Hall, New York, 1994."
+    "games-howell": AdjustmentWords(
+        "Games–Howell",
+        "simultaneous",
+        "Games–Howell: adjusted *p* = P(*Q* ≥ √2 |*t*|) for the studentised range *Q* of *k* means with the "
+        "degrees of freedom *ν* of the pair; the interval uses *c* = *q*_1−*α*;\u00a0*k*,\u00a0*ν*_ / √2. "
+        "The method is approximate: with few values at a level it can exceed its level a little.",
+        ("games-howell",),
     ),
-    "kramer": (
-        "C. Y. Kramer, Extension of multiple range tests to group means with unequal numbers of "
-        "replications, Biometrics 12 (1956) 307–310."
+    "dunnett": AdjustmentWords(
+        "Dunnett",
+        "simultaneous",
+        "Dunnett, single-step: adjusted *p* = P(max |*T*_*i*_| ≥ |*t*|), where the *T*_*i*_ are jointly *t* "
+        "distributed with *N* − *k* degrees of freedom and correlations *b*_*i*_ *b*_*j*_, *b*_*i*_ = "
+        "√(*n*_*i*_ / (*n*_0_ + *n*_*i*_)), *n*_0_ at the reference; the interval uses the *c* with "
+        "P(max |*T*_*i*_| > *c*) = *α*. One-sided, the signs are kept.",
+        ("dunnett1955", "dunnett1964"),
     ),
-    "hayter": (
-        "A. J. Hayter, A proof of the conjecture that the Tukey–Kramer multiple comparisons procedure is "
-        "conservative, Annals of Statistics 12 (1984) 61–75."
-    ),
-    "dunn": (
-        "O. J. Dunn, Multiple comparisons among means, Journal of the American Statistical Association 56 "
-        "(1961) 52–64."
-    ),
-    "sidak": (
-        "Z. Šidák, Rectangular confidence regions for the means of multivariate normal distributions, "
-        "Journal of the American Statistical Association 62 (1967) 626–633."
-    ),
-    "holm": (
-        "S. Holm, A simple sequentially rejective multiple test procedure, Scandinavian Journal of "
-        "Statistics 6 (1979) 65–70."
-    ),
-    "brown-forsythe": (
-        "M. B. Brown and A. B. Forsythe, Robust tests for the equality of variances, Journal of the "
-        "American Statistical Association 69 (1974) 364–367."
-    ),
-    "shapiro-wilk": (
-        "S. S. Shapiro and M. B. Wilk, An analysis of variance test for normality (complete samples), "
-        "Biometrika 52 (1965) 591–611."
-    ),
-    "royston": (
-        "P. Royston, Remark AS R94: a remark on algorithm AS 181, Applied Statistics 44 (1995) 547–551."
-    ),
-    "blom": "G. Blom, Statistical Estimates and Transformed Beta-Variables, Wiley, New York, 1958.",
-    "chambers": (
-        "J. M. Chambers, W. S. Cleveland, B. Kleiner and P. A. Tukey, Graphical Methods for Data Analysis, "
-        "Wadsworth, Belmont, 1983."
-    ),
-    "heckbert": (
-        "P. S. Heckbert, Nice numbers for graph labels, in Graphics Gems, Academic Press, Boston, 1990."
+    "dunnett-step-down": AdjustmentWords(
+        "Dunnett–Tamhane step-down",
+        "",
+        "Dunnett–Tamhane step-down: the comparisons are taken from the largest statistic to the smallest; "
+        "each is given the probability that the largest of the statistics not yet taken reaches it "
+        "(distribution as for Dunnett’s method), and the adjusted *p* is the largest of these probabilities "
+        "so far." + _NO_INTERVALS,
+        ("dunnett-tamhane", "dunnett1955"),
     ),
 }
 
 
-def adjustment_of(family: ComparisonFamily) -> Adjustment:
+def adjustment_words(adjust: str) -> AdjustmentWords:
+    """How a report speaks of the adjustment that the plan calls `adjust`.
+
+    Raises KeyError for a name that the plan does not know.
+    """
+    return {str(name): words for name, words in ADJUSTMENTS.items()}[adjust]
+
+
+def adjustment_of(family: ComparisonFamily) -> AdjustmentWords:
     """How a report speaks of the method of `family`."""
-    return ADJUSTMENTS[family.adjust]
+    return adjustment_words(family.adjust)

@@ -132,13 +132,40 @@ def percent(share: Fraction) -> str:
     return f"{fixed(share * 100, places)}{THIN}%"
 
 
+def confidence(share: Fraction) -> str:
+    """The level of an interval as per cent; one that was divided has two decimals at most: "98.33 %"."""
+    exact = percent(share)
+    return exact if len(exact) <= len("99.9999") else f"{fixed(share * 100, 2)}{THIN}%"
+
+
 def decimal(value: Fraction) -> str:
-    """A planned number as a decimal, or as a fraction where no short decimal is exact."""
-    for places in range(13):
-        if value * 10**places % 1 == 0:
-            return fixed(value, places)
+    """A planned number as a decimal with all its digits, or as a fraction where no decimal is exact."""
+    if abs(value) < 10**9:
+        for places in range(13):
+            if value * 10**places % 1 == 0:
+                return fixed(value, places)
+    for digits in range(1, MAX_DIGITS + 1):
+        if value * Fraction(10) ** significant_places(value, digits) % 1 == 0:
+            return scientific(value, digits)
     sign = MINUS if value < 0 else ""
     return f"{sign}{abs(value.numerator)}/{value.denominator}"
+
+
+def three_digits(value: Number) -> str:
+    """`value` with three significant digits, as a plain figure where that is not long."""
+    if not _comparable(value):
+        return "0"
+    places = significant_places(value, 3)
+    if -3 <= places <= 6:
+        return fixed(value, max(0, places))
+    return scientific(value, 3)
+
+
+def degrees_of_freedom(df: Number) -> str:
+    """Degrees of freedom: a whole number as it is, any other with two decimals, as many where it is tiny."""
+    if not isinstance(df, Root) and Fraction(df).denominator == 1:
+        return str(int(df))
+    return fixed(df, 2) if _comparable(df) >= Fraction(1, 100) else three_digits(df)
 
 
 @dataclass(frozen=True, slots=True)

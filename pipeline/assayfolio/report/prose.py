@@ -12,6 +12,7 @@ from typing import TypeAlias
 from assayfolio.report.notation import kept_together
 
 _STYLES = {"*": "symbol", "#": "strong", "~": "quiet", "_": "sub", "^": "sup"}
+_UNIT_WITH_SLASH = re.compile(r"((?<![^ ])[^ /]{1,20}/\d[^ /]{0,12}(?![^ ]))")
 _LONG_WORD = re.compile(r"\w{8}")
 _TOKEN = re.compile(r"([*#~_^])(.+?)\1|\{([a-z0-9_]+)\}")
 
@@ -52,10 +53,18 @@ def prose(pattern: str, **values: Words) -> Prose:
 
 
 def _given(words: Words) -> Prose:
-    """A value put into a pattern; where it holds long words, it is marked so that none is ever hyphenated."""
-    if isinstance(words, str) and _LONG_WORD.search(words):
-        return (Span(kept_together(words), "given"),)
-    return as_prose(words)
+    """A value put into a pattern; where it holds long words, it is marked so that none is ever hyphenated.
+
+    A unit such as g/100 g stays on one line, together with the figure before it.
+    """
+    if not isinstance(words, str):
+        return words
+    style = "given" if _LONG_WORD.search(words) else ""
+    spans: list[Span] = []
+    for place, part in enumerate(_UNIT_WITH_SLASH.split(kept_together(words))):
+        if part:
+            spans.append(Span(part, f"{style} kept".strip() if place % 2 else style))
+    return tuple(spans)
 
 
 def as_prose(words: Words) -> Prose:

@@ -1,30 +1,12 @@
-"""Sections 8 and 9: where everything comes from, how to check it, and the raw data themselves."""
+"""Where everything comes from, and how to check it."""
 
-from assayfolio.observations.values import Observation
 from assayfolio.report.basis import Basis
-from assayfolio.report.content import (
-    Block,
-    Entry,
-    Facts,
-    Heading,
-    Items,
-    Listing,
-    ListingRow,
-    Paragraph,
-    Section,
-)
+from assayfolio.report.content import Block, Entry, Facts, Heading, Items, Section
 from assayfolio.report.facts import InputFacts, RunFacts
-from assayfolio.report.notation import kept_together, split_at_point
-from assayfolio.report.numbering import ANCHORS, LISTING, PROVENANCE, Numbering
+from assayfolio.report.listing import MOST_LISTED
+from assayfolio.report.numbering import Part
 from assayfolio.report.prose import Prose, prose, verbatim
-from assayfolio.report.tables import TEXT_WIDTH_MM, UNBROKEN_TO
-from assayfolio.report.typeface import POINTS_PER_MM, figures_width, text_width
 from assayfolio.report.wording import counted
-
-MOST_LISTED = 600
-_SIZE = 8.0
-_LINE_SIZE = 6.4
-
 
 _SIGNING = (
     "~Signatures: this version does not sign. Until signing is part of this program, the sign-off fields on "
@@ -63,7 +45,8 @@ def provenance_section(basis: Basis) -> Section:
         Heading(prose("Attached to this document")),
         Items(tuple(_attached(basis)) or (prose("Nothing is attached."),)),
     ]
-    return Section(ANCHORS[PROVENANCE], PROVENANCE, "Provenance", tuple(blocks))
+    place = basis.place(Part.PROVENANCE)
+    return Section(place.anchor, place.number, "Provenance", tuple(blocks))
 
 
 def _entry(what: str, value: str, digest: str = "") -> Entry:
@@ -130,8 +113,10 @@ def _how_to_check(basis: Basis) -> tuple[Prose, ...]:
             study=verbatim(study),
         ),
         prose(
-            "By hand: means, sums of squares and *F* follow from {source} with the formulas of section 7.",
-            source="the listing in section 9"
+            "By hand: means, sums of squares and *F* follow from {source} with the formulas of section "
+            "{number}.",
+            number=str(basis.place(Part.METHOD).number),
+            source=f"the listing in section {basis.place(Part.LISTING).number}"
             if basis.total <= MOST_LISTED
             else "the exact sums of each level (“sums” in findings.json)",
         ),
@@ -155,82 +140,3 @@ def _attached(basis: Basis) -> list[Prose]:
         words = "The raw data are too large to attach; they stand in the folio as {path}."
         listed.append(prose(words, path=verbatim(raw)))
     return listed
-
-
-def listing_section(basis: Basis, numbering: Numbering) -> Section:
-    """The raw data as typed, with line numbers; long files are left to the attachment."""
-    observations = basis.content.observations
-    extra = ""
-    if observations.extra_columns:
-        extra = " Further columns of the file are carried along and not analysed: {columns}."
-    if basis.total > MOST_LISTED:
-        words = (
-            "The file has {total}; a listing stops at {most} and is left to the file itself, {file}, whose "
-            "SHA-256 stands in section 8." + extra
-        )
-        blocks: tuple[Block, ...] = (
-            Paragraph(
-                prose(
-                    words,
-                    total=counted(basis.total, "value"),
-                    most=str(MOST_LISTED),
-                    file=verbatim(observations.file),
-                    columns=", ".join(observations.extra_columns),
-                )
-            ),
-        )
-    else:
-        words = "Values as typed, each beside the number of its line in {file}." + extra
-        caption = prose(
-            words, file=verbatim(observations.file), columns=", ".join(observations.extra_columns)
-        )
-        blocks = (_listing(basis, numbering.table(), caption),)
-    return Section(ANCHORS[LISTING], LISTING, "Data listing", blocks)
-
-
-def _listing(basis: Basis, label: str, caption: Prose) -> Listing:
-    rows = basis.content.observations.rows
-    texts = [row.text.strip() for row in rows]
-    rests = [figures_width(split_at_point(text)[1], _SIZE) for text in texts]
-    whole = max(figures_width(split_at_point(text)[0], _SIZE) for text in texts)
-    value_mm = (whole + max(rests)) / POINTS_PER_MM + 0.8
-    line_mm = figures_width(str(max(row.line for row in rows)), _LINE_SIZE) / POINTS_PER_MM + 3.0
-    names = max(text_width(f"{level.level} {_count(level.n)}", _SIZE) for level in basis.levels)
-    level_mm = min(max(names / POINTS_PER_MM + 1.0, 14.0), 50.0)
-    most = max(1, int((TEXT_WIDTH_MM - level_mm) / (value_mm + line_mm + 1.2)))
-    per_row = max(1, min(most, max(level.n for level in basis.levels)))
-    shifts = {id(row): max(rests) - rest for row, rest in zip(rows, rests, strict=True)}
-    by_level: dict[str, list[Observation]] = {level.level: [] for level in basis.levels}
-    for row in rows:
-        by_level[row.level].append(row)
-    listed: list[ListingRow] = []
-    for level in basis.levels:
-        own = by_level[level.level]
-        for start in range(0, len(own), per_row):
-            part = own[start : start + per_row]
-            listed.append(
-                ListingRow(
-                    level=kept_together(level.level) if start == 0 else "",
-                    count=_count(level.n) if start == 0 else "",
-                    values=tuple((str(row.line), _as_typed(row), f"{shifts[id(row)]:.2f}pt") for row in part),
-                    gaps=per_row - len(part),
-                )
-            )
-    return Listing(
-        label=label,
-        caption=caption,
-        rows=tuple(listed),
-        level_width=f"{level_mm:.2f}mm",
-        value_width=f"{value_mm + line_mm + 1.2:.2f}mm",
-        line_width=f"{line_mm:.2f}mm",
-        per_row=per_row,
-        unbroken=len(listed) <= UNBROKEN_TO,
-    )
-
-
-def _count(n: int) -> str:
-    return f"n\u00a0=\u00a0{n}"
-
-
-def _as_typed(row: Observation) -> str:
-    return row.text.strip()

@@ -127,10 +127,23 @@ def _widths(columns: Sequence[Column], rows: Sequence[Sequence[Words]]) -> tuple
         if wanted <= room:
             return size, widths
         if room >= least * len(texts) or (size, least) == crowded[-1]:
-            for index in texts:
-                widths[index] = max(_NARROWEST, widths[index] * room / wanted)
+            for index, width in zip(texts, _shared(room, [widths[index] for index in texts]), strict=True):
+                widths[index] = width
             return size, widths
     raise AssertionError("the last choice is always taken")
+
+
+def _shared(room: float, wanted: list[float]) -> list[float]:
+    """`room` shared in proportion to what is wanted, none narrower than the narrowest, as far as it goes."""
+    narrow = [width * room / sum(wanted) < _NARROWEST for width in wanted]
+    rest = room - _NARROWEST * sum(narrow)
+    wide = sum(width for width, is_narrow in zip(wanted, narrow, strict=True) if not is_narrow)
+    if not wide or rest <= 0:
+        return [max(1.0, room / len(wanted))] * len(wanted)
+    return [
+        _NARROWEST if is_narrow else width * rest / wide
+        for width, is_narrow in zip(wanted, narrow, strict=True)
+    ]
 
 
 def _natural(column: Column, cells: Sequence[Words], size: float) -> float:

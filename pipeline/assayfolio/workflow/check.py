@@ -7,7 +7,15 @@ from pathlib import Path
 
 from assayfolio.canonical import Json
 from assayfolio.observations.values import Observations
-from assayfolio.study.plan import AllPairs, Comparison, Contrast, StudyDefinition
+from assayfolio.study.plan import (
+    AgainstReference,
+    AllPairs,
+    Comparison,
+    Contrast,
+    ContrastFamily,
+    EquivalencePlan,
+    StudyDefinition,
+)
 from assayfolio.study.suggestions import nearest
 from assayfolio.workflow.intake import SeenFiles, data_file_exists, read_intake, read_plan
 from assayfolio.workflow.workspace import Workspace
@@ -15,10 +23,13 @@ from assayfolio.workflow.workspace import Workspace
 
 @dataclass(frozen=True, slots=True)
 class CheckedStudy:
-    """A study that can be run; `observations` is None while its data file does not exist."""
+    """A study that can be run; `observations` is None while its data file does not exist.
+
+    Otherwise it holds the observations of each response, all of them in the same rows.
+    """
 
     study: StudyDefinition
-    observations: Observations | None
+    observations: tuple[Observations, ...] | None
     files_there: tuple[str, ...] = ()
 
     def lines(self) -> list[str]:
@@ -26,8 +37,9 @@ class CheckedStudy:
         study, data = self.study, self.study.data
         lines = [
             f"{study.study}  {study.title}",
-            f"  plan   valid: {data.response[0]} by {data.factor}, alpha {float(study.alpha):g}",
+            f"  plan   valid: {', '.join(data.response)} by {data.factor}, alpha {float(study.alpha):g}",
             *(f"  plan   {_described(comparison)}" for comparison in study.comparisons),
+            *(f"  plan   {_test_described(test)}" for test in study.equivalence),
         ]
         if self.observations is None:
             return [
@@ -35,12 +47,13 @@ class CheckedStudy:
                 f"  data   {data.file} does not exist yet; the plan itself is in order",
                 *self._hint(),
             ]
-        counts = self.counts()
-        layout = f"separator {self.observations.separator}, decimal {data.decimal_mark}"
+        observed, counts = self.observations[0], self.counts()
+        layout = f"separator {observed.separator}, decimal {data.decimal_mark}"
+        each = f" of each of {len(self.observations)} responses" if len(self.observations) > 1 else ""
         listed = ", ".join(f"{level} {n}" for level, n in counts.items())
         return [
             *lines,
-            f"  data   {self.observations.file}: {sum(counts.values()):,} values, {layout}",
+            f"  data   {observed.file}: {sum(counts.values()):,} values{each}, {layout}",
             f"  data   fits the plan: {listed}",
         ]
 
@@ -62,17 +75,32 @@ class CheckedStudy:
         """The number of values of each level, in the order of the levels."""
         if self.observations is None:
             return {}
-        counted = Counter(row.level for row in self.observations.rows)
-        return {level: counted[level] for level in self.observations.levels}
+        observed = self.observations[0]
+        counted = Counter(row.level for row in observed.rows)
+        return {level: counted[level] for level in observed.levels}
 
 
 def _described(comparison: Comparison) -> str:
     if isinstance(comparison, AllPairs):
         return f"{comparison.name}: all pairs, {comparison.adjust}"
-    if isinstance(comparison, Contrast):
-        weights = ", ".join(f"{weight} {level}" for level, weight in comparison.weights)
-        return f"{comparison.name}: {weights}; {comparison.alternative}"
-    return f"{comparison.name}: against {comparison.against}, {comparison.adjust}, {comparison.alternative}"
+    if isinstance(comparison, AgainstReference):
+        what = f"against {comparison.against}, {comparison.adjust}"
+    elif isinstance(comparison, Contrast):
+        what = ", ".join(f"{weight} {level}" for level, weight in comparison.weights)
+        return f"{comparison.name}: {what}; {comparison.alternative}"
+    elif isinstance(comparison, ContrastFamily):
+        what = f"{len(comparison.contrasts)} contrasts, {comparison.adjust}"
+    else:
+        kind = "linear trend" if comparison.degree == 1 else f"trend up to degree {comparison.degree}"
+        what = f"{kind}, {comparison.adjust}"
+    return f"{comparison.name}: {what}, {comparison.alternative}"
+
+
+def _test_described(test: EquivalencePlan) -> str:
+    kind = "non-inferiority" if test.non_inferiority else "equivalence"
+    of = "all pairs" if test.against is None else f"against {test.against}"
+    only = f", {test.response} only" if test.response is not None else ""
+    return f"{test.name}: {kind}, {of}, {test.adjust}{only}"
 
 
 def check_study(workspace: Workspace, study_path: Path) -> CheckedStudy:

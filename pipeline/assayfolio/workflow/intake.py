@@ -12,7 +12,7 @@ from assayfolio.canonical import sha256_hex
 from assayfolio.errors import DataError, Fault, InputError, Place, StudyError
 from assayfolio.evidence.folio import name_fault
 from assayfolio.fit import check_fit
-from assayfolio.observations.reading import read_observations
+from assayfolio.observations.reading import read_all_observations
 from assayfolio.observations.values import Observations
 from assayfolio.study.availability import check_available, check_required
 from assayfolio.study.plan import Laboratory, StudyDefinition
@@ -50,11 +50,11 @@ class SeenFiles:
 
 @dataclass(frozen=True, slots=True)
 class Intake:
-    """The validated inputs of a run."""
+    """The validated inputs of a run; the observations of each response, in the order of the plan."""
 
     study: StudyDefinition
     laboratory: Laboratory
-    observations: Observations
+    observations: tuple[Observations, ...]
     files: tuple[InputFile, ...]
 
 
@@ -104,7 +104,7 @@ def read_intake(workspace: Workspace, study_path: Path, seen: SeenFiles) -> Inta
 def validated(study: StudyDefinition, laboratory: Laboratory, files: tuple[InputFile, ...]) -> Intake:
     """The intake made of a plan and its files, the raw data among them."""
     raw = next(file for file in files if file.role == "raw data")
-    observations = read_observations(raw.content, study.data, raw.path)
+    observations = read_all_observations(raw.content, study.data, raw.path)
     check_fit(study, observations)
     return Intake(study, laboratory, observations, files)
 

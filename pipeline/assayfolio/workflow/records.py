@@ -8,7 +8,8 @@ from typing import Any
 from assayfolio.canonical import Json, sha256_hex
 from assayfolio.evidence.history import run_name
 from assayfolio.evidence.trail import TrailHead
-from assayfolio.findings import Findings, findings_bytes
+from assayfolio.findings import Findings
+from assayfolio.findings_document import findings_bytes
 from assayfolio.report.facts import AttachedFile, InputFacts, ReportInput, RunFacts
 from assayfolio.version import VERSION
 from assayfolio.workflow.intake import Intake
@@ -159,6 +160,6 @@ def _attachments(intake: Intake, findings: Findings) -> Sequence[AttachedFile]:
     ]
     if len(raw.content) <= ATTACH_UP_TO_BYTES:
         name = Path(raw.folio_path).name
-        media_type = "text/tab-separated-values" if intake.observations.separator == "tab" else "text/csv"
+        media_type = "text/tab-separated-values" if intake.observations[0].separator == "tab" else "text/csv"
         listed.append(AttachedFile(name, media_type, "Raw data as received", "Source", raw.content))
     return listed

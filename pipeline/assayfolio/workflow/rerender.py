@@ -12,9 +12,9 @@ from typing import Any
 
 from assayfolio.canonical import sha256_hex
 from assayfolio.errors import ChangedError, Fault, InputError, Place
-from assayfolio.evaluation import evaluate
+from assayfolio.evaluation.apply import evaluate
 from assayfolio.evidence.verification import verify_lone_folios
-from assayfolio.findings import findings_bytes
+from assayfolio.findings_document import findings_bytes
 from assayfolio.report.render import render_report
 from assayfolio.workflow.intake import folio_intake
 from assayfolio.workflow.records import RUN_FORMAT, report_input, run_facts

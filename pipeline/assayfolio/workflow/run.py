@@ -1,9 +1,10 @@
 """A run, from study definition and raw data to a sealed folio, in numbered steps.
 
-1 read and validate every input, 2 allot the run number, 3 check the installed code, 4 compute the findings,
-5 render the report, 6 stage the folio and read it back, 7 seal it: enter the seal in the trail, then rename
-the folder into place. Each step is entered in the audit trail as it is done. A fault in step 1 leaves a
-`refused` entry and no number; a failure after step 2 keeps its number and leaves a folio with the reason.
+1 read and validate every input, 2 allot the run number, 3 check the installed code, 4 compute the findings
+and hold them against the second route, 5 render the report, 6 stage the folio and read it back, 7 seal it:
+enter the seal in the trail, then rename the folder into place. Each step is entered in the audit trail as it
+is done. A fault in step 1 leaves a `refused` entry and no number; a failure after step 2 keeps its number and
+leaves a folio with the reason.
 """
 
 from collections.abc import Mapping
@@ -12,13 +13,16 @@ from dataclasses import dataclass, field
 from pathlib import Path
 
 from assayfolio.canonical import Json, canonical_bytes, sha256_hex
-from assayfolio.errors import AssayfolioError, InputError, MachineError
-from assayfolio.evaluation import evaluate
+from assayfolio.errors import AssayfolioError, ExitCode, InputError, MachineError
+from assayfolio.evaluation.apply import evaluate
+from assayfolio.evaluation.reported import second_routes
 from assayfolio.evidence.environment import environment_record
 from assayfolio.evidence.folio import folio_lock, stage_folio
 from assayfolio.evidence.history import next_number, run_name, run_subject, trail_extract
 from assayfolio.evidence.trail import TrailEntry, TrailHead, open_trail
-from assayfolio.findings import Findings, findings_bytes
+from assayfolio.findings import CRITERION_MET, Findings
+from assayfolio.findings_document import findings_bytes
+from assayfolio.observations.values import Observations
 from assayfolio.report.loading import load_renderer
 from assayfolio.report.render import render_report
 from assayfolio.study.plan import SignOff
@@ -34,6 +38,7 @@ from assayfolio.workflow.records import (
     run_record,
 )
 from assayfolio.workflow.recovery import acknowledge_interruptions, found_trail
+from assayfolio.workflow.second_route import require_agreement, second_route_record
 from assayfolio.workflow.selfcheck import self_check
 from assayfolio.workflow.steps import Progress, Step
 from assayfolio.workflow.surroundings import Surroundings, account_name, look_around, utc_now
@@ -51,6 +56,13 @@ class RunOutcome:
     seal: str
     findings: Findings
     sign_off: tuple[SignOff, ...]
+
+    @property
+    def exit_code(self) -> ExitCode:
+        """What the command answers with: whether every criterion that was set in advance is met."""
+        criteria = [one for response in self.findings.responses for one in response.criteria]
+        met = all(criterion.verdict == CRITERION_MET for criterion in criteria)
+        return ExitCode.DONE if met else ExitCode.FINDING
 
 
 @dataclass(slots=True)
@@ -108,9 +120,7 @@ def run_study(workspace: Workspace, study_path: Path, progress: Progress) -> Run
         except AssayfolioError as second:
             raise MachineError(f"{error}\nThe refusal could not be entered in the trail: {second}") from error
         raise
-    observed = intake.observations
-    n, k = len(observed.rows), len(observed.levels)
-    progress(Step.READ, f"{n:,} values at {k} levels from {observed.file}")
+    progress(Step.READ, _read_words(intake.observations))
     with ExitStack() as held:
         run = _allot(workspace, intake, surroundings, progress, held)
         try:
@@ -118,6 +128,12 @@ def run_study(workspace: Workspace, study_path: Path, progress: Progress) -> Run
             return _seal_completed(run, findings)
         except BaseException as error:
             raise _seal_failed(run, error) from error
+
+
+def _read_words(observations: tuple[Observations, ...]) -> str:
+    first, count = observations[0], len(observations)
+    of_each = "" if count == 1 else f" of each of {count} responses"
+    return f"{len(first.rows):,} values{of_each} at {len(first.levels)} levels from {first.file}"
 
 
 def _refuse(workspace: Workspace, study_path: Path, seen: SeenFiles, error: AssayfolioError) -> None:
@@ -175,6 +191,7 @@ def _compute_and_render(run: _Run) -> Findings:
     run.progress(Step.SELF_CHECK, checked)
 
     findings = evaluate(run.intake.study, run.intake.observations)
+    _take_second_route(run, findings)
     document = findings_bytes(findings)
     run.payload["data/findings.json"] = document
     run.record["findings_sha256"] = sha256_hex(document)
@@ -190,6 +207,13 @@ def _compute_and_render(run: _Run) -> Findings:
     run.enter("rendered", Step.RENDER, {"report": sha256_hex(report.pdf)})
     run.progress(Step.RENDER, f"report.pdf {len(report.pdf) // 1024} kB")
     return findings
+
+
+def _take_second_route(run: _Run, findings: Findings) -> None:
+    """Recompute what is to be reported by other algorithms; how far both agree goes into the run's record."""
+    routes = second_routes(findings, run.intake.observations)
+    run.record["second_route"] = second_route_record(routes)
+    require_agreement(routes)
 
 
 def _seal_completed(run: _Run, findings: Findings) -> RunOutcome:

@@ -1,8 +1,8 @@
 """The check that a run makes of itself before it computes: certified references through the installed code.
 
-Three references that together pass through every part that a result depends on: exact sums and rounding
-(NIST StRD AtmWtAg, certified to 15 digits; data and values from NIST/ITL), the F and t tails, and the
-studentised range (values computed independently with 113-bit and 50-digit arithmetic).
+References that together pass through every part that a result depends on: exact sums and rounding (NIST StRD
+AtmWtAg, certified to 15 digits; data and values from NIST/ITL), the F and t tails, the studentised range and
+the largest difference from a reference (values computed independently with 113-bit and 50-digit arithmetic).
 """
 
 import json
@@ -15,8 +15,13 @@ from typing import Any
 from assayfolio.errors import MachineError
 from assayfolio.exact import ExactSums, Root, parse_decimal, to_double
 from assayfolio.statistics.adjustment import Tail, holm
-from assayfolio.statistics.comparisons import pair_estimates
-from assayfolio.statistics.distributions import studentized_range_isf, studentized_range_sf
+from assayfolio.statistics.distributions import (
+    many_to_one_isf,
+    many_to_one_sf,
+    studentized_range_isf,
+    studentized_range_sf,
+)
+from assayfolio.statistics.estimates import pair_estimates
 from assayfolio.statistics.oneway import OneWay, one_way
 from assayfolio.statistics.tails import f_isf, f_log10_sf, f_sf, t_isf, t_two_sided
 
@@ -28,6 +33,8 @@ FUNCTIONS: dict[str, Callable[..., Any]] = {
     "t_isf": t_isf,
     "studentized_range_sf": studentized_range_sf,
     "studentized_range_isf": studentized_range_isf,
+    "many_to_one_sf": many_to_one_sf,
+    "many_to_one_isf": many_to_one_isf,
 }
 
 
@@ -85,12 +92,19 @@ def _normalised(certified: str) -> str:
 
 
 def _check_function(case: dict[str, Any]) -> None:
-    arguments = [int(value) if value.isdigit() else float(value) for value in case["arguments"]]
+    arguments = [_argument(text) for text in case["arguments"]]
     computed = float(FUNCTIONS[case["function"]](*arguments))
     expected = float(case["value"])
     if not abs(computed - expected) <= 1e-10 * abs(expected):
         what = f"{case['function']}({', '.join(case['arguments'])})"
         raise SelfCheckError(_words(what, case["value"], computed))
+
+
+def _argument(text: str) -> int | float | list[int]:
+    """A count, a list of counts with blanks between them, or a number."""
+    if " " in text:
+        return [int(part) for part in text.split()]
+    return int(text) if text.isdigit() else float(text)
 
 
 def _check_holm() -> None:

@@ -1,22 +1,38 @@
 """How a finished run ends on the terminal: verdicts, folio, seal, what to do next."""
 
 import shlex
-from collections.abc import Mapping
+from collections.abc import Iterator, Mapping, Sequence
 from pathlib import Path
 
 from assayfolio.canonical import Json
 from assayfolio.errors import ExitCode
-from assayfolio.findings import DIFFERENCE_SHOWN, ComparisonFamily, ResponseFindings
+from assayfolio.exact import Exact, to_double
+from assayfolio.findings import (
+    DIFFERENCE_SHOWN,
+    EQUIVALENCE_SHOWN,
+    NON_INFERIORITY_SHOWN,
+    ComparisonFamily,
+    ComparisonRow,
+    CriterionFindings,
+    EquivalenceFamily,
+    EquivalenceRow,
+    PrecisionFindings,
+    ResponseFindings,
+)
 from assayfolio.workflow.run import RunOutcome
 from assayfolio.workflow.workspace import Workspace, shown_path
+
+_MOST_NAMED = 4
 
 
 def outcome_lines(outcome: RunOutcome, here: Path, command: str) -> list[str]:
     """For people who work in the folder `here` and call the program by `command`."""
     lines = [""]
     for response in outcome.findings.responses:
-        lines.extend(_verdicts(response))
-    lines.extend(f"Not reported: {item.what} - {item.reason}" for item in outcome.findings.not_reported)
+        lines.extend(f"{response.response}: {line}" for line in _verdicts(response))
+    for item in outcome.findings.not_reported:
+        of_response = f"{item.response}: " if item.response and len(outcome.findings.responses) > 1 else ""
+        lines.append(f"Not reported: {of_response}{item.what} - {item.reason}")
     near = outcome.folio.relative_to(here) if outcome.folio.is_relative_to(here) else outcome.folio
     folio = shown_path(near)
     return [
@@ -26,10 +42,18 @@ def outcome_lines(outcome: RunOutcome, here: Path, command: str) -> list[str]:
         f"Report  {folio}/data/report.pdf",
         f"Seal    {outcome.seal}",
         "",
+        *_judgement(outcome),
         "The plan was not pre-registered; every result is exploratory.",
         _standing(outcome),
         f"Verify with: {command} verify {shlex.quote(folio)}",
     ]
+
+
+def _judgement(outcome: RunOutcome) -> list[str]:
+    if outcome.exit_code == ExitCode.DONE:
+        return []
+    ends = f"this command ends with code {int(outcome.exit_code)} to say so"
+    return [f"A criterion that was set in advance is not met. The run is complete and sealed; {ends}."]
 
 
 def _standing(outcome: RunOutcome) -> str:
@@ -38,21 +62,56 @@ def _standing(outcome: RunOutcome) -> str:
     return "The report is a draft until every sign-off field on its first page carries a valid signature."
 
 
-def _verdicts(response: ResponseFindings) -> list[str]:
-    anova = response.anova
-    lines = [f"{response.response}: means of {len(response.levels)} levels: {anova.verdict}"]
-    lines.extend(f"{response.response}: {_family_verdict(family)}" for family in response.comparisons)
-    return lines
+def _verdicts(response: ResponseFindings) -> Iterator[str]:
+    yield f"means of {len(response.levels)} levels: {response.overall_verdict}"
+    for comparison in response.comparisons:
+        yield _family_verdict(comparison, DIFFERENCE_SHOWN)
+    for family in response.equivalence:
+        shown = EQUIVALENCE_SHOWN if family.claim == "equivalence" else NON_INFERIORITY_SHOWN
+        yield _family_verdict(family, shown)
+    if response.precision is not None:
+        yield _precision_line(response.precision, response.unit)
+    yield from (_criterion_line(criterion) for criterion in response.criteria)
 
 
-def _family_verdict(family: ComparisonFamily) -> str:
-    shown = [row.label for row in family.rows if row.verdict == DIFFERENCE_SHOWN]
-    if family.family_size == 1:
-        return f"{family.name}: {family.rows[0].verdict}"
-    if not shown:
-        return f"{family.name}: difference not shown in any of {family.family_size}"
-    named = ", ".join(shown) if len(shown) <= 4 else f"{', '.join(shown[:4])} and {len(shown) - 4} more"
-    return f"{family.name}: difference shown in {len(shown)} of {family.family_size} ({named})"
+def _family_verdict(family: ComparisonFamily | EquivalenceFamily, shown: str) -> str:
+    rows: Sequence[ComparisonRow | EquivalenceRow] = family.rows
+    named = [row.label for row in rows if row.verdict == shown]
+    if len(rows) == 1:
+        return f"{family.name}: {rows[0].verdict}"
+    what = shown.removesuffix(" shown")
+    if not named:
+        return f"{family.name}: {what} not shown in any of {len(rows)}"
+    listed = ", ".join(named[:_MOST_NAMED])
+    more = f" and {len(named) - _MOST_NAMED} more" if len(named) > _MOST_NAMED else ""
+    return f"{family.name}: {what} shown in {len(named)} of {len(rows)} ({listed}{more})"
+
+
+def _precision_line(found: PrecisionFindings, unit: str | None) -> str:
+    parts = [f"repeatability {_sd(found.repeatability_sd, found.repeatability_rsd, unit)}"]
+    if found.between_sd is not None:
+        parts.append(f"between levels {_sd(found.between_sd, found.between_rsd, unit)}")
+    if found.total_sd is not None:
+        parts.append(f"{found.total_name} {_sd(found.total_sd, found.total_rsd, unit)}")
+    return f"precision, standard deviations: {', '.join(parts)}"
+
+
+def _sd(sd: Exact, relative: Exact | None, unit: str | None) -> str:
+    percent = "" if relative is None else f" ({to_double(relative):.3g} %)"
+    return f"{_quantity(sd, unit)}{percent}"
+
+
+def _criterion_line(criterion: CriterionFindings) -> str:
+    of_level = f" of {criterion.level}" if criterion.level else ""
+    value = "" if criterion.value is None else f" {_quantity(criterion.value, criterion.unit)}"
+    limit = _quantity(criterion.limit, criterion.unit)
+    words = f"{criterion.quantity}{of_level}{value}, planned {criterion.relation} {limit}"
+    return f"{words}: {criterion.verdict}"
+
+
+def _quantity(value: Exact, unit: str | None) -> str:
+    number = f"{to_double(value):.6g}"
+    return number if unit is None else f"{number} {unit}"
 
 
 def outcome_document(workspace: Workspace, outcome: RunOutcome) -> Mapping[str, Json]:
@@ -61,25 +120,39 @@ def outcome_document(workspace: Workspace, outcome: RunOutcome) -> Mapping[str, 
     return {
         "run": outcome.subject,
         "outcome": "completed",
-        "exit_code": int(ExitCode.DONE),
+        "exit_code": int(outcome.exit_code),
         "folio": folio,
         "report": f"{folio}/data/report.pdf",
         "findings": f"{folio}/data/findings.json",
         "seal": outcome.seal,
         "verdicts": {
             response.response: {
-                "means": response.anova.verdict,
-                "comparisons": [
-                    {
-                        "name": family.name,
-                        "rows": [{"label": row.label, "verdict": row.verdict} for row in family.rows],
-                    }
-                    for family in response.comparisons
-                ],
+                "means": response.overall_verdict,
+                "comparisons": [_family_document(family) for family in response.comparisons],
+                "equivalence": [_family_document(family) for family in response.equivalence],
+                "criteria": [_criterion_document(criterion) for criterion in response.criteria],
             }
             for response in outcome.findings.responses
         },
         "not_reported": [
-            {"what": item.what, "reason": item.reason} for item in outcome.findings.not_reported
+            {"what": item.what, "reason": item.reason, "response": item.response}
+            for item in outcome.findings.not_reported
         ],
+    }
+
+
+def _family_document(family: ComparisonFamily | EquivalenceFamily) -> Mapping[str, Json]:
+    rows: Sequence[ComparisonRow | EquivalenceRow] = family.rows
+    return {"name": family.name, "rows": [{"label": row.label, "verdict": row.verdict} for row in rows]}
+
+
+def _criterion_document(criterion: CriterionFindings) -> Mapping[str, Json]:
+    return {
+        "quantity": criterion.quantity,
+        "level": criterion.level,
+        "value": None if criterion.value is None else to_double(criterion.value),
+        "relation": criterion.relation,
+        "limit": to_double(criterion.limit),
+        "unit": criterion.unit,
+        "verdict": criterion.verdict,
     }

@@ -1,0 +1,44 @@
+"""What one response brings to the evaluation: its values by level, and their analysis of variance."""
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+
+from assayfolio.exact import Decimal10, ExactSums
+from assayfolio.findings import NotReported
+from assayfolio.observations.values import Observation, Observations
+from assayfolio.statistics.oneway import OneWay, one_way
+
+Groups = tuple[tuple[str, tuple[Decimal10, ...]], ...]
+
+
+@dataclass(frozen=True, slots=True)
+class Subject:
+    """One response: `rows` holds the observations of each level, `groups` their values; levels as planned."""
+
+    response: str
+    unit: str | None
+    rows: tuple[tuple[str, tuple[Observation, ...]], ...]
+    groups: Groups
+    analysis: OneWay
+
+    def unreported(self, what: str, reason: object) -> NotReported:
+        """The entry that says why `what` cannot be given for this response."""
+        return NotReported(what, str(reason), self.response)
+
+
+def subject_of(observations: Observations, unit: str | None) -> Subject:
+    """The subject that `observations` are about."""
+    by_level: dict[str, list[Observation]] = {level: [] for level in observations.levels}
+    for row in observations.rows:
+        by_level[row.level].append(row)
+    groups = tuple((level, tuple(row.value for row in rows)) for level, rows in by_level.items())
+    return Subject(
+        response=observations.response,
+        unit=unit,
+        rows=tuple((level, tuple(rows)) for level, rows in by_level.items()),
+        groups=groups,
+        analysis=one_way([(level, ExactSums.of(values)) for level, values in groups]),
+    )
+
+
+Subjects = Sequence[Subject]

@@ -1,0 +1,1 @@
+"""What a plan can show: power, sample size, detectable difference; from the plan alone."""

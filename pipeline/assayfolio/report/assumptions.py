@@ -1,0 +1,122 @@
+"""The checks of the assumptions, and the residuals for the eye."""
+
+from assayfolio.findings import CheckFindings
+from assayfolio.report.basis import Basis
+from assayfolio.report.content import Block, FigureBlock, Paragraph, Section, TableBlock
+from assayfolio.report.diagnostics import normal_plot, residual_plots
+from assayfolio.report.figures import MOST_DOTS
+from assayfolio.report.notation import degrees_of_freedom, probability, statistic
+from assayfolio.report.numbering import Numbering, Part
+from assayfolio.report.prose import Prose, Words, prose
+from assayfolio.report.tables import Column, Table, lay_out
+from assayfolio.report.wording import BLANK, alpha_words, typographic
+
+_SYMBOLS = (
+    ("Brown-Forsythe", "*F*"),
+    ("Levene", "*F*"),
+    ("Bartlett", "*χ*²"),
+    ("Cochran", "*C*"),
+    ("Shapiro-Wilk", "*W*"),
+    ("Anderson-Darling", "*A*²"),
+)
+
+
+def checks_section(basis: Basis, numbering: Numbering, accent: str) -> Section:
+    """What the planned checks found, and the residuals for the eye."""
+    place = basis.place(Part.CHECKS)
+    variances = "a variance of its own at each level" if basis.is_separate else "one variance at all levels"
+    blocks: list[Block] = [
+        Paragraph(
+            prose(
+                f"The analysis assumes independent values, {variances}, and errors that are "
+                "close to normal. The checks inform; they never choose the analysis. A check that shows "
+                "nothing does not show that an assumption holds. No check can see how the measurements were "
+                "made: independence rests on how they were ordered and prepared."
+            )
+        )
+    ]
+    if basis.response.checks:
+        blocks.append(TableBlock(_check_table(basis, numbering)))
+    else:
+        blocks.append(Paragraph(prose("No tests of assumptions were planned.")))
+    if not basis.response.anova.within.ss:
+        blocks.append(Paragraph(prose("All residuals are zero, so there is nothing to plot.")))
+    else:
+        blocks += _residual_figures(basis, numbering, accent)
+    return Section(place.anchor, place.number, basis.title("Checks of the assumptions"), tuple(blocks))
+
+
+def symbol_of(check: CheckFindings) -> Prose:
+    """The symbol of a check's statistic: by its name, else F on two degrees of freedom and t on one."""
+    for name, symbol in _SYMBOLS:
+        if name in check.name:
+            return prose(symbol)
+    count = len(check.df or ())
+    return prose({1: "*t*", 2: "*F*"}.get(count, BLANK))
+
+
+def _check_table(basis: Basis, numbering: Numbering) -> Table:
+    columns = [
+        Column("Check", kind="text"),
+        Column("Statistic", kind="words"),
+        Column("Value"),
+        Column("Degrees of freedom", kind="words"),
+        Column(prose("*p*")),
+        Column("Reading", kind="text"),
+    ]
+    return lay_out(
+        numbering.table(),
+        prose("Checks of the assumptions, read at level {alpha}.", alpha=alpha_words(basis)),
+        columns,
+        [_check_row(basis, check) for check in basis.response.checks],
+    )
+
+
+def _check_row(basis: Basis, check: CheckFindings) -> list[Words]:
+    return [
+        typographic(check.name),
+        BLANK if check.statistic is None else symbol_of(check),
+        BLANK if check.statistic is None else statistic(check.statistic),
+        BLANK if check.df is None else " and ".join(degrees_of_freedom(df) for df in check.df),
+        BLANK if check.p is None else probability(check.p, basis.response.alpha),
+        check.note.split("; the check informs")[0],
+    ]
+
+
+def _residual_figures(basis: Basis, numbering: Numbering, accent: str) -> list[Block]:
+    order, against = residual_plots(basis)
+    many = basis.total > MOST_DOTS
+    how = " Shaded squares: the darker, the more values." if many else ""
+    by_order = "measuring order" if basis.measuring_order is not None else "order of the file"
+    figures: list[Block] = [
+        FigureBlock(
+            numbering.figure(),
+            (order, against),
+            prose(
+                "Residuals (value minus the mean of its level), {total} in all. Left: in the {by_order}"
+                "; a drift or steps would speak against independence. Right: against the mean of the "
+                "level; a widening spread would speak against one variance." + how,
+                total=str(basis.total),
+                by_order=by_order,
+            ),
+        )
+    ]
+    normal = normal_plot(basis, accent)
+    if normal is not None:
+        figures.append(
+            FigureBlock(
+                numbering.figure(),
+                (normal,),
+                prose(
+                    "Normal plot of the residuals, {total} in all. The line is a normal distribution with "
+                    "mean zero and the residuals’ own root mean square. The grey area is the pointwise "
+                    "{confidence} envelope of an order statistic (Chambers and others, 1983); it treats "
+                    "residuals as independent, which they nearly are. Points that leave it in a curve speak "
+                    "against normal errors; a single point at its edge says "
+                    "little." + (" Only part of the points is drawn between the ends." if many else ""),
+                    total=str(basis.total),
+                    confidence=basis.confidence,
+                ),
+            )
+        )
+    return figures
