@@ -17,7 +17,9 @@ LAYERS = (
     {"exact", "canonical", "characters"},
     {"statistics", "study"},
     {"observations"},
-    {"findings", "fit", "method_names"},
+    {"worksheet"},
+    {"findings_intake", "fit", "method_names"},
+    {"findings"},
     {"findings_parts"},
     {"findings_document", "planning"},
     {"evaluation"},
@@ -29,7 +31,7 @@ LAYERS = (
 RANK = {unit: rank for rank, units in enumerate(LAYERS) for unit in units}
 
 # These take a noticeable part of a second to import, so they are imported where they are used.
-HEAVY = ("weasyprint", "pandas", "scipy.stats", "pyarrow", "pydyf", "fontTools")
+HEAVY = ("weasyprint", "pandas", "scipy.stats", "pyarrow", "openpyxl", "pydyf", "fontTools")
 
 # Clock, user, environment, disk and chance: what is the same for the same input reads none of them.
 EDGE_UNITS = {"evidence", "workflow", "cli", "__main__"}

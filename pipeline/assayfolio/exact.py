@@ -1,15 +1,16 @@
 """Decimals as integers, exact sums, and correctly rounded results.
 
-A laboratory records decimals. Here they stay what was typed: an integer and a power of ten. Sums are sums
-of integers, so their order does not matter and partial sums merge to the same value. A result is a rational
-number or the square root of one; it is rounded once, when it becomes a double or a printed figure.
+A laboratory records decimals. Here they stay what was typed: an integer and a power of ten. What is formed of
+them exactly before the analysis (the mean of three repeats, a value times 1/28) has a divisor beside. Sums
+are sums of integers, so their order does not matter and partial sums merge to the same value. A result is a
+rational number or the square root of one; it is rounded once, when it becomes a double or a printed figure.
 """
 
 import re
-from collections.abc import Iterable
+from collections.abc import Iterable, Sequence
 from dataclasses import dataclass
 from fractions import Fraction
-from math import isqrt
+from math import isqrt, lcm
 
 MAX_DIGITS = 38
 MAX_EXPONENT = 60
@@ -32,22 +33,55 @@ class NotADecimalError(ValueError):
 
 @dataclass(frozen=True, slots=True)
 class Decimal10:
-    """`mantissa` times ten to the power `exponent`, exactly as typed (1.50 is 150 and -2)."""
+    """`mantissa` times ten to the power `exponent`, exactly as typed (1.50 is 150 and -2), over `divisor`.
+
+    The divisor, one or more, is 1 for every number that was typed. It is not cancelled against the mantissa:
+    the mean of 1.2 and 1.4 is 26, -1 and 2, so that `places` stays that of the record.
+    """
 
     mantissa: int
     exponent: int
+    divisor: int = 1
 
     @property
     def fraction(self) -> Fraction:
         """The value as a rational number."""
         if self.exponent >= 0:
-            return Fraction(self.mantissa * 10**self.exponent)
-        return Fraction(self.mantissa, 10**-self.exponent)
+            return Fraction(self.mantissa * 10**self.exponent, self.divisor)
+        return Fraction(self.mantissa, 10**-self.exponent * self.divisor)
 
     @property
     def places(self) -> int:
         """How many decimal places were recorded."""
         return max(0, -self.exponent)
+
+    def times(self, factor: Fraction) -> "Decimal10":
+        """The value times `factor`, exactly; powers of ten in the factor move the decimal point."""
+        up, over = _without(10, factor.numerator)
+        down, under = _without(10, factor.denominator)
+        return Decimal10(self.mantissa * over, self.exponent + up - down, self.divisor * under)
+
+
+def in_one_unit(values: Iterable[Decimal10]) -> tuple[list[int], int, int]:
+    """`values` as whole numbers of one unit, ten to the power `exponent` over `divisor`: (numbers, both).
+
+    The unit is the largest that follows from the exponents and divisors of all of them; 1 for no values.
+    """
+    listed = list(values)
+    exponent = min((value.exponent for value in listed), default=0)
+    divisor = lcm(*{value.divisor for value in listed})
+    if divisor == 1:
+        return [value.mantissa * 10 ** (value.exponent - exponent) for value in listed], exponent, 1
+    numbers = [
+        value.mantissa * 10 ** (value.exponent - exponent) * (divisor // value.divisor) for value in listed
+    ]
+    return numbers, exponent, divisor
+
+
+def exact_mean(values: Sequence[Decimal10]) -> Decimal10:
+    """The mean of one or more decimals, exactly, with the decimal places of the finest of them."""
+    numbers, exponent, divisor = in_one_unit(values)
+    return Decimal10(sum(numbers), exponent, divisor * len(numbers))
 
 
 def parse_decimal(text: str, decimal_mark: str = ".") -> Decimal10:
@@ -102,58 +136,86 @@ def _why_not(text: str, decimal_mark: str) -> str:
 class ExactSums:
     """n, sum and sum of squares of decimals, exactly.
 
-    `total` counts units of ten to the power `exponent`, `squares` units of its square.
+    `total` counts units of ten to the power `exponent` over `divisor`, `squares` units of its square.
     """
 
     n: int
     total: int
     squares: int
     exponent: int
+    divisor: int = 1
 
     @staticmethod
     def of(values: Iterable[Decimal10]) -> "ExactSums":
         """The exact sums of `values`."""
-        listed = list(values)
-        exponent = min((value.exponent for value in listed), default=0)
-        total = squares = 0
-        for value in listed:
-            units = value.mantissa * 10 ** (value.exponent - exponent)
-            total += units
-            squares += units * units
-        return ExactSums(len(listed), total, squares, exponent)
+        numbers, exponent, divisor = in_one_unit(values)
+        squares = sum(number * number for number in numbers)
+        return ExactSums(len(numbers), sum(numbers), squares, exponent, divisor)
 
     def merged(self, other: "ExactSums") -> "ExactSums":
         """The exact sums of both parts together; any order of merging gives the same value."""
-        if not self.n or not other.n:  # a part without values has no exponent of its own
+        if not self.n or not other.n:  # a part without values has no unit of its own
             return self if self.n else other
         exponent = min(self.exponent, other.exponent)
-        a, b = 10 ** (self.exponent - exponent), 10 ** (other.exponent - exponent)
+        divisor = lcm(self.divisor, other.divisor)
+        a = 10 ** (self.exponent - exponent) * (divisor // self.divisor)
+        b = 10 ** (other.exponent - exponent) * (divisor // other.divisor)
         return ExactSums(
             self.n + other.n,
             self.total * a + other.total * b,
             self.squares * a * a + other.squares * b * b,
             exponent,
+            divisor,
         )
 
     @property
     def sum(self) -> Fraction:
         """The sum of the values."""
-        return Decimal10(self.total, self.exponent).fraction
+        return Decimal10(self.total, self.exponent, self.divisor).fraction
 
     @property
     def sum_of_squares(self) -> Fraction:
         """The sum of the squared values."""
-        return Decimal10(self.squares, 2 * self.exponent).fraction
+        return Decimal10(self.squares, 2 * self.exponent, self.divisor**2).fraction
 
     @property
     def sum_text(self) -> str:
-        """The sum as an exact decimal, without needless zeros."""
-        return _plain_text(self.total, self.exponent)
+        """The sum as an exact decimal without needless zeros, or "p/q" where no decimal is exact."""
+        return exact_text(Decimal10(self.total, self.exponent, self.divisor))
 
     @property
     def sum_of_squares_text(self) -> str:
-        """The sum of squares as an exact decimal, without needless zeros."""
-        return _plain_text(self.squares, 2 * self.exponent)
+        """The sum of squares as an exact decimal without needless zeros, or "p/q" where none is exact."""
+        return exact_text(Decimal10(self.squares, 2 * self.exponent, self.divisor**2))
+
+
+def decimal_of(value: Fraction) -> Decimal10:
+    """`value` with as few decimal places as it needs; as a whole number over a divisor where none suffice."""
+    twos, rest = _without(2, value.denominator)
+    fives, rest = _without(5, rest)
+    places = max(twos, fives)
+    if rest != 1:
+        return Decimal10(value.numerator, 0, value.denominator)
+    return Decimal10(int(value * 10**places), -places)
+
+
+def exact_text(value: Decimal10) -> str:
+    """`value` as an exact decimal without needless zeros, or "p/q" in lowest terms where none is exact."""
+    if value.divisor == 1:
+        return _plain_text(value.mantissa, value.exponent)
+    reduced = decimal_of(value.fraction)
+    if reduced.divisor == 1:
+        return _plain_text(reduced.mantissa, reduced.exponent)
+    return f"{reduced.mantissa}/{reduced.divisor}"
+
+
+def _without(base: int, number: int) -> tuple[int, int]:
+    """How often `base` divides `number`, and what is left of it; never for zero."""
+    power = 0
+    while number and number % base == 0:
+        number //= base
+        power += 1
+    return power, number
 
 
 def _plain_text(mantissa: int, exponent: int) -> str:

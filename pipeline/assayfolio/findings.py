@@ -9,6 +9,7 @@ from dataclasses import dataclass
 from fractions import Fraction
 
 from assayfolio.exact import Exact, ExactSums, Root
+from assayfolio.findings_intake import CensoringFindings, Deviation, ExclusionFindings, FlowFindings
 
 DIFFERENCE_SHOWN = "difference shown"
 DIFFERENCE_NOT_SHOWN = "difference not shown"
@@ -255,7 +256,8 @@ class OutlierFindings:
     """One outlier test on one level: what it proposes to look into; nothing is removed.
 
     `test` is the word of the plan. `lines` and `values` are the values in question with their lines in the
-    data file, empty where the test is about the level's variance. `p` is a bound, never too small. Statistic,
+    data file (that of the first repeat for a mean), empty where the test is about the level's variance;
+    `files` names the file of each where the study has several. `p` is a bound, never too small. Statistic,
     limits and p are None where the test is not assessable; `note` says why, and `level` is empty where that
     is so of all levels.
     """
@@ -270,6 +272,7 @@ class OutlierFindings:
     verdict: str
     note: str
     p: float | None = None
+    files: tuple[str, ...] = ()
 
 
 @dataclass(frozen=True, slots=True)
@@ -388,7 +391,9 @@ class ResponseFindings:
     """All findings on one response. `comparisons` and `equivalence` keep the order of the plan.
 
     `omnibus` names the overall test that was planned (f, welch, brown-forsythe), whose verdict answers the
-    overall question.
+    overall question. `without_exclusions` is the whole analysis as if nothing had been excluded, None where
+    nothing was; within it `flow`, `censoring` and itself are absent. `censoring` is None where no value lies
+    beyond a limit.
     """
 
     response: str
@@ -407,20 +412,34 @@ class ResponseFindings:
     outliers: tuple[OutlierFindings, ...] = ()
     precision: PrecisionFindings | None = None
     criteria: tuple[CriterionFindings, ...] = ()
+    flow: tuple[FlowFindings, ...] = ()
+    censoring: CensoringFindings | None = None
+    without_exclusions: "ResponseFindings | None" = None
+
+    @property
+    def overall_test(self) -> AnovaFindings | WelchFindings | BrownForsytheMeansFindings | None:
+        """The overall test that was planned; None where it could not be formed."""
+        if self.omnibus == "welch":
+            return self.welch
+        return self.anova if self.omnibus == "f" else self.brown_forsythe_means
 
     @property
     def overall_verdict(self) -> str:
         """The answer to the overall question: the verdict of the overall test that was planned."""
-        tests = {"f": self.anova, "welch": self.welch, "brown-forsythe": self.brown_forsythe_means}
-        planned = tests[self.omnibus]
+        planned = self.overall_test
         return NOT_ASSESSABLE if planned is None else planned.verdict
 
 
 @dataclass(frozen=True, slots=True)
 class Findings:
-    """The findings of a study: one entry a response, the power of the plan, what could not be reported."""
+    """The findings of a study: one entry a response, the power of the plan, what could not be reported.
+
+    `exclusions` are in the order of the responses and of the files.
+    """
 
     study: str
     responses: tuple[ResponseFindings, ...]
     not_reported: tuple[NotReported, ...] = ()
     power: PowerFindings | None = None
+    exclusions: tuple[ExclusionFindings, ...] = ()
+    deviations: tuple[Deviation, ...] = ()

@@ -20,9 +20,13 @@ from assayfolio.findings import (
     WelchFindings,
 )
 from assayfolio.findings_parts import (
+    censoring_part,
     check_part,
     criterion_part,
+    deviation_part,
     equivalence_part,
+    exclusion_part,
+    flow_part,
     interval_of,
     number_of,
     outlier_part,
@@ -45,8 +49,8 @@ def findings_document(findings: Findings) -> Mapping[str, Json]:
         "format": FORMAT,
         "study": findings.study,
         "responses": {response.response: _response(response) for response in findings.responses},
-        "exclusions": [],
-        "deviations": [],
+        "exclusions": [exclusion_part(exclusion) for exclusion in findings.exclusions],
+        "deviations": [deviation_part(deviation) for deviation in findings.deviations],
         "not_reported": [
             {"what": item.what, "reason": item.reason, "response": item.response}
             for item in findings.not_reported
@@ -80,6 +84,9 @@ def _response(found: ResponseFindings) -> Mapping[str, Json]:
     _put_all(document, "outliers", found.outliers, outlier_part)
     _put(document, "precision", found.precision, precision_part)
     _put_all(document, "criteria", found.criteria, criterion_part)
+    _put_all(document, "flow", found.flow, flow_part)
+    _put(document, "censoring", found.censoring, censoring_part)
+    _put(document, "without_exclusions", found.without_exclusions, _response)
     return document
 
 

@@ -1,4 +1,4 @@
-"""Parts of the document `findings.json` beside the tests of means: equivalence, precision and more."""
+"""Parts of the document `findings.json` beside the tests of means: intake, equivalence, precision ..."""
 
 from collections.abc import Mapping
 from fractions import Fraction
@@ -15,6 +15,13 @@ from assayfolio.findings import (
     PrecisionFindings,
     SpreadFindings,
 )
+from assayfolio.findings_intake import (
+    CensoringFindings,
+    Deviation,
+    ExclusionFindings,
+    FlowFindings,
+    PolicyFindings,
+)
 
 
 def number_of(value: Exact | float | int | None) -> float | int | None:
@@ -27,6 +34,94 @@ def number_of(value: Exact | float | int | None) -> float | int | None:
 def interval_of(interval: Interval | None) -> Json:
     """An interval as a list of its two ends; null for an open end and for no interval."""
     return None if interval is None else [interval[0], interval[1]]
+
+
+def flow_part(counts: FlowFindings) -> Mapping[str, Json]:
+    """The counts of one level from received to analysed."""
+    return {
+        "level": counts.level,
+        "received": counts.received,
+        "missing": counts.missing,
+        "below_limit": counts.below_limit,
+        "above_limit": counts.above_limit,
+        "excluded": counts.excluded,
+        "merged": counts.merged,
+        "analysed": counts.analysed,
+    }
+
+
+def exclusion_part(found: ExclusionFindings) -> Mapping[str, Json]:
+    """One value that a person left out."""
+    return {
+        "response": found.response,
+        "file": found.file,
+        "line": found.line,
+        "level": found.level,
+        "text": found.text,
+        "value": number_of(found.value),
+        "reason": found.reason,
+        "decided_by": found.decided_by,
+        "decided_at": found.decided_at,
+        "approved_by": found.approved_by,
+    }
+
+
+def deviation_part(deviation: Deviation) -> Mapping[str, Json]:
+    """Something that was not done as planned."""
+    return {
+        "what": deviation.what,
+        "reason": deviation.reason,
+        "response": deviation.response,
+        "lines": list(deviation.lines),
+    }
+
+
+def censoring_part(found: CensoringFindings) -> Mapping[str, Json]:
+    """Values beyond a limit, and the result under each policy."""
+    return {
+        "policy": {"below_limit": found.below_limit, "above_limit": found.above_limit},
+        "below": found.below,
+        "above": found.above,
+        "levels": [
+            {
+                "level": level.level,
+                "received": level.received,
+                "below": level.below,
+                "above": level.above,
+                "below_limits": [number_of(limit) for limit in level.below_limits],
+                "above_limits": [number_of(limit) for limit in level.above_limits],
+            }
+            for level in found.levels
+        ],
+        "sensitivity": [_policy(one) for one in found.sensitivity],
+        "verdicts_agree": found.verdicts_agree,
+    }
+
+
+def _policy(found: PolicyFindings) -> Mapping[str, Json]:
+    return {
+        "policy": found.policy,
+        "planned": found.planned,
+        "levels": [{"level": level, "n": n, "mean": number_of(mean)} for level, n, mean in found.levels],
+        "p": found.p,
+        "p_adjusted": found.p_adjusted,
+        "verdict": found.verdict,
+        "comparisons": [
+            {
+                "name": family.name,
+                "rows": [
+                    {
+                        "label": row.label,
+                        "estimate": number_of(row.estimate),
+                        "p_adjusted": row.p_adjusted,
+                        "verdict": row.verdict,
+                    }
+                    for row in family.rows
+                ],
+            }
+            for family in found.comparisons
+        ],
+    }
 
 
 def equivalence_part(family: EquivalenceFamily) -> Mapping[str, Json]:
@@ -100,8 +195,11 @@ def check_part(check: CheckFindings) -> Mapping[str, Json]:
 
 
 def outlier_part(found: OutlierFindings) -> Mapping[str, Json]:
-    """One outlier test on one level; `line` and `value` are the first of `lines` and `values`."""
-    return {
+    """One outlier test on one level; `line` and `value` are the first of `lines` and `values`.
+
+    `files` is there where the study has several data files.
+    """
+    document: dict[str, Json] = {
         "test": found.test,
         "level": found.level or None,
         "line": found.lines[0] if found.lines else None,
@@ -115,6 +213,9 @@ def outlier_part(found: OutlierFindings) -> Mapping[str, Json]:
         "verdict": found.verdict,
         "note": found.note,
     }
+    if found.files:
+        document["files"] = list(found.files)
+    return document
 
 
 def precision_part(found: PrecisionFindings) -> Mapping[str, Json]:

@@ -3,7 +3,7 @@
 from collections.abc import Iterator, Sequence
 
 from assayfolio.errors import DataError, Fault, Place
-from assayfolio.observations.values import Observations
+from assayfolio.observations.values import CountFlow, Observations
 from assayfolio.study.labels import shared_label
 from assayfolio.study.plan import (
     AgainstReference,
@@ -20,14 +20,15 @@ from assayfolio.study.scores import trend_misfits
 def check_fit(study: StudyDefinition, observations: Sequence[Observations]) -> None:
     """Raise DataError with all reasons why `study` cannot be applied to `observations`, one set a response.
 
-    Fewer than two levels, one value at every level (nothing from which the error could be estimated), levels
-    that are named in the plan and absent from the data, trends over levels that have no number each, and
-    levels of which two pairs would bear the same label. All responses stand in the same rows, so that the
-    levels of the first are those of all.
+    Fewer than two levels, levels without any value left, one value at every level (nothing from which the
+    error could be estimated), levels that are named in the plan and absent from the data, trends over levels
+    that have no number each, and levels of which two pairs would bear the same label. All responses stand in
+    the same rows, so that the levels of the first are those of all; what is left of them is looked at
+    response by response.
     """
     observed = observations[0]
     faults = [
-        *_layout_faults(observed),
+        *dict.fromkeys(fault for one in observations for fault in _layout_faults(one)),
         *_absent_levels(study, observed.levels),
         *_trend_faults(study, observed.levels),
         *_label_faults(study, observed),
@@ -42,9 +43,24 @@ def _layout_faults(observed: Observations) -> Iterator[Fault]:
         names = ", ".join(observed.levels)
         found = f"the data have one level only ({names})"
         yield Fault(place, found, "a comparison needs at least two; check the factor column")
-    elif len(observed.rows) == len(observed.levels):
+        return
+    empty = [counts for counts in observed.flow if not counts.analysed]
+    for counts in empty:
+        found = f"no value of {observed.response!r} is left at level {counts.level!r}: {_left_out(counts)}"
+        yield Fault(place, found, "an analysis needs a value at every level")
+    if not empty and len(observed.rows) == len(observed.levels):
         found = "one value at every level: nothing varies within the levels, so no error can be estimated"
         yield Fault(place, found, "at least one level needs two or more values")
+
+
+def _left_out(counts: CountFlow) -> str:
+    causes = (
+        (counts.missing, "missing"),
+        (counts.below_limit, "below a limit"),
+        (counts.above_limit, "above a limit"),
+        (counts.excluded, "excluded"),
+    )
+    return ", ".join(f"{number} {cause}" for number, cause in causes if number)
 
 
 def _absent_levels(study: StudyDefinition, levels: tuple[str, ...]) -> Iterator[Fault]:

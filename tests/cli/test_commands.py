@@ -10,7 +10,7 @@ import pytest
 from assayfolio.version import VERSION
 from support.workspaces import Bench, command, process
 
-COMMANDS = ("workspace", "check", "power", "run", "verify", "trail")
+COMMANDS = ("workspace", "check", "power", "worksheet", "run", "verify", "trail")
 
 
 def test_help_lists_the_commands_that_work_and_no_others():
@@ -47,7 +47,7 @@ def test_a_wrong_command_line_ends_with_2(arguments):
 
 def test_help_and_check_load_nothing_heavy(tmp_path):
     bench = Bench(tmp_path / "w")
-    heavy = ("weasyprint", "pandas", "scipy", "pyarrow", "jinja2")
+    heavy = ("weasyprint", "pandas", "scipy", "pyarrow", "openpyxl", "jinja2")
     for arguments in (["--help"], ["check", str(bench.study)]):
         code = (
             "import sys; from assayfolio.cli.outcome import run_command; "

@@ -50,18 +50,40 @@ POWER_ROW = {
 }
 PARTS = {
     "pooled": {
-        *("unit", "alpha", "omnibus", "levels", "anova", "effect", "comparisons", "equivalence"),
+        *("unit", "alpha", "omnibus", "flow", "levels", "anova", "effect", "comparisons", "equivalence"),
         *("spread", "checks", "outliers", "precision", "criteria"),
     },
     "holm over the responses": {
-        *("unit", "alpha", "omnibus", "levels", "anova", "effect", "comparisons", "equivalence", "checks"),
+        *(
+            "unit",
+            "alpha",
+            "omnibus",
+            "flow",
+            "levels",
+            "anova",
+            "effect",
+            "comparisons",
+            "equivalence",
+            "checks",
+        ),
     },
     "separate variances": {
-        *("unit", "alpha", "omnibus", "levels", "anova", "effect", "welch", "brown_forsythe_means"),
+        *("unit", "alpha", "omnibus", "flow", "levels", "anova", "effect", "welch", "brown_forsythe_means"),
         *("comparisons", "equivalence", "spread", "checks", "outliers", "criteria"),
     },
     "random levels": {
-        *("unit", "alpha", "omnibus", "levels", "anova", "checks", "outliers", "precision", "criteria"),
+        *(
+            "unit",
+            "alpha",
+            "omnibus",
+            "flow",
+            "levels",
+            "anova",
+            "checks",
+            "outliers",
+            "precision",
+            "criteria",
+        ),
     },
 }
 PARTS["bonferroni over the responses"] = PARTS["pooled"]

@@ -13,7 +13,7 @@ from support.reference import square_root
 from support.studies import demo_study, findings_of
 
 TOP = {"format", "study", "responses", "exclusions", "deviations", "not_reported"}
-RESPONSE = {"unit", "alpha", "omnibus", "levels", "anova", "effect", "comparisons", "checks"}
+RESPONSE = {"unit", "alpha", "omnibus", "flow", "levels", "anova", "effect", "comparisons", "checks"}
 LEVEL = {"level", "n", "mean", "sd", "sd_ci", "min", "max", "ci", "sums"}
 SUMS = {"n", "sum", "sum_of_squares"}
 ANOVA = {

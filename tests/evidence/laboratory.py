@@ -22,6 +22,7 @@ from assayfolio.evidence.history import (
     trail_extract,
 )
 from assayfolio.evidence.locks import is_locked
+from assayfolio.evidence.register import inputs_details, read_register, received_details
 from assayfolio.evidence.trail import TrailWriter, open_trail
 
 STUDY = b"study: IRON-7\ntitle: Iron in river water\n"
@@ -67,9 +68,12 @@ class Laboratory:
             lock = folio_lock(folder, name)
             lock.__enter__()
             digests = {path: sha256_hex(content) for path, (_, content) in inputs.items()}
-            entries = [
-                writer.append("allotted", subject, None, {"step": 1, "number": number, "inputs": digests})
-            ]
+            if sha256_hex(DATA) not in read_register(writer.entries).digests:
+                details = received_details("iron data.csv", len(DATA), sha256_hex(DATA), study)
+                writer.append("received", study, None, {"step": 1, **details})
+            details = inputs_details(digests, "iron.yaml", None, ["iron data.csv"])
+            entries = [writer.append("allotted", subject, None, {"step": 1, "number": number, **details})]
+            execution = read_register(writer.entries).executions(subject).number
         try:
             payload, results = self._results(subject, failing, entries)
             record = {
@@ -79,7 +83,7 @@ class Laboratory:
                 "outcome": "failed" if failing else "completed",
                 "inputs": [
                     {
-                        "role": "study" if place.endswith("yaml") else "data",
+                        "role": "study definition" if place.endswith("yaml") else "raw data",
                         "path": path,
                         "folio_path": place,
                         "size": len(content),
@@ -88,6 +92,7 @@ class Laboratory:
                     for path, (place, content) in inputs.items()
                 ],
                 "trail_head_at_start": {"seq": head.seq, "sha256": head.sha256},
+                "executions": {"number": execution},
                 **results,
             }
             payload |= dict(inputs.values())

@@ -25,7 +25,7 @@ def outcome_of(verification, number, subject=None):
 def allot(laboratory, *actions, reason=None):
     """A run that stops after these entries, as a killed process leaves it in the trail."""
     with laboratory.trail() as writer:
-        details = {"step": 1, "number": 1, "inputs": {}}
+        details = {"step": 1, "number": 1, "inputs": {}, "data": []}
         writer.append("allotted", "LEAD-1/run-0001", None, details)
         for action in actions:
             writer.append(action, "LEAD-1/run-0001", reason, {"step": 2})
@@ -51,7 +51,12 @@ def test_outcomes_come_in_the_order_of_their_numbers_and_runs(laboratory):
     outcomes = verify_workspace(laboratory.runs, None).outcomes
     trail = [f"1.{n}" for n in range(1, 7)]
     folio = [check.number for check in FOLIO_CHECKS]
-    assert [each.number for each in outcomes] == [*trail, "2.1", "2.2", "2.2", "2.3", "2.4", *folio, *folio]
+    assert [each.number for each in outcomes] == [
+        *trail,
+        *("2.1", "2.2", "2.2", "2.3", "2.4", "2.5"),
+        *folio,
+        *folio,
+    ]
     assert [each.subject for each in outcomes if each.number == "3.1"] == [
         "IRON-7/run-0001",
         "ZINC-1/run-0001",
@@ -431,10 +436,12 @@ def test_a_forged_trail_whose_details_have_odd_types_is_judged_without_stumbling
     with laboratory.trail() as writer:
         writer.append("torn-line-set-aside", "audit trail", None, {"file": ["x"], "sha256": {}})
         writer.append("allotted", "IRON-7/run-0002", None, {"number": [2], "inputs": [["x"]]})
+        writer.append("allotted", "IRON-7/run-0003", None, {"inputs": {"x": {}}, "data": ["x", ["x"]]})
+        writer.append("received", "IRON-7", None, {"path": {}, "size": True, "sha256": [], "study": 7})
         writer.append("sealed", "IRON-7/run-0002", None, {"seal": {"a": 1}, "outcome": []})
         writer.append("interrupted", "LEAD-1/run-0001", None, {"found": 7})
     verification = verify_workspace(laboratory.runs, None)
-    assert {each.number for each in verification.with_outcome("failed")} == {"2.1", "2.2", "2.4"}
+    assert {each.number for each in verification.with_outcome("failed")} == {"2.1", "2.2", "2.4", "2.5"}
     laboratory.settle()
 
 

@@ -17,6 +17,9 @@ from assayfolio.exact import (
     ExactSums,
     NotADecimalError,
     Root,
+    decimal_of,
+    exact_mean,
+    in_one_unit,
     magnitude,
     parse_decimal,
     round_significant,
@@ -30,6 +33,12 @@ decimals = st.builds(
     Decimal10,
     st.integers(-(10**MAX_DIGITS) + 1, 10**MAX_DIGITS - 1),
     st.integers(-MAX_EXPONENT, MAX_EXPONENT),
+)
+divided = st.builds(
+    Decimal10,
+    st.integers(-(10**MAX_DIGITS) + 1, 10**MAX_DIGITS - 1),
+    st.integers(-MAX_EXPONENT, MAX_EXPONENT),
+    st.integers(1, 60),
 )
 rationals = st.builds(Fraction, st.integers(-(10**40), 10**40), st.integers(1, 10**40))
 ordinary = st.builds(lambda n, d: Fraction(n, 10**d), st.integers(-(10**9), 10**9), st.integers(0, 9))
@@ -165,22 +174,23 @@ class TestParsing:
 class TestSums:
     """Sums of decimals are exact and do not depend on how they are divided and merged."""
 
-    @given(values=st.lists(decimals, max_size=12))
+    @given(values=st.lists(decimals | divided, max_size=12))
     def test_sums_are_those_of_the_rational_values(self, values: list[Decimal10]) -> None:
         sums = ExactSums.of(values)
         assert sums.n == len(values)
         assert sums.sum == sum((value.fraction for value in values), Fraction(0))
         assert sums.sum_of_squares == sum((value.fraction**2 for value in values), Fraction(0))
 
-    @given(parts=st.lists(st.lists(decimals, max_size=4), min_size=3, max_size=3))
+    @given(parts=st.lists(st.lists(decimals | divided, max_size=4), min_size=3, max_size=3))
     @example(parts=[[], [Decimal10(3, 5)], []])
+    @example(parts=[[Decimal10(1, 0, 3)], [Decimal10(1, -2, 4)], [Decimal10(3, 5)]])
     def test_any_order_of_merging_gives_the_same_value(self, parts: list[list[Decimal10]]) -> None:
         whole = ExactSums.of([value for part in parts for value in part])
         for a, b, c in permutations([ExactSums.of(part) for part in parts]):
             assert a.merged(b).merged(c) == whole
             assert a.merged(b.merged(c)) == whole
 
-    @given(values=st.lists(decimals, max_size=8))
+    @given(values=st.lists(decimals | divided, max_size=8))
     def test_the_printed_sums_are_the_exact_sums_without_needless_zeros(
         self, values: list[Decimal10]
     ) -> None:
@@ -205,6 +215,67 @@ class TestSums:
     def test_sums_by_hand(self, values: list[str], total: str, squares: str) -> None:
         sums = ExactSums.of(parse_decimal(value) for value in values)
         assert (sums.sum_text, sums.sum_of_squares_text) == (total, squares)
+
+
+class TestFormedExactly:
+    """What is formed of decimals before the analysis stays exact, and keeps the places of the record."""
+
+    @given(value=divided)
+    def test_a_divisor_divides(self, value: Decimal10) -> None:
+        assert value.fraction == Decimal10(value.mantissa, value.exponent).fraction / value.divisor
+
+    @given(values=st.lists(decimals | divided, min_size=1, max_size=6))
+    def test_a_mean_of_repeats_is_the_exact_mean(self, values: list[Decimal10]) -> None:
+        mean = exact_mean(values)
+        assert mean.fraction == sum((value.fraction for value in values), Fraction(0)) / len(values)
+        assert mean.places == max(value.places for value in values)
+
+    def test_a_mean_of_three_is_no_decimal_and_its_sum_is_printed_as_a_fraction(self) -> None:
+        mean = exact_mean([parse_decimal(text) for text in ("0.1", "0.1", "0.2")])
+        assert mean == Decimal10(4, -1, 3)
+        assert ExactSums.of([mean]).sum_text == "2/15"
+        assert ExactSums.of([mean, mean]).sum_of_squares_text == "8/225"
+
+    def test_sums_of_means_are_printed_as_decimals_where_one_is_exact(self) -> None:
+        third, quarter = Decimal10(1, 0, 3), Decimal10(1, -1, 4)
+        assert ExactSums.of([third, third, third]).sum_text == "1"
+        assert ExactSums.of([quarter]).sum_text == "0.025"
+
+    @given(value=decimals | divided, factor=rationals)
+    def test_a_value_times_a_factor_is_exact(self, value: Decimal10, factor: Fraction) -> None:
+        assert value.times(factor).fraction == value.fraction * factor
+
+    @pytest.mark.parametrize(
+        ("text", "factor", "converted"),
+        [
+            ("412", Fraction(1, 1000), Decimal10(412, -3)),
+            ("0.4120", Fraction(1000), Decimal10(4120, -1)),
+            ("1.50", Fraction(1, 3), Decimal10(150, -2, 3)),
+            ("1.5", Fraction(60), Decimal10(90, 0)),
+            ("0.00", Fraction(7, 4), Decimal10(0, -2, 4)),
+            ("2.5", Fraction(0), Decimal10(0, -1)),
+        ],
+    )
+    def test_powers_of_ten_move_the_point(self, text: str, factor: Fraction, converted: Decimal10) -> None:
+        assert parse_decimal(text).times(factor) == converted
+
+    @given(value=rationals | ordinary)
+    def test_a_rational_becomes_the_shortest_decimal_or_a_whole_number_over_a_divisor(
+        self, value: Fraction
+    ) -> None:
+        found = decimal_of(value)
+        assert found.fraction == value
+        if found.divisor == 1:
+            assert found.exponent == 0 or found.mantissa % 10
+        else:
+            assert found.exponent == 0
+            assert math.gcd(found.divisor, 10**200) < found.divisor
+
+    @given(values=st.lists(decimals | divided, max_size=8))
+    def test_numbers_of_one_unit_are_the_values(self, values: list[Decimal10]) -> None:
+        numbers, exponent, divisor = in_one_unit(values)
+        unit = Fraction(10) ** exponent / divisor
+        assert [number * unit for number in numbers] == [value.fraction for value in values]
 
 
 class TestDoubles:

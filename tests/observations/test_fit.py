@@ -20,7 +20,7 @@ def misfits(section: str, levels: tuple[str, ...] = LOTS, replicates: int = 2) -
     """Each reason why a study with `section` (from line 5 on) cannot be applied to these levels."""
     study = read_study((HEAD + section).encode(), "plan.yaml")
     rows = "".join(f"{level},{n}.5,{n}.1\n" for level in levels for n in range(replicates))
-    observations = read_all_observations(f"lot,mass,density\n{rows}".encode(), study.data, "values.csv")
+    observations = read_all_observations([("values.csv", f"lot,mass,density\n{rows}".encode())], study.data)
     try:
         check_fit(study, observations)
     except DataError as error:

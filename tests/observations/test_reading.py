@@ -38,8 +38,8 @@ def test_a_value_is_the_decimal_that_was_typed_and_knows_its_line() -> None:
 def test_the_digest_is_that_of_the_bytes_that_were_read() -> None:
     content = b"\xef\xbb\xbf" + GOOD.replace("\n", "\r\n").encode()
     observations = read(content)
-    assert observations.sha256 == hashlib.sha256(content).hexdigest()
-    assert observations.size == len(content)
+    assert observations.files[0].sha256 == hashlib.sha256(content).hexdigest()
+    assert observations.files[0].size == len(content)
 
 
 def test_the_most_decimals_of_the_file_are_known() -> None:
@@ -64,8 +64,8 @@ def test_separator_line_end_and_byte_order_mark_change_nothing(
     content = mark + GOOD.replace(",", separator).replace("\n", line_end).encode()
     observations = read(content)
     assert observations.rows == read(GOOD).rows
-    assert observations.separator == name
-    assert observations.byte_order_mark == bool(mark)
+    assert observations.files[0].separator == name
+    assert observations.files[0].byte_order_mark == bool(mark)
 
 
 @pytest.mark.parametrize("ending", ["", "\n", "\n\n \n", "\r\n\t\r\n"], ids=["none", "one", "blank", "CRLF"])
@@ -92,13 +92,13 @@ def test_quoted_cells_may_hold_separators_marks_and_line_ends() -> None:
 
 def test_a_quoted_separator_in_the_header_does_not_decide_the_separator() -> None:
     observations = read('"method";"nitrate";"a, b"\nkit-a;1;x\nkit-b;2;y\n')
-    assert observations.separator == "semicolon"
+    assert observations.files[0].separator == "semicolon"
     assert observations.extra_columns == ("a, b",)
 
 
 def test_the_separator_is_that_under_which_both_columns_are_found() -> None:
     observations = read("method;nitrate;a,b,c\nkit-a;1;x\nkit-b;2;y\n")
-    assert observations.separator == "semicolon"
+    assert observations.files[0].separator == "semicolon"
 
 
 @pytest.mark.parametrize("text", ["1,5", "-0,25", "+12", "3,e2"])
@@ -139,28 +139,28 @@ BOTH = "method,nitrite,day,nitrate\nkit-a,0.1,1,1.10\nkit-b,0.25,2,1.2\n"
 
 
 def test_every_response_has_its_values_in_the_order_of_the_plan_and_the_same_rows() -> None:
-    nitrate, nitrite = read_all_observations(BOTH.encode(), TWO, "data/nitrate.csv")
+    nitrate, nitrite = read_all_observations([("data/nitrate.csv", BOTH.encode())], TWO)
     assert (nitrate.response, nitrite.response) == ("nitrate", "nitrite")
     assert cells(nitrate) == [(2, "kit-a", "1.10"), (3, "kit-b", "1.2")]
     assert cells(nitrite) == [(2, "kit-a", "0.1"), (3, "kit-b", "0.25")]
     assert (nitrate.places, nitrite.places) == (2, 2)
     assert nitrate.levels == nitrite.levels == ("kit-a", "kit-b")
-    assert nitrate.sha256 == nitrite.sha256
+    assert nitrate.files == nitrite.files
 
 
 def test_the_column_of_another_response_is_not_one_that_is_carried_along() -> None:
-    for observations in read_all_observations(BOTH.encode(), TWO, "data/nitrate.csv"):
+    for observations in read_all_observations([("data/nitrate.csv", BOTH.encode())], TWO):
         assert observations.extra_columns == ("day",)
         assert [row.extras for row in observations.rows] == [("1",), ("2",)]
 
 
 def test_one_response_is_read_as_a_set_of_one() -> None:
-    assert read_all_observations(GOOD.encode(), PLAN, "data/nitrate.csv") == (read(GOOD),)
+    assert read_all_observations([("data/nitrate.csv", GOOD.encode())], PLAN) == (read(GOOD),)
 
 
 def test_replicates_are_counted_once_whatever_the_number_of_responses() -> None:
     plan = replace(TWO, replicates=1)
-    assert len(read_all_observations(BOTH.encode(), plan, "data/nitrate.csv")) == 2
+    assert len(read_all_observations([("data/nitrate.csv", BOTH.encode())], plan)) == 2
 
 
 ORDERED = replace(PLAN, order="position")
@@ -175,7 +175,7 @@ def test_the_measuring_order_is_kept_with_each_value_and_not_carried_along() -> 
 
 def test_both_responses_of_a_row_have_its_place_in_the_measuring_order() -> None:
     plan = replace(TWO, order="day")
-    for observations in read_all_observations(BOTH.encode(), plan, "data/nitrate.csv"):
+    for observations in read_all_observations([("data/nitrate.csv", BOTH.encode())], plan):
         assert [row.order for row in observations.rows] == [1, 2]
         assert observations.extra_columns == ()
 

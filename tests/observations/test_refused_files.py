@@ -604,7 +604,7 @@ def test_what_is_shown_of_a_cell_is_short_and_visible() -> None:
 def refused_together(content: str, plan: DataPlan = TWO) -> list[tuple[str, str]]:
     """Place and finding of every fault of a file with several responses."""
     with pytest.raises(DataError) as caught:
-        read_all_observations(content.encode(), plan, "data/nitrate.csv")
+        read_all_observations([("data/nitrate.csv", content.encode())], plan)
     return [
         (str(fault.place).removeprefix("data/nitrate.csv:"), fault.found) for fault in caught.value.faults
     ]

@@ -77,8 +77,8 @@ def test_every_way_of_writing_the_same_decimals_gives_the_same_exact_values(
         (level, text, value) for (_, level, text), (_, (_, value)) in zip(rows, table, strict=True)
     ]
     assert all(row.extras == (note,) for row in observations.rows)
-    assert observations.separator == SEPARATORS[separator]
-    assert observations.byte_order_mark == byte_order_mark
+    assert observations.files[0].separator == SEPARATORS[separator]
+    assert observations.files[0].byte_order_mark == byte_order_mark
     for level in observations.levels:
         meant = [value.fraction for at, (_, value) in table if at == level]
         sums = ExactSums.of(observations.values_of(level))

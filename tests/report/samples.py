@@ -8,7 +8,7 @@ from assayfolio.errors import Place
 from assayfolio.evaluation.apply import evaluate
 from assayfolio.exact import parse_decimal
 from assayfolio.findings_document import findings_bytes
-from assayfolio.observations.values import Observation, Observations
+from assayfolio.observations.values import Observation, Observations, RawFile
 from assayfolio.report.facts import AttachedFile, InputFacts, ReportInput, RunFacts
 from assayfolio.study.plan import (
     AgainstReference,
@@ -73,12 +73,9 @@ def observations(
         Observation(line, level, parse_decimal(values[level][place]), values[level][place])
         for line, (level, place) in enumerate(order, start=2)
     )
+    digest = hashlib.sha256(repr(rows).encode()).hexdigest()
     return Observations(
-        file="data/values.csv",
-        size=40 + 14 * len(rows),
-        sha256=hashlib.sha256(repr(rows).encode()).hexdigest(),
-        separator="comma",
-        byte_order_mark=False,
+        files=(RawFile("data/values.csv", 40 + 14 * len(rows), digest),),
         response=response,
         factor=factor,
         levels=tuple(values),
@@ -102,7 +99,7 @@ def study(
         study=name,
         title=title,
         purpose="Find out whether the methods in use give the same mean result on one homogenised sample.",
-        data=DataPlan(seen.file, (seen.response,), seen.factor, unit, levels=seen.levels),
+        data=DataPlan(seen.file, (seen.response,), seen.factor, unit=unit, levels=seen.levels),
         design=DesignPlan(),
         alpha=alpha,
         comparisons=comparisons,
@@ -122,7 +119,7 @@ def report_input(
     definition: StudyDefinition, *observed: Observations, laboratory: Laboratory = LABORATORY
 ) -> ReportInput:
     findings = evaluate(definition, observed)
-    seen = observed[0]
+    raw = observed[0].files[0]
     document = findings_bytes(findings)
     yaml = f"study: {definition.study}\ntitle: {definition.title}\n".encode()
     digest = hashlib.sha256(yaml).hexdigest()
@@ -135,9 +132,7 @@ def report_input(
         host="bench-4",
         inputs=(
             InputFacts("study definition", "configs/nitrate.yaml", "data/study.yaml", len(yaml), digest),
-            InputFacts(
-                "raw data", "configs/data/values.csv", "data/inputs/values.csv", seen.size, seen.sha256
-            ),
+            InputFacts("raw data", "configs/data/values.csv", "data/inputs/values.csv", raw.size, raw.sha256),
             InputFacts("laboratory settings", "configs/lab.yaml", "data/context/lab.yaml", 312, "5e" * 32),
         ),
         findings_sha256=hashlib.sha256(document).hexdigest(),

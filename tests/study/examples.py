@@ -111,6 +111,45 @@ spread: {against: reference, adjust: holm}
 criteria: [{quantity: level-sd, level: north, at-most: 2}]
 """
 
+RECEIVED = """\
+study: WTR-12
+title: Nitrate as four instruments sent it
+data:
+  file: [data/monday.csv, data/tuesday.txt.gz, data/late.XLSX]
+  encoding: windows-1252
+  sheet: Results
+  header-row: 4
+  layout: long
+  response: nitrate
+  factor: instrument
+  unit: mg/L
+  unit-column: unit
+  convert: {ug/L: 1/1000, g/L: 1e3}
+  order: position
+  levels: [reference, north, south]
+  replicates: {reference: 6, north: 4, south: 2}
+  replicate-unit: sample
+  missing: omit
+  missing-codes: [n.d., "-"]
+  below-limit: half-limit
+  limit-codes: {ND: 0.05, trace: 1/8}
+  above-limit: limit
+  decimal-mark: comma
+  exclusions: data/left-out.yaml
+measurement:
+  measurand: nitrate nitrogen
+  method: ISO 10304-1
+  method-version: 2007
+  item: {column: sample}
+  lot: "{column: lot}"
+  instrument: {column: instrument}
+  operator: {column: analyst}
+  measured-at: {column: date}
+  supplied-by: Invented Waters
+worksheet: {seed: 20311201, block: day, blocks: [monday, tuesday], item: WP}
+alpha: 0.05
+"""
+
 
 def study_of(text: str | bytes) -> StudyDefinition:
     """The study definition that `text` spells, read as `plan.yaml`."""
@@ -134,6 +173,11 @@ def _lines(reader: object, text: str | bytes) -> list[str]:
     except InputError as error:
         return [str(fault).removeprefix("plan.yaml:") for fault in error.faults]
     return []
+
+
+def with_data(*lines: str) -> str:
+    """The smallest definition with `lines` in `data`, from line 7 on."""
+    return edited(SMALLEST, "alpha", "".join(f"  {line}\n" for line in lines) + "alpha")
 
 
 def planned(section: str) -> str:

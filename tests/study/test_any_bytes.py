@@ -14,8 +14,8 @@ from assayfolio.study.numbers import exact_number
 from assayfolio.study.plan import Laboratory, StudyDefinition
 from assayfolio.study.reading import read_laboratory, read_study
 from assayfolio.study.suggestions import edit_distance, nearest
-from assayfolio.study.vocabulary import STUDY_KEYS
-from study.examples import FULL, SAMPLE, SEPARATE, SMALLEST
+from assayfolio.study.vocabulary import DATA_KEYS, STUDY_KEYS
+from study.examples import FULL, RECEIVED, SAMPLE, SEPARATE, SMALLEST
 
 
 def lines_of(content: bytes) -> list[str]:
@@ -67,7 +67,7 @@ def test_any_text_of_marks_gives_a_plan_or_faults_inside_the_file(text: str) -> 
 def test_a_full_plan_with_a_passage_exchanged_gives_a_plan_or_faults_inside_the_file(
     data: st.DataObject,
 ) -> None:
-    whole = data.draw(st.sampled_from([FULL, SAMPLE, SEPARATE]))
+    whole = data.draw(st.sampled_from([FULL, RECEIVED, SAMPLE, SEPARATE]))
     start = data.draw(st.integers(0, len(whole)))
     end = data.draw(st.integers(start, min(len(whole), start + 30)))
     passage = data.draw(
@@ -108,6 +108,14 @@ SCALARS = st.sampled_from(
         "x y",
         "水",
         "author",
+        "wide",
+        "omit",
+        "limit",
+        "half-limit",
+        "utf-16",
+        "v.xlsx",
+        "v*.csv",
+        "<5",
     ]
 )
 TREES = st.recursive(
@@ -142,6 +150,11 @@ TREES = st.recursive(
                     "a",
                     "b",
                     "file",
+                    "column",
+                    "item",
+                    "seed",
+                    "block",
+                    "blocks",
                 ]
             ),
             inner,
@@ -170,6 +183,18 @@ def test_any_bytes_give_settings_or_faults(content: bytes) -> None:
         assert_well_worded(refusal, content)
     else:
         assert isinstance(laboratory, Laboratory)
+
+
+DATA = st.dictionaries(st.sampled_from(DATA_KEYS), TREES, max_size=6)
+
+
+@given(DATA, st.dictionaries(st.sampled_from(["measurement", "worksheet"]), TREES))
+def test_data_of_any_kind_give_a_plan_or_faults_inside_the_file(
+    data: dict[str, Any], tree: dict[str, Any]
+) -> None:
+    columns = {"file": "v.csv", "response": "y", "factor": "f"}
+    whole = {"study": "A", "title": "t", "alpha": "0.05", **tree, "data": {**columns, **data}}
+    answer_to(json.dumps(whole, ensure_ascii=False).encode())
 
 
 LABELS = st.text(

@@ -1,62 +1,12 @@
-"""A right plan that asks for more than this version computes, or that lacks what is wanted of it."""
+"""A right plan that lacks what is wanted of it."""
 
 import pytest
 
-from assayfolio.errors import NotAvailableError, StudyError
-from assayfolio.study.availability import check_available, check_plannable, check_required
+from assayfolio.errors import StudyError
+from assayfolio.study.availability import check_plannable, check_required
 from assayfolio.study.plan import Laboratory
-from assayfolio.study.vocabulary import REQUIREMENTS
-from study.examples import FULL, SAMPLE, SEPARATE, SMALLEST, edited, planned, study_of
-
-
-def unavailable(text: str) -> list[str]:
-    try:
-        check_available(study_of(text))
-    except NotAvailableError as error:
-        return [str(fault).removeprefix("plan.yaml:") for fault in error.faults]
-    return []
-
-
-NOT_YET = "not computed by this version"
-REFUSED = {
-    "missing values passed over": (
-        edited(SMALLEST, "alpha", "  missing: omit\nalpha"),
-        (
-            f"7:3: an analysis that passes over missing values (`missing: omit`): {NOT_YET} - "
-            "use `missing: refuse` and a data file without gaps"
-        ),
-    ),
-    "values below a limit": (
-        edited(SMALLEST, "alpha", "  below-limit: half-limit\nalpha"),
-        (
-            f"7:3: an analysis of values below a limit (`below-limit` other than `refuse`): {NOT_YET} - "
-            "use `below-limit: refuse`"
-        ),
-    ),
-}
-
-
-@pytest.mark.parametrize(("text", "fault"), REFUSED.values(), ids=REFUSED.keys())
-def test_a_part_that_is_not_computed_yet_is_refused_with_its_place(text: str, fault: str) -> None:
-    assert unavailable(text) == [fault]
-
-
-BOTH = edited(SMALLEST, "alpha", "  below-limit: limit\n  missing: omit\nalpha")
-
-
-def test_all_that_is_not_computed_shows_in_one_pass_and_in_the_order_of_the_file() -> None:
-    places = [fault.partition(": ")[0] for fault in unavailable(BOTH)]
-    assert places == ["7:3", "8:3"]
-
-
-def test_the_headline_says_that_nothing_was_analysed() -> None:
-    with pytest.raises(NotAvailableError, match=r"does not compute 2 parts of it yet; nothing was analysed"):
-        check_available(study_of(BOTH))
-
-
-@pytest.mark.parametrize("text", [SMALLEST, FULL, SAMPLE, SEPARATE])
-def test_everything_else_that_can_be_planned_is_computed(text: str) -> None:
-    check_available(study_of(text))
+from assayfolio.study.vocabulary import MEASUREMENT_KEYS, REQUIREMENTS
+from study.examples import FULL, RECEIVED, SMALLEST, edited, planned, study_of
 
 
 def required(text: str, *require: str) -> list[str]:
@@ -72,6 +22,7 @@ WANTED = "which Invented Waters requires of every study"
 
 def test_the_smallest_study_lacks_all_that_a_laboratory_can_require() -> None:
     assert required(SMALLEST, *REQUIREMENTS) == [
+        *(f"1:1: `measurement.{key}` is missing, {WANTED} - add `{key}: ...`" for key in MEASUREMENT_KEYS),
         f"1:1: `purpose` is missing, {WANTED} - add `purpose: ...`",
         f"1:1: `comparisons` is missing, {WANTED} - add `comparisons: ...`",
         f"1:1: `equivalence` is missing, {WANTED} - add `equivalence: ...`",
@@ -90,9 +41,17 @@ WHOLE = [requirement for requirement in REQUIREMENTS if requirement != "margin-s
 
 
 @pytest.mark.parametrize("requirement", WHOLE)
-def test_each_requirement_is_met_by_the_full_study_and_not_by_the_smallest(requirement: str) -> None:
-    assert required(FULL, requirement) == []
+def test_each_requirement_is_met_by_a_full_study_and_not_by_the_smallest(requirement: str) -> None:
+    assert required(RECEIVED if requirement in MEASUREMENT_KEYS else FULL, requirement) == []
     assert len(required(SMALLEST, requirement)) == 1
+
+
+def test_a_fact_that_is_missing_is_looked_for_among_the_facts() -> None:
+    text = SMALLEST + "measurement:\n  item: {column: sample}\n"
+    assert required(text, "item", "operator", "measured-at") == [
+        f"8:1: `measurement.{key}` is missing, {WANTED} - add `{key}: ...`"
+        for key in ("operator", "measured-at")
+    ]
 
 
 def test_a_source_is_required_of_each_margin_that_there_is() -> None:

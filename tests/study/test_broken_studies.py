@@ -15,8 +15,8 @@ QUANTITIES = (
 )
 COUNT = "expected a whole number from 1 to 1000000"
 TOP_KEYS = (
-    "study, title, purpose, data, design, alpha, comparisons, equivalence, spread, outliers, checks, "
-    "precision, power, criteria, sign-off"
+    "study, title, purpose, data, measurement, worksheet, design, alpha, comparisons, equivalence, spread, "
+    "outliers, checks, precision, power, criteria, sign-off"
 )
 TITLE_LINE = "Two balances and a reference"
 
@@ -103,8 +103,9 @@ ONE_FAULT = {
         "data: values.csv\n",
         (
             "3:7: `data` is `values.csv` - "
-            "expected a mapping with the keys file, response, factor, unit, order, levels, "
-            "replicates, missing, below-limit and decimal-mark"
+            "expected a mapping with the keys file, encoding, sheet, header-row, layout, response, factor, "
+            "unit, unit-column, convert, order, levels, replicates, replicate-unit, missing, missing-codes, "
+            "below-limit, limit-codes, above-limit, decimal-mark and exclusions"
         ),
     ),
     "a file above the folder": (

@@ -17,8 +17,9 @@ require: [unit, sign-off]
 wait-seconds: 0
 """
 REQUIREMENTS = (
-    "unit, order, levels, replicates, purpose, comparisons, equivalence, margin-source, checks, precision, "
-    "power or sign-off"
+    "unit, order, levels, replicates, measurand, method, method-version, item, lot, instrument, operator, "
+    "measured-at, supplied-by, purpose, comparisons, equivalence, margin-source, checks, precision, power or "
+    "sign-off"
 )
 
 

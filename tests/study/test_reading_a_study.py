@@ -24,7 +24,18 @@ from assayfolio.study.plan import (
     Trend,
     WeightedSum,
 )
-from study.examples import FULL, LEVELS, SAMPLE, SEPARATE, SMALLEST, edited, faults_of, planned, study_of
+from study.examples import (
+    FULL,
+    LEVELS,
+    RECEIVED,
+    SAMPLE,
+    SEPARATE,
+    SMALLEST,
+    edited,
+    faults_of,
+    planned,
+    study_of,
+)
 
 HALF = Fraction(1, 2)
 
@@ -237,14 +248,15 @@ def keys_in(text: str) -> set[str]:
 
 
 def test_the_examples_together_use_every_key() -> None:
+    other_files = {"LABORATORY_KEYS", "EXCLUSION_FILE_KEYS", "EXCLUSION_KEYS"}
     tables = [
         table
         for name, table in vars(vocabulary).items()
-        if name.endswith("_KEYS") and name != "LABORATORY_KEYS"
+        if name.endswith("_KEYS") and name not in other_files
     ]
-    assert len(tables) == 13
+    assert len(tables) == 16
     known = {key for table in tables for key in table}
-    assert known <= keys_in(FULL) | keys_in(SAMPLE) | keys_in(SEPARATE)
+    assert known <= keys_in(FULL) | keys_in(SAMPLE) | keys_in(SEPARATE) | keys_in(RECEIVED)
 
 
 def test_a_definition_knows_where_its_keys_stand() -> None:

@@ -3,7 +3,8 @@
 import pytest
 
 from assayfolio.study.rules import RULES
-from study.examples import SAMPLE, SEPARATE, SMALLEST, edited, faults_of, planned
+from assayfolio.study.vocabulary import MEASUREMENT_KEYS
+from study.examples import RECEIVED, SAMPLE, SEPARATE, SMALLEST, edited, faults_of, planned, with_data
 
 ONE_VARIANCE = "which needs one variance for all levels, and `design.variances` is separate"
 SAMPLE_ONLY = "with `design.effects: random` they are a mere sample"
@@ -13,6 +14,8 @@ TOGETHER = (
     "and `design.across-responses: holm` adjusts the rows of a family of all responses together, by Holm"
 )
 HOLM = "use `adjust: holm` (`none` for a single row), or `across-responses: bonferroni`"
+OWN_COLUMN = "and with `data.layout: wide` every level has a column of its own"
+ONE_ROW = "use `layout: long`, with one row a value, or leave it out"
 SCORES = "scores: {reference: 0, north: 1, south: 2}"
 
 
@@ -32,7 +35,117 @@ def responses(design: str, section: str) -> str:
     return two + section
 
 
+def wide(*lines: str) -> str:
+    """Two levels with a column each, `lines` in `data` from line 9 on."""
+    return with_data("layout: wide", "levels: [a, b]", *lines)
+
+
 REFUSED = {
+    "units in a column beside wide columns": (
+        wide("unit: g", "unit-column: u"),
+        f"10:3: `data.unit-column` names a column beside the values, {OWN_COLUMN} - {ONE_ROW}",
+    ),
+    "an order in a column beside wide columns": (
+        wide("order: position"),
+        f"9:3: `data.order` names a column beside the values, {OWN_COLUMN} - {ONE_ROW}",
+    ),
+    "repeats in a column beside wide columns": (
+        wide("replicate-unit: vial"),
+        f"9:3: `data.replicate-unit` names a column beside the values, {OWN_COLUMN} - {ONE_ROW}",
+    ),
+    **{
+        f"{key} in a column beside wide columns": (
+            f"{wide()}measurement: {{{key}: {{column: sample}}}}\n",
+            (
+                f"10:15: `measurement.{key}` names a column beside the values, {OWN_COLUMN} - "
+                "use `layout: long`, with one row a value, or write one text for all values"
+            ),
+        )
+        for key in MEASUREMENT_KEYS
+    },
+    "two responses in wide columns": (
+        edited(wide(), "mass\n", "[mass, ash]\n"),
+        (
+            f"5:3: `data.response` names several, {OWN_COLUMN}, for one response - "
+            "use `layout: long`, with a column a response"
+        ),
+    ),
+    "wide columns of levels that are not declared": (
+        with_data("layout: wide"),
+        (
+            "7:11: `data.layout` is `wide`, and `data.levels` does not say which columns are those of levels "
+            "- list the levels under `data.levels`"
+        ),
+    ),
+    "a sheet of a text file": (
+        with_data("sheet: Results"),
+        "7:3: `data.sheet` is for spreadsheets, and `data.file` names no .xlsx file - leave it out",
+    ),
+    "an encoding of a spreadsheet": (
+        edited(with_data("encoding: utf-16"), "values.csv", "values.xlsx"),
+        (
+            "7:13: `data.encoding` is `utf-16`, and a .xlsx file states its own encoding - "
+            "leave it out; it is for text files"
+        ),
+    ),
+    "units in a column without a unit to agree with": (
+        with_data("unit-column: u"),
+        (
+            "7:3: `data.unit-column` has nothing to agree with, for `data.unit` is missing - "
+            "add the unit of the values, such as `unit: mg/L`"
+        ),
+    ),
+    "one column of units for responses with different ones": (
+        edited(with_data("unit: {mass: g, ash: mg}", "unit-column: u"), "mass\n", "[mass, ash]\n"),
+        (
+            "8:3: `data.unit-column` is one for all responses, and `data.unit` gives them different units - "
+            "leave it out, or use one unit for all responses"
+        ),
+    ),
+    "a conversion of values without units of their own": (
+        with_data("unit: g", "convert: {mg: 0.001}"),
+        (
+            "8:3: `data.convert` has nothing to convert, for no column gives the unit of each value - "
+            "name that column, such as `unit-column: unit`, or leave it out"
+        ),
+    ),
+    "codes for missing values, which are refused": (
+        with_data("missing: refuse", "missing-codes: nil"),
+        (
+            "8:3: `data.missing-codes` is for missing values, and `data.missing` is refuse, as it is when "
+            "left out - use `missing: omit`, or leave the codes out: an entry that is no number is refused "
+            "anyway"
+        ),
+    ),
+    "codes for values below a limit, which are refused": (
+        with_data("limit-codes: {ND: 1}"),
+        (
+            "7:3: `data.limit-codes` is for values below a limit, and `data.below-limit` is refuse, as it is "
+            "when left out - use `below-limit: omit`, `half-limit` or `limit`, or leave the codes out: they "
+            "are refused anyway"
+        ),
+    ),
+    "a worksheet of unknown levels": (
+        with_data("replicates: 3") + "worksheet: {seed: 1}\n",
+        (
+            "9:1: `worksheet` is drawn from the levels, and `data.levels` is missing - "
+            "list what will be measured under `data.levels`"
+        ),
+    ),
+    "a worksheet of unknown length": (
+        with_data("levels: [a, b]") + "worksheet: {seed: 1}\n",
+        (
+            "9:1: `worksheet` needs to know how often each level is measured, and `data.replicates` is "
+            "missing - say how many values each level will have, such as `replicates: 6`"
+        ),
+    ),
+    "a worksheet for wide columns": (
+        wide("replicates: 3") + "worksheet: {seed: 1}\n",
+        (
+            "11:1: `worksheet` has one row a measurement, and `data.layout` is wide - "
+            "use `layout: long`, with one row a value"
+        ),
+    ),
     "Tukey and Kramer with separate variances": (
         separate("comparisons: [{name: x, pairs: all, adjust: tukey-kramer}]\n"),
         (
@@ -265,6 +378,20 @@ REFUSED = {
 }
 
 
+# A conversion without any unit breaks two rules at once, each at the key that it is about.
+NO_UNIT_TO_CONVERT_TO = with_data("unit-column: u", "convert: {mg: 0.001}")
+
+
+def test_a_conversion_needs_a_unit_to_convert_to() -> None:
+    assert faults_of(NO_UNIT_TO_CONVERT_TO) == [
+        REFUSED["units in a column without a unit to agree with"][1],
+        (
+            "8:3: `data.convert` has no unit to convert to, for `data.unit` is missing - "
+            "add the unit to convert to, such as `unit: mg/L`"
+        ),
+    ]
+
+
 @pytest.mark.parametrize(("text", "fault"), REFUSED.values(), ids=REFUSED.keys())
 def test_it_is_refused_with_its_place_and_what_to_use_instead(text: str, fault: str) -> None:
     assert faults_of(text) == [fault]
@@ -272,11 +399,23 @@ def test_it_is_refused_with_its_place_and_what_to_use_instead(text: str, fault: 
 
 @pytest.mark.parametrize("rule", RULES, ids=lambda rule: f"{rule.key} {' '.join(rule.words)}")
 def test_every_rule_of_the_table_is_broken_by_one_of_these_studies(rule: object) -> None:
-    advice = {fault.rpartition(" - ")[2] for _, fault in REFUSED.values()}
-    assert getattr(rule, "instead", None) in advice
+    faults = [*(fault for _, fault in REFUSED.values()), *faults_of(NO_UNIT_TO_CONVERT_TO)]
+    key, why, instead = (getattr(rule, name) for name in ("key", "why", "instead"))
+    assert any(f"`{key}`" in fault and fault.endswith(f"{why} - {instead}") for fault in faults)
 
 
 LET_THROUGH = {
+    "data as received": RECEIVED,
+    "wide columns with facts that hold for all values": (
+        wide("unit: g", "replicates: 2", "missing: omit", "missing-codes: nil", "header-row: 3")
+        + "measurement: {operator: Somebody, lot: 7}\n"
+    ),
+    "a spreadsheet with a sheet and a text file with an encoding": edited(
+        with_data("sheet: Results", "encoding: windows-1252"), "values.csv", "[a.xlsx, b.csv]"
+    ),
+    "a sheet in each of some spreadsheets": edited(
+        with_data("sheet: Results", "encoding: utf-8"), "values.csv", '"run-*.xlsx"'
+    ),
     "every method with one variance": planned(
         "comparisons:\n"
         "  - {name: a, pairs: all, adjust: scheffe}\n"
@@ -318,6 +457,28 @@ LET_THROUGH = {
 @pytest.mark.parametrize("text", LET_THROUGH.values(), ids=LET_THROUGH.keys())
 def test_what_no_rule_forbids_is_read(text: str) -> None:
     assert faults_of(text) == []
+
+
+@pytest.mark.parametrize(
+    "lines",
+    [
+        ["unti: g", "unit-column: u", "convert: {mg: 0.001}"],
+        ["unit: [g]", "unit-column: u", "convert: {mg: 0.001}"],
+        ["unit: g", "unit-colum: u", "convert: {mg: 0.001}"],
+        ["missin: omit", "missing-codes: nil"],
+        ["missing: skip", "missing-codes: nil"],
+        ["layout: wide", "level: [a, b]"],
+        ["layout: [wide]", "order: position"],
+    ],
+)
+def test_data_that_cannot_be_read_are_not_held_against_the_rest(lines: list[str]) -> None:
+    assert len(faults_of(with_data(*lines))) == 1
+
+
+def test_levels_that_cannot_be_read_are_not_held_against_the_worksheet() -> None:
+    for levels in ("levels: one", "level: [a, b]"):
+        text = with_data(levels, "replicates: 4") + "worksheet: {seed: 1, block: day, blocks: [x, y, z]}\n"
+        assert [fault.partition(":")[0] for fault in faults_of(text)] == ["7"]
 
 
 def test_a_design_that_cannot_be_read_is_not_held_against_the_rest() -> None:

@@ -19,6 +19,9 @@ DEFINITIONS: dict[str, Any] = SCHEMA["$defs"]
 MAPPINGS = {
     "": vocabulary.STUDY_KEYS,
     "data": vocabulary.DATA_KEYS,
+    "measurement": vocabulary.MEASUREMENT_KEYS,
+    "column": vocabulary.FACT_KEYS,
+    "worksheet": vocabulary.WORKSHEET_KEYS,
     "design": vocabulary.DESIGN_KEYS,
     "comparison": vocabulary.COMPARISON_KEYS,
     "contrast": vocabulary.CONTRAST_KEYS,
@@ -32,8 +35,11 @@ MAPPINGS = {
     "sign-off": vocabulary.SIGN_OFF_KEYS,
 }
 WORDS: dict[tuple[str, str], tuple[str, ...]] = {
+    ("data", "encoding"): vocabulary.ENCODINGS,
+    ("data", "layout"): vocabulary.LAYOUTS,
     ("data", "missing"): vocabulary.MISSING,
     ("data", "below-limit"): vocabulary.BELOW_LIMIT,
+    ("data", "above-limit"): vocabulary.ABOVE_LIMIT,
     ("data", "decimal-mark"): vocabulary.DECIMAL_MARKS,
     ("design", "effects"): vocabulary.EFFECTS,
     ("design", "variances"): vocabulary.VARIANCES,
@@ -56,8 +62,11 @@ WORDS: dict[tuple[str, str], tuple[str, ...]] = {
     ("sign-off", "role"): vocabulary.ROLES,
 }
 TYPED_FIELDS = {
+    ("data", "encoding"): (plan.DataPlan, "encoding"),
+    ("data", "layout"): (plan.DataPlan, "layout"),
     ("data", "missing"): (plan.DataPlan, "missing"),
     ("data", "below-limit"): (plan.DataPlan, "below_limit"),
+    ("data", "above-limit"): (plan.DataPlan, "above_limit"),
     ("data", "decimal-mark"): (plan.DataPlan, "decimal_mark"),
     ("design", "effects"): (plan.DesignPlan, "effects"),
     ("design", "variances"): (plan.DesignPlan, "variances"),
@@ -87,17 +96,30 @@ EVERYTHING: dict[str, Any] = {
     "title": "t",
     "purpose": "p",
     "data": {
-        "file": "v.csv",
+        "file": ["v.csv", "w.xlsx"],
+        "encoding": "utf-16",
+        "sheet": "Results",
+        "header-row": 4,
+        "layout": "long",
         "response": "mass",
         "factor": "lot",
         "unit": "g",
+        "unit-column": "unit",
+        "convert": {"mg": "1/1000"},
         "order": "position",
         "levels": ["a", "b"],
-        "replicates": 3,
-        "missing": "refuse",
-        "below-limit": "refuse",
+        "replicates": 4,
+        "replicate-unit": "sample",
+        "missing": "omit",
+        "missing-codes": "nil",
+        "below-limit": "limit",
+        "limit-codes": {"ND": 1},
+        "above-limit": "omit",
         "decimal-mark": "point",
+        "exclusions": "x.yaml",
     },
+    "measurement": {**dict.fromkeys(vocabulary.MEASUREMENT_KEYS, "m"), "item": {"column": "sample"}},
+    "worksheet": {"seed": 1, "block": "day", "blocks": ["x", "y"], "item": "i"},
     "design": {
         "effects": "fixed",
         "variances": "pooled",
@@ -138,6 +160,9 @@ EVERYTHING: dict[str, Any] = {
 SECTIONS = {
     "": None,
     "data": "data",
+    "measurement": "measurement",
+    "column": "measurement.item",
+    "worksheet": "worksheet",
     "design": "design",
     "comparison": "comparisons",
     "equivalence": "equivalence",
@@ -236,6 +261,8 @@ def test_a_key_is_compulsory_in_the_schema_just_where_the_reader_misses_it(name:
         definition = json.loads(json.dumps(EVERYTHING))
         if name == "contrast":
             holder = definition["comparisons"][1]["contrasts"]
+        elif name == "column":
+            holder = definition["measurement"]["item"]
         else:
             holder = definition if section is None else definition[section]
         holder = holder[0] if isinstance(holder, list) else holder

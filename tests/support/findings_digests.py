@@ -44,7 +44,8 @@ checks: {equal-variances: brown-forsythe, normality: shapiro-wilk}
 def nist_findings(name: str) -> Findings:
     """The findings of a study with several kinds of comparison on one of NIST's data sets."""
     study = study_of(NIST_PARTS, NIST_HEAD)
-    return evaluate(study, read_all_observations(as_csv(read_dataset(name)), study.data, study.data.file))
+    files = [(study.data.file, as_csv(read_dataset(name)))]
+    return evaluate(study, read_all_observations(files, study.data))
 
 
 def digests() -> dict[str, str]:

@@ -55,7 +55,7 @@ def observations_of_each(
         columns[study.data.order] = [str(position) for position in order]
     rows = [columns, *zip(*columns.values(), strict=True)]
     content = "".join(",".join(row) + "\n" for row in rows)
-    return read_all_observations(content.encode(), study.data, study.data.file)
+    return read_all_observations([(study.data.file, content.encode())], study.data, study.measurement)
 
 
 def findings_of(data: Mapping[str, Sequence[str]], parts: str = "", head: str = HEAD) -> Findings:
@@ -75,4 +75,4 @@ def demo_study(name: str) -> tuple[StudyDefinition, tuple[Observations, ...]]:
     """A study of the demonstration laboratory, with its data."""
     study = read_study((CONFIGS / f"{name}.yaml").read_bytes(), f"configs/{name}.yaml")
     content = (CONFIGS / study.data.file).read_bytes()
-    return study, read_all_observations(content, study.data, study.data.file)
+    return study, read_all_observations([(study.data.file, content)], study.data, study.measurement)

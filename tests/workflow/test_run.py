@@ -34,6 +34,7 @@ def test_the_folio_holds_every_promised_file(bench):
         "data/environment.json",
         "data/requirements.lock",
         "data/context/lab.yaml",
+        "data/context/history.json",
         "data/trail.jsonl",
         "data/report.pdf",
     }

@@ -7,7 +7,7 @@ import click
 
 from assayfolio.cli.evidence import trail, verify
 from assayfolio.cli.outcome import run_command
-from assayfolio.cli.studies import check, power, run, workspace
+from assayfolio.cli.studies import check, power, run, worksheet, workspace
 from assayfolio.version import VERSION
 
 EXIT_CODES = """\b
@@ -34,7 +34,7 @@ def cli() -> None:
     """
 
 
-for command in (workspace, check, power, run, verify, trail):
+for command in (workspace, check, power, worksheet, run, verify, trail):
     cli.add_command(command)
 
 

@@ -82,6 +82,34 @@ def power(study: Path, named_workspace: Path | None, figure: Path | None, as_jso
     say(f"  Figure: {target}")
 
 
+@click.command(epilog="\b\nExample:\n  assayfolio worksheet configs/oat-drying.yaml")
+@study_argument
+@workspace_option
+@click.option(
+    "--output",
+    type=click.Path(path_type=Path, file_okay=False),
+    metavar="DIR",
+    help="Where the files go; by default beside STUDY.",
+)
+@json_option
+def worksheet(study: Path, named_workspace: Path | None, output: Path | None, as_json: bool) -> None:
+    """Write the sheet to measure by.
+
+    The measurements stand in a random order that is drawn from the plan, with blank cells for the results:
+    as <name of STUDY>-worksheet.xlsx and .csv, as .pdf to print, and .json with the digests. STUDY has to
+    have `worksheet`, `data.levels` and `data.replicates`. A file that is there already is never replaced.
+    """
+    from assayfolio.workflow.worksheet import write_worksheet
+    from assayfolio.workflow.workspace import find_workspace
+
+    written = write_worksheet(find_workspace(named_workspace, study.parent), study, output)
+    if as_json:
+        say(json.dumps(written.document(), ensure_ascii=False, indent=1))
+        return
+    for line in written.lines():
+        say(line)
+
+
 @click.command(
     epilog="\b\nExample:\n  assayfolio run configs/whey-moisture.yaml\n\n"
     "Exit code 0: done, and every criterion of the study is met; 1: done, but a criterion is not met."

@@ -5,12 +5,17 @@ DataError; a part that was asked for and cannot be given is a finding with its r
 """
 
 from collections.abc import Sequence
+from dataclasses import replace
+from functools import partial
 
+from assayfolio.errors import MachineError
+from assayfolio.evaluation.alternatives import censoring_findings, unexcluded_findings
 from assayfolio.evaluation.checks import check_findings
 from assayfolio.evaluation.criteria import criterion_findings
 from assayfolio.evaluation.effects import effect_findings
 from assayfolio.evaluation.equivalence import equivalence_families
 from assayfolio.evaluation.families import comparison_families
+from assayfolio.evaluation.intake import count_deviations, exclusion_findings, flow_findings, order_deviations
 from assayfolio.evaluation.levels import level_findings
 from assayfolio.evaluation.omnibus import anova_findings, brown_forsythe_findings, welch_findings
 from assayfolio.evaluation.outliers import outlier_findings
@@ -25,6 +30,7 @@ from assayfolio.findings import (
     ResponseFindings,
     WelchFindings,
 )
+from assayfolio.findings_intake import FlowFindings
 from assayfolio.fit import check_fit
 from assayfolio.observations.values import Observations
 from assayfolio.planning.plan_power import plan_power
@@ -38,7 +44,41 @@ def evaluate(study: StudyDefinition, observations: tuple[Observations, ...]) -> 
     """
     check_fit(study, observations)
     subjects = [subject_of(one, study.data.unit_of(one.response)) for one in observations]
+    analyse = partial(_analysed, study)
     gaps: list[NotReported] = []
+    analysed = analyse(subjects, gaps)
+    unexcluded = unexcluded_findings(study, observations, analyse, gaps)
+    censoring = censoring_findings(study, observations, subjects, analyse, gaps)
+    responses = tuple(
+        replace(found, flow=_flow(found, observed), censoring=censored, without_exclusions=nothing_excluded)
+        for found, observed, censored, nothing_excluded in zip(
+            analysed, observations, censoring, unexcluded, strict=True
+        )
+    )
+    power, power_gaps = plan_power(study)
+    return Findings(
+        study=study.study,
+        responses=responses,
+        not_reported=(*_in_order(gaps, subjects), *power_gaps),
+        power=power,
+        exclusions=exclusion_findings(observations),
+        deviations=(*count_deviations(study.data, observations), *order_deviations(study, observations)),
+    )
+
+
+def _flow(found: ResponseFindings, observed: Observations) -> tuple[FlowFindings, ...]:
+    """The counts of each level, the last of which are those that were analysed."""
+    flow = flow_findings(observed)
+    counted = {counts.level: counts.analysed for counts in flow}
+    if flow and counted != {level.level: level.n for level in found.levels}:
+        raise MachineError(f"{found.response}: other numbers of values were analysed than were counted")
+    return flow
+
+
+def _analysed(
+    study: StudyDefinition, subjects: Sequence[Subject], gaps: list[NotReported]
+) -> tuple[ResponseFindings, ...]:
+    """The whole analysis of all responses, as planned; what cannot be given is added to `gaps`."""
     anovas = anova_findings(study, subjects, gaps)
     welch, brown_forsythe = _separate_tests(study, subjects, gaps)
     comparisons = comparison_families(study, subjects, gaps)
@@ -67,8 +107,7 @@ def evaluate(study: StudyDefinition, observations: tuple[Observations, ...]) -> 
                 criteria=criterion_findings(study.criteria, subject, precision, gaps),
             )
         )
-    power, power_gaps = plan_power(study)
-    return Findings(study.study, tuple(responses), (*_in_order(gaps, subjects), *power_gaps), power)
+    return tuple(responses)
 
 
 def _separate_tests(

@@ -130,8 +130,14 @@ def _note(p: float, alpha: float, departure: str) -> str:
 
 
 def _coarse_resolution(subject: Subject) -> tuple[CheckFindings, ...]:
-    """One entry where the recorded step is coarse against a spread that is not zero; else none."""
-    found = resolution(subject.groups, subject.analysis)
+    """One entry where the recorded step is coarse against a spread that is not zero; else none.
+
+    A value put in for one beyond a limit was not recorded with a step, so that it does not count.
+    """
+    recorded = [(level, [row.value for row in rows if row.limit is None]) for level, rows in subject.rows]
+    if not any(values for _, values in recorded):
+        return ()
+    found = resolution(recorded, subject.analysis)
     if not found.coarse or found.rounding_share is None:
         return ()
     unit = f" {subject.unit}" if subject.unit else ""

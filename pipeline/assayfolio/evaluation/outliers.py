@@ -35,7 +35,7 @@ def _tests(word: OutlierTest, subject: Subject) -> Sequence[Tested]:
 
 
 def _findings(plan: OutlierPlan, subject: Subject, test: Tested) -> OutlierFindings:
-    rows = dict(subject.rows).get(test.level or "", ())
+    rows, files = dict(subject.rows).get(test.level or "", ()), subject.files
     named = [rows[index] for index in test.indexes]
     verdict = NOT_ASSESSABLE if test.verdict is None else _VERDICTS[test.verdict]
     return OutlierFindings(
@@ -48,6 +48,7 @@ def _findings(plan: OutlierPlan, subject: Subject, test: Tested) -> OutlierFindi
         outlier_limit=test.outlier_limit,
         p=test.p,
         verdict=verdict,
+        files=tuple(files[row.file] for row in named) if len(files) > 1 else (),
         note=f"{NOT_ASSESSABLE}: {test.reason}" if test.reason else _note(plan, subject, test, verdict),
     )
 

@@ -10,7 +10,8 @@ from collections.abc import Callable, Iterator
 from fractions import Fraction
 from math import sqrt
 
-from assayfolio.evaluation.subject import subject_of
+from assayfolio.evaluation.alternatives import NOTHING_EXCLUDED
+from assayfolio.evaluation.subject import Subject, subject_of
 from assayfolio.exact import Root, to_double
 from assayfolio.findings import (
     ComparisonFamily,
@@ -44,14 +45,20 @@ from assayfolio.statistics.second_tails import (
 def second_routes(
     findings: Findings, observations: tuple[Observations, ...]
 ) -> tuple[tuple[str, SecondRoute], ...]:
-    """For each response, how its findings agree with the second route."""
+    """For each response, how its findings agree with the second route, also those with nothing excluded."""
     compared = []
     for found, observed in zip(findings.responses, observations, strict=True):
-        subject = subject_of(observed, found.unit)
-        route = second_route(subject.groups, _table(found), list(_tails(found)))
-        not_compared = (*route.not_compared, *_beyond(found))
-        compared.append((found.response, SecondRoute(route.agreements, not_compared)))
+        compared.append((found.response, _route(found, subject_of(observed, found.unit))))
+        if found.without_exclusions is not None:
+            subject = subject_of(observed, found.unit, observed.with_excluded)
+            name = f"{found.response} {NOTHING_EXCLUDED}"
+            compared.append((name, _route(found.without_exclusions, subject)))
     return tuple(compared)
+
+
+def _route(found: ResponseFindings, subject: Subject) -> SecondRoute:
+    route = second_route(subject.groups, _table(found), list(_tails(found)))
+    return SecondRoute(route.agreements, (*route.not_compared, *_beyond(found)))
 
 
 def _table(found: ResponseFindings) -> ReportedTable:

@@ -13,23 +13,32 @@ Groups = tuple[tuple[str, tuple[Decimal10, ...]], ...]
 
 @dataclass(frozen=True, slots=True)
 class Subject:
-    """One response: `rows` holds the observations of each level, `groups` their values; levels as planned."""
+    """One response: `rows` holds the observations of each level, `groups` their values; levels as planned.
+
+    `files` are the names of the data files, by the positions that the rows give.
+    """
 
     response: str
     unit: str | None
     rows: tuple[tuple[str, tuple[Observation, ...]], ...]
     groups: Groups
     analysis: OneWay
+    files: tuple[str, ...] = ()
 
     def unreported(self, what: str, reason: object) -> NotReported:
         """The entry that says why `what` cannot be given for this response."""
         return NotReported(what, str(reason), self.response)
 
 
-def subject_of(observations: Observations, unit: str | None) -> Subject:
-    """The subject that `observations` are about."""
+def subject_of(
+    observations: Observations, unit: str | None, rows: Sequence[Observation] | None = None
+) -> Subject:
+    """The subject that `observations` are about, with other `rows` of theirs where these are given.
+
+    Raises NotComputableError where a level has no value, or every level has one.
+    """
     by_level: dict[str, list[Observation]] = {level: [] for level in observations.levels}
-    for row in observations.rows:
+    for row in observations.rows if rows is None else rows:
         by_level[row.level].append(row)
     groups = tuple((level, tuple(row.value for row in rows)) for level, rows in by_level.items())
     return Subject(
@@ -38,6 +47,7 @@ def subject_of(observations: Observations, unit: str | None) -> Subject:
         rows=tuple((level, tuple(rows)) for level, rows in by_level.items()),
         groups=groups,
         analysis=one_way([(level, ExactSums.of(values)) for level, values in groups]),
+        files=tuple(file.file for file in observations.files),
     )
 
 

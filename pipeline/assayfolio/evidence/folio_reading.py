@@ -3,6 +3,7 @@
 import os
 from collections.abc import Mapping
 from dataclasses import dataclass
+from functools import cached_property
 from pathlib import Path
 from typing import Any
 
@@ -18,6 +19,7 @@ from assayfolio.evidence.manifest import (
     parse_manifest,
 )
 from assayfolio.evidence.outcomes import Tally
+from assayfolio.evidence.register import Register, read_register
 from assayfolio.evidence.strict_json import NotCanonicalError, parse_json
 
 RUN_FILE = "data/run.json"
@@ -37,6 +39,11 @@ class TrailIndex:
         for place, entry in enumerate(reading.parsed):
             if entry is not None:
                 self._places.setdefault(entry.subject, []).append(place)
+
+    @cached_property
+    def register(self) -> Register:
+        """The intake register that the entries amount to."""
+        return read_register(self.reading.entries)
 
     def lines_to_staged(self, subject: str) -> list[tuple[TrailEntry, bytes]]:
         """The run's entries and their very lines, from allotment to the last "staged"."""

@@ -4,6 +4,7 @@ from collections.abc import Iterator, Mapping
 from typing import Any
 
 from assayfolio.canonical import sha256_hex
+from assayfolio.evidence.data_checks import check_account
 from assayfolio.evidence.entries import NO_LINE, is_digest, parse_entry
 from assayfolio.evidence.folio_reading import RUN_FILE, RUN_TRAIL_FILE, FolioReading, content_of
 from assayfolio.evidence.history import COMPUTED, RENDERED, RunHistory, run_name, split_subject
@@ -208,7 +209,7 @@ def check_against_trail(folio: FolioReading, tally: Tally) -> None:
     """Check 3.12: run.json's outcome and digests, against the details of the run's entries."""
     run = _record(folio, tally)
     history = _history(folio, tally)
-    if run is None or history is None:
+    if run is None or history is None or folio.trail is None:
         return
     sealed = history.sealed
     if sealed is not None and sealed.details.get("outcome") != run.get("outcome"):
@@ -224,6 +225,7 @@ def check_against_trail(folio: FolioReading, tally: Tally) -> None:
         tally.failed.append(
             f"the inputs in {RUN_FILE} are not those of entry {history.allotted.seq} of the audit trail"
         )
+    check_account(run, history, folio.trail.register, tally)
     for key, path, action, detail in _RESULTS:
         entry = history.entry(action)
         stated = entry.details.get(detail) if entry else None

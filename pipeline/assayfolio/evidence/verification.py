@@ -10,6 +10,7 @@
 2.2  For each run: sealed and there, or entered as interrupted; nothing ended without a word.
 2.3  Nothing lies among the folios that the trail does not explain.
 2.4  Torn lines that were set aside are kept as they were entered.
+2.5  Every raw data file was entered once, by its digest, before any run read it.
 3.1 to 3.12  Each folio (`checks`).
 
 Every check is made whatever the others found. A trail cut back together with its head is whole by itself:
@@ -28,6 +29,7 @@ from pathlib import Path
 from assayfolio.canonical import sha256_hex
 from assayfolio.errors import InputError, MachineError
 from assayfolio.evidence.checks import OUTSIDE, check_folio
+from assayfolio.evidence.data_checks import check_received
 from assayfolio.evidence.entries import TORN_LINE_SET_ASIDE, TRAIL_FILE, TrailReading, read_trail
 from assayfolio.evidence.files import plain_reason, read_regular
 from assayfolio.evidence.folio_reading import TrailIndex
@@ -105,6 +107,7 @@ def _outcomes(
             yield check_run(runs, index.histories[subject])
         yield check_surroundings(runs, index)
         yield _check_torn_lines(runs, reading)
+        yield check_received(reading)
         for folder in _run_folders(runs):
             yield from check_folio(folder, index, "")
         return

@@ -1,7 +1,7 @@
 """Which levels stand in the rows, and whether they are those that the plan declares."""
 
-from collections.abc import Iterator
-from dataclasses import dataclass
+from collections.abc import Callable, Iterator, Sequence
+from dataclasses import dataclass, field
 
 from assayfolio.observations.faults import FaultList, listed
 from assayfolio.observations.labels import as_seen, first_unsettable, unprintable
@@ -12,28 +12,31 @@ from assayfolio.study.vocabulary import LONGEST_LABEL
 
 COMPARED_NAMES = 200
 
-Spot = tuple[int, int]
+Where = tuple[int, int, int]
+"""The position of a file, and line and column from one."""
 
 
 @dataclass(slots=True)
 class Tally:
-    """One level as it comes in: where its rows stand and how many there are.
+    """One level as it comes in: where its rows stand, how many there are, and how many replicates.
 
-    `surplus` is the place of the first row beyond the planned number, `twin` an earlier level that looks
-    the same.
+    `surplus` is the place of the first replicate beyond the planned number, `twin` an earlier level that
+    looks the same. `units` holds the replicates that have a name.
     """
 
-    first: Spot
-    last: Spot
+    first: Where
+    last: Where
     planned: int | None
     sound: bool
     twin: str | None = None
+    rows: int = 0
     n: int = 0
-    surplus: Spot | None = None
+    surplus: Where | None = None
+    units: set[str] = field(default_factory=set)
 
 
 class LevelCount:
-    """The levels of one file in order of first appearance, counted row by row."""
+    """The levels in order of first appearance in the files, counted row by row."""
 
     def __init__(self, plan: DataPlan) -> None:
         self._declared = None if plan.levels is None else frozenset(plan.levels)
@@ -43,54 +46,92 @@ class LevelCount:
         self._tallies: dict[str, Tally] = {}
         self._seen = {as_seen(level): level for level in self._listed}
 
-    def count(self, level: str, spot: Spot) -> None:
-        """Take one row of `level` whose level stands at line and column `spot`."""
+    def count(self, level: str, where: Where, unit: str | None = None) -> None:
+        """Take one row of `level` whose level stands at `where`.
+
+        Rows with the same `unit` are repeats and count as one replicate.
+        """
         tally = self._tallies.get(level)
         if tally is None:
-            tally = self._tallies[level] = self._new_tally(level, spot)
+            tally = self._tallies[level] = self._new_tally(level, where)
+        tally.rows += 1
+        tally.last = where
+        if unit is not None:
+            if unit in tally.units:
+                return
+            tally.units.add(unit)
         tally.n += 1
-        tally.last = spot
         if tally.surplus is None and tally.planned is not None and tally.n > tally.planned:
-            tally.surplus = spot
+            tally.surplus = where
+
+    def count_many(self, level: str, count: int, where: Callable[[int], Where]) -> None:
+        """Take `count` rows of `level` (one or more), the levels of which stand at `where` of 0, 1, ...
+
+        The place is asked for only where it may be needed.
+        """
+        tally = self._tallies.get(level)
+        if tally is None:
+            tally = self._tallies[level] = self._new_tally(level, where(0))
+        tally.rows += count
+        tally.n += count
+        if tally.planned is None:
+            return
+        tally.last = where(count - 1)
+        if tally.surplus is None and tally.n > tally.planned:
+            tally.surplus = where(count - 1 - (tally.n - tally.planned - 1))
 
     def in_order(self) -> tuple[str, ...]:
         """The levels in the order of the plan, or of first appearance where it declares none."""
         return tuple(self._tallies) if self._declared is None else self._listed
 
-    def add_name_faults(self, faults: FaultList) -> None:
-        """Add one fault for each level whose name cannot be taken, at its first row."""
+    def received(self, level: str) -> int:
+        """How many rows of `level` were taken."""
+        tally = self._tallies.get(level)
+        return 0 if tally is None else tally.rows
+
+    def add_name_faults(self, faults: Sequence[FaultList]) -> None:
+        """Add one fault for each level whose name cannot be taken, at its first row; a list a file."""
         for level, tally in self._tallies.items():
             if tally.sound:
                 continue
             # Finding the nearest name is slow, so it is left out for faults that are only counted.
-            found, advice = ("", "") if faults.full else self._name_fault(level, tally.twin)
-            more = f" ({tally.n} rows, the first is here)" if tally.n > 1 else ""
-            faults.add(*tally.first, found + more, advice)
+            file, line, column = tally.first
+            found, advice = ("", "") if faults[file].full else self._name_fault(level, tally.twin)
+            more = f" ({tally.rows} rows, the first is here)" if tally.rows > 1 else ""
+            faults[file].add(line, column, found + more, advice)
 
-    def add_count_faults(self, faults: FaultList) -> None:
-        """Add a fault for each level that is absent or has another number of rows than planned."""
+    def add_count_faults(self, faults: Sequence[FaultList]) -> None:
+        """Add a fault for each level that is absent or has another number of replicates than planned.
+
+        `faults` has a list a file; an absent level is a fault of the last.
+        """
         expected = self._listed if self._declared is not None else (*self._by_level, *self._tallies)
-        misfits = [misfit for level in dict.fromkeys(expected) for misfit in self._misfit(level)]
-        for line, column, found, advice in sorted(misfits, key=lambda one: (one[0] is None, one[0] or 0)):
-            faults.add(line, column, found, advice)
+        levels = dict.fromkeys(expected)
+        for (file, line, column), found, advice in sorted(
+            misfit for level in levels for misfit in self._misfit(level)
+        ):
+            faults[file].add(line, column, found, advice)
+        for level in levels:
+            if level not in self._tallies:
+                advice = "add its values, or take it out of the study"
+                faults[-1].add(None, None, f"level {shown(level)} has no row", advice)
 
-    def _misfit(self, level: str) -> Iterator[tuple[int | None, int | None, str, str]]:
+    def _misfit(self, level: str) -> Iterator[tuple[Where, str, str]]:
         tally = self._tallies.get(level)
-        if tally is None:
-            advice = "add its values, or take it out of the study"
-            yield None, None, f"level {shown(level)} has no row", advice
-        elif tally.sound and tally.planned is not None and tally.n != tally.planned:
-            found = f"level {shown(level)}: found {tally.n}, planned {tally.planned}"
-            which = "its first row too many is here" if tally.surplus else "its last row is here"
-            advice = f"{which}; rows and planned replicates have to agree"
-            yield *(tally.surplus or tally.last), found, advice
+        if tally is None or not tally.sound or tally.planned is None or tally.n == tally.planned:
+            return
+        what = " replicates" if tally.units else ""
+        found = f"level {shown(level)}: found {tally.n}{what}, planned {tally.planned}"
+        which = "its first row too many is here" if tally.surplus else "its last row is here"
+        advice = f"{which}; {what.strip() or 'rows'} and planned replicates have to agree"
+        yield tally.surplus or tally.last, found, advice
 
-    def _new_tally(self, level: str, spot: Spot) -> Tally:
+    def _new_tally(self, level: str, where: Where) -> Tally:
         planned = self._replicates if isinstance(self._replicates, int) else self._by_level.get(level)
         twin = self._seen.setdefault(as_seen(level), level)
         known = twin == level == level.strip() if self._declared is None else level in self._declared
         fits = first_unsettable(level) is None and len(level) <= LONGEST_LABEL
-        return Tally(spot, spot, planned, known and fits, None if twin == level else twin)
+        return Tally(where, where, planned, known and fits, None if twin == level else twin)
 
     def _name_fault(self, level: str, twin: str | None) -> tuple[str, str]:
         bad = first_unsettable(level)

@@ -12,6 +12,7 @@ from assayfolio.report.content import Heading, ReportContent, Section, Signature
 from assayfolio.report.criteria import criteria_section
 from assayfolio.report.data import data_section
 from assayfolio.report.equivalence import equivalence_section
+from assayfolio.report.executions import further_words
 from assayfolio.report.facts import ReportInput
 from assayfolio.report.families import comparisons_section
 from assayfolio.report.listing import listing_section
@@ -147,6 +148,7 @@ def _facts(bases: tuple[Basis, ...]) -> tuple[Prose, ...]:
     study, run = basis.study, basis.content.run
     effects = {"fixed": "fixed levels", "random": "random levels"}[study.design.effects]
     variances = {"pooled": "one error variance", "separate": "separate variances"}[study.design.variances]
+    further = further_words(run.executions)
     return (
         prose(
             "{responses} by {factor} ({levels}) · {effects}, {variances} · *α* = {alpha}",
@@ -158,14 +160,16 @@ def _facts(bases: tuple[Basis, ...]) -> tuple[Prose, ...]:
             alpha=alpha_words(basis),
         ),
         prose(
-            "{total} from {file} · run on {date} at {time} UTC by {actor}{earlier}",
+            "{total} from {file} · run on {date} at {time} UTC by {actor}{earlier}{execution}",
             total=counted(sum(one.total for one in bases), "value"),
             file=verbatim(basis.observations.file),
             date=run.started_utc[:10],
             time=run.started_utc[11:16],
             actor=run.actor,
             earlier=f" · earlier runs of this study: {run.number - 1}" if run.number > 1 else "",
+            execution="" if further else f" · execution {run.executions.number} on these data",
         ),
+        *([prose("{words}", words=further)] if further else []),
     )
 
 

@@ -13,17 +13,19 @@ from assayfolio.report.wording import BLANK, counted
 def data_section(basis: Basis, numbering: Numbering, accent: str) -> Section:
     """Counts, descriptive statistics, and every value drawn."""
     observations = basis.observations
-    separator = {"comma": "comma", "semicolon": "semicolon", "tab": "tab"}[observations.separator]
+    raw = observations.files[0]
+    by_separator = f"columns separated by {raw.separator}"
+    layout: Words = verbatim(f"sheet {raw.sheet}") if raw.separator is None else by_separator
     blocks: list[Block] = [
         Paragraph(
             prose(
                 "{total} received from {file}, 0 excluded, {total2} analysed: this version has no "
                 "exclusions and analyses every value in the file. Values were read as exact decimals from "
-                "their text (columns separated by {separator}, decimal {mark}); at most {places} recorded.",
+                "their text ({layout}, decimal {mark}); at most {places} recorded.",
                 total=counted(basis.total, "value"),
                 total2=str(basis.total),
                 file=verbatim(observations.file),
-                separator=separator,
+                layout=layout,
                 mark=basis.content.study.data.decimal_mark,
                 places=counted(observations.places, "decimal place"),
             )

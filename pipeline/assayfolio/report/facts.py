@@ -23,6 +23,43 @@ class InputFacts:
 
 
 @dataclass(frozen=True, slots=True)
+class PlanVersion:
+    """A version of the plan, by the digests of the study definition and of the exclusions, if any.
+
+    `definition` is None where the audit trail does not say which input was the definition.
+    """
+
+    definition: str | None
+    exclusions: str | None = None
+
+
+@dataclass(frozen=True, slots=True)
+class ElsewhereFacts:
+    """Another run that used these data: all of them, or only some."""
+
+    study: str
+    run: str
+    all_data: bool
+
+
+@dataclass(frozen=True, slots=True)
+class ExecutionFacts:
+    """How often the study was executed on exactly these data, as known when the run got its number.
+
+    `number` counts this run; `plan` is its own plan version, `tried` those of the executions before it, in
+    their order. `elsewhere` are earlier runs outside this count that used these data or a part of them.
+    """
+
+    number: int
+    plan: PlanVersion
+    tried: tuple[PlanVersion, ...]
+    elsewhere: tuple[ElsewhereFacts, ...]
+
+
+FIRST_EXECUTION = ExecutionFacts(1, PlanVersion(None), (), ())
+
+
+@dataclass(frozen=True, slots=True)
 class RunFacts:
     """The run itself. Times are RFC 3339: `started_utc` ends in Z, `started_local` carries its offset.
 
@@ -46,6 +83,7 @@ class RunFacts:
     software: tuple[tuple[str, str], ...]
     native_libraries: tuple[tuple[str, str], ...]
     self_check: str
+    executions: ExecutionFacts = FIRST_EXECUTION
 
     @property
     def label(self) -> str:

@@ -38,14 +38,22 @@ def first_pages_of(content: ReportContent, cards_on_first_page: int) -> str:
 
 
 def _html(content: ReportContent, cards_on_first_page: int, sections: tuple[Section, ...]) -> str:
+    return html_from(
+        "report.html.j2",
+        content=content,
+        sections=sections,
+        first_cards=content.cards[:cards_on_first_page],
+        more_cards=content.cards[cards_on_first_page:],
+        figure_scheme=FIGURE_SCHEME,
+    )
+
+
+def html_from(name: str, **values: object) -> str:
+    """The template `name`, filled with `values`.
+
+    Raises RenderingError where the template is faulty.
+    """
     try:
-        template = _environment().get_template("report.html.j2")
-        return template.render(
-            content=content,
-            sections=sections,
-            first_cards=content.cards[:cards_on_first_page],
-            more_cards=content.cards[cards_on_first_page:],
-            figure_scheme=FIGURE_SCHEME,
-        )
+        return _environment().get_template(name).render(**values)
     except TemplateError as error:
-        raise RenderingError(f"the report template is faulty: {error}") from error
+        raise RenderingError(f"the {name} template is faulty: {error}") from error

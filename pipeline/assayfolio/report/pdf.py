@@ -29,7 +29,7 @@ from assayfolio.report.typeface import FAMILY, FIGURES_FAMILY
 
 VARIANT = "pdf/a-3a"
 _TEXT_WIDTH, _INNER_MARGIN = 164.0, 26.0
-_PAPERS = {"A4": (210.0, 297.0), "Letter": (215.9, 279.4)}  # width and height in millimetres
+PAPERS = {"A4": (210.0, 297.0), "Letter": (215.9, 279.4)}  # width and height in millimetres
 _FIRST_PAGE_MARGINS = 16.0 + 24.0
 _NO_SYSTEM_FONTS = (
     '<?xml version="1.0"?>\n<!DOCTYPE fontconfig SYSTEM "urn:fontconfig:fonts.dtd">\n'
@@ -144,7 +144,7 @@ def _styles(look: Look) -> tuple[Any, Any]:
 
 def _sheet(look: Look) -> str:
     """The style sheet with the fonts and what the laboratory sets; the text is as wide on every paper."""
-    width, height = _PAPERS[look.paper]
+    width, height = PAPERS[look.paper]
     outer = width - _INNER_MARGIN - _TEXT_WIDTH
     return (
         f"{font_faces()}\n{stylesheet_text()}\n"

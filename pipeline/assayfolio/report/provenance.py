@@ -2,6 +2,7 @@
 
 from assayfolio.report.basis import Basis
 from assayfolio.report.content import Block, Entry, Facts, Heading, Items, Section
+from assayfolio.report.executions import elsewhere_words, execution_words
 from assayfolio.report.facts import InputFacts, RunFacts
 from assayfolio.report.listing import MOST_LISTED
 from assayfolio.report.numbering import Part
@@ -25,6 +26,8 @@ def provenance_section(basis: Basis) -> Section:
             (
                 _entry("Run", f"{run.study}, {run.label}"),
                 _entry("Earlier runs", _earlier_runs(run)),
+                _entry("Executions", execution_words(run.executions)),
+                _entry("Data also used", elsewhere_words(run.executions)),
                 _entry("Started", f"{_time(run.started_utc)} UTC, {_time(run.started_local)} local time"),
                 _entry("Started by", f"{run.actor} on {run.host}"),
                 _entry("Self-check", run.self_check),

@@ -7,7 +7,7 @@ from math import fsum, lcm, log
 
 import numpy as np
 
-from assayfolio.exact import Decimal10, ExactSums, to_double
+from assayfolio.exact import Decimal10, ExactSums, in_one_unit, to_double
 from assayfolio.statistics.adjustment import Tail
 from assayfolio.statistics.deviance import excess
 from assayfolio.statistics.inference import variance_ratio_tail
@@ -76,11 +76,11 @@ def _distances_from_median(values: Sequence[Decimal10]) -> ExactSums:
     # depend on the unit.
     if not values:
         return ExactSums.of(())
-    exponent = min(value.exponent for value in values)
-    doubled = sorted(2 * value.mantissa * 10 ** (value.exponent - exponent) for value in values)
+    numbers, exponent, divisor = in_one_unit(values)
+    doubled = sorted(2 * number for number in numbers)
     middle = len(doubled) // 2
     median = doubled[middle] if len(doubled) % 2 else (doubled[middle - 1] + doubled[middle]) // 2
-    return ExactSums.of(Decimal10(5 * abs(value - median), exponent - 1) for value in doubled)
+    return ExactSums.of(Decimal10(5 * abs(value - median), exponent - 1, divisor) for value in doubled)
 
 
 def _distances_from_mean(values: Sequence[Decimal10], common: int) -> ExactSums:
@@ -88,12 +88,12 @@ def _distances_from_mean(values: Sequence[Decimal10], common: int) -> ExactSums:
     # count in the same unit, on which F does not depend.
     if not values:
         return ExactSums.of(())
-    sums = ExactSums.of(values)
-    n, exponent = sums.n, sums.exponent
-    distances = [abs(n * value.mantissa * 10 ** (value.exponent - exponent) - sums.total) for value in values]
+    numbers, exponent, divisor = in_one_unit(values)
+    n, total = len(numbers), sum(numbers)
+    distances = [abs(n * number - total) for number in numbers]
     factor = common // n
     squares = sum(distance * distance for distance in distances)
-    return ExactSums(n, factor * sum(distances), factor**2 * squares, exponent)
+    return ExactSums(n, factor * sum(distances), factor**2 * squares, exponent, divisor)
 
 
 def bartlett_variances(analysis: OneWay) -> BartlettCheck:

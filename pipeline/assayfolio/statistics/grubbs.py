@@ -10,7 +10,7 @@ from dataclasses import dataclass
 from fractions import Fraction
 from math import sqrt
 
-from assayfolio.exact import Decimal10, Root, to_double
+from assayfolio.exact import Decimal10, Root, in_one_unit, to_double
 from assayfolio.statistics.tails import t_isf, t_sf
 
 
@@ -68,8 +68,7 @@ def lowest_and_highest_pair(values: Sequence[Decimal10]) -> tuple[OutlyingPair, 
 def _deviations(values: Sequence[Decimal10]) -> list[int]:
     # In units of 1/n of the finest decimal place deviations from the mean are whole; neither statistic
     # depends on the unit.
-    exponent = min(value.exponent for value in values)
-    units = [value.mantissa * 10 ** (value.exponent - exponent) for value in values]
+    units, _, _ = in_one_unit(values)
     total = sum(units)
     return [len(units) * one - total for one in units]
 

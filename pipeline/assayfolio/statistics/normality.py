@@ -9,7 +9,7 @@ from typing import Final
 import numpy as np
 from scipy.special import log_ndtr
 
-from assayfolio.exact import Decimal10, ExactSums
+from assayfolio.exact import Decimal10, in_one_unit
 from assayfolio.statistics.arguments import Floats
 from assayfolio.statistics.oneway import NotComputableError
 from assayfolio.statistics.tails import normal_sf
@@ -43,10 +43,11 @@ def residuals(groups: Sequence[tuple[str, Sequence[Decimal10]]]) -> tuple[float,
     """Each value minus the exact mean of its level, rounded once; in the order of `groups`."""
     out: list[float] = []
     for _, values in groups:
-        sums = ExactSums.of(values)
-        unit = Fraction(10) ** sums.exponent / sums.n
-        for value in values:
-            steps = value.mantissa * 10 ** (value.exponent - sums.exponent) * sums.n - sums.total
+        numbers, exponent, divisor = in_one_unit(values)
+        n, total = len(numbers), sum(numbers)
+        unit = Fraction(10) ** exponent / (divisor * n) if n else Fraction(1)
+        for number in numbers:
+            steps = number * n - total
             out.append(steps * unit.numerator / unit.denominator)  # integers: rounded once, correctly
     return tuple(out)
 

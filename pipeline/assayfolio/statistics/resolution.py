@@ -6,7 +6,7 @@ from fractions import Fraction
 from math import gcd
 from typing import Final
 
-from assayfolio.exact import Decimal10, Root
+from assayfolio.exact import Decimal10, Root, in_one_unit
 from assayfolio.statistics.oneway import OneWay
 
 COARSE_FROM: Final = Fraction(1, 2)
@@ -38,11 +38,11 @@ def resolution(groups: Sequence[tuple[str, Sequence[Decimal10]]], analysis: OneW
     limit of s / 2 is common practice without a source. Where nothing varies within the levels the step is
     coarse.
     """
-    exponent = min(value.exponent for _, values in groups for value in values)
-    units = {v.mantissa * 10 ** (v.exponent - exponent) for _, values in groups for v in values}
+    numbers, exponent, divisor = in_one_unit(value for _, values in groups for value in values)
+    units = set(numbers)
     lowest = min(units)
     multiple = gcd(*(one - lowest for one in units)) if len(units) >= _DISTINCT_VALUES else 1
-    step = multiple * Fraction(10) ** exponent
+    step = multiple * Fraction(10) ** exponent / divisor
     variance = analysis.ms_within
     return Resolution(
         step=step,

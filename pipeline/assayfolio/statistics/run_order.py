@@ -3,9 +3,10 @@
 from collections.abc import Sequence
 from dataclasses import dataclass
 from fractions import Fraction
+from itertools import islice
 from math import lcm
 
-from assayfolio.exact import Decimal10, Root, to_double
+from assayfolio.exact import Decimal10, Root, in_one_unit, to_double
 from assayfolio.statistics.adjustment import Tail
 from assayfolio.statistics.comparisons import signed_root
 from assayfolio.statistics.oneway import NotComputableError
@@ -56,14 +57,15 @@ def run_order_trend(groups: Sequence[tuple[str, OrderedValues]]) -> RunOrderTren
 def _sums_within(groups: Sequence[OrderedValues]) -> tuple[Fraction, Fraction, Fraction]:
     # In whole units: the common denominator of the places, the finest decimal place of the values.
     unit = lcm(*(Fraction(place).denominator for values in groups for place, _ in values))
-    exponent = min(value.exponent for values in groups for _, value in values)
+    numbers, exponent, divisor = in_one_unit(value for values in groups for _, value in values)
+    left = iter(numbers)
     s_xx = s_xy = s_yy = Fraction(0)
     for values in groups:
         n = len(values)
         x = [int(place * unit) for place, _ in values]
-        y = [value.mantissa * 10 ** (value.exponent - exponent) for _, value in values]
+        y = list(islice(left, n))
         s_xx += sum(a * a for a in x) - Fraction(sum(x) ** 2, n)
         s_xy += sum(a * b for a, b in zip(x, y, strict=True)) - Fraction(sum(x) * sum(y), n)
         s_yy += sum(b * b for b in y) - Fraction(sum(y) ** 2, n)
-    step_x, step_y = Fraction(1, unit), Fraction(10) ** exponent
+    step_x, step_y = Fraction(1, unit), Fraction(10) ** exponent / divisor
     return s_xx * step_x**2, s_xy * step_x * step_y, s_yy * step_y**2

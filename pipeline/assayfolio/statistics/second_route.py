@@ -28,6 +28,7 @@ Tails: the bound of their law, for tails of 1e-280 and more; smaller ones only h
 import math
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
+from fractions import Fraction
 from typing import Final
 
 import numpy as np
@@ -198,17 +199,17 @@ class _Level:
     ss: float
 
     @staticmethod
-    def of(level: str, values: Sequence[int], origin: int, exponent: int) -> "_Level":
-        """The level of `values`, which count units of ten to the power `exponent`."""
+    def of(level: str, values: Sequence[int], origin: int, unit: Fraction) -> "_Level":
+        """The level of `values`, which count multiples of `unit`."""
         first = values[0]
-        v = [_rounded(value - first, exponent) for value in values]
+        v = [_rounded(value - first, unit) for value in values]
         n = len(v)
         mean = math.fsum(v) / n
         return _Level(
             level=level,
             n=n,
-            first=_rounded(first, exponent),
-            w=_rounded(first - origin, exponent),
+            first=_rounded(first, unit),
+            w=_rounded(first - origin, unit),
             mean=mean,
             mean_size=math.fsum(map(abs, v)) / n,
             squares=math.fsum(x * x for x in v),
@@ -231,11 +232,17 @@ class _Layout:
     def of(groups: Groups) -> "_Layout":
         """The levels of `groups`, every difference formed exactly before it is rounded."""
         exponent = min(value.exponent for _, values in groups for value in values)
+        divisor = math.lcm(*(value.divisor for _, values in groups for value in values))
         units = [
-            [value.mantissa * 10 ** (value.exponent - exponent) for value in values] for _, values in groups
+            [
+                value.mantissa * 10 ** (value.exponent - exponent) * (divisor // value.divisor)
+                for value in values
+            ]
+            for _, values in groups
         ]
+        unit = Fraction(10) ** exponent / divisor
         levels = zip(groups, units, strict=True)
-        return _Layout(tuple(_Level.of(name, level, units[0][0], exponent) for (name, _), level in levels))
+        return _Layout(tuple(_Level.of(name, level, units[0][0], unit) for (name, _), level in levels))
 
     @property
     def n_total(self) -> int:
@@ -253,9 +260,8 @@ class _Layout:
         return math.fsum(level.ss for level in self.levels), math.fsum(level.squares for level in self.levels)
 
 
-def _rounded(units: int, exponent: int) -> float:
-    # True division of integers rounds correctly.
-    return float(units * 10**exponent) if exponent >= 0 else units / 10**-exponent
+def _rounded(units: int, unit: Fraction) -> float:
+    return units * unit.numerator / unit.denominator  # true division of integers rounds correctly
 
 
 def _bound_of_squares(size: float, ss: float) -> float:

@@ -1,66 +1,11 @@
-"""What a study asks for that this version does not compute yet, and what a laboratory wants of every study.
-
-A definition may be right and still ask for more than there is. It is then refused as a whole: nothing that
-was planned is left out in silence.
-"""
+"""What a laboratory wants of every study, and what a study must say before its power can be computed."""
 
 from collections.abc import Callable, Iterable
 from dataclasses import dataclass
 
-from assayfolio.errors import Fault, NotAvailableError, Place, StudyError
-from assayfolio.study.plan import Laboratory, StudyDefinition
-from assayfolio.study.vocabulary import Requirement
-from assayfolio.version import VERSION
-
-
-@dataclass(frozen=True, slots=True)
-class _Missing:
-    """A part that is not computed yet: the key it stands under, whether a study asks for it, what to do."""
-
-    key: str
-    what: str
-    asked: Callable[[StudyDefinition], bool]
-    advice: str
-
-
-_NOT_YET = (
-    _Missing(
-        "data.missing",
-        "an analysis that passes over missing values (`missing: omit`)",
-        lambda study: study.data.missing != "refuse",
-        "use `missing: refuse` and a data file without gaps",
-    ),
-    _Missing(
-        "data.below-limit",
-        "an analysis of values below a limit (`below-limit` other than `refuse`)",
-        lambda study: study.data.below_limit != "refuse",
-        "use `below-limit: refuse`",
-    ),
-)
-
-
-def check_available(study: StudyDefinition) -> None:
-    """Refuse a study that asks for what this version does not compute.
-
-    Raises NotAvailableError that lists every such part with its place, in the order of the file.
-    """
-    faults = _in_order(
-        Fault(
-            study.place_of(part.key) or _start(study),
-            f"{part.what}: not computed by this version",
-            part.advice,
-        )
-        for part in _NOT_YET
-        if part.asked(study)
-    )
-    if not faults:
-        return
-    parts = "1 part" if len(faults) == 1 else f"{len(faults)} parts"
-    headline = (
-        f"{faults[0].place.file}: the study definition is well formed, but this version ({VERSION}) does not "
-        f"compute {parts} of it yet; nothing was analysed"
-    )
-    raise NotAvailableError(headline, faults)
+from assayfolio.errors import Fault, Place, StudyError
+from assayfolio.study.plan import Laboratory, MeasurementKey, StudyDefinition
+from assayfolio.study.vocabulary import MEASUREMENT_KEYS, Requirement
 
 
 def _start(study: StudyDefinition) -> Place:
@@ -83,6 +28,10 @@ def _without_source(study: StudyDefinition) -> tuple[Place, ...]:
     return tuple(plan.place for plan in study.equivalence if plan.margin_source is None)
 
 
+def _inside_measurement(study: StudyDefinition) -> tuple[Place, ...]:
+    return (study.place_of("measurement") or _start(study),)
+
+
 @dataclass(frozen=True, slots=True)
 class _Wanted:
     """What a laboratory can require: the key, whether a study has it, and where it would belong."""
@@ -90,6 +39,14 @@ class _Wanted:
     key: str
     holds: Callable[[StudyDefinition], bool]
     places: Callable[[StudyDefinition], tuple[Place, ...]]
+
+
+def _measurement(key: MeasurementKey) -> _Wanted:
+    return _Wanted(
+        f"measurement.{key}",
+        lambda study: any(fact.key == key for fact in study.measurement),
+        _inside_measurement,
+    )
 
 
 _WANTED: dict[Requirement, _Wanted] = {
@@ -101,6 +58,7 @@ _WANTED: dict[Requirement, _Wanted] = {
     "order": _Wanted("data.order", lambda study: study.data.order is not None, _inside_data),
     "levels": _Wanted("data.levels", lambda study: study.data.levels is not None, _inside_data),
     "replicates": _Wanted("data.replicates", lambda study: study.data.replicates is not None, _inside_data),
+    **{key: _measurement(key) for key in MEASUREMENT_KEYS},
     "purpose": _Wanted("purpose", lambda study: study.purpose is not None, _of_study("purpose")),
     "comparisons": _Wanted("comparisons", lambda study: bool(study.comparisons), _of_study("comparisons")),
     "equivalence": _Wanted("equivalence", lambda study: bool(study.equivalence), _of_study("equivalence")),

@@ -1,90 +1,122 @@
-"""Reading `data:` - the file, its columns, the levels and how many values each should have."""
+"""Reading `data:` - the files, their columns, the levels and how many values each should have."""
 
-import re
-
+from assayfolio.study.entries import conversions_to, limit_codes_for, missing_codes, report_shared_codes
 from assayfolio.study.faults import shown
-from assayfolio.study.fields import (
-    Fields,
-    Reader,
-    Value,
-    choice,
-    distinct,
-    label,
-    line_of_text,
-    list_of,
-    one_or_more,
-)
+from assayfolio.study.fields import Fields, Reader, Value, choice, distinct, label, list_of, one_or_more
 from assayfolio.study.names import Surroundings, by_name, level_of, report_absent, response_of
 from assayfolio.study.nodes import MappingNode, ScalarNode
 from assayfolio.study.numbers import whole_number
-from assayfolio.study.plan import DataPlan
+from assayfolio.study.paths import is_pattern, path_such_as, sources
+from assayfolio.study.plan import DataPlan, Encoding
 from assayfolio.study.vocabulary import (
+    ABOVE_LIMIT,
     BELOW_LIMIT,
     DECIMAL_MARKS,
-    LONGEST_PATH,
+    ENCODINGS,
+    LAYOUTS,
     MISSING,
+    AboveLimit,
     BelowLimit,
     DecimalMark,
+    Layout,
     Missing,
 )
 
+LAST_HEADER_ROW = 10_000
 MOST_REPLICATES = 1_000_000
 
 Replicates = int | tuple[tuple[str, int], ...]
+_encoding: Reader[Encoding] = choice(ENCODINGS)
+_layout: Reader[Layout] = choice(LAYOUTS)
 _missing: Reader[Missing] = choice(MISSING)
 _below_limit: Reader[BelowLimit] = choice(BELOW_LIMIT)
+_above_limit: Reader[AboveLimit] = choice(ABOVE_LIMIT)
 _decimal_mark: Reader[DecimalMark] = choice(DECIMAL_MARKS)
-_path_text = line_of_text(LONGEST_PATH)
+_header_row = whole_number(1, LAST_HEADER_ROW)
+_exclusions = path_such_as("data/exclusions.yaml")
 _response = one_or_more(label, "a column, or a list of columns")
 _level_list = distinct(list_of(label, "a list of levels, such as [lot-a, lot-b]"))
 _count = whole_number(1, MOST_REPLICATES)
-_DRIVE = re.compile(r"[A-Za-z]:")
+
+# Keys that name one column each, and what that column holds.
+_COLUMNS = {
+    "factor": "the levels",
+    "order": "the measuring order",
+    "unit-column": "the units",
+    "replicate-unit": "what was measured repeatedly",
+}
 
 
 def read_data(fields: Fields) -> tuple[DataPlan | None, Surroundings]:
     """`data:` as a plan, None where a compulsory key is missing or unreadable; and what others need of it."""
-    file = fields.required("file", _path)
-    response = fields.required("response", _response)
-    factor = fields.required("factor", label)
-    unit, units = _units(fields, response)
-    order = fields.optional("order", label)
+    files = fields.required("file", sources) or ()
+    response = fields.required("response", _response) or ()
+    columns = {key: fields.optional(key, label) for key in _COLUMNS if key != "factor"}
+    columns["factor"] = factor = fields.required("factor", label)
+    unit, units = _units(fields, response or None)
+    known_units = None if fields.unreadable("unit") else dict.fromkeys(response, unit) | dict(units)
     levels = fields.optional("levels", _levels)
     replicates = fields.optional("replicates", _replicates_of(levels))
-    missing = fields.optional("missing", _missing) or "refuse"
     below_limit = fields.optional("below-limit", _below_limit) or "refuse"
-    decimal_mark = fields.optional("decimal-mark", _decimal_mark) or "point"
-    _report_shared_columns(fields, response, factor, order)
-    declared = None if fields.unreadable("levels") else levels or ()
-    known_units = None if fields.unreadable("unit") else dict.fromkeys(response or (), unit) | dict(units)
-    surroundings = Surroundings(declared, response, known_units)
-    if file is None or response is None or factor is None:
-        return None, surroundings
     plan = DataPlan(
-        file=file,
+        file=files[0] if files else "",
+        files=files if len(files) > 1 or not _names_one_file(fields) else (),
+        encoding=fields.optional("encoding", _encoding) or "utf-8",
+        sheet=fields.optional("sheet", label),
+        header_row=fields.optional("header-row", _header_row) or 1,
+        layout=fields.optional("layout", _layout) or "long",
         response=response,
-        factor=factor,
+        factor=factor or "",
         unit=unit,
         units=units,
-        order=order,
+        unit_column=columns["unit-column"],
+        convert=fields.optional("convert", conversions_to(known_units or {})) or (),
+        order=columns["order"],
         levels=levels,
         replicates=replicates,
-        missing=missing,
+        replicate_unit=columns["replicate-unit"],
+        missing=fields.optional("missing", _missing) or "refuse",
+        missing_codes=fields.optional("missing-codes", missing_codes) or (),
         below_limit=below_limit,
-        decimal_mark=decimal_mark,
+        limit_codes=fields.optional("limit-codes", limit_codes_for(below_limit)) or (),
+        above_limit=fields.optional("above-limit", _above_limit) or "refuse",
+        decimal_mark=fields.optional("decimal-mark", _decimal_mark) or "point",
+        exclusions=fields.optional("exclusions", _exclusions),
     )
-    return plan, surroundings
+    report_shared_codes(fields, plan)
+    _report_data_as_exclusions(fields, plan)
+    surroundings = Surroundings(
+        levels=None if fields.unreadable("levels") else levels or (),
+        responses=response or None,
+        units=known_units,
+        replicates=replicates,
+        columns=_told_apart(fields, response, columns),
+    )
+    return plan if files and response and factor else None, surroundings
 
 
-def _report_shared_columns(
-    fields: Fields, response: tuple[str, ...] | None, factor: str | None, order: str | None
-) -> None:
-    if factor is not None and factor in (response or ()):
-        found = f"the column {shown(factor)} is both `data.factor` and `data.response`"
-        fields.faults.add(fields.place_of("factor"), found, "name the column that holds the levels")
-    if order is not None and (order == factor or order in (response or ())):
-        other = "data.factor" if order == factor else "data.response"
-        found = f"the column {shown(order)} is both `data.order` and `{other}`"
-        fields.faults.add(fields.place_of("order"), found, "name the column that holds the measuring order")
+def _names_one_file(fields: Fields) -> bool:
+    text = fields.text("file")
+    return text is not None and not is_pattern(text)
+
+
+def _told_apart(fields: Fields, response: tuple[str, ...], columns: dict[str, str | None]) -> dict[str, str]:
+    """Each column with the key that names it; a column that two keys name is reported."""
+    named = dict.fromkeys(response, "data.response")
+    for key, content in _COLUMNS.items():
+        column = columns[key]
+        if column is not None and column in named:
+            found = f"the column {shown(column)} is both `data.{key}` and `{named[column]}`"
+            fields.faults.add(fields.place_of(key), found, f"name the column that holds {content}")
+        elif column is not None:
+            named[column] = f"data.{key}"
+    return named
+
+
+def _report_data_as_exclusions(fields: Fields, plan: DataPlan) -> None:
+    value = fields.value("exclusions")
+    if value is not None and plan.exclusions is not None and plan.exclusions in plan.sources:
+        value.report("is a data file, too", "a file of its own that names rows with reasons")
 
 
 def _units(
@@ -107,23 +139,6 @@ def _units_of(response: tuple[str, ...] | None) -> Reader[tuple[tuple[str, str],
         return by_name(value, node, lambda key: response_of(key, response), label)
 
     return read
-
-
-def _path(value: Value) -> str:
-    path = _path_text(value)
-    expected = "a path below this file's folder, such as data/values.csv"
-    parts = path.split("/")
-    if "\\" in path:
-        raise value.unreadable(f"is {shown(path)}, with a backslash", f"{expected}; write / between folders")
-    if path.startswith("/") or _DRIVE.match(path):
-        raise value.unreadable(f"is {shown(path)}, an absolute path", expected)
-    if ".." in parts:
-        raise value.unreadable(f"is {shown(path)}, which leaves the folder", expected)
-    if "" in parts or "." in parts:
-        raise value.unreadable(f"is {shown(path)}, with an empty part or a single point", expected)
-    if any(part != part.strip() for part in parts):
-        raise value.unreadable(f"is {shown(path)}, with a blank beside a /", expected)
-    return path
 
 
 def _levels(value: Value) -> tuple[str, ...]:

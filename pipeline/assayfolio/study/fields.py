@@ -126,6 +126,10 @@ class Fields:
         """Whether `key` was evidently meant, but is misspelt or its value could not be read."""
         return key in self._unreadable
 
+    def absent(self, keys: Iterable[str]) -> frozenset[str]:
+        """Those of `keys` that are evidently left out: neither present nor misspelt."""
+        return frozenset(key for key in keys if key not in self._values and key not in self._unreadable)
+
     def required(self, key: str, reader: Reader[T]) -> T | None:
         """What stands under `key`; its absence is reported at the mapping that should hold it."""
         value = self.value(key)

@@ -15,12 +15,16 @@ _NAMED = 3
 class Surroundings:
     """What `data` says that other sections depend on; None where it could not be read.
 
-    `levels` is empty where none are declared; `units` gives the unit of each response, or None.
+    `levels` is empty where none are declared; `units` gives the unit of each response, or None; `replicates`
+    is None also where no numbers of values are planned. `columns` gives each column that `data` names for a
+    purpose of its own with the key that does.
     """
 
     levels: tuple[str, ...] | None
     responses: tuple[str, ...] | None
     units: Mapping[str, str | None] | None
+    replicates: int | tuple[tuple[str, int], ...] | None
+    columns: Mapping[str, str]
 
     @property
     def declared(self) -> tuple[str, ...] | None:

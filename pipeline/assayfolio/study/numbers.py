@@ -49,6 +49,15 @@ positive = number("a number above 0", lambda x: x > 0)
 any_number = number("a number, such as -0.25 or 1/3", lambda _: True)
 
 
+def ends_as_decimal(exact: Fraction) -> bool:
+    """Whether a number has finitely many decimal places, as 1/8 does and 1/3 does not."""
+    rest = exact.denominator
+    for prime in (2, 5):
+        while rest % prime == 0:
+            rest //= prime
+    return rest == 1
+
+
 def whole_number(least: int, most: int) -> Reader[int]:
     """A whole number from `least` to `most`, written with digits alone."""
     expected = f"a whole number from {least} to {most}"

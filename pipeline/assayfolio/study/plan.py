@@ -29,6 +29,18 @@ AcrossResponses = Literal["none", "bonferroni", "holm"]
 VarianceCheck = Literal["brown-forsythe", "levene", "bartlett", "cochran"]
 NormalityCheck = Literal["shapiro-wilk", "anderson-darling"]
 OutlierTest = Literal["grubbs", "grubbs-double", "cochran"]
+Encoding = Literal["utf-8", "utf-16", "windows-1252", "iso-8859-1", "iso-8859-15"]
+MeasurementKey = Literal[
+    "measurand",
+    "method",
+    "method-version",
+    "item",
+    "lot",
+    "instrument",
+    "operator",
+    "measured-at",
+    "supplied-by",
+]
 Quantity = Literal[
     "repeatability-sd",
     "repeatability-rsd",
@@ -52,19 +64,44 @@ class DataPlan:
 
     `unit` holds for every response; `units` are those given response by response. `order` names the column
     with the measuring order.
+
+    `file` is the one raw data file, or the first name or pattern of `files`. `header_row` is the row of the
+    column names; rows above it are kept in the record. With the layout "wide" every level has a column of its
+    own, named by the level. `unit_column` names the column with each value's unit; `convert` gives exact
+    factors from other units to the plan's. `missing_codes` are entries that stand for a missing value,
+    `limit_codes` entries that stand for a value below the limit beside them. Rows of one level with the same
+    entry in the column `replicate_unit` are repeats of one replicate and are averaged. `exclusions` is the
+    file that names rows to be left out, with reasons.
     """
 
     file: str
     response: tuple[str, ...]
     factor: str
+    files: tuple[str, ...] = ()
+    encoding: Encoding = "utf-8"
+    sheet: str | None = None
+    header_row: int = 1
+    layout: Literal["long", "wide"] = "long"
     unit: str | None = None
     units: tuple[tuple[str, str], ...] = ()
+    unit_column: str | None = None
+    convert: tuple[tuple[str, Fraction], ...] = ()
     order: str | None = None
     levels: tuple[str, ...] | None = None
     replicates: int | tuple[tuple[str, int], ...] | None = None
     missing: Literal["refuse", "omit"] = "refuse"
+    missing_codes: tuple[str, ...] = ()
     below_limit: Literal["refuse", "omit", "half-limit", "limit"] = "refuse"
+    limit_codes: tuple[tuple[str, Fraction], ...] = ()
+    above_limit: Literal["refuse", "omit", "limit"] = "refuse"
     decimal_mark: Literal["point", "comma"] = "point"
+    replicate_unit: str | None = None
+    exclusions: str | None = None
+
+    @property
+    def sources(self) -> tuple[str, ...]:
+        """The names or patterns of the raw data files, in the order of the plan."""
+        return self.files or (self.file,)
 
     def unit_of(self, response: str) -> str | None:
         """The unit of one response, or None where the plan does not say."""
@@ -285,11 +322,36 @@ class SignOff:
 
 
 @dataclass(frozen=True, slots=True)
+class MeasurementFact:
+    """One entry of `measurement:` - a fact about the measurements: one text, or a column of the data file."""
+
+    key: MeasurementKey
+    text: str | None
+    column: str | None
+
+
+@dataclass(frozen=True, slots=True)
+class WorksheetPlan:
+    """`worksheet:` - how the measuring order is drawn.
+
+    `seed` starts the shuffle; `block` is what the order is blocked by (day, operator), None for a complete
+    shuffle; `blocks` are the names of the blocks, each of which gets an equal share of every level;
+    `item` is how items are labelled.
+    """
+
+    seed: int
+    block: str | None
+    blocks: tuple[str, ...]
+    item: str | None
+    place: Place
+
+
+@dataclass(frozen=True, slots=True)
 class StudyDefinition:
     """A whole study definition.
 
     `places` gives the place of each key that is present: the top-level keys, and under their full names
-    (`data.levels`) those inside `data`, `design` and `checks`; in the order of the file.
+    (`data.levels`) those inside `data`, `measurement`, `design` and `checks`; in the order of the file.
     """
 
     study: str
@@ -308,6 +370,8 @@ class StudyDefinition:
     criteria: tuple[Criterion, ...]
     sign_off: tuple[SignOff, ...]
     places: tuple[tuple[str, Place], ...]
+    measurement: tuple[MeasurementFact, ...] = ()
+    worksheet: WorksheetPlan | None = None
 
     def place_of(self, key: str) -> Place | None:
         """Where `key` stands (`alpha`, `data.levels`), or None where it is absent."""

@@ -24,8 +24,8 @@ from assayfolio.study.fields import (
     report_repeats,
 )
 from assayfolio.study.labels import shared_label
+from assayfolio.study.measurement_section import read_measurement
 from assayfolio.study.names import Surroundings
-from assayfolio.study.nodes import MappingNode, RefusedNode
 from assayfolio.study.numbers import probability, whole_number
 from assayfolio.study.plan import (
     ChecksPlan,
@@ -34,7 +34,9 @@ from assayfolio.study.plan import (
     PrecisionPlan,
     StudyDefinition,
 )
-from assayfolio.study.rules import Outline, report_breaches
+from assayfolio.study.root import root_fields
+from assayfolio.study.rule import Outline
+from assayfolio.study.rules import report_breaches
 from assayfolio.study.small_sections import (
     power_in,
     read_checks,
@@ -51,11 +53,13 @@ from assayfolio.study.vocabulary import (
     LONGEST_NOTE,
     LONGEST_PARAGRAPHS,
     LONGEST_TITLE,
+    MEASUREMENT_KEYS,
     PAPERS,
     REQUIREMENTS,
     STUDY_KEYS,
     Paper,
 )
+from assayfolio.study.worksheet_section import worksheet_in
 
 MOST_WAIT_SECONDS = 600
 DEFAULT_ACCENT = "#0f5b66"
@@ -67,7 +71,7 @@ _identifier = matching(
 _colour = matching(re.compile(r"#[0-9A-Fa-f]{6}", re.ASCII), 'a colour in quotation marks, such as "#0f5b66"')
 _paper: Reader[Paper] = choice(PAPERS)
 _ENTRIES = "a list of entries, each beginning with a hyphen"
-_NOTHING_READ = Surroundings(None, None, None)
+_NOTHING_READ = Surroundings(None, None, None, None, {})
 _REQUIREMENT_LIST = f"a list of {listed(REQUIREMENTS)}"
 
 
@@ -77,7 +81,7 @@ def read_study(content: bytes, file: str) -> StudyDefinition:
     Raises StudyError with every fault of the file, each with line and column.
     """
     faults = Faults(file)
-    fields = _root(content, STUDY_KEYS, faults)
+    fields = root_fields(content, STUDY_KEYS, faults)
     study = None if fields is None else _study(fields)
     faults.raise_if_any("the study definition")
     assert study is not None, "a definition without faults is complete"
@@ -90,24 +94,11 @@ def read_laboratory(content: bytes, file: str) -> Laboratory:
     Raises StudyError with every fault of the file, each with line and column.
     """
     faults = Faults(file)
-    fields = _root(content, LABORATORY_KEYS, faults)
+    fields = root_fields(content, LABORATORY_KEYS, faults)
     laboratory = None if fields is None else _laboratory(fields)
     faults.raise_if_any("the laboratory's settings")
     assert laboratory is not None, "settings without faults are complete"
     return laboratory
-
-
-def _root(content: bytes, keys: tuple[str, ...], faults: Faults) -> Fields | None:
-    from assayfolio.study.document import compose  # loads the YAML parser, when there is something to parse
-
-    node = compose(content, faults)
-    if node is None or isinstance(node, RefusedNode):
-        return None
-    if isinstance(node, MappingNode):
-        return Fields(node, "", keys, faults)
-    found = "the file is no mapping of keys to values"
-    faults.add(node.place, found, f"write lines such as `{keys[0]}: ...`, with a blank behind the colon")
-    return None
 
 
 def _study(fields: Fields) -> StudyDefinition | None:
@@ -117,6 +108,9 @@ def _study(fields: Fields) -> StudyDefinition | None:
     alpha = fields.required("alpha", probability)
     data_fields = fields.required("data", mapping_of(DATA_KEYS))
     data, around = (None, _NOTHING_READ) if data_fields is None else read_data(data_fields)
+    measured_fields = fields.optional("measurement", mapping_of(MEASUREMENT_KEYS))
+    measurement = () if measured_fields is None else read_measurement(measured_fields, around)
+    worksheet = fields.optional("worksheet", worksheet_in(around))
     design_fields = fields.optional("design", mapping_of(DESIGN_KEYS))
     design = DesignPlan() if design_fields is None else read_design(design_fields)
     checks_fields = fields.optional("checks", mapping_of(CHECK_KEYS))
@@ -131,7 +125,9 @@ def _study(fields: Fields) -> StudyDefinition | None:
     sign_off = fields.optional("sign-off", list_of(read_sign_off, _ENTRIES)) or ()
     _report_repeated_names(fields)
     _report_shared_labels(fields, data_fields, around)
-    report_breaches(_outline(fields, design_fields, design, around, precision, alpha), fields.faults)
+    report_breaches(
+        _outline(fields, data_fields, design_fields, design, around, precision, alpha), fields.faults
+    )
     if study is None or title is None or alpha is None or data is None:
         return None
     return StudyDefinition(
@@ -150,12 +146,15 @@ def _study(fields: Fields) -> StudyDefinition | None:
         power=power,
         criteria=criteria,
         sign_off=sign_off,
-        places=_places(fields, data_fields, design_fields, checks_fields),
+        places=_places(fields, data_fields, measured_fields, design_fields, checks_fields),
+        measurement=measurement,
+        worksheet=worksheet,
     )
 
 
 def _outline(
     fields: Fields,
+    data_fields: Fields | None,
     design_fields: Fields | None,
     design: DesignPlan,
     around: Surroundings,
@@ -175,6 +174,8 @@ def _outline(
         responses=around.responses,
         estimates=None if fields.unreadable("precision") else estimates,
         alpha=alpha,
+        units=around.units,
+        absent=frozenset() if data_fields is None else data_fields.absent(DATA_KEYS),
     )
 
 

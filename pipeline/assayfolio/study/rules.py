@@ -4,79 +4,20 @@ The rules speak of words as they were typed, so that they hold in an entry of wh
 read. A word that is misspelt breaks no rule: it is reported where it stands.
 """
 
-from collections.abc import Callable, Iterator
-from dataclasses import dataclass
 from fractions import Fraction
 
 from assayfolio.study.adjustments import several_rows
+from assayfolio.study.data_rules import DATA_RULES
 from assayfolio.study.faults import Faults
-from assayfolio.study.nodes import Entry, MappingNode, ScalarNode, SequenceNode
-from assayfolio.study.vocabulary import (
-    ACROSS_RESPONSES,
-    ADJUSTMENTS,
-    EQUIVALENCE_ADJUSTMENTS,
-    QUANTITIES,
-    Effects,
-    Variances,
-)
-
-
-@dataclass(frozen=True, slots=True)
-class Outline:
-    """What the rules ask of a whole definition; None where it could not be read, which breaks no rule.
-
-    `levels` is empty where none are declared; `estimates` tells whether estimates of precision are planned.
-    """
-
-    root: MappingNode
-    effects: Effects | None
-    variances: Variances | None
-    across_responses: str | None
-    levels: tuple[str, ...] | None
-    responses: tuple[str, ...] | None
-    estimates: bool | None
-    alpha: Fraction | None
-
-    @property
-    def random(self) -> bool:
-        """Whether the levels are a sample."""
-        return self.effects == "random"
-
-    @property
-    def fixed(self) -> bool:
-        """Whether the levels themselves are of interest."""
-        return self.effects == "fixed"
-
-    @property
-    def pooled(self) -> bool:
-        """Whether fixed levels share one variance."""
-        return self.fixed and self.variances == "pooled"
-
-    @property
-    def separate(self) -> bool:
-        """Whether each fixed level has its own variance; random levels rule that out, and are told alone."""
-        return self.fixed and self.variances == "separate"
-
-
-@dataclass(frozen=True, slots=True)
-class Rule:
-    """`key` may not hold one of `words` (no words: may not be there) where `broken` holds.
-
-    `broken` is asked about the definition and the mapping in which the key stands. `why` continues the
-    sentence that names key and word; `instead` is what to do.
-    """
-
-    key: str
-    words: tuple[str, ...]
-    broken: Callable[[Outline, MappingNode], bool]
-    why: str
-    instead: str
+from assayfolio.study.nodes import MappingNode, ScalarNode
+from assayfolio.study.rule import Outline, Rule, mappings, places, word_of
+from assayfolio.study.vocabulary import ACROSS_RESPONSES, ADJUSTMENTS, EQUIVALENCE_ADJUSTMENTS, QUANTITIES
 
 
 def report_breaches(outline: Outline, faults: Faults) -> None:
     """Report every rule that the definition breaks, each at the word or key that breaks it."""
     for rule in RULES:
-        for mapping, entry in _places(outline.root, rule.key):
+        for mapping, entry in places(outline.root, rule.key):
             word = entry.value.text if isinstance(entry.value, ScalarNode) else None
             if rule.words and word in rule.words and rule.broken(outline, mapping):
                 faults.add(entry.value.place, f"`{rule.key}` is `{word}`{rule.why}", rule.instead)
@@ -84,32 +25,10 @@ def report_breaches(outline: Outline, faults: Faults) -> None:
                 faults.add(entry.key.place, f"`{rule.key}`{rule.why}", rule.instead)
 
 
-def _places(root: MappingNode, key: str) -> Iterator[tuple[MappingNode, Entry]]:
-    """Each mapping that holds the last part of `key`, in the section that its first part names."""
-    section, _, last = key.rpartition(".")
-    for mapping in _mappings(root, section) if section else (root,):
-        entry = mapping.entry(last)
-        if entry is not None:
-            yield mapping, entry
-
-
-def _mappings(root: MappingNode, section: str) -> Iterator[MappingNode]:
-    entry = root.entry(section)
-    node = None if entry is None else entry.value
-    for item in node.items if isinstance(node, SequenceNode) else (node,):
-        if isinstance(item, MappingNode):
-            yield item
-
-
-def _word(mapping: MappingNode, key: str) -> str | None:
-    entry = mapping.entry(key)
-    return entry.value.text if entry is not None and isinstance(entry.value, ScalarNode) else None
-
-
 def _several_rows(outline: Outline, mapping: MappingNode) -> bool:
     """Whether the family has, or could have, more than one row."""
     keys = {entry.key.text for entry in mapping.entries}
-    return several_rows(keys, _word(mapping, "trend"), outline.levels or ()) is not False
+    return several_rows(keys, word_of(mapping, "trend"), outline.levels or ()) is not False
 
 
 def _separate_and_one_row(outline: Outline, mapping: MappingNode) -> bool:
@@ -122,33 +41,33 @@ def _separate_and_several_rows(outline: Outline, mapping: MappingNode) -> bool:
 
 def _sidak_of_contrasts(_: Outline, mapping: MappingNode) -> bool:
     of_contrasts = mapping.entry("contrasts") is not None or mapping.entry("trend") is not None
-    return of_contrasts and _word(mapping, "adjust") == "sidak"
+    return of_contrasts and word_of(mapping, "adjust") == "sidak"
 
 
 def _beyond_holm(outline: Outline, mapping: MappingNode) -> bool:
     """Whether the family cannot be adjusted together with the same family of the other responses."""
     if outline.across_responses != "holm" or outline.levels is None or len(outline.responses or ()) < 2:
         return False
-    return _word(mapping, "adjust") != "none" or _several_rows(outline, mapping)
+    return word_of(mapping, "adjust") != "none" or _several_rows(outline, mapping)
 
 
 def _without_reference(outline: Outline, _: MappingNode) -> bool:
-    places = [f"{section}.against" for section in ("comparisons", "equivalence", "spread")]
-    return not outline.random and not any(list(_places(outline.root, place)) for place in places)
+    keys = [f"{section}.against" for section in ("comparisons", "equivalence", "spread")]
+    return not outline.random and not any(list(places(outline.root, key)) for key in keys)
 
 
 def _too_large_for_equivalence(outline: Outline, _: MappingNode) -> bool:
     return (
         outline.alpha is not None
         and outline.alpha >= Fraction(1, 2)
-        and any(entry.entry("alpha") is None for entry in _mappings(outline.root, "equivalence"))
+        and any(entry.entry("alpha") is None for entry in mappings(outline.root, "equivalence"))
     )
 
 
 def _without_estimates(outline: Outline, mapping: MappingNode) -> bool:
     if outline.estimates is not False or outline.separate:
         return False
-    return outline.random or (outline.fixed and _word(mapping, "quantity") in _WITHIN)
+    return outline.random or (outline.fixed and word_of(mapping, "quantity") in _WITHIN)
 
 
 _WITHIN = tuple(quantity for quantity in QUANTITIES if quantity.startswith("repeatability-"))
@@ -161,6 +80,7 @@ _TOGETHER = (
 _HOLM = "use `adjust: holm` (`none` for a single row), or `across-responses: bonferroni`"
 
 RULES = (
+    *DATA_RULES,
     # methods against variances
     Rule(
         "comparisons.adjust",
@@ -208,7 +128,7 @@ RULES = (
     Rule(
         "comparisons.alternative",
         ("greater", "less"),
-        lambda _, mapping: _word(mapping, "adjust") == "scheffe",
+        lambda _, mapping: word_of(mapping, "adjust") == "scheffe",
         ", and scheffe is two-sided by construction",
         "use `two-sided`, or another method such as `holm` (`none` for a single comparison)",
     ),

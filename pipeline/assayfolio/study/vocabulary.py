@@ -1,4 +1,4 @@
-"""The keys and fixed words of a study definition and of a laboratory's settings: the one table of each.
+"""The keys and fixed words of a study definition and the files beside it: the one table of each.
 
 The readers, the suggestions for misspelt keys and the published JSON Schema all follow these tables.
 """
@@ -9,6 +9,8 @@ from assayfolio.study.plan import (
     AcrossResponses,
     Adjustment,
     Alternative,
+    Encoding,
+    MeasurementKey,
     NormalityCheck,
     Omnibus,
     OutlierTest,
@@ -22,6 +24,8 @@ STUDY_KEYS = (
     "title",
     "purpose",
     "data",
+    "measurement",
+    "worksheet",
     "design",
     "alpha",
     "comparisons",
@@ -36,16 +40,30 @@ STUDY_KEYS = (
 )
 DATA_KEYS = (
     "file",
+    "encoding",
+    "sheet",
+    "header-row",
+    "layout",
     "response",
     "factor",
     "unit",
+    "unit-column",
+    "convert",
     "order",
     "levels",
     "replicates",
+    "replicate-unit",
     "missing",
+    "missing-codes",
     "below-limit",
+    "limit-codes",
+    "above-limit",
     "decimal-mark",
+    "exclusions",
 )
+MEASUREMENT_KEYS: tuple[MeasurementKey, ...] = get_args(MeasurementKey)
+FACT_KEYS = ("column",)
+WORKSHEET_KEYS = ("seed", "block", "blocks", "item")
 DESIGN_KEYS = ("effects", "variances", "omnibus", "across-responses")
 COMPARISON_KEYS = (
     "name",
@@ -83,10 +101,14 @@ PRECISION_KEYS = ("estimate", "confidence", "varied", "conditions")
 POWER_KEYS = ("difference", "sigma", "target", "true-difference", "allocation", "response")
 CRITERION_KEYS = ("quantity", "at-most", "at-least", "unit", "level", "response")
 SIGN_OFF_KEYS = ("role", "meaning")
+EXCLUSION_FILE_KEYS = ("exclusions",)
+EXCLUSION_KEYS = ("row", "file", "value", "reason", "decided-by", "decided-at", "approved-by")
 LABORATORY_KEYS = ("laboratory", "address", "note", "accent", "paper", "require", "wait-seconds")
 
+Layout = Literal["long", "wide"]
 Missing = Literal["refuse", "omit"]
 BelowLimit = Literal["refuse", "omit", "half-limit", "limit"]
+AboveLimit = Literal["refuse", "omit", "limit"]
 DecimalMark = Literal["point", "comma"]
 Effects = Literal["fixed", "random"]
 Variances = Literal["pooled", "separate"]
@@ -102,6 +124,15 @@ Requirement = Literal[
     "order",
     "levels",
     "replicates",
+    "measurand",
+    "method",
+    "method-version",
+    "item",
+    "lot",
+    "instrument",
+    "operator",
+    "measured-at",
+    "supplied-by",
     "purpose",
     "comparisons",
     "equivalence",
@@ -112,8 +143,11 @@ Requirement = Literal[
     "sign-off",
 ]
 
+ENCODINGS: tuple[Encoding, ...] = get_args(Encoding)
+LAYOUTS: tuple[Layout, ...] = get_args(Layout)
 MISSING: tuple[Missing, ...] = get_args(Missing)
 BELOW_LIMIT: tuple[BelowLimit, ...] = get_args(BelowLimit)
+ABOVE_LIMIT: tuple[AboveLimit, ...] = get_args(AboveLimit)
 DECIMAL_MARKS: tuple[DecimalMark, ...] = get_args(DecimalMark)
 EFFECTS: tuple[Effects, ...] = get_args(Effects)
 VARIANCES: tuple[Variances, ...] = get_args(Variances)
@@ -153,5 +187,6 @@ LONGEST_TITLE = 200
 LONGEST_LABEL = 80
 LONGEST_SENTENCE = 200
 LONGEST_NOTE = 300
+LONGEST_REASON = 500
 LONGEST_PARAGRAPHS = 4000
 LONGEST_PATH = 255

@@ -4,9 +4,11 @@ from collections.abc import Mapping, Sequence
 from pathlib import Path
 
 from assayfolio.canonical import Json
-from assayfolio.errors import InputError
+from assayfolio.errors import InputError, MachineError
+from assayfolio.evidence.register import RECEIVED
 from assayfolio.evidence.trail import TrailReading, read_trail
 from assayfolio.evidence.verification import Verification, verify_lone_folios, verify_workspace
+from assayfolio.workflow.register import DataRegister, data_register
 from assayfolio.workflow.workspace import find_workspace
 
 ONE_SCREEN = 24
@@ -28,13 +30,32 @@ def verify_all(named_workspace: Path | None, folios: Sequence[Path]) -> Verifica
     return verify_workspace(workspace.runs, folios or None)
 
 
-def verification_lines(verification: Verification) -> list[str]:
-    """The numbered checks, for people."""
+def unfinished_data(named_workspace: Path | None) -> DataRegister | None:
+    """The state of every raw data file, for verification to mention; None where it cannot be told."""
+    try:
+        return register_of(named_workspace)[0]
+    except (InputError, MachineError):
+        return None  # no workspace, or no trail that can be read: the checks say so
+
+
+def register_of(named_workspace: Path | None) -> tuple[DataRegister, TrailReading]:
+    """The state of every raw data file of the workspace, and the trail that it was read from.
+
+    Raises InputError where there is no workspace, MachineError where the trail cannot be read.
+    """
+    workspace = find_workspace(named_workspace, Path())
+    reading = read_trail(workspace.runs)
+    return data_register(workspace, reading), reading
+
+
+def verification_lines(verification: Verification, information: Sequence[str] = ()) -> list[str]:
+    """The numbered checks, for people, and under them what else they should know."""
     width = max((len(outcome.outcome) for outcome in verification.outcomes), default=0)
     lines = []
     for outcome in verification.outcomes:
         lines.append(f"{outcome.number:<4}  {outcome.outcome:<{width}}  {outcome.subject}: {outcome.title}")
         lines.extend(f"      {'':<{width}}    {note}" for note in outcome.notes)
+    lines.extend(information)
     if len(verification.outcomes) > ONE_SCREEN:
         lines.extend(
             f"Failed: {outcome.number} {outcome.subject}: {outcome.title}"
@@ -93,6 +114,9 @@ def trail_lines(reading: TrailReading) -> list[str]:
         indent = " " * 33
         if entry.reason:
             lines.append(f"{indent}{entry.reason}")
+        if entry.action == RECEIVED:
+            path, digest = entry.details.get("path"), entry.details.get("sha256")
+            lines.append(f"{indent}{path}, SHA-256 {digest}")
         seal = entry.details.get("seal")
         if isinstance(seal, str):
             lines.append(f"{indent}seal {seal}")

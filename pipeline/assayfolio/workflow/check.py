@@ -48,7 +48,9 @@ class CheckedStudy:
                 *self._hint(),
             ]
         observed, counts = self.observations[0], self.counts()
-        layout = f"separator {observed.separator}, decimal {data.decimal_mark}"
+        raw = observed.files[0]
+        columns = f"sheet {raw.sheet}" if raw.separator is None else f"separator {raw.separator}"
+        layout = f"{columns}, decimal {data.decimal_mark}"
         each = f" of each of {len(self.observations)} responses" if len(self.observations) > 1 else ""
         listed = ", ".join(f"{level} {n}" for level, n in counts.items())
         return [
@@ -109,7 +111,7 @@ def check_study(workspace: Workspace, study_path: Path) -> CheckedStudy:
     Raises InputError with all faults of the first file that has any.
     """
     study, _ = read_plan(workspace, study_path, SeenFiles())
-    if not data_file_exists(study_path, study):
+    if not data_file_exists(workspace, study_path, study):
         folder = (study_path.resolve().parent / study.data.file).parent
         there = tuple(sorted(path.name for path in folder.iterdir())) if folder.is_dir() else ()
         return CheckedStudy(study, None, there)

@@ -9,17 +9,19 @@ from pathlib import Path
 from typing import Literal
 
 from assayfolio.canonical import sha256_hex
-from assayfolio.errors import DataError, Fault, InputError, Place, StudyError
-from assayfolio.evidence.folio import name_fault
+from assayfolio.errors import Fault, InputError, Place, StudyError
 from assayfolio.fit import check_fit
 from assayfolio.observations.reading import read_all_observations
 from assayfolio.observations.values import Observations
-from assayfolio.study.availability import check_available, check_required
+from assayfolio.study.availability import check_required
+from assayfolio.study.exclusions import read_exclusions
 from assayfolio.study.plan import Laboratory, StudyDefinition
 from assayfolio.study.reading import read_laboratory, read_study
-from assayfolio.workflow.workspace import Workspace, read_input, shown_path
+from assayfolio.workflow.raw_files import FOLDER, raw_files, read_raw_files, some_raw_file_exists
+from assayfolio.workflow.workspace import Workspace, read_input
+from assayfolio.worksheet.rows import check_worksheet
 
-Role = Literal["study definition", "raw data", "laboratory settings"]
+Role = Literal["study definition", "raw data", "exclusions", "laboratory settings"]
 
 
 PLACEHOLDER = "Name of your laboratory"
@@ -73,8 +75,9 @@ def read_plan(workspace: Workspace, study_path: Path, seen: SeenFiles) -> tuple[
     _require_name(laboratory, lab_file)
     study = read_study(content, study_file)
     seen.study_id = study.study
-    check_available(study)
     check_required(study, laboratory)
+    if study.worksheet is not None:
+        check_worksheet(study)
     return study, laboratory
 
 
@@ -86,36 +89,44 @@ def _require_name(laboratory: Laboratory, lab_file: str) -> None:
 
 def read_intake(workspace: Workspace, study_path: Path, seen: SeenFiles) -> Intake:
     """Read and validate plan and data, and make sure that the one fits the other."""
-    study, laboratory = read_plan(workspace, study_path, seen)
-    data_path = study_path.resolve().parent / study.data.file
-    fault = name_fault(f"data/inputs/{data_path.name}")
-    if fault is not None:
-        advice = "rename the file"
-        raise DataError(
-            "The data file cannot be kept under its name.",
-            (Fault(Place(shown_path(data_path)), f"{data_path.name!r}: {fault}", advice),),
-        )
-    content = read_input(workspace, data_path, "data file")
-    data_file = workspace.name_of(data_path.resolve())
-    seen.files.append(InputFile("raw data", data_file, f"data/inputs/{data_path.name}", content))
+    study, laboratory = read_files(workspace, study_path, seen)
     return validated(study, laboratory, tuple(seen.files))
+
+
+def read_files(workspace: Workspace, study_path: Path, seen: SeenFiles) -> tuple[StudyDefinition, Laboratory]:
+    """Read and validate the plan, and read the files that it names; the data are not looked into yet.
+
+    Raises InputError where the plan is faulty or a file cannot be read; `seen` then holds those that were.
+    """
+    study, laboratory = read_plan(workspace, study_path, seen)
+    paths = raw_files(workspace, study_path, study.data)
+    for path, (name, content) in zip(paths, read_raw_files(workspace, paths), strict=True):
+        seen.files.append(InputFile("raw data", name, f"{FOLDER}/{path.name}", content))
+    if study.data.exclusions is not None:
+        exclusions = study_path.resolve().parent / study.data.exclusions
+        content = read_input(workspace, exclusions, "exclusions file")
+        name = workspace.name_of(exclusions.resolve())
+        seen.files.append(InputFile("exclusions", name, "data/context/exclusions.yaml", content))
+    return study, laboratory
 
 
 def validated(study: StudyDefinition, laboratory: Laboratory, files: tuple[InputFile, ...]) -> Intake:
     """The intake made of a plan and its files, the raw data among them."""
-    raw = next(file for file in files if file.role == "raw data")
-    observations = read_all_observations(raw.content, study.data, raw.path)
+    raw = [(file.path, file.content) for file in files if file.role == "raw data"]
+    exclusions = [
+        exclusion
+        for file in files
+        if file.role == "exclusions"
+        for exclusion in read_exclusions(file.content, file.path)
+    ]
+    observations = read_all_observations(raw, study.data, study.measurement, exclusions)
     check_fit(study, observations)
     return Intake(study, laboratory, observations, files)
 
 
-def data_file_exists(study_path: Path, study: StudyDefinition) -> bool:
-    """Whether the data file of `study` is there yet; a plan can be checked before it is."""
-    path = study_path.resolve().parent / study.data.file
-    if path.is_symlink() and not path.exists():
-        fault = Fault(Place(shown_path(path)), "is a symbolic link that leads nowhere")
-        raise DataError("The data file cannot be read.", (fault,))
-    return path.exists()
+def data_file_exists(workspace: Workspace, study_path: Path, study: StudyDefinition) -> bool:
+    """Whether any data file of `study` is there yet; a plan can be checked before it is."""
+    return some_raw_file_exists(workspace, study_path, study.data)
 
 
 def folio_intake(folio: Path, inputs: tuple[tuple[Role, str, str], ...]) -> Intake:

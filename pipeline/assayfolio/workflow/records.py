@@ -10,7 +10,15 @@ from assayfolio.evidence.history import run_name
 from assayfolio.evidence.trail import TrailHead
 from assayfolio.findings import Findings
 from assayfolio.findings_document import findings_bytes
-from assayfolio.report.facts import AttachedFile, InputFacts, ReportInput, RunFacts
+from assayfolio.report.facts import (
+    AttachedFile,
+    ElsewhereFacts,
+    ExecutionFacts,
+    InputFacts,
+    PlanVersion,
+    ReportInput,
+    RunFacts,
+)
 from assayfolio.version import VERSION
 from assayfolio.workflow.intake import Intake
 from assayfolio.workflow.surroundings import Surroundings
@@ -90,8 +98,13 @@ def requirements_lock() -> bytes:
     return (files("assayfolio") / "requirements.lock").read_bytes()
 
 
-def run_facts(record: Mapping[str, Any], environment: Mapping[str, Any], findings_sha256: str) -> RunFacts:
-    """The facts that a report prints, from the run's record and the environment's."""
+def run_facts(
+    record: Mapping[str, Any],
+    environment: Mapping[str, Any],
+    history: Mapping[str, Any],
+    findings_sha256: str,
+) -> RunFacts:
+    """The facts that a report prints, from the records of the run, its environment and earlier executions."""
     versions = {package["name"]: package["version"] for package in environment["packages"]}
     return RunFacts(
         study=record["study"],
@@ -112,7 +125,20 @@ def run_facts(record: Mapping[str, Any], environment: Mapping[str, Any], finding
         software=tuple((name, versions[name]) for name in NAMED_SOFTWARE if name in versions),
         native_libraries=_native_libraries(environment),
         self_check=record["self_check"],
+        executions=ExecutionFacts(
+            number=history["execution"],
+            plan=_version_facts(history),
+            tried=tuple(_version_facts(use) for use in history["earlier"]),
+            elsewhere=tuple(
+                ElsewhereFacts(use["study"], use["run"], use["data"] == "all")
+                for use in history["also_used_by"]
+            ),
+        ),
     )
+
+
+def _version_facts(use: Mapping[str, Any]) -> PlanVersion:
+    return PlanVersion(use["plan"], use["exclusions"])
 
 
 def _python_line(environment: Mapping[str, Any]) -> str:
@@ -160,6 +186,7 @@ def _attachments(intake: Intake, findings: Findings) -> Sequence[AttachedFile]:
     ]
     if len(raw.content) <= ATTACH_UP_TO_BYTES:
         name = Path(raw.folio_path).name
-        media_type = "text/tab-separated-values" if intake.observations[0].separator == "tab" else "text/csv"
+        separator = intake.observations[0].files[0].separator
+        media_type = "text/tab-separated-values" if separator == "tab" else "text/csv"
         listed.append(AttachedFile(name, media_type, "Raw data as received", "Source", raw.content))
     return listed

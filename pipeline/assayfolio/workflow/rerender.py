@@ -18,6 +18,7 @@ from assayfolio.findings_document import findings_bytes
 from assayfolio.report.render import render_report
 from assayfolio.workflow.intake import folio_intake
 from assayfolio.workflow.records import RUN_FORMAT, report_input, run_facts
+from assayfolio.workflow.register import HISTORY_FILE
 
 
 @dataclass(frozen=True, slots=True)
@@ -39,13 +40,14 @@ def rerender(folio: Path) -> RerenderedReport:
     if record.get("format") != RUN_FORMAT or record.get("outcome") != "completed":
         raise InputError(f"{folio} is not the folio of a completed run of the format {RUN_FORMAT}.")
     environment = _record(folio, "environment.json")
+    history = _record(folio, HISTORY_FILE.removeprefix("data/"))
     inputs = tuple((item["role"], item["path"], item["folio_path"]) for item in record["inputs"])
     intake = folio_intake(folio, inputs)
     findings = evaluate(intake.study, intake.observations)
     document = findings_bytes(findings)
     if sha256_hex(document) != record["findings_sha256"]:
         raise ChangedError(f"{folio}: the findings computed now differ from those archived.")
-    facts = run_facts(record, environment, sha256_hex(document))
+    facts = run_facts(record, environment, history, sha256_hex(document))
     pdf = render_report(report_input(intake, findings, facts)).pdf
     return RerenderedReport(pdf, sha256_hex(pdf) == record["report_sha256"])
 

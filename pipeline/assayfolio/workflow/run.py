@@ -1,14 +1,14 @@
 """A run, from study definition and raw data to a sealed folio, in numbered steps.
 
-1 read and validate every input, 2 allot the run number, 3 check the installed code, 4 compute the findings
-and hold them against the second route, 5 render the report, 6 stage the folio and read it back, 7 seal it:
-enter the seal in the trail, then rename the folder into place. Each step is entered in the audit trail as it
-is done. A fault in step 1 leaves a `refused` entry and no number; a failure after step 2 keeps its number and
-leaves a folio with the reason.
+1 read every input, enter raw data that were not seen before, and validate, 2 allot the run number, 3 check
+the installed code, 4 compute the findings and hold them against the second route, 5 render the report, 6
+stage the folio and read it back, 7 seal it: enter the seal in the trail, then rename the folder into place.
+Each step is entered in the audit trail as it is done. A fault in step 1 leaves a `refused` entry and no
+number; a failure after step 2 keeps its number and leaves a folio with the reason.
 """
 
-from collections.abc import Mapping
-from contextlib import ExitStack
+from collections.abc import Iterator, Mapping
+from contextlib import ExitStack, contextmanager
 from dataclasses import dataclass, field
 from pathlib import Path
 
@@ -27,7 +27,7 @@ from assayfolio.report.loading import load_renderer
 from assayfolio.report.render import render_report
 from assayfolio.study.plan import SignOff
 from assayfolio.workflow.failure import failure_text
-from assayfolio.workflow.intake import Intake, SeenFiles, read_intake
+from assayfolio.workflow.intake import Intake, SeenFiles, read_files, validated
 from assayfolio.workflow.records import (
     bag_info,
     completed_record,
@@ -38,6 +38,13 @@ from assayfolio.workflow.records import (
     run_record,
 )
 from assayfolio.workflow.recovery import acknowledge_interruptions, found_trail
+from assayfolio.workflow.register import (
+    HISTORY_FILE,
+    enter_received,
+    execution_history,
+    executions_record,
+    input_details,
+)
 from assayfolio.workflow.second_route import require_agreement, second_route_record
 from assayfolio.workflow.selfcheck import self_check
 from assayfolio.workflow.steps import Progress, Step
@@ -76,6 +83,7 @@ class _Run:
     head_at_start: TrailHead
     progress: Progress
     entries: list[TrailEntry]
+    history: Mapping[str, Json] = field(default_factory=dict)
     reached: Step = Step.ALLOT
     record: dict[str, Json] = field(default_factory=dict)
     payload: dict[str, bytes] = field(default_factory=dict)
@@ -111,15 +119,7 @@ def run_study(workspace: Workspace, study_path: Path, progress: Progress) -> Run
     (its folio is sealed with the reason).
     """
     surroundings = look_around()
-    seen = SeenFiles()
-    try:
-        intake = read_intake(workspace, study_path, seen)
-    except AssayfolioError as error:
-        try:
-            _refuse(workspace, study_path, seen, error)
-        except AssayfolioError as second:
-            raise MachineError(f"{error}\nThe refusal could not be entered in the trail: {second}") from error
-        raise
+    intake = _read(workspace, study_path, surroundings)
     progress(Step.READ, _read_words(intake.observations))
     with ExitStack() as held:
         run = _allot(workspace, intake, surroundings, progress, held)
@@ -128,6 +128,30 @@ def run_study(workspace: Workspace, study_path: Path, progress: Progress) -> Run
             return _seal_completed(run, findings)
         except BaseException as error:
             raise _seal_failed(run, error) from error
+
+
+def _read(workspace: Workspace, study_path: Path, surroundings: Surroundings) -> Intake:
+    """Read every input, enter the raw data that are new, then validate: no file is looked into untraced."""
+    seen = SeenFiles()
+    with _refusal_entered(workspace, study_path, seen):
+        study, laboratory = read_files(workspace, study_path, seen)
+    with open_trail(workspace.runs, surroundings.actor, utc_now, laboratory.wait_seconds) as trail:
+        found_trail(workspace, trail)
+        enter_received(trail, seen)
+    with _refusal_entered(workspace, study_path, seen):
+        return validated(study, laboratory, tuple(seen.files))
+
+
+@contextmanager
+def _refusal_entered(workspace: Workspace, study_path: Path, seen: SeenFiles) -> Iterator[None]:
+    try:
+        yield
+    except AssayfolioError as error:
+        try:
+            _refuse(workspace, study_path, seen, error)
+        except AssayfolioError as second:
+            raise MachineError(f"{error}\nThe refusal could not be entered in the trail: {second}") from error
+        raise
 
 
 def _read_words(observations: tuple[Observations, ...]) -> str:
@@ -140,13 +164,14 @@ def _refuse(workspace: Workspace, study_path: Path, seen: SeenFiles, error: Assa
     subject = seen.study_id or _relative_name(workspace, study_path)
     details: dict[str, Json] = {
         "step": int(Step.READ),
-        "inputs": {file.path: file.sha256 for file in seen.files},
+        **input_details(seen.files),
         "faults": [_holdable(str(fault)) for fault in error.faults] if isinstance(error, InputError) else [],
         "more_faults": error.hidden if isinstance(error, InputError) else 0,
     }
     reason = error.headline if isinstance(error, InputError) else str(error)
     with open_trail(workspace.runs, account_name(), utc_now, DEFAULT_WAIT_SECONDS) as trail:
         found_trail(workspace, trail)
+        enter_received(trail, seen)
         trail.append("refused", _holdable(subject), _holdable(reason), details)
 
 
@@ -171,17 +196,19 @@ def _allot(
         run = _Run(workspace, intake, surroundings, number, trail.head, progress, [])
         # The folio's lock first: an allotted run without it counts as interrupted.
         held.enter_context(folio_lock(run.folder, run.name))
-        inputs = {file.path: file.sha256 for file in intake.files}
-        details: dict[str, Json] = {"step": int(Step.ALLOT), "number": number, "inputs": inputs}
+        details = {"step": int(Step.ALLOT), "number": number, **input_details(intake.files)}
         run.entries.append(trail.append("allotted", run.subject, None, details))
-    progress(Step.ALLOT, run.subject)
+        run.history = execution_history(trail, run.subject)
+    progress(Step.ALLOT, f"{run.subject}, execution {run.history['execution']} on these data")
     return run
 
 
 def _compute_and_render(run: _Run) -> Findings:
     run.payload = {file.folio_path: file.content for file in run.intake.files}
     run.payload["data/requirements.lock"] = requirements_lock()
+    run.payload[HISTORY_FILE] = canonical_bytes(run.history)
     run.record = run_record(run.intake, run.surroundings, run.number, run.head_at_start)
+    run.record["executions"] = executions_record(run.history)
     load_renderer(run.intake.laboratory)
     environment = environment_record()
     run.payload["data/environment.json"] = canonical_bytes(environment)
@@ -199,7 +226,7 @@ def _compute_and_render(run: _Run) -> Findings:
     run.progress(Step.COMPUTE, f"findings {sha256_hex(document)[:16]}")
 
     run.record["trail_head_of_report"] = {"seq": head.seq, "sha256": head.sha256}
-    facts = run_facts(run.record, environment, sha256_hex(document))
+    facts = run_facts(run.record, environment, run.history, sha256_hex(document))
     report = render_report(report_input(run.intake, findings, facts))
     run.payload["data/report.pdf"] = report.pdf
     run.payload |= {f"data/figures/{name}": content for name, content in report.figures}

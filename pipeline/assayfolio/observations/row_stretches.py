@@ -1,0 +1,180 @@
+"""A long text cut into stretches of rows: those in which every line is one row, and those that need care.
+
+In the first kind columns can be taken as wholes. The second kind goes through `rows`, line by line, which
+sees further lines as far as it asks for them.
+"""
+
+from collections import deque
+from collections.abc import Callable, Iterator, Sequence
+from concurrent.futures import Future, ThreadPoolExecutor
+from typing import TypeVar, overload
+
+import numpy as np
+
+from assayfolio.observations.long_text import line_count, plain_lines
+from assayfolio.observations.rows import MAX_CELL, Broken, Row, rows
+
+_MARK, _LINE_END = ord('"'), ord("\n")
+
+_AHEAD = 2
+_LONGEST_REST = 1 << 19
+
+Taken = TypeVar("Taken")
+
+
+class Feed:
+    """The text that has not been taken yet: `data` holds whole lines, the first of them number `line`.
+
+    `fill` sees to it that it holds `least` bytes, as long as there are so many.
+    """
+
+    def __init__(self, stretches: Iterator[bytes], data: bytes, line: int, least: int) -> None:
+        self.data = data
+        self.line = line
+        self.ended = False
+        self._stretches = stretches
+        self._least = least
+
+    def next(self) -> bytes:
+        """The next stretch; nothing at the end, which is then known."""
+        stretch = next(self._stretches, None)
+        if stretch is None:
+            self.ended = True
+            return b""
+        return plain_lines(stretch)
+
+    def fill(self) -> bool:
+        """Take more data where little is left; False where there is none."""
+        while len(self.data) < self._least and not self.ended:
+            self.data += self.next()
+        return bool(self.data)
+
+    def drop(self, size: int) -> None:
+        """Let go of `size` bytes, whole lines."""
+        self.line += line_count(self.data[:size])
+        self.data = self.data[size:]
+
+    def put_back(self, data: bytes, line: int) -> None:
+        """Put `data`, the lines from number `line` on, before what has not been taken yet."""
+        self.data = data + self.data
+        self.line = line
+
+
+class Lines(Sequence[str]):
+    """Lines by their numbers in the file, from number `first` on; more come out of `feed` as they are asked for."""
+
+    def __init__(self, data: bytes, first: int, feed: Feed | None = None) -> None:
+        self.first = first
+        self.at_hand = _split(data)
+        self._feed = feed
+
+    def __len__(self) -> int:
+        # Until the text has ended there is always a line more at hand than was ever asked for.
+        return self.first + len(self.at_hand)
+
+    @overload
+    def __getitem__(self, at: int) -> str: ...
+
+    @overload
+    def __getitem__(self, at: slice) -> Sequence[str]: ...
+
+    def __getitem__(self, at: int | slice) -> str | Sequence[str]:
+        if isinstance(at, slice):
+            raise TypeError("lines are given one by one")
+        index = at - self.first
+        while self._feed is not None and not self._feed.ended and index >= len(self.at_hand) - 1:
+            self.at_hand.extend(_split(self._feed.next()))
+        return self.at_hand[index]
+
+
+def go_through(
+    feed: Feed,
+    separator: str,
+    read: Callable[[bytes], Taken | None],
+    by_columns: Callable[[Taken, bytes, int], None],
+    by_rows: Callable[[Iterator[Row | Broken], "Lines"], None],
+) -> None:
+    """Take everything in `feed`, in its order: stretches of plain rows by columns, where possible, others by rows.
+
+    `read` is given a stretch in which every line is one row; it may run in a thread beside, and says None where
+    it cannot take it. `by_columns` gets what it made of it, the stretch, and the number of its first line;
+    `by_rows` the rows of the others, with the lines that they stand on.
+    """
+    ahead: deque[tuple[bytes, int, Future[Taken | None]]] = deque()
+    with ThreadPoolExecutor(1) as beside:
+        while True:
+            while len(ahead) < _AHEAD and feed.fill():
+                size = plain_rows(feed.data, separator)
+                if not size:
+                    break
+                body, line = feed.data[:size], feed.line
+                ahead.append((body, line, beside.submit(read, body)))
+                feed.drop(size)
+            if ahead:
+                body, line, reading = ahead.popleft()
+                taken = reading.result()
+                if taken is not None:
+                    by_columns(taken, body, line)
+                    continue
+                feed.put_back(b"".join((body, *(later for later, _, _ in ahead))), line)
+                ahead.clear()
+            if not feed.data:
+                return
+            _by_rows(feed, separator, by_rows)
+
+
+def _by_rows(
+    feed: Feed, separator: str, by_rows: Callable[[Iterator[Row | Broken], "Lines"], None]
+) -> None:
+    """Take the rows that begin in the data at hand one by one."""
+    lines = Lines(feed.data, feed.line, feed)
+    end = lines.first + len(lines.at_hand)
+    stopped: list[int] = []
+    by_rows(_rows_until(lines, separator, end, stopped), lines)
+    rest = lines.at_hand[stopped[0] - lines.first :] if stopped else []
+    feed.data = "".join(f"{line}\n" for line in rest).encode()
+    feed.line = stopped[0] if stopped else lines.first + len(lines.at_hand)
+
+
+def _rows_until(lines: Lines, separator: str, end: int, stopped: list[int]) -> Iterator[Row | Broken]:
+    """The rows that begin before line `end` (from zero); then `stopped` holds the line of the one below."""
+    for row in rows(lines, separator, lines.first):
+        if row.line > end:
+            stopped.append(row.line - 1)
+            return
+        yield row
+
+
+def _split(data: bytes) -> list[str]:
+    return data.decode("utf-8").split("\n")[:-1]
+
+
+def plain_rows(data: bytes, separator: str) -> int:
+    """The size of the longest beginning of `data` in which every line is one row, as RFC 4180 writes them.
+
+    0 where there is none, or a line could hold a cell that is too long. A quotation mark may stand where it
+    opens or closes a cell, or doubled inside of one; rows on several lines are none of these.
+    """
+    half = MAX_CELL // 2  # a longer line has no end in one of the halves that it covers
+    if any(data.find(b"\n", at, at + half) < 0 for at in range(0, len(data) - half, half)):
+        return 0
+    if b'"' not in data:
+        return len(data)
+    characters = np.frombuffer(data, dtype=np.uint8)
+    marks = np.flatnonzero(characters == _MARK)
+    opening, closing = marks[0::2], marks[1::2]
+    if len(opening) > len(closing):
+        end = data.rfind(b"\n", 0, int(opening[-1])) + 1
+        return plain_rows(data[:end], separator) if end and len(data) - end < _LONGEST_REST else 0
+    beside = np.zeros(256, dtype=np.bool_)
+    beside[[_LINE_END, ord(separator)]] = True
+    opens = beside[characters[opening - 1]]
+    opens[0] |= opening[0] == 0
+    opens[1:] |= opening[1:] == closing[:-1] + 1
+    closes = beside[characters[closing + 1]]  # a line end follows the last character
+    closes[:-1] |= closing[:-1] + 1 == opening[1:]
+    if not (opens.all() and closes.all()):
+        return 0
+    ends = np.flatnonzero(characters == _LINE_END)
+    inside = np.searchsorted(ends, closing) > np.searchsorted(ends, opening)
+    return 0 if inside.any() else len(data)
