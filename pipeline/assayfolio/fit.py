@@ -48,7 +48,7 @@ def _layout_faults(observed: Observations) -> Iterator[Fault]:
     for counts in empty:
         found = f"no value of {observed.response!r} is left at level {counts.level!r}: {_left_out(counts)}"
         yield Fault(place, found, "an analysis needs a value at every level")
-    if not empty and len(observed.rows) == len(observed.levels):
+    if not empty and observed.n == len(observed.levels):
         found = "one value at every level: nothing varies within the levels, so no error can be estimated"
         yield Fault(place, found, "at least one level needs two or more values")
 

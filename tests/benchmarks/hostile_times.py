@@ -4,8 +4,8 @@
 
     python tests/benchmarks/hostile_times.py
 
-Each file is made in a process of its own, which then reads it. The memory is the peak of that process while it
-reads, above what it had before; the file itself is not part of it.
+Each file is made in a process of its own, which then reads it. The memory is the peak of that process while
+it reads, above what it had before; the file itself is not part of it.
 """
 
 import resource

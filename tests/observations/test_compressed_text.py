@@ -53,14 +53,24 @@ def test_a_damaged_file_is_refused() -> None:
     assert "damaged (unknown header flags set)" in refused(bytes(content))
 
 
-@pytest.mark.parametrize("behind", [b"\x00", b"more", gzip.compress(b"c,1.30\n")], ids=["nul", "text", "part"])
-def test_bytes_behind_the_end_are_refused_since_readers_differ_in_what_they_make_of_them(behind: bytes) -> None:
-    assert refused(gzip.compress(TEXT) + behind) == f"{len(behind):,} bytes behind the end of the compressed text"
+@pytest.mark.parametrize(
+    "behind", [b"\x00", b"more", gzip.compress(b"c,1.30\n")], ids=["nul", "text", "part"]
+)
+def test_bytes_behind_the_end_are_refused_since_readers_differ_in_what_they_make_of_them(
+    behind: bytes,
+) -> None:
+    assert (
+        refused(gzip.compress(TEXT) + behind)
+        == f"{len(behind):,} bytes behind the end of the compressed text"
+    )
 
 
 def test_a_file_that_inflates_beyond_the_ratio_is_refused() -> None:
     content = gzip.compress(b"g,y\n" + b"a,1.0\n" * 10_000_000)
-    assert refused(content) == f"it inflates to more than {MOST_RATIO} times its size, which recorded values do not"
+    assert (
+        refused(content)
+        == f"it inflates to more than {MOST_RATIO} times its size, which recorded values do not"
+    )
 
 
 def test_a_small_file_may_inflate_as_far_as_it_likes() -> None:

@@ -1,4 +1,4 @@
-"""The encoding of a text is the one that the plan declares; any other is refused with the likely one named."""
+"""A text is in the encoding that the plan declares; any other is refused with the likely one named."""
 
 from dataclasses import replace
 

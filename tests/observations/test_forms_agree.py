@@ -1,4 +1,4 @@
-"""The same data in every form of file gives the same values, levels and order, and the same findings, byte for byte."""
+"""The same data in every form of file give the same values, levels and order, and the same findings."""
 
 import gzip
 from collections.abc import Callable
@@ -6,14 +6,14 @@ from dataclasses import replace
 
 import pytest
 from openpyxl.worksheet.worksheet import Worksheet
-from support.studies import study_of
-from support.workbooks import by_hand, workbook
 
 from assayfolio.evaluation.apply import evaluate
 from assayfolio.findings_document import findings_bytes
 from assayfolio.observations.reading import read_all_observations
 from assayfolio.observations.values import Observations
 from assayfolio.study.plan import DataPlan, StudyDefinition
+from support.studies import study_of
+from support.workbooks import by_hand, workbook
 
 LEVELS = ("lot µ", "=kit", "c, d")
 VALUES = {
@@ -63,8 +63,10 @@ def as_text(sheet: Worksheet) -> None:
 
 
 def stored_with_17_digits() -> bytes:
-    """A workbook whose numbers are stored as some programs store them, and texts in the list of shared ones."""
-    cells = [f"<c t='s'><v>{LEVELS.index(level)}</v></c><c><v>{float(text):.17g}</v></c>" for level, text in ROWS]
+    """A workbook whose numbers are stored with 17 digits, and its texts in the list of shared ones."""
+    cells = [
+        f"<c t='s'><v>{LEVELS.index(level)}</v></c><c><v>{float(text):.17g}</v></c>" for level, text in ROWS
+    ]
     head = "<row><c t='s'><v>3</v></c><c t='s'><v>4</v></c></row>"
     return by_hand(head + "".join(f"<row>{row}</row>" for row in cells), shared=[*LEVELS, "lot", "content"])
 
@@ -95,7 +97,9 @@ FORMS: dict[str, tuple[Callable[[], Files], dict[str, object]]] = {
         lambda: [
             (
                 "d.xlsx",
-                workbook([list(LEVELS), *([float(VALUES[x][at]) for x in LEVELS] for at in range(4))], as_text),
+                workbook(
+                    [list(LEVELS), *([float(VALUES[x][at]) for x in LEVELS] for at in range(4))], as_text
+                ),
             )
         ],
         {"layout": "wide"},
@@ -103,7 +107,10 @@ FORMS: dict[str, tuple[Callable[[], Files], dict[str, object]]] = {
     "two files": (
         lambda: [
             ("run-1.csv", "".join(lines(",").splitlines(keepends=True)[:8]).encode()),
-            ("run-2.csv", "".join([lines(",").splitlines(keepends=True)[i] for i in (0, *range(8, 13))]).encode()),
+            (
+                "run-2.csv",
+                "".join([lines(",").splitlines(keepends=True)[i] for i in (0, *range(8, 13))]).encode(),
+            ),
         ],
         {},
     ),

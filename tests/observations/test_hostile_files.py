@@ -13,11 +13,11 @@ from collections.abc import Callable
 from dataclasses import dataclass, replace
 
 import pytest
-from support.workbooks import MAIN, SHEET, STRINGS, by_hand, packed, parts_of, with_part, workbook
 
 from assayfolio.errors import DataError
 from assayfolio.observations.reading import read_observations
 from assayfolio.study.plan import DataPlan
+from support.workbooks import MAIN, SHEET, STRINGS, by_hand, packed, parts_of, with_part, workbook
 
 PLAN = DataPlan("data/d.csv", ("y",), "g", levels=("a", "b"))
 OPEN = replace(PLAN, levels=None)
@@ -144,8 +144,10 @@ def doctype(part: str) -> Callable[[], bytes]:
 def outside_entity() -> bytes:
     """A workbook whose sheet refers to a file of the machine."""
     declaration = "<!DOCTYPE x [<!ENTITY secret SYSTEM 'file:///etc/passwd'>]>"
-    body = f"<sheetData><row><c t='str'><v>&secret;</v></c></row></sheetData>"
-    return with_part(workbook(BOOK), SHEET, f"{declaration}<worksheet xmlns='{MAIN}'>{body}</worksheet>".encode())
+    body = "<sheetData><row><c t='str'><v>&secret;</v></c></row></sheetData>"
+    return with_part(
+        workbook(BOOK), SHEET, f"{declaration}<worksheet xmlns='{MAIN}'>{body}</worksheet>".encode()
+    )
 
 
 def leaving() -> bytes:
@@ -188,7 +190,12 @@ TEXTS = [
     text("a million cells in a row", with_row("a,1" + "," * 1_000_000), ":3:1", "more than 2,000 columns"),
     text("two million rows", "g,y\n" + "a,1\n" * 2_000_000, "", "2,000,001 lines, more than 1,000,000"),
     text("nearly a million faults", "g,y\n" + "a,x\n" * 900_000, ":2:3", "`x`: not a number"),
-    text("nearly a million levels", "g,y\n" + "".join(f"c{n},1\n" for n in range(900_000)), ":5002:1", "column `g` holds more than 5,000 levels"),
+    text(
+        "nearly a million levels",
+        "g,y\n" + "".join(f"c{n},1\n" for n in range(900_000)),
+        ":5002:1",
+        "column `g` holds more than 5,000 levels",
+    ),
     raw("65 MB", lambda: b"g,y\n" + b"a" * 65_000_000, "", "65,000,004 bytes, more than 64,000,000"),
     text("a duplicated header", "g,y,y\na,1,2\n", ":1:5", "the same name as column 2"),
     text("a duplicated header but for a blank", "g,y,y \na,1,2\n", ":1:5", "the same name as column 2"),
@@ -211,7 +218,9 @@ COMPRESSED = [
     raw("a bomb", lambda: deflated(31), "", "inflates to more than", "d.csv.gz"),
     raw("a bomb in a bomb", lambda: gzip.compress(gzip.compress(b"\0" * 60_000_000)), "", "gzip", "d.csv.gz"),
     raw("a cut file", lambda: gzip.compress(GOOD.encode())[:-9], "", "was cut short", "d.csv.gz"),
-    raw("text behind the end", lambda: gzip.compress(GOOD.encode()) + b"a,1", "", "3 bytes behind", "d.csv.gz"),
+    raw(
+        "text behind the end", lambda: gzip.compress(GOOD.encode()) + b"a,1", "", "3 bytes behind", "d.csv.gz"
+    ),
     raw("no gzip", lambda: GOOD.encode(), "", "not a file compressed with gzip", "d.csv.gz"),
     raw("a header alone", lambda: b"\x1f\x8b", "", "was cut short", "d.csv.gz"),
 ]
@@ -234,9 +243,24 @@ BOOKS = [
     book("entities that multiply in the styles", doctype("xl/styles.xml"), "", "document type declaration"),
     book("an entity from outside", outside_entity, "", "has a document type declaration"),
     book("a sheet outside the archive", leaving, "", "holds no cells"),
-    book("XML that ends early", lambda: with_part(workbook(BOOK), SHEET, b"<worksheet><sheetData>"), "", "no well-formed"),
-    book("elements in elements", lambda: with_part(workbook(BOOK), SHEET, b"<a>" * 300_000), "", "no well-formed XML"),
-    book("five million elements", lambda: with_part(workbook(BOOK), SHEET, b"<c/>" * 5_000_000), "", "inflates to more"),
+    book(
+        "XML that ends early",
+        lambda: with_part(workbook(BOOK), SHEET, b"<worksheet><sheetData>"),
+        "",
+        "no well-formed",
+    ),
+    book(
+        "elements in elements",
+        lambda: with_part(workbook(BOOK), SHEET, b"<a>" * 300_000),
+        "",
+        "no well-formed XML",
+    ),
+    book(
+        "five million elements",
+        lambda: with_part(workbook(BOOK), SHEET, b"<c/>" * 5_000_000),
+        "",
+        "inflates to more",
+    ),
     book(
         "four million tags",
         lambda: with_part(by_hand(""), SHEET, tags(4_000_000), zipfile.ZIP_STORED),
@@ -249,16 +273,33 @@ BOOKS = [
         "",
         "row 1 below row",
     ),
-    book("texts of 100 MB", lambda: with_part(by_hand(HEAD), STRINGS, texts(), zipfile.ZIP_STORED), "", "bytes"),
-    book("a stored cell of 60 MB", sheet_of(f"<row><c t='str'><v>{'x' * 60_000_000}</v></c></row>"), "", "200 times"),
+    book(
+        "texts of 100 MB", lambda: with_part(by_hand(HEAD), STRINGS, texts(), zipfile.ZIP_STORED), "", "bytes"
+    ),
+    book(
+        "a stored cell of 60 MB",
+        sheet_of(f"<row><c t='str'><v>{'x' * 60_000_000}</v></c></row>"),
+        "",
+        "200 times",
+    ),
     book(
         "a cell of 20,000 characters",
         sheet_of(f"{HEAD}<row><c t='str'><v>{'ab' * 10_000}</v></c></row>"),
         ":2:1",
         "a cell of more than 10,000 characters",
     ),
-    book("a claim of all cells", lambda: workbook([["g", "z"]], lambda s: s.cell(1_048_576, 1, "a") and None), ":1:1", "no column `y`"),
-    book("a value in the last column", sheet_of(HEAD + "<row><c r='XFD2'><v>1</v></c></row>"), ":2:16384", "more than 2,000 columns"),
+    book(
+        "a claim of all cells",
+        lambda: workbook([["g", "z"]], lambda s: s.cell(1_048_576, 1, "a") and None),
+        ":1:1",
+        "no column `y`",
+    ),
+    book(
+        "a value in the last column",
+        sheet_of(HEAD + "<row><c r='XFD2'><v>1</v></c></row>"),
+        ":2:16384",
+        "more than 2,000 columns",
+    ),
     book("a column beyond the last", sheet_of("<row><c r='ZZZ1'><v>1</v></c></row>"), "", DAMAGED),
     book("a row beyond the last", sheet_of("<row r='9999999'><c><v>1</v></c></row>"), "", DAMAGED),
     book("a row of a thousand digits", sheet_of(f"<row r='{'9' * 1000}'/>"), "", DAMAGED),
@@ -266,14 +307,27 @@ BOOKS = [
     book("a cell that stands twice", sheet_of("<row><c r='A1'/><c r='A1'/></row>"), "", "behind column 1"),
     book("a cell of another row", sheet_of("<row r='1'><c r='A7'/></row>"), "", "`A7` in row 1"),
     book("a text that is not there", sheet_of("<row><c t='s'><v>7</v></c></row>"), ":1:1", "does not hold"),
-    book("a stored exponent bomb", sheet_of(HEAD + "<row><c t='str'><v>a</v></c><c><v>1e999999999</v></c></row>"), ":2:2", "none"),
-    book("a formula without value", lambda: workbook([["g", "y"], ["a", '=WEBSERVICE("http://x")']]), ":2:2", "a formula without"),
+    book(
+        "a stored exponent bomb",
+        sheet_of(HEAD + "<row><c t='str'><v>a</v></c><c><v>1e999999999</v></c></row>"),
+        ":2:2",
+        "none",
+    ),
+    book(
+        "a formula without value",
+        lambda: workbook([["g", "y"], ["a", '=WEBSERVICE("http://x")']]),
+        ":2:2",
+        "a formula without",
+    ),
     book("an error value", lambda: workbook([["g", "y"], ["a", "#REF!"]]), ":2:2", "`#REF!`: not a number"),
-    book("a level that overrides direction", lambda: workbook([["g", "y"], ["a\u202eb", 1]]), ":2:1", "U+202E"),
+    book(
+        "a level that overrides direction", lambda: workbook([["g", "y"], ["a\u202eb", 1]]), ":2:1", "U+202E"
+    ),
     book("a sheet that is not there", lambda: workbook(BOOK), "", "no sheet `x`", replace(OPEN, sheet="x")),
 ]
 
 ALL = [*TEXTS, *COMPRESSED, *BOOKS]
+
 
 def test_at_least_forty_kinds_are_tried() -> None:
     assert len({hostile.name for hostile in ALL}) == len(ALL) >= 40
@@ -300,7 +354,7 @@ MARKUP = (
     "${HOME}",
     "%s%n",
     "../../etc/passwd",
-    "=HYPERLINK(\"http://x\")",
+    '=HYPERLINK("http://x")',
     "'; DROP TABLE runs; --",
 )
 

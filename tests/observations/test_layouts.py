@@ -3,13 +3,13 @@
 from dataclasses import replace
 
 import pytest
-from support.workbooks import workbook
 
 from assayfolio.errors import DataError
 from assayfolio.observations.guard import guarded
 from assayfolio.observations.reading import read_all_observations, read_observations
 from assayfolio.observations.values import Observations
 from assayfolio.study.plan import DataPlan, MeasurementFact
+from support.workbooks import workbook
 
 PLAN = DataPlan("d.csv", ("y",), "g")
 WIDE = replace(PLAN, layout="wide", levels=("a", "b"))
@@ -48,14 +48,18 @@ def test_in_the_wide_layout_the_header_names_the_level_of_each_value() -> None:
 
 
 def test_blank_cells_below_the_last_value_of_a_level_are_no_values() -> None:
-    assert [text for _, _, level, text in values(read("a,b\n1,2\n1.5,\n1.7, \n", WIDE)) if level == "b"] == ["2"]
+    assert [text for _, _, level, text in values(read("a,b\n1,2\n1.5,\n1.7, \n", WIDE)) if level == "b"] == [
+        "2"
+    ]
 
 
 def test_a_blank_cell_between_the_values_of_a_level_is_a_missing_value() -> None:
     text = "a,b\n1,2\n,3\n4,\n"
     assert faults(text, WIDE) == [(":3:1", "column `a` is blank")]
     observations = read(text, replace(WIDE, missing="omit"))
-    assert [(aside.line, aside.level, aside.cause) for aside in observations.set_aside] == [(3, "a", "missing")]
+    assert [(aside.line, aside.level, aside.cause) for aside in observations.set_aside] == [
+        (3, "a", "missing")
+    ]
 
 
 def test_levels_come_in_the_order_of_the_plan_wherever_their_columns_stand() -> None:
@@ -179,7 +183,11 @@ def test_columns_that_are_carried_along_are_those_of_all_files() -> None:
 def test_the_faults_of_all_files_are_told_in_the_order_of_the_files() -> None:
     with pytest.raises(DataError) as caught:
         of_files("g,y\na,x\n", "g,y\na,1\n", "g,y\n\na,1\n,2\n")
-    assert [str(fault.place) for fault in caught.value.faults] == ["run-1.csv:2:3", "run-3.csv:2:1", "run-3.csv:4:1"]
+    assert [str(fault.place) for fault in caught.value.faults] == [
+        "run-1.csv:2:3",
+        "run-3.csv:2:1",
+        "run-3.csv:4:1",
+    ]
     assert caught.value.headline == "run-1.csv and run-3.csv cannot be used: 3 faults"
 
 

@@ -12,13 +12,13 @@ from hypothesis import strategies as st
 from openpyxl.cell.rich_text import CellRichText, TextBlock
 from openpyxl.cell.text import InlineFont
 from openpyxl.worksheet.worksheet import Worksheet
-from support.workbooks import SHEET, by_hand, parts_of, saved, with_part, workbook
 
 from assayfolio.errors import DataError
 from assayfolio.exact import Decimal10, parse_decimal
 from assayfolio.observations.reading import read_observations
 from assayfolio.observations.values import Observations
 from assayfolio.study.plan import DataPlan
+from support.workbooks import SHEET, by_hand, parts_of, saved, with_part, workbook
 
 PLAN = DataPlan("d.xlsx", ("y",), "g")
 GOOD = [["g", "y"], ["a", 1.5], ["b", 2.25]]
@@ -107,7 +107,9 @@ def test_a_number_beyond_the_range_of_a_double_is_refused(number: str) -> None:
         stored(f"<c><v>{number}</v></c>")
 
 
-@pytest.mark.parametrize("number", ["1e999999999", "nan", "inf", "1_000", "0x1F", "\u0663", "1 2", "1,5", "--1"])
+@pytest.mark.parametrize(
+    "number", ["1e999999999", "nan", "inf", "1_000", "0x1F", "\u0663", "1 2", "1,5", "--1"]
+)
 def test_a_stored_number_that_is_none_is_refused(number: str) -> None:
     with pytest.raises(DataError, match="cell B2: the stored number is none"):
         stored(f"<c><v>{number}</v></c>")
@@ -259,7 +261,9 @@ def test_a_hidden_row_with_values_is_refused() -> None:
 
 def test_a_row_of_no_height_is_a_hidden_row() -> None:
     sheet = parts_of(workbook(GOOD))[SHEET].replace(b'<row r="3"', b'<row r="3" ht="0" customHeight="1"')
-    assert faults(with_part(workbook(GOOD), SHEET, sheet)) == [(":3:1", "cell A3: a hidden row that holds values")]
+    assert faults(with_part(workbook(GOOD), SHEET, sheet)) == [
+        (":3:1", "cell A3: a hidden row that holds values")
+    ]
 
 
 def test_rows_that_are_hidden_unless_they_say_otherwise_are_refused() -> None:

@@ -3,7 +3,9 @@
 import csv
 import gzip
 import io
-from collections.abc import Sequence
+from collections.abc import Callable, Sequence
+from dataclasses import replace
+from fractions import Fraction
 
 import pytest
 from hypothesis import given, settings
@@ -40,28 +42,29 @@ def streamed(
     return stream_observations([LongFile(plan.file, lambda: io.BytesIO(content), block)], plan, facts)
 
 
-def refusal_by_rows(content: bytes, plan: DataPlan, facts: Sequence[MeasurementFact] = ()) -> DataError:
-    with pytest.raises(DataError) as refused:
-        read_all_observations([(plan.file, content)], plan, facts)
-    return refused.value
+Outcome = tuple[Observations, ...] | str
 
 
-def refusal_by_stretches(content: bytes, plan: DataPlan, facts: Sequence[MeasurementFact] = ()) -> DataError:
-    with pytest.raises(DataError) as refused:
-        streamed(content, plan, facts)
-    return refused.value
-
-
-def agree(content: bytes, plan: DataPlan, facts: Sequence[MeasurementFact] = (), block: int = SMALL_BLOCK) -> None:
-    """Both ways of reading come to the same observations, to the last digit, or to the same refusal."""
+def outcome(read: Callable[[], tuple[Observations, ...]]) -> Outcome:
+    """What comes of reading: the observations, or the whole refusal."""
     try:
-        by_rows = read_all_observations([(plan.file, content)], plan, facts)
+        return read()
     except DataError as error:
-        refused = refusal_by_stretches(content, plan, facts)
-        assert (str(refused), refused.hidden) == (str(error), error.hidden)
-        return
-    for one, other in zip(by_rows, streamed(content, plan, facts, block), strict=True):
-        assert_same(one, other)
+        return f"{error} (hidden: {error.hidden})"
+
+
+def agree(
+    content: bytes, plan: DataPlan, facts: Sequence[MeasurementFact] = (), block: int = SMALL_BLOCK
+) -> Outcome:
+    """Both ways of reading come to the same observations, to the last digit, or to the same refusal."""
+    by_rows = outcome(lambda: read_all_observations([(plan.file, content)], plan, facts))
+    by_stretches = outcome(lambda: streamed(content, plan, facts, block))
+    if isinstance(by_rows, str) or isinstance(by_stretches, str):
+        assert by_stretches == by_rows
+    else:
+        for one, other in zip(by_rows, by_stretches, strict=True):
+            assert_same(one, other)
+    return by_stretches
 
 
 def assert_same(by_rows: Observations, by_stretches: Observations) -> None:
@@ -89,7 +92,10 @@ def assert_same(by_rows: Observations, by_stretches: Observations) -> None:
 
 
 def written(
-    rows: Sequence[Sequence[str]], separator: str = ",", line_end: str = "\n", quoting: int = csv.QUOTE_MINIMAL
+    rows: Sequence[Sequence[str]],
+    separator: str = ",",
+    line_end: str = "\n",
+    quoting: int = csv.QUOTE_MINIMAL,
 ) -> str:
     sink = io.StringIO(newline="")
     # The literal types of the typeshed for `quoting` are wider than an int that was drawn.
@@ -131,9 +137,10 @@ def test_the_same_exact_sums_come_of_stretches_and_of_rows(
 
 
 ODDITIES = (
-    "", " ", "n/a", "NaN", "<0.05", "1,5", "1 000", "1e61", "1e", "--1", "0x10", "1.2.3", "9" * 39, '"', '""',
-    'a"b', '"a"b', "-999", "\n", "\n\n", " \n", ",", ",,", "\x00", "\r", "\x1c", "\u2003", "'=A", "\u00b5", '"x\ny"',
-)  # fmt: skip
+    *("", " ", "n/a", "NaN", "<0.05", "1,5", "1 000", "1e61", "1e", "--1", "0x10", "1.2.3", "9" * 39, "-999"),
+    *('"', '""', 'a"b', '"a"b', '"x\ny"', "\n", "\n\n", " \n", ",", ",,", "'=A"),
+    *("\x00", "\r", "\x1c", "\u2003", "\u00b5"),
+)
 
 
 @given(data=st.data())
@@ -165,3 +172,138 @@ def test_whatever_is_wrong_with_a_text_is_told_in_the_same_words(data: st.DataOb
     )
     facts = data.draw(st.sampled_from([(), (MeasurementFact("item", None, "note"),)]))
     agree(content, plan, facts, data.draw(st.sampled_from([16, 48, 1 << 20])))
+
+
+def rows_of(levels: Sequence[str], count: int) -> list[tuple[str, str]]:
+    return [(levels[at % len(levels)], f"{(at * 7919) % 1000 / 10:.1f}") for at in range(count)]
+
+
+def content_of(rows: Sequence[Sequence[str]]) -> bytes:
+    return written([("lot", "assay"), *rows]).encode()
+
+
+def test_several_responses_stand_in_the_same_rows() -> None:
+    rows = [(level, value, f"-{value}e2", "note") for level, value in rows_of("AB", 40)]
+    content = written([("lot", "assay", "ash", "remark"), *rows]).encode()
+    found = agree(content, DataPlan("d.csv", ("ash", "assay"), "lot"))
+    assert [one.response for one in found if isinstance(one, Observations)] == ["ash", "assay"]
+
+
+def test_rows_above_the_header_are_kept_in_the_record() -> None:
+    content = b'instrument,7\n"operator, shift",2\n\n' + content_of(rows_of("AB", 40))
+    (found,) = streamed(content, DataPlan("d.csv", ("assay",), "lot", header_row=4))
+    assert found.files[0].metadata == (("instrument", "7"), ("operator, shift", "2"), ())
+    agree(content, DataPlan("d.csv", ("assay",), "lot", header_row=4))
+
+
+def test_several_files_are_summed_together() -> None:
+    names, contents = ("a.csv", "b.csv"), (content_of(rows_of("AB", 30)), content_of(rows_of("BC", 20)))
+    plan = DataPlan("a.csv", ("assay",), "lot", files=names)
+    by_rows = read_all_observations(list(zip(names, contents, strict=True)), plan)
+    by_stretches = stream_observations(
+        [
+            LongFile("a.csv", lambda: io.BytesIO(contents[0]), SMALL_BLOCK),
+            LongFile("b.csv", lambda: io.BytesIO(contents[1]), SMALL_BLOCK),
+        ],
+        plan,
+    )
+    assert_same(by_rows[0], by_stretches[0])
+
+
+@pytest.mark.parametrize("planned", [9, 10, 11])
+def test_the_planned_number_of_rows_is_held_against_every_level(planned: int) -> None:
+    plan = DataPlan("d.csv", ("assay",), "lot", replicates=planned)
+    found = agree(content_of(rows_of(["A", "µ, B"], 20)), plan)
+    assert isinstance(found, str) == (planned != 10)
+
+
+@pytest.mark.parametrize("guard", ["'", ""])
+def test_a_guard_is_taken_off_a_label_where_every_such_label_has_one(guard: str) -> None:
+    found = agree(content_of(rows_of(["'=A", f"{guard}+B", "C"], 30)), PLAN)
+    assert not isinstance(found, str)
+    assert found[0].levels == (("=A", "+B", "C") if guard else ("'=A", "+B", "C"))
+
+
+def test_a_comma_that_may_separate_is_refused() -> None:
+    plan = DataPlan("d.csv", ("assay",), "lot", decimal_mark="comma")
+    rows = "".join(f'{level},"{text.replace(".", ",")}"\n' for level, text in rows_of("AB", 20))
+    sound = f"lot,assay\n{rows}".encode()
+    assert not isinstance(agree(sound, plan), str)
+    assert isinstance(agree(sound + b"A,15\n", plan), str)
+
+
+def test_a_cell_on_several_lines_is_one_cell_wherever_a_stretch_ends() -> None:
+    note = "first line\nsecond, line\n\nlast"
+    rows = [(level, value, note) for level, value in rows_of("AB", 30)]
+    agree(written([("lot", "assay", "note"), *rows], quoting=csv.QUOTE_ALL).encode(), PLAN)
+
+
+@pytest.mark.parametrize("block", [7, 48, 1 << 20])
+def test_a_quotation_mark_that_is_never_closed_spoils_its_own_row_alone(block: int) -> None:
+    before, after = content_of(rows_of("AB", 40)), b"".join(b"A,%d.5\n" % at for at in range(3000))
+    found = agree(before + b'A,"1.5\n' + after, PLAN, (), block)
+    assert isinstance(found, str)
+    assert found.startswith("d.csv cannot be used: 1 fault\n  d.csv:42:3: the quotation mark")
+
+
+@pytest.mark.parametrize("spoilt", ["cut", "more behind", "damaged", "bomb", "no gzip"])
+def test_a_compressed_text_that_is_not_whole_is_refused(spoilt: str) -> None:
+    packed = gzip.compress(content_of(rows_of("AB", 2000)), mtime=0)
+    content = {
+        "cut": packed[:-20],
+        "more behind": packed + b"x",
+        "damaged": packed[:200] + bytes([packed[200] ^ 255]) + packed[201:],
+        "bomb": gzip.compress(b"lot,assay\n" + b"A,1.00                \n" * 800_000, mtime=0),
+        "no gzip": content_of(rows_of("AB", 20)),
+    }[spoilt]
+    assert isinstance(agree(content, DataPlan("d.csv.gz", ("assay",), "lot")), str)
+
+
+def test_a_file_that_changes_while_it_is_read_is_refused() -> None:
+    contents = iter([content_of(rows_of("AB", 20)), content_of(rows_of("AB", 21)), content_of(rows_of("AB", 22))])
+    file = LongFile("d.csv", lambda: io.BytesIO(next(contents)), sha256="0" * 64)
+    with pytest.raises(DataError, match="changed while it was read"):
+        stream_observations([file], PLAN)
+
+
+def test_reading_stops_after_ten_thousand_faults() -> None:
+    content = content_of([("A", "n/a")] * 30_000)
+    with pytest.raises(DataError) as refused:
+        streamed(content, PLAN, block=1 << 16)
+    assert len(refused.value.faults) == 50
+    assert refused.value.hidden == 9_950
+
+
+def test_more_than_ten_thousand_levels_are_refused() -> None:
+    content = content_of([(f"L{at}", "1.0") for at in range(10_001)])
+    with pytest.raises(DataError, match="more than 10,000 levels"):
+        streamed(content, PLAN, block=1 << 16)
+
+
+@pytest.mark.parametrize(
+    ("change", "key"),
+    [
+        ({"layout": "wide"}, "layout: wide"),
+        ({"encoding": "utf-16"}, "encoding: utf-16"),
+        ({"order": "no"}, "order"),
+        ({"unit_column": "unit"}, "unit-column"),
+        ({"replicate_unit": "vial"}, "replicate-unit"),
+        ({"exclusions": "x.yaml"}, "exclusions"),
+        ({"below_limit": "omit"}, "below-limit: omit"),
+        ({"above_limit": "limit"}, "above-limit: limit"),
+    ],
+)
+def test_a_plan_that_needs_the_single_rows_is_named(change: dict[str, str], key: str) -> None:
+    assert kept_from_streaming(PLAN) is None
+    assert kept_from_streaming(replace(PLAN, **change)) == key  # type: ignore[arg-type]  # drawn from a table
+
+
+def test_the_classes_of_a_histogram_hold_the_values_between_their_edges() -> None:
+    rows = rows_of("AB", 500)
+    (found,) = streamed(content_of(rows))
+    assert found.totals is not None
+    density = found.totals.density
+    for level, counts in density.counts:
+        values = [Fraction(text) for own, text in rows if own == level]
+        edges = zip(density.edges, density.edges[1:], strict=False)
+        assert counts == tuple(sum(low <= value < high for value in values) for low, high in edges)

@@ -1,5 +1,6 @@
 """Workbooks for tests: written by openpyxl, by hand, or with a part changed afterwards."""
 
+import functools
 import io
 import zipfile
 from collections.abc import Callable, Mapping, Sequence
@@ -57,13 +58,17 @@ def with_part(content: bytes, name: str, part: bytes, compression: int = zipfile
     return packed(parts_of(content) | {name: part}, compression)
 
 
+@functools.cache
+def _any_parts() -> dict[str, bytes]:
+    return parts_of(workbook([["x"]]))
+
+
 def by_hand(sheet_data: str, around: str = "{}", shared: Sequence[str] = ()) -> bytes:
     """A workbook whose only sheet holds `sheet_data`, the XML of its rows, put into `around`."""
     body = around.format(f"<sheetData>{sheet_data}</sheetData>")
-    content = workbook([["x"]])
     sheet = f'<?xml version="1.0"?><worksheet xmlns="{MAIN}">{body}</worksheet>'
     strings = "".join(f"<si><t>{text}</t></si>" for text in shared)
-    parts = parts_of(content)
+    parts = _any_parts()
     relation = f'<Relationship Type="{_STRINGS_KIND}" Target="sharedStrings.xml" Id="rId9"/></Relationships>'
     return packed(
         parts

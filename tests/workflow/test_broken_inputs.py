@@ -148,16 +148,18 @@ def assert_refused(bench, place, words):
     assert words in answer.err
     assert "Traceback" not in answer.err + answer.out
     assert bench.files_in_runs() == {"audit-trail.jsonl", "audit-trail.head"}
-    founded, refused = bench.entries()
-    assert founded["action"] == "founded"
+    *before, refused = entries = bench.entries()
+    data = refused["details"]["data"]
     assert refused["action"] == "refused"
+    assert [entry["action"] for entry in before] == ["founded", *["received"] * len(data)]
+    assert [entry["details"]["path"] for entry in before[1:]] == data
     seen = {bench.study: "configs/study.yaml", bench.data: "configs/data/values.csv"}
     for path, name in seen.items():
         if name in refused["details"]["inputs"]:
             assert refused["details"]["inputs"][name] == hashlib.sha256(path.read_bytes()).hexdigest()
     assert "configs/study.yaml" in refused["details"]["inputs"]
     assert bench("check", bench.study).code == 2
-    assert len(bench.entries()) == 2, "a check writes nothing"
+    assert bench.entries() == entries, "a check writes nothing"
 
 
 @pytest.mark.parametrize("name", BROKEN_STUDIES)

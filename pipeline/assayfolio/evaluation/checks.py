@@ -24,7 +24,7 @@ from assayfolio.statistics.normality import (
     shapiro_wilk,
 )
 from assayfolio.statistics.oneway import NotComputableError
-from assayfolio.statistics.resolution import resolution
+from assayfolio.statistics.resolution import Resolution, resolution, resolution_of
 from assayfolio.statistics.run_order import run_order_trend
 from assayfolio.study.plan import NormalityCheck, StudyDefinition, VarianceCheck
 
@@ -64,10 +64,12 @@ def _checked(name: str, check: _Check, subject: Subject, alpha: float) -> CheckF
 
 
 def _brown_forsythe(subject: Subject, alpha: float) -> CheckFindings:
+    subject.require_values()
     return _f_test(BROWN_FORSYTHE, brown_forsythe_variances(subject.groups), alpha)
 
 
 def _levene(subject: Subject, alpha: float) -> CheckFindings:
+    subject.require_values()
     return _f_test(LEVENE, levene_variances(subject.groups), alpha)
 
 
@@ -93,6 +95,7 @@ def _cochran(subject: Subject, alpha: float) -> CheckFindings:
 
 
 def _shapiro_wilk(subject: Subject, alpha: float) -> CheckFindings:
+    subject.require_values()
     check = shapiro_wilk(residuals(subject.groups))
     p = round_significant(check.p)
     return CheckFindings(SHAPIRO_WILK, round_significant(check.w), None, p, _note(p, alpha, _NOT_NORMAL))
@@ -105,12 +108,14 @@ def _anderson_darling(subject: Subject, alpha: float) -> CheckFindings:
             f"the p-value of the Anderson-Darling test holds from {ANDERSON_DARLING_P_FROM} values; "
             f"here are {count}"
         )
+    subject.require_values()
     check = anderson_darling(residuals(subject.groups))
     p = round_significant(check.p)
     return CheckFindings(ANDERSON_DARLING, round_significant(check.a2), None, p, _note(p, alpha, _NOT_NORMAL))
 
 
 def _run_order(subject: Subject, alpha: float) -> CheckFindings:
+    subject.require_values()
     placed = [(level, _placed(rows)) for level, rows in subject.rows]
     check = run_order_trend(placed)
     p = round_significant(check.tail.p)
@@ -129,16 +134,21 @@ def _note(p: float, alpha: float, departure: str) -> str:
     return f"{shown} at level {alpha}; the check informs and does not choose the analysis"
 
 
+def _resolution(subject: Subject) -> Resolution | None:
+    """The resolution of the recorded values; None where every value was put in for one beyond a limit."""
+    if subject.totals is not None:
+        return resolution_of(subject.totals.step, subject.analysis)
+    recorded = [(level, [row.value for row in rows if row.limit is None]) for level, rows in subject.rows]
+    return resolution(recorded, subject.analysis) if any(values for _, values in recorded) else None
+
+
 def _coarse_resolution(subject: Subject) -> tuple[CheckFindings, ...]:
     """One entry where the recorded step is coarse against a spread that is not zero; else none.
 
     A value put in for one beyond a limit was not recorded with a step, so that it does not count.
     """
-    recorded = [(level, [row.value for row in rows if row.limit is None]) for level, rows in subject.rows]
-    if not any(values for _, values in recorded):
-        return ()
-    found = resolution(recorded, subject.analysis)
-    if not found.coarse or found.rounding_share is None:
+    found = _resolution(subject)
+    if found is None or not found.coarse or found.rounding_share is None:
         return ()
     unit = f" {subject.unit}" if subject.unit else ""
     note = (

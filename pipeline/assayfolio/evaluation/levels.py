@@ -1,7 +1,8 @@
 """The levels as findings: description, and intervals with the error that the plan names."""
 
+from fractions import Fraction
+
 from assayfolio.evaluation.subject import Subject
-from assayfolio.exact import Decimal10
 from assayfolio.findings import Interval, LevelFindings, NotReported
 from assayfolio.statistics.inference import mean_interval, sd_interval
 from assayfolio.statistics.oneway import LevelSummary
@@ -14,12 +15,12 @@ def level_findings(
     """Every level of `subject`, intervals at 1 - `alpha`; `variances` is pooled or separate."""
     analysis = subject.analysis
     found = []
-    for level, (_, values) in zip(analysis.levels, subject.groups, strict=True):
+    for level, extremes in zip(analysis.levels, subject.extremes, strict=True):
         if variances == "separate":
             interval: Interval | None = separate_mean_interval(level, alpha)
         else:
             interval = mean_interval(analysis, level, alpha) if analysis.ss_within else None
-        found.append(_level(level, values, interval, alpha))
+        found.append(_level(level, extremes, interval, alpha))
     without = [level.level for level in found if level.ci is None]
     if without and analysis.ss_within:
         reason = "a level's own error needs two or more values that are not all equal"
@@ -28,17 +29,16 @@ def level_findings(
 
 
 def _level(
-    level: LevelSummary, values: tuple[Decimal10, ...], interval: Interval | None, alpha: float
+    level: LevelSummary, extremes: tuple[Fraction, Fraction], interval: Interval | None, alpha: float
 ) -> LevelFindings:
-    fractions = [value.fraction for value in values]
     return LevelFindings(
         level=level.level,
         n=level.n,
         mean=level.mean,
         sd=level.sd,
         sd_ci=sd_interval(level, alpha),
-        minimum=min(fractions),
-        maximum=max(fractions),
+        minimum=extremes[0],
+        maximum=extremes[1],
         ci=interval,
         sums=level.sums,
     )

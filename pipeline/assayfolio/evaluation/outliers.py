@@ -4,8 +4,9 @@ from collections.abc import Sequence
 
 from assayfolio.evaluation.subject import Subject
 from assayfolio.findings import NEITHER, NOT_ASSESSABLE, OUTLIER, STRAGGLER, OutlierFindings
+from assayfolio.statistics.oneway import NotComputableError
 from assayfolio.statistics.outliers import OutlierTest as Tested
-from assayfolio.statistics.outliers import cochran_outlier, grubbs_double, grubbs_single
+from assayfolio.statistics.outliers import cochran_outlier, grubbs_double, grubbs_single, not_done
 from assayfolio.study.plan import OutlierPlan, OutlierTest
 
 _VERDICTS = {"outlier": OUTLIER, "straggler": STRAGGLER, "neither": NEITHER}
@@ -30,6 +31,10 @@ def outlier_findings(plan: OutlierPlan | None, subject: Subject) -> tuple[Outlie
 def _tests(word: OutlierTest, subject: Subject) -> Sequence[Tested]:
     if word == "cochran":
         return [cochran_outlier(subject.analysis)]
+    try:
+        subject.require_values()
+    except NotComputableError as error:
+        return [not_done(word, None, str(error))]
     test = grubbs_single if word == "grubbs" else grubbs_double
     return [test(level, values) for level, values in subject.groups]
 

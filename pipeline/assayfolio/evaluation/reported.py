@@ -23,6 +23,7 @@ from assayfolio.findings import (
 )
 from assayfolio.observations.values import Observations
 from assayfolio.statistics.comparisons import LESS, TWO_SIDED
+from assayfolio.statistics.oneway import NotComputableError
 from assayfolio.statistics.second_route import (
     NotCompared,
     ReportedTable,
@@ -30,6 +31,7 @@ from assayfolio.statistics.second_route import (
     ReportedTails,
     SecondRoute,
     second_route,
+    second_route_of_tails,
 )
 from assayfolio.statistics.second_tails import (
     Law,
@@ -57,7 +59,12 @@ def second_routes(
 
 
 def _route(found: ResponseFindings, subject: Subject) -> SecondRoute:
-    route = second_route(subject.groups, _table(found), list(_tails(found)))
+    tails = list(_tails(found))
+    try:
+        subject.require_values()
+        route = second_route(subject.groups, _table(found), tails)
+    except NotComputableError as error:
+        route = second_route_of_tails(tails, str(error))
     return SecondRoute(route.agreements, (*route.not_compared, *_beyond(found)))
 
 

@@ -2,11 +2,13 @@
 
 from collections.abc import Sequence
 from dataclasses import dataclass
+from fractions import Fraction
 
 from assayfolio.exact import Decimal10, ExactSums
 from assayfolio.findings import NotReported
+from assayfolio.observations.totals import Totals
 from assayfolio.observations.values import Observation, Observations
-from assayfolio.statistics.oneway import OneWay, one_way
+from assayfolio.statistics.oneway import NotComputableError, OneWay, one_way
 
 Groups = tuple[tuple[str, tuple[Decimal10, ...]], ...]
 
@@ -15,7 +17,8 @@ Groups = tuple[tuple[str, tuple[Decimal10, ...]], ...]
 class Subject:
     """One response: `rows` holds the observations of each level, `groups` their values; levels as planned.
 
-    `files` are the names of the data files, by the positions that the rows give.
+    `files` are the names of the data files, by the positions that the rows give. Where the values are too
+    many to be kept, `rows` and `groups` are empty and `totals` has what is known of them.
     """
 
     response: str
@@ -24,6 +27,22 @@ class Subject:
     groups: Groups
     analysis: OneWay
     files: tuple[str, ...] = ()
+    totals: Totals | None = None
+
+    @property
+    def extremes(self) -> tuple[tuple[Fraction, Fraction], ...]:
+        """The smallest and the largest value of each level."""
+        if self.totals is not None:
+            return tuple((level.lowest, level.highest) for level in self.totals.levels)
+        fractions = ([value.fraction for value in values] for _, values in self.groups)
+        return tuple((min(values), max(values)) for values in fractions)
+
+    def require_values(self) -> None:
+        """Raise NotComputableError where the single values were too many to be kept."""
+        if self.totals is not None:
+            raise NotComputableError(
+                f"it needs every single value, and {self.totals.n:,} are too many to be kept one by one"
+            )
 
     def unreported(self, what: str, reason: object) -> NotReported:
         """The entry that says why `what` cannot be given for this response."""
@@ -37,6 +56,8 @@ def subject_of(
 
     Raises NotComputableError where a level has no value, or every level has one.
     """
+    if observations.totals is not None:
+        return _summed(observations, observations.totals, unit)
     by_level: dict[str, list[Observation]] = {level: [] for level in observations.levels}
     for row in observations.rows if rows is None else rows:
         by_level[row.level].append(row)
@@ -48,6 +69,18 @@ def subject_of(
         groups=groups,
         analysis=one_way([(level, ExactSums.of(values)) for level, values in groups]),
         files=tuple(file.file for file in observations.files),
+    )
+
+
+def _summed(observations: Observations, totals: Totals, unit: str | None) -> Subject:
+    return Subject(
+        response=observations.response,
+        unit=unit,
+        rows=(),
+        groups=(),
+        analysis=one_way([(level.level, level.sums) for level in totals.levels]),
+        files=tuple(file.file for file in observations.files),
+        totals=totals,
     )
 
 

@@ -8,10 +8,13 @@ import errno
 import os
 from collections.abc import Iterator
 from contextlib import contextmanager
+from dataclasses import dataclass
+from hashlib import sha256
 from pathlib import Path
 
 from assayfolio.errors import MachineError
 
+_BLOCK = 1 << 20
 _WORDS = {
     errno.ENOSPC: "the disk is full",
     errno.EDQUOT: "the disk quota is used up",
@@ -110,6 +113,48 @@ def replace_file(path: Path, content: bytes) -> None:
 def replacement_name(path: Path) -> Path:
     """Where `replace_file` writes before it renames; a leftover of this name carries no evidence."""
     return path.with_name(f".{path.name}.new")
+
+
+@dataclass(frozen=True, slots=True)
+class FileToCopy:
+    """A file too large to be held in memory, as it was when it was read: its size and its SHA-256."""
+
+    source: Path
+    size: int
+    sha256: str
+
+
+def copy_new(file: FileToCopy, path: Path, mode: int = 0o644) -> None:
+    """Copy `file` in blocks to one that must not exist yet, fsync it; the folder is the caller's to sync.
+
+    Raises MachineError where the copy is not what was read before.
+    """
+    digest = sha256()
+    with explained("copy the file", path):
+        source = os.open(file.source, os.O_RDONLY | os.O_NOFOLLOW | os.O_NONBLOCK)
+        try:
+            descriptor = os.open(path, os.O_WRONLY | os.O_CREAT | os.O_EXCL | os.O_NOFOLLOW, mode)
+            try:
+                while block := os.read(source, _BLOCK):
+                    digest.update(block)
+                    write_all(descriptor, block)
+                os.fsync(descriptor)
+            finally:
+                os.close(descriptor)
+        finally:
+            os.close(source)
+    if digest.hexdigest() != file.sha256:
+        raise MachineError(f"{file.source}: it was changed after it had been read, so nothing was sealed.")
+
+
+def digest_regular(path: Path) -> str:
+    """The SHA-256 of a regular file, read in blocks, never through a symbolic link. Raises OSError."""
+    digest = sha256()
+    descriptor = os.open(path, os.O_RDONLY | os.O_NOFOLLOW | os.O_NONBLOCK)
+    with os.fdopen(descriptor, "rb") as file:
+        while block := file.read(_BLOCK):
+            digest.update(block)
+    return digest.hexdigest()
 
 
 def read_regular(path: Path) -> bytes:

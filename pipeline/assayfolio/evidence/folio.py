@@ -19,6 +19,9 @@ from pathlib import Path
 from assayfolio.canonical import Json, canonical_digest, sha256_hex
 from assayfolio.errors import InputError, MachineError
 from assayfolio.evidence.files import (
+    FileToCopy,
+    copy_new,
+    digest_regular,
     explained,
     make_folder,
     plain_reason,
@@ -43,6 +46,8 @@ from assayfolio.evidence.manifest import (
 
 __all__ = [
     "UNSEALED",
+    "Content",
+    "FileToCopy",
     "StagedFolio",
     "folio_lock",
     "is_locked",
@@ -54,6 +59,10 @@ __all__ = [
 ]
 
 UNSEALED = ".unsealed"
+
+
+Content = bytes | FileToCopy
+"""What a file of a folio is made of: bytes at hand, or a file that is copied."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -74,13 +83,13 @@ class StagedFolio:
 
 
 def stage_folio(
-    folder: Path, name: str, payload: Mapping[str, bytes], bag_info: Sequence[tuple[str, str]]
+    folder: Path, name: str, payload: Mapping[str, Content], bag_info: Sequence[tuple[str, str]]
 ) -> StagedFolio:
     """Write the folio `name` into `folder`/<name>.unsealed, durable and read back, ready to be published.
 
-    `payload` maps paths such as "data/study.yaml" to their bytes; `bag_info` gives the labels of
-    bag-info.txt, to which Payload-Oxum is added. The same arguments give the same bytes and so the same seal.
-    Raises InputError for paths that cannot stand in a folio or beside each other; MachineError where the
+    `payload` maps paths such as "data/study.yaml" to their bytes, or to files to copy; `bag_info` has the
+    labels of bag-info.txt, to which Payload-Oxum is added. The same arguments give the same bytes and so the
+    same seal. Raises InputError for paths that cannot stand in a folio or beside each other; MachineError where the
     target or the staging folder exists, the disk refuses, or a file reads back differently; what this call
     had written is then removed again. A killed process leaves it for the next writer to tell of.
     """
@@ -99,22 +108,33 @@ def stage_folio(
         # What this call began is of no use to anybody, and in the way of the folio that tells of the failure.
         shutil.rmtree(staging, ignore_errors=True)
         raise
-    return StagedFolio(staging, target, sha256_hex(contents[TAG_MANIFEST_FILE]))
+    return StagedFolio(staging, target, _digest(contents[TAG_MANIFEST_FILE]))
 
 
-def _write(staging: Path, contents: Mapping[str, bytes]) -> None:
+def _digest(content: Content) -> str:
+    return sha256_hex(content) if isinstance(content, bytes) else content.sha256
+
+
+def _size(content: Content) -> int:
+    return len(content) if isinstance(content, bytes) else content.size
+
+
+def _write(staging: Path, contents: Mapping[str, Content]) -> None:
     """Write every file, then make every folder durable."""
     folders = {staging}
     for inside, content in contents.items():
         file = staging / inside
         make_folder(file.parent)
-        write_new(file, content, 0o444)
+        if isinstance(content, bytes):
+            write_new(file, content, 0o444)
+        else:
+            copy_new(content, file, 0o444)
         folders.update(parent for parent in file.parents if staging in parent.parents)
     for written in sorted(folders):
         sync_folder(written)
 
 
-def _refuse_paths(payload: Mapping[str, bytes]) -> None:
+def _refuse_paths(payload: Mapping[str, Content]) -> None:
     if not payload:
         raise InputError("a folio without payload is no folio")
     for path in payload:
@@ -136,31 +156,40 @@ def _refuse_existing(path: Path) -> None:
         )
 
 
-def _with_tag_files(payload: Mapping[str, bytes], bag_info: Sequence[tuple[str, str]]) -> Mapping[str, bytes]:
+def _with_tag_files(
+    payload: Mapping[str, Content], bag_info: Sequence[tuple[str, str]]
+) -> Mapping[str, Content]:
     """The payload in the order of its paths, then the tag files; the one that seals comes last."""
     contents = {path: payload[path] for path in sorted(payload)}
-    manifest = manifest_bytes({path: sha256_hex(content) for path, content in contents.items()})
-    tags = {
-        BAG_INFO_FILE: bag_info_bytes(bag_info, [len(content) for content in contents.values()]),
+    manifest = manifest_bytes({path: _digest(content) for path, content in contents.items()})
+    tags: dict[str, Content] = {
+        BAG_INFO_FILE: bag_info_bytes(bag_info, [_size(content) for content in contents.values()]),
         BAGIT_FILE: BAGIT_TEXT,
         MANIFEST_FILE: manifest,
     }
-    tags[TAG_MANIFEST_FILE] = manifest_bytes({path: sha256_hex(content) for path, content in tags.items()})
+    tags[TAG_MANIFEST_FILE] = manifest_bytes({path: _digest(content) for path, content in tags.items()})
     return contents | tags
 
 
-def _read_back(staging: Path, contents: Mapping[str, bytes]) -> None:
+def _read_back(staging: Path, contents: Mapping[str, Content]) -> None:
     with explained("read the staged folio back", staging):
         there = {path for path, _ in _files(staging)}
         odd = sorted(there.symmetric_difference(contents))
         for path, content in contents.items():
-            if path in there and read_regular(staging / path) != content:
+            if path in there and not _is(staging / path, content):
                 odd.append(path)
     if odd:
         raise MachineError(
             f"{staging / odd[0]}: it does not read back as it was written. The disk, or another program at "
             "work in this folder, is at fault; nothing was sealed."
         )
+
+
+def _is(path: Path, content: Content) -> bool:
+    """Whether a file holds what it is to hold."""
+    if isinstance(content, bytes):
+        return read_regular(path) == content
+    return digest_regular(path) == content.sha256
 
 
 def _files(folder: Path, prefix: str = "") -> Iterator[tuple[str, os.DirEntry[str]]]:
@@ -237,5 +266,5 @@ def _digests(folder: Path) -> dict[str, str]:
     found: dict[str, str] = {}
     for path, entry in _files(folder):
         regular = entry.is_file(follow_symlinks=False)
-        found[path] = sha256_hex(read_regular(folder / path)) if regular else "not a regular file"
+        found[path] = digest_regular(folder / path) if regular else "not a regular file"
     return found

@@ -128,8 +128,8 @@ class Register:
         return {digest: tuple(uses) for digest, uses in grouped.items()}
 
     @cached_property
-    def _by_subject(self) -> Mapping[str, DataUse]:
-        return {use.subject: use for use in self.uses}
+    def _places(self) -> Mapping[str, int]:
+        return {use.subject: place for place, use in enumerate(self.uses)}
 
     def uses_of(self, sha256: str) -> tuple[DataUse, ...]:
         """The runs that read this file."""
@@ -141,14 +141,15 @@ class Register:
 
     def executions(self, subject: str) -> Executions | None:
         """The place of the run `subject` among the executions on its data; None where it read no data."""
-        use = self._by_subject.get(subject)
+        place = self._places.get(subject)
+        use = None if place is None else self.uses[place]
         if use is None or not use.data:
             return None
         same = self._by_data[(use.study, use.data)]
-        sharing = {other.subject: other for digest in use.data for other in self.uses_of(digest)}
-        apart = {other.subject for other in same}
-        others = tuple(other for other in self.uses if other.subject in sharing.keys() - apart)
-        return Executions(use, same.index(use) + 1, same, others)
+        sharing = {self._places[other.subject] for digest in use.data for other in self.uses_of(digest)}
+        others = sharing.difference(self._places[other.subject] for other in same)
+        number = 1 + sum(other.number < use.number for other in same)
+        return Executions(use, number, same, tuple(self.uses[place] for place in sorted(others)))
 
 
 def read_register(entries: Iterable[TrailEntry]) -> Register:

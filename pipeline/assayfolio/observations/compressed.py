@@ -8,8 +8,8 @@ from assayfolio.observations.faults import refusal
 MOST_RATIO = 200
 """Recorded values shrink to a tenth, constant columns to a fiftieth; beyond this it is no record."""
 
-FREE_BYTES = 1_000_000
-"""Up to this size the ratio does not matter."""
+FREE_BYTES = 16_000_000
+"""Up to this size the ratio does not matter: a few values over and over shrink to a thousandth."""
 
 _MAGIC = b"\x1f\x8b"
 _BLOCK = 1 << 20
@@ -21,9 +21,7 @@ def inflated(content: bytes, file: str) -> bytes:
     Raises DataError for anything that is not gzip, a damaged or cut file, bytes behind its end, more than
     64,000,000 bytes of text, and more than 200 bytes of text a byte of the file.
     """
-    if not content.startswith(_MAGIC):
-        advice = "take .gz off its name, or compress it with gzip"
-        raise refusal(file, "this is not a file compressed with gzip, as its name says", advice)
+    require_gzip(content, file)
     parts: list[bytes] = []
     size = 0
     engine = zlib.decompressobj(wbits=31)
@@ -46,6 +44,13 @@ def inflated(content: bytes, file: str) -> bytes:
         found = f"{len(engine.unused_data):,} bytes behind the end of the compressed text"
         raise refusal(file, found, "compress one text alone; others are files of their own in the study")
     return b"".join(parts)
+
+
+def require_gzip(beginning: bytes, file: str) -> None:
+    """Raise DataError unless a file begins as one that is compressed with gzip."""
+    if not beginning.startswith(_MAGIC):
+        advice = "take .gz off its name, or compress it with gzip"
+        raise refusal(file, "this is not a file compressed with gzip, as its name says", advice)
 
 
 def _refuse_bomb(size: int, packed: int, file: str) -> None:

@@ -91,7 +91,7 @@ def _mark_of(content: bytes) -> tuple[bytes, str]:
 
 
 def utf8_mark(content: bytes, file: str) -> bytes:
-    """The byte order mark of UTF-8 at the beginning of `content`, or nothing; DataError for one of another."""
+    """The byte order mark of UTF-8 that begins `content`, or nothing. Raises DataError for another mark."""
     mark, name = _mark_of(content)
     if name == "UTF-32":
         raise refusal(file, "the file is encoded in UTF-32", _WANTED, 1, 1)

@@ -26,11 +26,11 @@ class Classes:
     @property
     def width(self) -> Fraction:
         """How wide each class is."""
-        return self.unit * 2**self.shift
+        return self.unit * (1 << self.shift)
 
     def middle(self, column: int) -> Fraction:
         """The middle of the numbers that a class may hold."""
-        units = 2**self.shift
+        units = 1 << self.shift
         return (Fraction((self.first + column) * units) + Fraction(units - 1, 2)) * self.unit
 
 
@@ -46,7 +46,12 @@ def density(sources: Sequence[Classes], levels: Sequence[tuple[str, int | None]]
         start,
         width,
         tuple(
-            (level, tuple(counts[row].tolist()) if row is not None and row < len(counts) else (0,) * counts.shape[1])
+            (
+                level,
+                tuple(counts[row].tolist())
+                if row is not None and row < len(counts)
+                else (0,) * counts.shape[1],
+            )
             for level, row in levels
         ),
     )

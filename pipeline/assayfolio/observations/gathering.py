@@ -12,7 +12,6 @@ from assayfolio.observations.exclusions import ExclusionMatch
 from assayfolio.observations.faults import Faults, refusal
 from assayfolio.observations.flow import require_sum
 from assayfolio.observations.levels import LevelCount, Where
-from assayfolio.observations.number_columns import Integers
 from assayfolio.observations.plain_stretch import Stretch
 from assayfolio.observations.received import Received
 from assayfolio.observations.summing import Summing
@@ -44,13 +43,12 @@ class Gathering:
     def take_levels(
         self, file: int, stretch: Stretch, labels: Sequence[str], place: Callable[[int], Where]
     ) -> None:
-        """Count the levels of a stretch under `labels`; `place` says where the level of one of its rows is."""
+        """Count the levels of a stretch under `labels`; `place` says where the level of a row of it is."""
         counts = np.bincount(stretch.codes, minlength=len(labels))
         for code, label in enumerate(labels):
             if not label.strip():
                 continue
-            rows = partial(_rows_of, stretch, code)
-            self._counts.count_many(label, int(counts[code]), lambda at, rows=rows: place(int(rows()[at])))
+            self._counts.count_many(label, int(counts[code]), partial(_place_of, stretch, code, place))
             self._number(file, label)
 
     def take_values(self, stretch: Stretch, labels: Sequence[str]) -> None:
@@ -128,5 +126,6 @@ class Gathering:
         return number
 
 
-def _rows_of(stretch: Stretch, code: int) -> Integers:
-    return np.flatnonzero(stretch.codes == code)
+def _place_of(stretch: Stretch, code: int, place: Callable[[int], Where], at: int) -> Where:
+    """Where row number `at` of those with one level stands."""
+    return place(int(np.flatnonzero(stretch.codes == code)[at]))

@@ -4,16 +4,17 @@ Each stretch is held to what `decoding` demands of a whole file; blank lines at 
 out, LF and CRLF become LF, a byte order mark is no part of the text.
 """
 
+import hashlib
 import zlib
 from collections.abc import Callable, Iterator
 from dataclasses import replace
-from hashlib import sha256
+from functools import partial
 from typing import BinaryIO
 
 import numpy as np
 
 from assayfolio.errors import DataError, Fault
-from assayfolio.observations.compressed import FREE_BYTES, MOST_RATIO, reason_of
+from assayfolio.observations.compressed import FREE_BYTES, MOST_RATIO, reason_of, require_gzip
 from assayfolio.observations.decoding import CARRIAGE_RETURN, not_utf8, refuse_nul_bytes
 from assayfolio.observations.faults import FaultList, raise_faults, refusal
 
@@ -21,6 +22,10 @@ BLOCK = 1 << 20
 MOST_BYTES = 1 << 34
 LONGEST_LINE = 8_000_000
 
+_BOMB = (
+    f"it inflates to more than {MOST_RATIO} times its size, which recorded values do not",
+    "give the text itself, not compressed",
+)
 _LINE_END = ord("\n")
 _BOM = b"\xef\xbb\xbf"
 
@@ -30,18 +35,20 @@ class UnfitTextError(Exception):
 
 
 class LongFile:
-    """A file that is read from its beginning once or more, hashed the first time.
+    """A file that is read from its beginning once or more, and hashed each time.
 
-    `open_file` opens it anew, `block` is how many bytes are read at once; a name that ends in .gz is that of a
-    text compressed with gzip.
+    `open_file` opens it anew, `block` is how many bytes are read at once; a name that ends in .gz is that of
+    a text compressed with gzip. Where `sha256` is given the file must be the one that has it.
     """
 
-    def __init__(self, name: str, open_file: Callable[[], BinaryIO], block: int = BLOCK) -> None:
+    def __init__(
+        self, name: str, open_file: Callable[[], BinaryIO], block: int = BLOCK, sha256: str = ""
+    ) -> None:
         self.name = name
         self.block = block
         self.packed = name.lower().endswith(".gz")
         self.size = 0
-        self.sha256 = ""
+        self.sha256 = sha256
         self._open = open_file
 
     def stretches(self) -> Iterator[bytes]:
@@ -53,13 +60,14 @@ class LongFile:
         with self._open() as file:
             blocks = self._hashed(file)
             if self.packed:
+                require_gzip(file.read(2), self.name)
                 most = max(FREE_BYTES, MOST_RATIO * file.seek(0, 2))
                 file.seek(0)
                 blocks = self._inflated(blocks, min(most, MOST_BYTES))
             yield from _whole_lines(blocks, self.name)
 
     def _hashed(self, file: BinaryIO) -> Iterator[bytes]:
-        digest, size = sha256(), 0
+        digest, size = hashlib.sha256(), 0
         while block := file.read(self.block):
             digest.update(block)
             size += len(block)
@@ -78,14 +86,13 @@ class LongFile:
                 if engine.eof:
                     behind += len(block)
                     continue
-                pending = block
-                while pending and not engine.eof:
+                pending, part = block, b"-"
+                while (pending or part) and not engine.eof:
                     part = engine.decompress(pending, self.block)
                     pending = engine.unconsumed_tail
                     size += len(part)
                     if size > most:
-                        found = f"it inflates to more than {MOST_RATIO} times its size, which recorded values do not"
-                        raise refusal(self.name, found, "give the text itself, not compressed")
+                        raise refusal(self.name, *_BOMB)
                     yield part
                 behind += len(engine.unused_data) if engine.eof else 0
         except zlib.error as error:
@@ -150,7 +157,7 @@ def plain_lines(stretch: bytes) -> bytes:
 
 
 def refuse_unfit_text(file: LongFile) -> None:
-    """Raise DataError as `decoding` does: all NUL bytes, or the first byte that is not UTF-8, or all stray CR.
+    """Raise DataError as `decoding` does: all NUL bytes, or the first byte that is no UTF-8, or all stray CR.
 
     A second pass through the file, for one that `plain_lines` would not take.
     """
@@ -162,7 +169,7 @@ def refuse_unfit_text(file: LongFile) -> None:
         if not offset and body.startswith(_BOM):
             body, offset = body[len(_BOM) :], len(_BOM)
         if b"\0" in body:
-            _shift_into(nul, lambda body=body: refuse_nul_bytes(body, file.name), line)
+            _shift_into(nul, partial(refuse_nul_bytes, body, file.name), line)
         if first is None:
             try:
                 body.decode("utf-8")

@@ -85,7 +85,9 @@ class _Text:
         negative = (lengths > 0) & (self.characters[np.minimum(self.starts, self.ends[-1] - 1)] == _MINUS)
         digits = lengths - negative
         most = MOST_DIGITS + (places is not None)
-        taken = (digits <= most) & (digits > (places is not None)) & (digits > (-1 if places is None else places))
+        taken = (
+            (digits <= most) & (digits > (places is not None)) & (digits > (-1 if places is None else places))
+        )
         mantissas, sound = self._from_the_end(digits, int(digits[taken].max(initial=0)), places, mark)
         taken &= sound
         np.negative(mantissas, out=mantissas, where=negative)
@@ -96,7 +98,7 @@ class _Text:
     def _from_the_end(
         self, digits: Integers, most: int, places: int | None, mark: int
     ) -> tuple[Integers, Mask]:
-        """The last `most` characters of each row as an integer, of `digits` of them at most; and whether they are.
+        """The last `digits` characters of each row, `most` at most as an integer; whether they are digits.
 
         The character `places` before the end has to be the mark.
         """

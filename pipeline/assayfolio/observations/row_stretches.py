@@ -61,7 +61,7 @@ class Feed:
 
 
 class Lines(Sequence[str]):
-    """Lines by their numbers in the file, from number `first` on; more come out of `feed` as they are asked for."""
+    """Lines by their numbers in the file, from `first` on; more come out of `feed` as they are asked for."""
 
     def __init__(self, data: bytes, first: int, feed: Feed | None = None) -> None:
         self.first = first
@@ -94,9 +94,9 @@ def go_through(
     by_columns: Callable[[Taken, bytes, int], None],
     by_rows: Callable[[Iterator[Row | Broken], "Lines"], None],
 ) -> None:
-    """Take everything in `feed`, in its order: stretches of plain rows by columns, where possible, others by rows.
+    """Take everything in `feed`, in its order: stretches of plain rows by columns, others by rows.
 
-    `read` is given a stretch in which every line is one row; it may run in a thread beside, and says None where
+    `read` is given a stretch in which every line is one row; it runs in a thread beside and says None where
     it cannot take it. `by_columns` gets what it made of it, the stretch, and the number of its first line;
     `by_rows` the rows of the others, with the lines that they stand on.
     """
@@ -123,9 +123,7 @@ def go_through(
             _by_rows(feed, separator, by_rows)
 
 
-def _by_rows(
-    feed: Feed, separator: str, by_rows: Callable[[Iterator[Row | Broken], "Lines"], None]
-) -> None:
+def _by_rows(feed: Feed, separator: str, by_rows: Callable[[Iterator[Row | Broken], "Lines"], None]) -> None:
     """Take the rows that begin in the data at hand one by one."""
     lines = Lines(feed.data, feed.line, feed)
     end = lines.first + len(lines.at_hand)

@@ -11,6 +11,7 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
+from assayfolio.errors import DataError
 from assayfolio.observations.decoding import refuse_empty, refuse_other_kinds, utf8_mark
 from assayfolio.observations.faults import FaultList, refusal
 from assayfolio.observations.gathering import MOST_LEVELS, Gathering
@@ -29,7 +30,7 @@ from assayfolio.study.plan import DataPlan, MeasurementFact
 
 
 def kept_from_streaming(plan: DataPlan) -> str | None:
-    """What in `plan` needs the single rows, so that its files cannot be summed as they come; None for nothing."""
+    """What in `plan` needs the single rows, so that files cannot be summed as they come; None for nothing."""
     needs = (
         (plan.layout == "wide", "layout: wide"),
         (plan.encoding != "utf-8", f"encoding: {plan.encoding}"),
@@ -56,12 +57,19 @@ def stream_observations(
     raws: list[RawFile] = []
     extra_columns: dict[str, None] = {}
     for at, file in enumerate(files):
+        beginning = next(file.stretches(), b"")
+        refuse_other_kinds(beginning, file.name)
+        utf8_mark(beginning, file.name)
         try:
             taking = _FileTaking(gathering, at, file, plan, measurement)
             raws.append(taking.all())
-        except UnfitTextError:
-            refuse_unfit_text(file)
-            raise refusal(file.name, "the file was changed while it was read", "run the study again") from None
+        except (UnfitTextError, DataError) as error:
+            refuse_unfit_text(file)  # which comes before everything else that may be wrong
+            if isinstance(error, DataError):
+                raise
+            raise refusal(
+                file.name, "the file was changed while it was read", "run the study again"
+            ) from None
         extra_columns |= dict.fromkeys(extras_of(taking.opened.header.names, plan))
         if gathering.full:
             break
@@ -86,7 +94,6 @@ def _opened(file: LongFile, plan: DataPlan, wanted: Sequence[str], faults: Fault
     head = next(stretches, b"")
     while head.count(b"\n") < plan.header_row and (more := next(stretches, b"")):
         head += more
-    refuse_other_kinds(head, file.name)
     mark = utf8_mark(head, file.name)
     text = plain_lines(head[len(mark) :]).decode("utf-8")
     refuse_empty(text, file.name)
@@ -132,9 +139,7 @@ class _FileTaking:
 
     def all(self) -> RawFile:
         """Take every row; what the file is."""
-        go_through(
-            self.opened.feed, self.opened.separator, self._plain.read, self._by_columns, self._by_rows
-        )
+        go_through(self.opened.feed, self.opened.separator, self._plain.read, self._by_columns, self._by_rows)
         if not self._taken and not self._faults.count:
             raise refusal(self._file.name, "the file has column names but no rows", "add the values")
         notices = (guard_notice(self._guards),) if self._guards else ()
@@ -189,7 +194,11 @@ class _FileTaking:
     def _without_guards(self, found: Iterator[Row | Broken]) -> Iterator[Row | Broken]:
         at = self._plain.level_at
         for row in found:
-            if isinstance(row, Row) and at < len(row.cells) and self._names([row.cells[at]]) != [row.cells[at]]:
+            if (
+                isinstance(row, Row)
+                and at < len(row.cells)
+                and self._names([row.cells[at]]) != [row.cells[at]]
+            ):
                 yield unguarded_row(row, at)
             else:
                 yield row

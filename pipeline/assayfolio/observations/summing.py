@@ -84,8 +84,7 @@ class Summing:
             origins.append(tally.origin * own)
         if len(distinct) < DISTINCT_VALUES:
             return unit
-        for origin in origins[1:]:
-            steps.append(abs(origin - origins[0]))
+        steps.extend(abs(origin - origins[0]) for origin in origins[1:])
         step = Fraction(0)
         for more in steps:
             step = common_step(step, more)

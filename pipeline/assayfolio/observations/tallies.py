@@ -6,7 +6,7 @@ makes sure of that for its own rows and hands on Python's integers, so that noth
 
 from fractions import Fraction
 from math import gcd
-from typing import Final
+from typing import Any, Final
 
 import numpy as np
 import numpy.typing as npt
@@ -127,5 +127,5 @@ def exact_squares(levels: Integers, numbers: Integers, level_count: int, largest
     return squares
 
 
-def _whole(sums: npt.NDArray[np.float64]) -> list[int]:
+def _whole(sums: npt.NDArray[Any]) -> list[int]:
     return [int(total) for total in sums.tolist()]

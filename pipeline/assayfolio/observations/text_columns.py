@@ -47,7 +47,7 @@ class TextColumns:
                 parse_options=csv.ParseOptions(
                     delimiter=self._separator,
                     quote_char='"' if b'"' in rows else False,
-                    ignore_empty_lines=False,
+                    ignore_empty_lines=True,  # which the number of rows shows
                 ),
                 convert_options=self._convert,
             )

@@ -33,6 +33,12 @@ class Density:
     width: Fraction
     counts: tuple[tuple[str, tuple[int, ...]], ...]
 
+    def middles(self, level: str) -> list[tuple[Fraction, int]]:
+        """The middle of each class that holds any value of `level`, and how many it holds."""
+        half = self.width / 2
+        counts = dict(self.counts)[level]
+        return [(self.start + at * self.width + half, count) for at, count in enumerate(counts) if count]
+
     @property
     def edges(self) -> tuple[Fraction, ...]:
         """The borders of the classes, one more than there are classes."""

@@ -39,5 +39,6 @@ class UnitConversion:
             wanted = "no unit" if self._unit is None else shown(self._unit)
             known = f" and converts {listed(tuple(self._factors))}" if self._factors else ""
             found = f"holds {shown(unit)}; the study has {wanted}{known}"
-            raise UnitError(found, f"correct it, or state the exact factor: `convert: {{{unit}: ...}}`")
+            key = shown(unit).strip("`")
+            raise UnitError(found, f"correct it, or state the exact factor: `convert: {{{key}: ...}}`")
         return factor

@@ -1,8 +1,10 @@
 """The checks of the assumptions, and the residuals for the eye."""
 
 from assayfolio.findings import CheckFindings
+from assayfolio.observations.totals import Totals
 from assayfolio.report.basis import Basis
 from assayfolio.report.content import Block, FigureBlock, Paragraph, Section, TableBlock
+from assayfolio.report.density import residual_histogram
 from assayfolio.report.diagnostics import normal_plot, residual_plots
 from assayfolio.report.figures import MOST_DOTS
 from assayfolio.report.notation import degrees_of_freedom, probability, statistic
@@ -19,6 +21,19 @@ _SYMBOLS = (
     ("Shapiro-Wilk", "*W*"),
     ("Anderson-Darling", "*A*²"),
 )
+
+
+def _residual_classes(basis: Basis, totals: Totals, numbering: Numbering, accent: str) -> FigureBlock:
+    return FigureBlock(
+        numbering.figure(),
+        (residual_histogram(basis, totals, accent),),
+        prose(
+            "Residuals (value minus the mean of its level), {total} in all, counted in equal classes: they "
+            "are too many to be drawn one by one, in the order of the file or against normal quantiles. The "
+            "line is the normal distribution with mean zero and the residuals’ own root mean square.",
+            total=str(basis.total),
+        ),
+    )
 
 
 def checks_section(basis: Basis, numbering: Numbering, accent: str) -> Section:
@@ -84,6 +99,8 @@ def _check_row(basis: Basis, check: CheckFindings) -> list[Words]:
 
 
 def _residual_figures(basis: Basis, numbering: Numbering, accent: str) -> list[Block]:
+    if basis.totals is not None:
+        return [_residual_classes(basis, basis.totals, numbering, accent)]
     order, against = residual_plots(basis)
     many = basis.total > MOST_DOTS
     how = " Shaded squares: the darker, the more values." if many else ""

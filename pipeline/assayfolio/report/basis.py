@@ -8,6 +8,7 @@ from typing import Protocol
 from assayfolio.errors import RenderingError
 from assayfolio.exact import Exact, magnitude
 from assayfolio.findings import ComparisonFamily, LevelFindings, ResponseFindings
+from assayfolio.observations.totals import Totals
 from assayfolio.observations.values import Observations
 from assayfolio.report.facts import ReportInput
 from assayfolio.report.notation import MINUS, Scale, percent
@@ -56,6 +57,8 @@ class Basis:
         listed = dict.fromkeys(counted, 0)
         for row in self.observations.rows:
             listed[row.level] = listed.get(row.level, 0) + 1
+        if self.totals is not None:
+            listed = {level.level: level.sums.n for level in self.totals.levels}
         if counted != listed:
             raise RenderingError("the findings and the observations do not count the same values")
         return found
@@ -64,6 +67,11 @@ class Basis:
     def observations(self) -> Observations:
         """The observations of the response."""
         return self.content.observations[self.index]
+
+    @property
+    def totals(self) -> Totals | None:
+        """What is known of the values where they are too many to be kept one by one."""
+        return self.observations.totals
 
     @cached_property
     def study(self) -> StudyDefinition:
@@ -136,6 +144,8 @@ class Basis:
     @cached_property
     def last_digit(self) -> int:
         """The power of ten of the last digit that was recorded."""
+        if self.totals is not None:
+            return min(level.sums.exponent for level in self.totals.levels)
         return min(row.value.exponent for row in self.observations.rows)
 
     @cached_property
@@ -148,6 +158,8 @@ class Basis:
     def difference_scale(self) -> Scale:
         """How differences, residuals and standard deviations are printed."""
         sizes: list[Exact | float] = list(self.residuals)
+        if self.totals is not None:
+            sizes = [end - level.mean for level in self.levels for end in (level.minimum, level.maximum)]
         sizes += [level.mean - self.levels[0].mean for level in self.levels]
         sizes += [row.estimate for family in self.response.comparisons for row in family.rows]
         return Scale.of(sizes, self.last_digit, self.response.unit)
@@ -181,6 +193,12 @@ class Basis:
         for value, row in zip(self.values, self.observations.rows, strict=True):
             grouped[row.level].append(value)
         return grouped
+
+    def weighted_values(self, level: str) -> list[tuple[Fraction, int]]:
+        """Where the values of a level lie, and how many in each place; classes where they are not kept."""
+        if self.totals is None:
+            return [(value, 1) for value in self.values_by_level[level]]
+        return self.totals.density.middles(level)
 
     @cached_property
     def residuals(self) -> tuple[Fraction, ...]:

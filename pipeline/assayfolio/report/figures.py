@@ -93,7 +93,10 @@ def label_column(names: list[str], share: float) -> float:
 
 @dataclass(frozen=True, slots=True)
 class _Row:
-    """One level in a dot plot: its name in lines, where its dots go, and the height its lanes take."""
+    """One level in a dot plot: its name in lines, where its dots go, and the height its lanes take.
+
+    `counts` says how many values lie at each of the places where these are classes.
+    """
 
     level: LevelFindings
     words: list[str]
@@ -101,6 +104,7 @@ class _Row:
     lanes: list[int]
     room: float
     height: float
+    counts: list[int]
 
 
 def _heights(basis: Basis, size: int) -> list[float]:
@@ -145,7 +149,8 @@ def _span(basis: Basis, axis: Axis) -> tuple[float, float]:
 
 def _row(basis: Basis, level: LevelFindings, axis: Axis, column: float, count: int) -> _Row:
     words = wrapped(kept_together(level.level), SIZE, column, "semibold")
-    places = [axis.at(value) for value in basis.values_by_level[level.level]]
+    values = basis.weighted_values(level.level)
+    places = [axis.at(value) for value, _ in values]
     name_lines = len(words) + (0 if count > _MANY_LEVELS else 1)
     least = 30.0 if count <= _FEW_LEVELS else 22.0 if count <= _MANY_LEVELS else 17.0
     if basis.total > MOST_DOTS:
@@ -154,7 +159,7 @@ def _row(basis: Basis, level: LevelFindings, axis: Axis, column: float, count: i
         chosen = lanes(places, DOT_ROOM)
         room = min(_MOST_ROOM, DOT_ROOM * (max(chosen) - min(chosen)))
     height = max(least, LINE * name_lines + 4, room + _BESIDE_DOTS)
-    return _Row(level, words, places, chosen, room, height)
+    return _Row(level, words, places, chosen, room, height, [count for _, count in values])
 
 
 def _name_level(
@@ -181,17 +186,17 @@ def _draw_row(drawing: Drawing, basis: Basis, row: _Row, axis: Axis, top: float,
     if row.level.ci is not None:
         draw_interval(drawing, axis, interval, row.level.ci, stroke=accent)
     if basis.total > MOST_DOTS:
-        _classes(drawing, row.places, axis, dots - row.room / 2, row.room / 2)
+        _classes(drawing, row, axis, dots - row.room / 2, row.room / 2)
         return
     for x, offset in zip(row.places, offsets(row.lanes, DOT_ROOM, row.room), strict=True):
         drawing.ring(x, dots - offset, DOT)
 
 
-def _classes(drawing: Drawing, places: list[float], axis: Axis, middle: float, room: float) -> None:
+def _classes(drawing: Drawing, row: _Row, axis: Axis, middle: float, room: float) -> None:
     width = (axis.end - axis.start) / _BINS
     counts = [0] * _BINS
-    for x in places:
-        counts[min(_BINS - 1, int((x - axis.start) / width))] += 1
+    for x, values in zip(row.places, row.counts, strict=True):
+        counts[min(_BINS - 1, int((x - axis.start) / width))] += values
     for number, count in enumerate(counts):
         if count:
             half = max(0.3, room * count / max(counts))

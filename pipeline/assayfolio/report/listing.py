@@ -44,14 +44,18 @@ def _not_listed(basis: Basis) -> Prose:
     each = " of each response" if basis.several else ""
     return prose(
         f"The file has {{total}}{each}; a listing stops at {{most}} and is left to the file itself, "
-        f"{{file}}, "
-        "whose SHA-256 stands in section {number}." + _extra(basis),
+        f"{{file}}, " + _where(basis) + "whose SHA-256 stands in section {number}." + _extra(basis),
         total=counted(basis.total, "value"),
         most=str(MOST_LISTED),
         file=verbatim(basis.observations.file),
         number=str(basis.place(Part.PROVENANCE).number),
         columns=", ".join(basis.observations.extra_columns),
     )
+
+
+def _where(basis: Basis) -> str:
+    """Where the file is to be found, if it does not travel inside the report."""
+    return "" if basis.totals is None else "of which the folio holds a copy (data/inputs), "
 
 
 def _listing(basis: Basis, label: str, caption: Prose) -> Listing:

@@ -72,7 +72,7 @@ def grubbs_single(level: str, values: Sequence[Decimal10]) -> OutlierTest:
     """
     reason = _why_not(values, FEWEST_FOR_GRUBBS)
     if reason is not None:
-        return _not_done(GRUBBS, level, reason)
+        return not_done(GRUBBS, level, reason)
     low, high = lowest_and_highest(values)
     farthest = high if high.g.square > low.g.square else low
     n = len(values)
@@ -94,7 +94,7 @@ def grubbs_double(level: str, values: Sequence[Decimal10]) -> OutlierTest:
     if reason is None and len(values) > MOST_FOR_PAIRS:
         reason = f"the test of two values is computed for up to {MOST_FOR_PAIRS}; here are {len(values):,}"
     if reason is not None:
-        return _not_done(GRUBBS_DOUBLE, level, reason)
+        return not_done(GRUBBS_DOUBLE, level, reason)
     low, high = lowest_and_highest_pair(values)
     extreme = high if high.ratio < low.ratio else low
     n = len(values)
@@ -112,7 +112,7 @@ def cochran_outlier(analysis: OneWay) -> OutlierTest:
     try:
         check = cochran_variances(analysis)
     except NotComputableError as error:
-        return _not_done(COCHRAN, None, str(error))
+        return not_done(COCHRAN, None, str(error))
     limits = (
         cochran_limit(STRAGGLER_LEVEL, check.levels, *check.df),
         cochran_limit(OUTLIER_LEVEL, check.levels, *check.df),
@@ -143,6 +143,7 @@ def _done(
     return OutlierTest(test, level, indexes, statistic, straggler, outlier, stated, small, verdict, None)
 
 
-def _not_done(test: str, level: str | None, reason: str) -> OutlierTest:
+def not_done(test: str, level: str | None, reason: str) -> OutlierTest:
+    """A test that cannot be done on a level, or on any, for a reason in words."""
     small = test == GRUBBS_DOUBLE
     return OutlierTest(test, level, (), None, None, None, None, small, None, reason)

@@ -42,7 +42,11 @@ def resolution(groups: Sequence[tuple[str, Sequence[Decimal10]]], analysis: OneW
     units = set(numbers)
     lowest = min(units)
     multiple = gcd(*(one - lowest for one in units)) if len(units) >= _DISTINCT_VALUES else 1
-    step = multiple * Fraction(10) ** exponent / divisor
+    return resolution_of(multiple * Fraction(10) ** exponent / divisor, analysis)
+
+
+def resolution_of(step: Fraction, analysis: OneWay) -> Resolution:
+    """Whether the recorded `step` of the values of `analysis` is coarse, as `resolution` has it."""
     variance = analysis.ms_within
     return Resolution(
         step=step,

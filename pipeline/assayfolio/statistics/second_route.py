@@ -139,6 +139,17 @@ def second_route(groups: Groups, table: ReportedTable, tails: Sequence[ReportedT
     return SecondRoute(tuple(agreements), tuple(missing))
 
 
+def second_route_of_tails(tails: Sequence[ReportedTails], reason: str) -> SecondRoute:
+    """The reported tails of one response against the second route; the table is not compared for `reason`."""
+    agreements: list[Agreement] = []
+    missing = [NotCompared("means, sums of squares and F", reason)]
+    for family in tails:
+        agreement, left_out = _compare_tails(family)
+        agreements += agreement
+        missing += left_out
+    return SecondRoute(tuple(agreements), tuple(missing))
+
+
 def chosen_rows(p: Sequence[float], most: int = MOST_ROWS) -> tuple[int, ...]:
     """Which tails of a family are recomputed: all up to `most`, otherwise so many, evenly spaced in rank.
 

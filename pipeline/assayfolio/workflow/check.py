@@ -1,6 +1,5 @@
 """Checking a study before it is run: the plan, and whether the data fit it. Nothing is written."""
 
-from collections import Counter
 from collections.abc import Mapping
 from dataclasses import dataclass
 from pathlib import Path
@@ -78,8 +77,7 @@ class CheckedStudy:
         if self.observations is None:
             return {}
         observed = self.observations[0]
-        counted = Counter(row.level for row in observed.rows)
-        return {level: counted[level] for level in observed.levels}
+        return {counts.level: counts.analysed for counts in observed.flow}
 
 
 def _described(comparison: Comparison) -> str:

@@ -17,6 +17,7 @@ from assayfolio.study.availability import check_required
 from assayfolio.study.exclusions import read_exclusions
 from assayfolio.study.plan import Laboratory, StudyDefinition
 from assayfolio.study.reading import read_laboratory, read_study
+from assayfolio.workflow.large_intake import LargeInputFile, archived_file, large_files, streamed, streams
 from assayfolio.workflow.raw_files import FOLDER, raw_files, read_raw_files, some_raw_file_exists
 from assayfolio.workflow.workspace import Workspace, read_input
 from assayfolio.worksheet.rows import check_worksheet
@@ -37,9 +38,17 @@ class InputFile:
     content: bytes
 
     @property
+    def size(self) -> int:
+        """The number of bytes."""
+        return len(self.content)
+
+    @property
     def sha256(self) -> str:
         """The digest of the bytes that were read."""
         return sha256_hex(self.content)
+
+
+AnyInput = InputFile | LargeInputFile
 
 
 @dataclass(slots=True)
@@ -47,7 +56,7 @@ class SeenFiles:
     """The inputs that have been read so far, for the record of a run that is refused."""
 
     study_id: str | None = None
-    files: list[InputFile] = field(default_factory=list)
+    files: list[AnyInput] = field(default_factory=list)
 
 
 @dataclass(frozen=True, slots=True)
@@ -57,7 +66,7 @@ class Intake:
     study: StudyDefinition
     laboratory: Laboratory
     observations: tuple[Observations, ...]
-    files: tuple[InputFile, ...]
+    files: tuple[AnyInput, ...]
 
 
 def read_plan(workspace: Workspace, study_path: Path, seen: SeenFiles) -> tuple[StudyDefinition, Laboratory]:
@@ -100,8 +109,12 @@ def read_files(workspace: Workspace, study_path: Path, seen: SeenFiles) -> tuple
     """
     study, laboratory = read_plan(workspace, study_path, seen)
     paths = raw_files(workspace, study_path, study.data)
-    for path, (name, content) in zip(paths, read_raw_files(workspace, paths), strict=True):
-        seen.files.append(InputFile("raw data", name, f"{FOLDER}/{path.name}", content))
+    if streams(paths, study.data):
+        for file in large_files(workspace, paths, FOLDER):
+            seen.files.append(file)
+    else:
+        for path, (name, content) in zip(paths, read_raw_files(workspace, paths), strict=True):
+            seen.files.append(InputFile("raw data", name, f"{FOLDER}/{path.name}", content))
     if study.data.exclusions is not None:
         exclusions = study_path.resolve().parent / study.data.exclusions
         content = read_input(workspace, exclusions, "exclusions file")
@@ -110,18 +123,26 @@ def read_files(workspace: Workspace, study_path: Path, seen: SeenFiles) -> tuple
     return study, laboratory
 
 
-def validated(study: StudyDefinition, laboratory: Laboratory, files: tuple[InputFile, ...]) -> Intake:
+def validated(study: StudyDefinition, laboratory: Laboratory, files: tuple[AnyInput, ...]) -> Intake:
     """The intake made of a plan and its files, the raw data among them."""
-    raw = [(file.path, file.content) for file in files if file.role == "raw data"]
+    observations = _observations(study, files)
+    check_fit(study, observations)
+    return Intake(study, laboratory, observations, files)
+
+
+def _observations(study: StudyDefinition, files: tuple[AnyInput, ...]) -> tuple[Observations, ...]:
+    large = [file for file in files if isinstance(file, LargeInputFile)]
+    if large:
+        return streamed(large, study)
+    held = [file for file in files if isinstance(file, InputFile)]
+    raw = [(file.path, file.content) for file in held if file.role == "raw data"]
     exclusions = [
         exclusion
-        for file in files
+        for file in held
         if file.role == "exclusions"
         for exclusion in read_exclusions(file.content, file.path)
     ]
-    observations = read_all_observations(raw, study.data, study.measurement, exclusions)
-    check_fit(study, observations)
-    return Intake(study, laboratory, observations, files)
+    return read_all_observations(raw, study.data, study.measurement, exclusions)
 
 
 def data_file_exists(workspace: Workspace, study_path: Path, study: StudyDefinition) -> bool:
@@ -134,16 +155,29 @@ def folio_intake(folio: Path, inputs: tuple[tuple[Role, str, str], ...]) -> Inta
 
     `inputs` are (role, path in the workspace, path in the folio), as the run recorded them.
     """
-    seen = []
-    for role, path, folio_path in inputs:
-        try:
-            content = (folio / folio_path).read_bytes()
-        except OSError as error:
-            fault = Fault(Place(f"{folio.name}/{folio_path}"), str(error.strerror))
-            raise InputError(f"{folio} cannot be read as a run's folio.", (fault,)) from error
-        seen.append(InputFile(role, path, folio_path, content))
-    by_role = {file.role: file for file in seen}
-    study_file, lab_file = by_role["study definition"], by_role["laboratory settings"]
+    held = {
+        role: InputFile(role, path, folio_path, _archived(folio, folio_path))
+        for role, path, folio_path in inputs
+        if role != "raw data"
+    }
+    study_file, lab_file = held["study definition"], held["laboratory settings"]
     study = read_study(study_file.content, study_file.path)
     laboratory = read_laboratory(lab_file.content, lab_file.path)
-    return validated(study, laboratory, tuple(seen))
+    large = streams([folio / inside for role, _, inside in inputs if role == "raw data"], study.data)
+    files: list[AnyInput] = []
+    for role, path, folio_path in inputs:
+        if role != "raw data":
+            files.append(held[role])
+        elif large:
+            files.append(archived_file(path, folio_path, folio / folio_path))
+        else:
+            files.append(InputFile(role, path, folio_path, _archived(folio, folio_path)))
+    return validated(study, laboratory, tuple(files))
+
+
+def _archived(folio: Path, folio_path: str) -> bytes:
+    try:
+        return (folio / folio_path).read_bytes()
+    except OSError as error:
+        fault = Fault(Place(f"{folio.name}/{folio_path}"), str(error.strerror))
+        raise InputError(f"{folio} cannot be read as a run's folio.", (fault,)) from error

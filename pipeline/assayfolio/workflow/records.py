@@ -20,7 +20,7 @@ from assayfolio.report.facts import (
     RunFacts,
 )
 from assayfolio.version import VERSION
-from assayfolio.workflow.intake import Intake
+from assayfolio.workflow.intake import InputFile, Intake
 from assayfolio.workflow.surroundings import Surroundings
 
 RUN_FORMAT = "assayfolio-run/1"
@@ -57,7 +57,7 @@ def run_record(
                 "role": file.role,
                 "path": file.path,
                 "folio_path": file.folio_path,
-                "size": len(file.content),
+                "size": file.size,
                 "sha256": file.sha256,
             }
             for file in intake.files
@@ -176,15 +176,15 @@ def report_input(intake: Intake, findings: Findings, facts: RunFacts) -> ReportI
 
 
 def _attachments(intake: Intake, findings: Findings) -> Sequence[AttachedFile]:
-    by_role = {file.role: file for file in intake.files}
-    study, raw = by_role["study definition"], by_role["raw data"]
+    by_role = {file.role: file for file in intake.files if isinstance(file, InputFile)}
+    study, raw = by_role["study definition"], by_role.get("raw data")
     listed = [
         AttachedFile("study.yaml", "application/yaml", "Study definition", "Source", study.content),
         AttachedFile(
             "findings.json", "application/json", "Findings, canonical JSON", "Data", findings_bytes(findings)
         ),
     ]
-    if len(raw.content) <= ATTACH_UP_TO_BYTES:
+    if raw is not None and raw.size <= ATTACH_UP_TO_BYTES:
         name = Path(raw.folio_path).name
         separator = intake.observations[0].files[0].separator
         media_type = "text/tab-separated-values" if separator == "tab" else "text/csv"

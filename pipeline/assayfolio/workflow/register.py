@@ -28,7 +28,7 @@ from assayfolio.evidence.register import (
 )
 from assayfolio.evidence.trail import TrailReading, TrailWriter
 from assayfolio.study.reading import read_study
-from assayfolio.workflow.intake import InputFile, SeenFiles
+from assayfolio.workflow.intake import AnyInput, SeenFiles
 from assayfolio.workflow.raw_files import named_raw_files
 from assayfolio.workflow.steps import Step
 from assayfolio.workflow.workspace import Workspace, shown_path
@@ -45,12 +45,12 @@ def enter_received(trail: TrailWriter, seen: SeenFiles) -> None:
     for file in seen.files:
         if file.role == "raw data" and file.sha256 not in known:
             known.add(file.sha256)
-            details = received_details(file.path, len(file.content), file.sha256, seen.study_id)
+            details = received_details(file.path, file.size, file.sha256, seen.study_id)
             subject = seen.study_id or "workspace"
             trail.append(RECEIVED, subject, None, {"step": int(Step.READ), **details})
 
 
-def input_details(files: Sequence[InputFile]) -> dict[str, Json]:
+def input_details(files: Sequence[AnyInput]) -> dict[str, Json]:
     """What the entry of a run says of its inputs: digests by path, and which of them are what."""
     by_role: dict[str, list[str]] = {}
     for file in files:

@@ -17,7 +17,7 @@ from assayfolio.errors import AssayfolioError, ExitCode, InputError, MachineErro
 from assayfolio.evaluation.apply import evaluate
 from assayfolio.evaluation.reported import second_routes
 from assayfolio.evidence.environment import environment_record
-from assayfolio.evidence.folio import folio_lock, stage_folio
+from assayfolio.evidence.folio import Content, FileToCopy, folio_lock, stage_folio
 from assayfolio.evidence.history import next_number, run_name, run_subject, trail_extract
 from assayfolio.evidence.trail import TrailEntry, TrailHead, open_trail
 from assayfolio.findings import CRITERION_MET, Findings
@@ -27,7 +27,7 @@ from assayfolio.report.loading import load_renderer
 from assayfolio.report.render import render_report
 from assayfolio.study.plan import SignOff
 from assayfolio.workflow.failure import failure_text
-from assayfolio.workflow.intake import Intake, SeenFiles, read_files, validated
+from assayfolio.workflow.intake import AnyInput, InputFile, Intake, SeenFiles, read_files, validated
 from assayfolio.workflow.records import (
     bag_info,
     completed_record,
@@ -86,7 +86,7 @@ class _Run:
     history: Mapping[str, Json] = field(default_factory=dict)
     reached: Step = Step.ALLOT
     record: dict[str, Json] = field(default_factory=dict)
-    payload: dict[str, bytes] = field(default_factory=dict)
+    payload: dict[str, Content] = field(default_factory=dict)
 
     @property
     def name(self) -> str:
@@ -157,7 +157,7 @@ def _refusal_entered(workspace: Workspace, study_path: Path, seen: SeenFiles) ->
 def _read_words(observations: tuple[Observations, ...]) -> str:
     first, count = observations[0], len(observations)
     of_each = "" if count == 1 else f" of each of {count} responses"
-    return f"{len(first.rows):,} values{of_each} at {len(first.levels)} levels from {first.file}"
+    return f"{first.n:,} values{of_each} at {len(first.levels)} levels from {first.file}"
 
 
 def _refuse(workspace: Workspace, study_path: Path, seen: SeenFiles, error: AssayfolioError) -> None:
@@ -204,7 +204,7 @@ def _allot(
 
 
 def _compute_and_render(run: _Run) -> Findings:
-    run.payload = {file.folio_path: file.content for file in run.intake.files}
+    run.payload = {file.folio_path: _kept(file) for file in run.intake.files}
     run.payload["data/requirements.lock"] = requirements_lock()
     run.payload[HISTORY_FILE] = canonical_bytes(run.history)
     run.record = run_record(run.intake, run.surroundings, run.number, run.head_at_start)
@@ -234,6 +234,11 @@ def _compute_and_render(run: _Run) -> Findings:
     run.enter("rendered", Step.RENDER, {"report": sha256_hex(report.pdf)})
     run.progress(Step.RENDER, f"report.pdf {len(report.pdf) // 1024} kB")
     return findings
+
+
+def _kept(file: AnyInput) -> Content:
+    """How the folio comes by an input: its bytes, or a copy of those that were read."""
+    return file.content if isinstance(file, InputFile) else FileToCopy(file.source, file.size, file.sha256)
 
 
 def _take_second_route(run: _Run, findings: Findings) -> None:

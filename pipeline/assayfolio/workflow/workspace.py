@@ -67,8 +67,20 @@ def find_workspace(named: Path | None, start: Path) -> Workspace:
 def read_input(workspace: Workspace, path: Path, what: str) -> bytes:
     """The bytes of an input file, read once.
 
-    Raises InputError where the file is missing, not a regular file, too large, or outside the workspace (also
-    by way of a symbolic link); MachineError where the machine refuses to read it.
+    Raises InputError as `real_input` does; MachineError where the machine refuses to read it.
+    """
+    real = real_input(workspace, path, what, MAX_FILE_BYTES)
+    try:
+        return real.read_bytes()
+    except OSError as error:
+        raise MachineError(f"{shown_path(path)}: the {what} cannot be read: {error.strerror}.") from error
+
+
+def real_input(workspace: Workspace, path: Path, what: str, most_bytes: int) -> Path:
+    """Where an input file lies, free of symbolic links.
+
+    Raises InputError where the file is missing, not a regular file, larger than `most_bytes`, or outside the
+    workspace (also by way of a symbolic link).
     """
     shown = shown_path(path)
     try:
@@ -84,14 +96,11 @@ def read_input(workspace: Workspace, path: Path, what: str) -> bytes:
         fault = Fault(Place(shown), f"leads outside the workspace, to {shown_path(real)}", advice)
     elif not stat.S_ISREG(kind.st_mode):
         fault = Fault(Place(shown), "is not a regular file")
-    elif kind.st_size > MAX_FILE_BYTES:
-        fault = Fault(Place(shown), f"is larger than {MAX_FILE_BYTES // 2**20} MB")
+    elif kind.st_size > most_bytes:
+        fault = Fault(Place(shown), f"is larger than {most_bytes // 2**20} MB")
     if fault is not None:
         raise InputError(f"The {what} cannot be read.", (fault,))
-    try:
-        return real.read_bytes()
-    except OSError as error:
-        raise MachineError(f"{shown}: the {what} cannot be read: {error.strerror}.") from error
+    return real
 
 
 def found_workspace(folder: Path) -> Workspace:
