@@ -15,6 +15,7 @@ from math import isqrt, lcm
 MAX_DIGITS = 38
 MAX_EXPONENT = 60
 
+_PLAIN = re.compile(r"-?[0-9]{1,18}(?:\.[0-9]{1,18})?\Z")
 _NUMBER = re.compile(r"([+-]?)(\d*)(?:\.(\d*))?(?:[eE]([+-]?\d+))?\Z", re.ASCII)
 _LOOKALIKES = {
     "\u2212": "a minus sign U+2212; type the hyphen-minus",
@@ -93,6 +94,9 @@ def parse_decimal(text: str, decimal_mark: str = ".") -> Decimal10:
     beyond +-60.
     """
     stripped = text.strip(" \t")
+    if decimal_mark == "." and _PLAIN.match(stripped):  # nearly all numbers, in half the time
+        whole, _, decimals = stripped.partition(".")
+        return Decimal10(int(whole + decimals), -len(decimals))
     if not stripped:
         raise NotADecimalError("blank")
     if len(stripped) > 4 * (MAX_DIGITS + MAX_EXPONENT):

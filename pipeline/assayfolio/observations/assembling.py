@@ -67,6 +67,7 @@ class Assembly:
             Part(response, UnitConversion(plan, response) if plan.unit_column is not None else None)
             for response in plan.response
         ]
+        self._excluding = exclusions.any
         self._plan = plan
         self._facts = [fact for fact in measurement if fact.column is not None]
         self._faults = faults
@@ -76,25 +77,23 @@ class Assembly:
         self._countable = True
 
     def take(self, row: Received) -> None:
-        """Take one row, with a value of each response."""
+        """Take one row, with a value of each response; after a fault nothing that was taken is used."""
         faults = self._faults.of[row.file]
-        before = faults.count
         unit = self._level(row, faults)
         order = None
         if self._order is not None and row.columns.order is not None:
             order = self._order.place(row.order or "", (row.file, *row.row.spot(row.columns.order)), faults)
+        if self._facts:
+            self._check_facts(row, faults)
+        for at, part in enumerate(self.parts):
+            self._take_value(row, at, part, unit, order, faults)
+
+    def _check_facts(self, row: Received, faults: FaultList) -> None:
+        """Add a fault for each blank entry of a column that `measurement` names."""
         for fact, at, cell in zip(self._facts, row.columns.measurement, row.measurement, strict=True):
             if not cell.strip():
                 found = f"column {shown(fact.column or '')} is blank"
                 faults.add(*row.row.spot(at), found, f"give the {fact.key} of this measurement")
-        taken = [self._value(row, at, order, faults) for at in range(len(row.texts))]
-        if faults.count > before:
-            return
-        for part, (value, exclusion) in zip(self.parts, taken, strict=True):
-            if isinstance(value, SetAside):
-                part.set_aside.append(value)
-            elif value is not None:
-                part.keep(value, unit, exclusion)
 
     def raise_faults(self) -> None:
         """Raise DataError with all faults of rows, levels and numbers of rows, if there is any."""
@@ -107,10 +106,9 @@ class Assembly:
 
     def _level(self, row: Received, faults: FaultList) -> str | None:
         """Count the level of the row; its replicate, where the plan has a column for it."""
-        spot = row.level_spot
         if not row.level.strip():
             found = f"column {shown(self._plan.factor)} is blank"
-            faults.add(*spot, found, "give the level that the value belongs to")
+            faults.add(*row.level_spot, found, "give the level that the value belongs to")
             return None
         unit = None
         if self._units is not None and row.columns.replicate_unit is not None:
@@ -118,52 +116,60 @@ class Assembly:
             unit = self._units.name(row.replicate_unit or "", row.level, where, faults)
             if unit is None:
                 self._countable = False
-        self.levels.count(row.level, (row.file, *spot), unit)
+        self.levels.count(row.level, row.level_place, unit)
         return unit
 
-    def _value(
-        self, row: Received, at: int, order: int | None, faults: FaultList
-    ) -> tuple[Observation | SetAside | None, Exclusion | None]:
-        """The value of response number `at` and the exclusion that means it; None with a fault added."""
+    def _take_value(
+        self, row: Received, at: int, part: Part, unit: str | None, order: int | None, faults: FaultList
+    ) -> None:
+        """Give the value of response number `at` to its part, as planned or excluded; or add a fault."""
         cell = row.texts[at]
         text = cell.strip(" \t")
-        exclusion = self.exclusions.of(row.file, row.line, text) if self.exclusions.any else None
+        exclusion = self.exclusions.of(row.file, row.line, text) if self._excluding else None
         try:
-            reading = self._reader.read(cell)
+            reading = self._reader.read(text)
         except NotADecimalError as error:
             if exclusion is None:
                 found = f"holds {shown(cell)}: {error}"
                 self._refuse(row, at, found, number_advice(str(error), cell), faults)
-                return None, None
-            return _set_aside(row, text, "excluded", None, exclusion), exclusion
+            else:
+                part.set_aside.append(_set_aside(row, text, "excluded", None, exclusion))
+            return
         refusal = None if reading.kind == MEASURED else refusal_of(reading, cell, self._plan)
         if refusal is not None and exclusion is None:
             self._refuse(row, at, *refusal, faults)
-            return None, None
-        number = self._in_unit(row, at, reading, faults)
-        if number is None:
+            return
+        number = reading.number
+        if number is not None and part.conversion is not None:
+            number = self._in_unit(row, part.conversion, reading, number, faults)
+        if number is None or refusal is not None:
             cause: Cause = "missing" if exclusion is None else "excluded"
-            return _set_aside(row, text, cause, None, exclusion), exclusion
-        if refusal is not None:
-            return _set_aside(row, text, "excluded", number, exclusion), exclusion
+            part.set_aside.append(_set_aside(row, text, cause, number, exclusion))
+            return
         column = row.columns.responses[at] + 1
-        bare = Observation(row.line, row.level, number, text, row.extras, order, row.file, column)
-        if reading.kind == "measured" or reading.kind == "missing":
-            return bare, exclusion
-        return replace(bare, kind=reading.kind, limit=number), exclusion
+        value = Observation(row.line, row.level, number, text, row.extras, order, row.file, column)
+        if reading.kind == "below limit" or reading.kind == "above limit":
+            value = replace(value, kind=reading.kind, limit=number)
+        part.keep(value, unit, exclusion)
 
-    def _in_unit(self, row: Received, at: int, reading: Reading, faults: FaultList) -> Decimal10 | None:
-        """The number of a reading in the unit of the plan; None where it has none."""
-        conversion = self.parts[at].conversion
-        if reading.number is None or conversion is None or row.columns.unit is None:
-            return reading.number
+    def _in_unit(
+        self,
+        row: Received,
+        conversion: UnitConversion,
+        reading: Reading,
+        number: Decimal10,
+        faults: FaultList,
+    ) -> Decimal10:
+        """The number of a reading in the unit of the plan."""
+        if row.columns.unit is None:
+            return number
         try:
             factor = conversion.factor(row.unit or "")
         except UnitError as error:
             found = f"column {shown(self._plan.unit_column or '')} {error}"
             faults.add(*row.row.spot(row.columns.unit), found, error.advice)
-            return reading.number
-        return reading.number if factor is None or reading.coded else reading.number.times(factor)
+            return number
+        return number if factor is None or reading.coded else number.times(factor)
 
     def _refuse(self, row: Received, at: int, found: str, advice: str, faults: FaultList) -> None:
         """Add a fault of the cell of response number `at`; a wide layout names its column by the level."""

@@ -25,7 +25,7 @@ class Tally:
     """
 
     first: Where
-    last: Where
+    last: Callable[[], Where]
     planned: int | None
     sound: bool
     twin: str | None = None
@@ -46,8 +46,8 @@ class LevelCount:
         self._tallies: dict[str, Tally] = {}
         self._seen = {as_seen(level): level for level in self._listed}
 
-    def count(self, level: str, where: Where, unit: str | None = None) -> None:
-        """Take one row of `level` whose level stands at `where`.
+    def count(self, level: str, where: Callable[[], Where], unit: str | None = None) -> None:
+        """Take one row of `level`; `where` says where its level stands, and is asked only for a fault.
 
         Rows with the same `unit` are repeats and count as one replicate.
         """
@@ -62,7 +62,7 @@ class LevelCount:
             tally.units.add(unit)
         tally.n += 1
         if tally.surplus is None and tally.planned is not None and tally.n > tally.planned:
-            tally.surplus = where
+            tally.surplus = where()
 
     def count_many(self, level: str, count: int, where: Callable[[int], Where]) -> None:
         """Take `count` rows of `level` (one or more), the levels of which stand at `where` of 0, 1, ...
@@ -71,12 +71,12 @@ class LevelCount:
         """
         tally = self._tallies.get(level)
         if tally is None:
-            tally = self._tallies[level] = self._new_tally(level, where(0))
+            tally = self._tallies[level] = self._new_tally(level, _known(where(0)))
         tally.rows += count
         tally.n += count
         if tally.planned is None:
             return
-        tally.last = where(count - 1)
+        tally.last = _known(where(count - 1))
         if tally.surplus is None and tally.n > tally.planned:
             tally.surplus = where(count - 1 - (tally.n - tally.planned - 1))
 
@@ -124,14 +124,14 @@ class LevelCount:
         found = f"level {shown(level)}: found {tally.n}{what}, planned {tally.planned}"
         which = "its first row too many is here" if tally.surplus else "its last row is here"
         advice = f"{which}; {what.strip() or 'rows'} and planned replicates have to agree"
-        yield tally.surplus or tally.last, found, advice
+        yield tally.surplus or tally.last(), found, advice
 
-    def _new_tally(self, level: str, where: Where) -> Tally:
+    def _new_tally(self, level: str, where: Callable[[], Where]) -> Tally:
         planned = self._replicates if isinstance(self._replicates, int) else self._by_level.get(level)
         twin = self._seen.setdefault(as_seen(level), level)
         known = twin == level == level.strip() if self._declared is None else level in self._declared
         fits = first_unsettable(level) is None and len(level) <= LONGEST_LABEL
-        return Tally(where, where, planned, known and fits, None if twin == level else twin)
+        return Tally(where(), where, planned, known and fits, None if twin == level else twin)
 
     def _name_fault(self, level: str, twin: str | None) -> tuple[str, str]:
         bad = first_unsettable(level)
@@ -149,3 +149,7 @@ class LevelCount:
         near = nearest(level, self._listed[:COMPARED_NAMES])
         advice = f"the nearest is {shown(near)}" if near else f"the study declares {listed(self._listed)}"
         return f"level {shown(level)} is not declared", advice
+
+
+def _known(where: Where) -> Callable[[], Where]:
+    return lambda: where

@@ -35,7 +35,8 @@ class Part:
         """Take a value with its replicate and with the exclusion that means it."""
         if exclusion is not None:
             self.excluded[len(self.kept)] = exclusion
-        self.beyond_limits |= value.limit is not None
+        if value.limit is not None:
+            self.beyond_limits = True
         self.kept.append(value)
         if unit is not None:
             self.units.append(unit)

@@ -74,6 +74,10 @@ class Received(NamedTuple):
         at = self.columns.level
         return self.row.spot(self.columns.responses[0] if at is None else at)
 
+    def level_place(self) -> tuple[int, int, int]:
+        """The file, and line and column of the level in it."""
+        return self.file, *self.level_spot
+
 
 @dataclass(frozen=True, slots=True)
 class ReceivedRows:
