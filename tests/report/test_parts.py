@@ -383,10 +383,19 @@ def test_an_equivalence_card_counts_its_pairs_and_shows_the_interval():
 
 
 def test_ratios_of_variances_have_intervals():
-    (table,) = tables(section("separate variances", "Spread"))
+    table, _ = tables(section("separate variances", "Spread"))
     spread = CASES["separate variances"]().findings.responses[0].spread
     assert [row[0] for row in rows(table)] == [row.label for row in spread.rows]
     assert all("–" not in row[2:4] for row in rows(table))
+
+
+@pytest.mark.parametrize(("case", "title"), [("separate variances", "Spread"), ("balanced", "Data")])
+def test_the_standard_deviation_of_each_level_has_its_interval(case, title):
+    last = tables(section(case, title))[-1]
+    levels = CASES[case]().findings.responses[0].levels
+    assert [row[0] for row in rows(last)] == [level.level for level in levels]
+    for row, level in zip(rows(last), levels, strict=True):
+        assert [float(end) for end in row[3:]] == pytest.approx(level.sd_ci, rel=0.01)
 
 
 def test_the_total_has_the_name_that_the_plan_gives_it():

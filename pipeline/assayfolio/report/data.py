@@ -6,6 +6,7 @@ from assayfolio.report.content import Block, FigureBlock, Paragraph, Section, Ta
 from assayfolio.report.figures import MOST_DOTS, dot_plots
 from assayfolio.report.numbering import Numbering, Part
 from assayfolio.report.prose import Prose, Words, prose, verbatim
+from assayfolio.report.standard_deviations import deviations_table
 from assayfolio.report.tables import Column, Table, fits, lay_out
 from assayfolio.report.wording import BLANK, counted
 
@@ -30,6 +31,8 @@ def data_section(basis: Basis, numbering: Numbering, accent: str) -> Section:
         ),
         *(TableBlock(table) for table in _descriptives(basis, numbering)),
     ]
+    if not basis.outline.has(Part.SPREAD, basis.index):
+        blocks += [TableBlock(table) for table in deviations_table(basis, numbering)]
     pictures = dot_plots(basis, accent)
     blocks += [
         FigureBlock(numbering.figure(), (picture,), _dot_caption(basis, number, len(pictures)))

@@ -8,6 +8,7 @@ from assayfolio.report.methods import adjustment_words
 from assayfolio.report.notation import confidence, probability, three_digits
 from assayfolio.report.numbering import Numbering, Part
 from assayfolio.report.prose import Prose, Words, prose
+from assayfolio.report.standard_deviations import deviations_table
 from assayfolio.report.tables import Column, Table, lay_out
 from assayfolio.report.wording import BLANK, STANDING, alpha_words, row_verdict, significant_ends
 
@@ -18,15 +19,12 @@ def spread_section(basis: Basis, numbering: Numbering) -> Section:
     spread = basis.response.spread
     if spread is None:
         why = "The variances cannot be compared; section {number} gives the reason."
-        blocks: tuple[Block, ...] = (
-            Paragraph(prose(why, number=str(basis.place(Part.NOT_REPORTED).number))),
-        )
+        number = str(basis.place(Part.NOT_REPORTED).number)
+        blocks: list[Block] = [Paragraph(prose(why, number=number))]
     else:
-        blocks = (
-            Paragraph(_words(basis, spread)),
-            TableBlock(_table(basis, spread, numbering)),
-        )
-    return Section(place.anchor, place.number, basis.title("Spread"), blocks)
+        blocks = [Paragraph(_words(basis, spread)), TableBlock(_table(basis, spread, numbering))]
+    blocks += [TableBlock(table) for table in deviations_table(basis, numbering)]
+    return Section(place.anchor, place.number, basis.title("Spread"), tuple(blocks))
 
 
 def _words(basis: Basis, spread: SpreadFindings) -> Prose:

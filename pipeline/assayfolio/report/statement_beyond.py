@@ -105,8 +105,7 @@ def spread_method(bases: tuple[Basis, ...]) -> Method | None:
         sentences(
             "*p* is twice the smaller tail of the *F* distribution with *n*_X_ − 1 and *n*_R_ − 1 degrees of "
             "freedom, at most 1; adjusted over the levels by "
-            f"{ADJUSTMENTS[plan.adjust].name}. The interval of a level’s standard deviation is the "
-            "chi-square interval with *n*_*i*_ − 1 degrees of freedom. Both assume normal errors.",
+            f"{ADJUSTMENTS[plan.adjust].name}. Both the test and its interval assume normal errors.",
         ),
     )
     return Method("Spread", blocks, ADJUSTMENTS[plan.adjust].references)
