@@ -252,7 +252,7 @@ REFUSED = {
         separate("power: {difference: 1, sigma: 1, target: 0.9}\n"),
         (
             "10:1: `power` needs one standard deviation, and `design.variances` is separate - "
-            "leave it out, or use `variances: pooled`"
+            "leave it out: power is computed for a common standard deviation only"
         ),
     ),
     "an allocation to a control that is none": (

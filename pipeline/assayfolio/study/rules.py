@@ -314,7 +314,7 @@ RULES = (
         (),
         lambda outline, _: outline.separate,
         " needs one standard deviation, and `design.variances` is separate",
-        "leave it out, or use `variances: pooled`",
+        "leave it out: power is computed for a common standard deviation only",
     ),
     Rule(
         "power.allocation",
