@@ -24,7 +24,9 @@ def test_everything_that_is_planned_is_named():
         "precision: {estimate: true, confidence: 0.9}\n"
         "outliers: {test: [grubbs, cochran]}\n"
         "checks: {equal-variances: levene}\n"
-        "criteria: [{quantity: repeatability-sd, at-most: 2}, {quantity: level-mean, level: b, at-least: 1}]\n"
+        "criteria:\n"
+        "  - {quantity: repeatability-sd, at-most: 2}\n"
+        "  - {quantity: level-mean, level: b, at-least: 1}\n"
         "power: {difference: 1, sigma: 1, target: 0.9}\n"
     )
     assert listed == [
@@ -42,7 +44,8 @@ def test_everything_that_is_planned_is_named():
 
 def test_a_sample_of_levels_says_what_its_total_is_called():
     listed = words(
-        "design: {effects: random}\nprecision: {estimate: true, varied: laboratory, conditions: reproducibility}\n"
+        "design: {effects: random}\n"
+        "precision: {estimate: true, varied: laboratory, conditions: reproducibility}\n"
     )
     assert listed == [
         "levels are a sample (random effects)",
