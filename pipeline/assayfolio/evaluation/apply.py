@@ -62,7 +62,7 @@ def evaluate(study: StudyDefinition, observations: tuple[Observations, ...]) -> 
                 equivalence=equivalence[at],
                 spread=spread[at],
                 checks=check_findings(study, subject),
-                outliers=outlier_findings(study.outliers, subject),
+                outliers=outlier_findings(study, subject),
                 precision=precision,
                 criteria=criterion_findings(study.criteria, subject, precision, gaps),
             )

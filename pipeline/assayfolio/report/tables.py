@@ -19,7 +19,7 @@ _COMFORTABLE_SIZES = (8.4, 8.0, 7.6)
 _UNBROKEN_SIZES = (*_COMFORTABLE_SIZES, 7.2)
 _SMALL_SIZES = (7.2, 6.8, 6.4, 6.0, 5.6)
 _ZEBRA_FROM = 9
-UNBROKEN_TO = 12
+UNBROKEN_TO = 5
 
 Kind = Literal["text", "number", "words"]
 
