@@ -92,11 +92,13 @@ def test_values_that_agree_by_rounding_make_no_outlier_and_the_note_says_why():
 
 def test_the_recorded_step_is_that_of_all_levels():
     data = {
-        "A": ["10.00", "10.05", "10.00", "10.00", "10.05", "10.35"],
-        "B": ["10.20", "10.25", "10.40", "10.15", "10.50", "10.30"],
+        "A": ["10.00", "10.00", "10.00", "10.05", "10.00", "10.20"],
+        "B": ["10.25", "10.40", "10.15", "10.50", "10.30"],
     }
     a, _ = outliers_of("grubbs", data)
     assert "step of 0.05" in a.note
+    a, _ = outliers_of("grubbs", {**data, "B": ["10.26", "10.40", "10.15", "10.50", "10.30"]})
+    assert a.verdict == OUTLIER
 
 
 SAMPLE = {

@@ -92,7 +92,7 @@ def test_skew_levels_are_found():
     generator = np.random.default_rng(9)
     p = [
         shapiro_wilk_joined(
-            recorded(100 + spread * generator.exponential(size=8) for spread in (0.5, 2, 8, 30)), STEP
+            recorded(100 + spread * generator.exponential(size=12) for spread in (0.5, 2, 8, 30)), STEP
         ).p
         for _ in range(100)
     ]

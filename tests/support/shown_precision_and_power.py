@@ -207,7 +207,7 @@ CRITERIA = {
     "largest-difference": ("pooled", "largest difference of two level means", "g/100 g", "at most 0.1"),
     "largest-difference-percent": (
         "pooled",
-        "largest difference of two level means, of the grand mean",
+        "largest difference of two level means, of the mean of all values",
         "%",
         "at most 5",
     ),

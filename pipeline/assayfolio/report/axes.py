@@ -123,10 +123,12 @@ def _labels(ticks: tuple[Fraction, ...], step: Fraction, origin: Fraction, power
 
 def _drawn_in(axis: Axis, lettering: Lettering) -> Axis:
     """The axis made shorter at either end by what the label there would reach beyond its place."""
-    first, last = (figures_width(label, lettering.size) / 2 for label in (axis.labels[0], axis.labels[-1]))
-    before = max(0.0, lettering.left - (axis.at(axis.ticks[0]) - first))
-    after = max(0.0, axis.at(axis.ticks[-1]) + last - lettering.right)
-    return replace(axis, start=axis.start + before, end=axis.end - after)
+    first, last = axis.ticks[0], axis.ticks[-1]
+    left, right = (figures_width(label, lettering.size) / 2 for label in (axis.labels[0], axis.labels[-1]))
+    low, high = max(axis.at(first), lettering.left + left), min(axis.at(last), lettering.right - right)
+    scale = (high - low) / float(last - first)
+    start = low - float(first - axis.low) * scale
+    return replace(axis, start=start, end=start + float(axis.high - axis.low) * scale)
 
 
 def _stand_clear(axis: Axis, size: float) -> bool:

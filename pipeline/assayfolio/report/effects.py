@@ -35,7 +35,7 @@ def effects_table(basis: Basis, effect: EffectFindings, numbering: Numbering) ->
         response=basis.response.response,
         confidence=percent(effect.confidence),
     )
-    return lay_out(numbering.table(), caption, columns, rows, _notes(basis, effect))
+    return lay_out(numbering.table(), caption, columns, rows, _notes(effect))
 
 
 def _ends(effect: EffectFindings) -> list[Words]:
@@ -44,14 +44,10 @@ def _ends(effect: EffectFindings) -> list[Words]:
     return [BLANK if end is None else statistic(end) for end in effect.cohen_f_ci]
 
 
-def _notes(basis: Basis, effect: EffectFindings) -> list[Prose]:
+def _notes(effect: EffectFindings) -> list[Prose]:
     notes = [
         prose("An effect size is beside the spread within levels; whether it matters depends on the use.")
     ]
-    if basis.is_separate:
-        notes.append(
-            prose("All of these take one variance for all levels, which the plan does not; for orientation.")
-        )
     if effect.omega_squared < 0 or effect.epsilon_squared < 0:
         notes.append(
             prose("A negative value is an estimate of a share that is zero or small; it is not cut off.")
