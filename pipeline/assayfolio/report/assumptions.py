@@ -12,6 +12,7 @@ from assayfolio.report.tables import Column, Table, lay_out
 from assayfolio.report.wording import BLANK, alpha_words, typographic
 
 _SYMBOLS = (
+    ("joined", "*z*"),
     ("Brown-Forsythe", "*F*"),
     ("Levene", "*F*"),
     ("Bartlett", "*χ*²"),

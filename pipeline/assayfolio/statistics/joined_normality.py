@@ -86,7 +86,10 @@ def _joined(
         deviates.append(float(ndtri(min(max(p, _SMALLEST_P), _LARGEST_P))))
         used.append(level)
     if not used:
-        reasons = "; ".join(f"{level}: {reason}" for level, reason in left_out)
+        reasons = "; ".join(
+            f"{', '.join(level for level, why in left_out if why == reason)}: {reason}"
+            for reason in dict.fromkeys(reason for _, reason in left_out)
+        )
         raise NotComputableError(f"with a variance for each level no level can be tested ({reasons})")
     z = fsum(deviates) / sqrt(len(deviates))
     return JoinedNormality(z, float(normal_sf(-z)), tuple(used), tuple(left_out))

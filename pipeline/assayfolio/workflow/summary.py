@@ -18,6 +18,7 @@ from assayfolio.findings import (
     CriterionFindings,
     EquivalenceFamily,
     EquivalenceRow,
+    OutlierFindings,
     PrecisionFindings,
     ResponseFindings,
 )
@@ -87,11 +88,17 @@ def _informs(response: ResponseFindings) -> Iterator[str]:
     """What asks to be looked at: proposals, and checks that show a departure at alpha."""
     proposals = [one for one in response.outliers if one.verdict in (OUTLIER, STRAGGLER)]
     if proposals:
-        named = ", ".join(f"{one.verdict} at {one.level or 'all levels'} ({one.test})" for one in proposals)
+        named = ", ".join(f"{one.verdict} {_proposed(one)} ({one.test})" for one in proposals)
         yield f"proposed for investigation, not removed: {named}"
     shown = [check.name for check in response.checks if check.p is not None and check.p <= response.alpha]
     if shown:
         yield f"a departure is shown by: {', '.join(shown)}"
+
+
+def _proposed(found: OutlierFindings) -> str:
+    if found.about == "level means":
+        return f"among the level means: {', '.join(found.levels)}"
+    return f"at {found.level}"
 
 
 def _family_verdict(family: ComparisonFamily | EquivalenceFamily, shown: str) -> str:
