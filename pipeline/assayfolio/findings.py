@@ -128,6 +128,8 @@ class EffectFindings:
 class ComparisonRow:
     """One comparison. `ci` is None where the method has no interval; an open end is None.
 
+    `critical` is what `se` is multiplied by for the interval, None with it.
+
     `df` is a whole number with the pooled error, Welch-Satterthwaite's number with separate variances.
     """
 
@@ -141,6 +143,7 @@ class ComparisonRow:
     log10_p_adjusted: float
     ci: Interval | None
     verdict: str
+    critical: float | None = None
 
 
 @dataclass(frozen=True, slots=True)
@@ -148,7 +151,10 @@ class ComparisonFamily:
     """A family of comparisons with its own error rate.
 
     `kind` is pairs, against, contrast, contrasts or trend, `against` the reference of the second kind;
-    `method` the standard name of the procedure.
+    `method` the standard name of the procedure. `family_size` is the number of planned rows: those that
+    cannot be given stand in what is not reported and count as p = 1 in the adjustment. `critical` is what the
+    standard errors are multiplied by for the intervals; None without intervals, and with separate variances,
+    where each row has its own.
     `responses` is over how many responses the family is adjusted as well, `across_responses` how: none,
     bonferroni or holm.
     """
@@ -164,6 +170,23 @@ class ComparisonFamily:
     rows: tuple[ComparisonRow, ...]
     across_responses: str = "none"
     against: str | None = None
+    critical: float | None = None
+
+
+@dataclass(frozen=True, slots=True)
+class BoundaryFindings:
+    """The one-sided test against one margin, so that it can be recomputed: p is its unadjusted tail.
+
+    `t` is positive above the lower margin, negative below the upper one; `se` and `df` are those of the test.
+    With a percent margin m, t is that of mean_X - (1 + m/100) mean_R in the unit of the response, its sign
+    turned where mean_R is negative.
+    """
+
+    margin: Fraction
+    t: Root
+    se: Root
+    df: int | float
+    p: float
 
 
 @dataclass(frozen=True, slots=True)
@@ -171,6 +194,8 @@ class EquivalenceRow:
     """One pair: two one-sided tests, or one of them for non-inferiority (the other p is None).
 
     With percent margins estimate and interval are 100 (mean_X / mean_R - 1), and `se` and `df` are None.
+    `t_lower` and `t_upper` are the statistics of the tests, `boundaries` the tests in full, lower margin
+    first; `critical` is what `se` is multiplied by for the interval, None with percent margins.
     """
 
     label: str
@@ -184,6 +209,10 @@ class EquivalenceRow:
     p_adjusted: float
     log10_p_adjusted: float
     verdict: str
+    t_lower: Root | None = None
+    t_upper: Root | None = None
+    boundaries: tuple[BoundaryFindings, ...] = ()
+    critical: float | None = None
 
 
 @dataclass(frozen=True, slots=True)
@@ -192,7 +221,8 @@ class EquivalenceFamily:
 
     `claim` is equivalence or non-inferiority, `scale` units or percent (of the reference mean): that of
     `lower` and `upper`, None where that side is open. `against` is the reference, None for all pairs. `alpha`
-    is the level of each one-sided test; `responses` and `across_responses` as in ComparisonFamily.
+    is the level of each one-sided test; `family_size`, `critical`, `responses` and `across_responses` as in
+    ComparisonFamily.
     """
 
     name: str
@@ -210,6 +240,7 @@ class EquivalenceFamily:
     rows: tuple[EquivalenceRow, ...]
     across_responses: str = "none"
     against: str | None = None
+    critical: float | None = None
 
 
 @dataclass(frozen=True, slots=True)
@@ -253,13 +284,16 @@ class CheckFindings:
 
 @dataclass(frozen=True, slots=True)
 class OutlierFindings:
-    """One outlier test on one level: what it proposes to look into; nothing is removed.
+    """One outlier test: what it proposes to look into; nothing is removed.
 
-    `test` is the word of the plan. `lines` and `values` are the values in question with their lines in the
-    data file (that of the first repeat for a mean), empty where the test is about the level's variance;
-    `files` names the file of each where the study has several. `p` is a bound, never too small. Statistic,
-    limits and p are None where the test is not assessable; `note` says why, and `level` is empty where that
-    is so of all levels.
+    `test` is the word of the plan, `about` what it tests: values (of one level), variance (of one level among
+    the others), or level means. `levels` are the levels concerned: that of the values or the variance, those
+    whose means are in question. `level` is the single one, empty for means and where a test of the variances
+    is not assessable. `lines` and `values` are the values in question with their lines in the data file (that
+    of the first repeat for a mean), empty unless `about` is values; `files` names the file of each where the
+    study has several. `p` is a bound, never too small. Statistic, limits and p are None where the test is not
+    assessable, and `note` says why; where only the resolution stands in the way, `lines` and `values` (or
+    `levels`) still name what would have been tested.
     """
 
     test: str
@@ -273,6 +307,8 @@ class OutlierFindings:
     note: str
     p: float | None = None
     files: tuple[str, ...] = ()
+    about: str = "values"
+    levels: tuple[str, ...] = ()
 
 
 @dataclass(frozen=True, slots=True)
@@ -294,10 +330,13 @@ class PrecisionFindings:
     """Precision from the one-way layout, intervals at `confidence`.
 
     With fixed levels only the repeatability part is there and the rest is None. `total_name` says what the
-    total is called: intermediate precision, reproducibility, or total. Relative quantities are in percent of
-    the grand mean; None where that is zero. `interval_method` names how `total_sd_ci` was formed,
-    `total_sd_ci_satterthwaite` is the second way, on `total_df`. `mean` and what follows are the one to state
-    of `mean_ways`.
+    total is called: intermediate precision, reproducibility, or total. Limits for two values are exactly 2.8
+    standard deviations (2.8 s). Relative quantities are in percent of the absolute `relative_mean`, and
+    `relative_to` says which mean that is; they are None where it is zero. It is `mean` wherever that is
+    stated. `interval_method` names how `total_sd_ci` was formed, `total_sd_ci_satterthwaite` is the second
+    way, on `total_df`; `between_interval_method` how `between_sd_ci` was. With unequal n that rests on the
+    level means without weights, and may then leave out `between_sd`. `mean` and what follows are the one to
+    state of `mean_ways`.
     """
 
     confidence: Fraction
@@ -327,11 +366,18 @@ class PrecisionFindings:
     mean_method: str | None = None
     mean_ci: Interval | None = None
     mean_ways: tuple[MeanUncertaintyFindings, ...] = ()
+    relative_mean: Fraction | None = None
+    relative_to: str | None = None
+    between_sd_ci: Interval | None = None
+    between_interval_method: str | None = None
 
 
 @dataclass(frozen=True, slots=True)
 class CriterionFindings:
-    """One limit set in advance: `relation` is "at most" or "at least"; compared on the exact value."""
+    """One limit set in advance: `relation` is "at most" or "at least"; compared on the exact value.
+
+    The value of `repeatability-limit` is exactly 2.8 s, s the repeatability standard deviation.
+    """
 
     quantity: str
     level: str | None

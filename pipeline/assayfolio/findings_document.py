@@ -189,6 +189,7 @@ def _family(family: ComparisonFamily) -> Mapping[str, Json]:
         "family_size": family.family_size,
         "responses": family.responses,
         "across_responses": family.across_responses,
+        "critical": family.critical,
         "rows": [
             {
                 "label": row.label,
@@ -200,6 +201,7 @@ def _family(family: ComparisonFamily) -> Mapping[str, Json]:
                 "p_adjusted": row.p_adjusted,
                 "log10_p_adjusted": row.log10_p_adjusted,
                 "ci": interval_of(row.ci),
+                "critical": row.critical,
                 "verdict": row.verdict,
             }
             for row in family.rows

@@ -141,6 +141,7 @@ def equivalence_part(family: EquivalenceFamily) -> Mapping[str, Json]:
         "family_size": family.family_size,
         "responses": family.responses,
         "across_responses": family.across_responses,
+        "critical": family.critical,
         "rows": [
             {
                 "label": row.label,
@@ -148,11 +149,24 @@ def equivalence_part(family: EquivalenceFamily) -> Mapping[str, Json]:
                 "se": number_of(row.se),
                 "df": row.df,
                 "ci": interval_of(row.ci),
+                "critical": row.critical,
+                "t_lower": number_of(row.t_lower),
+                "t_upper": number_of(row.t_upper),
                 "p_lower": row.p_lower,
                 "p_upper": row.p_upper,
                 "p": row.p,
                 "p_adjusted": row.p_adjusted,
                 "log10_p_adjusted": row.log10_p_adjusted,
+                "boundaries": [
+                    {
+                        "margin": number_of(one.margin),
+                        "t": number_of(one.t),
+                        "se": number_of(one.se),
+                        "df": one.df,
+                        "p": one.p,
+                    }
+                    for one in row.boundaries
+                ],
                 "verdict": row.verdict,
             }
             for row in family.rows
@@ -195,13 +209,15 @@ def check_part(check: CheckFindings) -> Mapping[str, Json]:
 
 
 def outlier_part(found: OutlierFindings) -> Mapping[str, Json]:
-    """One outlier test on one level; `line` and `value` are the first of `lines` and `values`.
+    """One outlier test; `line` and `value` are the first of `lines` and `values`.
 
     `files` is there where the study has several data files.
     """
     document: dict[str, Json] = {
         "test": found.test,
+        "about": found.about,
         "level": found.level or None,
+        "levels": list(found.levels),
         "line": found.lines[0] if found.lines else None,
         "value": number_of(found.values[0]) if found.values else None,
         "lines": list(found.lines),
@@ -227,7 +243,11 @@ def precision_part(found: PrecisionFindings) -> Mapping[str, Json]:
         "repeatability_sd_ci": interval_of(found.repeatability_sd_ci),
         "repeatability_rsd": number_of(found.repeatability_rsd),
         "repeatability_limit": number_of(found.repeatability_limit),
+        "relative_mean": number_of(found.relative_mean),
+        "relative_to": found.relative_to,
         "between_sd": number_of(found.between_sd),
+        "between_sd_ci": interval_of(found.between_sd_ci),
+        "between_interval_method": found.between_interval_method,
         "between_variance_raw": number_of(found.between_variance_raw),
         "between_rsd": number_of(found.between_rsd),
         "total_name": found.total_name,

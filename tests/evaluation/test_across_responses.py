@@ -115,6 +115,15 @@ def test_what_could_not_be_formed_keeps_its_place_in_the_count():
     assert empty == ()
 
 
+def test_rows_that_a_family_lacks_keep_their_places_in_the_count():
+    tails = (Tail(0.01, -2.0), Tail(0.02, -1.69897))
+    (found, other) = AcrossRule("holm", 2).adjusted(
+        [FamilyTails(tails[:1], tails[:1], 1), FamilyTails(tails, tails)]
+    )
+    assert found[0].p == pytest.approx(0.04)
+    assert [tail.p for tail in other] == pytest.approx([0.04, 0.04])
+
+
 def test_a_response_without_variation_does_not_keep_the_other_from_being_reported():
     flat = {level: ["1.5"] * 4 for level in ASH}
     findings = findings_of_each({"ash": ASH, "protein": flat}, f"design: {{across-responses: holm}}\n{PARTS}")

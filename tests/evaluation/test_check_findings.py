@@ -117,3 +117,52 @@ def test_finely_recorded_values_get_no_note():
 
 def test_values_that_do_not_vary_are_not_called_coarse_beside_the_missing_f_test():
     assert resolution_of({"A": ["1.0", "1.0"], "B": ["2.0", "2.0"]}) is None
+
+
+SEPARATE = "design: {variances: separate}\n"
+
+
+def test_with_separate_variances_levels_are_checked_for_normality_one_by_one():
+    data = {
+        "A": ["10.11", "10.34", "10.09", "10.52", "10.20", "10.38", "10.27", "10.41"],
+        "B": ["10.91", "9.02", "11.45", "8.57", "10.04", "9.76", "10.30", "9.90"],
+        "C": ["10.31", "10.45", "10.20"],
+        "D": ["10.3"],
+    }
+    found = checks_of(data, SEPARATE + ALL)
+    assert list(found)[4:] == [
+        "Anderson-Darling tests of the levels, joined",
+        "Shapiro-Wilk tests of the levels, joined",
+    ]
+    for name, fewest in zip(list(found)[4:], (8, 4), strict=True):
+        note = found[name].note
+        assert note.startswith("the data do not show a departure of the values within levels from normality")
+        assert "each level tested by itself, since each has its own variance" in note
+        assert f"without C, D (fewer than {fewest} values)" in note
+        assert found[name].p > 0.05
+
+
+def test_levels_that_differ_in_spread_alone_are_no_departure_from_normality_with_separate_variances():
+    quantiles = ["-1.53", "-0.89", "-0.49", "-0.16", "0.16", "0.49", "0.89", "1.53"]
+    data = {f"L{at}": [f"{float(q) * 10**at:.3f}" for q in quantiles] for at in range(4)}
+    normality = "checks: {normality: shapiro-wilk}\n"
+    assert next(iter(checks_of(data, normality).values())).p < 1e-5
+    assert next(iter(checks_of(data, SEPARATE + normality).values())).p > 0.5
+
+
+def test_with_separate_variances_unequal_ones_are_no_alarm():
+    words = "this plan does not assume equal variances, so a departure is no alarm"
+    for name in NAMES[:4]:
+        assert words in checks_of(UNEVEN, SEPARATE + ALL)[name].note
+        assert words not in checks_of(UNEVEN)[name].note
+
+
+def test_the_trend_in_run_order_says_where_it_assumes_more_than_the_plan():
+    def note(design: str) -> str:
+        study = study_of(design, ORDERED)
+        data = {"A": ["10.12", "10.15", "10.11"], "B": ["10.31", "10.28", "10.33"]}
+        (response,) = evaluate(study, observations_of(study, data, [3, 1, 6, 5, 2, 4])).responses
+        return response.checks[0].note
+
+    assert "assumes one variance for all levels, which the plan does not" in note(SEPARATE)
+    assert "one variance" not in note("")

@@ -107,13 +107,19 @@ def test_roots_and_rationals_are_compared_exactly(value, limit, expected):
             "quantity: largest-difference-percent, at-most: 1",
             "",
             {"A": ["-1", "-2"], "B": ["1", "2"]},
-            "the grand mean is zero",
+            "the mean of all values is zero",
         ),
         (
             "quantity: repeatability-rsd, at-most: 1",
             PRECISION,
             {"A": ["-1", "-2"], "B": ["1", "2"]},
-            "the grand mean is zero",
+            "the mean of all values is zero",
+        ),
+        (
+            "quantity: total-rsd, at-most: 1",
+            RANDOM + PRECISION,
+            {"A": ["-1", "-3"], "B": ["1", "2", "3"]},
+            "the mean of the level means is zero",
         ),
     ],
 )
@@ -122,6 +128,15 @@ def test_what_cannot_be_assessed_says_why(entry, parts, data, reason):
     assert criterion.verdict == NOT_ASSESSABLE
     assert criterion.value is None
     assert any(gap.what.startswith("criterion: ") and reason in gap.reason for gap in gaps)
+
+
+def test_a_relative_standard_deviation_is_held_in_percent_of_the_mean_that_is_stated():
+    data = {"A": ["9", "11"], "B": ["19", "20", "21", "20"]}
+    parts = f"{RANDOM}{PRECISION}criteria: [{{quantity: repeatability-rsd, at-most: 9}}]\n"
+    (response,) = findings_of(data, parts).responses
+    # The level means are 10 and 20: their mean is 15, that of all values 100/6. MS within is 4/4.
+    assert response.precision.mean == 15
+    assert response.criteria[0].value == Root.of(Fraction(10_000, 15**2))
 
 
 def test_a_criterion_on_one_response_is_about_that_one():

@@ -1,7 +1,11 @@
 """Equivalence and non-inferiority: margins, claims and verdicts of their own."""
 
-import pytest
+from statistics import fmean
 
+import pytest
+from scipy import stats
+
+from assayfolio.exact import to_double
 from assayfolio.findings import (
     DIFFERENCE_SHOWN,
     EQUIVALENCE_NOT_SHOWN,
@@ -120,3 +124,47 @@ def test_a_percentage_of_a_mean_near_zero_is_refused_with_what_to_use_instead():
     reasons = {item.what: item.reason for item in findings.not_reported}
     assert "cannot be told from zero" in reasons["equivalence: e"]
     assert "in units" in reasons["equivalence: e"]
+
+
+@pytest.mark.parametrize(
+    "margins", ["margin: 0.2", "margin-percent: 2", "non-inferiority: not-lower, margin: 0.2"]
+)
+def test_a_row_with_a_level_that_does_not_vary_is_named_and_counts_as_p_one(margins):
+    data = {**DATA, "Z": ["10.2"] * 6, "Q": ["10.3"]}
+    plan = f"equivalence: [{{name: e, against: R, {margins}, adjust: bonferroni}}]\n"
+    parts = f"design: {{variances: separate}}\n{plan}"
+    findings = findings_of(data, parts)
+    (family,) = findings.responses[0].equivalence
+    assert [row.label for row in family.rows] == ["X - R", "Y - R"]
+    assert family.family_size == 4
+    for row in family.rows:
+        assert row.p_adjusted == pytest.approx(min(1, 4 * row.p), rel=1e-11)
+    reasons = {item.what: item.reason for item in findings.not_reported}
+    assert "Z do not vary at the recorded resolution" in reasons["equivalence: e: Z - R"]
+    assert "Q has one value" in reasons["equivalence: e: Q - R"]
+
+
+def test_where_the_reference_does_not_vary_no_row_is_left():
+    data = {**DATA, "R": ["10.0"] * 6}
+    parts = "design: {variances: separate}\nequivalence: [{name: e, against: R, margin: 0.2, adjust: holm}]\n"
+    findings = findings_of(data, parts)
+    assert findings.responses[0].equivalence == ()
+    reasons = {item.what: item.reason for item in findings.not_reported}
+    assert reasons["equivalence: e"].startswith("the values of R do not vary")
+
+
+def test_percent_tests_stand_with_all_that_is_needed_to_recompute_them():
+    family = family_of("against: R, margin-percent: 1.2, adjust: none", "design: {variances: separate}\n")
+    r = [float(text) for text in DATA["R"]]
+    for row in family.rows:
+        x = [float(text) for text in DATA[row.label[0]]]
+        for test, percent in zip(row.boundaries, (-1.2, 1.2), strict=True):
+            ratio = 1 + percent / 100
+            parts = [stats.sem(x) ** 2, ratio**2 * stats.sem(r) ** 2]
+            assert float(test.margin) == percent
+            assert to_double(test.se) == pytest.approx(sum(parts) ** 0.5, rel=1e-9)
+            assert test.df == pytest.approx(sum(parts) ** 2 / sum(v * v / 5 for v in parts), rel=1e-9)
+            excess = fmean(x) - ratio * fmean(r)
+            assert to_double(test.t) == pytest.approx(excess / sum(parts) ** 0.5, rel=1e-7)
+        assert (row.t_lower, row.t_upper) == tuple(test.t for test in row.boundaries)
+        assert row.critical is None

@@ -41,6 +41,11 @@ def test_families_keep_the_order_and_the_words_of_the_plan():
     ]
 
 
+def test_effect_sizes_rest_on_one_variance_and_are_left_out_with_separate_ones():
+    assert findings_of(LOTS).responses[0].effect is not None
+    assert findings_of(LOTS, "design: {variances: separate}\n").responses[0].effect is None
+
+
 def test_no_comparison_is_said_to_be_registered():
     (response,) = findings_of(LOTS, PARTS).responses
     assert not any(family.registered for family in response.comparisons)

@@ -7,6 +7,7 @@ from functools import cache
 from typing import Any
 
 import pytest
+from scipy import stats
 
 from assayfolio.evaluation.apply import evaluate
 from assayfolio.findings_document import findings_bytes, findings_document
@@ -21,16 +22,17 @@ WELCH = {"f", "df1", "df2", "p", "log10_p", "p_adjusted", "verdict"}
 BROWN_FORSYTHE = WELCH | {"df1_mehrotra", "p_mehrotra"}
 EQUIVALENCE = {
     *("name", "claim", "against", "scale", "lower", "upper", "margin_source", "adjust", "method", "alpha"),
-    *("registered", "family_size", "responses", "across_responses", "rows"),
+    *("registered", "family_size", "responses", "across_responses", "critical", "rows"),
 }
 EQUIVALENCE_ROW = {
     *("label", "estimate", "se", "df", "ci", "p_lower", "p_upper", "p", "p_adjusted"),
-    *("log10_p_adjusted", "verdict"),
+    *("log10_p_adjusted", "verdict", "critical", "t_lower", "t_upper", "boundaries"),
 }
+BOUNDARY = {"margin", "t", "se", "df", "p"}
 SPREAD = {"against", "adjust", "method", "responses", "across_responses", "rows"}
 SPREAD_ROW = {"label", "ratio", "df", "p", "p_adjusted", "ci", "verdict"}
 OUTLIER = {
-    *("test", "level", "line", "value", "lines", "values", "statistic"),
+    *("test", "about", "level", "levels", "line", "value", "lines", "values", "statistic"),
     *("straggler_limit", "outlier_limit", "p", "verdict", "note"),
 }
 PRECISION = {
@@ -39,6 +41,7 @@ PRECISION = {
     *("total_sd", "total_sd_ci", "total_sd_ci_satterthwaite", "total_df", "total_rsd", "total_limit"),
     *("interval_method", "n0", "icc", "icc_ci", "icc_method"),
     *("mean", "mean_u", "mean_df", "mean_method", "mean_ci", "mean_ways"),
+    *("relative_mean", "relative_to", "between_sd_ci", "between_interval_method"),
 }
 CRITERION = {"quantity", "level", "value", "relation", "limit", "unit", "verdict"}
 POWER = {
@@ -68,7 +71,7 @@ PARTS = {
         ),
     },
     "separate variances": {
-        *("unit", "alpha", "omnibus", "flow", "levels", "anova", "effect", "welch", "brown_forsythe_means"),
+        *("unit", "alpha", "omnibus", "flow", "levels", "anova", "welch", "brown_forsythe_means"),
         *("comparisons", "equivalence", "spread", "checks", "outliers", "criteria"),
     },
     "random levels": {
@@ -124,6 +127,7 @@ def test_published_keys_of_every_part(responses):
             assert all(set(item) == keys for item in response.get(name, [])), name
         rows = [row for family in response.get("equivalence", []) for row in family["rows"]]
         assert all(set(row) == EQUIVALENCE_ROW for row in rows)
+        assert all(set(one) == BOUNDARY for row in rows for one in row["boundaries"])
         assert all(set(row) == SPREAD_ROW for row in response.get("spread", {"rows": []})["rows"])
 
 
@@ -172,6 +176,7 @@ def test_intervals_are_in_order_and_hold_their_estimates(responses):
         ("sd_ci", "sd"),
         ("cohen_f_ci", "cohen_f"),
         ("repeatability_sd_ci", "repeatability_sd"),
+        ("between_sd_ci", "between_sd"),
         ("icc_ci", "icc"),
     )
     count = 0
@@ -194,10 +199,38 @@ def test_the_first_line_and_value_of_an_outlier_stand_by_themselves(option):
         assert entry["value"] == (entry["values"] or [None])[0]
 
 
-def test_what_cannot_be_given_names_its_response():
-    document = json.loads(text_of("pooled"))
-    assert {item["response"] for item in document["not_reported"]} == {"ash", "protein"}
-    assert all(item["reason"].startswith("the levels are fixed") for item in document["not_reported"])
+def test_of_what_was_asked_about_the_data_nothing_is_missing(option):
+    missing = json.loads(text_of(option))["not_reported"]
+    assert [item for item in missing if item["response"] is not None] == []
+
+
+def test_a_reviewer_can_recompute_every_test_of_equivalence(responses):
+    families = [family for response in responses for family in response.get("equivalence", [])]
+    tests = [(family, row, one) for family in families for row in family["rows"] for one in row["boundaries"]]
+    assert tests or not families
+    for family, row, one in tests:
+        upper = one["margin"] == family["upper"]
+        p, t = (row["p_upper"], row["t_upper"]) if upper else (row["p_lower"], row["t_lower"])
+        assert (one["p"], one["t"]) == (p, t)
+        assert stats.t.sf(-t if upper else t, one["df"]) == pytest.approx(p, rel=1e-9)
+        if family["scale"] == "units":
+            assert (row["estimate"] - one["margin"]) / row["se"] == pytest.approx(t, rel=1e-9)
+            assert (one["se"], one["df"]) == (row["se"], row["df"])
+
+
+def test_a_reviewer_can_recompute_every_interval(responses):
+    families = [family for response in responses for family in response.get("comparisons", [])]
+    count = 0
+    for family in families:
+        assert family["critical"] in {None, *(row["critical"] for row in family["rows"])}
+        for row in family["rows"]:
+            assert (row["ci"] is None) == (row["critical"] is None)
+            for end, sign in zip(row["ci"] or [], (-1, 1), strict=False):
+                if end is not None:
+                    reach = sign * row["critical"] * row["se"]
+                    assert end - row["estimate"] == pytest.approx(reach, rel=1e-9)
+                    count += 1
+    assert count or not any(row["ci"] for family in families for row in family["rows"])
 
 
 def test_the_power_of_the_plan_stands_beside_the_responses():

@@ -22,11 +22,11 @@ ANOVA = {
 }
 FAMILY = {
     *("name", "kind", "against", "adjust", "method", "alternative", "registered", "family_size"),
-    *("responses", "across_responses", "rows"),
+    *("responses", "across_responses", "critical", "rows"),
 }
 ROW = {
     *("label", "estimate", "se", "df", "statistic", "p", "p_adjusted"),
-    *("log10_p_adjusted", "ci", "verdict"),
+    *("log10_p_adjusted", "ci", "critical", "verdict"),
 }
 CHECK = {"name", "statistic", "df", "p", "note"}
 NOT_REPORTED = {"what", "reason", "response"}

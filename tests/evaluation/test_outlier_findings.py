@@ -81,6 +81,74 @@ def test_tests_stand_in_the_order_of_the_plan_and_level_by_level():
     ]
 
 
+def test_values_that_agree_by_rounding_make_no_outlier_and_the_note_says_why():
+    data = {"A": ["150.5", "150.5", "150.9", "151.2"], "B": ["150.1", "150.7", "150.4", "150.9"]}
+    a, _ = outliers_of("grubbs-double", data)
+    assert (a.verdict, a.statistic, a.p) == (NOT_ASSESSABLE, None, None)
+    assert a.note.startswith("not assessable: the other 2 values of the level are all equal")
+    assert a.lines == (4, 5)  # what would have been tested is still named
+    assert a.values == (Fraction("150.9"), Fraction("151.2"))
+
+
+def test_the_recorded_step_is_that_of_all_levels():
+    data = {
+        "A": ["10.00", "10.00", "10.00", "10.05", "10.00", "10.20"],
+        "B": ["10.25", "10.40", "10.15", "10.50", "10.30"],
+    }
+    a, _ = outliers_of("grubbs", data)
+    assert "step of 0.05" in a.note
+    a, _ = outliers_of("grubbs", {**data, "B": ["10.26", "10.40", "10.15", "10.50", "10.30"]})
+    assert a.verdict == OUTLIER
+
+
+SAMPLE = {
+    "day 1": ["10.01", "10.03", "9.98"],
+    "day 2": ["10.02", "10.06", "9.99"],
+    "day 3": ["10.05", "9.97", "10.01"],
+    "day 4": ["10.03", "10.00", "9.96"],
+    "day 5": ["10.71", "10.68", "10.75"],
+}
+
+
+def outliers_of_sample(tests: str, data):
+    parts = f"design: {{effects: random}}\noutliers: {{test: {tests}}}\n"
+    return findings_of(data, parts).responses[0].outliers
+
+
+def test_the_means_of_a_sample_of_levels_are_tested_after_its_values():
+    found = outliers_of_sample("[grubbs, grubbs-double, cochran]", SAMPLE)
+    assert [one.about for one in found] == [
+        *["values"] * 5,
+        "level means",
+        *["values"] * 5,
+        "level means",
+        "variance",
+    ]
+    single = found[5]
+    assert (single.test, single.level, single.verdict) == ("grubbs", "", OUTLIER)
+    assert single.levels == ("day 5",)
+    assert single.lines == single.values == ()
+    double = found[11]
+    assert (double.test, len(double.levels)) == ("grubbs-double", 2)
+
+
+def test_the_means_of_fixed_levels_are_what_is_compared_and_not_tested():
+    assert {one.about for one in outliers_of("[grubbs, cochran]")} == {"values", "variance"}
+
+
+def test_unequal_numbers_behind_the_means_are_told():
+    *_, means = outliers_of_sample("grubbs", {**SAMPLE, "day 1": ["10.01", "10.03"]})
+    assert "means are of unequal numbers of values" in means.note
+    *_, means = outliers_of_sample("grubbs", SAMPLE)
+    assert "unequal" not in means.note
+
+
+def test_two_levels_are_too_few_for_a_test_of_means():
+    *_, means = outliers_of_sample("grubbs", {level: SAMPLE[level] for level in ("day 1", "day 2")})
+    assert (means.about, means.verdict, means.levels) == ("level means", NOT_ASSESSABLE, ())
+    assert means.note == "not assessable: the test needs 3 level means; here are 2"
+
+
 @pytest.mark.parametrize("value", ["10.04", "10.08", "10.16"])
 def test_words_follow_the_limits(value):
     data = {"A": ["10.01", "10.03", "9.98", "10.02", value, "10.00", "9.99"], "B": ["10.2", "10.3"]}

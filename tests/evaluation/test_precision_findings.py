@@ -86,12 +86,47 @@ def test_the_uncertainty_of_the_mean_is_given_both_ways_and_one_is_stated():
     )
 
 
-def test_fixed_levels_give_the_repeatability_alone_and_say_why():
+def test_fixed_levels_give_the_repeatability_alone_and_lack_nothing():
     found, gaps = precision_of("precision: {estimate: true}\n")
     assert found.repeatability_sd.square == findings_of(DAYS).responses[0].anova.within.ms
     assert found.between_sd is found.total_sd is found.icc is found.mean is None
-    (gap,) = gaps
-    assert gap.reason.startswith("the levels are fixed")
+    assert found.between_sd_ci is None
+    assert gaps == ()
+    assert (found.relative_mean, found.relative_to) == (
+        sum(Fraction(text) for texts in DAYS.values() for text in texts) / 12,
+        "mean of all values",
+    )
+
+
+def test_relative_figures_are_in_percent_of_the_mean_that_is_stated():
+    data = {**DAYS, "day 5": ["12.3", "12.4"]}
+    found, _ = precision_of(f"{RANDOM}precision: {{estimate: true}}\n", data)
+    assert found.relative_to == "mean of the level means"
+    assert found.relative_mean == found.mean == found.mean_ways[0].mean != found.mean_ways[1].mean
+    for relative, sd in (
+        (found.repeatability_rsd, found.repeatability_sd),
+        (found.between_rsd, found.between_sd),
+        (found.total_rsd, found.total_sd),
+    ):
+        assert relative.square == 10_000 * sd.square / found.mean**2
+
+
+def test_where_the_pooled_mean_is_stated_relative_figures_are_in_percent_of_it():
+    level = ["10.1", "10.9", "10.5"]
+    data = {"day 1": level, "day 2": level, "day 3": [*level, "10.6"]}
+    found, _ = precision_of(f"{RANDOM}precision: {{estimate: true}}\n", data)
+    assert found.between_variance_raw < 0
+    assert found.relative_to == "mean of all values"
+    assert found.relative_mean == found.mean == found.mean_ways[1].mean
+
+
+def test_the_interval_between_levels_names_its_method():
+    balanced, _ = precision_of(f"{RANDOM}precision: {{estimate: true}}\n")
+    low, high = balanced.between_sd_ci
+    assert low**2 < balanced.between_sd.square < high**2
+    assert balanced.between_interval_method == "Williams-Tukey"
+    unequal, _ = precision_of(f"{RANDOM}precision: {{estimate: true}}\n", {**DAYS, "day 5": ["10.3", "10.4"]})
+    assert "harmonic mean of n" in unequal.between_interval_method
 
 
 def test_a_confidence_of_its_own_sets_the_intervals():

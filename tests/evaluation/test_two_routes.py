@@ -78,5 +78,6 @@ def test_what_has_no_second_route_is_named_with_the_reason():
     assert {item.quantity for item in route.not_compared} == {
         "adjusted tails: step-down",
         "t tails: percent",
+        "t tails: not higher",
     }
     assert all(item.reason for item in route.not_compared)

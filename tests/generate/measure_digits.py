@@ -11,6 +11,7 @@ import itertools
 import math
 import sys
 from collections.abc import Callable, Iterable, Iterator
+from fractions import Fraction
 from pathlib import Path
 
 import mpmath as mp
@@ -26,6 +27,16 @@ from assayfolio.statistics.distributions import (
     studentized_range_log10_sf,
     studentized_range_sf,
 )
+from assayfolio.statistics.grubbs_pairs import pair_tail
+from assayfolio.statistics.noncentral import (
+    noncentral_f_cdf,
+    noncentral_f_noncentrality,
+    noncentral_f_sf,
+    noncentral_t_cdf,
+    noncentral_t_sf,
+)
+from assayfolio.statistics.power import f_power_of_means
+from assayfolio.statistics.power_equivalence import equivalence_power
 from support.high_precision import (
     chi2_below,
     chi2_tail,
@@ -37,8 +48,10 @@ from support.high_precision import (
 )
 from support.many_to_one_by_trapezoid import many_to_one_tail
 from support.many_to_one_in_high_precision import normal_maximum_tail
+from support.noncentral_in_high_precision import noncentral_f_tails, noncentral_t_tails
 from support.range_by_trapezoid import studentized_range_tails
 from support.reference import cases_of
+from support.sphere_of_four import four_values_tail
 
 Row = tuple[str, str, Iterable[float], str]
 
@@ -196,11 +209,82 @@ def unequal_sizes_errors(levels: Iterable[float]) -> Iterator[float]:
         yield distance_by_log10(tail, truth)
 
 
+def noncentral_f_errors() -> Iterator[float]:
+    """Of both tails of noncentral F, wherever they are 1e-14 or more."""
+    grid = itertools.product((1.0, 3.0, 40.0), (1.5, 8.0, 20.0, 300.0), (0.3, 12.0, 300.0), (0.3, 1.0, 3.0))
+    for df1, df2, noncentrality, share in grid:
+        f = share * (df1 + noncentrality) / df1
+        above, below = noncentral_f_tails(f, df1, df2, noncentrality)
+        if above >= 1e-14:
+            yield distance(noncentral_f_sf(f, df1, df2, noncentrality), above)
+        if below >= 1e-14:
+            yield distance(noncentral_f_cdf(f, df1, df2, noncentrality), below)
+
+
+def noncentral_t_errors() -> Iterator[float]:
+    """Of both tails of noncentral t, wherever they are 1e-14 or more."""
+    grid = itertools.product((1.0, 2.7, 8.0, 50.0, 1000.0), (-3.0, 0.3, 8.0, 40.0), (-2.0, 0.0, 2.0, 5.0))
+    for df, delta, away in grid:
+        above, below = noncentral_t_tails(delta + away, df, delta)
+        if above >= 1e-14:
+            yield distance(noncentral_t_sf(delta + away, df, delta), above)
+        if below >= 1e-14:
+            yield distance(noncentral_t_cdf(delta + away, df, delta), below)
+
+
+def noncentrality_errors() -> Iterator[float]:
+    """Of `noncentral_f_noncentrality`: how far the tail there is from the one that was asked for."""
+    for f, df1, df2, p in itertools.product((2.0, 9.0, 80.0), (1.0, 3.0, 20.0), (8.0, 300.0), (0.975, 0.025)):
+        found = noncentral_f_noncentrality(f, df1, df2, p)
+        if found > 0:
+            yield distance(p, noncentral_f_tails(f, df1, df2, found)[1])
+
+
+def published_power_errors() -> Iterator[float]:
+    """Of the power of the F test against the reference vectors."""
+    for case in cases_of("power").values():
+        inputs = case["inputs"]
+        if "means" in inputs and "power" in case["expected"]:
+            means = [Fraction(mean) for mean in inputs["means"]]
+            found = f_power_of_means(means, inputs["n"], float(inputs["sigma"]), float(inputs["alpha"]))
+            yield distance(found, mp.mpf(case["expected"]["power"]))
+
+
+def published_equivalence_power_errors() -> Iterator[float]:
+    """Of the power of equivalence against the reference vectors."""
+    for case in cases_of("power").values():
+        inputs = case["inputs"]
+        if "margin" in inputs and "n" in inputs:
+            lower, upper = map(float, inputs["margin"])
+            df, true, sigma = (float(inputs[key]) for key in ("df", "true_difference", "sigma"))
+            found = equivalence_power(*inputs["n"], df, true, lower, upper, sigma, float(inputs["alpha"]))
+            yield distance(found, mp.mpf(case["expected"]["power"]))
+
+
+def grubbs_pair_errors() -> Iterator[float]:
+    """Of `pair_tail` for four values, whose residuals are a point on a sphere."""
+    for ratio in (1e-8, 0.001, 0.01, 0.1, 0.3, 0.6):
+        yield distance(pair_tail(ratio, 4), mp.mpf(four_values_tail(ratio)))
+
+
 def rows() -> Iterator[Row]:
     """The table."""
     yield from tail_rows()
     yield from studentized_range_rows()
     yield from many_to_one_rows()
+    yield from planning_rows()
+
+
+def planning_rows() -> Iterator[Row]:
+    """Noncentral distributions, power, and Grubbs' test of two values."""
+    library = "mpmath, 50 digits"
+    yield "noncentral_f_sf, _cdf", "p >= 1e-14, lambda to 300", noncentral_f_errors(), library
+    yield "noncentral_t_sf, _cdf", "p >= 1e-14, df 1 to 1000", noncentral_t_errors(), "mpmath, 25 digits"
+    yield "noncentral_f_noncentrality, by its tail", "p 0.975 and 0.025", noncentrality_errors(), library
+    vectors = "tests/vectors/power.json, 20 digits"
+    yield "f_power_of_means", "all cases with means", published_power_errors(), vectors
+    yield "equivalence_power", "9 cases, power down to 5e-4", published_equivalence_power_errors(), vectors
+    yield "pair_tail", "n = 4, ratio 1e-8 to 0.6", grubbs_pair_errors(), "an integral over the sphere, mpmath"
 
 
 def tail_rows() -> Iterator[Row]:

@@ -45,7 +45,9 @@ def test_a_tally_in_two_parts_is_the_tally_of_the_whole(rows: list[tuple[int, in
     whole.add(*columns(rows), LEVELS)
     for part in parts:
         pieces.add(*columns(part), LEVELS)
-    assert [whole.totals(level) for level in range(LEVELS)] == [pieces.totals(level) for level in range(LEVELS)]
+    assert [whole.totals(level) for level in range(LEVELS)] == [
+        pieces.totals(level) for level in range(LEVELS)
+    ]
     assert whole.step == pieces.step
 
 

@@ -260,7 +260,9 @@ def test_a_compressed_text_that_is_not_whole_is_refused(spoilt: str) -> None:
 
 
 def test_a_file_that_changes_while_it_is_read_is_refused() -> None:
-    contents = iter([content_of(rows_of("AB", 20)), content_of(rows_of("AB", 21)), content_of(rows_of("AB", 22))])
+    contents = iter(
+        [content_of(rows_of("AB", 20)), content_of(rows_of("AB", 21)), content_of(rows_of("AB", 22))]
+    )
     file = LongFile("d.csv", lambda: io.BytesIO(next(contents)), sha256="0" * 64)
     with pytest.raises(DataError, match="changed while it was read"):
         stream_observations([file], PLAN)

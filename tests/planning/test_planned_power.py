@@ -190,3 +190,36 @@ def test_what_is_missing_for_planning_is_named_all_at_once():
         check_plannable(study_of("", head))
     found = " ".join(str(fault) for fault in caught.value.faults)
     assert all(key in found for key in ("`power`", "`data.levels`", "`data.replicates`"))
+
+
+def test_a_one_sided_question_is_about_its_side_and_has_the_distance_to_its_bound():
+    rows, _ = rows_of(
+        "comparisons:\n"
+        "  - {name: up, against: a, adjust: dunnett, alternative: greater}\n"
+        "  - {name: down, weights: {a: 1, d: -1}, alternative: less}\n"
+    )
+    assert rows[1].meaning == "showing a given level that lies above the reference by the difference"
+    assert rows[3].meaning == "showing every level, where all lie above the reference by the difference"
+    assert rows[4].meaning == "showing the contrast, where its true value lies below zero by the difference"
+    assert rows[4].half_width == pytest.approx(float(t_isf(0.05, 20)) * 0.3 * (2 / 6) ** 0.5, rel=1e-10)
+
+
+@pytest.mark.parametrize("adjust", ["holm", "hochberg", "dunnett-step-down"])
+def test_a_stepwise_method_has_no_interval_and_so_no_half_width(adjust):
+    rows, _ = rows_of(f"comparisons: [{{name: to a, against: a, adjust: {adjust}}}]\n")
+    assert [row.half_width for row in rows] == [None] * len(rows)
+
+
+def test_an_equivalence_row_under_holm_has_the_interval_of_one_test():
+    rows, _ = rows_of("equivalence: [{name: alike, against: a, margin: 0.6, adjust: holm}]\n")
+    assert rows[1].half_width == pytest.approx(float(t_isf(0.05, 20)) * 0.3 * (2 / 6) ** 0.5, rel=1e-10)
+
+
+def test_with_unequal_numbers_a_given_level_is_the_one_with_the_fewest_values():
+    head = HEAD.replace("replicates: 6", "replicates: {a: 8, b: 6, c: 4, d: 6}")
+    parts = (
+        "comparisons: [{name: to a, against: a, adjust: dunnett}, {name: pairs, pairs: all, adjust: none}]\n"
+    )
+    rows, _ = rows_of(parts, head)
+    assert rows[1].meaning.startswith("showing a given level, that with the fewest values, that differs from")
+    assert rows[4].meaning.startswith("showing a given pair, that with the fewest values, that differs by")

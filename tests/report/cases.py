@@ -6,7 +6,8 @@ from functools import cache
 from assayfolio.report.facts import ReportInput
 from report.samples import CASES_OF_DIFFERENCES
 from report.samples_beyond import CASES_BEYOND
+from report.samples_large import CASES_LARGE
 
 CASES: dict[str, Callable[[], ReportInput]] = {
-    name: cache(make) for name, make in (CASES_OF_DIFFERENCES | CASES_BEYOND).items()
+    name: cache(make) for name, make in (CASES_OF_DIFFERENCES | CASES_BEYOND | CASES_LARGE).items()
 }

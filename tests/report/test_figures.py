@@ -22,9 +22,9 @@ from assayfolio.report.interval_plots import (
 from assayfolio.report.miniatures import (
     WIDTH,
     Sketch,
-    comparison_axis,
-    equivalence_axis,
+    comparison_scale,
     equivalence_picture,
+    equivalence_scale,
     family_picture,
     means_picture,
 )
@@ -140,11 +140,11 @@ def test_the_envelope_in_the_middle_is_that_of_a_median():
 @pytest.mark.parametrize("case", [case for case in CASES if case not in WITHOUT_SCATTER])
 def test_every_small_picture_has_its_dots_above_its_axis_and_its_words_within_its_width(case):
     basis = Basis(CASES[case]())
-    axis = comparison_axis(basis)
+    scale = comparison_scale(basis)
     pictures = [
         means_picture(basis, Sketch(ACCENT, "m.svg", "Table 2")),
         *(
-            family_picture(basis, family, axis, Sketch(ACCENT, "f.svg", "Table 12"))
+            family_picture(basis, family, scale, Sketch(ACCENT, "f.svg", "Table 12"))
             for family in basis.response.comparisons
             if family.kind != "trend"
         ),
@@ -152,7 +152,7 @@ def test_every_small_picture_has_its_dots_above_its_axis_and_its_words_within_it
             equivalence_picture(
                 basis,
                 family,
-                equivalence_axis(basis, percent=family.scale == "percent"),
+                equivalence_scale(basis, percent=family.scale == "percent"),
                 Sketch(ACCENT, "e.svg", "Table 13"),
             )
             for family in basis.response.equivalence
@@ -176,9 +176,9 @@ def test_dots_without_names_say_where_the_names_are():
     basis = Basis(CASES["many levels"]())
     few = basis.response.comparisons[1].rows[:3]
     family = replace(basis.response.comparisons[1], rows=few)
-    axis = comparison_axis(basis)
-    crowd = family_picture(basis, basis.response.comparisons[0], axis, Sketch(ACCENT, "f.svg", "Table 5"))
-    rows = family_picture(basis, family, axis, Sketch(ACCENT, "f.svg", "Table 6"))
+    scale = comparison_scale(basis)
+    crowd = family_picture(basis, basis.response.comparisons[0], scale, Sketch(ACCENT, "f.svg", "Table 5"))
+    rows = family_picture(basis, family, scale, Sketch(ACCENT, "f.svg", "Table 6"))
     assert b"231 differences without intervals: see Table 5" in crowd.svg
     assert b"difference, mg; in the order of Table 6" in rows.svg
 
@@ -225,11 +225,11 @@ def test_non_inferiority_has_one_line_and_a_band_to_the_end_of_the_axis():
 def test_percent_margins_stand_on_a_percent_axis():
     basis = Basis(CASES["two responses"](), 1)
     family = basis.response.equivalence[0]
-    axis = equivalence_axis(basis, percent=True)
-    picture = equivalence_picture(basis, family, axis, Sketch(ACCENT, "e.svg", "Table 1"))
+    scale = equivalence_scale(basis, percent=True)
+    picture = equivalence_picture(basis, family, scale, Sketch(ACCENT, "e.svg", "Table 1"))
     assert family.scale == "percent"
     assert "difference, %" in picture.svg.decode()
-    assert axis.low < family.lower < family.upper < axis.high
+    assert scale.axis.low < family.lower < family.upper < scale.axis.high
 
 
 @pytest.mark.parametrize("case", ["sixty levels", "many levels", "long names"])

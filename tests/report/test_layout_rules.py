@@ -141,3 +141,14 @@ def test_many_columns_of_text_share_the_width_and_no_more():
     row = [*["several words in every cell of the row " * 3] * 2, "a", "b", "c", *["10.02"] * 4]
     table = lay_out("Table 1", "x", columns, [row])
     assert width_in_mm(table.width) <= TEXT_WIDTH_MM + 0.01
+
+
+def test_a_column_of_text_is_not_narrower_than_its_words():
+    columns = [
+        Column("Analysis", kind="text"),
+        Column("Method", kind="text"),
+        Column("Section", kind="words"),
+    ]
+    table = lay_out("Table 1", "x", columns, [["a long name of an analysis " * 8, "Bonferroni", "5"]])
+    assert width_in_mm(table.columns[1].width) > text_width("Bonferroni", 7.6) / 72 * 25.4
+    assert width_in_mm(table.width) <= TEXT_WIDTH_MM + 0.01

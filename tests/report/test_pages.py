@@ -64,7 +64,7 @@ REQUIRED_ON_THE_FIRST_PAGE = [
     "24 received, 0 excluded, 24 analysed (this version has no exclusions)",
     "Deviations",
     "this version records none",
-    "level means, mg/L; in the order of Table 2",
+    "level means, mg/L",
     "difference, mg/L; in the order of Table 6",
     "difference, mg/L; in the order of Table 7",
     "Author",

@@ -9,7 +9,7 @@ from hypothesis import strategies as st
 from scipy import stats
 
 from assayfolio.exact import to_double
-from assayfolio.statistics.adjustment import P_ADJUSTMENTS
+from assayfolio.statistics.adjustment import P_ADJUSTMENTS, Tail
 from assayfolio.statistics.comparisons import GREATER, LESS, TWO_SIDED, compare
 from assayfolio.statistics.estimates import contrast_estimate, pair_estimates, reference_estimates
 from assayfolio.statistics.oneway import NotComputableError
@@ -36,15 +36,14 @@ LOTS = {
 
 
 def test_error_and_degrees_of_freedom_are_exact():
-    analysis = analysed({"A": ["1", "3"], "B": ["2", "4", "6"], "C": ["0", "0"]})
-    a_b, a_c, b_c = compare_separate(pair_estimates(analysis), "none", TWO_SIDED, 0.05)
+    analysis = analysed({"A": ["1", "3"], "B": ["2", "4", "6"], "C": ["0", "4"]})
+    a_b, a_c, _ = compare_separate(pair_estimates(analysis), "none", TWO_SIDED, 0.05)
     # Variances 2 and 4: 2/2 + 4/3 = 7/3, and (7/3)^2 / (1 + (4/3)^2 / 2) = 49/17.
     assert a_b.se.square == Fraction(7, 3)
     assert a_b.df == 49 / 17
     assert a_b.statistic.square == Fraction(4) / Fraction(7, 3)
-    # A level that does not vary adds nothing, neither to the error nor to its degrees of freedom.
-    assert (a_c.se.square, a_c.df) == (1, 1.0)
-    assert (b_c.se.square, b_c.df) == (Fraction(4, 3), 2.0)
+    # Variances 2 and 8: 1 + 4 = 5, and 25 / (1 + 16).
+    assert (a_c.se.square, a_c.df) == (5, 25 / 17)
 
 
 def test_weights_enter_with_their_squares():
@@ -125,7 +124,7 @@ def test_for_two_levels_everything_is_welchs_t_test(data, alpha):
 def test_for_equal_numbers_and_two_levels_the_statistic_is_that_with_the_pooled_error(data):
     n = min(len(listed) for listed in data.values())
     analysis = analysed_tenths({level: listed[:n] for level, listed in data.items()})
-    assume(analysis.ss_within)
+    assume(all(level.ss for level in analysis.levels))
     pairs = pair_estimates(analysis)
     (separate,) = compare_separate(pairs, "none", TWO_SIDED, 0.05)
     (pooled,) = compare(analysis, pairs, "none", TWO_SIDED, 0.05)
@@ -173,21 +172,36 @@ def test_greater_asks_for_a_positive_and_less_for_a_negative_difference():
 
 def test_a_level_of_one_value_is_named():
     analysis = analysed({"A": ["1", "2"], "B": ["3"], "C": ["4", "6"]})
-    with pytest.raises(NotComputableError, match="level 'B' has one value only"):
+    with pytest.raises(NotComputableError, match="B has one value, so its variance cannot be estimated"):
         compare_separate(pair_estimates(analysis), "none", TWO_SIDED, 0.05)
-    with pytest.raises(NotComputableError, match="level 'B' has one value only"):
+    with pytest.raises(NotComputableError, match="B has one value, so its variance cannot be estimated"):
         compare_games_howell(analysis, pair_estimates(analysis), 0.05)
     without_b = contrast_estimate(analysis, "c", {"A": Fraction(1), "B": Fraction(0), "C": Fraction(-1)})
     assert compare_separate([without_b], "none", TWO_SIDED, 0.05)[0].estimate == Fraction(-7, 2)
 
 
-def test_levels_that_do_not_vary_are_named():
-    analysis = analysed({"A": ["1", "1"], "B": ["3", "3"], "C": ["4", "6"]})
-    with pytest.raises(NotComputableError, match="nothing varies within 'A' and 'B'"):
+def test_a_level_that_does_not_vary_is_not_taken_for_exactly_known():
+    analysis = analysed({"A": ["1", "2"], "B": ["3", "3"], "C": ["4", "6"]})
+    reason = "the values of B do not vary at the recorded resolution, so its variance cannot be estimated"
+    with pytest.raises(NotComputableError, match=reason):
         compare_separate(pair_estimates(analysis), "none", TWO_SIDED, 0.05)
-    with pytest.raises(NotComputableError, match="nothing varies within 'A' and 'B'"):
+    with pytest.raises(NotComputableError, match=reason):
         compare_games_howell(analysis, pair_estimates(analysis), 0.05)
-    assert len(compare_separate(reference_estimates(analysis, "C"), "none", TWO_SIDED, 0.05)) == 2
+    assert len(compare_separate(pair_estimates(analysis)[1:2], "none", TWO_SIDED, 0.05)) == 1
+
+
+@given(levels_that_vary(), ADJUSTMENTS, st.integers(1, 4))
+def test_rows_that_cannot_be_given_count_as_p_one(data, adjust, missing):
+    pairs = pair_estimates(analysed_tenths(data))
+    rows = compare_separate(pairs, adjust, TWO_SIDED, 0.05, missing)
+    whole = P_ADJUSTMENTS[adjust]([*(row.tail for row in rows), *[Tail(1.0, 0.0)] * missing])
+    assert tuple(row.adjusted for row in rows) == whole[: len(rows)]
+    for row in rows:
+        assert (row.critical is None) == (row.interval is None)
+        if adjust == "bonferroni":
+            assert row.critical == pytest.approx(
+                stats.t.isf(0.025 / (len(pairs) + missing), row.df), rel=1e-9
+            )
 
 
 def test_games_and_howell_for_more_than_two_hundred_levels_is_told_not_to_be_available():

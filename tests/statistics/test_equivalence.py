@@ -7,7 +7,7 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from assayfolio.statistics.adjustment import Tail
+from assayfolio.statistics.adjustment import P_ADJUSTMENTS, Tail
 from assayfolio.statistics.equivalence import Margins, equivalence_pooled, equivalence_separate
 from assayfolio.statistics.oneway import NotComputableError
 from assayfolio.statistics.tails import t_isf
@@ -131,18 +131,45 @@ def test_families(procedure):
         )
 
 
-def test_a_level_that_does_not_vary_leaves_the_other_its_degrees_of_freedom():
+def test_a_level_that_does_not_vary_is_not_taken_for_exactly_known():
     analysis = analysed_texts({"A": ["1.0", "1.0", "1.0"], "B": ["1.1", "1.3", "0.9", "1.2"]})
-    (row,) = equivalence_separate(analysis, [("A", "B")], TENTH, 0.05, "none")
-    assert row.df == 3
+    with pytest.raises(NotComputableError, match="the values of A do not vary at the recorded resolution"):
+        equivalence_separate(analysis, [("A", "B")], TENTH, 0.05, "none")
+
+
+@pytest.mark.parametrize("adjust", ["none", "bonferroni", "holm"])
+@given(data=varying())
+def test_a_row_that_cannot_be_given_counts_as_p_one(adjust, data):
+    analysis = analysed(data)
+    limits = Margins(Fraction(-1), Fraction(1))
+    alone = equivalence_separate(analysis, AGAINST_L0, limits, 0.05, "none")
+    beside = equivalence_separate(analysis, AGAINST_L0, limits, 0.05, adjust, missing=1)
+    whole = P_ADJUSTMENTS[adjust]([*(row.tail for row in alone), Tail(1.0, 0.0)])
+    assert [row.adjusted for row in beside] == list(whole[:2])
+    narrow = equivalence_separate(analysis, AGAINST_L0, limits, 0.05 / 3, "none")
+    assert [row.interval for row in beside] == [
+        row.interval for row in (narrow if adjust == "bonferroni" else alone)
+    ]
+
+
+@both
+@given(varying(), margins)
+def test_each_boundary_test_can_be_recomputed(procedure, data, limits):
+    for row in procedure(analysed(data), AGAINST_L0, limits, 0.05, "none"):
+        for test, excess in (
+            (row.lower, row.estimate - limits.lower),
+            (row.upper, row.estimate - limits.upper),
+        ):
+            assert test.statistic.square * test.se.square == excess**2
+            assert (test.se, test.df) == (row.se, row.df)
 
 
 def test_what_cannot_be_compared_is_refused_with_the_reason():
     flat = analysed_texts({"A": ["1.0", "1.0"], "B": ["1.1", "1.1"], "C": ["1", "2"]})
-    with pytest.raises(NotComputableError, match="nothing varies within levels 'A' and 'B'"):
+    with pytest.raises(NotComputableError, match=r"values of A do not vary .*; the values of B do not"):
         equivalence_separate(flat, [("A", "B")], TENTH, 0.05, "none")
     single = analysed_texts({"A": ["1.0"], "B": ["1.1", "1.2"]})
-    with pytest.raises(NotComputableError, match="'A' has one value"):
+    with pytest.raises(NotComputableError, match="A has one value"):
         equivalence_separate(single, [("A", "B")], TENTH, 0.05, "none")
     assert equivalence_pooled(single, [("A", "B")], TENTH, 0.05, "none")[0].df == 1
     all_flat = analysed_texts({"A": ["1.0", "1.0"], "B": ["1.1", "1.1"]})

@@ -1,6 +1,5 @@
 """The null distribution of the ratio of sums of squares without and with the two largest values."""
 
-import mpmath as mp
 import numpy as np
 import pytest
 from hypothesis import given, settings
@@ -14,19 +13,14 @@ from assayfolio.statistics.grubbs_pairs import (
     pair_limit,
     pair_tail,
 )
+from support.sphere_of_four import four_values_tail
 
 sizes = st.integers(FEWEST_FOR_PAIRS, MOST_FOR_PAIRS)
 
 
 @pytest.mark.parametrize("ratio", [1e-30, 1e-8, 1e-4, 0.01, 0.1, 0.3, 0.6, 0.66])
 def test_four_values_against_an_integral_over_the_sphere(ratio):
-    # The residuals of four values are a point on a sphere; those in rising order fill one of 24 equal
-    # triangles, in which the ratio is the square of one coordinate z. At a given z the triangle spans
-    # acos(tan(latitude) / sqrt(3)) - atan(1 / sqrt(2)).
-    with mp.workdps(40):
-        angle = lambda z: mp.acos(z / mp.sqrt(3 * (1 - z * z))) - mp.atan(1 / mp.sqrt(2))  # noqa: E731
-        expected = 6 / mp.pi * mp.quad(angle, [0, mp.sqrt(mp.mpf(ratio)) / 2, mp.sqrt(mp.mpf(ratio))])
-        assert pair_tail(ratio, 4) == pytest.approx(float(expected), rel=1e-13)
+    assert pair_tail(ratio, 4) == pytest.approx(float(four_values_tail(ratio)), rel=1e-13)
 
 
 @pytest.mark.parametrize("n", [4, 5, 6, 9, 15, 40, 100])

@@ -1,10 +1,11 @@
 """Outlier tests: what they point at, in which words, and what they do not depend on."""
 
+from dataclasses import replace
 from fractions import Fraction
 
 import numpy as np
 import pytest
-from hypothesis import given
+from hypothesis import assume, given
 from hypothesis import strategies as st
 from scipy import stats
 
@@ -16,11 +17,14 @@ from assayfolio.statistics.outliers import (
     STRAGGLER,
     cochran_outlier,
     grubbs_double,
+    grubbs_double_of_means,
     grubbs_single,
+    grubbs_single_of_means,
 )
 from support.measured import analysed, scaled, shifted, varying
 from support.reference import analysed as analysed_texts
 
+BOTH = {STRAGGLER, OUTLIER}
 TESTS = {"one value": grubbs_single, "two values": grubbs_double}
 either = pytest.mark.parametrize("test", TESTS.values(), ids=TESTS)
 units = st.lists(st.integers(-500, 500), min_size=4, max_size=12).filter(lambda listed: len(set(listed)) > 2)
@@ -65,17 +69,72 @@ def test_two_low_values_are_found_as_two_high_ones():
 
 
 def test_exact_statistics_of_a_small_case():
-    # 0, 0, 1, 5: mean 3/2, sum of squares 17; without 1 and 5 none is left, without 0 and 0 it is 8.
-    values = level_of("0", "0", "1", "5")
+    # 0, 1, 2, 5: mean 2, sum of squares 14; without 2 and 5 it is 1/2, without 0 and 1 it is 9/2.
+    values = level_of("0", "1", "2", "5")
     one, two = grubbs_single("A", values), grubbs_double("A", values)
-    assert one.statistic == Root.of(Fraction(49, 4) / Fraction(17, 3))
-    assert two.statistic == 0
-    assert (two.indexes, two.p, two.verdict) == ((2, 3), 0.0, OUTLIER)
+    assert one.statistic == Root.of(Fraction(9) / Fraction(14, 3))
+    assert two.statistic == Fraction(1, 28)
+    assert two.indexes == (2, 3)
 
 
-def test_one_value_apart_from_equal_ones_is_an_outlier():
-    found = grubbs_single("A", level_of("1.0", "1.0", "1.0", "1.0", "1.1"))
-    assert (found.p, found.verdict, found.indexes) == (0.0, OUTLIER, (4,))
+def test_values_that_are_equal_at_the_recorded_resolution_make_no_outlier_of_the_others():
+    for test, texts, places in (
+        (grubbs_double, ("150.5", "150.5", "150.9", "151.2"), (2, 3)),
+        (grubbs_single, ("1.0", "1.0", "1.0", "1.0", "1.1"), (4,)),
+        (grubbs_single, ("7.31", "7.34", "7.31"), (1,)),
+    ):
+        found = test("A", level_of(*texts))
+        assert (found.statistic, found.p, found.verdict) == (None, None, None)
+        assert "are all equal at the recorded step of" in found.reason
+        assert found.indexes == places
+
+
+def test_a_verdict_that_rounding_could_have_made_is_none():
+    values = level_of("10.0", "10.0", "10.0", "10.1", "10.0", "10.4")
+    assert grubbs_single("A", values, Fraction(1, 100)).verdict == OUTLIER
+    found = grubbs_single("A", values)
+    assert (found.statistic, found.p, found.verdict, found.indexes) == (None, None, None, (5,))
+    assert "rests on the recorded step of 0.1" in found.reason
+
+
+def test_a_value_far_out_stays_an_outlier_however_coarse_the_others_are_recorded():
+    coarse = ("10.0", "10.1", "10.0", "10.1", "10.0", "10.0")
+    assert grubbs_single("A", level_of(*coarse, "12.0")).verdict == OUTLIER
+    assert grubbs_double("A", level_of(*coarse, "12.0", "12.1")).verdict == OUTLIER
+
+
+@pytest.mark.parametrize(("test", "n"), [(grubbs_single, 3), (grubbs_single, 5), (grubbs_double, 5)])
+@pytest.mark.parametrize("step", [0.1, 0.5, 2.0])
+def test_rounding_alone_makes_no_more_proposals_than_stated(test, n, step):
+    generator = np.random.default_rng(11)
+    samples = generator.normal(size=(1500, n)) + generator.uniform(0, 10, size=(1500, 1))
+    verdicts = [
+        test("A", [Decimal10(int(one), 0) for one in units]).verdict
+        for units in np.round(samples / step).tolist()
+    ]
+    proposals, outliers = (sum(one in words for one in verdicts) / 1500 for words in (BOTH, {OUTLIER}))
+    # Three standard errors above 5 % and 1 %.
+    assert proposals <= 0.05 + 3 * (0.05 * 0.95 / 1500) ** 0.5
+    assert outliers <= 0.01 + 3 * (0.01 * 0.99 / 1500) ** 0.5
+
+
+def test_means_are_tested_like_values():
+    texts = {f"lab {at}": [value, value[:-1] + "9"] for at, value in enumerate(ORDINARY)}
+    levels = analysed_texts(texts | {"lab x": ["5.40", "5.42", "5.44"]}).levels
+    found = grubbs_single_of_means(levels, Fraction(1, 100))
+    assert (found.level, found.indexes, found.verdict) == (None, (8,), OUTLIER)
+    thousandths = [Decimal10(int(level.mean * 1000), -3) for level in levels]
+    alone = grubbs_single("means", thousandths)
+    assert (found.statistic, found.p, found.outlier_limit) == (alone.statistic, alone.p, alone.outlier_limit)
+    pair, alone = grubbs_double_of_means(levels, Fraction(1, 100)), grubbs_double("means", thousandths)
+    assert (pair.statistic, pair.p, pair.indexes) == (alone.statistic, alone.p, alone.indexes)
+
+
+def test_two_means_are_too_few_for_a_test_and_equal_ones_have_none():
+    two = analysed_texts({"a": ["1", "2"], "b": ["3", "4"]}).levels
+    assert grubbs_single_of_means(two, Fraction(1)).reason == "the test needs 3 level means; here are 2"
+    equal = analysed_texts({level: ["1", "2"] for level in "abcd"}).levels
+    assert grubbs_double_of_means(equal, Fraction(1)).reason == "all level means of the study are equal"
 
 
 def test_equal_distances_name_the_low_value():
@@ -88,7 +147,9 @@ def test_equal_distances_name_the_low_value():
 def test_unit_and_zero_point_do_not_matter(test, listed, constant, power):
     found = test("A", hundredths(listed))
     assert test("A", hundredths([one + constant for one in listed])) == found
-    assert test("A", [Decimal10(one, power) for one in listed]) == found
+    other = test("A", [Decimal10(one, power) for one in listed])
+    assert replace(other, reason=found.reason) == found
+    assert (other.reason is None) == (found.reason is None)
 
 
 @either
@@ -104,6 +165,7 @@ def test_the_order_of_rows_moves_the_places_alone(test, listed, random):
 @given(listed=units)
 def test_p_and_limits_say_the_same(test, listed):
     found = test("A", hundredths(listed))
+    assume(found.reason is None)
     statistic = (
         float(found.statistic) if isinstance(found.statistic, Fraction) else found.statistic.square**0.5
     )
@@ -118,7 +180,7 @@ def test_a_largest_value_moved_out_is_never_less_conspicuous(listed, far, furthe
     one, other = ([*listed, edge] for edge in (far, far + further))
     for test in TESTS.values():
         before, after = test("A", hundredths(one)), test("A", hundredths(other))
-        if before.indexes == after.indexes == (len(listed),):
+        if before.indexes == after.indexes == (len(listed),) and before.p is not None:
             assert after.statistic.square >= before.statistic.square
             assert after.p <= before.p
 
@@ -128,7 +190,7 @@ def test_two_largest_values_moved_out_together_are_never_less_conspicuous(listed
     places = (len(listed), len(listed) + 1)
     before = grubbs_double("A", hundredths([*listed, far, far]))
     after = grubbs_double("A", hundredths([*listed, far + further, far + further]))
-    if before.indexes == after.indexes == places:
+    if before.indexes == after.indexes == places and before.p is not None:
         assert after.statistic <= before.statistic
         assert after.p <= before.p
 

@@ -266,6 +266,7 @@ def test_with_all_values_equal_every_spread_is_zero_and_has_no_interval():
     assert found.total.variance == found.between.variance == found.repeatability.variance == 0
     assert (
         found.total.interval
+        is found.between.interval
         is found.total.df
         is found.icc
         is found.icc_interval
@@ -274,13 +275,13 @@ def test_with_all_values_equal_every_spread_is_zero_and_has_no_interval():
     )
     assert found.mean.u == Root(0, Fraction(0))
     assert found.total.relative_percent == Root(0, Fraction(0))
-    assert len(unavailable(found)) == 4
+    assert len(unavailable(found)) == 5
 
 
 def test_with_a_mean_of_zero_there_is_no_relative_standard_deviation():
     found = precision(analysed({"a": ["-1", "1"], "b": ["-2", "2"]}), NINETY_FIVE)
     assert found.repeatability.relative_percent is found.total.relative_percent is None
-    assert ("relative standard deviations", "the mean of all values is zero") in unavailable(found)
+    assert ("relative standard deviations", "the mean that is stated is zero") in unavailable(found)
 
 
 def test_a_complete_answer_lacks_nothing():

@@ -77,7 +77,7 @@ def test_equal_variances_have_p_one():
     assert row.tail.p <= 1.0
 
 
-def test_levels_without_a_variance_have_a_reason_and_do_not_count():
+def test_levels_without_a_variance_have_a_reason_and_count_as_p_one():
     data = METHODS | {"single": ["5.0"], "flat": ["5.0", "5.0"]}
     rows = {row.level: row for row in variance_ratios(analysed_texts(data), "reference", 0.05, "bonferroni")}
     assert "one value" in rows["single"].reason
@@ -85,8 +85,10 @@ def test_levels_without_a_variance_have_a_reason_and_do_not_count():
     for level in ("single", "flat"):
         row = rows[level]
         assert (row.ratio, row.df, row.tail, row.adjusted, row.interval) == (None,) * 5
-    family = variance_ratios(analysed_texts(METHODS), "reference", 0.05, "bonferroni")
-    assert [rows[row.level] for row in family] == list(family)
+    family = variance_ratios(analysed_texts(METHODS), "reference", 0.05 / 4, "none")
+    for alone in family:
+        assert rows[alone.level].interval == alone.interval
+        assert rows[alone.level].adjusted.p == min(1.0, 4 * alone.tail.p)
 
 
 @pytest.mark.parametrize("reference", [["5.0"], ["5.0", "5.0"]])

@@ -6,6 +6,7 @@ from study.examples import SMALLEST, edited, faults_of
 
 PATH = "expected a path below this file's folder, such as data/values.csv"
 ALPHA = "expected a number above 0 and below 1, such as 0.05"
+CONFIDENCE = "expected a number above 0 and below 1, such as 0.95"
 LABEL = "expected one line of text of at most 80 characters"
 TITLE = "expected one line of text of at most 200 characters"
 IDENTIFIER = "expected 1 to 40 capital letters, digits and hyphens, such as LOT-2024-07"
@@ -396,7 +397,7 @@ ONE_FAULT = {
     "a confidence in percent": (
         "",
         "precision: {estimate: true, confidence: 95}\n",
-        f"8:41: `precision.confidence` is `95` - {ALPHA}",
+        f"8:41: `precision.confidence` is `95` - {CONFIDENCE}",
     ),
     "a spread below nought": (
         "",

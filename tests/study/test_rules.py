@@ -361,11 +361,41 @@ REFUSED = {
         ),
         f"10:60: `equivalence.adjust` is `bonferroni`, {TOGETHER} - {HOLM}",
     ),
+    "one value at every level with separate variances": (
+        edited(separate(""), "  levels:", "  replicates: 1\n  levels:"),
+        (
+            "7:3: `data.replicates` plans one value at a level, from which no variance can be estimated, and "
+            "with `design.variances: separate` each level has its own - plan two values or more at every "
+            "level, or use `variances: pooled`"
+        ),
+    ),
+    "one value at one level with separate variances": (
+        edited(separate(""), "  levels:", "  replicates: {reference: 4, north: 1, south: 3}\n  levels:"),
+        (
+            "7:3: `data.replicates` plans one value at a level, from which no variance can be estimated, and "
+            "with `design.variances: separate` each level has its own - plan two values or more at every "
+            "level, or use `variances: pooled`"
+        ),
+    ),
+    "a criterion on the largest difference of random levels": (
+        sample("criteria: [{quantity: largest-difference, at-most: 1}]\n"),
+        (
+            "9:23: `criteria.quantity` is `largest-difference`, which compares levels, but with "
+            "`design.effects: random` they are a mere sample - use `between-sd`, or `effects: fixed`"
+        ),
+    ),
+    "a criterion on the relative difference of random levels": (
+        sample("criteria: [{quantity: largest-difference-percent, at-most: 1}]\n"),
+        (
+            "9:23: `criteria.quantity` is `largest-difference-percent`, which compares levels, but with "
+            "`design.effects: random` they are a mere sample - use `between-sd`, or `effects: fixed`"
+        ),
+    ),
     "power with separate variances": (
         separate("power: {difference: 1, sigma: 1, target: 0.9}\n"),
         (
             "10:1: `power` needs one standard deviation, and `design.variances` is separate - "
-            "leave it out, or use `variances: pooled`"
+            "leave it out: power is computed for a common standard deviation only"
         ),
     ),
     "an allocation to a control that is none": (
@@ -425,6 +455,12 @@ LET_THROUGH = {
         "  - {name: e, against: north, adjust: sidak, alternative: less}\n"
     ),
     "separate variances": SEPARATE,
+    "two values at every level with separate variances": edited(
+        separate(""), "  levels:", "  replicates: {reference: 10, north: 2, south: 11}\n  levels:"
+    ),
+    "one value at one level with one variance": edited(
+        planned(""), "  levels:", "  replicates: {reference: 1, north: 2, south: 1}\n  levels:"
+    ),
     "a sample of levels": SAMPLE,
     "Welch's test with separate variances": separate("").replace("separate", "separate, omnibus: welch"),
     "repeatability within fixed levels": planned(

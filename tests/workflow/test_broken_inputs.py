@@ -67,23 +67,25 @@ BROKEN_STUDIES = {
         "configs/study.yaml:8",
         "",
     ),
-    "a method of a later version": (
-        STUDY.replace("tukey-kramer", "scheffe"),
-        "configs/study.yaml:11:5",
-        "scheffe",
+    "a method that needs one variance": (
+        STUDY.replace("alpha:", "design: {variances: separate}\nalpha:"),
+        "configs/study.yaml:14:13",
+        "games-howell",
     ),
-    "equivalence, not computed yet": (
-        STUDY + "equivalence:\n  - {name: e, pairs: all, margin: 0.5, margin-source: s, adjust: none}\n",
-        "configs/study.yaml:17",
-        "equivalence",
+    "equivalence without a margin": (
+        STUDY + "equivalence:\n  - {name: e, pairs: all, adjust: none}\n",
+        "configs/study.yaml:18:5",
+        "margin-percent",
     ),
-    "random effects, not computed yet": (
-        STUDY.replace(
-            "comparisons:\n  - name: all pairs of methods\n    pairs: all\n    adjust: tukey-kramer\n", ""
-        )
-        + "design: {effects: random}\n",
-        "configs/study.yaml:13:10",
-        "random",
+    "random levels that are compared": (
+        STUDY + "design: {effects: random}\n",
+        "configs/study.yaml:10:1",
+        "precision",
+    ),
+    "missing values, which this version does not analyse": (
+        STUDY.replace("  unit: mg/L\n", "  unit: mg/L\n  missing: omit\n"),
+        "configs/study.yaml:8:3",
+        "missing: refuse",
     ),
     "a title the font cannot set": (STUDY.replace("Sulfate", "硫酸盐"), "configs/study.yaml:2", "U+786B"),
     "a title that turns the text round": (

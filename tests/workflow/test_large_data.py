@@ -23,7 +23,9 @@ def large(monkeypatch):
     monkeypatch.setattr(large_intake, "STREAM_FROM_BYTES", 0)
 
 
-def test_large_data_give_the_findings_of_small_data_apart_from_what_needs_single_values(tmp_path, monkeypatch):
+def test_large_data_give_the_findings_of_small_data_apart_from_what_needs_single_values(
+    tmp_path, monkeypatch
+):
     small = Bench(tmp_path / "small", STUDY, DATA).run()
     monkeypatch.setattr(large_intake, "STREAM_FROM_BYTES", 0)
     large = Bench(tmp_path / "large", STUDY, DATA).run()

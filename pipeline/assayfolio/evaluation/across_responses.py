@@ -17,10 +17,14 @@ from assayfolio.study.plan import AcrossResponses, StudyDefinition
 
 @dataclass(frozen=True, slots=True)
 class FamilyTails:
-    """The tails of one family on one response: unadjusted, and adjusted within the family."""
+    """The tails of one family on one response: unadjusted, and adjusted within the family.
+
+    `missing` is the number of planned rows that could not be given.
+    """
 
     raw: tuple[Tail, ...]
     within: tuple[Tail, ...]
+    missing: int = 0
 
 
 @dataclass(frozen=True, slots=True)
@@ -66,8 +70,9 @@ def across_rule(study: StudyDefinition, adjust: str, size: int, asked_of: int) -
 
 def _pooled_holm(families: Sequence[FamilyTails | None]) -> list[tuple[Tail, ...]]:
     sizes = [0 if family is None else len(family.raw) for family in families]
+    planned = max((len(family.raw) + family.missing for family in families if family is not None), default=0)
     known = [tail for family in families if family is not None for tail in family.raw]
-    missing = sum(max(sizes) for size in sizes if not size)
+    missing = planned * len(families) - len(known)
     adjusted = iter(holm([*known, *(Tail(1.0, 0.0) for _ in range(missing))]))
     return [tuple(next(adjusted) for _ in range(size)) for size in sizes]
 

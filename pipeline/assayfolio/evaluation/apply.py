@@ -102,7 +102,7 @@ def _analysed(
                 equivalence=equivalence[at],
                 spread=spread[at],
                 checks=check_findings(study, subject),
-                outliers=outlier_findings(study.outliers, subject),
+                outliers=outlier_findings(study, subject),
                 precision=precision,
                 criteria=criterion_findings(study.criteria, subject, precision, gaps),
             )

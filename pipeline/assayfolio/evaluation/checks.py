@@ -1,10 +1,12 @@
 """The checks of assumptions. They inform; they never choose the analysis.
 
 Equal variances and normality are checked as planned, a trend in run order where the plan names an order
-column, and the resolution of the values always: it has an entry where it is coarse.
+column, and the resolution of the values always: it has an entry where it is coarse. With separate variances
+normality is checked level by level, and the notes say what the plan does not assume.
 """
 
 from collections.abc import Callable, Sequence
+from dataclasses import dataclass
 
 from assayfolio.evaluation.subject import Subject
 from assayfolio.exact import Decimal10, Root, round_significant, to_double
@@ -17,6 +19,11 @@ from assayfolio.statistics.equal_variances import (
     brown_forsythe_variances,
     levene_variances,
 )
+from assayfolio.statistics.joined_normality import (
+    JoinedNormality,
+    anderson_darling_joined,
+    shapiro_wilk_joined,
+)
 from assayfolio.statistics.normality import (
     ANDERSON_DARLING_P_FROM,
     anderson_darling,
@@ -24,7 +31,7 @@ from assayfolio.statistics.normality import (
     shapiro_wilk,
 )
 from assayfolio.statistics.oneway import NotComputableError
-from assayfolio.statistics.resolution import Resolution, resolution, resolution_of
+from assayfolio.statistics.resolution import resolution_of
 from assayfolio.statistics.run_order import run_order_trend
 from assayfolio.study.plan import NormalityCheck, StudyDefinition, VarianceCheck
 
@@ -34,94 +41,146 @@ BARTLETT = "Bartlett test of equal variances"
 COCHRAN = "Cochran test of the largest variance"
 SHAPIRO_WILK = "Shapiro-Wilk test on residuals"
 ANDERSON_DARLING = "Anderson-Darling test on residuals"
+SHAPIRO_WILK_JOINED = "Shapiro-Wilk tests of the levels, joined"
+ANDERSON_DARLING_JOINED = "Anderson-Darling tests of the levels, joined"
 RUN_ORDER = "Trend in run order within levels"
 RESOLUTION = "Resolution of the values"
 
 _UNEQUAL = "unequal variances"
 _NOT_NORMAL = "a departure of the residuals from normality"
+_NOT_NORMAL_LEVELS = "a departure of the values within levels from normality"
 
-_Check = Callable[[Subject, float], CheckFindings]
+_NO_ALARM = "this plan does not assume equal variances, so a departure is no alarm"
+_ONE_VARIANCE = "this check assumes one variance for all levels, which the plan does not"
+
+
+@dataclass(frozen=True, slots=True)
+class _Case:
+    """What is checked: the values, the level the checks are read at, and what the plan assumes of them."""
+
+    subject: Subject
+    alpha: float
+    separate: bool
+
+    def note(self, p: float, departure: str, *remarks: str) -> str:
+        """What `p` shows about a departure, with remarks."""
+        shown = "the data show" if p <= self.alpha else "the data do not show"
+        words = [f"{shown} {departure} at level {self.alpha}", *remarks]
+        return "; ".join([*words, "the check informs and does not choose the analysis"])
+
+    def variances_note(self, p: float, departure: str, *remarks: str) -> str:
+        """The note of a check of equal variances."""
+        return self.note(p, departure, *remarks, *([_NO_ALARM] if self.separate else []))
+
+
+_Check = Callable[[_Case], CheckFindings]
 
 
 def check_findings(study: StudyDefinition, subject: Subject) -> tuple[CheckFindings, ...]:
     """The checks of one response: equal variances, normality, run order, and a note on coarse resolution."""
-    alpha = float(study.alpha)
+    case = _Case(subject, float(study.alpha), study.design.variances == "separate")
+    normality = _NORMALITY_OF_EACH if case.separate else _NORMALITY
     wanted: list[tuple[str, _Check]] = [
         *(_EQUAL_VARIANCES[word] for word in study.checks.equal_variances),
-        *(_NORMALITY[word] for word in study.checks.normality),
+        *(normality[word] for word in study.checks.normality),
     ]
     if study.data.order is not None:
         wanted.append((RUN_ORDER, _run_order))
-    found = [_checked(name, check, subject, alpha) for name, check in wanted]
+    found = [_checked(name, check, case) for name, check in wanted]
     return (*found, *_coarse_resolution(subject))
 
 
-def _checked(name: str, check: _Check, subject: Subject, alpha: float) -> CheckFindings:
+def _checked(name: str, check: _Check, case: _Case) -> CheckFindings:
     try:
-        return check(subject, alpha)
+        return check(case)
     except NotComputableError as error:
         return CheckFindings(name, None, None, None, f"{NOT_ASSESSABLE}: {error}")
 
 
-def _brown_forsythe(subject: Subject, alpha: float) -> CheckFindings:
-    subject.require_values()
-    return _f_test(BROWN_FORSYTHE, brown_forsythe_variances(subject.groups), alpha)
+def _brown_forsythe(case: _Case) -> CheckFindings:
+    case.subject.require_values()
+    return _f_test(BROWN_FORSYTHE, brown_forsythe_variances(case.subject.groups), case)
 
 
-def _levene(subject: Subject, alpha: float) -> CheckFindings:
-    subject.require_values()
-    return _f_test(LEVENE, levene_variances(subject.groups), alpha)
+def _levene(case: _Case) -> CheckFindings:
+    case.subject.require_values()
+    return _f_test(LEVENE, levene_variances(case.subject.groups), case)
 
 
-def _f_test(name: str, check: EqualVariancesCheck, alpha: float) -> CheckFindings:
+def _f_test(name: str, check: EqualVariancesCheck, case: _Case) -> CheckFindings:
     p = round_significant(check.tail.p)
-    return CheckFindings(name, check.f, check.df, p, _note(p, alpha, _UNEQUAL))
+    return CheckFindings(name, check.f, check.df, p, case.variances_note(p, _UNEQUAL))
 
 
-def _bartlett(subject: Subject, alpha: float) -> CheckFindings:
-    check = bartlett_variances(subject.analysis)
+def _bartlett(case: _Case) -> CheckFindings:
+    check = bartlett_variances(case.subject.analysis)
     p = round_significant(check.tail.p)
-    note = _note(p, alpha, _UNEQUAL)
-    if check.left_out:
-        note = f"{note}; without {', '.join(check.left_out)}, with one value each"
+    left_out = [f"without {', '.join(check.left_out)}, with one value each"] if check.left_out else []
+    note = case.variances_note(p, _UNEQUAL, *left_out)
     return CheckFindings(BARTLETT, round_significant(check.statistic), (check.df,), p, note)
 
 
-def _cochran(subject: Subject, alpha: float) -> CheckFindings:
-    check = cochran_variances(subject.analysis)
+def _cochran(case: _Case) -> CheckFindings:
+    check = cochran_variances(case.subject.analysis)
     p = round_significant(check.bound.p)
-    note = _note(p, alpha, f"a larger variance of {check.level} than of the others")
+    note = case.variances_note(p, f"a larger variance of {check.level} than of the others")
     return CheckFindings(COCHRAN, check.share, check.df, p, note)
 
 
-def _shapiro_wilk(subject: Subject, alpha: float) -> CheckFindings:
-    subject.require_values()
-    check = shapiro_wilk(residuals(subject.groups))
+def _shapiro_wilk(case: _Case) -> CheckFindings:
+    case.subject.require_values()
+    check = shapiro_wilk(residuals(case.subject.groups))
     p = round_significant(check.p)
-    return CheckFindings(SHAPIRO_WILK, round_significant(check.w), None, p, _note(p, alpha, _NOT_NORMAL))
+    return CheckFindings(SHAPIRO_WILK, round_significant(check.w), None, p, case.note(p, _NOT_NORMAL))
 
 
-def _anderson_darling(subject: Subject, alpha: float) -> CheckFindings:
-    count = subject.analysis.n_total
+def _anderson_darling(case: _Case) -> CheckFindings:
+    count = case.subject.analysis.n_total
     if count < ANDERSON_DARLING_P_FROM:
         raise NotComputableError(
             f"the p-value of the Anderson-Darling test holds from {ANDERSON_DARLING_P_FROM} values; "
             f"here are {count}"
         )
-    subject.require_values()
-    check = anderson_darling(residuals(subject.groups))
+    case.subject.require_values()
+    check = anderson_darling(residuals(case.subject.groups))
     p = round_significant(check.p)
-    return CheckFindings(ANDERSON_DARLING, round_significant(check.a2), None, p, _note(p, alpha, _NOT_NORMAL))
+    return CheckFindings(ANDERSON_DARLING, round_significant(check.a2), None, p, case.note(p, _NOT_NORMAL))
 
 
-def _run_order(subject: Subject, alpha: float) -> CheckFindings:
-    subject.require_values()
-    placed = [(level, _placed(rows)) for level, rows in subject.rows]
+def _shapiro_wilk_joined(case: _Case) -> CheckFindings:
+    case.subject.require_values()
+    found = shapiro_wilk_joined(case.subject.groups, case.subject.step_or_finest)
+    return _joined(SHAPIRO_WILK_JOINED, found, case)
+
+
+def _anderson_darling_joined(case: _Case) -> CheckFindings:
+    case.subject.require_values()
+    found = anderson_darling_joined(case.subject.groups, case.subject.step_or_finest)
+    return _joined(ANDERSON_DARLING_JOINED, found, case)
+
+
+def _joined(name: str, check: JoinedNormality, case: _Case) -> CheckFindings:
+    p = round_significant(check.p)
+    reasons = dict.fromkeys(reason for _, reason in check.left_out)
+    left_out = [
+        f"without {', '.join(level for level, why in check.left_out if why == reason)} ({reason})"
+        for reason in reasons
+    ]
+    how = "each level tested by itself, since each has its own variance"
+    return CheckFindings(
+        name, round_significant(check.z), None, p, case.note(p, _NOT_NORMAL_LEVELS, how, *left_out)
+    )
+
+
+def _run_order(case: _Case) -> CheckFindings:
+    case.subject.require_values()
+    placed = [(level, _placed(rows)) for level, rows in case.subject.rows]
     check = run_order_trend(placed)
     p = round_significant(check.tail.p)
-    unit = f" {subject.unit}" if subject.unit else ""
+    unit = f" {case.subject.unit}" if case.subject.unit else ""
     slope = f"slope {to_double(check.slope):.3g}{unit} a place in the order"
-    note = f"{_note(p, alpha, 'a trend in run order')}; {slope}"
+    remarks = [slope, *([_ONE_VARIANCE] if case.separate else [])]
+    note = case.note(p, "a trend in run order", *remarks)
     return CheckFindings(RUN_ORDER, check.statistic, (check.df,), p, note)
 
 
@@ -129,26 +188,16 @@ def _placed(rows: Sequence[Observation]) -> list[tuple[int, Decimal10]]:
     return [(row.order, row.value) for row in rows if row.order is not None]
 
 
-def _note(p: float, alpha: float, departure: str) -> str:
-    shown = f"the data show {departure}" if p <= alpha else f"the data do not show {departure}"
-    return f"{shown} at level {alpha}; the check informs and does not choose the analysis"
-
-
-def _resolution(subject: Subject) -> Resolution | None:
-    """The resolution of the recorded values; None where every value was put in for one beyond a limit."""
-    if subject.totals is not None:
-        return resolution_of(subject.totals.step, subject.analysis)
-    recorded = [(level, [row.value for row in rows if row.limit is None]) for level, rows in subject.rows]
-    return resolution(recorded, subject.analysis) if any(values for _, values in recorded) else None
-
-
 def _coarse_resolution(subject: Subject) -> tuple[CheckFindings, ...]:
     """One entry where the recorded step is coarse against a spread that is not zero; else none.
 
     A value put in for one beyond a limit was not recorded with a step, so that it does not count.
     """
-    found = _resolution(subject)
-    if found is None or not found.coarse or found.rounding_share is None:
+    step = subject.step
+    if step is None:
+        return ()
+    found = resolution_of(step, subject.analysis)
+    if not found.coarse or found.rounding_share is None:
         return ()
     unit = f" {subject.unit}" if subject.unit else ""
     note = (
@@ -169,4 +218,8 @@ _EQUAL_VARIANCES: dict[VarianceCheck, tuple[str, _Check]] = {
 _NORMALITY: dict[NormalityCheck, tuple[str, _Check]] = {
     "shapiro-wilk": (SHAPIRO_WILK, _shapiro_wilk),
     "anderson-darling": (ANDERSON_DARLING, _anderson_darling),
+}
+_NORMALITY_OF_EACH: dict[NormalityCheck, tuple[str, _Check]] = {
+    "shapiro-wilk": (SHAPIRO_WILK_JOINED, _shapiro_wilk_joined),
+    "anderson-darling": (ANDERSON_DARLING_JOINED, _anderson_darling_joined),
 }

@@ -1,8 +1,8 @@
 """Limits set in advance, held against the exact value.
 
-Relative quantities are in percent: a standard deviation of the mean it belongs to (the level's, or the grand
-mean), the largest difference of two level means of the grand mean, each of its absolute value. The grand mean
-is that of all values.
+Relative quantities are in percent: a level's standard deviation of its own mean, a standard deviation of the
+precision of the mean that is stated with it, the largest difference of two level means of the mean of all
+values, each of its absolute value.
 """
 
 from collections.abc import Callable
@@ -83,8 +83,9 @@ def _value(plan: Criterion, subject: Subject, precision: PrecisionFindings | Non
         raise NotComputableError("the precision could not be estimated")
     value = _OF_PRECISION[plan.quantity](precision)
     if value is None:
-        relative = plan.quantity.endswith(PERCENT) and not subject.analysis.grand_mean
-        raise NotComputableError("the grand mean is zero" if relative else "it could not be estimated")
+        zero = plan.quantity.endswith(PERCENT) and not precision.relative_mean
+        reason = f"the {precision.relative_to} is zero" if zero else "it could not be estimated"
+        raise NotComputableError(reason)
     return value
 
 
@@ -96,7 +97,7 @@ def _largest_difference(subject: Subject) -> Fraction:
 def _largest_difference_percent(subject: Subject) -> Fraction:
     mean = subject.analysis.grand_mean
     if not mean:
-        raise NotComputableError("the grand mean is zero")
+        raise NotComputableError("the mean of all values is zero")
     return 100 * _largest_difference(subject) / abs(mean)
 
 

@@ -1,4 +1,4 @@
-"""Effect sizes, under fixed effects: wherever the F test could be given."""
+"""Effect sizes, for fixed levels with one variance: wherever the F test could be given."""
 
 from assayfolio.evaluation.subject import Subject
 from assayfolio.exact import to_double
@@ -11,8 +11,12 @@ from assayfolio.study.plan import StudyDefinition
 def effect_findings(
     study: StudyDefinition, subject: Subject, anova: AnovaFindings, not_reported: list[NotReported]
 ) -> EffectFindings | None:
-    """The effect sizes of one response, the interval at 1 - alpha; None for random levels and without F."""
-    if study.design.effects == "random" or anova.f is None:
+    """The effect sizes of one response, the interval at 1 - alpha.
+
+    None for random levels, without F, and with separate variances: all of them rest on the pooled one.
+    """
+    design = study.design
+    if design.effects == "random" or design.variances == "separate" or anova.f is None:
         return None
     confidence = 1 - study.alpha
     try:

@@ -1,6 +1,7 @@
 """The planned tests of equivalence and non-inferiority, on every response."""
 
-from collections.abc import Callable, Sequence
+from collections.abc import Sequence
+from dataclasses import dataclass
 from fractions import Fraction
 from itertools import combinations
 
@@ -13,6 +14,7 @@ from assayfolio.findings import (
     EQUIVALENCE_SHOWN,
     NON_INFERIORITY_NOT_SHOWN,
     NON_INFERIORITY_SHOWN,
+    BoundaryFindings,
     EquivalenceFamily,
     EquivalenceRow,
     NotReported,
@@ -20,6 +22,7 @@ from assayfolio.findings import (
 from assayfolio.method_names import equivalence_method
 from assayfolio.statistics.adjustment import Tail, stated
 from assayfolio.statistics.equivalence import (
+    BoundaryTest,
     EquivalenceResult,
     Margins,
     Pairs,
@@ -30,7 +33,7 @@ from assayfolio.statistics.equivalence_percent import (
     equivalence_percent_pooled,
     equivalence_percent_separate,
 )
-from assayfolio.statistics.oneway import NotComputableError, OneWay
+from assayfolio.statistics.oneway import NotComputableError, OneWay, without_variance
 from assayfolio.study.plan import EquivalencePlan, StudyDefinition
 
 EQUIVALENCE, NON_INFERIORITY = "equivalence", "non-inferiority"
@@ -40,16 +43,14 @@ _VERDICTS = {
     EQUIVALENCE: (EQUIVALENCE_SHOWN, EQUIVALENCE_NOT_SHOWN),
     NON_INFERIORITY: (NON_INFERIORITY_SHOWN, NON_INFERIORITY_NOT_SHOWN),
 }
-_PROCEDURES: dict[
-    tuple[str, bool], Callable[[OneWay, Pairs, Margins, float, str], tuple[EquivalenceResult, ...]]
-] = {
-    ("pooled", False): equivalence_pooled,
-    ("pooled", True): equivalence_percent_pooled,
-    ("separate", False): equivalence_separate,
-    ("separate", True): equivalence_percent_separate,
-}
 
-_Results = tuple[EquivalenceResult, ...]
+
+@dataclass(frozen=True, slots=True)
+class _Results:
+    """The rows of one family on one response, and the label and reason of each planned one it lacks."""
+
+    rows: tuple[EquivalenceResult, ...]
+    missing: tuple[tuple[str, str], ...] = ()
 
 
 def equivalence_families(
@@ -62,9 +63,9 @@ def equivalence_families(
         rule = across_rule(study, plan.adjust, len(_pairs(plan, subjects[0].analysis)), len(asked))
         results = [_results_of(plan, study, subject, rule, not_reported) for subject in asked]
         tails = [None if one is None else _tails(one) for one in results]
-        for subject, rows, adjusted in zip(asked, results, rule.adjusted(tails), strict=True):
-            if rows is not None:
-                found[subject.response].append(_family(plan, study, rule, rows, adjusted))
+        for subject, one, adjusted in zip(asked, results, rule.adjusted(tails), strict=True):
+            if one is not None:
+                found[subject.response].append(_family(plan, study, rule, one, adjusted))
     return [tuple(found[subject.response]) for subject in subjects]
 
 
@@ -82,13 +83,37 @@ def _results_of(
     rule: AcrossRule,
     not_reported: list[NotReported],
 ) -> _Results | None:
-    procedure = _PROCEDURES[study.design.variances, plan.percent]
-    pairs, level = _pairs(plan, subject.analysis), rule.level(_alpha(plan, study))
+    what, level = f"equivalence: {plan.name}", rule.level(_alpha(plan, study))
+    results = _separate_results if study.design.variances == "separate" else _pooled_results
     try:
-        return procedure(subject.analysis, pairs, _margins(plan), level, plan.adjust)
+        found = results(plan, subject.analysis, level)
     except NotComputableError as error:
-        not_reported.append(subject.unreported(f"equivalence: {plan.name}", error))
+        not_reported.append(subject.unreported(what, error))
         return None
+    not_reported.extend(subject.unreported(f"{what}: {label}", reason) for label, reason in found.missing)
+    return found
+
+
+def _pooled_results(plan: EquivalencePlan, analysis: OneWay, alpha: float) -> _Results:
+    procedure = equivalence_percent_pooled if plan.percent else equivalence_pooled
+    return _Results(procedure(analysis, _pairs(plan, analysis), _margins(plan), alpha, plan.adjust))
+
+
+def _separate_results(plan: EquivalencePlan, analysis: OneWay, alpha: float) -> _Results:
+    """The rows that can be given: without those that involve a level whose variance cannot be estimated."""
+    procedure = equivalence_percent_separate if plan.percent else equivalence_separate
+    given, missing = [], []
+    for x, r in _pairs(plan, analysis):
+        reason = without_variance([analysis.summary_of(x), analysis.summary_of(r)])
+        if reason is None:
+            given.append((x, r))
+        else:
+            missing.append((f"{x} - {r}", reason))
+    if not given:
+        raise NotComputableError("; ".join(dict.fromkeys(reason for _, reason in missing)))
+    return _Results(
+        procedure(analysis, given, _margins(plan), alpha, plan.adjust, len(missing)), tuple(missing)
+    )
 
 
 def _margins(plan: EquivalencePlan) -> Margins:
@@ -102,7 +127,8 @@ def _alpha(plan: EquivalencePlan, study: StudyDefinition) -> Fraction:
 
 
 def _tails(results: _Results) -> FamilyTails:
-    return FamilyTails(tuple(row.tail for row in results), tuple(row.adjusted for row in results))
+    raw = tuple(row.tail for row in results.rows)
+    return FamilyTails(raw, tuple(row.adjusted for row in results.rows), len(results.missing))
 
 
 def _family(
@@ -114,6 +140,9 @@ def _family(
 ) -> EquivalenceFamily:
     claim = NON_INFERIORITY if plan.non_inferiority else EQUIVALENCE
     margins, alpha = _margins(plan), _alpha(plan, study)
+    rows = tuple(
+        _row(result, tail, claim, alpha) for result, tail in zip(results.rows, adjusted, strict=True)
+    )
     return EquivalenceFamily(
         name=plan.name,
         claim=claim,
@@ -125,11 +154,12 @@ def _family(
         method=equivalence_method(plan, study.design.variances),
         alpha=alpha,
         registered=False,
-        family_size=len(results),
+        family_size=len(rows) + len(results.missing),
         responses=rule.responses,
-        rows=tuple(_row(result, tail, claim, alpha) for result, tail in zip(results, adjusted, strict=True)),
+        rows=rows,
         across_responses=rule.method,
         against=plan.against,
+        critical=rows[0].critical if study.design.variances == "pooled" else None,
     )
 
 
@@ -148,7 +178,15 @@ def _row(result: EquivalenceResult, tail: Tail, claim: str, alpha: Fraction) -> 
         p_adjusted=adjusted.p,
         log10_p_adjusted=adjusted.log10_p,
         verdict=shown if shows(adjusted.p, alpha) else not_shown,
+        t_lower=None if result.lower is None else result.lower.statistic,
+        t_upper=None if result.upper is None else result.upper.statistic,
+        boundaries=tuple(_boundary(test) for test in (result.lower, result.upper) if test is not None),
+        critical=None if result.critical is None else round_significant(result.critical),
     )
+
+
+def _boundary(test: BoundaryTest) -> BoundaryFindings:
+    return BoundaryFindings(test.margin, test.statistic, test.se, test.df, round_significant(test.tail.p))
 
 
 def _p(tail: Tail | None) -> float | None:

@@ -1,6 +1,7 @@
 """The planned families of comparisons, on every response."""
 
 from collections.abc import Sequence
+from dataclasses import dataclass
 from fractions import Fraction
 
 from assayfolio.evaluation.across_responses import AcrossRule, FamilyTails, across_rule
@@ -18,7 +19,7 @@ from assayfolio.statistics.estimates import (
     reference_estimates,
 )
 from assayfolio.statistics.many_to_one_comparisons import compare_dunnett, compare_dunnett_step_down
-from assayfolio.statistics.oneway import NotComputableError, OneWay
+from assayfolio.statistics.oneway import NotComputableError, OneWay, without_variance
 from assayfolio.statistics.polynomials import polynomial_estimates
 from assayfolio.statistics.separate_variances import compare_games_howell, compare_separate
 from assayfolio.statistics.simultaneous import compare_scheffe, compare_tukey_kramer
@@ -40,7 +41,13 @@ KINDS: dict[type[Comparison], str] = {
     Trend: "trend",
 }
 
-_Results = tuple[ComparisonResult, ...]
+
+@dataclass(frozen=True, slots=True)
+class _Results:
+    """The rows of one family on one response, and the label and reason of each planned one it lacks."""
+
+    rows: tuple[ComparisonResult, ...]
+    missing: tuple[tuple[str, str], ...] = ()
 
 
 def comparison_families(
@@ -53,9 +60,9 @@ def comparison_families(
         rule = across_rule(study, plan.adjust, size, len(subjects))
         results = [_results_of(plan, study, subject, rule, not_reported) for subject in subjects]
         tails = [None if one is None else _tails(one) for one in results]
-        for families, rows, adjusted in zip(found, results, rule.adjusted(tails), strict=True):
-            if rows is not None:
-                families.append(_family(plan, study, rule, rows, adjusted))
+        for families, one, adjusted in zip(found, results, rule.adjusted(tails), strict=True):
+            if one is not None:
+                families.append(_family(plan, study, rule, one, adjusted))
     return [tuple(families) for families in found]
 
 
@@ -80,14 +87,38 @@ def _results_of(
     rule: AcrossRule,
     not_reported: list[NotReported],
 ) -> _Results | None:
+    what = f"comparison: {plan.name}"
     try:
-        return _results(plan, subject.analysis, study.design.variances, rule.level(study.alpha))
+        if study.design.variances == "separate":
+            found = _separate_results(plan, subject.analysis, rule.level(study.alpha))
+        else:
+            found = _Results(_pooled_results(plan, subject.analysis, rule.level(study.alpha)))
     except NotComputableError as error:
-        not_reported.append(subject.unreported(f"comparison: {plan.name}", error))
+        not_reported.append(subject.unreported(what, error))
         return None
+    not_reported.extend(subject.unreported(f"{what}: {label}", reason) for label, reason in found.missing)
+    return found
 
 
-def _results(plan: Comparison, analysis: OneWay, variances: str, alpha: float) -> _Results:
+def _separate_results(plan: Comparison, analysis: OneWay, alpha: float) -> _Results:
+    """The rows that can be given: without those that involve a level whose variance cannot be estimated."""
+    given, missing = [], []
+    for estimate in _estimates(plan, analysis):
+        reason = without_variance(level for level, _ in estimate.weights)
+        if reason is None:
+            given.append(estimate)
+        else:
+            missing.append((estimate.label, reason))
+    if not given:
+        raise NotComputableError("; ".join(dict.fromkeys(reason for _, reason in missing)))
+    if plan.adjust == "games-howell":
+        rows = compare_games_howell(analysis, given, alpha)
+    else:
+        rows = compare_separate(given, plan.adjust, alternative_of(plan), alpha, len(missing))
+    return _Results(rows, tuple(missing))
+
+
+def _pooled_results(plan: Comparison, analysis: OneWay, alpha: float) -> tuple[ComparisonResult, ...]:
     alternative = alternative_of(plan)
     if isinstance(plan, AgainstReference) and plan.adjust == "dunnett":
         return compare_dunnett(analysis, plan.against, alternative, alpha)
@@ -96,12 +127,8 @@ def _results(plan: Comparison, analysis: OneWay, variances: str, alpha: float) -
     estimates = _estimates(plan, analysis)
     if plan.adjust == "tukey-kramer":
         return compare_tukey_kramer(analysis, estimates, alpha)
-    if plan.adjust == "games-howell":
-        return compare_games_howell(analysis, estimates, alpha)
     if plan.adjust == "scheffe":
         return compare_scheffe(analysis, estimates, alpha)
-    if variances == "separate":
-        return compare_separate(estimates, plan.adjust, alternative, alpha)
     return compare(analysis, estimates, plan.adjust, alternative, alpha)
 
 
@@ -126,12 +153,16 @@ def _estimates(plan: Comparison, analysis: OneWay) -> tuple[Estimate, ...]:
 
 
 def _tails(results: _Results) -> FamilyTails:
-    return FamilyTails(tuple(row.tail for row in results), tuple(row.adjusted for row in results))
+    raw = tuple(row.tail for row in results.rows)
+    return FamilyTails(raw, tuple(row.adjusted for row in results.rows), len(results.missing))
 
 
 def _family(
     plan: Comparison, study: StudyDefinition, rule: AcrossRule, results: _Results, adjusted: Sequence[Tail]
 ) -> ComparisonFamily:
+    rows = tuple(
+        _row(result, tail, rule, study.alpha) for result, tail in zip(results.rows, adjusted, strict=True)
+    )
     return ComparisonFamily(
         name=plan.name,
         kind=KINDS[type(plan)],
@@ -139,18 +170,18 @@ def _family(
         method=comparison_method(plan.adjust, study.design.variances),
         alternative=alternative_of(plan),
         registered=False,
-        family_size=len(results),
+        family_size=len(rows) + len(results.missing),
         responses=rule.responses,
-        rows=tuple(
-            _row(result, tail, rule, study.alpha) for result, tail in zip(results, adjusted, strict=True)
-        ),
+        rows=rows,
         across_responses=rule.method,
         against=plan.against if isinstance(plan, AgainstReference) else None,
+        critical=rows[0].critical if study.design.variances == "pooled" else None,
     )
 
 
 def _row(result: ComparisonResult, tail: Tail, rule: AcrossRule, alpha: Fraction) -> ComparisonRow:
     adjusted = stated(tail)
+    critical = result.critical if rule.has_intervals else None
     return ComparisonRow(
         label=result.label,
         estimate=result.estimate,
@@ -162,4 +193,5 @@ def _row(result: ComparisonResult, tail: Tail, rule: AcrossRule, alpha: Fraction
         log10_p_adjusted=adjusted.log10_p,
         ci=result.interval if rule.has_intervals else None,
         verdict=difference_verdict(adjusted.p, alpha),
+        critical=None if critical is None else round_significant(critical),
     )

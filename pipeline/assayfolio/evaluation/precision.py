@@ -4,7 +4,15 @@ from assayfolio.evaluation.subject import Subject
 from assayfolio.exact import to_double
 from assayfolio.findings import MeanUncertaintyFindings, NotReported, PrecisionFindings
 from assayfolio.statistics.oneway import NotComputableError
-from assayfolio.statistics.precision import MeanUncertainty, Precision, precision, repeatability, unavailable
+from assayfolio.statistics.precision import (
+    BETWEEN_LEVELS,
+    POOLED,
+    MeanUncertainty,
+    Precision,
+    precision,
+    repeatability,
+    unavailable,
+)
 from assayfolio.study.plan import PrecisionPlan, StudyDefinition
 
 PRECISION = "precision"
@@ -13,10 +21,8 @@ _TOTAL_NAMES = {
     "reproducibility": "reproducibility",
     None: "total",
 }
-_FIXED = (
-    "the levels are fixed, not a sample of those that could have been chosen, so only the repeatability is "
-    "estimated; plan `effects: random` for the spread between levels"
-)
+MEAN_OF_VALUES = "mean of all values"
+_RELATIVE_TO = {BETWEEN_LEVELS: "mean of the level means", POOLED: MEAN_OF_VALUES}
 
 
 def precision_findings(
@@ -27,7 +33,6 @@ def precision_findings(
     if plan is None or not plan.estimate:
         return None
     if study.design.effects == "fixed":
-        not_reported.append(subject.unreported("precision: spread between levels and total", _FIXED))
         return _repeatability(plan, subject, not_reported)
     try:
         found = precision(subject.analysis, plan.confidence)
@@ -58,6 +63,8 @@ def _repeatability(
         repeatability_sd_ci=found.interval,
         repeatability_rsd=found.relative_percent,
         repeatability_limit=found.limit,
+        relative_mean=subject.analysis.grand_mean,
+        relative_to=MEAN_OF_VALUES,
     )
 
 
@@ -91,12 +98,23 @@ def _precision(plan: PrecisionPlan, found: Precision) -> PrecisionFindings:
         mean_method=mean.way,
         mean_ci=mean.interval,
         mean_ways=tuple(_way(way) for way in found.mean_ways),
+        relative_mean=mean.mean,
+        relative_to=_RELATIVE_TO[mean.way],
+        between_sd_ci=found.between.interval,
+        between_interval_method=None if found.between.interval is None else _between_method(found),
     )
 
 
 def _interval_method(found: Precision) -> str:
     method = "modified large sample (Graybill-Wang)"
     return method if found.balanced else f"{method}, n0 in the place of n"
+
+
+def _between_method(found: Precision) -> str:
+    method = "Williams-Tukey"
+    return (
+        method if found.balanced else f"{method} on unweighted means, harmonic mean of n (Thomas-Hultquist)"
+    )
 
 
 def _way(way: MeanUncertainty) -> MeanUncertaintyFindings:

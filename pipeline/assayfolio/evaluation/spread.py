@@ -42,7 +42,7 @@ def spread_findings(
 def _tails(rows: Sequence[VarianceRatio]) -> FamilyTails | None:
     raw = tuple(row.tail for row in rows if row.tail is not None)
     within = tuple(row.adjusted for row in rows if row.adjusted is not None)
-    return FamilyTails(raw, within) if raw else None
+    return FamilyTails(raw, within, len(rows) - len(raw)) if raw else None
 
 
 def _findings(

@@ -9,6 +9,7 @@ from assayfolio.findings import NotReported
 from assayfolio.observations.totals import Totals
 from assayfolio.observations.values import Observation, Observations
 from assayfolio.statistics.oneway import NotComputableError, OneWay, one_way
+from assayfolio.statistics.resolution import recorded_step
 
 Groups = tuple[tuple[str, tuple[Decimal10, ...]], ...]
 
@@ -36,6 +37,19 @@ class Subject:
             return tuple((level.lowest, level.highest) for level in self.totals.levels)
         fractions = ([value.fraction for value in values] for _, values in self.groups)
         return tuple((min(values), max(values)) for values in fractions)
+
+    @property
+    def step(self) -> Fraction | None:
+        """The step in which the values are recorded; None where each was put in for one beyond a limit."""
+        if self.totals is not None:
+            return self.totals.step
+        recorded = [(level, [row.value for row in rows if row.limit is None]) for level, rows in self.rows]
+        return recorded_step(recorded) if any(values for _, values in recorded) else None
+
+    @property
+    def step_or_finest(self) -> Fraction:
+        """The step in which the values are recorded, that of the values put in where there are no others."""
+        return self.step or recorded_step(self.groups)
 
     def require_values(self) -> None:
         """Raise NotComputableError where the single values were too many to be kept."""

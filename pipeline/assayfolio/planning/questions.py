@@ -2,7 +2,7 @@
 
 import math
 from collections.abc import Callable, Iterator
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from fractions import Fraction
 from functools import cache
 from itertools import combinations
@@ -36,6 +36,21 @@ from assayfolio.study.plan import (
 )
 
 _STEPWISE = ("holm", "hochberg", "dunnett-step-down")
+_LIES = {
+    TWO_SIDED: ("differs from", "differ from"),
+    GREATER: ("lies above", "lie above"),
+    LESS: ("lies below", "lie below"),
+}
+_IS = {
+    TWO_SIDED: "is the difference",
+    GREATER: "lies above zero by the difference",
+    LESS: "lies below zero by the difference",
+}
+_GO = {
+    TWO_SIDED: "the means rise in a straight line",
+    GREATER: "the means rise in a straight line",
+    LESS: "the means fall in a straight line",
+}
 _UNEQUAL = "with unequal numbers of values only the power of one pair is computed"
 
 
@@ -67,10 +82,31 @@ def planned_tests(
         None,
     )
     for plan in study.comparisons:
-        yield from _comparison(plan, numbers, gaps)
+        for planned in _comparison(plan, numbers, gaps):
+            yield planned if _has_interval(plan, study) else replace(planned, half_width=None)
     for test in study.equivalence:
         if test.response in (None, response):
             yield from _equivalence(test, study, numbers, gaps)
+
+
+def _has_interval(plan: Comparison, study: StudyDefinition) -> bool:
+    """Whether a family comes with intervals: not by a stepwise method, nor where Holm takes all responses."""
+    if plan.adjust in _STEPWISE:
+        return False
+    match plan:
+        case Trend():
+            rows = plan.degree
+        case ContrastFamily():
+            rows = len(plan.contrasts)
+        case Contrast():
+            rows = 1
+        case _:
+            rows = len(study.data.levels or ()) - 1
+    return not (rows == 1 and _holm_across(study))
+
+
+def _holm_across(study: StudyDefinition) -> bool:
+    return study.design.across_responses == "holm" and len(study.data.response) > 1
 
 
 def _comparison(plan: Comparison, numbers: PlanNumbers, gaps: list[NotReported]) -> Iterator[PlannedTest]:
@@ -130,7 +166,8 @@ def _pairs(plan: AllPairs, numbers: PlanNumbers, gaps: list[NotReported]) -> Ite
         a, b = _smallest_pair(sizes)
         return half_width(critical(sizes), Fraction(a + b, a * b), sigma)
 
-    words = _sought(plan, "showing a given pair that differs by the difference")
+    of_unequal = ", that with the fewest values," if len(set(numbers.replicates)) > 1 else ""
+    words = _sought(plan, f"showing a given pair{of_unequal} that differs by the difference")
     yield PlannedTest(plan.name, method, words, one, width)
     if k == 2:
         return
@@ -189,12 +226,14 @@ def _against(plan: AgainstReference, numbers: PlanNumbers) -> Iterator[PlannedTe
         control, others = parted(sizes)
         return half_width(critical(sizes), Fraction(1, control) + Fraction(1, min(others)), sigma)
 
-    words = "showing a given level that differs from the reference by the difference"
+    lies, lie = _LIES[plan.alternative]
+    of_unequal = ", that with the fewest values," if len(set(parted(numbers.replicates)[1])) > 1 else ""
+    words = f"showing a given level{of_unequal} that {lies} the reference by the difference"
     yield PlannedTest(plan.name, method, _sought(plan, words), one, width)
     if len(numbers.levels) > 2:
-        words = "showing at least one level, where all differ from the reference by the difference"
+        words = f"showing at least one level, where all {lie} the reference by the difference"
         yield PlannedTest(plan.name, method, _sought(plan, words), at_least_one, None)
-        words = "showing every level, where all differ from the reference by the difference"
+        words = f"showing every level, where all {lie} the reference by the difference"
         yield PlannedTest(plan.name, method, _sought(plan, words), every, None)
 
 
@@ -215,7 +254,7 @@ def _contrast(
         critical = _critical(plan.adjust, plan.alternative, numbers.alpha, rows, sizes)
         return half_width(critical, factor_of(sizes), numbers.sigma)
 
-    words = _sought(plan, "showing the contrast, where its true value is the difference")
+    words = _sought(plan, f"showing the contrast, where its true value {_IS[plan.alternative]}")
     return PlannedTest(name, comparison_method(plan.adjust, "pooled"), words, power, width)
 
 
@@ -251,9 +290,8 @@ def _trend(plan: Trend, numbers: PlanNumbers) -> PlannedTest:
         slope = [n * (x - centre) / norm for n, x in zip(sizes, scores, strict=True)]
         return _power_of_contrast(plan, slope, sizes, difference / rise, plan.degree, numbers)
 
-    words = (
-        "showing the linear trend, where the means rise in a straight line by the difference from end to end"
-    )
+    go = _GO[plan.alternative]
+    words = f"showing the linear trend, where {go} by the difference from end to end"
     return PlannedTest(
         f"{plan.name}: linear",
         comparison_method(plan.adjust, "pooled"),
@@ -274,6 +312,10 @@ def _equivalence(
     rows = k - 1 if test.against is not None else k * (k - 1) // 2
     alpha = to_double((test.alpha or study.alpha) / numbers.responses)
     level = _level(test.adjust, alpha, rows)
+    # With Holm each interval is for its own row, and over all responses for its own response.
+    of_interval = alpha if test.adjust == "holm" else level
+    if _holm_across(study) and test.response is None and (test.adjust == "holm" or rows == 1):
+        of_interval = to_double(test.alpha or study.alpha)
 
     def pair(sizes: Sizes) -> tuple[int, int]:
         if test.against is None:
@@ -293,9 +335,14 @@ def _equivalence(
 
     def width(sizes: Sizes) -> float:
         a, b = pair(sizes)
-        return half_width(float(t_isf(level, error_df(sizes))), Fraction(a + b, a * b), numbers.sigma)
+        return half_width(float(t_isf(of_interval, error_df(sizes))), Fraction(a + b, a * b), numbers.sigma)
 
     kind = "non-inferiority" if test.non_inferiority else "equivalence"
     first = "; at Holm's first step, so at least this" if test.adjust == "holm" and rows > 1 else ""
-    words = f"showing {kind} of a given pair at the true difference that is assumed{first}"
+    compared = numbers.replicates
+    if test.against is not None:
+        at = numbers.at(test.against)
+        compared = compared[:at] + compared[at + 1 :]
+    of_unequal = ", that with the fewest values," if len(set(compared)) > 1 else ""
+    words = f"showing {kind} of a given pair{of_unequal} at the true difference that is assumed{first}"
     yield PlannedTest(test.name, equivalence_method(test, "pooled"), words, power, width, grows=False)

@@ -188,7 +188,7 @@ def _across_note(basis: Basis, p: float) -> Prose:
 
 def _tests_table(basis: Basis, numbering: Numbering) -> Table:
     """Welch's F and F*, the latter on both degrees of freedom, the planned one marked."""
-    response, alpha = basis.response, basis.response.alpha
+    response = basis.response
     across = _is_across(basis)
     columns = [
         Column("Test of equal means", kind="text"),
@@ -198,47 +198,44 @@ def _tests_table(basis: Basis, numbering: Numbering) -> Table:
         *([Column(prose("Adjusted *p*"))] if across else []),
         Column("In the plan", kind="words"),
     ]
-    rows: list[list[Words]] = []
-
-    def add(name: str, f: Words, df: tuple[Words, Words], p: Words, adjusted: Words, planned: str) -> None:
-        last: list[Words] = [planned or "for comparison"]
-        rows.append(
-            [name, f, prose("{a} and {b}", a=df[0], b=df[1]), p, *([adjusted] if across else []), *last]
-        )
-
-    if (welch := response.welch) is not None:
-        add(
-            WELCH,
-            statistic(welch.f),
-            (str(welch.df1), degrees_of_freedom(welch.df2)),
-            probability(welch.p, alpha, welch.log10_p),
-            probability(welch.p_adjusted, alpha),
-            "the planned test" if response.omnibus == "welch" else "",
-        )
-    if (means := response.brown_forsythe_means) is not None:
-        f, df2 = statistic(means.f), degrees_of_freedom(means.df2)
-        add(
-            BROWN_FORSYTHE_MEANS,
-            f,
-            (str(means.df1), df2),
-            probability(means.p, alpha, means.log10_p),
-            probability(means.p_adjusted, alpha),
-            "the planned test" if response.omnibus == "brown-forsythe" else "",
-        )
-        mehrotra = (degrees_of_freedom(means.df1_mehrotra), df2)
-        add(
-            f"{BROWN_FORSYTHE_MEANS}, with Mehrotra’s degrees of freedom",
-            f,
-            mehrotra,
-            probability(means.p_mehrotra, alpha),
-            BLANK,
-            "",
-        )
+    rows = _welch_rows(basis) + _brown_forsythe_rows(basis)
+    cells: list[list[Words]] = [
+        [name, f, df, p, *([adjusted] if across else []), "the planned test" if planned else "for comparison"]
+        for name, f, df, p, adjusted, planned in rows
+    ]
     caption = prose(
         "Tests of equal means with a variance for each level, {response}.", response=response.response
     )
     note = "Two tests bear the names of Brown and Forsythe: this one is about means, not variances."
-    return lay_out(numbering.table(), caption, columns, rows, [prose(note)] if means is not None else [])
+    notes = [prose(note)] if response.brown_forsythe_means is not None else []
+    return lay_out(numbering.table(), caption, columns, cells, notes)
+
+
+_TestRow = tuple[str, str, str, str, str, bool]  # name, F, degrees of freedom, p, adjusted p, planned
+
+
+def _welch_rows(basis: Basis) -> list[_TestRow]:
+    test, alpha = basis.response.welch, basis.response.alpha
+    if test is None:
+        return []
+    df = f"{test.df1} and {degrees_of_freedom(test.df2)}"
+    p, adjusted = probability(test.p, alpha, test.log10_p), probability(test.p_adjusted, alpha)
+    return [(WELCH, statistic(test.f), df, p, adjusted, basis.response.omnibus == "welch")]
+
+
+def _brown_forsythe_rows(basis: Basis) -> list[_TestRow]:
+    test, alpha = basis.response.brown_forsythe_means, basis.response.alpha
+    if test is None:
+        return []
+    f, df2 = statistic(test.f), degrees_of_freedom(test.df2)
+    p, adjusted = probability(test.p, alpha, test.log10_p), probability(test.p_adjusted, alpha)
+    planned = basis.response.omnibus == "brown-forsythe"
+    mehrotra = f"{BROWN_FORSYTHE_MEANS}, with Mehrotra’s degrees of freedom"
+    df_mehrotra = f"{degrees_of_freedom(test.df1_mehrotra)} and {df2}"
+    return [
+        (BROWN_FORSYTHE_MEANS, f, f"{test.df1} and {df2}", p, adjusted, planned),
+        (mehrotra, f, df_mehrotra, probability(test.p_mehrotra, alpha), BLANK, False),
+    ]
 
 
 def _verdict(basis: Basis) -> Prose:

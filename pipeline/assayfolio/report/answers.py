@@ -19,7 +19,7 @@ from assayfolio.report.answers_shared import card_head, how_many_named, not_asse
 from assayfolio.report.basis import Basis, is_single_step
 from assayfolio.report.content import Card
 from assayfolio.report.methods import adjustment_of
-from assayfolio.report.miniatures import Sketch, comparison_axis, family_picture
+from assayfolio.report.miniatures import Sketch, comparison_scale, family_picture
 from assayfolio.report.notation import equals, three_digits
 from assayfolio.report.numbering import Part
 from assayfolio.report.prose import Prose, prose
@@ -35,32 +35,35 @@ from assayfolio.report.wording import (
     interval_kind,
     interval_words,
     is_adjusted,
+    of_rows,
     significant_interval,
 )
 from assayfolio.study.plan import AgainstReference, AllPairs, Comparison, ContrastFamily, Trend
 
 _SIDES = {"two-sided": "differ from", "greater": "lie above", "less": "lie below"}
+_SLOPES = {"two-sided": "rise or fall", "greater": "rise", "less": "fall"}
 
 
 def cards(bases: tuple[Basis, ...], accent: str, tables: Mapping[str, str]) -> tuple[Card, ...]:
     """One card a planned question, response by response.
 
-    For each response the overall question comes first, then comparisons, equivalence, spread, precision and
-    criteria, each in the order of the plan. `tables` gives the label of the table with the figures behind
+    For each response the overall question comes first, then criteria, comparisons, equivalence, spread and
+    precision, each in the order of the plan. `tables` gives the label of the table with the figures behind
     each anchor.
     """
     found: list[Card] = []
     for basis in bases:
         found.append(overall_card(basis, accent, tables))
+        found += criteria_card(basis)
         found += _comparison_cards(basis, accent, tables)
         found += _unreported(basis)
         found += equivalence_cards(basis, accent, tables)
-        found += [*spread_card(basis), *precision_card(basis), *criteria_card(basis)]
+        found += [*spread_card(basis), *precision_card(basis)]
     return tuple(found)
 
 
 def _comparison_cards(basis: Basis, accent: str, tables: Mapping[str, str]) -> list[Card]:
-    axis = comparison_axis(basis)
+    axis = comparison_scale(basis)
     found = []
     for number, family in enumerate(basis.response.comparisons, start=1):
         anchor = basis.anchor(f"family-{number}")
@@ -121,24 +124,28 @@ def _question_of(basis: Basis, plan: Comparison) -> Prose:
             reference=plan.against,
         )
     if isinstance(plan, Trend):
-        which = "a straight line" if plan.degree == 1 else f"a polynomial up to degree {plan.degree}"
-        return prose("Do the means rise or fall with {factor}, along " + which + "?", factor=basis.factor)
+        return _question_of_trend(basis, plan)
     if isinstance(plan, ContrastFamily):
         return prose("Which contrasts of “{name}” {side} zero?", name=plan.name, side=side)
     return prose("Does the contrast “{name}” {side} zero?", name=plan.name, side=side)
 
 
+def _question_of_trend(basis: Basis, plan: Trend) -> Prose:
+    if plan.degree == 1:
+        slope = _SLOPES[plan.alternative]
+        return prose(f"Do the means {slope} with {{factor}}, along a straight line?", factor=basis.factor)
+    side = _SIDES[plan.alternative]
+    words = f"Which coefficients of a polynomial in {{factor}}, up to degree {plan.degree}, {side} zero?"
+    return prose(words, factor=basis.factor)
+
+
 def _family_verdict(family: ComparisonFamily) -> str:
-    total = len(family.rows)
     what = "trends" if family.kind == "trend" else "comparisons"
     shown = sum(row.verdict == DIFFERENCE_SHOWN for row in family.rows)
-    if total == 1:
+    if family.family_size == 1:
         return capitalised(family.rows[0].verdict)
-    if not shown:
-        return capitalised(f"{DIFFERENCE_NOT_SHOWN} in any of {total} {what}")
-    if shown == total:
-        return capitalised(f"{DIFFERENCE_SHOWN} in all {total} {what}")
-    return capitalised(f"{DIFFERENCE_SHOWN} in {shown} of {total} {what}")
+    verdict = DIFFERENCE_SHOWN if shown else DIFFERENCE_NOT_SHOWN
+    return capitalised(f"{verdict} {of_rows(family, shown, what)}")
 
 
 def _family_lines(basis: Basis, family: ComparisonFamily) -> list[Prose]:

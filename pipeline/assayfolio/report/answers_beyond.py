@@ -4,10 +4,12 @@ from collections.abc import Mapping
 
 from assayfolio.findings import (
     CRITERION_MET,
+    CRITERION_NOT_MET,
     DIFFERENCE_NOT_SHOWN,
     DIFFERENCE_SHOWN,
     EQUIVALENCE_SHOWN,
     NON_INFERIORITY_SHOWN,
+    NOT_ASSESSABLE,
     EquivalenceFamily,
     EquivalenceRow,
     SpreadFindings,
@@ -27,7 +29,7 @@ from assayfolio.report.equivalence import (
 )
 from assayfolio.report.equivalence_words import planned_margin
 from assayfolio.report.methods import adjustment_words
-from assayfolio.report.miniatures import Sketch, equivalence_axis, equivalence_picture
+from assayfolio.report.miniatures import Sketch, equivalence_picture, equivalence_scale
 from assayfolio.report.notation import equals, probability, three_digits
 from assayfolio.report.numbering import Part
 from assayfolio.report.precision import precision_headline, precision_lines
@@ -37,16 +39,22 @@ from assayfolio.report.wording import (
     capitalised,
     first_of,
     interval_words,
+    of_rows,
     significant_interval,
 )
 from assayfolio.study.plan import EquivalencePlan
 
 _SHOWN = (EQUIVALENCE_SHOWN, NON_INFERIORITY_SHOWN)
 _MOST_CRITERIA = 3
+_URGENCY = {CRITERION_NOT_MET: 0, NOT_ASSESSABLE: 1, CRITERION_MET: 2}
 
 _EQUIVALENCE_SHOWN = (
     "Equivalent within this margin: a smaller difference may exist, and other quantities, such as the "
     "scatter, are not covered."
+)
+_NON_INFERIORITY_SHOWN = (
+    "Within this margin on the side asked about: a smaller difference may exist, and other quantities, such "
+    "as the scatter, are not covered."
 )
 _EQUIVALENCE_NOT_SHOWN = (
     "Not shown is not different: these data do not rule out a difference beyond the margin."
@@ -63,7 +71,7 @@ _CRITERIA = "Held against the value itself, not its interval. Meeting a criterio
 
 def equivalence_cards(basis: Basis, accent: str, tables: Mapping[str, str]) -> list[Card]:
     """A card for each planned family of equivalence tests on this response, also where it has no answer."""
-    axes = {percent: equivalence_axis(basis, percent=percent) for percent in (False, True)}
+    axes = {percent: equivalence_scale(basis, percent=percent) for percent in (False, True)}
     found: list[Card] = []
     for number, family in enumerate(basis.response.equivalence, start=1):
         anchor = basis.anchor(f"equivalence-{number}")
@@ -130,16 +138,11 @@ def _question_of(basis: Basis, plan: EquivalencePlan, margin: str) -> Prose:
 
 
 def _verdict(family: EquivalenceFamily) -> str:
-    total = len(family.rows)
     claim = "non-inferiority" if is_non_inferiority(family) else "equivalence"
     shown = sum(row.verdict in _SHOWN for row in family.rows)
-    if total == 1:
+    if family.family_size == 1:
         return capitalised(family.rows[0].verdict)
-    if not shown:
-        return capitalised(f"{claim} not shown in any of {total} pairs")
-    return capitalised(
-        f"{claim} shown in {f'all {total}' if shown == total else f'{shown} of {total}'} pairs"
-    )
+    return capitalised(f"{claim} {'shown' if shown else 'not shown'} {of_rows(family, shown, 'pairs')}")
 
 
 def _lines(basis: Basis, family: EquivalenceFamily) -> list[Prose]:
@@ -174,7 +177,7 @@ def _nearest_to_margin(family: EquivalenceFamily) -> EquivalenceRow:
 def _caution(family: EquivalenceFamily) -> str:
     shown = sum(row.verdict in _SHOWN for row in family.rows)
     if shown == len(family.rows):
-        return _EQUIVALENCE_SHOWN
+        return _NON_INFERIORITY_SHOWN if is_non_inferiority(family) else _EQUIVALENCE_SHOWN
     return _EQUIVALENCE_MIXED if shown else _EQUIVALENCE_NOT_SHOWN
 
 
@@ -265,7 +268,7 @@ def criteria_card(basis: Basis) -> list[Card]:
     if not found:
         return []
     place = basis.place(Part.CRITERIA)
-    ordered = sorted(found, key=lambda one: one.verdict == CRITERION_MET)
+    ordered = sorted(found, key=lambda one: _URGENCY[one.verdict])
     lines = [criterion_line(basis, one) for one in ordered[:_MOST_CRITERIA]]
     rest = len(ordered) - _MOST_CRITERIA
     if rest > 0:

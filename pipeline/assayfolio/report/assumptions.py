@@ -14,6 +14,7 @@ from assayfolio.report.tables import Column, Table, lay_out
 from assayfolio.report.wording import BLANK, alpha_words, typographic
 
 _SYMBOLS = (
+    ("joined", "*z*"),
     ("Brown-Forsythe", "*F*"),
     ("Levene", "*F*"),
     ("Bartlett", "*χ*²"),
@@ -63,6 +64,8 @@ def checks_section(basis: Basis, numbering: Numbering, accent: str) -> Section:
 
 def symbol_of(check: CheckFindings) -> Prose:
     """The symbol of a check's statistic: by its name, else F on two degrees of freedom and t on one."""
+    if "joined" in check.name:
+        return prose("*z*")
     for name, symbol in _SYMBOLS:
         if name in check.name:
             return prose(symbol)
@@ -112,7 +115,10 @@ def _residual_figures(basis: Basis, numbering: Numbering, accent: str) -> list[B
             prose(
                 "Residuals (value minus the mean of its level), {total} in all. Left: in the {by_order}"
                 "; a drift or steps would speak against independence. Right: against the mean of the "
-                "level; a widening spread would speak against one variance." + how,
+                "level; {spread}." + how,
+                spread="the spread may differ, as each level has a variance of its own"
+                if basis.is_separate
+                else "a widening spread would speak against one variance",
                 total=str(basis.total),
                 by_order=by_order,
             ),
@@ -124,16 +130,25 @@ def _residual_figures(basis: Basis, numbering: Numbering, accent: str) -> list[B
             FigureBlock(
                 numbering.figure(),
                 (normal,),
-                prose(
-                    "Normal plot of the residuals, {total} in all. The line is a normal distribution with "
-                    "mean zero and the residuals’ own root mean square. The grey area is the pointwise "
-                    "{confidence} envelope of an order statistic (Chambers and others, 1983); it treats "
-                    "residuals as independent, which they nearly are. Points that leave it in a curve speak "
-                    "against normal errors; a single point at its edge says "
-                    "little." + (" Only part of the points is drawn between the ends." if many else ""),
-                    total=str(basis.total),
-                    confidence=basis.confidence,
-                ),
+                _caption_of_normal_plot(basis, many=many),
             )
         )
     return figures
+
+
+def _caption_of_normal_plot(basis: Basis, *, many: bool) -> Prose:
+    what = "residuals"
+    count = basis.total
+    if basis.is_separate:
+        what = "residuals, each divided by the standard deviation of its level"
+        count = len(basis.scaled_residuals)
+    return prose(
+        "Normal plot of the {what}, {total} in all. The line is a normal distribution with mean zero and "
+        "their own root mean square. The grey area is the pointwise {confidence} envelope of an order "
+        "statistic (Chambers and others, 1983); it treats residuals as independent, which they nearly are. "
+        "Points that leave it in a curve speak against normal errors; a single point at its edge says "
+        "little." + (" Only part of the points is drawn between the ends." if many else ""),
+        what=what,
+        total=str(count),
+        confidence=basis.confidence,
+    )

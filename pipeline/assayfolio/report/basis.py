@@ -6,7 +6,7 @@ from functools import cached_property
 from typing import Protocol
 
 from assayfolio.errors import RenderingError
-from assayfolio.exact import Exact, magnitude
+from assayfolio.exact import Exact, Root, magnitude, to_double
 from assayfolio.findings import ComparisonFamily, LevelFindings, ResponseFindings
 from assayfolio.observations.totals import Totals
 from assayfolio.observations.values import Observations
@@ -152,7 +152,17 @@ class Basis:
     def scale(self) -> Scale:
         """How values and means are printed."""
         ends = [end for level in self.levels for end in (level.minimum, level.maximum)]
-        return Scale.of(ends, self.last_digit, self.response.unit)
+        return Scale.of(ends, self.last_digit, self.response.unit).no_finer_than(self.finest_error)
+
+    @cached_property
+    def finest_error(self) -> Root:
+        """The smallest standard error of a level's mean, of those that are not zero; zero where none is."""
+        within = self.response.anova.within.ms or Fraction(0)
+        squares = [
+            (level.sd.square if level.sd else Fraction(0)) / level.n if self.is_separate else within / level.n
+            for level in self.levels
+        ]
+        return Root.of(min((square for square in squares if square), default=Fraction(0)))
 
     @cached_property
     def difference_scale(self) -> Scale:
@@ -162,14 +172,18 @@ class Basis:
             sizes = [end - level.mean for level in self.levels for end in (level.minimum, level.maximum)]
         sizes += [level.mean - self.levels[0].mean for level in self.levels]
         sizes += [row.estimate for family in self.response.comparisons for row in family.rows]
-        return Scale.of(sizes, self.last_digit, self.response.unit)
+        scale = Scale.of(sizes, self.last_digit, self.response.unit)
+        return scale.no_finer_than(self.finest_error)
 
     @cached_property
     def percent_scale(self) -> Scale:
         """How differences in percent of a mean are printed: as fine as those in units, within reason."""
         largest = max(abs(level.mean) for level in self.levels)
         last = magnitude(100 * Fraction(10) ** self.last_digit / largest) if largest else 0
-        return Scale.of([Fraction(100)], max(-3, min(0, last)), "%")
+        scale = Scale.of([Fraction(100)], max(-3, min(0, last)), "%")
+        if not largest:
+            return scale
+        return scale.no_finer_than(Root.of(10_000 * self.finest_error.square / largest**2))
 
     @cached_property
     def values(self) -> tuple[Fraction, ...]:
@@ -206,6 +220,20 @@ class Basis:
         means = {level.level: level.mean for level in self.levels}
         rows = self.observations.rows
         return tuple(value - means[row.level] for value, row in zip(self.values, rows, strict=True))
+
+    @cached_property
+    def scaled_residuals(self) -> tuple[Fraction, ...]:
+        """Each residual over the standard deviation of its own level, to double precision.
+
+        Levels without a standard deviation, or with one of zero, have none.
+        """
+        sds = {level.level: to_double(level.sd) for level in self.levels if level.sd and level.sd.sign}
+        rows = self.observations.rows
+        return tuple(
+            Fraction(to_double(residual) / sds[row.level])
+            for residual, row in zip(self.residuals, rows, strict=True)
+            if row.level in sds
+        )
 
     @cached_property
     def confidence(self) -> str:

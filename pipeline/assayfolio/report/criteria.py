@@ -1,16 +1,17 @@
 """The limits that were set in advance, and whether the results keep them."""
 
+from collections.abc import Sequence
 from fractions import Fraction
 
 from assayfolio.exact import Exact, Root, magnitude, rounded_units
-from assayfolio.findings import CRITERION_MET, NOT_ASSESSABLE, CriterionFindings
+from assayfolio.findings import CRITERION_NOT_MET, NOT_ASSESSABLE, CriterionFindings
 from assayfolio.report.basis import Basis
 from assayfolio.report.content import Block, Paragraph, Section, TableBlock
 from assayfolio.report.notation import decimal, fixed, scientific, significant_places
 from assayfolio.report.numbering import Numbering, Part
 from assayfolio.report.prose import Prose, Words, prose
 from assayfolio.report.tables import Column, lay_out
-from assayfolio.report.wording import BLANK, with_unit
+from assayfolio.report.wording import BLANK, capitalised, with_unit
 
 _NAMES = {
     "repeatability-sd": "repeatability standard deviation",
@@ -21,7 +22,7 @@ _NAMES = {
     "total-sd": "total standard deviation",
     "total-rsd": "relative total standard deviation",
     "largest-difference": "largest difference of two level means",
-    "largest-difference-percent": "largest difference of two level means, of the grand mean",
+    "largest-difference-percent": "largest difference of two level means, of the mean of all values",
     "level-mean": "mean",
     "level-sd": "standard deviation",
     "level-rsd": "relative standard deviation",
@@ -94,7 +95,7 @@ def value_words(basis: Basis, found: CriterionFindings) -> str:
         return with_unit("0", found.unit)
     digits = 3
     if found.quantity in ("level-mean", "largest-difference"):
-        digits = max(3, magnitude(found.value) - basis.last_digit + 2)
+        digits = max(3, magnitude(found.value) + 1 + basis.scale.mean_places - basis.scale.power)
     while digits < _MOST_DIGITS and _reads_as(found.value, found.limit, digits):
         digits += 1
     places = significant_places(found.value, digits)
@@ -121,11 +122,29 @@ def criterion_line(basis: Basis, found: CriterionFindings) -> Prose:
     )
 
 
-def criteria_headline(found: tuple[CriterionFindings, ...]) -> str:
+def criteria_headline(found: Sequence[CriterionFindings]) -> str:
     """What an answer on criteria says first."""
-    met = sum(one.verdict == CRITERION_MET for one in found)
-    open_ones = sum(one.verdict == NOT_ASSESSABLE for one in found)
+    return capitalised(criteria_count(found))
+
+
+def criteria_count(found: Sequence[CriterionFindings]) -> str:
+    """How many limits are not met, how many cannot be assessed, or that all are met."""
     if len(found) == 1:
-        return found[0].verdict[:1].upper() + found[0].verdict[1:]
-    words = f"Criterion met in {'all' if met == len(found) else f'{met} of'} {len(found)}"
-    return words + (f", not assessable in {open_ones}" if open_ones else "")
+        return found[0].verdict
+    missed = sum(one.verdict == CRITERION_NOT_MET for one in found)
+    unknown = sum(one.verdict == NOT_ASSESSABLE for one in found)
+    of_all = f"of {len(found)} limits"
+    if missed:
+        return f"{missed} {of_all} not met" + (f", {unknown} not assessable" if unknown else "")
+    return f"{unknown} {of_all} not assessable" if unknown else f"all {len(found)} limits met"
+
+
+def criterion_phrase(basis: Basis, found: CriterionFindings) -> Prose:
+    """One criterion in running text: its name, its value and its limit."""
+    return prose(
+        "{of}{name} {value} ({limit})",
+        of=f"{basis.response.response}, " if basis.several else "",
+        name=quantity_name(basis, found.quantity, found.level),
+        value="not assessable" if found.value is None else value_words(basis, found),
+        limit=limit_words(found),
+    )

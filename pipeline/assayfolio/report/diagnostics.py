@@ -1,13 +1,15 @@
 """The figures that show whether the assumptions of the analysis fit: residuals and their normal plot."""
 
 from collections.abc import Sequence
+from dataclasses import replace
 from fractions import Fraction
 from math import exp, pi, sqrt
 
 from assayfolio.exact import Root, to_double
-from assayfolio.report.axes import Axis, make_axis
+from assayfolio.report.axes import Axis, Lettering, make_axis
 from assayfolio.report.basis import Basis
 from assayfolio.report.figures import MOST_DOTS, Picture, axis_title
+from assayfolio.report.notation import Scale
 from assayfolio.report.svg import DOT_INK, HAIRLINE, SECOND_INK, THIN_LINE, Drawing
 from assayfolio.report.typeface import figures_width
 
@@ -16,6 +18,7 @@ HEIGHT = 142.0
 _SIZE = 7.2
 _DOT = 1.7
 _CELL = 4.0
+_LETTERING = Lettering(_SIZE, 0, WIDTH)
 _MOST_POINTS_OF_NORMAL_PLOT = 400
 
 
@@ -38,10 +41,9 @@ def residual_plots(basis: Basis) -> tuple[Picture, Picture]:
     )
 
 
-def _frame(basis: Basis, vertical: list[Fraction]) -> tuple[Drawing, Axis, float]:
+def _frame(what: str, scale: Scale, vertical: list[Fraction]) -> tuple[Drawing, Axis, float]:
     """A drawing with the vertical axis of residuals in it, and the place where the plot begins at left."""
     drawing = Drawing(WIDTH, HEIGHT)
-    scale = basis.difference_scale
     axis = make_axis(vertical, HEIGHT - 34, 8, wanted=5, include_zero=True, power=scale.power)
     left = 14 + max(figures_width(label, _SIZE) for label in axis.labels) + 4
     for tick, label in zip(axis.ticks, axis.labels, strict=True):
@@ -49,7 +51,7 @@ def _frame(basis: Basis, vertical: list[Fraction]) -> tuple[Drawing, Axis, float
         drawing.line(left, y, left - 3, y, stroke=SECOND_INK, width=THIN_LINE)
         drawing.figures(left - 5, y + 2.5, label, size=_SIZE, anchor="end", fill=SECOND_INK)
     drawing.line(left, axis.start, left, axis.end, stroke=SECOND_INK)
-    title = axis_title(axis, "residual", scale)
+    title = axis_title(axis, what, scale)
     drawing.text(7, (8 + HEIGHT - 34) / 2, title, size=_SIZE, anchor="middle", upright=False)
     return drawing, axis, left
 
@@ -66,15 +68,13 @@ def _horizontal(drawing: Drawing, axis: Axis, title: str) -> None:
 
 def _scatter(basis: Basis, across: list[Fraction], quantity: str | None, title: str) -> Drawing:
     residuals = list(basis.residuals)
-    drawing, vertical, left = _frame(basis, residuals)
+    drawing, vertical, left = _frame("residual", basis.difference_scale, residuals)
     if quantity is None:
-        axis = make_axis(across, left + 6, WIDTH - 8, wanted=5)
+        axis = make_axis(across, left + 6, WIDTH - 8, wanted=5, lettering=_LETTERING)
         whole = tuple(tick for tick in axis.ticks if tick.denominator == 1 and tick >= 0)
-        axis = Axis(
-            axis.low, axis.high, axis.start, axis.end, whole, tuple(str(tick) for tick in whole), axis.origin
-        )
+        axis = replace(axis, ticks=whole, labels=tuple(map(str, whole)))
     else:
-        axis = make_axis(across, left + 6, WIDTH - 8, wanted=4, power=basis.scale.power)
+        axis = make_axis(across, left + 6, WIDTH - 8, wanted=4, power=basis.scale.power, lettering=_LETTERING)
         title = axis_title(axis, title, basis.scale)
     zero = vertical.at(0)
     drawing.line(left + 6, zero, WIDTH - 8, zero, stroke=HAIRLINE, width=THIN_LINE)
@@ -135,20 +135,28 @@ def envelope(position: Fraction, quantile: float, total: int, multiplier: float)
 
 
 def normal_plot(basis: Basis, accent: str) -> Picture | None:
-    """The ordered residuals against normal quantiles, with a line and its envelope; None without scatter."""
+    """The ordered residuals against normal quantiles, with a line and its envelope; None without scatter.
+
+    With separate variances each residual is divided by the standard deviation of its level: residuals of
+    unequal spread would bend the plot although every level is normal.
+    """
     if not basis.response.anova.within.ss:
         return None
-    ordered = sorted(basis.residuals)
+    ordered = sorted(basis.scaled_residuals if basis.is_separate else basis.residuals)
     total = len(ordered)
     positions = [blom_position(rank, total) for rank in range(1, total + 1)]
     quantiles = _quantiles(positions)
     multiplier = _quantiles([1 - basis.response.alpha / 2])[0]
-    slope = to_double(Root.of(basis.response.anova.within.ss / total))
+    slope = to_double(Root.of(_sum_of_squares(basis) / total))
     half = [slope * envelope(p, z, total, multiplier) for p, z in zip(positions, quantiles, strict=True)]
     upper = [Fraction(slope * z + h) for z, h in zip(quantiles, half, strict=True)]
     lower = [Fraction(slope * z - h) for z, h in zip(quantiles, half, strict=True)]
-    drawing, vertical, left = _frame(basis, [*ordered, *upper, *lower])
-    axis = make_axis([Fraction(z) for z in quantiles], left + 6, WIDTH - 8, wanted=5)
+    what, scale = ("residual", basis.difference_scale)
+    if basis.is_separate:
+        what, scale = "residual / SD of its level", Scale("", 0, 1, 2)
+    drawing, vertical, left = _frame(what, scale, [*ordered, *upper, *lower])
+    horizontal = [Fraction(z) for z in quantiles]
+    axis = make_axis(horizontal, left + 6, WIDTH - 8, wanted=5, lettering=_LETTERING)
     across = [axis.at(z) for z in quantiles]
     edge = list(zip(across, map(vertical.at, upper), strict=True))
     edge += reversed(list(zip(across, map(vertical.at, lower), strict=True)))
@@ -162,6 +170,13 @@ def normal_plot(basis: Basis, accent: str) -> Picture | None:
     outside = sum(not low <= value <= high for value, low, high in zip(ordered, lower, upper, strict=True))
     words = f"Normal plot of {total} residuals; {outside} lie outside the pointwise envelope."
     return Picture(basis.file("residuals-normal.svg"), drawing.svg(words), words, 78)
+
+
+def _sum_of_squares(basis: Basis) -> Fraction:
+    """The sum of squares of what a normal plot shows; that of residuals over their own SD is N - k."""
+    if not basis.is_separate:
+        return basis.response.anova.within.ss
+    return Fraction(sum(level.n - 1 for level in basis.levels if level.sd and level.sd.sign))
 
 
 def _quantiles(positions: Sequence[Fraction]) -> list[float]:

@@ -5,7 +5,8 @@ from fractions import Fraction
 from assayfolio.findings import EquivalenceFamily, EquivalenceRow
 from assayfolio.report.basis import Basis
 from assayfolio.report.content import Block, FigureBlock, Heading, Paragraph, Section, TableBlock
-from assayfolio.report.families import across_words
+from assayfolio.report.equivalence_tests import tests_table
+from assayfolio.report.families import across_words, together_by_holm
 from assayfolio.report.interval_plots import Estimate, Measure, interval_plot, most_rows
 from assayfolio.report.methods import adjustment_words
 from assayfolio.report.notation import (
@@ -21,8 +22,10 @@ from assayfolio.report.tables import Column, Table, lay_out
 from assayfolio.report.wording import (
     BLANK,
     STANDING,
+    critical_words,
     interval_cells,
     limits_words,
+    missing_note,
     row_verdict,
 )
 
@@ -55,7 +58,7 @@ def confidence_of(family: EquivalenceFamily) -> str:
     """
     alpha = family.alpha
     if family.adjust == "bonferroni":
-        alpha /= len(family.rows)
+        alpha /= family.family_size
     if family.across_responses == "bonferroni":
         alpha /= family.responses
     return confidence(1 - alpha * (1 if is_non_inferiority(family) else 2))
@@ -98,6 +101,7 @@ def equivalence_section(basis: Basis, numbering: Numbering, accent: str) -> Sect
         blocks.append(Heading(prose("{name}", name=family.name), basis.anchor(f"equivalence-{number}")))
         blocks.append(Paragraph(_family_words(basis, family)))
         blocks.append(TableBlock(_family_table(basis, family, numbering)))
+        blocks.append(TableBlock(tests_table(basis, family, numbering)))
         blocks += _family_figure(basis, family, numbering, accent, number)
     if not basis.response.equivalence:
         number_of = str(basis.place(Part.NOT_REPORTED).number)
@@ -112,7 +116,7 @@ def _family_words(basis: Basis, family: EquivalenceFamily) -> Prose:
         source = prose("from {source}", source=family.margin_source)
     return prose(
         "#Margin# {margin}{of_mean}, {source}. "
-        + _how_tested(family)
+        + _how_tested(basis, family)
         + "; {standing}. "
         + _claim(family)
         + " is shown where "
@@ -138,14 +142,17 @@ def _deciding_p(family: EquivalenceFamily) -> str:
     return "*p*" if is_non_inferiority(family) else "the larger *p*"
 
 
-def _how_tested(family: EquivalenceFamily) -> str:
-    count = len(family.rows)
-    tests = "one one-sided *t* test" if is_non_inferiority(family) else "two one-sided *t* tests"
+def _how_tested(basis: Basis, family: EquivalenceFamily) -> str:
+    count = family.family_size
+    kind = "Welch *t*" if basis.is_separate else "*t*"
+    tests = f"one one-sided {kind} test" if is_non_inferiority(family) else f"two one-sided {kind} tests"
     if count == 1:
         words = f"One comparison, {tests}"
     else:
         name = adjustment_words(family.adjust).name
         adjusted = name if family.adjust == "none" else f"adjusted together by {name}"
+        if family.across_responses == "holm" and family.responses > 1:
+            return f"{count} comparisons, {tests} each, {together_by_holm(family.responses)}"
         words = f"{count} comparisons, {tests} each, {adjusted}"
     return words + across_words(family.responses, family.across_responses)
 
@@ -165,7 +172,7 @@ def _family_table(basis: Basis, family: EquivalenceFamily, numbering: Numbering)
         *([Column(prose("*p*, lower margin"))] if family.lower is not None else []),
         *([Column(prose("*p*, upper margin"))] if family.upper is not None else []),
         *([Column(prose("Adjusted *p*"))] if adjusted else []),
-        Column("Within margin" if is_non_inferiority(family) else "Equivalence", kind="words"),
+        Column("Non-inferiority" if is_non_inferiority(family) else "Equivalence", kind="words"),
     ]
     largest = max((row.se for row in family.rows if row.se), key=lambda se: se.square, default=None)
     rows: list[list[Words]] = []
@@ -184,7 +191,17 @@ def _family_table(basis: Basis, family: EquivalenceFamily, numbering: Numbering)
         name=family.name,
         confidence=confidence_of(family),
     )
-    return lay_out(numbering.table(), caption, columns, rows, [_interval_note(family)])
+    notes = [_interval_note(family), *_critical_note(family), *missing_note(basis, family)]
+    return lay_out(numbering.table(), caption, columns, rows, notes)
+
+
+def _critical_note(family: EquivalenceFamily) -> list[Prose]:
+    """What the standard errors are multiplied by; none with percent margins, and not where rows differ."""
+    values = {(row.critical, row.df) for row in family.rows if row.critical is not None}
+    if len(values) != 1:
+        return []
+    ((critical, df),) = values
+    return [critical_words(critical, df, one_sided=is_non_inferiority(family))]
 
 
 def _probabilities(family: EquivalenceFamily, row: EquivalenceRow) -> list[Words]:

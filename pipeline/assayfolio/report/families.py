@@ -19,14 +19,17 @@ from assayfolio.report.numbering import Numbering, Part
 from assayfolio.report.prose import Prose, Words, joined, prose
 from assayfolio.report.tables import Column, Table, lay_out
 from assayfolio.report.wording import (
+    BLANK,
     STANDING,
     adjusted_p,
     alpha_words,
     counted,
+    critical_words,
     first_of,
     interval_cells,
     interval_kind,
     is_adjusted,
+    missing_note,
     row_verdict,
     significant_ends,
 )
@@ -66,17 +69,16 @@ def side_words(basis: Basis, family: ComparisonFamily) -> str:
 
 
 def _family_words(basis: Basis, family: ComparisonFamily) -> Prose:
-    count = len(family.rows)
-    values = {
+    count = family.family_size
+    values: dict[str, Words] = {
         "count": str(count),
         "side": side_words(basis, family),
         "adjusted": _how_adjusted(family),
-        "df": _df_words(family),
+        "df": _df_words(basis, family),
         "standing": STANDING,
     }
     if count == 1:
-        across = across_words(family.responses, family.across_responses)
-        pattern = f"One comparison, {{side}}{across}, {{df}}; {{standing}}."
+        pattern = f"One comparison, {{side}}{_how_one_is_adjusted(family)}, {{df}}; {{standing}}."
     else:
         pattern = "A family of {count} comparisons, {side}, {adjusted}, {df}; {standing}."
     verdict = prose(
@@ -89,14 +91,18 @@ def _family_words(basis: Basis, family: ComparisonFamily) -> Prose:
     return (*prose(pattern, **values), *verdict, *_trend_words(family), *_other_verdicts(basis, family))
 
 
-def _df_words(family: ComparisonFamily) -> str:
+def _df_words(basis: Basis, family: ComparisonFamily) -> Words:
     different = {row.df for row in family.rows}
     if len(different) > 1:
-        return "each with its own degrees of freedom"
-    df = different.pop()
-    if df == int(df):
-        return counted(int(df), "degree of freedom", "degrees of freedom")
-    return f"{degrees_of_freedom(df)} degrees of freedom"
+        words = "each with its own degrees of freedom"
+    else:
+        df = different.pop()
+        whole = df == int(df)
+        number = counted(int(df), "degree") if whole else f"{degrees_of_freedom(df)} degrees"
+        words = f"{number} of freedom"
+    if not basis.is_separate or family.adjust == "games-howell":
+        return words
+    return prose(f"by Welch’s *t* test{'s' if len(family.rows) > 1 else ''}, {words}")
 
 
 def _trend_words(family: ComparisonFamily) -> Prose:
@@ -116,6 +122,11 @@ def across_words(responses: int, how: str) -> str:
     if responses == 1:
         return ""
     return f", adjusted for {responses} responses by {ACROSS_NAMES.get(how, how)}"
+
+
+def together_by_holm(responses: int) -> str:
+    """How the comparisons of a family are adjusted where Holm takes those of all responses together."""
+    return f"adjusted together with those of all {responses} responses by Holm"
 
 
 def _other_verdicts(basis: Basis, family: ComparisonFamily) -> Prose:
@@ -139,6 +150,13 @@ def _other_verdicts(basis: Basis, family: ComparisonFamily) -> Prose:
     return prose(words, found=joined(found, "; "))
 
 
+def _how_one_is_adjusted(family: ComparisonFamily) -> str:
+    across = across_words(family.responses, family.across_responses)
+    if family.adjust == "none":
+        return across
+    return f", adjusted for every other contrast that could be asked by {adjustment_of(family).name}{across}"
+
+
 def _how_adjusted(family: ComparisonFamily) -> str:
     if family.adjust == "none":
         within = "not adjusted for their number"
@@ -147,7 +165,7 @@ def _how_adjusted(family: ComparisonFamily) -> str:
     if family.responses == 1:
         return within
     if family.across_responses == "holm":
-        return f"adjusted together with those of all {family.responses} responses by Holm"
+        return together_by_holm(family.responses)
     return within + across_words(family.responses, family.across_responses)
 
 
@@ -157,12 +175,14 @@ def _family_table(basis: Basis, family: ComparisonFamily, numbering: Numbering) 
     with_ci = is_single_step(family)
     adjusted = is_adjusted(family)
     different_df = len({row.df for row in family.rows}) > 1
+    own_c = len({row.critical for row in family.rows}) > 1
     columns = [
         Column("Trend" if is_trend else "Comparison", kind="text"),
         Column("Estimated coefficient" if is_trend else "Estimated difference", unit),
         *([Column("Interval, from", unit), Column("to", unit)] if with_ci else []),
         Column("Standard error", unit),
         *([Column("Degrees of freedom")] if different_df else []),
+        *([Column(prose("*c*"))] if own_c else []),
         Column(prose("*t*")),
         Column(prose("*p*")),
         *([Column(prose("Adjusted *p*"))] if adjusted else []),
@@ -178,6 +198,7 @@ def _family_table(basis: Basis, family: ComparisonFamily, numbering: Numbering) 
                 *(ends if with_ci else []),
                 se,
                 *([degrees_of_freedom(row.df)] if different_df else []),
+                *([BLANK if row.critical is None else statistic(row.critical)] if own_c else []),
                 statistic(row.statistic),
                 probability(row.p, basis.response.alpha),
                 *([adjusted_p(basis, row)] if adjusted else []),
@@ -210,11 +231,35 @@ def _trend_cells(rows: Sequence[ComparisonRow]) -> list[_Cells]:
 
 
 def _table_notes(basis: Basis, family: ComparisonFamily) -> list[Prose]:
+    return [*_critical_note(family), *_across_note(basis, family), *missing_note(basis, family)]
+
+
+def _critical_note(family: ComparisonFamily) -> list[Prose]:
+    """What standard errors are multiplied by for the intervals; where rows differ, what the column is."""
+    values = {row.critical for row in family.rows} - {None}
+    if not values:
+        return []
+    one = family.alternative != "two-sided"
+    if len(values) > 1:
+        return [critical_words(None, one_sided=one)]
+    different_df = {row.df for row in family.rows}
+    df = different_df.pop() if len(different_df) == 1 else None
+    return [critical_words(values.pop(), df, one_sided=one)]
+
+
+def _across_note(basis: Basis, family: ComparisonFamily) -> list[Prose]:
     if family.responses == 1 or not is_single_step(family):
         return []
+    if family.adjust == "none" and len(family.rows) > 1:
+        words = (
+            "The intervals of one comparison hold together over the {count} responses with {confidence}; "
+            "those of several comparisons do not."
+        )
+    else:
+        words = "The intervals hold together over the {count} responses with {confidence}."
     return [
         prose(
-            "The intervals hold together over the {count} responses with {confidence}.",
+            words,
             count=str(family.responses),
             confidence=percent(1 - basis.response.alpha),
         )

@@ -1,12 +1,12 @@
 """The figures on the data themselves, and what all figures share."""
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from fractions import Fraction
 
 from assayfolio.findings import Interval, LevelFindings
-from assayfolio.report.axes import Axis, make_axis
+from assayfolio.report.axes import Axis, Lettering, make_axis
 from assayfolio.report.basis import Basis
-from assayfolio.report.notation import MINUS, Scale, kept_together
+from assayfolio.report.notation import MINUS, Scale, decimal, kept_together
 from assayfolio.report.svg import INK, SECOND_INK, STRONG_LINE, THIN_LINE, Drawing
 from assayfolio.report.swarm import lanes, offsets
 from assayfolio.report.typeface import text_width, wrapped
@@ -50,10 +50,11 @@ def draw_axis(drawing: Drawing, axis: Axis, y: float, title: str, ends: tuple[fl
 
 
 def axis_title(axis: Axis, what: str, scale: Scale) -> str:
-    """`what`, less the origin that was taken off the labels, and its unit."""
+    """`what`, less the origin that was taken off the labels, and the unit that the labels count."""
     if axis.origin:
-        what = f"{what} {MINUS} {scale.mean(axis.origin).rstrip('0').rstrip('.')}"
-    return f"{what}, {scale.heading}" if scale.heading else what
+        what = f"{what} {MINUS} {decimal(axis.origin / Fraction(10) ** axis.power)}"
+    heading = replace(scale, power=axis.power).heading
+    return f"{what}, {heading}" if heading else what
 
 
 def draw_interval(
@@ -121,7 +122,8 @@ def _layout(basis: Basis, levels: tuple[LevelFindings, ...]) -> tuple[Axis, list
         start += 6 + text_width(f"n = {max(level.n for level in levels)}", 6.8)
     ends: list[Fraction] = [end for level in basis.levels for end in (level.minimum, level.maximum)]
     ends += [Fraction(end) for level in basis.levels if level.ci for end in level.ci if end is not None]
-    axis = make_axis(ends, start, FULL_WIDTH - 8, power=basis.scale.power)
+    lettering = Lettering(SIZE, 0, FULL_WIDTH)
+    axis = make_axis(ends, start, FULL_WIDTH - 8, power=basis.scale.power, lettering=lettering)
     return axis, [_row(basis, level, axis, column, len(levels)) for level in levels], column
 
 

@@ -5,7 +5,7 @@ from dataclasses import dataclass
 from fractions import Fraction
 
 from assayfolio.findings import Interval
-from assayfolio.report.axes import Axis, make_axis
+from assayfolio.report.axes import Axis, Lettering, make_axis
 from assayfolio.report.figures import (
     FULL_WIDTH,
     LINE,
@@ -99,7 +99,8 @@ def interval_plot(rows: Sequence[Estimate], measure: Measure, accent: str, name:
     drawing = Drawing(FULL_WIDTH, sum(heights) + 46)
     limits = [limit for limit in measure.margins or () if limit is not None]
     values = ends_of(rows) + limits
-    axis = make_axis(values, column + 16, right, include_zero=True, power=scale.power)
+    lettering = Lettering(SIZE, 0, FULL_WIDTH)
+    axis = make_axis(values, column + 16, right, include_zero=True, power=scale.power, lettering=lettering)
     bottom = _TOP + sum(heights) + 2
     if measure.margins is not None:
         draw_margins(drawing, axis, measure.margins, _TOP, bottom, accent)

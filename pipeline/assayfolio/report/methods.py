@@ -98,7 +98,8 @@ ADJUSTMENTS: dict[Adjustment, AdjustmentWords] = {
         "Dunnett, single-step: adjusted *p* = P(max |*T*_*i*_| ≥ |*t*|), where the *T*_*i*_ are jointly *t* "
         "distributed with *N* − *k* degrees of freedom and correlations *b*_*i*_ *b*_*j*_, *b*_*i*_ = "
         "√(*n*_*i*_ / (*n*_0_ + *n*_*i*_)), *n*_0_ at the reference; the interval uses the *c* with "
-        "P(max |*T*_*i*_| > *c*) = *α*. One-sided, the signs are kept.",
+        "P(max |*T*_*i*_| > *c*) = *α*. One-sided, with the signs kept: adjusted *p* = P(max *T*_*i*_ ≥ *t*) "
+        "and P(max *T*_*i*_ > *c*) = *α* (for “less” with the signs of all *t* turned).",
         ("dunnett1955", "dunnett1964"),
     ),
     "dunnett-step-down": AdjustmentWords(

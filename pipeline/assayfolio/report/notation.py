@@ -2,7 +2,8 @@
 
 The rules, in one place:
 
-* a mean has one decimal more than the data, a difference of means as many as a mean;
+* a mean has one decimal more than the data, a difference of means as many as a mean, yet none finer than
+  three digits of the smallest standard error of a level's mean;
 * a standard deviation or standard error has three significant digits;
 * F and t have three decimals;
 * p has four decimals from 0.001 upwards and two significant digits below, with more digits where it would
@@ -13,7 +14,7 @@ The rules, in one place:
 
 import re
 from collections.abc import Iterable
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from fractions import Fraction
 
 from assayfolio.exact import Exact, Root, magnitude, rounded_units
@@ -195,6 +196,16 @@ class Scale:
         places = min(limit, max(0, power - last_digit))
         whole = (unit or "").replace(" ", NO_BREAK)
         return Scale(whole, power, places, min(limit, max(0, power - last_digit + 1)))
+
+    def no_finer_than(self, uncertainty: Number) -> "Scale":
+        """The scale with means printed no finer than three digits of `uncertainty`, their standard error.
+
+        Recorded values keep their decimals: they are printed as they were typed.
+        """
+        if not _comparable(uncertainty):
+            return self
+        places = max(0, self._spread_places(uncertainty))
+        return replace(self, mean_places=min(self.mean_places, places))
 
     @property
     def heading(self) -> str:

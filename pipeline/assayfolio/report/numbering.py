@@ -51,7 +51,7 @@ class Outline:
         self._add((Part.NOT_REPORTED, Part.METHOD, Part.PROVENANCE, Part.LISTING), None)
 
     def _add(self, parts: Iterable[Part], response: int | None) -> None:
-        suffix = f"-{response + 1}" if response else ""
+        suffix = f"-of-{response + 1}" if response else ""
         for part in parts:
             place = SectionPlace(len(self._places) + 1, part.value + suffix)
             self._places[part, response] = place

@@ -16,6 +16,7 @@ TEST_NAMES = {
     "grubbs-double": "Grubbs, two values",
     "cochran": "Cochran, level variance",
 }
+_OF_MEANS = {"grubbs": "Grubbs, one level mean", "grubbs-double": "Grubbs, two level means"}
 _SHORT = {OUTLIER: "outlier", STRAGGLER: "straggler", NEITHER: "neither"}
 _STANDARD_NOTE = "nothing was removed; "
 _MOST_QUIET = 12
@@ -87,10 +88,10 @@ def _table(basis: Basis, found: Sequence[OutlierFindings], numbering: Numbering)
     ]
     rows: list[list[Words]] = [
         [
-            TEST_NAMES.get(one.test, one.test),
-            one.level,
+            _name(one),
+            ", ".join(one.levels) or one.level or BLANK,
             ", ".join(str(line) for line in one.lines) or BLANK,
-            ", ".join(basis.scale.value(value) for value in one.values) or BLANK,
+            _values(basis, one),
             _statistic(one),
             BLANK if one.straggler_limit is None else statistic(one.straggler_limit),
             BLANK if one.outlier_limit is None else statistic(one.outlier_limit),
@@ -104,10 +105,23 @@ def _table(basis: Basis, found: Sequence[OutlierFindings], numbering: Numbering)
     notes = []
     if any(one.test == "grubbs-double" for one in found):
         notes.append(
-            prose("For two values a statistic below its limit is the proposal; for the others one above.")
+            prose("For two values or means a statistic below its limit is the proposal; else one above.")
         )
     notes += [prose("{remark}", remark=remark) for remark in _remarks(found)]
     return lay_out(numbering.table(), caption, columns, rows, notes)
+
+
+def _name(found: OutlierFindings) -> str:
+    name = TEST_NAMES.get(found.test, found.test)
+    return _OF_MEANS.get(found.test, name) if found.about == "level means" else name
+
+
+def _values(basis: Basis, found: OutlierFindings) -> str:
+    """The values in question, or the level means where the test is about these."""
+    if found.about == "level means":
+        means = [level.mean for level in basis.levels if level.level in found.levels]
+        return ", ".join(map(basis.scale.mean, means)) or BLANK
+    return ", ".join(map(basis.scale.value, found.values)) or BLANK
 
 
 def _statistic(found: OutlierFindings) -> str:
@@ -122,7 +136,7 @@ def _remarks(found: Sequence[OutlierFindings]) -> list[str]:
     for one in found:
         remark = one.note.partition(_STANDARD_NOTE)[2]
         if remark:
-            levels.setdefault(remark, []).append(one.level)
+            levels.setdefault(remark, []).append(", ".join(one.levels) or one.level)
     return [f"{first_of(names, _MOST_REASONS, ', ')}: {remark}." for remark, names in levels.items()]
 
 
@@ -130,8 +144,8 @@ def _not_assessable(found: Sequence[OutlierFindings]) -> list[Block]:
     reasons: dict[str, list[str]] = {}
     for one in found:
         if one.statistic is None:
-            name = TEST_NAMES.get(one.test, one.test)
-            where = f"{name}: {one.level}" if one.level else name
+            names = ", ".join(one.levels) or one.level
+            where = f"{_name(one)}: {names}" if names else _name(one)
             reasons.setdefault(one.note, []).append(where)
     return [
         Paragraph(

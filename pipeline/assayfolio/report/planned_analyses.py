@@ -49,8 +49,10 @@ def planned_rows(bases: tuple[Basis, ...]) -> Rows:
         parts = "variance components" if basis.is_random else "repeatability"
         rows.append(["Precision", parts, _numbers(bases, Part.PRECISION)])
     if study.criteria:
-        count = counted(len(study.criteria), "limit")
         with_criteria = tuple(one for one in bases if one.criteria_plans)
+        plans = [plan for one in with_criteria for plan in one.criteria_plans]
+        limits = sum((plan.at_least is not None) + (plan.at_most is not None) for plan in plans)
+        count = counted(limits, "limit")
         rows.append(["Acceptance criteria", count, _numbers(with_criteria, Part.CRITERIA)])
     return rows
 

@@ -22,23 +22,37 @@ def _assumed(basis: Basis, power: PowerFindings) -> Prose:
     sizes = _by_level(power, power.replicates)
     words = prose(
         "From the plan alone, and never from the data: what a study of this size can show where the standard "
-        "deviation is {sigma} and the difference to be seen {difference}, at *α* = {alpha} and with these "
-        "numbers of values: {sizes}. The target is a power of {target}.",
+        "deviation is {sigma} and the difference to be seen {difference}, at *α* = {alpha}{divided} and with "
+        "these numbers of values: {sizes}. The target is a power of {target}.",
         sigma=with_unit(decimal(power.sigma), power.unit),
         difference=with_unit(decimal(power.difference), power.unit),
         alpha=decimal(power.alpha),
+        divided=_divided(basis),
         sizes=sizes,
         target=percent(power.target),
     )
     more = []
     if basis.several:
         more.append(f" It is about {power.response}.")
-    if basis.study.equivalence:
+    if any(map(is_on_equivalence, power.rows)):
         true = with_unit(decimal(power.true_difference), power.unit)
         more.append(f" For equivalence the true difference is taken as {true}.")
     if power.allocation == "control":
         more.append(" Numbers sought give the reference √(k − 1) times as many values as each other level.")
     return (*words, *(span for text in more for span in prose("{text}", text=text)))
+
+
+def is_on_equivalence(row: PowerRow) -> bool:
+    """Whether a row is about equivalence or non-inferiority, by the standard name of its procedure."""
+    return "one-sided t test" in row.method
+
+
+def _divided(basis: Basis) -> str:
+    """Why alpha is not that of the plan; empty where it is."""
+    if basis.study.design.across_responses == "none":
+        return ""
+    count = len(basis.study.data.response)
+    return f" (that of the plan, {decimal(basis.study.alpha)}, divided by the number of responses, {count})"
 
 
 def _table(power: PowerFindings, numbering: Numbering) -> Table:
@@ -90,8 +104,9 @@ def _notes(power: PowerFindings) -> list[Prose]:
     notes = [
         prose(
             "Detectable: the smallest difference with the target power at the planned numbers. Half-width: "
-            "of the interval where the standard deviation found equals the one assumed. A dash: not defined, "
-            "or out of the range that was searched."
+            "of the interval where the standard deviation found equals the one assumed; of a one-sided "
+            "question the distance to its bound. A dash: not defined (a stepwise method has no interval), or "
+            "out of the range that was searched."
         )
     ]
     odd = {_odd_one(row.n_for_target) for row in power.rows if row.n_for_target} - {None}

@@ -22,6 +22,12 @@ from assayfolio.report.wording import (
     with_unit,
 )
 
+_TOTAL_NAMED = {
+    "intermediate precision": "within one laboratory the total is the intermediate precision",
+    "reproducibility": "between laboratories the total is the reproducibility",
+}
+_TOTAL_WITHOUT_NAME = "it is called no more than that, as the plan states no conditions to name it by"
+
 
 def precision_section(basis: Basis, numbering: Numbering) -> Section:
     """The components of the spread, their limits, and the grand mean with its uncertainty."""
@@ -53,18 +59,16 @@ def _what_varied(basis: Basis, found: PrecisionFindings) -> Prose:
             "within a level, pooled over the levels. Nothing is said about the spread between levels not in "
             "this study."
         )
-    varied = f"{found.varied} varied" if found.varied else "the conditions of the level varied"
-    named = {
-        "intermediate precision": "within one laboratory the total is the intermediate precision",
-        "reproducibility": "between laboratories the total is the reproducibility",
-    }.get(total_words(found), "the plan gives the total no other name")
+    varied = ""
+    if found.varied and found.varied.casefold() != basis.factor.casefold():
+        varied = f" What varied from level to level, by the plan: {found.varied}."
     return prose(
-        "Values at one level repeat the measurement; from level to level of {factor}, {varied}: {named}. The "
-        "levels count as a sample of those that could have been chosen, and values and levels as normally "
-        "distributed.",
+        "Values at one level of {factor} repeat the measurement.{varied} The spread within levels and that "
+        "between them together make up the total; {named}. The levels count as a sample of those that could "
+        "have been chosen, and values and levels as normally distributed.",
         factor=basis.factor,
         varied=varied,
-        named=named,
+        named=_TOTAL_NAMED.get(total_words(found), _TOTAL_WITHOUT_NAME),
     )
 
 
@@ -102,7 +106,7 @@ def _table(basis: Basis, found: PrecisionFindings, numbering: Numbering) -> Tabl
         )
     ]
     if found.between_sd is not None:
-        rows.append(row("Between levels", found.between_sd, None, found.between_rsd, None))
+        rows.append(row("Between levels", found.between_sd, found.between_sd_ci, found.between_rsd, None))
     if found.total_sd is not None:
         rows.append(
             row(
@@ -118,7 +122,7 @@ def _table(basis: Basis, found: PrecisionFindings, numbering: Numbering) -> Tabl
         response=basis.response.response,
         confidence=percent(found.confidence),
     )
-    return lay_out(numbering.table(), caption, columns, rows, [_table_note(found)])
+    return lay_out(numbering.table(), caption, columns, rows, [_table_note(basis, found)])
 
 
 def _spread_ends(scale: Scale, ci: Interval | None, largest: Root) -> list[str]:
@@ -127,17 +131,29 @@ def _spread_ends(scale: Scale, ci: Interval | None, largest: Root) -> list[str]:
     return [scale.spread(ci[0], largest), scale.spread(ci[1], largest)]
 
 
-def _table_note(found: PrecisionFindings) -> Prose:
+def _table_note(basis: Basis, found: PrecisionFindings) -> Prose:
     note = (
-        "Relative: in percent of the grand mean. Limit: 2.8 times the standard deviation, which two values "
+        "Relative: in percent of {base}. Limit: 2.8 times the standard deviation (1.96 √2, rounded as is "
+        "common), which two values "
     )
+    base = _base_words(basis, found)
     if found.total_sd is None:
-        return prose(note + "from one level are expected not to exceed in 95 % of cases.")
+        return prose(note + "from one level are expected not to exceed in 95 % of cases.", base=base)
     return prose(
         note
         + "from one level (first row), or from two levels (last row), are expected not to exceed in 95 % "
-        "of cases."
+        "of cases.",
+        base=base,
     )
+
+
+def _base_words(basis: Basis, found: PrecisionFindings) -> str:
+    """What relative standard deviations are in percent of, with its value."""
+    name = [found.relative_to or "grand mean"]
+    if found.relative_mean is not None:
+        name.append(basis.scale.with_unit(basis.scale.mean(found.relative_mean)))
+    listed = ", ".join(name)
+    return f"the {listed}" if found.mean is None else f"the stated grand mean ({listed})"
 
 
 def _entries(basis: Basis, found: PrecisionFindings) -> list[Entry]:
@@ -147,16 +163,18 @@ def _entries(basis: Basis, found: PrecisionFindings) -> list[Entry]:
         raw = with_unit(three_digits(found.between_variance_raw), unit)
         kept = "; negative, so kept here and reported as 0 above" if found.between_variance_raw < 0 else ""
         entries.append(Entry(prose("Between-level variance"), prose("{raw}, as estimated" + kept, raw=raw)))
+    if found.between_sd is not None:
+        entries.append(Entry(prose("Interval between levels"), _between_interval(found)))
     if found.interval_method is not None:
         how = found.interval_method.replace("Graybill-Wang", "Graybill and Wang")
         how = how.replace("n0 in the place of n", "*n*_0_ in the place of *n*")
-        entries.append(Entry(prose("Interval of the total"), prose(how)))
+        entries.append(Entry(prose("Interval of the total"), prose(how + "; this is the one reported")))
     if found.total_sd_ci_satterthwaite is not None and found.total_df is not None:
         entries.append(
             Entry(
                 prose("Second interval"),
                 prose(
-                    "{interval}, by Satterthwaite with {df} degrees of freedom",
+                    "{interval}, by Satterthwaite with {df} degrees of freedom, for comparison",
                     interval=significant_interval(found.total_sd_ci_satterthwaite, basis.response.unit),
                     df=degrees_of_freedom(found.total_df),
                 ),
@@ -168,6 +186,14 @@ def _entries(basis: Basis, found: PrecisionFindings) -> list[Entry]:
     if found.icc is not None:
         entries.append(Entry(prose("Intraclass correlation"), _icc(found)))
     return entries
+
+
+def _between_interval(found: PrecisionFindings) -> Prose:
+    if found.between_interval_method is None:
+        return prose("none, as all values are equal")
+    how = found.between_interval_method.replace("Williams-Tukey", "Williams and Tukey")
+    how = how.replace("Thomas-Hultquist", "Thomas and Hultquist").replace("mean of n", "mean of the *n*_*i*_")
+    return prose(how + "; an end below zero is given as 0")
 
 
 def _icc(found: PrecisionFindings) -> Prose:

@@ -124,6 +124,10 @@ REFERENCES: dict[str, str] = {
         "S. S. Shapiro and M. B. Wilk, An analysis of variance test for normality (complete samples), "
         "Biometrika 52 (1965) 591–611."
     ),
+    "wilk-shapiro-joined": (
+        "M. B. Wilk and S. S. Shapiro, The joint assessment of normality of several independent samples, "
+        "Technometrics 10 (1968) 825–839."
+    ),
     "royston": (
         "P. Royston, Remark AS R94: a remark on algorithm AS 181, Applied Statistics 44 (1995) 547–551."
     ),
@@ -152,6 +156,14 @@ REFERENCES: dict[str, str] = {
         "Basic method for the determination of repeatability and reproducibility of a standard measurement "
         "method."
     ),
+    "williams": (
+        "J. S. Williams, A confidence interval for variance components, Biometrika 49 (1962) 278–281."
+    ),
+    "tukey1951": "J. W. Tukey, Components in regression, Biometrics 7 (1951) 33–69.",
+    "thomas-hultquist": (
+        "J. D. Thomas and R. A. Hultquist, Interval estimation for the unbalanced case of the one-way random "
+        "effects model, The Annals of Statistics 6 (1978) 582–587."
+    ),
     "graybill-wang": (
         "F. A. Graybill and C.-M. Wang, Confidence intervals on nonnegative linear combinations of "
         "variances, Journal of the American Statistical Association 75 (1980) 869–873."
@@ -167,6 +179,10 @@ REFERENCES: dict[str, str] = {
     "gum": (
         "JCGM 100:2008, Evaluation of measurement data – Guide to the expression of uncertainty in "
         "measurement (GUM), annex H.5: Analysis of variance."
+    ),
+    "ramsey": (
+        "P. H. Ramsey, Power differences between pairwise multiple comparisons, Journal of the American "
+        "Statistical Association 73 (1978) 479–485."
     ),
     "phillips": (
         "K. F. Phillips, Power of the two one-sided tests procedure in bioequivalence, Journal of "

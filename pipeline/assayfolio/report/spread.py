@@ -3,7 +3,7 @@
 from assayfolio.findings import SpreadFindings
 from assayfolio.report.basis import Basis
 from assayfolio.report.content import Block, Paragraph, Section, TableBlock
-from assayfolio.report.families import across_words
+from assayfolio.report.families import across_words, together_by_holm
 from assayfolio.report.methods import adjustment_words
 from assayfolio.report.notation import confidence, probability, three_digits
 from assayfolio.report.numbering import Numbering, Part
@@ -18,15 +18,13 @@ def spread_section(basis: Basis, numbering: Numbering) -> Section:
     spread = basis.response.spread
     if spread is None:
         why = "The variances cannot be compared; section {number} gives the reason."
-        blocks: tuple[Block, ...] = (
-            Paragraph(prose(why, number=str(basis.place(Part.NOT_REPORTED).number))),
-        )
+        number = str(basis.place(Part.NOT_REPORTED).number)
+        blocks: list[Block] = [Paragraph(prose(why, number=number))]
     else:
-        blocks = (
-            Paragraph(_words(basis, spread)),
-            TableBlock(_table(basis, spread, numbering)),
-        )
-    return Section(place.anchor, place.number, basis.title("Spread"), blocks)
+        blocks = [Paragraph(_words(basis, spread)), TableBlock(_table(basis, spread, numbering))]
+    words = "The standard deviation of each level, with its interval, stands in section {number}."
+    blocks.append(Paragraph(prose(words, number=str(basis.place(Part.DATA).number)), "note"))
+    return Section(place.anchor, place.number, basis.title("Spread"), tuple(blocks))
 
 
 def _words(basis: Basis, spread: SpreadFindings) -> Prose:
@@ -34,7 +32,10 @@ def _words(basis: Basis, spread: SpreadFindings) -> Prose:
     if len(spread.rows) > 1:
         name = adjustment_words(spread.adjust).name
         tests = f"*F* tests, {name if spread.adjust == 'none' else f'adjusted together by {name}'}"
-    tests += across_words(spread.responses, spread.across_responses)
+    if len(spread.rows) > 1 and spread.responses > 1 and spread.across_responses == "holm":
+        tests = f"*F* tests, {together_by_holm(spread.responses)}"
+    else:
+        tests += across_words(spread.responses, spread.across_responses)
     kind = "the adjusted *p*" if is_adjusted_spread(spread) else "*p*"
     return prose(
         "An imprecise method can have the right mean, so the variances have their own question: each against "

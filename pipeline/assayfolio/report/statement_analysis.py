@@ -4,6 +4,11 @@ from assayfolio.report.basis import Basis
 from assayfolio.report.content import Block
 from assayfolio.report.statement_parts import Method, formula, sentences
 
+_DEVIATION = formula(
+    "Interval for the standard deviation of a level",
+    "*s*_*i*_ √((*n*_*i*_ − 1) / *χ*²), the points of *χ*² on *n*_*i*_ − 1 degrees of freedom",
+)
+
 
 def analysis_method(bases: tuple[Basis, ...]) -> Method:
     """Sums of squares, F, intervals of means; Welch's F and F* where variances are separate."""
@@ -34,7 +39,7 @@ def analysis_method(bases: tuple[Basis, ...]) -> Method:
         mean = formula(
             "Interval for the mean of a level", "*ȳ*_*i*_ ± *t*_1−*α*/2; *N*−*k*_ ", ("*s*", "√*n*_*i*_")
         )
-        return Method("Analysis of variance", (*blocks, mean), ())
+        return Method("Analysis of variance", (*blocks, mean, _DEVIATION), ())
     blocks.append(
         formula(
             "Interval for the mean of a level",
@@ -43,6 +48,7 @@ def analysis_method(bases: tuple[Basis, ...]) -> Method:
             ", *s*_*i*_² the variance of the values at level *i*",
         )
     )
+    blocks.append(_DEVIATION)
     blocks += _separate_variances()
     references = ("welch1951", "brown-forsythe-means", "mehrotra", "satterthwaite")
     return Method("Analysis of variance", tuple(blocks), references)

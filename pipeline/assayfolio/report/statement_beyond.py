@@ -5,8 +5,22 @@ from collections.abc import Iterable
 from assayfolio.report.basis import Basis
 from assayfolio.report.content import Block, Formula
 from assayfolio.report.methods import ADJUSTMENTS
+from assayfolio.report.planned_power import is_on_equivalence
 from assayfolio.report.statement_parts import Method, formula, sentences
 from assayfolio.study.plan import EquivalencePlan
+
+_HOLM = (
+    "Holm over the *m* {rows}: the adjusted *p* in place *i* of the rising order is the largest of min(1, "
+    "(*m* − *j* + 1) × *p*_(*j*)_) over *j* ≤ *i*; the intervals are each for its own {row}."
+)
+_BONFERRONI = (
+    "Bonferroni over the *m* {rows}: *p* is multiplied by *m*, at most 1, and the interval uses *α*/*m*."
+)
+_RATIOS_ADJUSTED = {
+    "none": "No adjustment for the number of ratios: each test has the level *α* by itself.",
+    "bonferroni": _BONFERRONI.format(rows="ratios"),
+    "holm": _HOLM.format(rows="ratios", row="ratio"),
+}
 
 
 def equivalence_method(bases: tuple[Basis, ...]) -> Method | None:
@@ -51,10 +65,38 @@ def _margins_in_percent(*, separate: bool) -> list[Block]:
             ("*ȳ*_X_ − (1 + *θ*/100) *ȳ*_R_", "√(*v*_X_ + (1 + *θ*/100)² *v*_R_)"),
             f", {error}, likewise *v*_R_",
         ),
+        *(_fieller_separate() if separate else [_fieller_pooled()]),
         sentences(
             "The interval in percent is Fieller’s for the ratio of the two means; it does not exist where "
             "the reference mean cannot be told from zero, and such a family is not reported. The estimate is "
-            "100 (*ȳ*_X_ / *ȳ*_R_ − 1).",
+            "100 (*ȳ*_X_ / *ȳ*_R_ − 1). Each of the two tests has its own *t* and standard error, as the "
+            "denominator depends on *θ*; with a negative reference mean both are turned round.",
+        ),
+    ]
+
+
+def _fieller_pooled() -> Formula:
+    return formula(
+        "Fieller’s limits of the ratio, *r* = *ȳ*_X_ / *ȳ*_R_, *t* = *t*_1−*α*;\u00a0*N*−*k*_",
+        "100 × (",
+        ("*r* ± (*t* / |*ȳ*_R_|) √((1 − *g*) *v*_X_ + *r*² *v*_R_)", "1 − *g*"),
+        " − 1), *g* = *t*² *v*_R_ / *ȳ*_R_² < 1",
+    )
+
+
+def _fieller_separate() -> list[Block]:
+    return [
+        formula(
+            "its degrees of freedom, *q* = 1 + *θ*/100",
+            "*ν*(*q*) = ",
+            (
+                "(*v*_X_ + *q*² *v*_R_)²",
+                "*v*_X_² / (*n*_X_ − 1) + *q*⁴ *v*_R_² / (*n*_R_ − 1)",
+            ),
+        ),
+        formula(
+            "Fieller’s limits of the ratio: 100 (*q* − 1) for the two *q* with",
+            "|*ȳ*_X_ − *q* *ȳ*_R_| = *t*_1−*α*;\u00a0*ν*(*q*)_ √(*v*_X_ + *q*² *v*_R_)",
         ),
     ]
 
@@ -74,16 +116,9 @@ def _rules(plans: Iterable[EquivalencePlan]) -> list[str]:
         )
     used = {plan.adjust for plan in plans}
     if "bonferroni" in used:
-        rules.append(
-            "Bonferroni over the *m* comparisons of a family: *p* is multiplied by *m*, at most 1, and the "
-            "interval uses *α*/*m*."
-        )
+        rules.append(_BONFERRONI.format(rows="comparisons of a family"))
     if "holm" in used:
-        rules.append(
-            "Holm over the *m* comparisons of a family: the adjusted *p* in place *i* of the rising order is "
-            "the largest of min(1, (*m* − *j* + 1) × *p*_(*j*)_) over *j* ≤ *i*; the intervals are each for "
-            "its own comparison."
-        )
+        rules.append(_HOLM.format(rows="comparisons of a family", row="comparison"))
     rules.append("Each family keeps its own error rate, and none is kept together with tests of differences.")
     return rules
 
@@ -104,9 +139,8 @@ def spread_method(bases: tuple[Basis, ...]) -> Method | None:
         ),
         sentences(
             "*p* is twice the smaller tail of the *F* distribution with *n*_X_ − 1 and *n*_R_ − 1 degrees of "
-            "freedom, at most 1; adjusted over the levels by "
-            f"{ADJUSTMENTS[plan.adjust].name}. The interval of a level’s standard deviation is the "
-            "chi-square interval with *n*_*i*_ − 1 degrees of freedom. Both assume normal errors.",
+            "freedom, at most 1. Both the test and its interval assume normal errors.",
+            _RATIOS_ADJUSTED[plan.adjust],
         ),
     )
     return Method("Spread", blocks, ADJUSTMENTS[plan.adjust].references)
@@ -140,23 +174,43 @@ def power_method(bases: tuple[Basis, ...]) -> Method | None:
     power = bases[0].content.findings.power
     if power is None:
         return None
-    rules = [
-        (
-            "*F* test: noncentral *F* with *λ* = ∑_*i*_ *n*_*i*_ (*μ*_*i*_ − *μ̄*)² / *σ*², where two "
-            "extreme levels differ by the difference to be seen, and the others lie midway."
-        ),
-        (
-            "Comparison or contrast: noncentral *t* with noncentrality *d* / (*σ* √(∑_*i*_ *w*_*i*_² / "
-            "*n*_*i*_)). Over a family the chance is that of the row stated, under the family’s own critical "
-            "value."
-        ),
+    of_families = len({row.question for row in power.rows}) < len(power.rows)
+    parts = [
+        (_POWER_F, "cohen"),
+        (_POWER_T, None),
+        *([(_POWER_FAMILY, "ramsey")] if of_families else []),
+        *([(_POWER_EQUIVALENCE, "phillips")] if any(map(is_on_equivalence, power.rows)) else []),
+        (_POWER_WIDTH, None),
+        *([(_POWER_CONTROL, "dunnett1955")] if power.allocation == "control" else []),
+        (_POWER_NOT_AFTER, None),
     ]
-    keys = ["cohen"]
-    if bases[0].study.equivalence:
-        rules.append(
-            "Equivalence: the chance that both one-sided tests show it at the true difference stated, by "
-            "integration over the distribution of *s*; it is not the sum of two tails."
-        )
-        keys.append("phillips")
-    rules.append("Nothing here was computed from the data: a power from the data would only restate *p*.")
-    return Method("Power of the plan", (sentences(*rules),), tuple(keys))
+    rules = [rule for rule, _ in parts]
+    return Method("Power of the plan", (sentences(*rules),), tuple(key for _, key in parts if key))
+
+
+_POWER_F = (
+    "*F* test: noncentral *F* with *λ* = ∑_*i*_ *n*_*i*_ (*μ*_*i*_ − *μ̄*)² / *σ*², where two extreme levels "
+    "differ by the difference to be seen, and the others lie midway. With unequal *n* the extremes are the "
+    "two levels that make the power smallest."
+)
+_POWER_T = (
+    "Comparison or contrast: noncentral *t* with noncentrality *d* / (*σ* √(∑_*i*_ *w*_*i*_² / *n*_*i*_)). "
+    "Over a family the chance is that of the row stated, under the family’s own critical value."
+)
+_POWER_FAMILY = (
+    "The chance of at least one, or of every, pair or level that differs (any-pair and all-pairs power): by "
+    "integration over the level means and *s*, under the family’s own critical value."
+)
+_POWER_EQUIVALENCE = (
+    "Equivalence: the chance that both one-sided tests show it at the true difference stated, by integration "
+    "over the distribution of *s*; it is not the sum of two tails."
+)
+_POWER_WIDTH = (
+    "Half-width of an interval: *c* *σ* √(∑_*i*_ *w*_*i*_² / *n*_*i*_), *c* the critical value of the "
+    "comparison; of a one-sided question it is the distance from the estimate to the bound."
+)
+_POWER_CONTROL = (
+    "Numbers sought give the reference √(*k* − 1) times the values of each other level, rounded up: for a "
+    "given total this makes the variances of the differences from it smallest (Dunnett)."
+)
+_POWER_NOT_AFTER = "Nothing here was computed from the data: a power from the data would only restate *p*."

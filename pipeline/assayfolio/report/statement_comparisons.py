@@ -32,21 +32,26 @@ def comparisons_method(bases: tuple[Basis, ...]) -> Method | None:
             )
         )
     )
-    if any(family.alternative != "two-sided" for family in families):
-        blocks.append(
-            Paragraph(
-                prose(
-                    "In a one-sided family *p* is the tail on the side asked for, *c* uses *α* in place of "
-                    "*α*/2, and the interval is open on the other side."
-                )
-            )
-        )
+    one_sided = {family.adjust for family in families if family.alternative != "two-sided"}
+    if one_sided:
+        blocks.append(Paragraph(prose(_one_sided(one_sided))))
     return Method("Comparisons", tuple(blocks), tuple(references))
 
 
 def _methods(families: list[ComparisonFamily]) -> list[AdjustmentWords]:
     seen = {family.adjust: adjustment_of(family) for family in families}
     return list(seen.values())
+
+
+def _one_sided(adjusts: set[str]) -> str:
+    words = "In a one-sided family *p* is the tail on the side asked for"
+    points = {"none", "bonferroni", "sidak"} & adjusts
+    if points:
+        words += ", *c* uses *α* in place of *α*/2"
+    words += ", and the interval is open on the other side."
+    if "dunnett" in adjusts:
+        words += " With Dunnett’s method *c* is the point of max *T*_*i*_ at *α*, as stated there."
+    return words
 
 
 def _pooled() -> list[Block]:

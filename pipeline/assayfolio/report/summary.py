@@ -1,7 +1,12 @@
-"""The lines under the answers: data, checks, outlier proposals, deviations, and what is not reported."""
+"""The lines under the answers: data, criteria, checks, outlier proposals, deviations, what is not reported.
 
+Here the first page says what must not be missed, wherever the card of the question itself stands.
+"""
+
+from assayfolio.findings import CRITERION_MET, NOT_ASSESSABLE, CheckFindings
 from assayfolio.report.basis import Basis
 from assayfolio.report.content import SummaryLine
+from assayfolio.report.criteria import criteria_count, criterion_phrase
 from assayfolio.report.numbering import Part
 from assayfolio.report.outliers import proposals_words
 from assayfolio.report.prose import Prose, joined, prose
@@ -10,6 +15,7 @@ from assayfolio.report.wording import (
     counted,
     departs,
     first_of,
+    is_unassumed,
     p_words,
     short_check_name,
     spread_of,
@@ -24,20 +30,57 @@ _MOST_NAMED = 3
 def summary(bases: tuple[Basis, ...]) -> tuple[SummaryLine, ...]:
     """One line each for data, checks, deviations; for proposals and gaps where the report has them."""
     first = bases[0]
-    unreported = len(first.content.findings.not_reported)
-    lines = [
-        _line(first, "Data", _data_words(bases), Part.DATA),
-        _line(first, "Checks", _checks_words(bases), Part.CHECKS),
-    ]
+    lines = [_line(first, "Data", _data_words(bases), Part.DATA)]
+    with_criteria = [basis for basis in bases if basis.response.criteria]
+    if with_criteria:
+        place = _first_of_interest(with_criteria)
+        lines.append(_line(place, "Criteria", _criteria_words(with_criteria), Part.CRITERIA))
+    lines.append(_line(first, "Checks", _checks_words(bases), Part.CHECKS))
     if first.outline.has(Part.OUTLIERS):
         lines.append(_line(first, "Outliers", _proposals_words(bases), Part.OUTLIERS))
     lines.append(_line(first, "Deviations", prose(_NO_DEVIATIONS), Part.PLAN))
-    if unreported:
-        words = prose(
-            "{count} asked for and not reported, with the reason", count=counted(unreported, "result")
-        )
-        lines.append(_line(first, "Not reported", words, Part.NOT_REPORTED))
+    if first.content.findings.not_reported:
+        lines.append(_line(first, "Not reported", _unreported_words(first), Part.NOT_REPORTED))
     return tuple(lines)
+
+
+def _first_of_interest(bases: list[Basis]) -> Basis:
+    """The first response with a criterion that is not met or not assessable, else the first of all."""
+    for basis in bases:
+        if any(one.verdict != CRITERION_MET for one in basis.response.criteria):
+            return basis
+    return bases[0]
+
+
+def _criteria_words(bases: list[Basis]) -> Prose:
+    """How many limits are not met or not assessable, and which."""
+    found = [(basis, one) for basis in bases for one in basis.response.criteria]
+    count = criteria_count([one for _, one in found])
+    amiss = [pair for pair in found if pair[1].verdict != CRITERION_MET]
+    if not amiss:
+        return prose("{count}", count=count)
+    amiss.sort(key=lambda pair: pair[1].verdict == NOT_ASSESSABLE)
+    named = [criterion_phrase(basis, one) for basis, one in amiss[:_MOST_NAMED]]
+    rest = len(amiss) - len(named)
+    return prose(
+        "#{count}#: {named}{more}",
+        count=count,
+        named=joined(named, "; "),
+        more=f"; and {rest} more" if rest else "",
+    )
+
+
+def _unreported_words(basis: Basis) -> Prose:
+    missing = basis.content.findings.not_reported
+    names = [
+        f"{item.response}, {item.what}" if basis.several and item.response is not None else item.what
+        for item in missing
+    ]
+    return prose(
+        "{count} asked for and not reported, with the reason: {names}",
+        count=counted(len(missing), "result"),
+        names=first_of(names, _MOST_NAMED, "; "),
+    )
 
 
 def _line(basis: Basis, what: str, words: Prose, part: Part) -> SummaryLine:
@@ -60,7 +103,7 @@ def _data_words(bases: tuple[Basis, ...]) -> Prose:
     pooled: list[Prose] = []
     for one in bases:
         residual = one.response.anova.residual_sd
-        if residual is not None and residual.sign:
+        if residual is not None and residual.sign and not one.is_separate:
             of = f" of {one.response.response}" if one.several else ""
             pooled.append(prose("residual SD{of} {sd}", of=of, sd=spread_of(one.difference_scale, residual)))
     return prose(
@@ -77,6 +120,13 @@ def _checks_words(bases: tuple[Basis, ...]) -> Prose:
     all_checks = [(basis, check) for basis in bases for check in basis.response.checks]
     if not all_checks:
         return prose("none planned; residual plots are shown")
+    words = _what_checks_found(bases, all_checks)
+    if any(is_unassumed(basis, check) for basis, check in all_checks):
+        words += prose("; equal variances are not assumed")
+    return words
+
+
+def _what_checks_found(bases: tuple[Basis, ...], all_checks: list[tuple[Basis, CheckFindings]]) -> Prose:
     if len(all_checks) <= _FEW_CHECKS and len(bases) == 1:
         return joined([check_words(basis, check) for basis, check in all_checks], "; ")
     departures = [

@@ -1,5 +1,6 @@
 """Tables with their layout worked out: widths from content, figures on the decimal point."""
 
+import re
 from collections.abc import Sequence
 from dataclasses import dataclass
 from typing import Literal
@@ -14,12 +15,13 @@ _GAP = 3.4
 _EASY_TEXT = 34.0
 _LEAST_TEXT = 24.0
 _NARROWEST = 12.0
+_MOST_SPARED = 36.0
 _COMFORTABLE = 7.5
 _COMFORTABLE_SIZES = (8.4, 8.0, 7.6)
 _UNBROKEN_SIZES = (*_COMFORTABLE_SIZES, 7.2)
 _SMALL_SIZES = (7.2, 6.8, 6.4, 6.0, 5.6)
 _ZEBRA_FROM = 9
-UNBROKEN_TO = 12
+UNBROKEN_TO = 5
 
 Kind = Literal["text", "number", "words"]
 
@@ -127,22 +129,40 @@ def _widths(columns: Sequence[Column], rows: Sequence[Sequence[Words]]) -> tuple
         if wanted <= room:
             return size, widths
         if room >= least * len(texts) or (size, least) == crowded[-1]:
-            for index, width in zip(texts, _shared(room, [widths[index] for index in texts]), strict=True):
+            words = [_least(columns[index], [row[index] for row in rows], size) for index in texts]
+            shares = _shared(room, [widths[index] for index in texts], words)
+            for index, width in zip(texts, shares, strict=True):
                 widths[index] = width
             return size, widths
     raise AssertionError("the last choice is always taken")
 
 
-def _shared(room: float, wanted: list[float]) -> list[float]:
-    """`room` shared in proportion to what is wanted, none narrower than the narrowest, as far as it goes."""
-    narrow = [width * room / sum(wanted) < _NARROWEST for width in wanted]
-    rest = room - _NARROWEST * sum(narrow)
-    wide = sum(width for width, is_narrow in zip(wanted, narrow, strict=True) if not is_narrow)
-    if not wide or rest <= 0:
-        return [max(1.0, room / len(wanted))] * len(wanted)
+def _least(column: Column, cells: Sequence[Words], size: float) -> float:
+    """The width below which a text column breaks words, gap included; very long words are not spared."""
+    words = [word for cell in cells for word in re.split(r"[ \-–]", plain(cell))]
+    widest = max((text_width(word, size) for word in words), default=0.0)
+    head = _word_width(column.head, column.kind, size * _HEAD)
+    return min(_MOST_SPARED, max(_NARROWEST, (max(widest, head) + 6.0) / POINTS_PER_MM + _GAP))
+
+
+def _shared(room: float, wanted: list[float], least: list[float]) -> list[float]:
+    """`room` shared in proportion to what is wanted, none narrower than its least, as far as it goes."""
+    narrow = [False] * len(wanted)
+    while True:
+        rest = room - sum(width for width, is_narrow in zip(least, narrow, strict=True) if is_narrow)
+        wide = sum(width for width, is_narrow in zip(wanted, narrow, strict=True) if not is_narrow)
+        if not wide or rest <= 0:
+            return [max(1.0, room / len(wanted))] * len(wanted)
+        now = [
+            is_narrow or width * rest / wide < at_least
+            for width, is_narrow, at_least in zip(wanted, narrow, least, strict=True)
+        ]
+        if now == narrow:
+            break
+        narrow = now
     return [
-        _NARROWEST if is_narrow else width * rest / wide
-        for width, is_narrow in zip(wanted, narrow, strict=True)
+        at_least if is_narrow else width * rest / wide
+        for width, is_narrow, at_least in zip(wanted, narrow, least, strict=True)
     ]
 
 

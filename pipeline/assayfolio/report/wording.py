@@ -3,6 +3,7 @@
 import re
 from collections.abc import Sequence
 from fractions import Fraction
+from typing import Protocol
 
 from assayfolio.findings import (
     DIFFERENCE_NOT_SHOWN,
@@ -25,10 +26,13 @@ from assayfolio.report.notation import (
     Scale,
     confidence,
     decimal,
+    degrees_of_freedom,
     equals,
     probability,
+    statistic,
     three_digits,
 )
+from assayfolio.report.numbering import Part
 from assayfolio.report.prose import Prose, prose
 
 NOT_REGISTERED = "not pre-registered"
@@ -123,9 +127,64 @@ def is_adjusted(family: ComparisonFamily) -> bool:
 def interval_kind(basis: Basis, family: ComparisonFamily) -> str:
     """The kind of interval: "simultaneous 95 % interval", or "individual" where nothing was adjusted."""
     level = confidence(1 - basis.response.alpha / family.responses)
-    if len(family.rows) == 1:
+    if family.family_size == 1:
         return f"{level} interval"
     return f"{adjustment_of(family).interval} {level} interval"
+
+
+class Sized(Protocol):
+    """A family that knows how many rows were planned."""
+
+    @property
+    def family_size(self) -> int:
+        """The number of planned rows."""
+
+    @property
+    def rows(self) -> Sequence[object]:
+        """The rows that could be given."""
+
+
+def missing_rows(family: Sized) -> int:
+    """How many planned rows of a family could not be given."""
+    return family.family_size - len(family.rows)
+
+
+def of_rows(family: Sized, shown: int, what: str) -> str:
+    """Where something is shown: "in 2 of 6 comparisons", with the number of those not assessable."""
+    total, missing = len(family.rows), missing_rows(family)
+    noun = f"assessed {what}" if missing else what
+    if not shown:
+        words = f"in any of {total} {noun}"
+    else:
+        words = f"in {f'all {total}' if shown == total else f'{shown} of {total}'} {noun}"
+    return words + (f"; {missing} not assessable" if missing else "")
+
+
+def missing_note(basis: Basis, family: Sized) -> list[Prose]:
+    """The note below a table that lacks planned rows; none where it has all."""
+    missing = missing_rows(family)
+    if not missing:
+        return []
+    words = (
+        "{missing} of {size} planned rows cannot be given; section {number} gives the reasons. They count in "
+        "the adjustment as if their *p* were 1."
+    )
+    number = str(basis.place(Part.NOT_REPORTED).number)
+    return [prose(words, missing=str(missing), size=str(family.family_size), number=number)]
+
+
+def critical_words(critical: float | None, df: float | None = None, *, one_sided: bool = False) -> Prose:
+    """What standard errors are multiplied by for the intervals: one number, or (None) a column of them."""
+    value = () if critical is None else prose(" = {c}", c=statistic(critical))
+    freedom = "" if df is None else f", with {degrees_of_freedom(df)} degrees of freedom"
+    how = "the bound is the estimate and" if one_sided else "the interval is the estimate ±"
+    words = (
+        "*c*{value}{freedom}: "
+        + how
+        + " *c* times its standard error"
+        + (" on the side asked about." if one_sided else ".")
+    )
+    return prose(words, value=value, freedom=freedom)
 
 
 def row_verdict(verdict: str) -> str:
@@ -134,8 +193,18 @@ def row_verdict(verdict: str) -> str:
 
 
 def departs(basis: Basis, check: CheckFindings) -> bool:
-    """Whether the data show at level alpha what a check looks for."""
+    """Whether the data show at level alpha a departure from what the analysis assumes.
+
+    Where every level has a variance of its own, unequal variances are none.
+    """
+    if is_unassumed(basis, check):
+        return False
     return check.p is not None and check.p <= float(basis.response.alpha)
+
+
+def is_unassumed(basis: Basis, check: CheckFindings) -> bool:
+    """Whether a check is about equal variances, in an analysis that does not assume them."""
+    return basis.is_separate and "variance" in check.name
 
 
 def check_words(basis: Basis, check: CheckFindings) -> Prose:
@@ -149,7 +218,7 @@ def check_words(basis: Basis, check: CheckFindings) -> Prose:
 
 def short_check_name(check: CheckFindings) -> str:
     """The name of a check without what it tests: "Shapiro–Wilk"."""
-    return re.split(r" test\b| on | of | \(", typographic(check.name))[0]
+    return re.split(r" tests?\b| on | of | \(", typographic(check.name))[0]
 
 
 def typographic(name: str) -> str:

@@ -102,6 +102,15 @@ P_ADJUSTMENTS: dict[str, Callable[[Sequence[Tail]], tuple[Tail, ...]]] = {
     "hochberg": hochberg,
 }
 
+
+def adjusted_beside_missing(adjust: str, tails: Sequence[Tail], missing: int) -> tuple[Tail, ...]:
+    """`tails` adjusted in their family, of which `missing` more could not be computed and count as p = 1.
+
+    So the family keeps the size that was planned. Raises KeyError for an unknown adjustment.
+    """
+    return P_ADJUSTMENTS[adjust]([*tails, *(Tail(1.0, 0.0) for _ in range(missing))])[: len(tails)]
+
+
 INTERVAL_LEVELS: dict[str, Callable[[float, int], float]] = {
     "none": whole_level,
     "bonferroni": bonferroni_level,

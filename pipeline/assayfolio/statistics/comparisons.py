@@ -32,7 +32,7 @@ class ComparisonResult:
     `df` is N - k with the pooled error, and a real number (Welch-Satterthwaite) with separate variances.
     `tail` is the unadjusted, `adjusted` the adjusted p-value. `interval` is simultaneous over the family at
     1 - alpha; an end is None where the alternative leaves it open, and the interval is None where the method
-    has none.
+    has none. `critical` is what the standard error is multiplied by for it, None with it.
     """
 
     label: str
@@ -43,6 +43,7 @@ class ComparisonResult:
     tail: Tail
     adjusted: Tail
     interval: Interval | None
+    critical: float | None
 
 
 def compare(
@@ -125,7 +126,9 @@ def pooled_results(
         se = Root.of(variance * estimate.variance_factor)
         interval = interval_about(estimate.value, se, multiplier, alternative)
         rows.append(
-            ComparisonResult(estimate.label, estimate.value, se, df, statistic, tail, after, interval)
+            ComparisonResult(
+                estimate.label, estimate.value, se, df, statistic, tail, after, interval, multiplier
+            )
         )
     return tuple(rows)
 

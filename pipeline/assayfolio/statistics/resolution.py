@@ -29,24 +29,31 @@ class Resolution:
     coarse: bool
 
 
-def resolution(groups: Sequence[tuple[str, Sequence[Decimal10]]], analysis: OneWay) -> Resolution:
-    """The recorded step of all values, and whether it is coarse: step > s / 2, compared exactly.
+def recorded_step(groups: Sequence[tuple[str, Sequence[Decimal10]]]) -> Fraction:
+    """The step in which all values are recorded: one unit of the finest decimal place that any of them has.
 
-    The step is one unit of the finest recorded decimal place. Where at least 8 different values all differ by
-    multiples of a larger step (readings to 0.05, say), that step: fewer values may do so by chance. Rounding
-    to a step w adds w^2 / 12 to the variance (the uniform distribution); at w = s / 2 that is 2 % of s^2. The
-    limit of s / 2 is common practice without a source. Where nothing varies within the levels the step is
-    coarse.
+    Where at least 8 different values all differ by multiples of a larger step (readings to 0.05, say), that
+    step: fewer values may do so by chance.
     """
     numbers, exponent, divisor = in_one_unit(value for _, values in groups for value in values)
     units = set(numbers)
     lowest = min(units)
     multiple = gcd(*(one - lowest for one in units)) if len(units) >= _DISTINCT_VALUES else 1
-    return resolution_of(multiple * Fraction(10) ** exponent / divisor, analysis)
+    return multiple * Fraction(10) ** exponent / divisor
+
+
+def resolution(groups: Sequence[tuple[str, Sequence[Decimal10]]], analysis: OneWay) -> Resolution:
+    """Whether the recorded step of all values is coarse, as `resolution_of` has it."""
+    return resolution_of(recorded_step(groups), analysis)
 
 
 def resolution_of(step: Fraction, analysis: OneWay) -> Resolution:
-    """Whether the recorded `step` of the values of `analysis` is coarse, as `resolution` has it."""
+    """Whether the recorded `step` of the values is coarse: step > s / 2, compared exactly.
+
+    Rounding to a step w (see `recorded_step`) adds w^2 / 12 to the variance (the uniform distribution); at
+    w = s / 2 that is 2 % of s^2. The limit of s / 2 is common practice without a source. Where nothing varies
+    within the levels the step is coarse.
+    """
     variance = analysis.ms_within
     return Resolution(
         step=step,

@@ -15,7 +15,7 @@ from math import sqrt
 import numpy as np
 
 from assayfolio.exact import Root, to_double
-from assayfolio.statistics.adjustment import INTERVAL_LEVELS, P_ADJUSTMENTS, Tail
+from assayfolio.statistics.adjustment import INTERVAL_LEVELS, Tail, adjusted_beside_missing
 from assayfolio.statistics.comparisons import (
     TWO_SIDED,
     ComparisonResult,
@@ -27,29 +27,29 @@ from assayfolio.statistics.comparisons import (
 )
 from assayfolio.statistics.distributions import studentized_range_isf, studentized_range_log10_sf
 from assayfolio.statistics.estimates import Estimate
-from assayfolio.statistics.oneway import LevelSummary, NotComputableError, OneWay
+from assayfolio.statistics.oneway import LevelSummary, NotComputableError, OneWay, without_variance
 from assayfolio.statistics.points_by_df import points_by_df
 from assayfolio.statistics.simultaneous import require_computed_range
 from assayfolio.statistics.tails import t_isf, t_log10_sf, t_two_sided_log10
 
 
 def compare_separate(
-    estimates: Sequence[Estimate], adjust: str, alternative: str, alpha: float
+    estimates: Sequence[Estimate], adjust: str, alternative: str, alpha: float, missing: int = 0
 ) -> tuple[ComparisonResult, ...]:
     """The comparisons of one family by Welch's t with separate variances, adjusted by `adjust`.
 
     `adjust` is none, bonferroni, sidak, holm or hochberg, `alternative` two-sided, greater or less, both as
-    in `compare`. Each row has its own degrees of freedom, in its tail and in its interval. A level whose
-    values are all equal counts with variance zero as long as another level of the comparison varies.
-    Raises NotComputableError where a level has one value only, and where no level of a comparison varies;
+    in `compare`. Each row has its own degrees of freedom, in its tail and in its interval. `missing` is the
+    number of rows of the family that cannot be given: they count as p = 1.
+    Raises NotComputableError where a level has one value only or does not vary (see `without_variance`);
     KeyError for another adjustment.
     """
     errors = _errors(estimates)
     tails = _t_tails(errors, alternative)
-    adjusted = P_ADJUSTMENTS[adjust](tails)
+    adjusted = adjusted_beside_missing(adjust, tails, missing)
     multipliers: Sequence[float | None] = [None] * len(errors)
     if adjust in INTERVAL_LEVELS:
-        level = INTERVAL_LEVELS[adjust](alpha, len(errors)) / (2 if alternative == TWO_SIDED else 1)
+        level = INTERVAL_LEVELS[adjust](alpha, len(errors) + missing) / (2 if alternative == TWO_SIDED else 1)
         multipliers = points_by_df(lambda df: t_isf(level, df), [one.df for one in errors])
     return _results(estimates, errors, tails, adjusted, multipliers, alternative)
 
@@ -63,8 +63,7 @@ def compare_games_howell(
     of k means on the pair's own Welch-Satterthwaite degrees of freedom. k is the number of levels, whatever
     `estimates` holds. Approximate, and somewhat liberal where n is small (Games and Howell 1976, J. Educ.
     Stat. 1, 113; from memory). For two levels it is Welch's t test.
-    Raises NotComputableError where a level has one value only, where neither level of a pair varies, and for
-    more than 200 levels.
+    Raises NotComputableError where a level has one value only or does not vary, and for more than 200 levels.
     """
     k = analysis.k
     require_computed_range(k)
@@ -95,19 +94,15 @@ def _errors(estimates: Sequence[Estimate]) -> list[_Error]:
 
 
 def _variance_of_mean(level: LevelSummary) -> Fraction:
-    if level.n < 2:
-        raise NotComputableError(
-            f"level {level.level!r} has one value only, so it has no variance of its own"
-        )
+    reason = without_variance([level])
+    if reason is not None:
+        raise NotComputableError(reason)
     return level.ss / ((level.n - 1) * level.n)
 
 
 def _error(estimate: Estimate, variances: dict[str, Fraction]) -> _Error:
     parts = [(weight * weight * variances[level.level], level.n - 1) for level, weight in estimate.weights]
     square = sum((part for part, _ in parts), Fraction(0))
-    if not square:
-        names = " and ".join(repr(level.level) for level, _ in estimate.weights)
-        raise NotComputableError(f"nothing varies within {names}, so there is no error to compare with")
     spread = sum((part * part / df for part, df in parts), Fraction(0))
     statistic = signed_root(estimate.value, estimate.value**2 / square)
     return _Error(Root.of(square), to_double(square * square / spread), statistic)
@@ -140,6 +135,7 @@ def _results(
                 tail=tails[at],
                 adjusted=adjusted[at],
                 interval=interval,
+                critical=multipliers[at],
             )
         )
     return tuple(rows)

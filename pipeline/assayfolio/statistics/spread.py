@@ -10,7 +10,7 @@ from fractions import Fraction
 from math import log10
 
 from assayfolio.exact import round_significant, to_double
-from assayfolio.statistics.adjustment import P_ADJUSTMENTS, Tail, bonferroni_level
+from assayfolio.statistics.adjustment import Tail, adjusted_beside_missing, bonferroni_level
 from assayfolio.statistics.oneway import LevelSummary, OneWay
 from assayfolio.statistics.tails import f_isf, f_log10_sf, f_sf
 
@@ -39,8 +39,9 @@ def variance_ratios(analysis: OneWay, reference: str, alpha: float, adjust: str)
     Under normality the ratio divided by that of the true variances follows F on (n_X - 1, n_R - 1) degrees of
     freedom. The two-sided p is twice the smaller tail, at most 1. The interval is
     (ratio / F(alpha/2; df_X, df_R), ratio * F(alpha/2; df_R, df_X)), F the upper points: it excludes 1
-    exactly where p < alpha. `adjust` is none, bonferroni or holm over the rows that have a test; intervals
-    with bonferroni are at alpha / m, those with holm, which has no simultaneous interval, unadjusted.
+    exactly where p < alpha. `adjust` is none, bonferroni or holm over all m rows, of which those without a
+    test count as p = 1; intervals with bonferroni are at alpha / m, those with holm, which has no
+    simultaneous interval, unadjusted.
     A level with one value, or whose values are all equal, has a row with the reason; so have all levels where
     the reference is such.
     Raises KeyError for an unknown level or adjustment.
@@ -48,8 +49,7 @@ def variance_ratios(analysis: OneWay, reference: str, alpha: float, adjust: str)
     r = analysis.summary_of(reference)
     others = [level for level in analysis.levels if level.level != reference]
     reasons = [_why_no_variance(r) or _why_no_variance(x) or _why_beyond(x, r) for x in others]
-    size = reasons.count(None)
-    level = bonferroni_level(alpha, size) if adjust == "bonferroni" and size else alpha
+    level = bonferroni_level(alpha, len(others)) if adjust == "bonferroni" else alpha
     rows = [
         _row(x, r, level) if reason is None else _without(x, r, reason)
         for x, reason in zip(others, reasons, strict=True)
@@ -96,5 +96,6 @@ def _without(x: LevelSummary, r: LevelSummary, reason: str) -> VarianceRatio:
 
 
 def _adjusted(rows: Sequence[VarianceRatio], adjust: str) -> tuple[VarianceRatio, ...]:
-    tails = iter(P_ADJUSTMENTS[adjust]([row.tail for row in rows if row.tail is not None]))
+    known = [row.tail for row in rows if row.tail is not None]
+    tails = iter(adjusted_beside_missing(adjust, known, len(rows) - len(known)))
     return tuple(row if row.tail is None else replace(row, adjusted=next(tails)) for row in rows)

@@ -5,7 +5,7 @@ are exact. Two tests bear the names of Brown and Forsythe: the one of means is h
 `checks`.
 """
 
-from collections.abc import Iterable, Sequence
+from collections.abc import Iterable
 from dataclasses import dataclass
 from fractions import Fraction
 
@@ -13,7 +13,7 @@ from assayfolio.exact import Root, to_double
 from assayfolio.statistics.adjustment import Tail
 from assayfolio.statistics.comparisons import centred_interval
 from assayfolio.statistics.f_tails import f_tails
-from assayfolio.statistics.oneway import LevelSummary, NotComputableError, OneWay
+from assayfolio.statistics.oneway import LevelSummary, NotComputableError, OneWay, without_variance
 from assayfolio.statistics.tails import f_isf, t_isf
 
 
@@ -57,11 +57,6 @@ def welch_test(analysis: OneWay, alpha: float) -> WelchTest:
     beyond the range of doubles.
     """
     variances = _variances(analysis)
-    still = [level for level, square in zip(analysis.levels, variances, strict=True) if not square]
-    if still:
-        raise NotComputableError(
-            f"the values do not vary within {_named(still)}, and Welch's test divides by the variance of each"
-        )
     k = analysis.k
     by_level = [(level.n / square, level) for level, square in zip(analysis.levels, variances, strict=True)]
     total = _sum(w for w, _ in by_level)
@@ -87,12 +82,10 @@ def brown_forsythe_means(analysis: OneWay) -> BrownForsytheMeans:
     Sources: Brown and Forsythe 1974, Technometrics 16, 129; Mehrotra 1997, Commun. Stat. Simul. 26, 1139
     (both from memory), the latter since on k - 1 the test can be liberal. Approximations; for two levels both
     are Welch's t test. Not the test of variances by the same authors.
-    Raises NotComputableError where a level has one value, where nothing varies within any level, and where F*
+    Raises NotComputableError, naming the levels, where a level has one value or does not vary; and where F*
     is beyond the range of doubles.
     """
     variances = _variances(analysis)
-    if not analysis.ss_within:
-        raise NotComputableError("nothing varies within the levels, so there is no error to compare with")
     by_level = [
         (level.n - 1, Fraction(level.n, analysis.n_total), square)
         for level, square in zip(analysis.levels, variances, strict=True)
@@ -120,19 +113,11 @@ def separate_mean_interval(level: LevelSummary, alpha: float) -> tuple[float, fl
 
 
 def _variances(analysis: OneWay) -> list[Fraction]:
-    single = [level for level in analysis.levels if level.n < 2]
-    if single:
-        one = "has" if len(single) == 1 else "have"
-        raise NotComputableError(
-            f"{_named(single)} {one} one value only, so there is no variance of its own for each level"
-        )
+    reason = without_variance(analysis.levels)
+    if reason is not None:
+        raise NotComputableError(reason)
     return [level.ss / (level.n - 1) for level in analysis.levels]
 
 
 def _sum(terms: Iterable[Fraction]) -> Fraction:
     return sum(terms, Fraction(0))
-
-
-def _named(levels: Sequence[LevelSummary]) -> str:
-    names = ", ".join(repr(level.level) for level in levels)
-    return f"level {names}" if len(levels) == 1 else f"levels {names}"

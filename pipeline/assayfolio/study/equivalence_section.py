@@ -23,6 +23,7 @@ from assayfolio.study.vocabulary import (
 
 _KINDS = (("margin",), ("lower", "upper"), ("margin-percent",), ("lower-percent", "upper-percent"))
 _PERCENT = ("margin-percent", "lower-percent", "upper-percent")
+_WRITE_ONE_SIDED = "write `margin` or `margin-percent`"
 _WRITE_ONE = (
     "write `margin`, or `lower` and `upper`, or `margin-percent`, or `lower-percent` and `upper-percent`"
 )
@@ -123,7 +124,8 @@ def _report_kinds(fields: Fields) -> None:
         return  # a misspelt margin is reported already, and which kind it is cannot be told
     if len(kinds) != 1:
         found = "an entry of `equivalence` has " + ("more than one margin" if kinds else "no margin")
-        fields.faults.add(fields.place, found, _WRITE_ONE)
+        sided = "non-inferiority" in fields
+        fields.faults.add(fields.place, found, _WRITE_ONE_SIDED if sided else _WRITE_ONE)
         return
     absent = [key for key in kinds[0] if key not in fields]
     if absent:

@@ -45,6 +45,7 @@ def number(expected: str, fits: Callable[[Fraction], bool]) -> Reader[Fraction]:
 
 
 probability = number("a number above 0 and below 1, such as 0.05", lambda x: 0 < x < 1)
+high_probability = number("a number above 0 and below 1, such as 0.95", lambda x: 0 < x < 1)
 positive = number("a number above 0", lambda x: x > 0)
 any_number = number("a number, such as -0.25 or 1/3", lambda _: True)
 

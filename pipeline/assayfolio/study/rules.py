@@ -70,8 +70,18 @@ def _without_estimates(outline: Outline, mapping: MappingNode) -> bool:
     return outline.random or (outline.fixed and word_of(mapping, "quantity") in _WITHIN)
 
 
+def _one_value_at_a_level(outline: Outline, mapping: MappingNode) -> bool:
+    """Whether the levels have a variance each, and one of them is to have one value."""
+    entry = mapping.entry("replicates")
+    planned = None if entry is None else entry.value
+    numbers = [one.value for one in planned.entries] if isinstance(planned, MappingNode) else [planned]
+    texts = [number.text for number in numbers if isinstance(number, ScalarNode)]
+    return outline.separate and any(text.isascii() and text.isdigit() and int(text) == 1 for text in texts)
+
+
 _WITHIN = tuple(quantity for quantity in QUANTITIES if quantity.startswith("repeatability-"))
 _BETWEEN = tuple(quantity for quantity in QUANTITIES if quantity.startswith(("between-", "total-")))
+_OF_LEVELS = tuple(quantity for quantity in QUANTITIES if quantity.startswith("largest-difference"))
 _ONE_VARIANCE = ", which needs one variance for all levels, and `design.variances` is separate"
 _NOT_FOR_A_SAMPLE = "use `precision` for the spread between levels, or `effects: fixed`"
 _TOGETHER = (
@@ -140,6 +150,16 @@ RULES = (
         "use `bonferroni` or `holm`, or `two-sided`",
     ),
     Rule(
+        "data.replicates",
+        (),
+        _one_value_at_a_level,
+        (
+            " plans one value at a level, from which no variance can be estimated, and with "
+            "`design.variances: separate` each level has its own"
+        ),
+        "plan two values or more at every level, or use `variances: pooled`",
+    ),
+    Rule(
         "alpha",
         (),
         _too_large_for_equivalence,
@@ -162,6 +182,13 @@ RULES = (
             ("power", "is about comparing levels"),
             ("design.omnibus", "compares levels"),
         )
+    ),
+    Rule(
+        "criteria.quantity",
+        _OF_LEVELS,
+        lambda outline, _: outline.random,
+        ", which compares levels, but with `design.effects: random` they are a mere sample",
+        "use `between-sd`, or `effects: fixed`",
     ),
     Rule(
         "design.variances",
@@ -234,7 +261,7 @@ RULES = (
         (),
         lambda outline, _: outline.separate,
         " needs one standard deviation, and `design.variances` is separate",
-        "leave it out, or use `variances: pooled`",
+        "leave it out: power is computed for a common standard deviation only",
     ),
     Rule(
         "power.allocation",

@@ -14,7 +14,7 @@ from assayfolio.study.fields import (
     truth,
 )
 from assayfolio.study.names import Surroundings, response_in
-from assayfolio.study.numbers import any_number, positive, probability
+from assayfolio.study.numbers import any_number, high_probability, positive
 from assayfolio.study.plan import (
     AcrossResponses,
     ChecksPlan,
@@ -94,7 +94,7 @@ def read_precision(value: Value) -> PrecisionPlan:
     """`precision:` as a plan; the confidence is 0.95 where it is left out."""
     fields = Fields.of(value, PRECISION_KEYS)
     estimate = fields.required("estimate", truth)
-    confidence = fields.optional("confidence", probability) or DEFAULT_CONFIDENCE
+    confidence = fields.optional("confidence", high_probability) or DEFAULT_CONFIDENCE
     varied = fields.optional("varied", _sentence)
     conditions = fields.optional("conditions", _conditions)
     if estimate is None:
@@ -109,7 +109,7 @@ def power_in(surroundings: Surroundings) -> Reader[PowerPlan]:
         fields = Fields.of(value, POWER_KEYS)
         difference = fields.required("difference", positive)
         sigma = fields.required("sigma", positive)
-        target = fields.required("target", probability)
+        target = fields.required("target", high_probability)
         true_difference = fields.optional("true-difference", any_number) or Fraction(0)
         allocation = fields.optional("allocation", _allocation) or "equal"
         response = fields.optional("response", response_in(surroundings))

@@ -6,17 +6,10 @@ from pathlib import Path
 
 from assayfolio.canonical import Json
 from assayfolio.observations.values import Observations
-from assayfolio.study.plan import (
-    AgainstReference,
-    AllPairs,
-    Comparison,
-    Contrast,
-    ContrastFamily,
-    EquivalencePlan,
-    StudyDefinition,
-)
+from assayfolio.study.plan import StudyDefinition
 from assayfolio.study.suggestions import nearest
 from assayfolio.workflow.intake import SeenFiles, data_file_exists, read_intake, read_plan
+from assayfolio.workflow.plan_words import plan_words
 from assayfolio.workflow.workspace import Workspace
 
 
@@ -37,8 +30,7 @@ class CheckedStudy:
         lines = [
             f"{study.study}  {study.title}",
             f"  plan   valid: {', '.join(data.response)} by {data.factor}, alpha {float(study.alpha):g}",
-            *(f"  plan   {_described(comparison)}" for comparison in study.comparisons),
-            *(f"  plan   {_test_described(test)}" for test in study.equivalence),
+            *(f"  plan   {words}" for words in plan_words(study)),
         ]
         if self.observations is None:
             return [
@@ -78,29 +70,6 @@ class CheckedStudy:
             return {}
         observed = self.observations[0]
         return {counts.level: counts.analysed for counts in observed.flow}
-
-
-def _described(comparison: Comparison) -> str:
-    if isinstance(comparison, AllPairs):
-        return f"{comparison.name}: all pairs, {comparison.adjust}"
-    if isinstance(comparison, AgainstReference):
-        what = f"against {comparison.against}, {comparison.adjust}"
-    elif isinstance(comparison, Contrast):
-        what = ", ".join(f"{weight} {level}" for level, weight in comparison.weights)
-        return f"{comparison.name}: {what}; {comparison.alternative}"
-    elif isinstance(comparison, ContrastFamily):
-        what = f"{len(comparison.contrasts)} contrasts, {comparison.adjust}"
-    else:
-        kind = "linear trend" if comparison.degree == 1 else f"trend up to degree {comparison.degree}"
-        what = f"{kind}, {comparison.adjust}"
-    return f"{comparison.name}: {what}, {comparison.alternative}"
-
-
-def _test_described(test: EquivalencePlan) -> str:
-    kind = "non-inferiority" if test.non_inferiority else "equivalence"
-    of = "all pairs" if test.against is None else f"against {test.against}"
-    only = f", {test.response} only" if test.response is not None else ""
-    return f"{test.name}: {kind}, {of}, {test.adjust}{only}"
 
 
 def check_study(workspace: Workspace, study_path: Path) -> CheckedStudy:

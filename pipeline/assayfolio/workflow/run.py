@@ -226,6 +226,7 @@ def _compute_and_render(run: _Run) -> Findings:
     run.progress(Step.COMPUTE, f"findings {sha256_hex(document)[:16]}")
 
     run.record["trail_head_of_report"] = {"seq": head.seq, "sha256": head.sha256}
+    run.progress(Step.RENDER, "setting the pages; this takes the longest")
     facts = run_facts(run.record, environment, run.history, sha256_hex(document))
     report = render_report(report_input(run.intake, findings, facts))
     run.payload["data/report.pdf"] = report.pdf

@@ -11,11 +11,14 @@ from assayfolio.findings import (
     DIFFERENCE_SHOWN,
     EQUIVALENCE_SHOWN,
     NON_INFERIORITY_SHOWN,
+    OUTLIER,
+    STRAGGLER,
     ComparisonFamily,
     ComparisonRow,
     CriterionFindings,
     EquivalenceFamily,
     EquivalenceRow,
+    OutlierFindings,
     PrecisionFindings,
     ResponseFindings,
 )
@@ -63,7 +66,7 @@ def _standing(outcome: RunOutcome) -> str:
 
 
 def _verdicts(response: ResponseFindings) -> Iterator[str]:
-    yield f"means of {len(response.levels)} levels: {response.overall_verdict}"
+    yield _overall(response)
     for comparison in response.comparisons:
         yield _family_verdict(comparison, DIFFERENCE_SHOWN)
     for family in response.equivalence:
@@ -72,6 +75,30 @@ def _verdicts(response: ResponseFindings) -> Iterator[str]:
     if response.precision is not None:
         yield _precision_line(response.precision, response.unit)
     yield from (_criterion_line(criterion) for criterion in response.criteria)
+    yield from _informs(response)
+
+
+def _overall(response: ResponseFindings) -> str:
+    if response.precision is not None and response.precision.between_sd is not None:
+        return f"spread added by {len(response.levels)} levels: {response.overall_verdict}"
+    return f"means of {len(response.levels)} levels: {response.overall_verdict}"
+
+
+def _informs(response: ResponseFindings) -> Iterator[str]:
+    """What asks to be looked at: proposals, and checks that show a departure at alpha."""
+    proposals = [one for one in response.outliers if one.verdict in (OUTLIER, STRAGGLER)]
+    if proposals:
+        named = ", ".join(f"{one.verdict} {_proposed(one)} ({one.test})" for one in proposals)
+        yield f"proposed for investigation, not removed: {named}"
+    shown = [check.name for check in response.checks if check.p is not None and check.p <= response.alpha]
+    if shown:
+        yield f"a departure is shown by: {', '.join(shown)}"
+
+
+def _proposed(found: OutlierFindings) -> str:
+    if found.about == "level means":
+        return f"among the level means: {', '.join(found.levels)}"
+    return f"at {found.level}"
 
 
 def _family_verdict(family: ComparisonFamily | EquivalenceFamily, shown: str) -> str:
