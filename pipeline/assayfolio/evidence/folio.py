@@ -89,9 +89,9 @@ def stage_folio(
 
     `payload` maps paths such as "data/study.yaml" to their bytes, or to files to copy; `bag_info` has the
     labels of bag-info.txt, to which Payload-Oxum is added. The same arguments give the same bytes and so the
-    same seal. Raises InputError for paths that cannot stand in a folio or beside each other; MachineError where
-    the target or the staging folder exists, the disk refuses, or a file reads back differently; what this call
-    had written is then removed again. A killed process leaves it for the next writer to tell of.
+    same seal. Raises InputError for paths that cannot stand in a folio or beside each other; MachineError
+    where the target or the staging folder exists, the disk refuses, or a file reads back differently; what
+    this call had written is then removed again. A killed process leaves it for the next writer to tell of.
     """
     _refuse_paths(payload)
     target = folder / name
