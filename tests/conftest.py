@@ -13,7 +13,18 @@ from pdfa import verapdf
 
 IN_CI = os.environ.get("CI", "").lower() == "true"
 CHECKOUT = Path(__file__).resolve().parents[1]
-PROGRAMS = ("qpdf", "pdfinfo", "pdffonts", "pdftoppm", "pdftotext", "pdfdetach", "sha256sum")
+PROGRAMS = (
+    "qpdf",
+    "pdfinfo",
+    "pdffonts",
+    "pdftoppm",
+    "pdftotext",
+    "pdfdetach",
+    "pdfsig",
+    "sha256sum",
+    "openssl",
+    "softhsm2-util",
+)
 
 # How long an example takes is the machine's affair. Continuous integration takes the same examples each time.
 settings.register_profile(

@@ -31,7 +31,22 @@ LAYERS = (
 RANK = {unit: rank for rank, units in enumerate(LAYERS) for unit in units}
 
 # These take a noticeable part of a second to import, so they are imported where they are used.
-HEAVY = ("weasyprint", "pandas", "scipy.stats", "pyarrow", "openpyxl", "pydyf", "fontTools")
+HEAVY = (
+    "weasyprint",
+    "pandas",
+    "scipy.stats",
+    "pyarrow",
+    "openpyxl",
+    "pydyf",
+    "fontTools",
+    "pyhanko",
+    "pyhanko_certvalidator",
+    "cryptography",
+    "asn1crypto",
+    "pkcs11",
+    "urllib.request",
+    "asyncio",
+)
 
 # Clock, user, environment, disk and chance: what is the same for the same input reads none of them.
 EDGE_UNITS = {"evidence", "workflow", "cli", "__main__"}

@@ -101,6 +101,7 @@ def test_check_says_whether_the_data_fit(tmp_path):
     assert not bench.runs.exists()
 
 
+@pytest.mark.requirement("TRAIL-15")
 def test_the_trail_is_shown_to_people_and_programs(tmp_path):
     bench = Bench(tmp_path / "w")
     bench.run()

@@ -40,6 +40,7 @@ def test_the_register_is_shown_to_programs(bench):
     assert (orphan["path"], orphan["named_by"]) == ("configs/data/spare.csv", [])
 
 
+@pytest.mark.requirement("SOURCE-7")
 def test_verify_mentions_open_and_orphan_files_without_failing(bench):
     people, programs = bench("verify"), bench("verify", "--json")
     assert people.code == programs.code == 0

@@ -235,6 +235,7 @@ def test_a_study_without_a_worksheet_is_told_how_to_get_one(bench):
     assert not sheet(bench, ".csv").exists()
 
 
+@pytest.mark.requirement("PLAN-5")
 def test_the_trail_holds_the_order_and_the_digests_of_the_files(bench):
     files = written(bench)
     entry = bench.entries()[-1]

@@ -2,6 +2,8 @@
 
 from fractions import Fraction
 
+import pytest
+
 from assayfolio.evaluation.apply import evaluate
 from assayfolio.findings import NOT_ASSESSABLE
 from support.studies import HEAD, findings_of, observations_of, study_of
@@ -29,6 +31,7 @@ def checks_of(data, parts: str = ALL):
     return {check.name: check for check in findings_of(data, parts).responses[0].checks}
 
 
+@pytest.mark.requirement("PLAN-8")
 def test_every_check_of_the_plan_is_there_in_its_order():
     assert list(checks_of(UNEVEN)) == NAMES
 
@@ -42,6 +45,7 @@ def test_tests_of_equal_variances_find_unequal_ones():
     assert [found[name].df for name in NAMES[:4]] == [(1,), (1, 10), (5, 5), (1, 10)]
 
 
+@pytest.mark.requirement("PLAN-8")
 def test_no_check_chooses_the_analysis():
     plain, checked = findings_of(UNEVEN).responses[0], findings_of(UNEVEN, ALL).responses[0]
     assert plain.anova == checked.anova

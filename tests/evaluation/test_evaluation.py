@@ -64,6 +64,7 @@ def test_levels_and_alpha_are_those_of_plan_and_data():
     ]
 
 
+@pytest.mark.requirement("PLAN-7")
 def test_what_was_not_asked_for_is_not_there():
     (response,) = findings_of(LOTS).responses
     assert response.comparisons == response.equivalence == response.checks == response.outliers == ()
@@ -187,6 +188,7 @@ def test_a_p_too_small_for_a_double_has_its_logarithm():
     assert anova.verdict == DIFFERENCE_SHOWN
 
 
+@pytest.mark.requirement("PLAN-4")
 def test_the_power_of_a_plan_depends_on_the_plan_alone():
     head = (
         "study: T\ntitle: t\ndata: {file: f.csv, response: y, factor: x, levels: [a, b], replicates: 3}\n"

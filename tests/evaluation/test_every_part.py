@@ -109,6 +109,7 @@ def responses(option: str) -> list[dict[str, Any]]:
     return list(document["responses"].values())
 
 
+@pytest.mark.requirement("PLAN-7")
 def test_a_part_is_there_where_it_was_asked_for_and_nowhere_else(option, responses):
     assert [set(response) for response in responses] == [PARTS[option], PARTS[option]]
 
@@ -204,6 +205,7 @@ def test_of_what_was_asked_about_the_data_nothing_is_missing(option):
     assert [item for item in missing if item["response"] is not None] == []
 
 
+@pytest.mark.requirement("NUMBERS-5")
 def test_a_reviewer_can_recompute_every_test_of_equivalence(responses):
     families = [family for response in responses for family in response.get("equivalence", [])]
     tests = [(family, row, one) for family in families for row in family["rows"] for one in row["boundaries"]]
@@ -218,6 +220,7 @@ def test_a_reviewer_can_recompute_every_test_of_equivalence(responses):
             assert (one["se"], one["df"]) == (row["se"], row["df"])
 
 
+@pytest.mark.requirement("NUMBERS-5")
 def test_a_reviewer_can_recompute_every_interval(responses):
     families = [family for response in responses for family in response.get("comparisons", [])]
     count = 0

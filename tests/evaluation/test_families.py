@@ -169,6 +169,7 @@ def test_a_level_of_one_value_has_no_variance_either():
     )
 
 
+@pytest.mark.requirement("REPORT-3")
 @pytest.mark.parametrize("adjust", ["bonferroni", "sidak", "holm", "hochberg"])
 def test_a_family_is_adjusted_for_its_planned_size_whatever_rows_it_lacks(adjust):
     ((family,), _) = kits(f"pairs: all, adjust: {adjust}")

@@ -79,6 +79,7 @@ def plain() -> dict[str, Any]:
     return computed({})
 
 
+@pytest.mark.requirement("NUMBERS-4")
 @pytest.mark.parametrize("setting", SETTINGS)
 def test_the_findings_are_the_same_bytes(setting):
     report = computed(SETTINGS[setting])

@@ -68,6 +68,7 @@ def is_interval(value: object) -> bool:
     )
 
 
+@pytest.mark.requirement("REPORT-5")
 def test_published_keys(document, response):
     assert set(document) == TOP
     assert set(response) == RESPONSE

@@ -28,6 +28,7 @@ def test_the_value_far_out_is_named_with_its_line_in_the_file():
     assert (b.level, b.verdict) == ("B", NEITHER)
 
 
+@pytest.mark.requirement("REPORT-7")
 def test_nothing_is_removed():
     (plain,), (tested,) = (
         findings_of(DATA).responses,

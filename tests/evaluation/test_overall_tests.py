@@ -84,6 +84,7 @@ def test_effect_sizes_go_with_every_f_under_fixed_effects():
     assert effect.cohen_f_ci[0] < float(effect.cohen_f.square) ** 0.5 < effect.cohen_f_ci[1]
 
 
+@pytest.mark.requirement("REPORT-10")
 def test_random_levels_have_no_effect_size_and_no_comparison():
     (response,) = findings_of(DATA, "design: {effects: random}\n").responses
     assert response.effect is None

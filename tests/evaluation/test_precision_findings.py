@@ -42,6 +42,7 @@ def test_random_levels_give_repeatability_between_and_total():
         assert low**2 < inside.square < high**2
 
 
+@pytest.mark.requirement("REPORT-19", "WORDS-5")
 @pytest.mark.parametrize(
     ("conditions", "name"),
     [

@@ -42,6 +42,7 @@ class TestExclusions:
         left = findings_of({"a": DATA["a"][:3], "b": DATA["b"]}, PARTS).responses[0]
         assert (found.levels, found.anova, found.comparisons) == (left.levels, left.anova, left.comparisons)
 
+    @pytest.mark.requirement("CHANGE-2")
     def test_beside_it_stands_the_whole_analysis_as_if_nothing_had_been_excluded(self):
         beside = findings("", LINES, OUT).responses[0].without_exclusions
         plain = findings().responses[0]
@@ -64,6 +65,7 @@ class TestExclusions:
         assert found.responses[0].without_exclusions is None
         assert "without_exclusions" not in findings_document(found)["responses"]["content"]
 
+    @pytest.mark.requirement("CHANGE-2")
     def test_the_list_says_what_was_left_out_by_whom_and_why(self):
         (entry,) = findings_document(findings("", LINES, OUT))["exclusions"]
         assert entry == {
@@ -138,6 +140,7 @@ class TestCounts:
     )
     MORE = "replicate-unit: sample, missing: omit, replicates: 3"
 
+    @pytest.mark.requirement("REPORT-6")
     def test_the_flow_is_that_of_every_level(self):
         found = findings(self.MORE, list(self.LINES), (8, "9"), parts="")
         assert found.responses[0].flow == (

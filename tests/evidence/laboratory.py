@@ -22,8 +22,10 @@ from assayfolio.evidence.history import (
     trail_extract,
 )
 from assayfolio.evidence.locks import is_locked
+from assayfolio.evidence.protocols import protocol_name, protocol_subject, registered_plans
 from assayfolio.evidence.register import inputs_details, read_register, received_details
 from assayfolio.evidence.trail import TrailWriter, open_trail
+from assayfolio.evidence.verification import verify_workspace
 
 STUDY = b"study: IRON-7\ntitle: Iron in river water\n"
 DATA = b"method,iron\nA,1.25\nA,1.50\nB,1.75\nB,1.60\n"
@@ -46,9 +48,14 @@ class Laboratory:
 
     runs: Path
     clock: Clock = field(default_factory=Clock)
+    stamp: Callable = field(default=lambda _last: {})
+    witnesses: tuple = ()
 
     def trail(self, wait: float = 0.0):
-        return open_trail(self.runs, "m.berg", self.clock, wait)
+        return open_trail(self.runs, "m.berg", self.clock, wait, self.stamp, lambda _entries: self.witnesses)
+
+    def verify(self):
+        return verify_workspace(self.runs, None, lambda _entries: self.witnesses)
 
     def found(self) -> None:
         with self.trail() as writer:
@@ -74,6 +81,7 @@ class Laboratory:
             details = inputs_details(digests, "iron.yaml", None, ["iron data.csv"])
             entries = [writer.append("allotted", subject, None, {"step": 1, "number": number, **details})]
             execution = read_register(writer.entries).executions(subject).number
+            plans = registered_plans(writer.entries, study)
         try:
             payload, results = self._results(subject, failing, entries)
             record = {
@@ -93,6 +101,9 @@ class Laboratory:
                 ],
                 "trail_head_at_start": {"seq": head.seq, "sha256": head.sha256},
                 "executions": {"number": execution},
+                "pre_registration": {"protocol": plans[-1].name, "registered": plans[0].time}
+                if plans
+                else None,
                 **results,
             }
             payload |= dict(inputs.values())
@@ -127,6 +138,42 @@ class Laboratory:
             payload |= {"data/report.pdf": report, "data/figures/dots.svg": b"<svg/>\n"}
             results["report_sha256"] = sha256_hex(report)
         return payload, results
+
+    def register(self, number: int = 1, study: str = "IRON-7", reason: str | None = None) -> Path:
+        """Fix a plan as the protocol of this number; return its folio."""
+        plan, paper = canonical_bytes({"alpha": "1/20", "protocol": number}), b"%PDF-1.7 invented protocol"
+        definition = STUDY + b"# %d\n" % number
+        subject, name = protocol_subject(study, number), protocol_name(number)
+        facts = {
+            "plan": sha256_hex(plan),
+            "study_definition": sha256_hex(definition),
+            "amends": number - 1 or None,
+            "timing": "before data first seen",
+        }
+        with self.trail() as writer:
+            entries = [writer.append("protocol-allotted", subject, reason, {"number": number, **facts})]
+            entries.append(writer.append("protocol-staged", subject, None, {"files": 5}))
+        record = {
+            "study": study,
+            "number": number,
+            "protocol": name,
+            "reason": reason,
+            "report_sha256": sha256_hex(paper),
+            "inputs": [{"folio_path": "data/study.yaml", "sha256": sha256_hex(definition)}],
+            **facts,
+        }
+        payload = {
+            "data/study.yaml": definition,
+            "data/plan.json": plan,
+            "data/protocol.pdf": paper,
+            "data/protocol.json": canonical_bytes(record),
+            "data/trail.jsonl": trail_extract(entries),
+        }
+        with folio_lock(self.runs / study, name):
+            staged = stage_folio(self.runs / study, name, payload, [("Source-Organization", "Invented")])
+            with self.trail() as writer:
+                writer.append("registered", subject, reason, {"seal": staged.seal, **facts})
+            return staged.publish()
 
     def settle(self) -> None:
         """What the next command does about runs that were killed: complete the rename, or say so."""

@@ -49,6 +49,7 @@ def test_two_processes_give_the_same_record_whatever_their_hash_seed():
     assert first == second
 
 
+@pytest.mark.requirement("REPORT-8")
 def test_every_installed_distribution_stands_there_once_with_version_and_digest(record):
     named = {each["name"]: each for each in record["packages"]}
     assert list(named) == sorted(named)
@@ -68,9 +69,10 @@ def test_of_two_distributions_of_one_name_the_first_on_the_path_counts(tmp_path,
         )
     monkeypatch.setattr(sys, "path", [str(tmp_path / "first"), str(tmp_path / "second"), *sys.path])
     found = [each for each in environment_record()["packages"] if each["name"] == "two-names"]
-    assert found == [{"name": "two-names", "version": "1.0", "record_sha256": None}]
+    assert found == [{"name": "two-names", "version": "1.0", "licence": None, "record_sha256": None}]
 
 
+@pytest.mark.requirement("NUMBERS-4")
 def test_interpreter_and_machine_are_named(record):
     assert record["interpreter"]["version"] == ".".join(map(str, sys.version_info[:3]))
     assert record["interpreter"]["zlib"]["running"] == zlib.ZLIB_RUNTIME_VERSION
@@ -141,6 +143,7 @@ class TestNativeLibraries:
         }
 
 
+@pytest.mark.requirement("CONFIG-1")
 def test_the_programs_fonts_and_source_have_their_digests(record, fonts_folder):
     data = {each["file"]: each["sha256"] for each in record["own_files"]["data"]}
     font = fonts_folder / "Inter-Regular.ttf"

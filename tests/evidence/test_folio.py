@@ -146,6 +146,7 @@ def test_names_that_cannot_be_kept_are_refused_before_anything_is_written(tmp_pa
     assert list(tmp_path.iterdir()) == []
 
 
+@pytest.mark.requirement("RECORD-3")
 @pytest.mark.parametrize("taken", ["run-0001", "run-0001.unsealed"])
 def test_nothing_is_written_over_what_is_there(tmp_path, taken):
     (tmp_path / taken).mkdir()
@@ -180,6 +181,7 @@ def test_a_file_that_somebody_adds_while_it_is_staged_is_noticed(tmp_path, monke
         stage_folio(tmp_path, "run-0001", PAYLOAD, INFO)
 
 
+@pytest.mark.requirement("RERUN-7")
 def test_a_full_disk_is_told_with_the_file_it_struck(tmp_path, monkeypatch):
     def refuse(*_):
         raise OSError(errno.ENOSPC, "full")

@@ -90,6 +90,7 @@ def test_how_a_run_ended(actions, ended, closed):
     assert [each.subject for each in runs_not_closed(entries)] == ([] if closed else ["A/run-0001"])
 
 
+@pytest.mark.requirement("TRAIL-3")
 def test_what_a_folio_keeps_of_the_trail_ends_with_its_staging():
     entries = trail(
         *[

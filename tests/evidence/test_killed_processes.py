@@ -61,6 +61,7 @@ def test_a_run_killed_at_any_moment_is_explained_and_the_next_one_works(tmp_path
     assert ("torn-line-set-aside" in seen) == tear
 
 
+@pytest.mark.requirement("TRAIL-1")
 def test_a_failing_run_killed_at_any_moment_is_explained(tmp_path):
     def work(laboratory):
         laboratory.run(failing=True)
@@ -100,6 +101,7 @@ def test_the_recovery_may_be_interrupted_as_well(tmp_path, tear):
         assert "torn-line-set-aside" in actions
 
 
+@pytest.mark.requirement("TRAIL-5")
 @pytest.mark.parametrize("tear", [False, True], ids=["between calls", "amid a write"])
 def test_no_torn_byte_is_lost_however_often_the_recovery_is_interrupted(tmp_path, tear):
     for laboratory in every_moment(tmp_path, leave_a_torn_line_and_a_head_behind, Laboratory.settle, tear):

@@ -247,6 +247,7 @@ class TestStates:
         files = data_files(trail.register, there(LEAD, IRON, ZINC))
         assert [file.path for file in files] == [PATHS[ZINC], PATHS[IRON], PATHS[LEAD]]
 
+    @pytest.mark.requirement("SOURCE-7")
     @given(
         st.lists(st.sampled_from(list(PATHS)), unique=True),
         st.lists(st.sampled_from(list(PATHS)), unique=True),

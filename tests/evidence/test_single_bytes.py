@@ -19,6 +19,7 @@ def runs(tmp_path_factory):
     return laboratory.runs
 
 
+@pytest.mark.requirement("RECORD-1")
 @settings(max_examples=250)
 @given(data=st.data())
 def test_any_other_byte_anywhere_is_found_and_its_file_named(runs, data):

@@ -13,6 +13,7 @@ import pytest
 from assayfolio.canonical import canonical_bytes, sha256_hex
 from assayfolio.errors import ExitCode
 from assayfolio.evidence.verification import verify_workspace
+from evidence.forger import Workspace
 from evidence.laboratory import Laboratory
 
 
@@ -32,79 +33,6 @@ def workspace(sealed_workspace, tmp_path):
     return Workspace(tmp_path / "runs")
 
 
-class Workspace:
-    """The hands of somebody who alters what lies there, with the skill to rewrite manifests and chains."""
-
-    def __init__(self, runs):
-        self.runs = runs
-        self.folio = runs / "IRON-7" / "run-0001"
-        self.trail = runs / "audit-trail.jsonl"
-        self.head = runs / "audit-trail.head"
-
-    def write(self, path, content):
-        target = self.folio / path
-        if target.exists():
-            target.chmod(0o644)
-        target.parent.mkdir(parents=True, exist_ok=True)
-        target.write_bytes(content)
-
-    def edit(self, path, old, new):
-        content = (self.folio / path).read_bytes()
-        assert old in content
-        self.write(path, content.replace(old, new, 1))
-
-    def edit_lines(self, path, change):
-        lines = (self.folio / path).read_bytes().splitlines(keepends=True)
-        self.write(path, b"".join(change(lines)))
-
-    def rewrite_manifests(self):
-        """Make the folio agree with itself again."""
-        payload = sorted(path for path in (self.folio / "data").rglob("*") if path.is_file())
-        lines = [f"{sha256_hex(p.read_bytes())}  {p.relative_to(self.folio).as_posix()}\n" for p in payload]
-        self.write("manifest-sha256.txt", "".join(lines).encode())
-        size = sum(path.stat().st_size for path in payload)
-        info = (self.folio / "bag-info.txt").read_text()
-        oxum = f"Payload-Oxum: {size}.{len(payload)}"
-        self.write("bag-info.txt", re.sub(r"Payload-Oxum: .*", oxum, info).encode())
-        self.rewrite_tag_manifest()
-
-    def rewrite_tag_manifest(self):
-        tags = ("bag-info.txt", "bagit.txt", "manifest-sha256.txt")
-        lines = [f"{sha256_hex((self.folio / name).read_bytes())}  {name}\n" for name in tags]
-        self.write("tagmanifest-sha256.txt", "".join(lines).encode())
-
-    def edit_run(self, **changes):
-        record = json.loads((self.folio / "data" / "run.json").read_bytes())
-        self.write("data/run.json", canonical_bytes(record | changes))
-
-    def edit_trail(self, old, new):
-        content = self.trail.read_bytes()
-        assert old in content
-        self.trail.write_bytes(content.replace(old, new, 1))
-
-    def entries(self):
-        return [json.loads(line) for line in self.trail.read_bytes().splitlines()]
-
-    def forge(self, entries):
-        """Write a trail whose numbers, chain and head are right, whatever it says."""
-        previous, lines = "0" * 64, []
-        for seq, entry in enumerate(entries, start=1):
-            lines.append(canonical_bytes(entry | {"seq": seq, "previous": previous}))
-            previous = sha256_hex(lines[-1])
-        self.trail.write_bytes(b"".join(line + b"\n" for line in lines))
-        self.head.write_bytes(canonical_bytes({"seq": len(lines), "sha256": previous}) + b"\n")
-
-    def reseal(self):
-        """The whole forgery: folio, its seal in the trail, the chain and the head."""
-        self.rewrite_manifests()
-        seal = sha256_hex((self.folio / "tagmanifest-sha256.txt").read_bytes())
-        entries = self.entries()
-        for entry in entries:
-            if entry["action"] == "sealed" and entry["subject"] == "IRON-7/run-0001":
-                entry["details"]["seal"] = seal
-        self.forge(entries)
-
-
 def assert_found(workspace, number, words):
     verification = verify_workspace(workspace.runs, None)
     assert verification.exit_code == ExitCode.FINDING == 1
@@ -114,6 +42,7 @@ def assert_found(workspace, number, words):
     assert any(re.search(words, note) for note in notes), notes
 
 
+@pytest.mark.requirement("RECORD-4")
 def test_the_workspace_as_it_was_sealed_passes_every_check(workspace):
     verification = verify_workspace(workspace.runs, None)
     assert {each.outcome for each in verification.outcomes} == {"passed"}
@@ -356,6 +285,7 @@ def swap_folios(workspace):
     workspace.folio.with_name("aside").rename(other)
 
 
+@pytest.mark.requirement("RECORD-1")
 @pytest.mark.parametrize(
     ("alter", "number", "words"), [pytest.param(*case, id=name) for name, *case in TABLE]
 )
@@ -384,6 +314,7 @@ def evidence_files(runs):
     return [path for path in sorted(runs.rglob("*")) if path.is_file() and not path.name.startswith(".")]
 
 
+@pytest.mark.requirement("RECORD-1")
 def test_each_flipped_byte_in_each_file_is_found_and_the_file_named(workspace):
     """Every file of the workspace; a byte at its start, its end and at steps between."""
     files = evidence_files(workspace.runs)

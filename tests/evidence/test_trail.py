@@ -35,6 +35,7 @@ def test_an_entry_is_one_line_with_exactly_the_agreed_keys(laboratory):
         assert keys == ["action", "actor", "details", "previous", "reason", "seq", "subject", "time"]
 
 
+@pytest.mark.requirement("TRAIL-4")
 def test_each_entry_carries_the_digest_of_the_line_before_and_the_first_one_zeros(laboratory):
     enter(laboratory, "looked", "looked again")
     lines = trail_file(laboratory).read_bytes().split(b"\n")[:-1]
@@ -112,6 +113,7 @@ def test_a_writer_that_waits_goes_on_when_the_first_has_ended(laboratory):
     assert [entry.action for entry in read_trail(laboratory.runs).entries] == ["founded", "first", "second"]
 
 
+@pytest.mark.requirement("RERUN-7")
 def test_many_writers_at_once_leave_one_whole_chain(laboratory):
     def work():
         for _ in range(5):
@@ -128,6 +130,7 @@ def test_many_writers_at_once_leave_one_whole_chain(laboratory):
     assert len(reading.entries) == 31
 
 
+@pytest.mark.requirement("TRAIL-4")
 def test_every_byte_is_made_durable_before_the_next_step(laboratory):
     calls = []
     with laboratory.trail() as writer, patched_system(lambda name, _: calls.append(name)):
@@ -182,6 +185,7 @@ def test_after_a_failed_append_the_same_writer_adds_no_more_and_the_next_one_rec
     assert reading.is_orderly
 
 
+@pytest.mark.requirement("RERUN-7")
 def test_a_disk_that_fills_between_line_and_head_leaves_a_trail_that_recovers(laboratory, monkeypatch):
     def refuse(*_):
         raise OSError(errno.ENOSPC, "full")
@@ -247,6 +251,7 @@ class TestALineTornByAPowerCut:
         cut.length = len(line)
         return cut
 
+    @pytest.mark.requirement("TRAIL-5")
     def test_is_set_aside_wherever_it_was_cut(self, laboratory, torn):
         for length in range(1, torn.length):
             bytes_left = torn(length)

@@ -1,4 +1,5 @@
 import os
+import shutil
 import threading
 from contextlib import contextmanager
 
@@ -49,11 +50,11 @@ def test_outcomes_come_in_the_order_of_their_numbers_and_runs(laboratory):
     laboratory.run("ZINC-1")
     laboratory.run()
     outcomes = verify_workspace(laboratory.runs, None).outcomes
-    trail = [f"1.{n}" for n in range(1, 7)]
+    trail = [f"1.{n}" for n in range(1, 8)]
     folio = [check.number for check in FOLIO_CHECKS]
     assert [each.number for each in outcomes] == [
         *trail,
-        *("2.1", "2.2", "2.2", "2.3", "2.4", "2.5"),
+        *("2.1", "2.2", "2.2", "2.3", "2.4", "2.5", "2.6"),
         *folio,
         *folio,
     ]
@@ -72,7 +73,7 @@ def test_a_new_workspace_passes_and_says_that_nothing_was_run(tmp_path):
 def test_every_verification_says_that_no_witness_was_asked(laboratory):
     assert (
         "compared with no head kept elsewhere"
-        in outcome_of(verify_workspace(laboratory.runs, None), "1.5").notes[0]
+        in outcome_of(verify_workspace(laboratory.runs, None), "1.7").notes[0]
     )
 
 
@@ -107,6 +108,7 @@ class TestARun:
         assert verification.exit_code == ExitCode.NOT_CHECKABLE
         assert "running now" in outcome_of(verification, "2.2").notes[0]
 
+    @pytest.mark.requirement("INCIDENT-1")
     def test_that_was_killed_is_a_finding_until_it_is_entered(self, laboratory):
         allot(laboratory, "computed")
         killed = outcome_of(verify_workspace(laboratory.runs, None), "2.2")
@@ -235,6 +237,7 @@ class TestNamedFolios:
             verification = verify_workspace(laboratory.runs, [laboratory.runs.__class__(name)])
             assert verification.exit_code == ExitCode.DONE
 
+    @pytest.mark.requirement("TRAIL-3")
     def test_that_were_deleted_are_findings_not_wrong_names(self, laboratory):
         folio = laboratory.run()
         folio.rename(laboratory.runs.parent / "elsewhere")
@@ -268,6 +271,7 @@ class TestAFolioOutsideAnyWorkspace:
     def archived(self, laboratory, tmp_path):
         return laboratory.run().rename(tmp_path / "run-0001")
 
+    @pytest.mark.requirement("RECORD-2")
     def test_passes_by_itself_and_says_what_could_not_be_checked(self, archived):
         outcomes = {each.number: each for each in verify_folio(archived, None)}
         not_checkable = {number for number, each in outcomes.items() if each.outcome == "not checkable"}
@@ -286,11 +290,17 @@ class TestAFolioOutsideAnyWorkspace:
         [place] = [each for each in outcomes if each.number == "3.7"]
         assert place.outcome == "not checkable"
 
-    def test_is_checked_by_itself_when_it_is_named_beside_a_workspace(self, archived, tmp_path):
+    def test_is_held_against_the_trail_of_the_workspace_that_is_named_with_it(self, laboratory, tmp_path):
+        copy = tmp_path / "on a stick" / "any name"
+        shutil.copytree(laboratory.run(), copy)
+        assert verify_workspace(laboratory.runs, [copy]).exit_code == ExitCode.DONE
+
+    def test_is_unknown_to_the_trail_of_another_workspace(self, archived, tmp_path):
         other = Laboratory(tmp_path / "other" / "runs")
         other.found()
         verification = verify_workspace(other.runs, [archived])
-        assert verification.exit_code == ExitCode.NOT_CHECKABLE
+        assert verification.exit_code == ExitCode.FINDING
+        assert outcome_of(verification, "3.10").notes == ("the audit trail knows no run IRON-7/run-0001",)
 
     def test_needs_no_workspace_at_all(self, archived):
         verification = verify_lone_folios([archived])
@@ -299,6 +309,7 @@ class TestAFolioOutsideAnyWorkspace:
         with pytest.raises(InputError, match="absent is not there"):
             verify_lone_folios([archived.with_name("absent")])
 
+    @pytest.mark.requirement("RECORD-4")
     def test_is_checked_against_a_trail_that_is_given(self, laboratory):
         folio = laboratory.run()
         outcomes = verify_folio(folio, read_trail(laboratory.runs))
@@ -445,6 +456,7 @@ def test_a_forged_trail_whose_details_have_odd_types_is_judged_without_stumbling
     laboratory.settle()
 
 
+@pytest.mark.requirement("RECORD-4")
 def test_verification_writes_nothing(laboratory):
     laboratory.run()
     before = {path: path.stat().st_mtime_ns for path in laboratory.runs.rglob("*")}

@@ -39,6 +39,7 @@ def test_the_name_decides_what_a_file_is_and_its_bytes_have_to_agree() -> None:
     assert "a file compressed with gzip" in refused(gzip.compress(TEXT), "d.csv")
 
 
+@pytest.mark.requirement("SOURCE-3")
 @pytest.mark.parametrize("cut", [3, 12, 20, -1])
 def test_a_cut_file_is_refused(cut: int) -> None:
     assert refused(gzip.compress(TEXT)[:cut]) == "the compressed file was cut short"

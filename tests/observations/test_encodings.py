@@ -97,6 +97,7 @@ def test_a_nul_character_in_utf_16_is_refused_where_it_stands() -> None:
     assert refused("g,y\na,\x001\n".encode("utf-16"), "utf-16")[:2] == ("d.csv:2:3", "a NUL character")
 
 
+@pytest.mark.requirement("SOURCE-4")
 def test_windows_1252_is_named_where_utf_8_was_expected_with_the_letter_it_would_give() -> None:
     place, found, advice = refused(TEXT.encode("cp1252"), "utf-8")
     assert place == "d.csv:2:5"

@@ -19,6 +19,7 @@ def faults_of(lines: list[str], *rows: tuple[int, str]) -> list[str]:
     return [str(fault) for fault in caught.value.faults]
 
 
+@pytest.mark.requirement("CHANGE-2")
 def test_an_excluded_value_is_not_analysed_and_stays_on_record():
     found = read_one("", LINES, excluded((3, "0.71")))
     assert [row.text for row in found.rows] == ["0.31", "0.42", "0.52", "0.61"]

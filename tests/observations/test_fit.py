@@ -126,6 +126,7 @@ def test_two_pairs_of_levels_cannot_bear_one_label(section: str) -> None:
     assert misfits("comparisons: [{name: x, against: a, adjust: holm}]", levels) == []
 
 
+@pytest.mark.requirement("NUMBERS-3")
 def test_one_level_and_one_value_a_level_are_too_few() -> None:
     assert [reason.partition(" - ")[0] for reason in misfits("", ("1",))] == [
         "values.csv: the data have one level only (1)"

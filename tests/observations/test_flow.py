@@ -34,6 +34,7 @@ def test_a_study_with_everything_adds_up():
 class TestTheCheck:
     """A value that was lost or made on the way is an internal fault, never silent."""
 
+    @pytest.mark.requirement("REPORT-6")
     @pytest.mark.parametrize("received", [0, 2])
     def test_counts_that_do_not_add_up_stop_the_run(self, received):
         with pytest.raises(MachineError, match="the counts of level 'a' do not add up"):

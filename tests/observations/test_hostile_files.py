@@ -333,6 +333,7 @@ def test_at_least_forty_kinds_are_tried() -> None:
     assert len({hostile.name for hostile in ALL}) == len(ALL) >= 40
 
 
+@pytest.mark.requirement("NUMBERS-3")
 @pytest.mark.parametrize("hostile", ALL, ids=lambda hostile: hostile.name)
 def test_a_hostile_file_is_refused_with_its_place_and_words(hostile: Hostile) -> None:
     content = hostile.make()

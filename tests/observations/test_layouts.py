@@ -216,6 +216,7 @@ def test_files_of_different_forms_are_read_together() -> None:
 # Facts in columns
 
 
+@pytest.mark.requirement("SOURCE-5")
 def test_a_column_with_a_fact_of_the_measurement_has_to_be_there_and_filled() -> None:
     facts = (MeasurementFact("operator", None, "analyst"),)
     files = [("d.csv", b"g,y,analyst\na,1,K.\nb,2, \n")]

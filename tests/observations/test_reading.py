@@ -25,6 +25,7 @@ def cells(observations: Observations) -> list[tuple[int, str, str]]:
     return [(row.line, row.level, row.text) for row in observations.rows]
 
 
+@pytest.mark.requirement("SOURCE-4")
 def test_a_value_is_the_decimal_that_was_typed_and_knows_its_line() -> None:
     rows = read(GOOD).rows
     assert [(row.line, row.level, row.text) for row in rows] == [

@@ -641,6 +641,7 @@ def test_every_missing_column_is_named_at_once() -> None:
     }
 
 
+@pytest.mark.requirement("SOURCE-4")
 def test_a_decimal_comma_is_ambiguous_in_every_response() -> None:
     content = 'method,nitrate,nitrite\nkit-a,"1,5","2,5"\nkit-b,"1,5",2\n'
     plan = replace(TWO, order=None, decimal_mark="comma")

@@ -4,6 +4,7 @@ import csv
 import io
 from fractions import Fraction
 
+import pytest
 from hypothesis import example, given
 from hypothesis import strategies as st
 
@@ -47,6 +48,7 @@ def written(rows: list[tuple[str, str, str]], separator: str, line_end: str, quo
     return sink.getvalue()
 
 
+@pytest.mark.requirement("SOURCE-4")
 @given(
     table=tables,
     separator=st.sampled_from(list(SEPARATORS)),

@@ -238,6 +238,21 @@ def test_a_cell_on_several_lines_is_one_cell_wherever_a_stretch_ends() -> None:
     agree(written([("lot", "assay", "note"), *rows], quoting=csv.QUOTE_ALL).encode(), PLAN)
 
 
+FOUND_BY_SEARCH = (
+    b'"x\ny"lot,assay,note\nA,0.00,x\nA,0.00,x\n',
+    b'lot,assay,note\nA,0.00,"x\n"A,0.00,x\n',
+    b'lot,assay,note\nC,1,2\nA,0.00,"x\n"A,0.00,x\nB,1,2\n',
+)
+
+
+@pytest.mark.parametrize("block", [7, 16, 48, 1 << 20])
+@pytest.mark.parametrize("content", FOUND_BY_SEARCH)
+def test_a_row_that_breaks_in_a_later_stretch_than_it_begins_in_is_not_lost(
+    content: bytes, block: int
+) -> None:
+    assert isinstance(agree(content, PLAN, (), block), str)
+
+
 @pytest.mark.parametrize("block", [7, 48, 1 << 20])
 def test_a_quotation_mark_that_is_never_closed_spoils_its_own_row_alone(block: int) -> None:
     before, after = content_of(rows_of("AB", 40)), b"".join(b"A,%d.5\n" % at for at in range(3000))

@@ -31,6 +31,7 @@ def test_values_in_the_unit_of_the_plan_are_taken_as_they_are():
     assert [row.value for row in found.rows] == [Decimal10(150, -2), Decimal10(25, -1), Decimal10(3, 0)]
 
 
+@pytest.mark.requirement("SOURCE-3")
 def test_another_unit_is_refused_with_its_place():
     (fault,) = faults_of(UNITS, lines("a,1,mg/L", "a,2,ug/L", "b,3,mg/L"))
     assert fault.startswith("values.csv:3:5: column `unit` holds `ug/L`; the study has `mg/L`")
@@ -42,6 +43,7 @@ def test_a_unit_that_is_only_alike_is_another_unit(unit):
     assert len(faults_of(UNITS, lines("a,1,mg/L", f"a,2,{unit}", "b,3,mg/L"))) == 1
 
 
+@pytest.mark.requirement("SOURCE-5")
 def test_a_blank_unit_is_refused():
     (fault,) = faults_of(CONVERTED, lines("a,1,mg/L", "a,2, ", "b,3,mg/L"))
     assert fault.startswith("values.csv:3:5: column `unit` is blank")

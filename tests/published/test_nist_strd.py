@@ -17,6 +17,7 @@ def test_there_are_seventy_seven_certified_values():
     assert sum(len(read_dataset(name).certified) for name in NAMES) == 77
 
 
+@pytest.mark.requirement("NUMBERS-1")
 @pytest.mark.parametrize("name", NAMES)
 def test_certified_values_are_equal_after_rounding_to_their_printed_digits(name):
     dataset = read_dataset(name)

@@ -8,7 +8,7 @@ from assayfolio.errors import Place
 from assayfolio.evaluation.apply import evaluate
 from assayfolio.exact import parse_decimal
 from assayfolio.findings_document import findings_bytes
-from assayfolio.observations.values import Observation, Observations, RawFile
+from assayfolio.observations.values import CountFlow, Observation, Observations, RawFile
 from assayfolio.report.facts import AttachedFile, InputFacts, ReportInput, RunFacts
 from assayfolio.study.plan import (
     AgainstReference,
@@ -81,6 +81,9 @@ def observations(
         levels=tuple(values),
         extra_columns=(),
         rows=rows,
+        flow=tuple(
+            CountFlow(level, len(texts), 0, 0, 0, 0, 0, len(texts)) for level, texts in values.items()
+        ),
     )
 
 

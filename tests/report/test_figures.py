@@ -46,6 +46,7 @@ def rings(svg: bytes) -> list[ET.Element]:
 DRAWN = [case for case in CASES if case != "large file"]
 
 
+@pytest.mark.requirement("REPORT-4")
 @pytest.mark.parametrize("case", DRAWN)
 def test_every_value_is_one_circle_in_the_plot_of_values(case):
     basis = Basis(CASES[case]())
@@ -69,6 +70,7 @@ def test_many_thousand_values_are_counted_in_classes():
     assert len(elements(picture.svg, "rect")) > 100
 
 
+@pytest.mark.requirement("REPORT-4")
 def test_every_comparison_has_its_estimate_and_interval():
     basis = Basis(CASES["unequal"]())
     family = basis.response.comparisons[0]
@@ -81,6 +83,7 @@ def test_every_comparison_has_its_estimate_and_interval():
     assert len(intervals) == 3 * 15  # a line and two flat ends each
 
 
+@pytest.mark.requirement("REPORT-11")
 @pytest.mark.parametrize("case", CASES)
 def test_figures_say_in_words_what_they_show_and_stay_within_their_width(case):
     basis = Basis(CASES[case]())

@@ -40,6 +40,7 @@ def test_every_adjustment_that_a_plan_can_ask_for_has_name_rule_and_source():
         assert words.references or adjust == "none"
 
 
+@pytest.mark.requirement("REPORT-15")
 @pytest.mark.parametrize("case", CASES)
 def test_every_source_that_a_method_names_is_in_the_list(case):
     keys = [key for method in methods_of(Basis.of_each(CASES[case]())) for key in method.references]

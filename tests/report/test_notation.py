@@ -33,6 +33,7 @@ def read(text: str) -> str:
     return text.replace(NARROW, " ").replace("\u2212", "-")
 
 
+@pytest.mark.requirement("REPORT-9")
 @pytest.mark.parametrize(
     ("value", "places", "printed"),
     [
@@ -69,6 +70,7 @@ def test_powers_of_ten_are_superscripts(value, digits, printed):
     assert read(scientific(value, digits)) == printed
 
 
+@pytest.mark.requirement("REPORT-2")
 @pytest.mark.parametrize(
     ("p", "printed"),
     [
@@ -105,6 +107,7 @@ def test_a_p_value_never_reads_as_alpha_unless_it_is(p, alpha, printed):
     assert read(probability(p, alpha)) == printed
 
 
+@pytest.mark.requirement("REPORT-2")
 @given(
     st.floats(0, 1, exclude_min=True), st.sampled_from([Fraction(1, 20), Fraction(1, 100), Fraction(1, 1000)])
 )
@@ -142,6 +145,7 @@ def test_a_planned_number_prints_exactly(value, printed):
     assert read(decimal(value)) == printed
 
 
+@pytest.mark.requirement("REPORT-9")
 def test_a_mean_has_one_decimal_more_than_the_data():
     scale = Scale.of([Fraction("10.02"), Fraction("9.88")], -2, "mg/L")
     assert (scale.value(Fraction("9.88")), scale.mean(Fraction(10005, 1000))) == ("9.88", "10.005")
@@ -165,6 +169,7 @@ def test_more_digits_than_anyone_can_read_are_rounded():
     assert len(scale.mean(Fraction(10**37))) <= 21
 
 
+@pytest.mark.requirement("WORDS-6")
 def test_standard_deviations_have_at_most_three_digits_and_none_is_lost():
     scale = Scale.of([Fraction("10.02")], -2, None)
     largest = Root.of(Fraction("0.114") ** 2)

@@ -15,6 +15,7 @@ def flat(text: str) -> str:
     return text.replace("\u202f", " ").replace("\u00a0", " ").replace("\u2212", "-")
 
 
+@pytest.mark.requirement("PLAN-2", "REPORT-12")
 @pytest.mark.parametrize("case", CASES)
 def test_every_page_is_recognisable_as_part_of_this_report(case, pages_of):
     content = CASES[case]()
@@ -28,6 +29,7 @@ def test_every_page_is_recognisable_as_part_of_this_report(case, pages_of):
         assert "not pre-registered" in page
 
 
+@pytest.mark.requirement("REPORT-13")
 @pytest.mark.parametrize("case", CASES)
 def test_every_page_says_draft_or_that_no_sign_off_is_planned(case, pages_of):
     planned = bool(CASES[case]().study.sign_off)
@@ -36,6 +38,7 @@ def test_every_page_says_draft_or_that_no_sign_off_is_planned(case, pages_of):
         assert ("the study plans no sign-off" in page) is not planned
 
 
+@pytest.mark.requirement("REPORT-12")
 @pytest.mark.parametrize("case", CASES)
 def test_the_last_page_ends_with_an_end_mark(case, pages_of):
     content = CASES[case]()
@@ -61,9 +64,10 @@ REQUIRED_ON_THE_FIRST_PAGE = [
     "mg/L",
     "simultaneous 95 %",
     "Equivalence was not tested.",
-    "24 received, 0 excluded, 24 analysed (this version has no exclusions)",
+    "24 received, 0 excluded, 24 analysed; n = 6 at each of 4 levels",
     "Deviations",
-    "this version records none",
+    "Deviations",
+    "the plan fixes no numbers of values and no worksheet",
     "level means, mg/L",
     "difference, mg/L; in the order of Table 6",
     "difference, mg/L; in the order of Table 7",
@@ -78,6 +82,7 @@ REQUIRED_ON_THE_FIRST_PAGE = [
 ]
 
 
+@pytest.mark.requirement("PLAN-3", "REPORT-14", "REPORT-16", "WORDS-9")
 @pytest.mark.parametrize("words", REQUIRED_ON_THE_FIRST_PAGE)
 def test_the_first_page_holds(words, pages_of):
     assert words in flat(pages_of("balanced")[0])
@@ -97,8 +102,8 @@ REQUIRED_IN_THE_REPORT = [
     "Variance ratio F",
     "Within levels (residual)",
     "Everything that the plan asks for is reported.",
-    "This version records no deviations from the plan",
-    "this version has no exclusions and analyses every value in the file",
+    "The plan fixes neither numbers of values nor a worksheet",
+    "Every value is analysed as it was received.",
     "each family keeps its own error rate",
     "A mean that lies exactly between two printed figures is rounded to the even digit.",
     "exploratory, as the plan was not pre-registered",
@@ -127,11 +132,13 @@ REQUIRED_IN_THE_REPORT = [
 ]
 
 
+@pytest.mark.requirement("REPORT-8", "REPORT-24")
 @pytest.mark.parametrize("words", REQUIRED_IN_THE_REPORT)
 def test_the_report_holds(words, pages_of):
     assert words in flat(" ".join(pages_of("balanced")))
 
 
+@pytest.mark.requirement("RECORD-12")
 def test_every_input_stands_with_its_digest(pages_of):
     text = " ".join(pages_of("balanced"))
     run = CASES["balanced"]().run
@@ -139,6 +146,7 @@ def test_every_input_stands_with_its_digest(pages_of):
     assert f"SHA-256 {run.findings_sha256}" in text
 
 
+@pytest.mark.requirement("REPORT-15")
 def test_every_value_is_listed_beside_its_line(pages_of):
     text = " ".join(pages_of("balanced"))
     listing = text[text.index("Data listing") :]
@@ -201,6 +209,7 @@ def test_further_answers_are_announced_on_the_first_page(pages_of):
     assert "Answers, continued" in pages[int(announced[2]) - 1]
 
 
+@pytest.mark.requirement("PLAN-2")
 @pytest.mark.parametrize("case", CASES)
 def test_every_first_page_says_that_results_are_exploratory(case, pages_of):
     assert "Not pre-registered: every result is exploratory." in pages_of(case)[0]

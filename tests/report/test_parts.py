@@ -127,6 +127,7 @@ def test_the_plan_shows_weights_scores_margins_and_limits():
     assert rows(scores)[1] == ["95", "9.5"]
 
 
+@pytest.mark.requirement("PLAN-13")
 def test_a_margin_stands_with_its_source():
     (margins,) = [t for t in tables(section("two responses", "Plan")) if "Margins" in read(t.caption)]
     assert rows(margins) == [
@@ -203,6 +204,7 @@ def test_residuals_are_shown_in_measuring_order_where_it_is_known():
     assert "in the order of the file;" in captions[1]
 
 
+@pytest.mark.requirement("REPORT-7")
 def test_proposals_name_lines_values_and_both_limits_and_say_that_nothing_was_removed():
     part = section("sixty levels", "Outlier proposals")
     assert "Nothing was removed" in words(part)
@@ -270,6 +272,7 @@ def test_the_planned_test_carries_the_verdict():
     assert [row[-1] for row in rows(means)] == ["for comparison", "the planned test", "for comparison"]
 
 
+@pytest.mark.requirement("REPORT-1")
 def test_effect_sizes_stand_with_the_interval_of_cohens_f():
     (_, effects) = tables(section("trend", "Analysis of variance"))
     effect = CASES["trend"]().findings.responses[0].effect
@@ -277,6 +280,7 @@ def test_effect_sizes_stand_with_the_interval_of_cohens_f():
     assert rows(effects)[3][3:] == [f"{end:.3f}" for end in effect.cohen_f_ci]
 
 
+@pytest.mark.requirement("REPORT-10")
 def test_levels_drawn_at_random_are_not_compared_with_one_another():
     assert "single levels are not compared" in words(section("random days", "Analysis of variance"))
     assert read(composed("random days").cards[0].question) == "Do levels of day add to the spread of acidity?"
@@ -292,6 +296,7 @@ def test_a_test_adjusted_for_several_responses_says_so():
 # comparisons
 
 
+@pytest.mark.requirement("REPORT-3")
 @pytest.mark.parametrize(
     ("case", "name", "words_in_it"),
     [
@@ -383,6 +388,7 @@ def test_an_equivalence_card_counts_its_pairs_and_shows_the_interval():
 # spread, precision, criteria
 
 
+@pytest.mark.requirement("WORDS-4")
 def test_ratios_of_variances_have_intervals():
     (table,) = tables(section("separate variances", "Spread"))
     spread = CASES["separate variances"]().findings.responses[0].spread
@@ -390,6 +396,7 @@ def test_ratios_of_variances_have_intervals():
     assert all("–" not in row[2:4] for row in rows(table))
 
 
+@pytest.mark.requirement("REPORT-5")
 @pytest.mark.parametrize("case", ["separate variances", "balanced"])
 def test_the_standard_deviation_of_each_level_stands_once_with_its_interval(case):
     (table,) = tables(section(case, "Data"))
@@ -409,6 +416,7 @@ def test_long_figures_are_spread_over_tables_of_their_proper_size():
     assert sum(heads(table).count("Largest") for table in found) == 1
 
 
+@pytest.mark.requirement("REPORT-19")
 def test_the_total_has_the_name_that_the_plan_gives_it():
     (precision, means) = tables(section("random days", "Precision"))
     assert [row[0] for row in rows(precision)] == [
@@ -437,6 +445,7 @@ def test_fixed_levels_have_their_repeatability_alone():
     assert len(tables(part)[0].rows) == 1
 
 
+@pytest.mark.requirement("PLAN-13")
 def test_a_criterion_shows_value_limit_and_verdict():
     (table,) = tables(section("two responses", "Acceptance criteria: ash"))
     assert rows(table) == [

@@ -89,6 +89,7 @@ def test_the_loggers_are_left_as_they_were():
     assert (list(logger.handlers), logger.propagate, logger.level) == before
 
 
+@pytest.mark.requirement("RERUN-5")
 def test_a_character_that_the_font_lacks_fails_the_rendering():
     with pytest.raises(RenderingError, match=r"U\+4E2D"):
         pdf.write(lay_out("<p>中</p>"), (), "2026-11-30T09:58:31Z")

@@ -34,6 +34,7 @@ ELSEWHERE = {
 }
 
 
+@pytest.mark.requirement("NUMBERS-4")
 @pytest.mark.parametrize("where", ELSEWHERE)
 def test_a_report_is_the_same_bytes_with(where, rendered, tmp_path):
     changes, before, other = ELSEWHERE[where]

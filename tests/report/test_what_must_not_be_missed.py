@@ -86,6 +86,7 @@ def test_counts_of_limits_name_what_is_amiss_first():
     assert criteria_count([unknown]) == "not assessable"
 
 
+@pytest.mark.requirement("PLAN-6")
 def test_what_is_not_reported_is_named_on_the_first_page():
     content = CASES["two responses"]()
     gap = NotReported("comparison: planned contrasts", "no reason", "protein")
@@ -144,6 +145,7 @@ def tables_of(case: str, section: str):
     ]
 
 
+@pytest.mark.requirement("REPORT-1")
 @pytest.mark.parametrize("case", ["balanced", "unequal", "trend", "two responses", "large numbers"])
 def test_every_table_with_intervals_has_its_critical_value(case):
     families = [family for found in CASES[case]().findings.responses for family in found.comparisons]

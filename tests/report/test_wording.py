@@ -61,6 +61,7 @@ def words_of(content: ReportContent) -> str:
     return f"{text} {alternatives}"
 
 
+@pytest.mark.requirement("WORDS-1", "WORDS-3", "WORDS-4")
 @pytest.mark.parametrize("case", CASES)
 @pytest.mark.parametrize("what", FORBIDDEN)
 def test_a_report_never_states(case, what):
@@ -69,6 +70,7 @@ def test_a_report_never_states(case, what):
     assert found is None, text[max(0, found.start() - 60) : found.end() + 60]
 
 
+@pytest.mark.requirement("WORDS-1")
 @pytest.mark.parametrize("what", FORBIDDEN)
 def test_no_sentence_of_the_package_or_the_templates_states(what):
     package = Path(compose.__code__.co_filename).parent
@@ -80,6 +82,7 @@ def test_no_sentence_of_the_package_or_the_templates_states(what):
             assert found is None or what == "stars", f"{path.name}: {sentence}"
 
 
+@pytest.mark.requirement("WORDS-2")
 @pytest.mark.parametrize("case", CASES)
 def test_every_answer_says_what_it_does_not_mean(case):
     for card in compose(CASES[case]()).cards:
@@ -90,6 +93,7 @@ def test_every_answer_says_what_it_does_not_mean(case):
             assert any(words in caution for words in WHAT_AN_ANSWER_DOES_NOT_MEAN), caution
 
 
+@pytest.mark.requirement("WORDS-2")
 @pytest.mark.parametrize("case", CASES)
 def test_a_difference_is_never_taken_for_a_word_on_equivalence(case):
     content = CASES[case]()
@@ -104,6 +108,7 @@ def test_a_difference_is_never_taken_for_a_word_on_equivalence(case):
         assert all(words in caution for caution in cautions)
 
 
+@pytest.mark.requirement("WORDS-8")
 @pytest.mark.parametrize("case", CASES)
 def test_every_planned_question_has_an_answer(case):
     content = CASES[case]()

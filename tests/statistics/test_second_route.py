@@ -191,6 +191,7 @@ def test_what_is_not_a_number_does_not_agree(wrong):
         assert failure.digits == 0
 
 
+@pytest.mark.requirement("NUMBERS-3")
 @pytest.mark.parametrize("name", NAMES)
 def test_nist_data_sets_agree_to_fourteen_digits_whatever_their_common_offset(name):
     groups = decimals(read_dataset(name).groups)
@@ -307,6 +308,7 @@ def test_of_a_family_with_many_different_sizes_fewer_rows_are_recomputed_but_fou
     assert (route.agreements[-1].compared, route.agreements[-1].of) == (5, 7)
 
 
+@pytest.mark.requirement("NUMBERS-2")
 @pytest.mark.parametrize("module", [second_route_module, second_tails, second_nodes])
 def test_the_second_route_is_built_of_nothing_that_the_first_is_built_of(module):
     tree = ast.parse(Path(module.__file__).read_text("utf-8"))

@@ -40,6 +40,7 @@ def test_the_smallest_study_lacks_all_that_a_laboratory_can_require() -> None:
 WHOLE = [requirement for requirement in REQUIREMENTS if requirement != "margin-source"]
 
 
+@pytest.mark.requirement("PLAN-4", "SOURCE-5")
 @pytest.mark.parametrize("requirement", WHOLE)
 def test_each_requirement_is_met_by_a_full_study_and_not_by_the_smallest(requirement: str) -> None:
     assert required(RECEIVED if requirement in MEASUREMENT_KEYS else FULL, requirement) == []
@@ -54,6 +55,7 @@ def test_a_fact_that_is_missing_is_looked_for_among_the_facts() -> None:
     ]
 
 
+@pytest.mark.requirement("PLAN-13")
 def test_a_source_is_required_of_each_margin_that_there_is() -> None:
     assert required(SMALLEST, "margin-source") == []
     assert required(FULL, "margin-source") == [

@@ -51,6 +51,7 @@ FILES = {
 }
 
 
+@pytest.mark.requirement("SOURCE-1")
 @pytest.mark.parametrize(("typed", "fault"), FILES.values(), ids=FILES.keys())
 def test_a_file_is_refused_with_its_place_and_what_was_expected(typed: str, fault: str) -> None:
     assert faults_of(edited(SMALLEST, "values.csv", typed)) == [fault]

@@ -551,6 +551,7 @@ outliers: {test: dixon}
     ]
 
 
+@pytest.mark.requirement("PLAN-3", "RECORD-13")
 def test_an_empty_mapping_lacks_all_that_is_compulsory() -> None:
     assert faults_of("{}") == [
         "1:1: the key `study` is missing - add `study: ...`",

@@ -269,6 +269,7 @@ def test_the_headline_speaks_of_the_exclusions() -> None:
     assert refusal.match(headline.removesuffix("$"))
 
 
+@pytest.mark.requirement("TRAIL-14")
 @pytest.mark.parametrize(
     "reason",
     [

@@ -190,6 +190,7 @@ def objects(schema: object) -> Iterator[dict[str, Any]]:
             yield from objects(part)
 
 
+@pytest.mark.requirement("SCHEMA-1")
 @pytest.mark.parametrize("name", MAPPINGS)
 def test_a_mapping_has_the_keys_that_the_reader_knows_and_no_others(name: str) -> None:
     schema = mapping_schema(name)

@@ -7,6 +7,7 @@ from assayfolio.evaluation.apply import evaluate
 from assayfolio.findings import Findings
 from assayfolio.observations.reading import read_all_observations
 from assayfolio.observations.values import Observations
+from assayfolio.study.exclusions import read_exclusions
 from assayfolio.study.plan import StudyDefinition
 from assayfolio.study.reading import read_study
 
@@ -17,6 +18,7 @@ DEMO_STUDIES = (
     "cider-vinegar",
     "oat-drying",
     "rye-flour",
+    "well-nitrite",
     "whey-moisture",
 )
 
@@ -75,4 +77,7 @@ def demo_study(name: str) -> tuple[StudyDefinition, tuple[Observations, ...]]:
     """A study of the demonstration laboratory, with its data."""
     study = read_study((CONFIGS / f"{name}.yaml").read_bytes(), f"configs/{name}.yaml")
     content = (CONFIGS / study.data.file).read_bytes()
-    return study, read_all_observations([(study.data.file, content)], study.data, study.measurement)
+    left_out = study.data.exclusions
+    exclusions = () if left_out is None else read_exclusions((CONFIGS / left_out).read_bytes(), left_out)
+    files = [(study.data.file, content)]
+    return study, read_all_observations(files, study.data, study.measurement, exclusions)

@@ -176,6 +176,7 @@ def test_broken_data_are_refused_with_their_place(name, tmp_path):
     assert_refused(Bench(tmp_path / "w", STUDY, content), place, words)
 
 
+@pytest.mark.requirement("SOURCE-3")
 def test_a_wrong_replicate_count_is_refused(tmp_path):
     study = STUDY.replace("alpha", "alpha", 1).replace("levels:", "replicates: 4\n  levels:")
     assert_refused(Bench(tmp_path / "w", study), "values.csv", "4")
@@ -203,6 +204,7 @@ def test_a_missing_data_file_refuses_the_run_but_not_the_check(tmp_path):
     assert "values.csv" in answer.err
 
 
+@pytest.mark.requirement("SOURCE-1")
 def test_a_data_file_reached_through_a_link_that_leaves_the_workspace_is_refused(tmp_path):
     bench = Bench(tmp_path / "w", STUDY, None)
     outside = tmp_path / "outside.csv"

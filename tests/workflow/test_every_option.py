@@ -132,6 +132,7 @@ def test_its_folio_is_verified(case, ran):
     assert answer.code == 0, answer.out
 
 
+@pytest.mark.requirement("PLAN-6")
 @marked(*STUDIES)
 def test_every_planned_question_is_in_the_findings_and_has_a_table_in_the_report(case, ran):
     study, definition = ran(case), DEFINITIONS[case]

@@ -61,7 +61,15 @@ SECTIONS_OF_KEYS = {
     "CRITERION_KEYS": "criteria",
     "SIGN_OFF_KEYS": "sign-off",
 }
-NOT_OF_A_STUDY = {"LABORATORY_KEYS", "PAPERS", "REQUIREMENTS", "FALSE_DISCOVERY_WORDS"}
+NOT_OF_A_STUDY = {
+    "LABORATORY_KEYS",
+    "SEPARATION_KEYS",
+    "PEOPLE_FILE_KEYS",
+    "PERSON_KEYS",
+    "PAPERS",
+    "REQUIREMENTS",
+    "FALSE_DISCOVERY_WORDS",
+}
 NOT_COMPUTED = {"MISSING": {"omit"}, "BELOW_LIMIT": {"omit", "half-limit", "limit"}}
 LISTS_OF_WORDS = {
     name: words for name, words in vars(vocabulary).items() if name.isupper() and isinstance(words, tuple)

@@ -34,6 +34,7 @@ def changes(tmp_path_factory):
     return int(re.search(r"changes (\d+)", ended.stderr)[1])
 
 
+@pytest.mark.requirement("TRAIL-1")
 @pytest.mark.slow
 @pytest.mark.parametrize("part", range(MOMENTS))
 def test_a_run_killed_at_any_moment_is_explained_and_the_next_one_works(part, changes, tmp_path):

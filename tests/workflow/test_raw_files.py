@@ -76,6 +76,7 @@ def test_a_plan_can_be_checked_before_any_of_its_files_is_there(bench: Bench) ->
     assert "there is no such file" in fault(bench, "data/run-1.csv", "data/a.csv")
 
 
+@pytest.mark.requirement("SOURCE-1")
 @pytest.mark.parametrize("inside", [True, False], ids=["inside", "outside"])
 def test_a_link_may_lead_about_the_workspace_but_not_out_of_it(
     bench: Bench, tmp_path_factory: pytest.TempPathFactory, inside: bool
@@ -114,7 +115,9 @@ def test_two_files_of_one_name_are_refused_since_a_folio_keeps_them_side_by_side
     other = bench.data.parent / "more"
     other.mkdir()
     bench.write(other / "run-1.csv", "x")
-    assert "two files are called run-1.csv" in fault(bench, "data/run-1.csv", "data/more/run-1.csv")
+    words = fault(bench, "data/run-1.csv", "data/more/run-1.csv")
+    assert "data/more/run-1.csv: has the same file name as" in words
+    assert "data/run-1.csv - a folio keeps the data files side by side" in words
     bench.write(other / "Run-1.csv", "x")
     assert "differ only in case" in fault(bench, "data/run-1.csv", "data/more/Run-1.csv")
 
@@ -137,6 +140,7 @@ def test_more_than_a_thousand_files_are_refused(bench: Bench) -> None:
     assert "1,001 files, more than 1,000" in fault(bench, "data/many/*.csv")
 
 
+@pytest.mark.requirement("RECORD-12")
 def test_every_file_is_hashed_kept_and_read_back(bench: Bench) -> None:
     answer = bench("run", bench.study)
     assert answer.code == 0, answer.err
@@ -164,6 +168,7 @@ def test_the_findings_of_several_files_are_those_of_one(
     assert several.read_bytes() == single.read_bytes()
 
 
+@pytest.mark.requirement("TRAIL-2")
 def test_a_run_that_is_refused_enters_the_files_that_it_saw(bench: Bench) -> None:
     bench.write(bench.data.parent / "run-2.csv", "method,sulfate\ngravimetric,x\n")
     answer = bench("run", bench.study)

@@ -49,6 +49,7 @@ def three(tmp_path_factory):
 
 
 class TestEntering:
+    @pytest.mark.requirement("SOURCE-6")
     def test_a_data_file_is_entered_once_before_its_first_use(self, tmp_path):
         bench = Bench(tmp_path / "w")
         bench.run()
@@ -73,6 +74,7 @@ class TestEntering:
         assert details["exclusions"] is None
         assert set(details["inputs"]) == {"configs/lab.yaml", "configs/study.yaml", "configs/data/values.csv"}
 
+    @pytest.mark.requirement("TRAIL-2")
     def test_data_that_are_refused_are_entered_before_they_are_looked_into(self, tmp_path, monkeypatch):
         bench = Bench(tmp_path / "w", STUDY, DATA.replace("48.2", "forty"))
         seen = []
@@ -118,6 +120,7 @@ class TestEntering:
 
 
 class TestExecutions:
+    @pytest.mark.requirement("PLAN-12")
     def test_the_third_of_three_runs_lists_the_plans_tried_before(self, three):
         _, folios = three
         history = history_of(folios[2])
@@ -137,12 +140,14 @@ class TestExecutions:
         ]
         assert record["also_used_by"] == ["TST-2/run-0001"]
 
+    @pytest.mark.requirement("SOURCE-6")
     def test_the_history_says_when_the_data_were_first_seen(self, three):
         bench, folios = three
         [received] = entries_of(bench, "received")
         [data] = history_of(folios[2])["data"]
         assert (data["first_seen"], data["first_seen_seq"]) == (received["time"], received["seq"])
 
+    @pytest.mark.requirement("PLAN-12")
     @pytest.mark.needs("pdftotext")
     def test_the_report_says_so_on_page_1_and_where_everything_comes_from(self, three):
         _, folios = three
@@ -165,6 +170,7 @@ class TestExecutions:
         _, folios = three
         assert all(rerender(folio).is_identical for folio in folios)
 
+    @pytest.mark.requirement("CHANGE-1")
     def test_a_failed_run_counts_and_keeps_its_history(self, tmp_path, monkeypatch):
         def fail(*_):
             raise OSError("the disk is on fire")
@@ -179,6 +185,7 @@ class TestExecutions:
         assert [use["outcome"] for use in history["earlier"]] == ["failed"]
         assert bench("verify").code == 0
 
+    @pytest.mark.requirement("CHANGE-1")
     def test_corrected_data_begin_a_new_count_and_the_first_stay_known(self, tmp_path):
         bench = Bench(tmp_path / "w")
         bench.run()

@@ -43,6 +43,7 @@ def test_qpdf_finds_nothing_wrong(folio):
     assert ended.returncode == 0, ended.stdout + ended.stderr
 
 
+@pytest.mark.requirement("RERUN-5")
 @pytest.mark.needs("pdffonts")
 def test_all_fonts_are_embedded_and_of_one_family(folio):
     rows = tool("pdffonts", folio / "data/report.pdf").stdout.splitlines()[2:]
@@ -64,6 +65,7 @@ def test_the_report_is_tagged_and_marked(folio):
     assert "pdfuaid:part>1" in metadata or 'pdfuaid:part="1"' in metadata
 
 
+@pytest.mark.requirement("REPORT-11")
 @pytest.mark.needs("verapdf")
 def test_the_report_conforms_to_pdf_a_3a_and_pdf_ua_1(folio):
     assert validate(folio / "data/report.pdf", ("3a", "ua1")) == []

@@ -19,6 +19,7 @@ def bench(tmp_path_factory):
     return bench
 
 
+@pytest.mark.requirement("RECORD-2")
 def test_the_folio_holds_every_promised_file(bench):
     folio = bench.runs / "TST-1/run-0001"
     names = {path.relative_to(folio).as_posix() for path in folio.rglob("*") if path.is_file()}
@@ -32,23 +33,31 @@ def test_the_folio_holds_every_promised_file(bench):
         "data/findings.json",
         "data/run.json",
         "data/environment.json",
+        "data/bom.json",
+        "data/ro-crate-metadata.json",
         "data/requirements.lock",
         "data/context/lab.yaml",
         "data/context/history.json",
+        "data/context/registration.json",
+        "data/context/deviations.json",
         "data/trail.jsonl",
         "data/report.pdf",
+        "data/READ-ME-FIRST.txt",
+        "data/check_folio.py",
     }
     assert promised <= names
     assert all(name.startswith("data/figures/") for name in names - promised)
     assert any(name.endswith(".svg") for name in names)
 
 
+@pytest.mark.requirement("RECORD-12")
 def test_inputs_are_kept_byte_for_byte(bench):
     folio = bench.runs / "TST-1/run-0001"
     assert (folio / "data/study.yaml").read_bytes() == bench.study.read_bytes()
     assert (folio / "data/inputs/values.csv").read_bytes() == bench.data.read_bytes()
 
 
+@pytest.mark.requirement("TRAIL-1")
 def test_every_step_is_entered_in_order_and_the_seal_is_the_last(bench):
     entries = [entry for entry in bench.entries() if entry["subject"] == "TST-1/run-0001"]
     assert [entry["action"] for entry in entries] == [
@@ -64,6 +73,7 @@ def test_every_step_is_entered_in_order_and_the_seal_is_the_last(bench):
     assert entries[-1]["details"]["seal"] == hashlib.sha256(tag_manifest).hexdigest()
 
 
+@pytest.mark.requirement("CONFIG-1")
 def test_the_run_record_names_what_was_used_and_what_was_made(bench):
     folio = bench.runs / "TST-1/run-0001"
     record = json.loads((folio / "data/run.json").read_bytes())
@@ -76,6 +86,7 @@ def test_the_run_record_names_what_was_used_and_what_was_made(bench):
     assert record["report_sha256"] == hashlib.sha256((folio / "data/report.pdf").read_bytes()).hexdigest()
 
 
+@pytest.mark.requirement("RECORD-3")
 def test_a_second_run_gets_the_next_number_and_leaves_the_first_untouched(tmp_path):
     bench = Bench(tmp_path / "w")
     first = bench.run()
@@ -92,6 +103,7 @@ def test_findings_do_not_depend_on_the_order_of_the_rows(tmp_path):
     assert (plain / "data/findings.json").read_bytes() == (turned / "data/findings.json").read_bytes()
 
 
+@pytest.mark.requirement("NUMBERS-3")
 def test_no_variation_within_levels_is_reported_with_its_reason(tmp_path):
     data = "method,sulfate\n" + "".join(
         f"{level},{value}\n" * 3
@@ -109,6 +121,7 @@ def test_no_variation_within_levels_is_reported_with_its_reason(tmp_path):
     ]
 
 
+@pytest.mark.requirement("INCIDENT-1", "TRAIL-2")
 def test_a_failure_after_the_number_keeps_the_number_and_says_why(tmp_path, monkeypatch):
     def fail(_):
         raise MachineError("the ink is out")
@@ -127,6 +140,7 @@ def test_a_failure_after_the_number_keeps_the_number_and_says_why(tmp_path, monk
     assert bench.run().name == "run-0002"
 
 
+@pytest.mark.requirement("INCIDENT-1")
 def test_an_unexpected_fault_is_kept_with_its_account(tmp_path, monkeypatch):
     def fail(*_):
         raise ZeroDivisionError("by nought")
@@ -141,6 +155,7 @@ def test_an_unexpected_fault_is_kept_with_its_account(tmp_path, monkeypatch):
     assert "by nought" in account
 
 
+@pytest.mark.requirement("NUMBERS-1")
 def test_an_altered_constant_stops_the_run_before_it_computes(tmp_path, monkeypatch):
     from assayfolio.workflow import selfcheck
 

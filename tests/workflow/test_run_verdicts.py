@@ -88,6 +88,7 @@ def test_the_record_says_how_many_digits_the_two_routes_agree_in(met):
     assert "second_route" not in json.loads((bench.runs / "TST-1/run-0001/data/findings.json").read_bytes())
 
 
+@pytest.mark.requirement("NUMBERS-2")
 def test_a_disagreement_of_the_two_routes_fails_the_run_and_says_where(tmp_path, monkeypatch):
     real = workflow_run.evaluate
 

@@ -5,6 +5,7 @@ import itertools
 import struct
 from collections import Counter
 
+import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
@@ -41,6 +42,7 @@ def test_the_words_follow_the_description(study, seed):
     assert list(itertools.islice(words(study, seed), 9)) == independent_words(study, seed, 9)
 
 
+@pytest.mark.requirement("PLAN-5")
 def test_the_order_of_a_study_and_seed_is_fixed_for_good():
     assert shuffled(range(12), words("WHP-204", SEED)) == [7, 6, 0, 11, 2, 5, 4, 1, 3, 10, 8, 9]
     assert shuffled(range(5), words("WHP-204", SEED)) == [1, 3, 2, 4, 0]

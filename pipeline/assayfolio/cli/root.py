@@ -5,8 +5,11 @@ from collections.abc import Sequence
 
 import click
 
+from assayfolio.cli.archive import rerun
 from assayfolio.cli.evidence import trail, verify
+from assayfolio.cli.laboratory import settings, void
 from assayfolio.cli.outcome import run_command
+from assayfolio.cli.protocols import amend, deviation, preregister
 from assayfolio.cli.studies import check, power, run, worksheet, workspace
 from assayfolio.version import VERSION
 
@@ -34,7 +37,7 @@ def cli() -> None:
     """
 
 
-for command in (workspace, check, power, worksheet, run, verify, trail):
+for command in (workspace, check, power, worksheet, preregister, amend, deviation, run, verify, rerun, trail, settings, void):
     cli.add_command(command)
 
 

@@ -8,6 +8,7 @@ from shutil import get_terminal_size
 
 import click
 
+from assayfolio.cli.note import note_reading
 from assayfolio.cli.options import json_option, study_argument, workspace_option
 from assayfolio.cli.outcome import called_as, complain, say
 from assayfolio.workflow.steps import Step
@@ -20,7 +21,8 @@ def workspace(folder: Path) -> None:
 
     It gets the laboratory's settings, a first study to edit with invented data, and an audit trail.
     """
-    from assayfolio.workflow.workspace import SETTINGS, STARTER_FILES, found_workspace
+    from assayfolio.workflow.founding import STARTER_FILES, found_workspace
+    from assayfolio.workflow.workspace import SETTINGS
 
     founded = found_workspace(folder)
     say(f"Workspace founded in {founded.root}")
@@ -43,6 +45,7 @@ def check(study: Path, named_workspace: Path | None, as_json: bool) -> None:
     from assayfolio.workflow.check import check_study
     from assayfolio.workflow.workspace import find_workspace
 
+    note_reading(named_workspace, "check", [str(study)], study.parent)
     result = check_study(find_workspace(named_workspace, study.parent), study)
     if as_json:
         say(json.dumps(result.document(), ensure_ascii=False, indent=1))
@@ -71,6 +74,7 @@ def power(study: Path, named_workspace: Path | None, figure: Path | None, as_jso
     from assayfolio.workflow.power import study_power, write_figure
     from assayfolio.workflow.workspace import find_workspace
 
+    note_reading(named_workspace, "power", [str(study)], study.parent)
     planned = study_power(find_workspace(named_workspace, study.parent), study)
     target = figure or study.with_name(f"{study.stem}-power.svg")
     write_figure(target, planned.figure)
@@ -116,19 +120,26 @@ def worksheet(study: Path, named_workspace: Path | None, output: Path | None, as
 )
 @study_argument
 @workspace_option
+@click.option("--replaces", metavar="RUN", help="The run of this study that the new one replaces.")
+@click.option("--reason", metavar="TEXT", help="What is corrected; goes with --replaces.")
 @json_option
-def run(study: Path, named_workspace: Path | None, as_json: bool) -> int:
+def run(
+    study: Path, named_workspace: Path | None, replaces: str | None, reason: str | None, as_json: bool
+) -> int:
     """Run a study and seal its report.
 
     Reads STUDY and its data once, computes, renders the report, and seals all of it in a numbered folder,
     runs/<study>/run-NNNN. Nothing is overwritten; every started run leaves a record in the audit trail.
+    A corrected run names the one that it replaces, which stays where it is and counts as superseded.
     """
+    from assayfolio.workflow.replacing import replacement_of
     from assayfolio.workflow.run import run_study
     from assayfolio.workflow.summary import outcome_document, outcome_lines
     from assayfolio.workflow.workspace import find_workspace
 
     place = find_workspace(named_workspace, study.parent)
-    outcome = run_study(place, study, _say_nothing if as_json else _say_step)
+    replacement = replacement_of(replaces, reason)
+    outcome = run_study(place, study, _say_nothing if as_json else _say_step, replacement)
     if as_json:
         say(json.dumps(outcome_document(place, outcome), ensure_ascii=False, indent=1))
     else:

@@ -4,7 +4,7 @@ No file, clock or environment is read. A plan that cannot be applied to these ob
 DataError; a part that was asked for and cannot be given is a finding with its reason.
 """
 
-from collections.abc import Sequence
+from collections.abc import Iterator, Sequence
 from dataclasses import replace
 from functools import partial
 
@@ -25,8 +25,10 @@ from assayfolio.evaluation.subject import Subject, subject_of
 from assayfolio.exact import to_double
 from assayfolio.findings import (
     BrownForsytheMeansFindings,
+    CheckFindings,
     Findings,
     NotReported,
+    OutlierFindings,
     ResponseFindings,
     WelchFindings,
 )
@@ -34,6 +36,7 @@ from assayfolio.findings_intake import FlowFindings
 from assayfolio.fit import check_fit
 from assayfolio.observations.values import Observations
 from assayfolio.planning.plan_power import plan_power
+from assayfolio.statistics.oneway import NotComputableError
 from assayfolio.study.plan import StudyDefinition
 
 
@@ -87,6 +90,8 @@ def _analysed(
     responses = []
     for at, subject in enumerate(subjects):
         precision = precision_findings(study, subject, gaps)
+        checks, outliers = check_findings(study, subject), outlier_findings(study, subject)
+        gaps.extend(_without_single_values(subject, checks, outliers))
         responses.append(
             ResponseFindings(
                 response=subject.response,
@@ -101,13 +106,28 @@ def _analysed(
                 comparisons=comparisons[at],
                 equivalence=equivalence[at],
                 spread=spread[at],
-                checks=check_findings(study, subject),
-                outliers=outlier_findings(study, subject),
+                checks=checks,
+                outliers=outliers,
                 precision=precision,
                 criteria=criterion_findings(study.criteria, subject, precision, gaps),
             )
         )
     return tuple(responses)
+
+
+def _without_single_values(
+    subject: Subject, checks: Sequence[CheckFindings], outliers: Sequence[OutlierFindings]
+) -> Iterator[NotReported]:
+    """The checks and outlier tests that could not be made because the single values were not kept."""
+    try:
+        subject.require_values()
+    except NotComputableError as error:
+        for check in checks:
+            if check.statistic is None:
+                yield subject.unreported(f"check: {check.name}", error)
+        for test in outliers:
+            if test.statistic is None:
+                yield subject.unreported(f"outlier test: {test.test}", error)
 
 
 def _separate_tests(

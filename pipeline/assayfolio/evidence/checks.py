@@ -18,13 +18,13 @@ without one. What the trail itself is worth is for checks 1 and 2 (`verification
 """
 
 from collections.abc import Callable
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from pathlib import Path
 
 from assayfolio.evidence import package_checks, run_checks
 from assayfolio.evidence.entries import TrailReading
 from assayfolio.evidence.folio_reading import FolioReading, TrailIndex, read_folio
-from assayfolio.evidence.inventory import shown
+from assayfolio.evidence.inventory import Inventory, shown
 from assayfolio.evidence.outcomes import CheckOutcome, Tally
 
 OUTSIDE = "the folio lies outside any workspace, so there is no audit trail to compare it with"
@@ -63,10 +63,25 @@ def verify_folio(folio: Path, reading: TrailReading | None) -> tuple[CheckOutcom
     return check_folio(folio, TrailIndex(reading) if reading is not None else None, OUTSIDE)
 
 
-def check_folio(folio: Path, trail: TrailIndex | None, no_trail: str) -> tuple[CheckOutcome, ...]:
-    """The same with a ready index; `no_trail` says why there is none."""
-    subject = read_folio(folio, trail, no_trail)
-    label = subject.subject if trail is not None else shown(str(folio))
+def check_folio(
+    folio: Path, trail: TrailIndex | None, no_trail: str, inventory: Inventory | None = None
+) -> tuple[CheckOutcome, ...]:
+    """The same with a ready index, and inventory where it was taken; `no_trail`: why there is no index."""
+    subject = read_folio(folio, trail, no_trail, inventory)
+    return _made(subject, subject.subject if trail is not None else shown(str(folio)))
+
+
+def check_copy(folio: Path, trail: TrailIndex) -> tuple[CheckOutcome, ...]:
+    """The same for a copy outside the workspace, held against the entries of the run that it names."""
+    subject = read_folio(folio, trail, "")
+    study, run = (subject.run.get(key) if subject.run else None for key in ("study", "run"))
+    if isinstance(study, str) and isinstance(run, str):
+        subject = replace(subject, study_folder=study, name=run)
+    return _made(subject, shown(str(folio)))
+
+
+def _made(subject: FolioReading, label: str) -> tuple[CheckOutcome, ...]:
+    """Every check on one folio."""
     outcomes = []
     for check in FOLIO_CHECKS:
         tally = Tally()

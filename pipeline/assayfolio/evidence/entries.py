@@ -1,22 +1,18 @@
-"""The audit trail as it stands on the disk: entries, the head beside them, and everything that is wrong.
+"""What the audit trail is made of: entries, the head beside them, and what can be wrong with them.
 
 `runs/audit-trail.jsonl` holds one entry a line in canonical JSON (RFC 8785). An entry carries the SHA-256 of
 the line before it (without the line's end), the first one 64 zeros. `runs/audit-trail.head` holds the
 number and the SHA-256 of the newest line, so that a changed or lost last line shows as well.
-
-This module reads and judges; it never writes.
 """
 
 import re
-from collections.abc import Iterable, Iterator, Mapping
+from collections.abc import Iterable, Mapping
 from dataclasses import dataclass
-from pathlib import Path
 from typing import Literal
 
 from assayfolio.canonical import Json, canonical_bytes, sha256_hex
 from assayfolio.errors import MachineError
-from assayfolio.evidence.files import explained, read_regular
-from assayfolio.evidence.strict_json import NotCanonicalError, parse_canonical, parse_canonical_lines
+from assayfolio.evidence.strict_json import NotCanonicalError, parse_canonical
 
 TRAIL_FILE = "audit-trail.jsonl"
 HEAD_FILE = "audit-trail.head"
@@ -26,7 +22,8 @@ HEAD_RESTORED = "head-restored"
 TORN_LINE_SET_ASIDE = "torn-line-set-aside"
 RECOVERIES = frozenset({HEAD_RESTORED, TORN_LINE_SET_ASIDE})
 
-_KEYS = frozenset(("action", "actor", "details", "previous", "reason", "seq", "subject", "time"))
+# In the order in which canonical JSON has them.
+_KEYS = ("action", "actor", "details", "previous", "reason", "seq", "subject", "time")
 _TIME = re.compile(r"\d{4}-[01]\d-[0-3]\dT[0-2]\d:[0-5]\d:[0-6]\d\.\d{6}Z", re.ASCII)
 _DIGEST = re.compile(r"[0-9a-f]{64}", re.ASCII)
 
@@ -153,168 +150,46 @@ class TrailReading:
         return not self.faults and not self.torn and self.head_lag == 0
 
 
-def read_trail(runs: Path) -> TrailReading:
-    """Read the trail and its head in the folder `runs`; judge both; change nothing.
-
-    Raises MachineError where a file is there but cannot be read.
-    """
-    # The head first: a writer that works meanwhile can then only make the trail look longer.
-    head_bytes = _read_if_there(runs / HEAD_FILE)
-    content = _read_if_there(runs / TRAIL_FILE)
-    exists = content is not None
-    *lines, torn = (content or b"").split(b"\n")
-    digests = tuple(sha256_hex(line) for line in lines)
-    parsed, faults = _parse_lines(lines)
-    faults.extend(_sequence_faults(parsed))
-    faults.extend(_chain_faults(parsed, digests))
-    head, head_lag, head_faults = _judge_head(head_bytes, parsed, digests, bool(torn))
-    faults.extend(head_faults)
-    return TrailReading(
-        entries=tuple(entry for entry in parsed if entry is not None),
-        lines=tuple(lines),
-        head=head,
-        torn=torn,
-        faults=tuple(faults),
-        parsed=tuple(parsed),
-        digests=digests,
-        head_lag=head_lag,
-        exists=exists,
-    )
-
-
-def _read_if_there(path: Path) -> bytes | None:
-    with explained("read the file", path):
-        try:
-            return read_regular(path)
-        except FileNotFoundError:
-            return None
-
-
-def _parse_lines(lines: list[bytes]) -> tuple[list[TrailEntry | None], list[TrailFault]]:
-    parsed: list[TrailEntry | None] = []
-    faults: list[TrailFault] = []
-    for number, value in enumerate(parse_canonical_lines(lines), start=1):
-        entry: TrailEntry | None = None
-        if isinstance(value, NotCanonicalError):
-            found = str(value) if lines[number - 1] else "the line is empty"
-        else:
-            entry, found = _entry_of(value)
-        parsed.append(entry)
-        if entry is None:
-            faults.append(TrailFault("form", TRAIL_FILE, number, found))
-    return parsed, faults
-
-
 def parse_entry(line: bytes) -> TrailEntry:
     """The entry whose line (without its end) is exactly `line`. Raises NotCanonicalError with the reason."""
-    entry, found = _entry_of(parse_canonical(line))
+    entry, found = entry_of(parse_canonical(line))
     if entry is None:
         raise NotCanonicalError(found)
     return entry
 
 
-def _entry_of(value: Json) -> tuple[TrailEntry | None, str]:
+def entry_of(value: Json) -> tuple[TrailEntry | None, str]:
+    """The entry that a value of canonical JSON makes; or None, and why it makes none."""
     if not isinstance(value, dict):
         return None, "it is not an object"
-    if value.keys() != _KEYS:
-        odd = sorted(_KEYS.symmetric_difference(value))
+    if tuple(value) != _KEYS:
+        odd = sorted(set(_KEYS).symmetric_difference(value))
         return None, f"keys missing or unknown: {', '.join(odd)}"
-    seq, reason, details = value["seq"], value["reason"], value["details"]
-    time, actor, action = value["time"], value["actor"], value["action"]
-    subject, previous = value["subject"], value["previous"]
+    action, actor, details, previous, reason, seq, subject, time = value.values()
+    if (
+        type(seq) is int
+        and seq >= 1
+        and type(time) is str
+        and is_trail_time(time)
+        and type(actor) is type(action) is type(subject) is type(previous) is str
+        and (reason is None or type(reason) is str)
+        and type(details) is dict
+    ):
+        return TrailEntry(seq, time, actor, action, subject, reason, details, previous), ""
+    return None, _trouble(value)
+
+
+def _trouble(value: Mapping[str, Json]) -> str:
+    """What is wrong with a value of an entry's keys that makes none."""
+    seq, time = value["seq"], value["time"]
     if not (isinstance(seq, int) and not isinstance(seq, bool) and seq >= 1):
-        return None, '"seq" is not a whole number from 1'
+        return '"seq" is not a whole number from 1'
     if not (isinstance(time, str) and is_trail_time(time)):
-        return None, '"time" is not a UTC time with microseconds'
-    if not (isinstance(actor, str) and isinstance(action, str) and isinstance(subject, str)):
-        return None, '"actor", "action" or "subject" is not a text'
-    if not (reason is None or isinstance(reason, str)):
-        return None, '"reason" is neither a text nor null'
-    if not isinstance(details, dict):
-        return None, '"details" is not an object'
-    if not isinstance(previous, str):
-        return None, '"previous" is not a text'
-    return TrailEntry(seq, time, actor, action, subject, reason, details, previous), ""
-
-
-def _sequence_faults(parsed: list[TrailEntry | None]) -> Iterator[TrailFault]:
-    """Each number that does not follow from the one before; a shift is told once, where it begins."""
-    expected: int | None = 1
-    for number, entry in enumerate(parsed, start=1):
-        if entry is None:
-            expected = None if expected is None else expected + 1
-            continue
-        if expected is not None and entry.seq != expected:
-            found = f"it has the number {entry.seq} where {expected} should stand"
-            yield TrailFault("sequence", TRAIL_FILE, number, found)
-        expected = entry.seq + 1
-
-
-def _chain_faults(parsed: list[TrailEntry | None], digests: tuple[str, ...]) -> Iterator[TrailFault]:
-    before = NO_LINE
-    for number, (entry, digest) in enumerate(zip(parsed, digests, strict=True), start=1):
-        if entry is not None and entry.previous != before:
-            if number == 1:
-                found = 'the first entry\'s "previous" is not 64 zeros: lines before it are missing'
-            else:
-                found = (
-                    f"it does not carry the SHA-256 of line {number - 1}: line {number - 1} was changed, "
-                    f"a line was taken out or put in between, or this line was changed"
-                )
-            yield TrailFault("chain", TRAIL_FILE, number, found)
-        before = digest
-
-
-def _judge_head(
-    content: bytes | None, parsed: list[TrailEntry | None], digests: tuple[str, ...], torn: bool
-) -> tuple[TrailHead | None, int | None, list[TrailFault]]:
-    """The head, how far it stands behind the last whole line, and what cannot be explained about it."""
-    if content is None:
-        head, stands = None, EMPTY_HEAD
-    else:
-        try:
-            head = stands = _head_of(content)
-        except NotCanonicalError as error:
-            return (
-                None,
-                None,
-                [TrailFault("head", HEAD_FILE, None, f"it is not a head as written here: {error}")],
-            )
-    count = len(digests)
-    if content is not None and stands.seq > count:
-        end = "; the last line has no line end" if torn else ""
-        found = (
-            f"it stands at entry {stands.seq}, but {TRAIL_FILE} has {count} whole lines{end}: lines were lost"
-        )
-        return head, None, [TrailFault("head", HEAD_FILE, None, found)]
-    if stands.seq > 0 and digests[stands.seq - 1] != stands.sha256:
-        found = (
-            f"it does not carry the SHA-256 of line {stands.seq} of {TRAIL_FILE}: "
-            f"that line or the head was changed"
-        )
-        return head, None, [TrailFault("head", HEAD_FILE, None, found)]
-    lag = count - stands.seq
-    unexplained = [
-        entry for entry in parsed[stands.seq + 1 :] if entry is None or entry.action not in RECOVERIES
-    ]
-    if unexplained:
-        where = "it is missing" if content is None else f"it stands at entry {stands.seq}"
-        found = (
-            f"{where}, but {TRAIL_FILE} has {count} lines: lines were added without it, or it was put back"
-        )
-        return head, lag, [TrailFault("head", HEAD_FILE, None, found)]
-    return head, lag, []
-
-
-def _head_of(content: bytes) -> TrailHead:
-    if not content.endswith(b"\n"):
-        raise NotCanonicalError("the line end is missing")
-    value = parse_canonical(content[:-1])
-    if not isinstance(value, dict) or sorted(value) != ["seq", "sha256"]:
-        raise NotCanonicalError('it does not hold "seq" and "sha256" alone')
-    seq, digest = value["seq"], value["sha256"]
-    if not (isinstance(seq, int) and not isinstance(seq, bool) and seq >= 1 and isinstance(digest, str)):
-        raise NotCanonicalError('"seq" is not a whole number from 1, or "sha256" not a text')
-    if not is_digest(digest):
-        raise NotCanonicalError('"sha256" is not a SHA-256')
-    return TrailHead(seq, digest)
+        return '"time" is not a UTC time with microseconds'
+    if not all(isinstance(value[key], str) for key in ("actor", "action", "subject")):
+        return '"actor", "action" or "subject" is not a text'
+    if not (value["reason"] is None or isinstance(value["reason"], str)):
+        return '"reason" is neither a text nor null'
+    if not isinstance(value["details"], dict):
+        return '"details" is not an object'
+    return '"previous" is not a text'

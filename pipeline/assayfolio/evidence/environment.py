@@ -38,9 +38,9 @@ _PACKAGE = Path(__file__).parent.parent
 def environment_record() -> Mapping[str, Json]:
     """The record, ready for canonical JSON; the same process state gives the same record.
 
-    Keys: format, interpreter, platform, packages (name, version, SHA-256 of the installed RECORD, null
-    where there is none), native_libraries, own_files, settings. Raises no error for what cannot be found out:
-    the record then says so.
+    Keys: format, interpreter, platform, packages (name, version, licence as the package declares it, SHA-256
+    of the installed RECORD, null where there is none), native_libraries, own_files, settings. Raises no error
+    for what cannot be found out: the record then says so.
     """
     return {
         "format": FORMAT,
@@ -105,9 +105,26 @@ def _packages() -> list[Json]:
             found[plain] = {
                 "name": plain,
                 "version": version[1].strip() if version else None,
+                "licence": _licence(header),
                 "record_sha256": sha256_hex(record.encode("utf-8")) if record else None,
             }
     return [found[name] for name in sorted(found)]
+
+
+def _licence(header: str) -> str | None:
+    """The licence that a package declares: its expression, its classifiers, or the one line of its old field.
+
+    Core metadata 2.4 has the expression; before it, classifiers and a free text that may be a whole licence.
+    """
+    expression = re.search(r"^License-Expression: *(.+)$", header, re.MULTILINE)
+    if expression:
+        return expression[1].strip()
+    classifier = r"^Classifier: License :: (?:OSI Approved :: )?(?!OSI Approved$)(.+)$"
+    classified = re.findall(classifier, header, re.MULTILINE)
+    if classified:
+        return "; ".join(name.strip() for name in classified)
+    text = re.search(r"^License: *(.+)$(?!\n )", header, re.MULTILINE)
+    return text[1].strip() if text else None
 
 
 def _native_libraries() -> Mapping[str, Json]:
@@ -198,6 +215,11 @@ def _library_version(name: str, path: str) -> str | None:
         return ask(ctypes.CDLL(path))
     except (OSError, AttributeError, ValueError):
         return None
+
+
+def program_digest() -> str:
+    """One digest of the program itself: its source, fonts, templates and other data."""
+    return canonical_digest(_own_files())
 
 
 def _own_files() -> Mapping[str, Json]:

@@ -96,6 +96,20 @@ def write_new(path: Path, content: bytes, mode: int = 0o644) -> None:
             os.close(descriptor)
 
 
+def append_line(path: Path, line: bytes) -> None:
+    """Add a line to a file that is made where it is missing, and bring it to the disk."""
+    with explained("add a line", path):
+        descriptor = os.open(path, os.O_WRONLY | os.O_APPEND | os.O_CREAT | os.O_NOFOLLOW, 0o644)
+        try:
+            begun = os.fstat(descriptor).st_size > 0
+            write_all(descriptor, line + b"\n")
+            os.fsync(descriptor)
+        finally:
+            os.close(descriptor)
+    if not begun:
+        sync_folder(path.parent)
+
+
 def replace_file(path: Path, content: bytes) -> None:
     """Replace `path` by `content` at one moment: whoever reads sees the old bytes or the new ones, whole."""
     new = replacement_name(path)

@@ -19,7 +19,14 @@ from assayfolio.evidence.manifest import (
     parse_manifest,
 )
 from assayfolio.evidence.outcomes import Tally
+from assayfolio.evidence.protocols import (
+    ProtocolHistory,
+    RegisteredPlan,
+    protocol_histories,
+    registered_plans,
+)
 from assayfolio.evidence.register import Register, read_register
+from assayfolio.evidence.states import RunStanding, run_standings
 from assayfolio.evidence.strict_json import NotCanonicalError, parse_json
 
 RUN_FILE = "data/run.json"
@@ -44,6 +51,24 @@ class TrailIndex:
     def register(self) -> Register:
         """The intake register that the entries amount to."""
         return read_register(self.reading.entries)
+
+    @cached_property
+    def standings(self) -> Mapping[str, RunStanding]:
+        """How every run stands, by its subject."""
+        return run_standings(self.reading.entries)
+
+    @cached_property
+    def protocols(self) -> Mapping[str, ProtocolHistory]:
+        """What the trail says of each protocol, by its subject."""
+        return {one.subject: one for one in protocol_histories(self.reading.entries)}
+
+    @cached_property
+    def registered(self) -> Mapping[str, tuple[RegisteredPlan, ...]]:
+        """The registered plans of each study."""
+        studies = {one.study for one in self.protocols.values()}
+        entries = [entry for one in self.protocols.values() for entry in one.entries]
+        entries.sort(key=lambda entry: entry.seq)
+        return {study: registered_plans(entries, study) for study in studies}
 
     def lines_to_staged(self, subject: str) -> list[tuple[TrailEntry, bytes]]:
         """The run's entries and their very lines, from allotment to the last "staged"."""
@@ -85,10 +110,15 @@ class FolioReading:
         return self.inventory.files.get(path)
 
 
-def read_folio(folder: Path, trail: TrailIndex | None, no_trail: str) -> FolioReading:
-    """Read the folio at `folder`; `no_trail` says why there is no trail, where there is none."""
+def read_folio(
+    folder: Path, trail: TrailIndex | None, no_trail: str, inventory: Inventory | None = None
+) -> FolioReading:
+    """Read the folio at `folder`; `no_trail` says why there is no trail, where there is none.
+
+    `inventory` is what lies in the folder, where it was taken already.
+    """
     place = Path(os.path.abspath(folder))  # noqa: PTH100 - no link is followed
-    inventory = take_inventory(folder)
+    inventory = take_inventory(folder) if inventory is None else inventory
     contents: dict[str, bytes] = {}
     troubles: dict[str, str] = {}
     for path in (*TAG_FILES, TAG_MANIFEST_FILE, RUN_FILE, RUN_TRAIL_FILE):

@@ -33,6 +33,8 @@ def run_subject(study: str, number: int) -> str:
 
 def split_subject(subject: str) -> tuple[str, int] | None:
     """Study and number of a run's subject; None for any other subject or spelling of the number."""
+    if "/run-" not in subject:
+        return None
     matched = _SUBJECT.fullmatch(subject)
     if not matched or run_name(int(matched[3])) != matched[2]:
         return None

@@ -11,6 +11,7 @@ from assayfolio.evidence.history import COMPUTED, RENDERED, RunHistory, run_name
 from assayfolio.evidence.inventory import shown
 from assayfolio.evidence.manifest import TAG_MANIFEST_FILE
 from assayfolio.evidence.outcomes import Tally
+from assayfolio.evidence.protocol_states import check_claim
 from assayfolio.evidence.strict_json import NotCanonicalError
 
 STUDY_FILE = "data/study.yaml"
@@ -226,6 +227,8 @@ def check_against_trail(folio: FolioReading, tally: Tally) -> None:
             f"the inputs in {RUN_FILE} are not those of entry {history.allotted.seq} of the audit trail"
         )
     check_account(run, history, folio.trail.register, tally)
+    if run.get("outcome") == COMPLETED:
+        check_claim(run, history.allotted, folio.trail.registered.get(history.study, ()), tally)
     for key, path, action, detail in _RESULTS:
         entry = history.entry(action)
         stated = entry.details.get(detail) if entry else None

@@ -1,7 +1,7 @@
 """Checks 2.1 to 2.3: what the trail says of the runs, against what lies in the workspace."""
 
 import os
-from collections.abc import Iterator
+from collections.abc import Iterator, Sequence
 from pathlib import Path
 
 from assayfolio.errors import MachineError
@@ -11,8 +11,12 @@ from assayfolio.evidence.folio import UNSEALED, leftover_record, reopen_staged
 from assayfolio.evidence.folio_reading import TrailIndex
 from assayfolio.evidence.history import ALLOTTED, SEALED, RunHistory, run_histories, split_subject, unallotted
 from assayfolio.evidence.inventory import shown
+from assayfolio.evidence.laboratory_folios import FOLDER as LABORATORY_FOLDER
+from assayfolio.evidence.laboratory_folios import explained_names
 from assayfolio.evidence.locks import is_locked, lock_path
 from assayfolio.evidence.outcomes import CheckOutcome, Tally
+from assayfolio.evidence.protocol_states import explained_protocols
+from assayfolio.evidence.time_stamps import STAMPS_FILE
 from assayfolio.evidence.trail import TORN_PREFIX, WRITER
 
 
@@ -47,9 +51,12 @@ def check_numbers(reading: TrailReading) -> CheckOutcome:
     return tally.outcome("2.1", "runs numbered without a gap", "audit trail")
 
 
-def check_run(runs: Path, history: RunHistory) -> CheckOutcome:
-    """Check 2.2: whether one run ended as the trail says, and its folio or leftover is there."""
-    tally = Tally()
+def check_run(runs: Path, history: RunHistory, standing: Sequence[str] = ()) -> CheckOutcome:
+    """Check 2.2: whether one run ended as the trail says, and its folio or leftover is there.
+
+    `standing` is what else is to be said of the run: void, superseded.
+    """
+    tally = Tally(remarks=[shown(words) for words in standing])
     try:
         _check_run(runs, history, tally)
     except MachineError as error:
@@ -134,15 +141,19 @@ def check_surroundings(runs: Path, index: TrailIndex) -> CheckOutcome:
     is a finding, and so is any folder that the trail does not know.
     """
     tally = Tally()
-    studies = {history.study for history in index.histories.values()}
+    protocols = explained_protocols(index)
+    studies = {history.study for history in index.histories.values()} | set(protocols)
     entered = set_aside_files(index.reading.entries)
-    known = {TRAIL_FILE, HEAD_FILE, lock_path(runs, WRITER).name, replacement_name(runs / HEAD_FILE).name}
+    locks = {lock_path(runs, WRITER).name, replacement_name(runs / HEAD_FILE).name}
+    known = {TRAIL_FILE, HEAD_FILE, STAMPS_FILE, *locks}
     for item in _items(runs, tally):
         name = shown(item.name)
-        if item.is_dir(follow_symlinks=False):
+        if item.is_dir(follow_symlinks=False) and item.name == LABORATORY_FOLDER:
+            _check_laboratory_folder(runs / item.name, index, tally)
+        elif item.is_dir(follow_symlinks=False):
             if item.name not in studies and _holds_more_than_locks(runs / item.name):
                 tally.failed.append(f"extra folder: {name}: the audit trail knows no study of this name")
-            _check_study(runs / item.name, index, tally)
+            _check_study(runs / item.name, index, protocols.get(item.name, frozenset()), tally)
         elif item.is_symlink():
             tally.failed.append(f"symbolic link: {name}")
         elif item.name.startswith(TORN_PREFIX) and item.name not in entered:
@@ -168,8 +179,20 @@ def _items(folder: Path, tally: Tally) -> Iterator[os.DirEntry[str]]:
     yield from found
 
 
+def _check_laboratory_folder(folder: Path, index: TrailIndex, tally: Tally) -> None:
+    explained = explained_names(index.reading.entries)
+    for item in _items(folder, tally):
+        path = f"{shown(folder.name)}/{shown(item.name)}"
+        if item.is_symlink():
+            tally.failed.append(f"symbolic link: {path}")
+        elif not item.is_dir(follow_symlinks=False):
+            tally.remarks.append(f"{path} lies there too; it is no evidence")
+        elif item.name not in explained:
+            tally.failed.append(f"extra folder: {path}: the audit trail knows nothing of it")
+
+
 def _is_run_lock(name: str) -> bool:
-    return name.startswith(".run-") and name.endswith(".lock")
+    return name.startswith((".run-", ".protocol-")) and name.endswith(".lock")
 
 
 def _holds_more_than_locks(folder: Path) -> bool:
@@ -180,7 +203,7 @@ def _holds_more_than_locks(folder: Path) -> bool:
         return False
 
 
-def _check_study(folder: Path, index: TrailIndex, tally: Tally) -> None:
+def _check_study(folder: Path, index: TrailIndex, protocols: frozenset[str], tally: Tally) -> None:
     for item in _items(folder, tally):
         path = f"{shown(folder.name)}/{shown(item.name)}"
         name = item.name.removesuffix(UNSEALED)
@@ -190,6 +213,8 @@ def _check_study(folder: Path, index: TrailIndex, tally: Tally) -> None:
         elif not item.is_dir(follow_symlinks=False):
             if not _is_run_lock(item.name):
                 tally.remarks.append(f"{path} lies there too; it is no evidence")
+        elif history is None and item.name in protocols:
+            continue  # check 2.9 speaks of it
         elif history is None:
             tally.failed.append(f"extra folder: {path}: the audit trail knows nothing of it")
         elif item.name != name and not _is_explained(folder, history):

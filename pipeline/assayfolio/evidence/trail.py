@@ -12,10 +12,11 @@ Anything else is not the mark of a killed writer, and `open_trail` refuses with 
 """
 
 import os
-from collections.abc import Callable, Iterator, Mapping, Sequence
+from collections.abc import Callable, Iterable, Iterator, Mapping, Sequence
 from contextlib import contextmanager
 from pathlib import Path
 from types import MappingProxyType
+from typing import TypeAlias
 
 from assayfolio.canonical import Json, sha256_hex
 from assayfolio.errors import InputError, MachineError
@@ -30,11 +31,13 @@ from assayfolio.evidence.entries import (
     TrailHead,
     TrailReading,
     is_trail_time,
-    read_trail,
     set_aside_files,
 )
 from assayfolio.evidence.files import explained, read_regular, replace_file, sync_folder
 from assayfolio.evidence.locks import lock_path, take_lock
+from assayfolio.evidence.telling import SUBJECT, Notice, Telling
+from assayfolio.evidence.trail_reading import TrailMemory, read_trail
+from assayfolio.evidence.witnesses import Witness
 
 __all__ = [
     "TORN_PREFIX",
@@ -51,19 +54,33 @@ __all__ = [
 
 WRITER = "writer"
 TORN_PREFIX = "audit-trail.torn-"
+_memory = TrailMemory()
 _NO_DETAILS: Mapping[str, Json] = MappingProxyType({})
+Stamp: TypeAlias = Callable[[TrailEntry | None], Mapping[str, Json]]
+"""Given the last entry, what goes into the details of the next one beside the event's own."""
+Witnesses: TypeAlias = Callable[[Sequence[TrailEntry]], Sequence[Witness]]
+"""Given all entries, the places that are to be told of the next ones."""
 
 
 class TrailWriter:
     """Appends to the trail while the writer's lock is held. Made by `open_trail` alone."""
 
     def __init__(
-        self, runs: Path, actor: str, now: Callable[[], str], reading: TrailReading, descriptor: int
+        self,
+        runs: Path,
+        actor: str,
+        now: Callable[[], str],
+        stamp: Stamp,
+        telling: Telling,
+        reading: TrailReading,
+        descriptor: int,
     ) -> None:
         self.runs = runs
         self.reading = reading
         self._actor = actor
         self._now = now
+        self._stamp = stamp
+        self._telling = telling
         self._descriptor = descriptor
         self._entries = list(reading.entries)
         self._head = reading.last
@@ -90,12 +107,37 @@ class TrailWriter:
         where another program has changed the file meanwhile; ValueError where `details` hold what canonical
         JSON cannot or `now` gives no time of the right form.
         """
+        entry = self._enter(action, subject, reason, details)
+        self._tell_witnesses(entry)
+        return entry
+
+    def close(self) -> None:
+        """Tell the witnesses that are told of the last entry only. After a failed append nothing is told."""
+        if self._usable and len(self._entries) > len(self.reading.entries):
+            self.enter_notices(self._telling.close(self._entries[-1], self._head))
+
+    def enter_notices(self, notices: Iterable[Notice]) -> None:
+        """Enter what is to be said of witnesses."""
+        for notice in notices:
+            self.append(notice.action, SUBJECT, notice.reason, notice.details)
+
+    def _tell_witnesses(self, entry: TrailEntry) -> None:
+        # What is entered about one witness goes to the others too; a witness out of reach is left alone.
+        self.enter_notices(self._telling.tell(entry, self._head))
+
+    def _enter(
+        self, action: str, subject: str, reason: str | None, details: Mapping[str, Json]
+    ) -> TrailEntry:
         if not self._usable:
             raise MachineError(f"{self.runs / TRAIL_FILE}: an append failed before; nothing more is entered")
         time = self._now()
         if not is_trail_time(time):
             raise ValueError(f"not a UTC time with microseconds: {time!r}")
-        _require_utf8(self._actor, action, subject, reason or "", *_texts(details))
+        stamp = self._stamp(self._entries[-1] if self._entries else None)
+        if not stamp.keys().isdisjoint(details):
+            raise ValueError(f"the details of {action!r} name what every entry carries: {sorted(stamp)}")
+        told = {**details, **stamp}
+        _require_utf8(self._actor, action, subject, reason or "", *_texts(told))
         entry = TrailEntry(
             seq=self._head.seq + 1,
             time=time,
@@ -103,7 +145,7 @@ class TrailWriter:
             action=action,
             subject=subject,
             reason=reason,
-            details=dict(details),
+            details=told,
             previous=self._head.sha256,
         )
         line = entry.line
@@ -137,25 +179,48 @@ class TrailWriter:
 _ADVICE = "Nothing was added. Run `assayfolio verify` to see everything that is wrong."
 
 
+def no_witnesses(_entries: Sequence[TrailEntry]) -> Sequence[Witness]:
+    """No place is told."""
+    return ()
+
+
+def _no_stamp(_last: TrailEntry | None) -> Mapping[str, Json]:
+    return {}
+
+
 @contextmanager
-def open_trail(runs: Path, actor: str, now: Callable[[], str], wait_seconds: float) -> Iterator[TrailWriter]:
+def open_trail(
+    runs: Path,
+    actor: str,
+    now: Callable[[], str],
+    wait_seconds: float,
+    stamp: Stamp = _no_stamp,
+    witnesses: Witnesses = no_witnesses,
+) -> Iterator[TrailWriter]:
     """Hold the trail in the folder `runs` for writing, mended openly if a writer was killed before.
 
-    `actor` and `now()` go into every entry; `now` gives RFC 3339 in UTC with microseconds
-    ("2026-01-31T09:15:00.000000Z"). Raises BusyError after `wait_seconds` of waiting for another writer,
-    TrailBrokenError where the trail is not as a writer leaves it, MachineError where the disk refuses.
+    `actor`, `now()` and, in its details, `stamp(last entry)` go into every entry, in this order; `now` gives
+    RFC 3339 in UTC with microseconds ("2026-01-31T09:15:00.000000Z"). Every entry is told to the witnesses
+    when it is on the disk; one that is not reached stops nothing, and that is entered. Raises BusyError
+    after `wait_seconds` of waiting for another writer, TrailBrokenError where the trail is not as a writer
+    leaves it, MachineError where the disk refuses.
     """
     holder: Json = {"actor": actor, "process": os.getpid(), "since": now()}
     _require_utf8(actor)
     lock = take_lock(lock_path(runs, WRITER), wait_seconds, holder)
     try:
-        reading = read_trail(runs)
+        reading = _memory.read(runs)
         _refuse_broken(runs, reading)
         descriptor = _open_file(runs / TRAIL_FILE, reading.exists)
         try:
-            writer = TrailWriter(runs, actor, now, reading, descriptor)
+            telling = Telling(witnesses(reading.entries), reading.entries)
+            writer = TrailWriter(runs, actor, now, stamp, telling, reading, descriptor)
             _recover(writer, reading, descriptor)
-            yield writer
+            writer.enter_notices(telling.behind(reading.last))
+            try:
+                yield writer
+            finally:
+                writer.close()
         finally:
             os.close(descriptor)
     finally:

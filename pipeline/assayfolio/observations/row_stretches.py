@@ -12,7 +12,7 @@ from typing import TypeVar, overload
 import numpy as np
 
 from assayfolio.observations.long_text import line_count, plain_lines
-from assayfolio.observations.rows import MAX_CELL, Broken, Row, rows
+from assayfolio.observations.rows import MAX_CELL, Broken, Row, rows_and_ends
 
 _MARK, _LINE_END = ord('"'), ord("\n")
 
@@ -135,12 +135,12 @@ def _by_rows(feed: Feed, separator: str, by_rows: Callable[[Iterator[Row | Broke
 
 
 def _rows_until(lines: Lines, separator: str, end: int, stopped: list[int]) -> Iterator[Row | Broken]:
-    """The rows that begin before line `end` (from zero); then `stopped` holds the line of the one below."""
-    for row in rows(lines, separator, lines.first):
-        if row.line > end:
-            stopped.append(row.line - 1)
-            return
+    """The rows that begin before line `end` (from zero); then `stopped` holds the line below the last."""
+    for row, below in rows_and_ends(lines, separator, lines.first):
         yield row
+        if below >= end:
+            stopped.append(below)
+            return
 
 
 def _split(data: bytes) -> list[str]:

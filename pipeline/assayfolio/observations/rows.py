@@ -50,19 +50,26 @@ def rows(lines: Sequence[str], separator: str, first: int = 0) -> Iterator[Row |
     Each line is looked at once, or within 10,000 characters below a mark that is never closed, so that the
     time is in proportion to the size of the text whatever it holds.
     """
+    return (row for row, _ in rows_and_ends(lines, separator, first))
+
+
+def rows_and_ends(
+    lines: Sequence[str], separator: str, first: int = 0
+) -> Iterator[tuple[Row | Broken, int]]:
+    """The rows as `rows` gives them, each with the number of the line on which reading goes on below it."""
     at = first
     while at < len(lines):
         line = lines[at]
         if not line or line.isspace():
             last = _last_blank(lines, at)
-            yield _blank_lines(at, last)
+            row: Row | Broken = _blank_lines(at, last)
             at = last + 1
         elif '"' in line:
             row, at = _quoted_row(lines, at, separator)
-            yield row
         else:
-            yield _plain_row(line, at, separator)
+            row = _plain_row(line, at, separator)
             at += 1
+        yield row, at
 
 
 def _plain_row(line: str, at: int, separator: str) -> Row | Broken:

@@ -18,7 +18,7 @@ from assayfolio.observations.gathering import MOST_LEVELS, Gathering
 from assayfolio.observations.guard import unguarded
 from assayfolio.observations.header import CHARACTERS, Header, find_header
 from assayfolio.observations.layout import extras_of, received_rows
-from assayfolio.observations.long_text import LongFile, UnfitTextError, plain_lines, refuse_unfit_text
+from assayfolio.observations.long_text import BLOCK, LongFile, UnfitTextError, plain_lines, refuse_unfit_text
 from assayfolio.observations.plain_stretch import PlainStretches, Stretch
 from assayfolio.observations.received import Received, SheetRow
 from assayfolio.observations.row_stretches import Feed, Lines, go_through
@@ -92,7 +92,7 @@ class _Opened:
 def _opened(file: LongFile, plan: DataPlan, wanted: Sequence[str], faults: FaultList) -> _Opened:
     stretches = file.stretches()
     head = next(stretches, b"")
-    while head.count(b"\n") < plan.header_row and (more := next(stretches, b"")):
+    while not _holds_header(head, plan.header_row) and (more := next(stretches, b"")):
         head += more
     mark = utf8_mark(head, file.name)
     text = plain_lines(head[len(mark) :]).decode("utf-8")
@@ -113,6 +113,11 @@ def _opened(file: LongFile, plan: DataPlan, wanted: Sequence[str], faults: Fault
     )
     below = "".join(f"{line}\n" for line in lines[header.next_line :]).encode()
     return _Opened(header, raw, Feed(stretches, below, header.next_line, file.block // 2))
+
+
+def _holds_header(head: bytes, header_row: int) -> bool:
+    """Whether all of the header stands in `head`: a cell of it may go on in further lines."""
+    return head.count(b"\n") >= header_row and (head.count(b'"') % 2 == 0 or len(head) >= BLOCK)
 
 
 class _FileTaking:

@@ -8,6 +8,7 @@ from typing import Protocol
 from assayfolio.errors import RenderingError
 from assayfolio.exact import Exact, Root, magnitude, to_double
 from assayfolio.findings import ComparisonFamily, LevelFindings, ResponseFindings
+from assayfolio.findings_intake import FlowFindings
 from assayfolio.observations.totals import Totals
 from assayfolio.observations.values import Observations
 from assayfolio.report.facts import ReportInput
@@ -62,6 +63,32 @@ class Basis:
         if counted != listed:
             raise RenderingError("the findings and the observations do not count the same values")
         return found
+
+    @cached_property
+    def flow(self) -> tuple[FlowFindings, ...]:
+        """The counts of each level from received to analysed.
+
+        Raises RenderingError where they are not there, do not add up, or end in other numbers of values than
+        the levels have.
+        """
+        for counts in self.response.flow:
+            left_out = counts.missing + counts.below_limit + counts.above_limit + counts.excluded
+            if counts.received - left_out - counts.merged != counts.analysed:
+                raise RenderingError(f"the counts of {counts.level} do not add up")
+        if [(counts.level, counts.analysed) for counts in self.response.flow] != [
+            (level.level, level.n) for level in self.levels
+        ]:
+            raise RenderingError("the counts of values are not those of the levels")
+        return self.response.flow
+
+    def spot(self, file: int, line: int) -> str:
+        """Where a value stands: its line, behind the number of its file where there are several."""
+        return f"{file + 1}:{line}" if len(self.observations.files) > 1 else str(line)
+
+    @cached_property
+    def line_word(self) -> str:
+        """What the place of a value is called: a row in spreadsheets, else a line."""
+        return "row" if all(raw.form == "spreadsheet" for raw in self.observations.files) else "line"
 
     @cached_property
     def observations(self) -> Observations:

@@ -4,6 +4,7 @@ import re
 from collections.abc import Callable
 
 from assayfolio.errors import RenderingError
+from assayfolio.report.amendments import registration_section
 from assayfolio.report.analysis import anova_section
 from assayfolio.report.answers import cards
 from assayfolio.report.assumptions import checks_section
@@ -11,18 +12,24 @@ from assayfolio.report.basis import Basis
 from assayfolio.report.content import Heading, ReportContent, Section, SignatureBox, TableBlock
 from assayfolio.report.criteria import criteria_section
 from assayfolio.report.data import data_section
+from assayfolio.report.deviations import deviations_section
 from assayfolio.report.equivalence import equivalence_section
+from assayfolio.report.exclusions import exclusions_section
 from assayfolio.report.executions import further_words
 from assayfolio.report.facts import ReportInput
 from assayfolio.report.families import comparisons_section
+from assayfolio.report.limits import limits_section
 from assayfolio.report.listing import listing_section
 from assayfolio.report.notation import kept_together
 from assayfolio.report.numbering import Numbering, Part
 from assayfolio.report.outliers import outliers_section
+from assayfolio.report.people import replaced_words
 from assayfolio.report.planned import plan_section
 from assayfolio.report.precision import precision_section
-from assayfolio.report.prose import Prose, prose, verbatim
+from assayfolio.report.prose import Prose, prose
 from assayfolio.report.provenance import provenance_section
+from assayfolio.report.received import files_words
+from assayfolio.report.registration import digest_words, is_calm, page_words, standing_words
 from assayfolio.report.spread import spread_section
 from assayfolio.report.statement import method_section
 from assayfolio.report.summary import summary
@@ -31,9 +38,7 @@ from assayfolio.report.unreported import not_reported_section
 from assayfolio.report.wording import (
     CAUTIONS,
     DRAFT_SENTENCE,
-    EXPLORATORY,
     NO_SIGN_OFF,
-    NOT_REGISTERED,
     alpha_words,
     counted,
 )
@@ -67,19 +72,20 @@ def compose(content: ReportInput) -> ReportContent:
         number=number,
         created=f"{run.started_utc[:19]}Z",
         generator=f"Assayfolio {VERSION}",
-        standing=EXPLORATORY,
+        standing=standing_words(bases[0]),
         facts=_facts(bases),
         cards=cards(bases, accent, _table_labels(sections)),
         summary=summary(bases),
         sign_off=boxes,
         sign_off_words="" if boxes else "No signatures are planned for this report.",
-        meaning_height=_meaning_height(boxes),
+        meaning_height=meaning_height(boxes),
         cautions=prose(CAUTIONS),
         head_left=number,
         head_right=laboratory.name,
         foot_left=DRAFT_SENTENCE if boxes else NO_SIGN_OFF,
-        registration=NOT_REGISTERED,
-        digest=f"study definition {run.study_sha256[:8]}",
+        registration=page_words(run),
+        is_calm=is_calm(run),
+        digest=digest_words(run),
         sections=sections,
         end_mark=f"End of the report on {study.study}, {run.label}",
     )
@@ -89,6 +95,10 @@ def _sections(bases: tuple[Basis, ...], accent: str) -> tuple[Section, ...]:
     """All sections in the order of the report; tables and figures are numbered through."""
     numbering = Numbering()
     sections = [plan_section(bases, numbering)]
+    if bases[0].outline.has(Part.REGISTRATION):
+        sections.append(registration_section(bases, numbering))
+    if bases[0].outline.has(Part.DEVIATIONS):
+        sections.append(deviations_section(bases[0], numbering))
     for basis in bases:
         sections += _sections_of(basis, numbering, accent)
     sections.append(not_reported_section(bases[0]))
@@ -101,6 +111,8 @@ def _sections(bases: tuple[Basis, ...], accent: str) -> tuple[Section, ...]:
 def _sections_of(basis: Basis, numbering: Numbering, accent: str) -> list[Section]:
     makers: dict[Part, Callable[[], Section]] = {
         Part.DATA: lambda: data_section(basis, numbering, accent),
+        Part.EXCLUSIONS: lambda: exclusions_section(basis, numbering),
+        Part.LIMITS: lambda: limits_section(basis, numbering),
         Part.CHECKS: lambda: checks_section(basis, numbering, accent),
         Part.OUTLIERS: lambda: outliers_section(basis, numbering),
         Part.ANOVA: lambda: anova_section(basis, numbering),
@@ -137,7 +149,7 @@ def _signature_boxes(content: ReportInput) -> tuple[SignatureBox, ...]:
     return tuple(boxes)
 
 
-def _meaning_height(boxes: tuple[SignatureBox, ...]) -> str:
+def meaning_height(boxes: tuple[SignatureBox, ...]) -> str:
     """Room for the longest meaning, so that the fields of a row stand level."""
     lines = max((len(wrapped(box.meaning, _MEANING_SIZE, _BOX_WIDTH)) for box in boxes), default=0)
     return f"{lines * _MEANING_LINE:.1f}pt"
@@ -162,7 +174,7 @@ def _facts(bases: tuple[Basis, ...]) -> tuple[Prose, ...]:
         prose(
             "{total} from {file} · run on {date} at {time} UTC by {actor}{earlier}{execution}",
             total=counted(sum(one.total for one in bases), "value"),
-            file=verbatim(basis.observations.file),
+            file=files_words(basis),
             date=run.started_utc[:10],
             time=run.started_utc[11:16],
             actor=run.actor,
@@ -170,6 +182,7 @@ def _facts(bases: tuple[Basis, ...]) -> tuple[Prose, ...]:
             execution="" if further else f" · execution {run.executions.number} on these data",
         ),
         *([prose("{words}", words=further)] if further else []),
+        *([] if run.replaces is None else [prose("{words}", words=replaced_words(run.replaces))]),
     )
 
 

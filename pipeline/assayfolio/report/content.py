@@ -186,6 +186,7 @@ class ReportContent:
     head_right: str
     foot_left: str
     registration: str
+    is_calm: bool
     digest: str
     sections: tuple[Section, ...]
     end_mark: str

@@ -12,6 +12,7 @@ from assayfolio.report.numbering import Numbering, Part
 from assayfolio.report.prose import Prose, Words, prose
 from assayfolio.report.tables import Column, lay_out
 from assayfolio.report.wording import BLANK, capitalised, with_unit
+from assayfolio.study.plan import StudyDefinition
 
 _NAMES = {
     "repeatability-sd": "repeatability standard deviation",
@@ -75,8 +76,13 @@ def criteria_section(basis: Basis, numbering: Numbering) -> Section:
 
 def quantity_name(basis: Basis, quantity: str, level: str | None) -> str:
     """What a criterion is about, in words; the total by the name that the plan gives it."""
+    return quantity_words(basis.study, quantity, level)
+
+
+def quantity_words(study: StudyDefinition, quantity: str, level: str | None) -> str:
+    """The same, from the plan alone."""
     name = _NAMES[quantity]
-    plan = basis.study.precision
+    plan = study.precision
     if plan is not None and plan.conditions is not None:
         name = name.replace("total", plan.conditions.replace("-", " "))
     return f"{name} of {level}" if level is not None else name

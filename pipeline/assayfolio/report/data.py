@@ -1,36 +1,21 @@
 """What came in: counts, descriptive statistics, and every value drawn."""
 
 from assayfolio.report.basis import Basis
-from assayfolio.report.content import Block, FigureBlock, Paragraph, Section, TableBlock
+from assayfolio.report.content import FigureBlock, Heading, Section, TableBlock
 from assayfolio.report.descriptives import descriptives_tables
 from assayfolio.report.figures import MOST_DOTS, dot_plots
 from assayfolio.report.numbering import Numbering, Part
-from assayfolio.report.prose import Prose, Words, prose, verbatim
+from assayfolio.report.prose import Prose, prose
+from assayfolio.report.received import has_headings, received_blocks
 from assayfolio.report.wording import counted
 
 
 def data_section(basis: Basis, numbering: Numbering, accent: str) -> Section:
-    """Counts, descriptive statistics, and every value drawn."""
-    observations = basis.observations
-    raw = observations.files[0]
-    by_separator = f"columns separated by {raw.separator}"
-    layout: Words = verbatim(f"sheet {raw.sheet}") if raw.separator is None else by_separator
-    blocks: list[Block] = [
-        Paragraph(
-            prose(
-                "{total} received from {file}, 0 excluded, {total2} analysed: this version has no "
-                "exclusions and analyses every value in the file. Values were read as exact decimals from "
-                "their text ({layout}, decimal {mark}); at most {places} recorded.",
-                total=counted(basis.total, "value"),
-                total2=str(basis.total),
-                file=verbatim(observations.file),
-                layout=layout,
-                mark=basis.content.study.data.decimal_mark,
-                places=counted(observations.places, "decimal place"),
-            )
-        ),
-        *(TableBlock(table) for table in descriptives_tables(basis, numbering)),
-    ]
+    """What was received and how, descriptive statistics, and every value drawn."""
+    blocks = received_blocks(basis, numbering)
+    if has_headings(blocks):
+        blocks.append(Heading(prose("Values analysed")))
+    blocks += [TableBlock(table) for table in descriptives_tables(basis, numbering)]
     pictures = dot_plots(basis, accent)
     blocks += [
         FigureBlock(numbering.figure(), (picture,), _dot_caption(basis, number, len(pictures)))
@@ -50,8 +35,8 @@ def _dot_caption(basis: Basis, number: int, count: int) -> Prose:
         )
     else:
         what = prose(
-            "Every value of {response} as a circle, {total} in all; equal and near values stand side by "
-            "side.",
+            "Every analysed value of {response} as a circle, {total} in all; equal and near values stand "
+            "side by side.",
             response=basis.response.response,
             total=str(basis.total),
         )

@@ -18,10 +18,10 @@ from assayfolio.report.notation import (
 )
 from assayfolio.report.numbering import Numbering, Part
 from assayfolio.report.prose import Prose, Words, prose
+from assayfolio.report.registration import family_standing
 from assayfolio.report.tables import Column, Table, lay_out
 from assayfolio.report.wording import (
     BLANK,
-    STANDING,
     critical_words,
     interval_cells,
     limits_words,
@@ -125,7 +125,7 @@ def _family_words(basis: Basis, family: EquivalenceFamily) -> Prose:
         margin=margin_words(basis, family),
         of_mean=" of the reference mean" if is_percent(family) else "",
         source=source,
-        standing=STANDING,
+        standing=family_standing(basis, registered=family.registered),
         alpha=decimal(family.alpha),
     )
 

@@ -19,15 +19,15 @@ def further_words(executions: ExecutionFacts) -> str:
         words += f"; plan versions tried before: {_tried(executions, _MOST_ON_PAGE_1)}"
     if executions.elsewhere:
         words += f"; {_elsewhere(executions.elsewhere, _MOST_ON_PAGE_1)}"
-    return words
+    return words + _void(executions, _MOST_ON_PAGE_1)
 
 
 def execution_words(executions: ExecutionFacts) -> str:
     """The number of this execution, and the plan versions of those before it."""
     words = f"execution {executions.number} of this study on exactly these data files"
     if executions.tried:
-        return f"{words}; plan versions tried before: {_tried(executions, _MOST_LISTED)}"
-    return words
+        words += f"; plan versions tried before: {_tried(executions, _MOST_LISTED)}"
+    return words + _void(executions, _MOST_LISTED)
 
 
 def elsewhere_words(executions: ExecutionFacts) -> str:
@@ -46,6 +46,14 @@ def _tried(executions: ExecutionFacts, most: int) -> str:
         for version, runs in sorted(tries.items(), key=lambda item: item[0] != present)
     ]
     return first_of(names, most, ", ")
+
+
+def _void(executions: ExecutionFacts, most: int) -> str:
+    """The runs among them that are void."""
+    if not executions.void:
+        return ""
+    runs = [f"{run} (investigation {reference})" for run, reference in executions.void]
+    return f"; void: {first_of(runs, most, ', ')}"
 
 
 def _named(version: PlanVersion) -> str:

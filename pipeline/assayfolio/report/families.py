@@ -17,10 +17,10 @@ from assayfolio.report.notation import (
 )
 from assayfolio.report.numbering import Numbering, Part
 from assayfolio.report.prose import Prose, Words, joined, prose
+from assayfolio.report.registration import family_standing
 from assayfolio.report.tables import Column, Table, lay_out
 from assayfolio.report.wording import (
     BLANK,
-    STANDING,
     adjusted_p,
     alpha_words,
     counted,
@@ -75,7 +75,7 @@ def _family_words(basis: Basis, family: ComparisonFamily) -> Prose:
         "side": side_words(basis, family),
         "adjusted": _how_adjusted(family),
         "df": _df_words(basis, family),
-        "standing": STANDING,
+        "standing": family_standing(basis, registered=family.registered),
     }
     if count == 1:
         pattern = f"One comparison, {{side}}{_how_one_is_adjusted(family)}, {{df}}; {{standing}}."

@@ -13,7 +13,11 @@ class Part(StrEnum):
     """A part of a report; the value is the anchor of its section."""
 
     PLAN = "plan"
+    REGISTRATION = "registration"
+    DEVIATIONS = "deviations"
     DATA = "data"
+    EXCLUSIONS = "exclusions"
+    LIMITS = "beyond-limits"
     CHECKS = "checks"
     OUTLIERS = "outliers"
     ANOVA = "analysis"
@@ -46,6 +50,10 @@ class Outline:
         responses = content.findings.responses
         self._places: dict[tuple[Part, int | None], SectionPlace] = {}
         self._add((Part.PLAN,), None)
+        if content.run.registration.is_registered:
+            self._add((Part.REGISTRATION,), None)
+        if content.findings.deviations:
+            self._add((Part.DEVIATIONS,), None)
         for index, found in enumerate(responses):
             self._add(_parts_of(content.study, found), index)
         self._add((Part.NOT_REPORTED, Part.METHOD, Part.PROVENANCE, Part.LISTING), None)
@@ -72,6 +80,8 @@ def _parts_of(study: StudyDefinition, found: ResponseFindings) -> list[Part]:
     about = (None, found.response)
     applies = {
         Part.DATA: True,
+        Part.EXCLUSIONS: found.without_exclusions is not None,
+        Part.LIMITS: found.censoring is not None,
         Part.CHECKS: True,
         Part.OUTLIERS: study.outliers is not None,
         Part.ANOVA: True,

@@ -5,6 +5,7 @@ from collections.abc import Sequence
 from assayfolio.findings import NEITHER, OUTLIER, STRAGGLER, OutlierFindings
 from assayfolio.report.basis import Basis
 from assayfolio.report.content import Block, Paragraph, Section, TableBlock
+from assayfolio.report.counts import is_whole
 from assayfolio.report.notation import statistic
 from assayfolio.report.numbering import Numbering, Part
 from assayfolio.report.prose import Words, prose
@@ -32,8 +33,9 @@ def outliers_section(basis: Basis, numbering: Numbering) -> Section:
             prose(
                 "A test proposes values or levels to look into: a straggler lies beyond the limit that "
                 "chance alone exceeds in 5 % of cases, an outlier beyond that of 1 %, for each test by "
-                "itself. #Nothing was removed#: every analysis in this report uses all values. A proposal "
-                "calls for a cause, found in the laboratory’s records; without one the value stays."
+                "itself. #Nothing was removed# by these tests: {uses}. A proposal "
+                "calls for a cause, found in the laboratory’s records; without one the value stays.",
+                uses=_uses(basis),
             )
         ),
         Paragraph(prose("#{verdict}.#", verdict=proposals_words(found)), "lead"),
@@ -47,6 +49,13 @@ def outliers_section(basis: Basis, numbering: Numbering) -> Section:
         blocks.append(Paragraph(prose(words, tests=counted(left_out, "test")), "note"))
     blocks += _not_assessable(found)
     return Section(place.anchor, place.number, basis.title("Outlier proposals"), tuple(blocks))
+
+
+def _uses(basis: Basis) -> str:
+    if is_whole(basis):
+        return "every analysis in this report uses all values"
+    number = basis.place(Part.DATA).number
+    return f"every analysis uses all values that section {number} counts as analysed, and so do the tests"
 
 
 def proposed(found: Sequence[OutlierFindings], verdict: str) -> int:
@@ -79,7 +88,7 @@ def _table(basis: Basis, found: Sequence[OutlierFindings], numbering: Numbering)
     columns = [
         Column("Test", kind="words"),
         Column("Level", kind="text"),
-        Column("Lines", kind="words"),
+        Column(f"{capitalised(basis.line_word)}s", kind="words"),
         Column("Values", basis.scale.heading, kind="words"),
         Column("Statistic"),
         Column("Straggler limit, 5 %"),
@@ -90,7 +99,7 @@ def _table(basis: Basis, found: Sequence[OutlierFindings], numbering: Numbering)
         [
             _name(one),
             ", ".join(one.levels) or one.level or BLANK,
-            ", ".join(str(line) for line in one.lines) or BLANK,
+            _places(basis, one),
             _values(basis, one),
             _statistic(one),
             BLANK if one.straggler_limit is None else statistic(one.straggler_limit),
@@ -114,6 +123,13 @@ def _table(basis: Basis, found: Sequence[OutlierFindings], numbering: Numbering)
 def _name(found: OutlierFindings) -> str:
     name = TEST_NAMES.get(found.test, found.test)
     return _OF_MEANS.get(found.test, name) if found.about == "level means" else name
+
+
+def _places(basis: Basis, found: OutlierFindings) -> str:
+    """The lines of the values in question, each behind the number of its file where there are several."""
+    names = [raw.file for raw in basis.observations.files]
+    files = [names.index(file) for file in found.files] or [0] * len(found.lines)
+    return ", ".join(map(basis.spot, files, found.lines)) or BLANK
 
 
 def _values(basis: Basis, found: OutlierFindings) -> str:

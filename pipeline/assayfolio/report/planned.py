@@ -2,12 +2,15 @@
 
 from assayfolio.report.basis import Basis
 from assayfolio.report.content import Block, Entry, Facts, Heading, Paragraph, Section, TableBlock
+from assayfolio.report.deviations import search_words
 from assayfolio.report.notation import percent
 from assayfolio.report.numbering import Numbering, Part
 from assayfolio.report.planned_analyses import planned_rows
+from assayfolio.report.planned_data import data_entries, not_stated_words
 from assayfolio.report.planned_power import power_blocks
 from assayfolio.report.planned_tables import contrast_tables, criteria_table, margin_table, score_tables
 from assayfolio.report.prose import Prose, prose, verbatim
+from assayfolio.report.registration import plan_words
 from assayfolio.report.tables import Column, lay_out
 from assayfolio.report.wording import alpha_words, counted
 
@@ -22,15 +25,8 @@ def plan_section(bases: tuple[Basis, ...], numbering: Numbering) -> Section:
     basis = bases[0]
     place = basis.place(Part.PLAN)
     blocks: list[Block] = [
-        Paragraph(
-            prose(
-                "The plan is the study definition attached to this document, as it stood when the run "
-                "began. It was #not pre-registered#: nothing shows that it was fixed before the data were "
-                "seen, so every result here is exploratory; “planned” says that it stands in the study "
-                "definition, no more. This version records no deviations from the plan; whether there were "
-                "any, the laboratory’s own records say."
-            )
-        ),
+        Paragraph(plan_words(basis)),
+        Paragraph(_deviations(basis)),
         Facts(tuple(_entries(bases))),
         TableBlock(
             lay_out(
@@ -54,17 +50,17 @@ def plan_section(bases: tuple[Basis, ...], numbering: Numbering) -> Section:
     blocks += [TableBlock(table) for table in tables]
     if basis.content.findings.power is not None:
         blocks.append(Heading(prose("Power of the plan"), "power"))
-        blocks += power_blocks(basis, basis.content.findings.power, numbering)
-    blocks.append(Paragraph(prose(_NOT_STATED), "note"))
+        blocks += power_blocks(basis.study, basis.content.findings.power, numbering)
+    blocks.append(Paragraph(not_stated_words(basis), "note"))
     return Section(place.anchor, place.number, "Plan", tuple(blocks))
 
 
-_NOT_STATED = (
-    "Not part of the study definition and therefore not stated here: customer, description and "
-    "condition of the items, sampling, dates of receipt and of the measurements, persons who "
-    "measured, instruments, environmental conditions, measurement uncertainty. Where they "
-    "matter they are in the laboratory’s own records."
-)
+def _deviations(basis: Basis) -> Prose:
+    """Where the deviations from the plan stand, or that none was found and where it was looked for."""
+    if not basis.content.findings.deviations:
+        return prose(search_words(basis))
+    number = str(basis.place(Part.DEVIATIONS).number)
+    return prose("#Deviations from the plan# stand in section {number}.", number=number)
 
 
 def _entries(bases: tuple[Basis, ...]) -> list[Entry]:
@@ -84,6 +80,7 @@ def _entries(bases: tuple[Basis, ...]) -> list[Entry]:
     if study.data.order is not None:
         words = "column {column}; the residuals are tested for a trend in it"
         entries.append(Entry(prose("Measuring order"), prose(words, column=verbatim(study.data.order))))
+    entries += data_entries(basis)
     if study.precision is not None and study.precision.estimate:
         entries.append(Entry(prose("Precision"), _precision(basis)))
     return entries

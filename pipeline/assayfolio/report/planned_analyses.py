@@ -78,10 +78,11 @@ def _comparison_row(bases: tuple[Basis, ...], plan: Comparison) -> list[Words]:
         for one in bases
     ]
     number = bases[0].place(Part.NOT_REPORTED).number
-    return [_comparison(plan), ADJUSTMENTS[plan.adjust].name, _where(found, number)]
+    return [comparison_words(plan), ADJUSTMENTS[plan.adjust].name, _where(found, number)]
 
 
-def _comparison(comparison: Comparison) -> Prose:
+def comparison_words(comparison: Comparison) -> Prose:
+    """A planned family of comparisons: its name, and what it compares."""
     if isinstance(comparison, AllPairs):
         what = "all pairs"
     elif isinstance(comparison, AgainstReference):
@@ -127,11 +128,12 @@ def _check_rows(bases: tuple[Basis, ...]) -> Rows:
         ("Check of normality of residuals", study.checks.normality),
     ):
         if tests:
-            rows.append([what, ", ".join(_method_name(test) for test in tests), number])
+            rows.append([what, ", ".join(method_name(test) for test in tests), number])
     if study.data.order is not None:
         rows.append(["Check of the measuring order", "trend of residuals", number])
     return rows
 
 
-def _method_name(key: str) -> str:
+def method_name(key: str) -> str:
+    """A check by the names of its authors: "Brown–Forsythe"."""
     return "–".join(part.capitalize() for part in key.split("-"))

@@ -1,24 +1,24 @@
 """The power of the plan, from the plan alone."""
 
 from assayfolio.findings import PowerFindings, PowerRow
-from assayfolio.report.basis import Basis
 from assayfolio.report.content import Block, Paragraph, TableBlock
 from assayfolio.report.notation import decimal, percent, probability, three_digits
 from assayfolio.report.numbering import Numbering
 from assayfolio.report.prose import Prose, Words, prose
 from assayfolio.report.tables import Column, Table, lay_out
 from assayfolio.report.wording import BLANK, typographic, with_unit
+from assayfolio.study.plan import StudyDefinition
 
 
-def power_blocks(basis: Basis, power: PowerFindings, numbering: Numbering) -> list[Block]:
+def power_blocks(study: StudyDefinition, power: PowerFindings, numbering: Numbering) -> list[Block]:
     """What the planned numbers can show, in words and as a table."""
     return [
-        Paragraph(_assumed(basis, power)),
+        Paragraph(_assumed(study, power)),
         TableBlock(_table(power, numbering)),
     ]
 
 
-def _assumed(basis: Basis, power: PowerFindings) -> Prose:
+def _assumed(study: StudyDefinition, power: PowerFindings) -> Prose:
     sizes = _by_level(power, power.replicates)
     words = prose(
         "From the plan alone, and never from the data: what a study of this size can show where the standard "
@@ -27,12 +27,12 @@ def _assumed(basis: Basis, power: PowerFindings) -> Prose:
         sigma=with_unit(decimal(power.sigma), power.unit),
         difference=with_unit(decimal(power.difference), power.unit),
         alpha=decimal(power.alpha),
-        divided=_divided(basis),
+        divided=_divided(study),
         sizes=sizes,
         target=percent(power.target),
     )
     more = []
-    if basis.several:
+    if len(study.data.response) > 1:
         more.append(f" It is about {power.response}.")
     if any(map(is_on_equivalence, power.rows)):
         true = with_unit(decimal(power.true_difference), power.unit)
@@ -47,12 +47,12 @@ def is_on_equivalence(row: PowerRow) -> bool:
     return "one-sided t test" in row.method
 
 
-def _divided(basis: Basis) -> str:
+def _divided(study: StudyDefinition) -> str:
     """Why alpha is not that of the plan; empty where it is."""
-    if basis.study.design.across_responses == "none":
+    if study.design.across_responses == "none":
         return ""
-    count = len(basis.study.data.response)
-    return f" (that of the plan, {decimal(basis.study.alpha)}, divided by the number of responses, {count})"
+    count = len(study.data.response)
+    return f" (that of the plan, {decimal(study.alpha)}, divided by the number of responses, {count})"
 
 
 def _table(power: PowerFindings, numbering: Numbering) -> Table:

@@ -9,11 +9,13 @@ import re
 from dataclasses import dataclass
 from typing import TypeAlias
 
+from assayfolio.characters import is_settable
 from assayfolio.report.notation import kept_together
 
 _STYLES = {"*": "symbol", "#": "strong", "~": "quiet", "_": "sub", "^": "sup"}
 _UNIT_WITH_SLASH = re.compile(r"((?<![^ ])[^ /]{1,20}/\d[^ /]{0,12}(?![^ ]))")
 _LONG_WORD = re.compile(r"\w{8}")
+_LONGEST_CELL = 240
 _TOKEN = re.compile(r"([*#~_^])(.+?)\1|\{([a-z0-9_]+)\}")
 
 
@@ -77,6 +79,13 @@ def as_prose(words: Words) -> Prose:
 def verbatim(text: str) -> Prose:
     """`text` character by character, such as a path that a reader may copy."""
     return (Span(text, "given"),)
+
+
+def legible(text: str) -> str:
+    """`text` as far as print can show it: what the typeface lacks or nobody sees as its number, long cut."""
+    cut = text if len(text) <= _LONGEST_CELL else text[:_LONGEST_CELL]
+    shown = "".join(c if is_settable(c) else f"<U+{ord(c):04X}>" for c in cut)
+    return shown if cut is text else f"{shown} … ({len(text)} characters)"
 
 
 def plain(words: Words) -> str:

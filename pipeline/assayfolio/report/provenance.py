@@ -4,11 +4,13 @@ from assayfolio.report.basis import Basis
 from assayfolio.report.content import Block, Entry, Facts, Heading, Items, Section
 from assayfolio.report.executions import elsewhere_words, execution_words
 from assayfolio.report.facts import InputFacts, RunFacts
-from assayfolio.report.listing import MOST_LISTED
+from assayfolio.report.listing import is_listed
 from assayfolio.report.numbering import Part
+from assayfolio.report.people import replaced_words, roles_words, started_by
 from assayfolio.report.prose import Prose, prose, verbatim
-from assayfolio.report.wording import counted
+from assayfolio.report.wording import counted, first_of
 
+_MOST_PATHS = 8
 _SIGNING = (
     "~Signatures: this version does not sign. Until signing is part of this program, the sign-off fields on "
     "page 1 are signed on a copy outside the folio; signing the file inside the folio would break its seal.~"
@@ -29,7 +31,9 @@ def provenance_section(basis: Basis) -> Section:
                 _entry("Executions", execution_words(run.executions)),
                 _entry("Data also used", elsewhere_words(run.executions)),
                 _entry("Started", f"{_time(run.started_utc)} UTC, {_time(run.started_local)} local time"),
-                _entry("Started by", f"{run.actor} on {run.host}"),
+                _entry("Started by", started_by(run.actor, run.host, run.person)),
+                *([] if run.person is None else [_entry("Roles", roles_words(run.person))]),
+                *([] if run.replaces is None else [_entry("Replaces", replaced_words(run.replaces))]),
                 _entry("Self-check", run.self_check),
                 _entry("Findings", "findings.json", run.findings_sha256),
                 _entry("Trail head", f"entry {run.trail_seq} of the audit trail", run.trail_sha256),
@@ -120,7 +124,7 @@ def _how_to_check(basis: Basis) -> tuple[Prose, ...]:
             "{number}.",
             number=str(basis.place(Part.METHOD).number),
             source=f"the listing in section {basis.place(Part.LISTING).number}"
-            if basis.total <= MOST_LISTED
+            if is_listed(basis)
             else "the exact sums of each level (“sums” in findings.json)",
         ),
         *([prose(_SIGNING)] if basis.content.study.sign_off else []),
@@ -138,8 +142,12 @@ def _attached(basis: Basis) -> list[Prose]:
         )
         for file in files
     ]
-    raw = next(item.folio_path for item in basis.content.run.inputs if item.role == "raw data")
-    if raw.rpartition("/")[2] not in {file.name for file in files}:
-        words = "The raw data are too large to attach; they stand in the folio as {path}."
-        listed.append(prose(words, path=verbatim(raw)))
+    attached = {file.name for file in files}
+    raw = [item.folio_path for item in basis.content.run.inputs if item.role == "raw data"]
+    apart = [path for path in raw if path.rpartition("/")[2] not in attached]
+    if apart:
+        words = "Not attached, and in the folio as {paths}: {what}."
+        what = "the raw data" if len(apart) == len(raw) else "the other raw data"
+        named = first_of(apart, _MOST_PATHS, ", ")
+        listed.append(prose(words, what=what, paths=verbatim(named)))
     return listed

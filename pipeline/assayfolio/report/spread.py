@@ -8,8 +8,9 @@ from assayfolio.report.methods import adjustment_words
 from assayfolio.report.notation import confidence, probability, three_digits
 from assayfolio.report.numbering import Numbering, Part
 from assayfolio.report.prose import Prose, Words, prose
+from assayfolio.report.registration import family_standing, is_calm
 from assayfolio.report.tables import Column, Table, lay_out
-from assayfolio.report.wording import BLANK, STANDING, alpha_words, row_verdict, significant_ends
+from assayfolio.report.wording import BLANK, alpha_words, row_verdict, significant_ends
 
 
 def spread_section(basis: Basis, numbering: Numbering) -> Section:
@@ -42,7 +43,7 @@ def _words(basis: Basis, spread: SpreadFindings) -> Prose:
         f"that of {{against}}, two-sided {tests}; {{standing}}. A difference is shown where {kind} is at "
         "most {alpha}. The test and its interval lean on normal errors more than those for means do.",
         against=spread.against,
-        standing=STANDING,
+        standing=family_standing(basis, registered=is_calm(basis.content.run)),
         alpha=alpha_words(basis),
     )
 

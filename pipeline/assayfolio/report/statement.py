@@ -17,6 +17,7 @@ from assayfolio.report.statement_beyond import (
 )
 from assayfolio.report.statement_checks import checks_method, outliers_method
 from assayfolio.report.statement_comparisons import comparisons_method
+from assayfolio.report.statement_intake import intake_method
 from assayfolio.report.statement_parts import Method
 from assayfolio.report.statement_precision import precision_method
 from assayfolio.report.wording import alpha_words
@@ -42,7 +43,7 @@ def method_section(bases: tuple[Basis, ...]) -> Section:
         ),
         Paragraph(
             prose(
-                "Values are taken as the exact decimals that were typed. Sums are exact; the sums of "
+                "Numbers are taken as the exact decimals that were typed. Sums are exact; the sums of "
                 "squares, mean squares, *F*, means and differences are exact fractions, rounded once, half "
                 "to even, when they are printed. Distribution functions are computed in double precision, "
                 "with small tail probabilities kept to relative accuracy."
@@ -61,6 +62,7 @@ def method_section(bases: tuple[Basis, ...]) -> Section:
 def methods_of(bases: tuple[Basis, ...]) -> list[Method]:
     """The procedures in use, in the order of the report."""
     made = (
+        intake_method(bases),
         analysis_method(bases),
         effects_method(bases),
         comparisons_method(bases),

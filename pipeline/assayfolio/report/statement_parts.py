@@ -26,6 +26,6 @@ def formula(what: str, *parts: str | tuple[str, str], **values: str) -> Formula:
     return Formula(prose(what), tuple(laid))
 
 
-def sentences(*patterns: str) -> Items:
-    """Sentences as a list."""
-    return Items(tuple(prose(pattern) for pattern in patterns))
+def sentences(*patterns: str, **values: str) -> Items:
+    """Sentences as a list; `values` go into the patterns."""
+    return Items(tuple(prose(pattern, **values) for pattern in patterns))

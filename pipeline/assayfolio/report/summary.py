@@ -4,9 +4,14 @@ Here the first page says what must not be missed, wherever the card of the quest
 """
 
 from assayfolio.findings import CRITERION_MET, NOT_ASSESSABLE, CheckFindings
+from assayfolio.report.agreement import policy_verdicts, short_agreement, verdicts_of
 from assayfolio.report.basis import Basis
 from assayfolio.report.content import SummaryLine
+from assayfolio.report.counts import counts_words
 from assayfolio.report.criteria import criteria_count, criterion_phrase
+from assayfolio.report.deviations import deviations_line
+from assayfolio.report.exclusions import exclusions_of
+from assayfolio.report.limits import beyond_words
 from assayfolio.report.numbering import Part
 from assayfolio.report.outliers import proposals_words
 from assayfolio.report.prose import Prose, joined, prose
@@ -21,8 +26,6 @@ from assayfolio.report.wording import (
     spread_of,
 )
 
-_NO_DEVIATIONS = "this version records none; the laboratory’s own records apply"
-_NO_EXCLUSIONS = "this version has no exclusions"
 _FEW_CHECKS = 2
 _MOST_NAMED = 3
 
@@ -31,6 +34,7 @@ def summary(bases: tuple[Basis, ...]) -> tuple[SummaryLine, ...]:
     """One line each for data, checks, deviations; for proposals and gaps where the report has them."""
     first = bases[0]
     lines = [_line(first, "Data", _data_words(bases), Part.DATA)]
+    lines += _intake_lines(bases)
     with_criteria = [basis for basis in bases if basis.response.criteria]
     if with_criteria:
         place = _first_of_interest(with_criteria)
@@ -38,7 +42,8 @@ def summary(bases: tuple[Basis, ...]) -> tuple[SummaryLine, ...]:
     lines.append(_line(first, "Checks", _checks_words(bases), Part.CHECKS))
     if first.outline.has(Part.OUTLIERS):
         lines.append(_line(first, "Outliers", _proposals_words(bases), Part.OUTLIERS))
-    lines.append(_line(first, "Deviations", prose(_NO_DEVIATIONS), Part.PLAN))
+    where = Part.DEVIATIONS if first.content.findings.deviations else Part.PLAN
+    lines.append(_line(first, "Deviations", deviations_line(first), where))
     if first.content.findings.not_reported:
         lines.append(_line(first, "Not reported", _unreported_words(first), Part.NOT_REPORTED))
     return tuple(lines)
@@ -107,13 +112,68 @@ def _data_words(bases: tuple[Basis, ...]) -> Prose:
             of = f" of {one.response.response}" if one.several else ""
             pooled.append(prose("residual SD{of} {sd}", of=of, sd=spread_of(one.difference_scale, residual)))
     return prose(
-        "{total} received{of_each}, 0 excluded, {total} analysed ({exclusions}); {each}{pooled}",
-        total=str(basis.total),
-        of_each=f" of each of {len(bases)} responses" if basis.several else "",
-        exclusions=_NO_EXCLUSIONS,
+        "{counts}; {each}{pooled}",
+        counts=_counts(bases),
         each=each,
         pooled=tuple(span for words in pooled[:_MOST_NAMED] for span in (*prose("; "), *words)),
     )
+
+
+def _counts(bases: tuple[Basis, ...]) -> str:
+    """The counts from received to analysed: once where all responses have the same, else for each."""
+    if len(bases) == 1:
+        return counts_words(bases[0])
+    if len({counts_words(one) for one in bases}) == 1:
+        return f"{counts_words(bases[0])} of each of {len(bases)} responses"
+    each = [f"{one.response.response}: {counts_words(one)}" for one in bases]
+    return first_of(each, _MOST_NAMED, "; ")
+
+
+def _intake_lines(bases: tuple[Basis, ...]) -> list[SummaryLine]:
+    """What was excluded and what lies beyond a limit, with whether that bears on any verdict."""
+    lines = []
+    changed = [one for one in bases if one.response.without_exclusions is not None]
+    if changed:
+        lines.append(_line(changed[0], "Exclusions", _exclusions_words(changed), Part.EXCLUSIONS))
+    beyond = [one for one in bases if one.response.censoring is not None]
+    if beyond:
+        lines.append(_line(beyond[0], "Limits", _limits_words(beyond), Part.LIMITS))
+    return lines
+
+
+def _exclusions_words(bases: list[Basis]) -> Prose:
+    count = sum(len(exclusions_of(one)) for one in bases)
+    parts = []
+    for one in bases:
+        without = one.response.without_exclusions
+        if without is not None:
+            verdicts = [verdicts_of(one, one.response), verdicts_of(one, without)]
+            of = f"{one.response.response}: " if one.several else ""
+            parts.append(prose("{of}{words}", of=of, words=short_agreement(verdicts, _MOST_NAMED)))
+    return prose(
+        "{count}, {each} reason; with and without {them} {parts}",
+        count=counted(count, "value excluded", "values excluded"),
+        each="with its" if count == 1 else "each with its",
+        them="it" if count == 1 else "them",
+        parts=joined(parts[:_MOST_NAMED], "; "),
+    )
+
+
+def _limits_words(bases: list[Basis]) -> Prose:
+    parts = []
+    for one in bases:
+        found = one.response.censoring
+        if found is None:
+            continue
+        of = f"{one.response.response}: " if one.several else ""
+        words = prose("{of}{beyond}", of=of, beyond=beyond_words(found))
+        if len(found.sensitivity) > 1:
+            verdicts = [policy_verdicts(one, policy) for policy in found.sensitivity]
+            words += prose(
+                "; under each way of taking them {words}", words=short_agreement(verdicts, _MOST_NAMED)
+            )
+        parts.append(words)
+    return joined(parts[:_MOST_NAMED], "; ")
 
 
 def _checks_words(bases: tuple[Basis, ...]) -> Prose:

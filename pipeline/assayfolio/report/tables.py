@@ -58,7 +58,10 @@ class Cell:
 
 @dataclass(frozen=True, slots=True)
 class Table:
-    """A table ready to be set; the first column names the row."""
+    """A table ready to be set; the first column names the row.
+
+    `groups` are heads above the heads, each over a number of columns; empty where there are none.
+    """
 
     label: str
     caption: Prose
@@ -69,6 +72,7 @@ class Table:
     size: str
     zebra: bool
     unbroken: bool
+    groups: tuple[tuple[Prose, int], ...] = ()
 
 
 def lay_out(
@@ -77,10 +81,12 @@ def lay_out(
     columns: Sequence[Column],
     rows: Sequence[Sequence[Words]],
     notes: Sequence[Words] = (),
+    groups: Sequence[tuple[Words, int]] = (),
 ) -> Table:
     """The table of these rows, as wide as it needs and no wider than the text column.
 
-    A table that is too wide for its column is set smaller, its text columns wrapping first.
+    A table that is too wide for its column is set smaller, its text columns wrapping first. `groups` are
+    heads over several columns each, from the left.
     """
     size, widths = _widths(columns, rows)
     cells = [_cells(column, [row[index] for row in rows], size) for index, column in enumerate(columns)]
@@ -98,6 +104,7 @@ def lay_out(
         size=f"{size:.2f}pt",
         zebra=len(rows) >= _ZEBRA_FROM,
         unbroken=len(rows) <= UNBROKEN_TO,
+        groups=tuple((as_prose(words), span) for words, span in groups),
     )
 
 
@@ -105,9 +112,9 @@ def _mm(width: float) -> str:
     return f"{width:.2f}mm"
 
 
-def fits(columns: Sequence[Column], rows: Sequence[Sequence[Words]]) -> bool:
-    """Whether a table of these rows fits at its proper size, text columns wrapped if need be."""
-    return _widths(columns, rows)[0] > _COMFORTABLE
+def fits(columns: Sequence[Column], rows: Sequence[Sequence[Words]], smallest: float = _COMFORTABLE) -> bool:
+    """Whether a table of these rows fits in more than `smallest` points, text columns wrapped if need be."""
+    return _widths(columns, rows)[0] > smallest
 
 
 def _widths(columns: Sequence[Column], rows: Sequence[Sequence[Words]]) -> tuple[float, list[float]]:

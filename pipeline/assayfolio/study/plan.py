@@ -10,6 +10,8 @@ from typing import Literal
 
 from assayfolio.errors import Place
 from assayfolio.exact import NotADecimalError, parse_decimal
+from assayfolio.study.laboratory import Laboratory as Laboratory
+from assayfolio.study.laboratory import Person as Person
 
 Adjustment = Literal[
     "none",
@@ -376,16 +378,3 @@ class StudyDefinition:
     def place_of(self, key: str) -> Place | None:
         """Where `key` stands (`alpha`, `data.levels`), or None where it is absent."""
         return dict(self.places).get(key)
-
-
-@dataclass(frozen=True, slots=True)
-class Laboratory:
-    """`lab.yaml` - who issues the reports, how they look, and what every study has to contain."""
-
-    name: str
-    address: tuple[str, ...] = ()
-    note: str | None = None
-    accent: str = "#0f5b66"
-    paper: Literal["A4", "Letter"] = "A4"
-    require: tuple[str, ...] = ()
-    wait_seconds: int = 10

@@ -8,14 +8,10 @@ from assayfolio.study.comparison_section import comparison_in
 from assayfolio.study.criteria_section import criterion_in
 from assayfolio.study.data_section import read_data
 from assayfolio.study.equivalence_section import equivalence_in, spread_in
-from assayfolio.study.faults import Faults, listed, shown
+from assayfolio.study.faults import Faults, shown
 from assayfolio.study.fields import (
     Fields,
-    Reader,
     Value,
-    choice,
-    distinct,
-    label,
     line_of_text,
     list_of,
     mapping_of,
@@ -24,13 +20,13 @@ from assayfolio.study.fields import (
     report_repeats,
 )
 from assayfolio.study.labels import shared_label
+from assayfolio.study.laboratory_file import read_laboratory as read_laboratory
 from assayfolio.study.measurement_section import read_measurement
 from assayfolio.study.names import Surroundings
-from assayfolio.study.numbers import probability, whole_number
+from assayfolio.study.numbers import probability
 from assayfolio.study.plan import (
     ChecksPlan,
     DesignPlan,
-    Laboratory,
     PrecisionPlan,
     StudyDefinition,
 )
@@ -49,30 +45,19 @@ from assayfolio.study.vocabulary import (
     CHECK_KEYS,
     DATA_KEYS,
     DESIGN_KEYS,
-    LABORATORY_KEYS,
-    LONGEST_NOTE,
     LONGEST_PARAGRAPHS,
     LONGEST_TITLE,
     MEASUREMENT_KEYS,
-    PAPERS,
-    REQUIREMENTS,
     STUDY_KEYS,
-    Paper,
 )
 from assayfolio.study.worksheet_section import worksheet_in
 
-MOST_WAIT_SECONDS = 600
-DEFAULT_ACCENT = "#0f5b66"
-DEFAULT_WAIT_SECONDS = 10
 _identifier = matching(
     re.compile(r"[A-Z0-9][A-Z0-9-]{0,39}", re.ASCII),
     "1 to 40 capital letters, digits and hyphens, such as LOT-2024-07",
 )
-_colour = matching(re.compile(r"#[0-9A-Fa-f]{6}", re.ASCII), 'a colour in quotation marks, such as "#0f5b66"')
-_paper: Reader[Paper] = choice(PAPERS)
 _ENTRIES = "a list of entries, each beginning with a hyphen"
 _NOTHING_READ = Surroundings(None, None, None, None, {})
-_REQUIREMENT_LIST = f"a list of {listed(REQUIREMENTS)}"
 
 
 def read_study(content: bytes, file: str) -> StudyDefinition:
@@ -86,19 +71,6 @@ def read_study(content: bytes, file: str) -> StudyDefinition:
     faults.raise_if_any("the study definition")
     assert study is not None, "a definition without faults is complete"
     return study
-
-
-def read_laboratory(content: bytes, file: str) -> Laboratory:
-    """The laboratory's settings in `content`; `file` is its name in messages.
-
-    Raises StudyError with every fault of the file, each with line and column.
-    """
-    faults = Faults(file)
-    fields = root_fields(content, LABORATORY_KEYS, faults)
-    laboratory = None if fields is None else _laboratory(fields)
-    faults.raise_if_any("the laboratory's settings")
-    assert laboratory is not None, "settings without faults are complete"
-    return laboratory
 
 
 def _study(fields: Fields) -> StudyDefinition | None:
@@ -207,17 +179,3 @@ def _report_shared_labels(fields: Fields, data_fields: Fields | None, around: Su
 def _places(*sections: Fields | None) -> tuple[tuple[str, Place], ...]:
     places = [place for section in sections if section is not None for place in section.places()]
     return tuple(sorted(places, key=lambda item: (item[1].line or 0, item[1].column or 0)))
-
-
-def _laboratory(fields: Fields) -> Laboratory | None:
-    name = fields.required("laboratory", label)
-    address = fields.optional("address", list_of(label, "a list of lines")) or ()
-    note = fields.optional("note", line_of_text(LONGEST_NOTE))
-    accent = fields.optional("accent", _colour) or DEFAULT_ACCENT
-    paper = fields.optional("paper", _paper) or "A4"
-    require = fields.optional("require", distinct(list_of(choice(REQUIREMENTS), _REQUIREMENT_LIST))) or ()
-    wait = fields.optional("wait-seconds", whole_number(0, MOST_WAIT_SECONDS))
-    if name is None:
-        return None
-    wait_seconds = DEFAULT_WAIT_SECONDS if wait is None else wait
-    return Laboratory(name, address, note, accent, paper, require, wait_seconds)

@@ -103,7 +103,24 @@ CRITERION_KEYS = ("quantity", "at-most", "at-least", "unit", "level", "response"
 SIGN_OFF_KEYS = ("role", "meaning")
 EXCLUSION_FILE_KEYS = ("exclusions",)
 EXCLUSION_KEYS = ("row", "file", "value", "reason", "decided-by", "decided-at", "approved-by")
-LABORATORY_KEYS = ("laboratory", "address", "note", "accent", "paper", "require", "wait-seconds")
+LABORATORY_KEYS = (
+    "laboratory",
+    "address",
+    "note",
+    "accent",
+    "paper",
+    "require",
+    "wait-seconds",
+    "profile",
+    "one-person",
+    "log-reading",
+    "review-before-approval",
+    "separation",
+    "witnesses",
+)
+SEPARATION_KEYS = ("reviewer-is-not-runner", "approver-is-not-author")
+PEOPLE_FILE_KEYS = ("people",)
+PERSON_KEYS = ("person", "account", "roles", "qualification")
 
 Layout = Literal["long", "wide"]
 Missing = Literal["refuse", "omit"]

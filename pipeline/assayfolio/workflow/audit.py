@@ -1,23 +1,27 @@
-"""Verifying folios and the trail, and showing the trail: the words and documents that the commands print."""
+"""Verifying folios and the trail: what is checked, and the words and documents that the command prints."""
 
 from collections.abc import Mapping, Sequence
 from pathlib import Path
 
 from assayfolio.canonical import Json
 from assayfolio.errors import InputError, MachineError
-from assayfolio.evidence.register import RECEIVED
-from assayfolio.evidence.trail import TrailReading, read_trail
+from assayfolio.evidence.trail import TrailEntry, TrailReading, Witnesses, read_trail
 from assayfolio.evidence.verification import Verification, verify_lone_folios, verify_workspace
+from assayfolio.evidence.witnesses import Witness
 from assayfolio.workflow.register import DataRegister, data_register
-from assayfolio.workflow.workspace import find_workspace
+from assayfolio.workflow.witnessing import distinct, witnesses_of
+from assayfolio.workflow.workspace import Workspace, find_workspace
 
 ONE_SCREEN = 24
 """From this many checks on, the failed ones are named again at the end."""
 
 
-def verify_all(named_workspace: Path | None, folios: Sequence[Path]) -> Verification:
+def verify_all(
+    named_workspace: Path | None, folios: Sequence[Path], witnesses: Sequence[Witness] = ()
+) -> Verification:
     """Verify `folios`, or every folio of the workspace, and the whole trail.
 
+    The trail is held against the witnesses that the settings name, and against `witnesses`.
     A folio that lies in no workspace is checked by itself; what only a trail can show is then not checkable.
     """
     start = folios[0] if folios else Path()
@@ -27,7 +31,16 @@ def verify_all(named_workspace: Path | None, folios: Sequence[Path]) -> Verifica
         if named_workspace is not None or not folios:
             raise
         return verify_lone_folios(folios)
-    return verify_workspace(workspace.runs, folios or None)
+    return verify_workspace(workspace.runs, folios or None, named_witnesses(workspace, witnesses))
+
+
+def named_witnesses(workspace: Workspace, more: Sequence[Witness] = ()) -> Witnesses:
+    """The witnesses that the settings of `workspace` name, and `more`."""
+
+    def named(entries: Sequence[TrailEntry]) -> Sequence[Witness]:
+        return distinct((*witnesses_of(workspace, entries), *more))
+
+    return named
 
 
 def unfinished_data(named_workspace: Path | None) -> DataRegister | None:
@@ -88,58 +101,4 @@ def _counts(verification: Verification) -> dict[str, int]:
     return {
         word: sum(outcome.outcome == word for outcome in verification.outcomes)
         for word in ("passed", "failed", "not checkable")
-    }
-
-
-def trail_of(named_workspace: Path | None) -> TrailReading:
-    """The trail of the workspace as it stands on the disk."""
-    return read_trail(find_workspace(named_workspace, Path()).runs)
-
-
-def trail_lines(reading: TrailReading) -> list[str]:
-    """The trail for people: a line an entry, the reason under it."""
-    if not reading.lines:
-        return ["The audit trail is empty."]
-    widths = [
-        max(len(text) for text in column)
-        for column in zip(*[(e.actor, e.action, e.subject) for e in reading.entries], strict=True)
-    ] or [0, 0, 0]
-    lines = []
-    for entry in reading.entries:
-        moment = f"{entry.time[:10]} {entry.time[11:19]} UTC"
-        lines.append(
-            f"{entry.seq:>6}  {moment}  {entry.actor:<{widths[0]}}  "
-            f"{entry.action:<{widths[1]}}  {entry.subject:<{widths[2]}}".rstrip()
-        )
-        indent = " " * 33
-        if entry.reason:
-            lines.append(f"{indent}{entry.reason}")
-        if entry.action == RECEIVED:
-            path, digest = entry.details.get("path"), entry.details.get("sha256")
-            lines.append(f"{indent}{path}, SHA-256 {digest}")
-        seal = entry.details.get("seal")
-        if isinstance(seal, str):
-            lines.append(f"{indent}seal {seal}")
-    lines.append(f"Head: entry {reading.last.seq}, {reading.last.sha256}")
-    return lines
-
-
-def trail_document(reading: TrailReading) -> Mapping[str, Json]:
-    """The trail for programs: head, faults, and the entries as they stand."""
-    return {
-        "head": None if reading.head is None else {"seq": reading.head.seq, "sha256": reading.head.sha256},
-        "faults": [str(fault) for fault in reading.faults],
-        "entries": [
-            {
-                "seq": entry.seq,
-                "time": entry.time,
-                "actor": entry.actor,
-                "action": entry.action,
-                "subject": entry.subject,
-                "reason": entry.reason,
-                "details": entry.details,
-                "previous": entry.previous,
-            }
-            for entry in reading.entries
-        ],
     }

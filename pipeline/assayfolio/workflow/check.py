@@ -8,6 +8,7 @@ from assayfolio.canonical import Json
 from assayfolio.observations.values import Observations
 from assayfolio.study.plan import StudyDefinition
 from assayfolio.study.suggestions import nearest
+from assayfolio.workflow.flow_words import files_words, flow_words
 from assayfolio.workflow.intake import SeenFiles, data_file_exists, read_intake, read_plan
 from assayfolio.workflow.plan_words import plan_words
 from assayfolio.workflow.workspace import Workspace
@@ -46,7 +47,7 @@ class CheckedStudy:
         listed = ", ".join(f"{level} {n}" for level, n in counts.items())
         return [
             *lines,
-            f"  data   {observed.file}: {sum(counts.values()):,} values{each}, {layout}",
+            f"  data   {files_words(observed)}: {flow_words(observed)}{each}, {layout}",
             f"  data   fits the plan: {listed}",
         ]
 
@@ -61,6 +62,7 @@ class CheckedStudy:
             "study": self.study.study,
             "plan": "valid",
             "data": "absent" if counts is None else "fits the plan",
+            "data_flow": None if self.observations is None else flow_words(self.observations[0]),
             "values_per_level": counts,
         }
 

@@ -19,10 +19,10 @@ from assayfolio.study.plan import Laboratory, StudyDefinition
 from assayfolio.study.reading import read_laboratory, read_study
 from assayfolio.workflow.large_intake import LargeInputFile, archived_file, large_files, streamed, streams
 from assayfolio.workflow.raw_files import FOLDER, raw_files, read_raw_files, some_raw_file_exists
-from assayfolio.workflow.workspace import Workspace, read_input
+from assayfolio.workflow.workspace import PEOPLE, Workspace, read_input
 from assayfolio.worksheet.rows import check_worksheet
 
-Role = Literal["study definition", "raw data", "exclusions", "laboratory settings"]
+Role = Literal["study definition", "raw data", "exclusions", "laboratory settings", "people"]
 
 
 PLACEHOLDER = "Name of your laboratory"
@@ -77,6 +77,9 @@ def read_plan(workspace: Workspace, study_path: Path, seen: SeenFiles) -> tuple[
     settings = read_input(workspace, workspace.settings, "laboratory's settings file")
     lab_file = workspace.name_of(workspace.settings)
     seen.files.append(InputFile("laboratory settings", lab_file, "data/context/lab.yaml", settings))
+    if workspace.people.exists():
+        people = read_input(workspace, workspace.people, "list of people")
+        seen.files.append(InputFile("people", PEOPLE, "data/context/people.yaml", people))
     content = read_input(workspace, study_path, "study definition")
     study_file = workspace.name_of(study_path.resolve())
     seen.files.append(InputFile("study definition", study_file, "data/study.yaml", content))
@@ -109,7 +112,7 @@ def read_files(workspace: Workspace, study_path: Path, seen: SeenFiles) -> tuple
     """
     study, laboratory = read_plan(workspace, study_path, seen)
     paths = raw_files(workspace, study_path, study.data)
-    if streams(paths, study.data):
+    if streams(paths, study.data, workspace.root):
         for file in large_files(workspace, paths, FOLDER):
             seen.files.append(file)
     else:
@@ -163,7 +166,8 @@ def folio_intake(folio: Path, inputs: tuple[tuple[Role, str, str], ...]) -> Inta
     study_file, lab_file = held["study definition"], held["laboratory settings"]
     study = read_study(study_file.content, study_file.path)
     laboratory = read_laboratory(lab_file.content, lab_file.path)
-    large = streams([folio / inside for role, _, inside in inputs if role == "raw data"], study.data)
+    raw = [folio / inside for role, _, inside in inputs if role == "raw data"]
+    large = streams(raw, study.data, folio.resolve())
     files: list[AnyInput] = []
     for role, path, folio_path in inputs:
         if role != "raw data":

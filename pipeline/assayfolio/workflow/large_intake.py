@@ -1,10 +1,14 @@
-"""Raw data files too large to be held in memory: hashed in blocks, then summed as they stream by.
+"""Raw data too many to be held in memory: hashed in blocks, then summed as they stream by.
 
-Files of more than 32 MB together are taken so, where the plan asks for nothing that needs the single rows;
-the decision follows from plan and files alone, so that a report that is rendered again takes the same way.
+Files of more than 100,000 lines or 32 MB together are taken so, where the plan asks for nothing that needs
+the single rows; the decision follows from plan and files alone, so that a report that is rendered again
+takes the same way.
 """
 
+import gzip
+import os
 import stat
+import zlib
 from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
 from functools import partial
@@ -13,8 +17,8 @@ from pathlib import Path
 from typing import BinaryIO, Final, Literal
 
 from assayfolio.errors import DataError, Fault, InputError, MachineError, Place
-from assayfolio.observations.decoding import MAX_BYTES
-from assayfolio.observations.long_text import BLOCK, MOST_BYTES, LongFile
+from assayfolio.observations.decoding import MAX_BYTES, MAX_LINES
+from assayfolio.observations.long_text import BLOCK, MOST_BYTES, LongFile, line_count
 from assayfolio.observations.reading import WORKBOOK
 from assayfolio.observations.streaming import kept_from_streaming, stream_observations
 from assayfolio.observations.values import Observations
@@ -22,6 +26,9 @@ from assayfolio.study.plan import DataPlan, StudyDefinition
 from assayfolio.workflow.workspace import Workspace, real_input, shown_path
 
 STREAM_FROM_BYTES: Final = 32_000_000
+STREAM_FROM_LINES: Final = 100_000
+
+_SHORTEST_LINE: Final = 4  # a level, a separator, a digit, a line end
 
 
 @dataclass(frozen=True, slots=True)
@@ -36,24 +43,57 @@ class LargeInputFile:
     sha256: str
 
 
-def streams(paths: Sequence[Path], plan: DataPlan) -> bool:
+def streams(paths: Sequence[Path], plan: DataPlan, root: Path) -> bool:
     """Whether the files at `paths` are summed as they stream by.
 
-    Raises DataError where one of them is too large for anything else and the plan needs its single rows.
-    A missing file has no size; whoever reads it says so.
+    Raises DataError where they are too large for anything else and the plan needs their single rows. A file
+    that is missing, or leads out of `root`, is not looked at; whoever reads it says so.
     """
-    sizes = [_text_size(path) for path in paths]
-    if sum(sizes) <= STREAM_FROM_BYTES or any(path.name.lower().endswith(WORKBOOK) for path in paths):
+    if any(path.name.lower().endswith(WORKBOOK) for path in paths):
+        return False
+    inside = [path for path in paths if Path(os.path.realpath(path)).is_relative_to(root)]
+    sizes = [_text_size(path) for path in inside]
+    lines = [_line_count(path) for path in inside] if _may_be_many(sum(sizes)) else [0]
+    if sum(sizes) <= STREAM_FROM_BYTES and sum(lines) <= STREAM_FROM_LINES:
         return False
     key = kept_from_streaming(plan)
-    for path, size in zip(paths, sizes, strict=True):
-        if key is not None and size > MAX_BYTES:
-            found = f"has {size:,} bytes of text; with `{key}` in the plan {MAX_BYTES:,} are the most"
-            advice = "divide the study, or leave out columns that it does not need"
-            raise DataError(
-                "The data files cannot be read.", (Fault(Place(shown_path(path)), found, advice),)
-            )
-    return key is None
+    if key is None:
+        return True
+    for counts, most, what in ((sizes, MAX_BYTES, "bytes of text"), (lines, MAX_LINES, "lines")):
+        if sum(counts) > most:
+            raise _too_many(paths, sum(counts), most, what, key)
+    return False
+
+
+def _may_be_many(size: int) -> bool:
+    """Whether so many bytes are worth counting the lines in; so many that all is streamed are not."""
+    return _SHORTEST_LINE * STREAM_FROM_LINES < size <= MAX_BYTES
+
+
+def _too_many(paths: Sequence[Path], count: int, most: int, what: str, key: str) -> DataError:
+    """The refusal of files that can be read neither way."""
+    one = len(paths) == 1
+    place = Place(shown_path(paths[0] if one else paths[0].parent))
+    found = (
+        f"{'has' if one else 'the data files have'} {count:,} {what}; `{key}` needs every single row, "
+        f"for which {most:,} {what} are the most"
+    )
+    advice = f"divide the study, leave out columns that it does not need, or take `{key}` out of it"
+    return DataError("The data files cannot be read.", (Fault(place, found, advice),))
+
+
+def _line_count(path: Path) -> int:
+    """How many lines end in a file, as far as it can be read."""
+    lines = 0
+    try:
+        if not stat.S_ISREG(path.stat().st_mode):
+            return 0
+        with gzip.open(path) if path.name.lower().endswith(".gz") else path.open("rb") as file:
+            for _ in range(0, MAX_BYTES, BLOCK):
+                lines += line_count(file.read(BLOCK))
+    except (OSError, EOFError, zlib.error):
+        return lines  # whoever reads it says what is wrong
+    return lines
 
 
 def _text_size(path: Path) -> int:

@@ -17,6 +17,7 @@ from assayfolio.study.plan import (
 
 def plan_words(study: StudyDefinition) -> Iterator[str]:
     """What `study` plans beyond its data: design, comparisons, equivalence and the rest, as it was read."""
+    yield from _data_words(study)
     design = study.design
     if design.effects == "random":
         yield "levels are a sample (random effects)"
@@ -38,6 +39,27 @@ def plan_words(study: StudyDefinition) -> Iterator[str]:
     yield from map(_criterion_described, study.criteria)
     if study.power is not None:
         yield f"power: target {to_double(study.power.target):g}; `power` shows what the plan reaches"
+
+
+def _data_words(study: StudyDefinition) -> Iterator[str]:
+    """What the plan says is to be done with the data before they are analysed, where it says so."""
+    data = study.data
+    policies = (
+        ("missing", data.missing),
+        ("below a limit", data.below_limit),
+        ("above a limit", data.above_limit),
+    )
+    planned = [f"{what}: {policy}" for what, policy in policies if policy != "refuse"]
+    if planned:
+        yield f"values {', '.join(planned)}"
+    if data.convert:
+        yield f"units converted: {', '.join(f'{unit} times {factor}' for unit, factor in data.convert)}"
+    if data.replicate_unit is not None:
+        yield f"repeats with one entry in {data.replicate_unit} are averaged"
+    if data.exclusions is not None:
+        yield f"exclusions by {data.exclusions}"
+    if study.worksheet is not None:
+        yield f"measuring order drawn from the seed {study.worksheet.seed}"
 
 
 def _described(comparison: Comparison) -> str:

@@ -117,11 +117,20 @@ def _refuse_names(paths: Sequence[Path]) -> None:
         why = name_fault(f"{FOLDER}/{path.name}")
         if why is not None:
             faults.append(Fault(Place(shown_path(path)), f"{path.name!r}: {why}", "rename the file"))
-    names = [path.name for path in paths]
-    alike = [f"two files are called {name}" for name in sorted({n for n in names if names.count(n) > 1})]
-    for words in (*alike, *collisions(names)):
-        advice = "a folio keeps them side by side; rename one"
+    advice = "a folio keeps the data files side by side; rename one"
+    first: dict[str, Path] = {}
+    for path in paths:
+        earlier = first.setdefault(path.name, path)
+        if earlier is not path:
+            faults.append(Fault(Place(shown_path(path)), _same_name(earlier, path), advice))
+    for words in collisions(list(first)):
         faults.append(Fault(Place(shown_path(paths[0].parent)), words, advice))
     if faults:
         headline = "The data file cannot be kept under its name."
         raise DataError(headline, tuple(faults))
+
+
+def _same_name(earlier: Path, path: Path) -> str:
+    if earlier == path:
+        return "is named twice in the study"
+    return f"has the same file name as {shown_path(earlier)}"

@@ -11,16 +11,19 @@ from assayfolio.evidence.trail import TrailHead
 from assayfolio.findings import Findings
 from assayfolio.findings_document import findings_bytes
 from assayfolio.report.facts import (
+    UNREGISTERED,
     AttachedFile,
     ElsewhereFacts,
     ExecutionFacts,
     InputFacts,
     PlanVersion,
+    RegistrationFacts,
     ReportInput,
     RunFacts,
 )
 from assayfolio.version import VERSION
 from assayfolio.workflow.intake import InputFile, Intake
+from assayfolio.workflow.people_record import person_facts, replaced_facts
 from assayfolio.workflow.surroundings import Surroundings
 
 RUN_FORMAT = "assayfolio-run/1"
@@ -103,8 +106,9 @@ def run_facts(
     environment: Mapping[str, Any],
     history: Mapping[str, Any],
     findings_sha256: str,
+    registration: RegistrationFacts = UNREGISTERED,
 ) -> RunFacts:
-    """The facts that a report prints, from the records of the run, its environment and earlier executions."""
+    """The facts that a report prints, from the records of the run, its environment, executions and plans."""
     versions = {package["name"]: package["version"] for package in environment["packages"]}
     return RunFacts(
         study=record["study"],
@@ -133,7 +137,11 @@ def run_facts(
                 ElsewhereFacts(use["study"], use["run"], use["data"] == "all")
                 for use in history["also_used_by"]
             ),
+            void=tuple((run["run"], run["investigation"]) for run in history.get("void", ())),
         ),
+        person=person_facts(record),
+        replaces=replaced_facts(record),
+        registration=registration,
     )
 
 

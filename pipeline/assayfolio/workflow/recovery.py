@@ -2,6 +2,8 @@
 
 from assayfolio.evidence.folio import is_locked, leftover_record, reopen_staged
 from assayfolio.evidence.history import run_histories
+from assayfolio.evidence.laboratory_folios import FOLDER, laboratory_folios
+from assayfolio.evidence.protocols import PROTOCOL_INTERRUPTED, protocol_histories
 from assayfolio.evidence.trail import TrailWriter
 from assayfolio.workflow.workspace import Workspace
 
@@ -22,6 +24,8 @@ def acknowledge_interruptions(workspace: Workspace, trail: TrailWriter) -> None:
     entry that says what was found, and what it left stays where it is. A run whose seal is in the trail while
     its folio still has its staging name gets a `rename-completed` entry, then its name.
     """
+    _acknowledge_protocols(workspace, trail)
+    _acknowledge_laboratory_folios(workspace, trail)
     for run in run_histories(trail.entries):
         folder = workspace.runs / run.study
         if is_locked(folder, run.name):
@@ -40,4 +44,46 @@ def acknowledge_interruptions(workspace: Workspace, trail: TrailWriter) -> None:
                 run.subject,
                 f"the run ended without a word after its entry {last.action!r}; it has no folio",
                 {"last_seq": last.seq, **leftover_record(folder, run.name)},
+            )
+
+
+def _acknowledge_protocols(workspace: Workspace, trail: TrailWriter) -> None:
+    """The same for protocols whose registration was killed."""
+    for protocol in protocol_histories(trail.entries):
+        folder = workspace.runs / protocol.study
+        if is_locked(folder, protocol.name):
+            continue  # at work
+        if protocol.registered is not None:
+            if not (folder / protocol.name).exists():
+                staged = reopen_staged(folder, protocol.name)
+                if staged is not None and staged.seal == protocol.registered.details.get("seal"):
+                    reason = "the registration was interrupted before its folio was renamed into place"
+                    trail.append("rename-completed", protocol.subject, reason, {"seal": staged.seal})
+                    staged.publish()
+        elif protocol.stopped is None:
+            last = protocol.entries[-1]
+            trail.append(
+                PROTOCOL_INTERRUPTED,
+                protocol.subject,
+                f"the registration ended without a word after its entry {last.action!r}; no plan was registered",
+                {"last_seq": last.seq, **leftover_record(folder, protocol.name)},
+            )
+
+
+def _acknowledge_laboratory_folios(workspace: Workspace, trail: TrailWriter) -> None:
+    """The same for the laboratory's own folios, which are made while the trail is held."""
+    folder = workspace.runs / FOLDER
+    for folio in laboratory_folios(trail.entries):
+        if folio.sealed is not None:
+            staged = None if (folder / folio.name).exists() else reopen_staged(folder, folio.name)
+            if staged is not None and staged.seal == folio.sealed.details.get("seal"):
+                reason = "the command was interrupted before the sealed folio was renamed into place"
+                trail.append("rename-completed", folio.subject, reason, {"seal": staged.seal})
+                staged.publish()
+        elif folio.interrupted is None:
+            trail.append(
+                "interrupted",
+                folio.subject,
+                "the command ended without a word before the folio was sealed; nothing came of it",
+                {"last_seq": folio.allotted.seq, **leftover_record(folder, folio.name)},
             )

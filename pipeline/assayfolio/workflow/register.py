@@ -26,7 +26,8 @@ from assayfolio.evidence.register import (
     read_register,
     received_details,
 )
-from assayfolio.evidence.trail import TrailReading, TrailWriter
+from assayfolio.evidence.states import RunStanding, run_standings
+from assayfolio.evidence.trail import TrailEntry, TrailReading, TrailWriter
 from assayfolio.study.reading import read_study
 from assayfolio.workflow.intake import AnyInput, SeenFiles
 from assayfolio.workflow.raw_files import named_raw_files
@@ -90,7 +91,19 @@ def execution_history(trail: TrailWriter, subject: str) -> dict[str, Json]:
         "also_used_by": [
             {**_use_document(use), "data": "all" if use.data == data else "some"} for use in executions.others
         ],
+        "void": _void_runs(trail.entries, (*executions.earlier, *executions.others)),
     }
+
+
+def _void_runs(entries: Sequence[TrailEntry], uses: Sequence[DataUse]) -> list[Json]:
+    """Those of `uses` that are void by now, with the reference of the investigation."""
+    standings = run_standings(entries)
+    voided = ((use, standings[use.subject].voided) for use in uses)
+    return [
+        {"run": use.subject, "time": void.time, "investigation": void.investigation}
+        for use, void in voided
+        if void is not None
+    ]
 
 
 def _use_document(use: DataUse) -> dict[str, Json]:
@@ -126,6 +139,7 @@ class DataRegister:
     register: Register
     files: tuple[DataFile, ...]
     unread: tuple[tuple[str, str], ...]
+    standings: Mapping[str, RunStanding]
 
     def in_state(self, state: str) -> tuple[DataFile, ...]:
         """The files in this state."""
@@ -146,7 +160,9 @@ def data_register(workspace: Workspace, reading: TrailReading) -> DataRegister:
     for file in register.received:
         places.setdefault(workspace.root / file.path, frozenset())
     standing = [_standing(workspace, path, studies) for path, studies in places.items() if path.is_file()]
-    return DataRegister(register, data_files(register, standing), tuple(unread))
+    return DataRegister(
+        register, data_files(register, standing), tuple(unread), run_standings(reading.entries)
+    )
 
 
 def _named_files(workspace: Workspace) -> tuple[dict[Path, set[str]], list[tuple[str, str]]]:
@@ -170,9 +186,10 @@ def _named_files(workspace: Workspace) -> tuple[dict[Path, set[str]], list[tuple
 
 
 def _definitions(workspace: Workspace) -> Iterator[Path]:
+    settings = (workspace.settings, workspace.people)
     for path in _files_below(workspace.root / "configs"):
         inside = path.relative_to(workspace.root / "configs").parts[:-1]
-        if path.suffix in DEFINITION_ENDINGS and DATA_FOLDER not in inside and path != workspace.settings:
+        if path.suffix in DEFINITION_ENDINGS and DATA_FOLDER not in inside and path not in settings:
             yield path
 
 

@@ -7,6 +7,7 @@ from typing import get_args
 from assayfolio.canonical import Json
 from assayfolio.evidence.data_states import DataFile, State
 from assayfolio.evidence.register import DataUse
+from assayfolio.evidence.states import standing_words
 from assayfolio.workflow.register import DataRegister
 
 _DIGITS = 8
@@ -75,6 +76,8 @@ def _file_lines(register: DataRegister, file: DataFile) -> Iterator[str]:
         yield f"{_INDENT}first seen {moment}, entry {file.received.seq}{study}"
     for use in file.uses:
         yield f"{_INDENT}{use.subject}: {use.outcome}{_execution(register, use)}, plan {_plan(use)}"
+        for words in standing_words(register.standings[use.subject]):
+            yield f"{_INDENT}  {words}"
     for refusal in file.refusals:
         yield f"{_INDENT}{refusal.subject}: refused, entry {refusal.seq}"
     for note in file.notes:
@@ -119,10 +122,13 @@ def _file_document(register: DataRegister, file: DataFile) -> Mapping[str, Json]
 
 
 def _use_document(register: DataRegister, use: DataUse) -> Mapping[str, Json]:
-    found = register.executions(use)
+    found, standing = register.executions(use), register.standings[use.subject]
     return {
         "run": use.subject,
         "outcome": use.outcome,
+        "state": standing.state,
+        "replaces": standing.replaces,
+        "superseded_by": standing.superseded_by,
         "plan": use.plan,
         "exclusions": use.exclusions,
         "execution": None if found is None else found.number,

@@ -1,71 +1,63 @@
-"""Rendering a report again from its folio alone: the same bytes, on any machine with the same renderer.
+"""Findings and report of an archived run made again, from its folio alone."""
 
-The folio is first checked against its own manifests. Then its study definition, raw data, settings and
-records are read, the findings computed again and compared with the archived ones, and the report rendered
-and compared. The folio is not touched.
-"""
-
-import json
 from dataclasses import dataclass
-from pathlib import Path
-from typing import Any
 
-from assayfolio.canonical import sha256_hex
-from assayfolio.errors import ChangedError, Fault, InputError, Place
+from assayfolio.errors import Fault, InputError, Place
 from assayfolio.evaluation.apply import evaluate
-from assayfolio.evidence.verification import verify_lone_folios
+from assayfolio.evaluation.reported import second_routes
+from assayfolio.findings import Findings
 from assayfolio.findings_document import findings_bytes
-from assayfolio.report.render import render_report
-from assayfolio.workflow.intake import folio_intake
-from assayfolio.workflow.records import RUN_FORMAT, report_input, run_facts
+from assayfolio.report.facts import RegistrationFacts
+from assayfolio.report.render import RenderedReport, render_report
+from assayfolio.workflow.archived import ArchivedRun
+from assayfolio.workflow.intake import Intake, folio_intake
+from assayfolio.workflow.records import report_input, run_facts
 from assayfolio.workflow.register import HISTORY_FILE
+from assayfolio.workflow.second_route import require_agreement
+from assayfolio.workflow.standing import (
+    earlier_results,
+    registration_facts,
+    settled,
+    standing_of_folio,
+)
 
 
 @dataclass(frozen=True, slots=True)
-class RerenderedReport:
-    """A report rendered again, and whether it is the archived one to the byte."""
+class ComputedAgain:
+    """What the archived definition and data give today."""
 
-    pdf: bytes
-    is_identical: bool
+    intake: Intake
+    findings: Findings
+    document: bytes
+    registration: RegistrationFacts
 
 
-def rerender(folio: Path) -> RerenderedReport:
-    """The report of the run archived in `folio`, rendered again.
+def compute_again(run: ArchivedRun) -> ComputedAgain:
+    """The findings of `run`, computed from the archived definition and data.
 
-    Raises InputError where `folio` is not the folio of a completed run of this format, ChangedError where it
-    does not agree with its own manifests or the findings computed now are not those archived.
+    Raises InputError where these can no longer be read as they were, MachineError where the second route does
+    not confirm the results.
     """
-    _require_unchanged(folio)
-    record = _record(folio, "run.json")
-    if record.get("format") != RUN_FORMAT or record.get("outcome") != "completed":
-        raise InputError(f"{folio} is not the folio of a completed run of the format {RUN_FORMAT}.")
-    environment = _record(folio, "environment.json")
-    history = _record(folio, HISTORY_FILE.removeprefix("data/"))
-    inputs = tuple((item["role"], item["path"], item["folio_path"]) for item in record["inputs"])
-    intake = folio_intake(folio, inputs)
-    findings = evaluate(intake.study, intake.observations)
-    document = findings_bytes(findings)
-    if sha256_hex(document) != record["findings_sha256"]:
-        raise ChangedError(f"{folio}: the findings computed now differ from those archived.")
-    facts = run_facts(record, environment, history, sha256_hex(document))
-    pdf = render_report(report_input(intake, findings, facts)).pdf
-    return RerenderedReport(pdf, sha256_hex(pdf) == record["report_sha256"])
+    intake = folio_intake(run.folder, run.inputs)
+    computed = evaluate(intake.study, intake.observations)
+    require_agreement(second_routes(computed, intake.observations))
+    standing = standing_of_folio(run.folder)
+    findings = settled(computed, intake, standing, str(run.record["started"]))
+    registration = registration_facts(standing, earlier_results(intake, standing))
+    return ComputedAgain(intake, findings, findings_bytes(findings), registration)
 
 
-def _require_unchanged(folio: Path) -> None:
-    failed = verify_lone_folios([folio]).with_outcome("failed")
-    if failed:
-        lines = [f"  {outcome.number} {outcome.title}: {'; '.join(outcome.notes)}" for outcome in failed]
-        raise ChangedError("\n".join([f"{folio} is not as it was sealed, so nothing was rendered.", *lines]))
+def render_again(run: ArchivedRun, computed: ComputedAgain, findings_sha256: str) -> RenderedReport:
+    """The report of `run`, rendered from what was computed; the facts of the run itself are those on record.
 
-
-def _record(folio: Path, name: str) -> dict[str, Any]:
-    path = folio / "data" / name
+    `findings_sha256` is the digest that the report prints. Raises InputError where a record is not as a run
+    leaves it, RenderingError where the report cannot be set exactly as written.
+    """
     try:
-        loaded = json.loads(path.read_bytes())
-    except (OSError, ValueError) as error:
-        fault = Fault(Place(str(path)), str(error))
-        raise InputError(f"{folio} cannot be read as a run's folio.", (fault,)) from error
-    if not isinstance(loaded, dict):
-        raise InputError(f"{path} is not a record.")
-    return loaded
+        facts = run_facts(
+            run.record, run.environment, run.document(HISTORY_FILE), findings_sha256, computed.registration
+        )
+    except (KeyError, TypeError, ValueError) as error:
+        fault = Fault(Place(str(run.folder / "data")), f"a record lacks or misstates {error}")
+        raise InputError("The report cannot be rendered again.", (fault,)) from error
+    return render_report(report_input(computed.intake, computed.findings, facts))

@@ -16,18 +16,30 @@ from assayfolio.canonical import Json, canonical_bytes, sha256_hex
 from assayfolio.errors import AssayfolioError, ExitCode, InputError, MachineError
 from assayfolio.evaluation.apply import evaluate
 from assayfolio.evaluation.reported import second_routes
+from assayfolio.evidence.bill_of_materials import BOM_FILE, bill_bytes
+from assayfolio.evidence.crate import CRATE_FILE
 from assayfolio.evidence.environment import environment_record
 from assayfolio.evidence.folio import Content, FileToCopy, folio_lock, stage_folio
 from assayfolio.evidence.history import next_number, run_name, run_subject, trail_extract
-from assayfolio.evidence.trail import TrailEntry, TrailHead, open_trail
+from assayfolio.evidence.protocols import RegisteredPlan
+from assayfolio.evidence.read_me_first import read_me_first
+from assayfolio.evidence.trail import TrailEntry, TrailHead
 from assayfolio.findings import CRITERION_MET, Findings
 from assayfolio.findings_document import findings_bytes
 from assayfolio.observations.values import Observations
+from assayfolio.report.facts import UNREGISTERED, RegistrationFacts
 from assayfolio.report.loading import load_renderer
 from assayfolio.report.render import render_report
 from assayfolio.study.plan import SignOff
+from assayfolio.version import VERSION
+from assayfolio.workflow.actors import Actor
+from assayfolio.workflow.authority import NotAllowedError, require
+from assayfolio.workflow.book import trail_book
 from assayfolio.workflow.failure import failure_text
+from assayfolio.workflow.flow_words import files_words, flow_words
 from assayfolio.workflow.intake import AnyInput, InputFile, Intake, SeenFiles, read_files, validated
+from assayfolio.workflow.people_record import person_record
+from assayfolio.workflow.provenance import run_crate
 from assayfolio.workflow.records import (
     bag_info,
     completed_record,
@@ -45,10 +57,21 @@ from assayfolio.workflow.register import (
     executions_record,
     input_details,
 )
+from assayfolio.workflow.registration import require_registered_plan
+from assayfolio.workflow.replacing import Replacement, enter_replacement, replaced_run
 from assayfolio.workflow.second_route import require_agreement, second_route_record
 from assayfolio.workflow.selfcheck import self_check
+from assayfolio.workflow.standing import (
+    Standing,
+    earlier_payload,
+    earlier_results,
+    pre_registration,
+    registration_facts,
+    settled,
+    standing_at_allotment,
+)
 from assayfolio.workflow.steps import Progress, Step
-from assayfolio.workflow.surroundings import Surroundings, account_name, look_around, utc_now
+from assayfolio.workflow.surroundings import Surroundings, look_around
 from assayfolio.workflow.workspace import Workspace, shown_path
 
 DEFAULT_WAIT_SECONDS = 10.0
@@ -63,6 +86,7 @@ class RunOutcome:
     seal: str
     findings: Findings
     sign_off: tuple[SignOff, ...]
+    registration: RegistrationFacts = UNREGISTERED
 
     @property
     def exit_code(self) -> ExitCode:
@@ -81,10 +105,13 @@ class _Run:
     surroundings: Surroundings
     number: int
     head_at_start: TrailHead
+    standing: Standing
     progress: Progress
     entries: list[TrailEntry]
     history: Mapping[str, Json] = field(default_factory=dict)
+    registration: RegistrationFacts = UNREGISTERED
     reached: Step = Step.ALLOT
+    facts: dict[str, Json] = field(default_factory=dict)
     record: dict[str, Json] = field(default_factory=dict)
     payload: dict[str, Content] = field(default_factory=dict)
 
@@ -105,24 +132,30 @@ class _Run:
     ) -> TrailHead:
         """Enter a step of this run in the trail as it happens; return the trail's new head."""
         wait = self.intake.laboratory.wait_seconds
-        with open_trail(self.workspace.runs, self.surroundings.actor, utc_now, wait) as trail:
+        with trail_book(self.workspace, wait) as trail:
             self.entries.append(trail.append(action, self.subject, reason, {"step": int(step), **details}))
             self.reached = step
             return trail.head
 
 
-def run_study(workspace: Workspace, study_path: Path, progress: Progress) -> RunOutcome:
+def run_study(
+    workspace: Workspace, study_path: Path, progress: Progress, replacement: Replacement | None = None
+) -> RunOutcome:
     """Run the study at `study_path`; see the text of this module for the steps.
 
-    Raises InputError for a faulty plan or data (nothing but a trail entry is left), BusyError where another
-    writer holds the workspace, MachineError and its kin where the run failed after its number was allotted
-    (its folio is sealed with the reason).
+    `replacement` says which run of the study the new one replaces. Raises NotAllowedError, after an entry of
+    the attempt, for an account that may not run, where the settings are not those in force, and where that
+    run cannot be replaced; InputError for a faulty plan or data (nothing but a trail entry is left),
+    BusyError where another writer holds the workspace, MachineError and its kin where the run failed after
+    its number was allotted (its folio is sealed with the reason).
     """
     surroundings = look_around()
-    intake = _read(workspace, study_path, surroundings)
+    actor = _authorised(workspace, study_path)
+    intake, registered = _read(workspace, study_path)
     progress(Step.READ, _read_words(intake.observations))
     with ExitStack() as held:
-        run = _allot(workspace, intake, surroundings, progress, held)
+        run = _allot(workspace, intake, registered, surroundings, progress, held, replacement)
+        run.facts["person"] = person_record(actor, intake.laboratory)
         try:
             findings = _compute_and_render(run)
             return _seal_completed(run, findings)
@@ -130,16 +163,32 @@ def run_study(workspace: Workspace, study_path: Path, progress: Progress) -> Run
             raise _seal_failed(run, error) from error
 
 
-def _read(workspace: Workspace, study_path: Path, surroundings: Surroundings) -> Intake:
-    """Read every input, enter the raw data that are new, then validate: no file is looked into untraced."""
+def _authorised(workspace: Workspace, study_path: Path) -> Actor:
+    """The actor, where he may run studies; settings that cannot be read are entered as a refused run."""
+    try:
+        return require(workspace, "run")
+    except NotAllowedError:
+        raise  # the attempt has been entered
+    except InputError as error:
+        _refuse(workspace, study_path, SeenFiles(), error)
+        raise
+
+
+def _read(workspace: Workspace, study_path: Path) -> tuple[Intake, RegisteredPlan | None]:
+    """Read every input, enter the raw data that are new, then validate: no file is looked into untraced.
+
+    The plan has to be the registered one, where one is; that is given too.
+    """
     seen = SeenFiles()
     with _refusal_entered(workspace, study_path, seen):
         study, laboratory = read_files(workspace, study_path, seen)
-    with open_trail(workspace.runs, surroundings.actor, utc_now, laboratory.wait_seconds) as trail:
+    with trail_book(workspace, laboratory.wait_seconds) as trail:
         found_trail(workspace, trail)
         enter_received(trail, seen)
+        entries = trail.entries
     with _refusal_entered(workspace, study_path, seen):
-        return validated(study, laboratory, tuple(seen.files))
+        registered = require_registered_plan(workspace, entries, study, laboratory)
+        return validated(study, laboratory, tuple(seen.files)), registered
 
 
 @contextmanager
@@ -157,7 +206,7 @@ def _refusal_entered(workspace: Workspace, study_path: Path, seen: SeenFiles) ->
 def _read_words(observations: tuple[Observations, ...]) -> str:
     first, count = observations[0], len(observations)
     of_each = "" if count == 1 else f" of each of {count} responses"
-    return f"{first.n:,} values{of_each} at {len(first.levels)} levels from {first.file}"
+    return f"{flow_words(first)}{of_each} at {len(first.levels)} levels from {files_words(first)}"
 
 
 def _refuse(workspace: Workspace, study_path: Path, seen: SeenFiles, error: AssayfolioError) -> None:
@@ -169,7 +218,7 @@ def _refuse(workspace: Workspace, study_path: Path, seen: SeenFiles, error: Assa
         "more_faults": error.hidden if isinstance(error, InputError) else 0,
     }
     reason = error.headline if isinstance(error, InputError) else str(error)
-    with open_trail(workspace.runs, account_name(), utc_now, DEFAULT_WAIT_SECONDS) as trail:
+    with trail_book(workspace, DEFAULT_WAIT_SECONDS) as trail:
         found_trail(workspace, trail)
         enter_received(trail, seen)
         trail.append("refused", _holdable(subject), _holdable(reason), details)
@@ -186,18 +235,30 @@ def _holdable(text: str) -> str:
 
 
 def _allot(
-    workspace: Workspace, intake: Intake, surroundings: Surroundings, progress: Progress, held: ExitStack
+    workspace: Workspace,
+    intake: Intake,
+    registered: RegisteredPlan | None,
+    surroundings: Surroundings,
+    progress: Progress,
+    held: ExitStack,
+    replacement: Replacement | None,
 ) -> _Run:
     study, wait = intake.study.study, intake.laboratory.wait_seconds
-    with open_trail(workspace.runs, surroundings.actor, utc_now, wait) as trail:
+    with trail_book(workspace, wait) as trail:
         found_trail(workspace, trail)
         acknowledge_interruptions(workspace, trail)
+        old = replaced_run(trail, intake, replacement, surroundings.actor)
         number = next_number(trail.entries, study)
-        run = _Run(workspace, intake, surroundings, number, trail.head, progress, [])
+        standing = standing_at_allotment(workspace, trail.entries, intake, registered)
+        run = _Run(workspace, intake, surroundings, number, trail.head, standing, progress, [])
         # The folio's lock first: an allotted run without it counts as interrupted.
         held.enter_context(folio_lock(run.folder, run.name))
         details = {"step": int(Step.ALLOT), "number": number, **input_details(intake.files)}
+        details["sign_off"] = [item.role for item in intake.study.sign_off]
         run.entries.append(trail.append("allotted", run.subject, None, details))
+        if old is not None:
+            entry, run.facts["replaces"] = enter_replacement(trail, run.subject, old)
+            run.entries.append(entry)
         run.history = execution_history(trail, run.subject)
     progress(Step.ALLOT, f"{run.subject}, execution {run.history['execution']} on these data")
     return run
@@ -207,18 +268,22 @@ def _compute_and_render(run: _Run) -> Findings:
     run.payload = {file.folio_path: _kept(file) for file in run.intake.files}
     run.payload["data/requirements.lock"] = requirements_lock()
     run.payload[HISTORY_FILE] = canonical_bytes(run.history)
+    run.payload |= run.standing.payload
     run.record = run_record(run.intake, run.surroundings, run.number, run.head_at_start)
-    run.record["executions"] = executions_record(run.history)
+    run.record |= {"executions": executions_record(run.history), **run.facts}
     load_renderer(run.intake.laboratory)
     environment = environment_record()
     run.payload["data/environment.json"] = canonical_bytes(environment)
+    run.payload[BOM_FILE] = bill_bytes(environment)
     checked = self_check()
     run.record["self_check"] = checked
     run.enter("self-checked", Step.SELF_CHECK, {"result": checked})
     run.progress(Step.SELF_CHECK, checked)
 
-    findings = evaluate(run.intake.study, run.intake.observations)
-    _take_second_route(run, findings)
+    computed = evaluate(run.intake.study, run.intake.observations)
+    _take_second_route(run, computed)
+    findings = settled(computed, run.intake, run.standing, run.surroundings.started_utc)
+    _take_earlier_plans(run)
     document = findings_bytes(findings)
     run.payload["data/findings.json"] = document
     run.record["findings_sha256"] = sha256_hex(document)
@@ -227,7 +292,7 @@ def _compute_and_render(run: _Run) -> Findings:
 
     run.record["trail_head_of_report"] = {"seq": head.seq, "sha256": head.sha256}
     run.progress(Step.RENDER, "setting the pages; this takes the longest")
-    facts = run_facts(run.record, environment, run.history, sha256_hex(document))
+    facts = run_facts(run.record, environment, run.history, sha256_hex(document), run.registration)
     report = render_report(report_input(run.intake, findings, facts))
     run.payload["data/report.pdf"] = report.pdf
     run.payload |= {f"data/figures/{name}": content for name, content in report.figures}
@@ -249,15 +314,25 @@ def _take_second_route(run: _Run, findings: Findings) -> None:
     require_agreement(routes)
 
 
+def _take_earlier_plans(run: _Run) -> None:
+    """Compute under each plan that was amended after the data were seen, to stand beside the result."""
+    earlier = earlier_results(run.intake, run.standing)
+    run.payload |= earlier_payload(earlier)
+    run.record["pre_registration"] = pre_registration(run.standing, earlier)
+    run.registration = registration_facts(run.standing, earlier)
+
+
 def _seal_completed(run: _Run, findings: Findings) -> RunOutcome:
     folio, seal = _seal(run, "completed")
-    return RunOutcome(run.subject, folio, seal, findings, run.intake.study.sign_off)
+    return RunOutcome(run.subject, folio, seal, findings, run.intake.study.sign_off, run.registration)
 
 
 def _seal(run: _Run, outcome: str) -> tuple[Path, str]:
+    run.payload |= read_me_first(run.subject, run.intake.study.title, VERSION)
     run.payload["data/run.json"] = canonical_bytes(run.record)
-    run.enter("staged", Step.STAGE, {"files": len(run.payload) + 1})
+    run.enter("staged", Step.STAGE, {"files": len(run.payload) + 2})
     run.payload["data/trail.jsonl"] = trail_extract(run.entries)
+    run.payload[CRATE_FILE] = run_crate(run.intake, run.record, run.entries, run.payload)
     staged = stage_folio(run.folder, run.name, run.payload, bag_info(run.intake, run.surroundings, run.name))
     run.progress(Step.STAGE, f"{len(run.payload)} files written and read back")
     run.enter("sealed", Step.SEAL, {"seal": staged.seal, "outcome": outcome})

@@ -22,6 +22,8 @@ from assayfolio.findings import (
     PrecisionFindings,
     ResponseFindings,
 )
+from assayfolio.report.facts import RegistrationFacts
+from assayfolio.report.registration import minute
 from assayfolio.workflow.run import RunOutcome
 from assayfolio.workflow.workspace import Workspace, shown_path
 
@@ -46,10 +48,22 @@ def outcome_lines(outcome: RunOutcome, here: Path, command: str) -> list[str]:
         f"Seal    {outcome.seal}",
         "",
         *_judgement(outcome),
-        "The plan was not pre-registered; every result is exploratory.",
+        registration_line(outcome.registration),
         _standing(outcome),
         f"Verify with: {command} verify {shlex.quote(folio)}",
     ]
+
+
+def registration_line(facts: RegistrationFacts) -> str:
+    """How the plan stands to what was registered, and to the data."""
+    if not facts.is_registered:
+        return "The plan was not pre-registered; every result is exploratory."
+    first = minute(facts.protocols[0].time)
+    if not facts.before_data:
+        seen = minute(facts.study_data_first_seen)
+        return f"The plan was registered {first}, after the data were first seen, {seen}: exploratory."
+    late = "; amended after the data" if facts.amended_after_data else ""
+    return f"Pre-registered {first}, data first seen {minute(facts.data_first_seen)}{late}."
 
 
 def _judgement(outcome: RunOutcome) -> list[str]:

@@ -11,13 +11,13 @@ from pathlib import Path
 from assayfolio.canonical import Json, sha256_hex
 from assayfolio.errors import Fault, InputError, MachineError, Place
 from assayfolio.evidence.files import read_regular, replace_file
-from assayfolio.evidence.trail import open_trail
 from assayfolio.report.worksheet_page import WorksheetPage, worksheet_pdf
 from assayfolio.study.plan import Laboratory, StudyDefinition
 from assayfolio.version import VERSION
+from assayfolio.workflow.authority import require
+from assayfolio.workflow.book import trail_book
 from assayfolio.workflow.intake import SeenFiles, read_plan
 from assayfolio.workflow.recovery import found_trail
-from assayfolio.workflow.surroundings import account_name, utc_now
 from assayfolio.workflow.worksheet_files import csv_bytes, record_bytes, xlsx_bytes
 from assayfolio.workflow.workspace import Workspace, shown_path
 from assayfolio.worksheet.columns import Sheet, worksheet_of
@@ -79,19 +79,20 @@ def write_worksheet(workspace: Workspace, study_path: Path, folder: Path | None)
     be written is there and differs: then nothing is written. Raises BusyError where another writer holds the
     workspace, MachineError where the machine refuses.
     """
+    require(workspace, "worksheet")
     seen = SeenFiles()
     study, laboratory = read_plan(workspace, study_path, seen)
     check_worksheet(study)
     plan_sha256 = next(file.sha256 for file in seen.files if file.role == "study definition")
     rows = planned_rows(study)
     digest = order_digest(study, rows)
-    contents = _contents(study, laboratory, plan_sha256, rows, digest)
+    contents = worksheet_contents(study, laboratory, plan_sha256, rows, digest)
     target = study_path.resolve().parent if folder is None else folder.resolve()
     if not target.is_dir():
         fault = Fault(Place(shown_path(target)), "there is no such folder", "make it, or name another")
         raise InputError("The worksheet cannot be written.", (fault,))
     files = {target / f"{study_path.stem}-worksheet{suffix}": content for suffix, content in contents.items()}
-    with open_trail(workspace.runs, account_name(), utc_now, laboratory.wait_seconds) as trail:
+    with trail_book(workspace, laboratory.wait_seconds) as trail:
         new = _absent(files)
         found_trail(workspace, trail)
         for path in new:
@@ -103,14 +104,14 @@ def write_worksheet(workspace: Workspace, study_path: Path, folder: Path | None)
     return written
 
 
-def _contents(
+def worksheet_contents(
     study: StudyDefinition,
     laboratory: Laboratory,
     plan_sha256: str,
     rows: tuple[WorksheetRow, ...],
     digest: str,
 ) -> dict[str, bytes]:
-    """The files by the end of their names."""
+    """The worksheet's files by the end of their names: workbook, text, paper, and the record of the order."""
     sheet = worksheet_of(study, rows)
     place = study.place_of("data.encoding") or study.places[0][1]
     facts = (

@@ -1,18 +1,15 @@
-"""A laboratory's workspace: where it is, how a new one is founded, and what may be read in it."""
+"""A laboratory's workspace: where it is, and what may be read in it."""
 
 import os
 import stat
 from dataclasses import dataclass
-from importlib.resources import files
 from pathlib import Path
 
 from assayfolio.errors import Fault, InputError, MachineError, Place
-from assayfolio.evidence.trail import open_trail
-from assayfolio.workflow.surroundings import account_name, utc_now
 
 SETTINGS = "configs/lab.yaml"
+PEOPLE = "configs/people.yaml"
 MAX_FILE_BYTES = 512 * 1024 * 1024
-STARTER_FILES = ("configs/lab.yaml", "configs/first-study.yaml", "configs/data/first-study.csv")
 
 
 @dataclass(frozen=True, slots=True)
@@ -30,6 +27,11 @@ class Workspace:
     def settings(self) -> Path:
         """The laboratory's settings."""
         return self.root / SETTINGS
+
+    @property
+    def people(self) -> Path:
+        """Who works here; there need not be such a file."""
+        return self.root / PEOPLE
 
     def name_of(self, path: Path) -> str:
         """`path` as the records name it: relative to the workspace, with forward slashes."""
@@ -101,29 +103,3 @@ def real_input(workspace: Workspace, path: Path, what: str, most_bytes: int) -> 
     if fault is not None:
         raise InputError(f"The {what} cannot be read.", (fault,))
     return real
-
-
-def found_workspace(folder: Path) -> Workspace:
-    """Found a new workspace in `folder`: settings, a first study to edit, `runs/` with its audit trail.
-
-    Raises InputError where `folder` already holds a workspace or any file that would be overwritten.
-    """
-    root = folder.resolve()
-    if (root / SETTINGS).exists():
-        raise InputError(f"{folder} is a workspace already: it has {SETTINGS}.")
-    taken = [name for name in (*STARTER_FILES, "runs") if (root / name).exists()]
-    if taken:
-        raise InputError(f"{folder} already has {', '.join(taken)}; nothing was changed.")
-    starter = files("assayfolio.workflow") / "starter"
-    try:
-        for name in reversed(STARTER_FILES):  # the settings last: they make the folder a workspace
-            target = root / name
-            target.parent.mkdir(parents=True, exist_ok=True)
-            target.write_bytes((starter / Path(name).name).read_bytes())
-        (root / "runs").mkdir()
-    except OSError as error:
-        raise MachineError(f"The workspace could not be founded: {error}.") from error
-    workspace = Workspace(root)
-    with open_trail(workspace.runs, account_name(), utc_now, 10.0) as trail:
-        trail.append("founded", "workspace", "a new workspace was founded")
-    return workspace

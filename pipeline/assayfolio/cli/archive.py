@@ -1,0 +1,131 @@
+"""Commands about archived folios: compute them again, take copies away."""
+
+import json
+from collections.abc import Callable, Sequence
+from pathlib import Path
+from typing import TYPE_CHECKING, Any, TypeVar
+
+import click
+
+from assayfolio.cli.options import json_option, workspace_option
+from assayfolio.cli.outcome import complain, say
+from assayfolio.errors import InputError
+
+if TYPE_CHECKING:
+    from assayfolio.evidence.witnesses import Witness
+    from assayfolio.workflow.laboratory_folio import SealedRecord
+    from assayfolio.workflow.sweep import SweepRow
+    from assayfolio.workflow.sweep_record import SweepRecord
+
+Command = TypeVar("Command", bound=Callable[..., Any])
+_TOLD_EVERY = 100
+
+
+def sweep_options(command: Command) -> Command:
+    """Options of a sweep over many folios."""
+    for option in (
+        click.option("--jobs", type=click.IntRange(1, 256), metavar="N", help="Processes; by default all processors."),
+        click.option("--seed", type=int, metavar="S", help="The seed that decides which folios are drawn."),
+        click.option("--sample", type=int, metavar="N", help="Take only N folios, drawn at random."),
+        click.option("--all", "take_all", is_flag=True, help="Every folio of the workspace, with one summary."),
+    ):
+        command = option(command)
+    return command
+
+
+@click.command(
+    epilog="\b\nExamples:\n  assayfolio rerun runs/WHP-101/run-0001\n"
+    "  assayfolio rerun /media/copy/run-0001 --output ~/audit\n"
+    "  assayfolio rerun --all --sample 20 --seed 4711\n\n"
+    "Exit code 0: identical, or equal within the stated bound; 1: something differs."
+)
+@click.argument("folio", required=False, type=click.Path(path_type=Path))
+@workspace_option
+@click.option(
+    "--output",
+    type=click.Path(path_type=Path, file_okay=False),
+    metavar="DIR",
+    help="Where the record goes, for somebody who has no workspace.",
+)
+@sweep_options
+@json_option
+def rerun(
+    folio: Path | None,
+    named_workspace: Path | None,
+    output: Path | None,
+    take_all: bool,
+    sample: int | None,
+    seed: int | None,
+    jobs: int | None,
+    as_json: bool,
+) -> int:
+    """Compute an archived run again and compare.
+
+    FOLIO alone is read: its definition and data are computed and rendered again, and findings (field by
+    field), figures, text and bytes of the report compared with those archived. FOLIO is never touched; the
+    dated record of the re-run is a folio of its own, runs/_laboratory/rerun-NNNN or below --output.
+
+    With --all every run of the workspace, or with --sample some, on all processors; one summary (PDF, CSV) is
+    sealed at the end. A sweep that was interrupted is taken up where it stood.
+    """
+    from assayfolio.workflow.parallel import available_processors
+    from assayfolio.workflow.rerun_folio import destination, exit_code, rerun_folio
+    from assayfolio.workflow.sweep_folios import rerun_all, sample_of
+
+    drawn = sample_of(sample, seed)
+    if (folio is None) == (not take_all) or (drawn is not None and not take_all):
+        raise InputError("Name one folio, or give --all (with --sample N --seed S for some of them).")
+    if folio is None:
+        told = _tell_nothing if as_json else _tell_row
+        swept, sealed = rerun_all(named_workspace, output, drawn, jobs or available_processors(), told)
+        return say_sweep(swept, sealed, as_json)
+    record, sealed = rerun_folio(folio, destination(folio, named_workspace, output))
+    if as_json:
+        say(json.dumps({**record.document, "record": str(sealed.folio)}, ensure_ascii=False, indent=1))
+    else:
+        for line in record.lines():
+            say(line)
+        say(f"Record  {sealed.folio}")
+        say(f"Seal    {sealed.seal}")
+    return int(exit_code(record))
+
+
+def sweep_verified(
+    named_workspace: Path | None,
+    output: Path | None,
+    sample: int | None,
+    seed: int | None,
+    jobs: int | None,
+    witnesses: "Sequence[Witness]",
+    as_json: bool,
+) -> int:
+    """Verify every folio of the workspace, or a sample, and say what came of it; the exit code."""
+    from assayfolio.workflow.parallel import available_processors
+    from assayfolio.workflow.sweep_folios import sample_of, verify_sweep
+
+    drawn = sample_of(sample, seed)
+    swept, sealed = verify_sweep(named_workspace, output, drawn, jobs or available_processors(), witnesses)
+    return say_sweep(swept, sealed, as_json)
+
+
+def say_sweep(swept: "SweepRecord", sealed: "SealedRecord", as_json: bool) -> int:
+    """The end of a sweep; return its exit code."""
+    if as_json:
+        say(json.dumps({**swept.document, "record": str(sealed.folio)}, ensure_ascii=False, indent=1))
+    else:
+        for line in swept.lines():
+            say(line)
+        say(f"Record  {sealed.folio}")
+        say(f"Seal    {sealed.seal}")
+    return int(swept.exit_code)
+
+
+def _tell_row(done: int, total: int, row: "SweepRow") -> None:
+    """A line for what is not fine, and one for every hundredth part."""
+    step = max(1, total // _TOLD_EVERY)
+    if not row.is_fine or done % step == 0 or done == total:
+        complain(f"{done:>6} of {total}  {row.subject}  {row.outcome}")
+
+
+def _tell_nothing(done: int, total: int, row: "SweepRow") -> None:
+    """A program that asked for JSON gets nothing else."""
