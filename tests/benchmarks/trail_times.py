@@ -1,24 +1,29 @@
 # A script for a terminal.
 # ruff: noqa: T201
-"""How long opening, appending to and reading the audit trail take, by the length of the trail.
+"""How long opening, appending to, reading and verifying the audit trail take, by the length of the trail.
 
     python tests/benchmarks/trail_times.py [ENTRIES ...]
 
-An append should take the same time at every length; opening and reading grow with it.
+An append should take the same time at every length: the last line says by how much the longest trail differs.
+"open" is the first opening by a process, which judges the whole trail, "again" a later one, which compares
+its bytes and judges what was added. "verify" is the whole verification, with a witness.
 """
 
-import itertools
 import os
 import sys
 import tempfile
 import time
+from collections.abc import Callable
 from pathlib import Path
+from statistics import median
 
 from assayfolio.canonical import canonical_bytes, sha256_hex
-from assayfolio.evidence.trail import open_trail, read_trail
+from assayfolio.evidence.trail import TrailWriter, open_trail, read_trail
 from assayfolio.evidence.verification import verify_workspace
+from assayfolio.evidence.witnesses import FileWitness
 
 NOW = "2026-03-02T08:00:00.000000Z"
+APPENDS = 100
 
 
 def write_trail(runs: Path, entries: int) -> None:
@@ -32,7 +37,17 @@ def write_trail(runs: Path, entries: int) -> None:
             "action": "refused",
             "subject": "IRON-7",
             "reason": "the data file has a blank in line 12",
-            "details": {"step": 1, "inputs": {"configs/iron.yaml": "1" * 64, "configs/iron.csv": "2" * 64}},
+            "details": {
+                "step": 1,
+                "inputs": {"configs/iron.yaml": "1" * 64, "configs/iron.csv": "2" * 64},
+                "by": {"person": "M. Berg", "roles": ["author", "runner"]},
+                "at": {
+                    "boot": "ba69cd2d-ae7a-4570-bbdd-b608cf0afb33",
+                    "local": "2026-03-02T09:00:00.000000+01:00",
+                    "monotonic_us": 24441096440 + seq,
+                    "synchronised": True,
+                },
+            },
             "previous": previous,
         }
         lines.append(canonical_bytes(entry))
@@ -44,25 +59,48 @@ def write_trail(runs: Path, entries: int) -> None:
     (runs / "audit-trail.head").write_bytes(canonical_bytes({"seq": entries, "sha256": previous}) + b"\n")
 
 
+def timed(work: Callable[[], object]) -> float:
+    """The seconds that `work` takes."""
+    start = time.perf_counter()
+    work()
+    return time.perf_counter() - start
+
+
+def append(writer: TrailWriter) -> float:
+    """The median of many appends, in milliseconds: an fsync of a shared disk now and then takes long."""
+    return 1e3 * median(timed(lambda: writer.append("looked", "workspace")) for _ in range(APPENDS))
+
+
 def main() -> None:
     lengths = [int(text) for text in sys.argv[1:]] or [100, 10_000, 100_000]
-    print(f"{'entries':>8} {'read':>9} {'open':>9} {'append':>9} {'verify':>9}")
+    print(f"{'entries':>8} {'read':>9} {'open':>9} {'again':>9} {'append':>9} {'verify':>9}")
+    appends = []
     for length in lengths:
-        with tempfile.TemporaryDirectory() as folder:
-            runs = Path(folder)
+        with tempfile.TemporaryDirectory() as folder, tempfile.TemporaryDirectory() as elsewhere:
+            runs, witness = Path(folder), FileWitness(Path(elsewhere) / "heads.jsonl")
             write_trail(runs, length)
-            marks = [time.perf_counter()]
-            read_trail(runs)
-            marks.append(time.perf_counter())
-            with open_trail(runs, "m.berg", lambda: NOW, 0.0) as writer:
-                marks.append(time.perf_counter())
-                for _ in range(20):
-                    writer.append("looked", "workspace")
-                marks.append(time.perf_counter())
-            assert not verify_workspace(runs, None).with_outcome("failed")
-            marks.append(time.perf_counter())
-        read, opened, appended, verified = (after - before for before, after in itertools.pairwise(marks))
-        print(f"{length:8} {read:8.3f}s {opened:8.3f}s {appended / 20 * 1e3:7.2f}ms {verified:8.3f}s")
+
+            def open_and_append(runs: Path = runs, witness: FileWitness = witness) -> float:
+                with open_trail(runs, "m.berg", lambda: NOW, 0.0, witnesses=lambda _: (witness,)) as writer:
+                    return append(writer)
+
+            def only_open(runs: Path = runs) -> None:
+                with open_trail(runs, "m.berg", lambda: NOW, 0.0):
+                    pass
+
+            read = timed(lambda runs=runs: read_trail(runs))
+            opened, again = timed(only_open), timed(only_open)
+            appends.append(open_and_append())
+
+            def verify(runs: Path = runs, witness: FileWitness = witness) -> None:
+                assert not verify_workspace(runs, None, lambda _: (witness,)).with_outcome("failed")
+
+            verified = timed(verify)
+        print(
+            f"{length:8} {read:8.3f}s {opened:8.3f}s {again:8.3f}s {appends[-1]:7.2f}ms {verified:8.3f}s",
+            flush=True,
+        )
+    print(f"append, longest against shortest trail: {appends[-1] / appends[0]:.2f}")
 
 
 if __name__ == "__main__":

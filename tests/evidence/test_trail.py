@@ -319,6 +319,7 @@ class TestAnythingElseWrong:
             (lambda text: text.replace(b'"seq":2', b'"seq":true', 1), '"seq" is not a whole number'),
             (lambda text: text.replace(b'"seq":2', b'"seq":0', 1), '"seq" is not a whole number from 1'),
             (lambda text: text.replace(b".000000Z", b"Z", 1), '"time" is not a UTC time'),
+            (lambda text: text.replace(b"2026-03-02", b"2026-02-30", 1), '"time" is not a UTC time'),
             (lambda text: text.replace(b'"m.berg"', b"7", 1), '"actor", "action" or "subject" is not a text'),
             (lambda text: text.replace(b'{"step":1}', b"[]", 1), '"details" is not an object'),
             (lambda text: text.replace(b'"' + b"0" * 64 + b'"', b"null", 1), '"previous" is not a text'),

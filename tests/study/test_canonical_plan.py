@@ -71,6 +71,7 @@ def test_what_means_the_same_is_the_same_plan(how):
     assert differences(document(), document(SAME[how])) == ()
 
 
+MEANING = "I performed this analysis"
 CHANGES = {
     "alpha": ("alpha: 0.05", "alpha: 0.01", [("alpha", "0.05", "0.01")]),
     "title": ("three methods", "3 methods", [("title", "Sulfate by three methods", "Sulfate by 3 methods")]),
@@ -99,7 +100,7 @@ CHANGES = {
     ),
     "meaning of a signature": (
         "as planned}", "alone}",
-        [("sign-off.author.meaning", "I performed this analysis as planned", "I performed this analysis alone")],
+        [("sign-off.author.meaning", f"{MEANING} as planned", f"{MEANING} alone")],
     ),
     "a whole section": (
         "checks: {normality: shapiro-wilk}\n", "", [("checks.normality", "shapiro-wilk", "")]
@@ -194,6 +195,7 @@ EMPTY_REASONS = [
     "   ",
     "changed",
     "updated the plan",
+    "updated the plan again",
     "Minor correction of the study definition.",
     "because it was necessary to amend",
     "xxxxxxxxxxxxxxx",

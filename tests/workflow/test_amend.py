@@ -46,6 +46,7 @@ def test_protocols_are_numbered_and_each_names_the_one_it_amends(life):
     assert records[2]["reason"] == REASON
 
 
+@pytest.mark.requirement("PLAN-10", "TRAIL-8")
 def test_an_amendment_names_every_field_with_both_values(life):
     bench, protocols, _ = life
     key = "comparisons.all pairs of methods.adjust"
@@ -56,6 +57,7 @@ def test_an_amendment_names_every_field_with_both_values(life):
     assert entries[2]["reason"] == REASON
 
 
+@pytest.mark.requirement("PLAN-10")
 def test_each_amendment_is_before_or_after_the_data_by_the_order_of_the_trail(life):
     _, protocols, runs = life
     timings = [record(folio, "protocol.json")["timing"] for folio in protocols]
@@ -99,6 +101,7 @@ def test_everything_can_be_verified(life):
     assert answer.code == 0, answer.out
 
 
+@pytest.mark.requirement("TRAIL-8")
 @pytest.mark.parametrize(
     ("reason", "said"),
     [

@@ -2,6 +2,7 @@
 
 import pytest
 
+from assayfolio.study.laboratory import LABORATORY_REQUIREMENTS, PERSON_ROLES
 from assayfolio.workflow.actors import Actor, actor_of
 from assayfolio.workflow.authority import MAY, NotAllowedError, may, require
 from assayfolio.workflow.workspace import Workspace
@@ -135,3 +136,16 @@ def test_a_laboratory_that_requires_people_runs_nothing_without_the_list(tmp_pat
     answer = bench("run", bench.study)
     assert answer.code == 2
     assert "configs/people.yaml is missing, which Invented laboratory requires" in answer.err
+
+
+def test_the_readme_names_every_command_with_its_roles(checkout):
+    rows = (checkout / "README.md").read_text("utf-8").partition("## People, roles and settings")[2]
+    for command, roles in MAY.items():
+        [row] = [line for line in rows.splitlines() if line.startswith("|") and f"`{command}`" in line]
+        assert row.split("|")[2].strip() == ", ".join(roles)
+
+
+@pytest.mark.parametrize("word", [*LABORATORY_REQUIREMENTS, *PERSON_ROLES])
+def test_the_readme_names_every_role_and_requirement_of_a_laboratory(checkout, word):
+    section = (checkout / "README.md").read_text("utf-8").partition("## People, roles and settings")[2]
+    assert word in section.partition("\n## ")[0]

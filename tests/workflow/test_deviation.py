@@ -34,6 +34,7 @@ def bench(tmp_path_factory):
     return bench
 
 
+@pytest.mark.requirement("PLAN-11")
 def test_an_entered_deviation_stands_in_the_trail_with_person_and_time(bench):
     (entry,) = [entry for entry in bench.entries() if entry["action"] == "deviation-recorded"]
     assert entry["subject"] == "TST-1"
@@ -43,6 +44,7 @@ def test_an_entered_deviation_stands_in_the_trail_with_person_and_time(bench):
     assert entry["reason"] == TEXTS["what"]
 
 
+@pytest.mark.requirement("PLAN-11")
 def test_every_run_after_it_reports_it(bench):
     findings = json.loads((bench.runs / "TST-1/run-0001/data/findings.json").read_bytes())
     (deviation,) = findings["deviations"]

@@ -65,6 +65,7 @@ def test_the_trail_holds_the_seal_and_the_digest_of_the_plan(life):
     assert details["timing"] == "before data first seen"
 
 
+@pytest.mark.requirement("PLAN-1")
 def test_a_run_of_the_registered_plan_says_when_both_were(life):
     bench, _, run = life
     entries = {entry["action"]: entry for entry in bench.entries()}
@@ -133,6 +134,7 @@ def test_a_plan_is_registered_once_and_changes_by_amendment(life):
     assert "A change is an amendment: assayfolio amend" in answer.err
 
 
+@pytest.mark.requirement("PLAN-2")
 def test_a_plan_that_was_never_registered_runs_and_is_exploratory(tmp_path):
     bench = Bench(tmp_path / "w", PLANNED)
     run = bench.run()
@@ -141,6 +143,7 @@ def test_a_plan_that_was_never_registered_runs_and_is_exploratory(tmp_path):
     assert [family["registered"] for family in families] == [False]
 
 
+@pytest.mark.requirement("PLAN-1")
 def test_registering_after_the_data_were_seen_is_said_with_both_times(tmp_path):
     bench = Bench(tmp_path / "w", PLANNED)
     bench.write(bench.data, "not a table")

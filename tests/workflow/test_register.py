@@ -57,7 +57,9 @@ class TestEntering:
         [received] = entries_of(bench, "received")
         assert received["seq"] < entries_of(bench, "allotted")[0]["seq"]
         assert received["subject"] == "TST-1"
+        stamp = {key: received["details"][key] for key in ("at", "by")}
         assert received["details"] == {
+            **stamp,
             "step": 1,
             "path": "configs/data/values.csv",
             "size": len(DATA),
@@ -87,7 +89,12 @@ class TestEntering:
         monkeypatch.setattr(workflow_run, "validated", looked_into)
         assert bench("run", bench.study).code == 2
         assert [entry["details"]["sha256"] for entry in seen] == [digest_of(bench.data)]
-        assert [entry["action"] for entry in bench.entries()] == ["founded", "received", "refused"]
+        assert [entry["action"] for entry in bench.entries()] == [
+            "founded",
+            "settings",
+            "received",
+            "refused",
+        ]
 
     def test_a_file_read_before_another_is_found_missing_is_entered_too(self, tmp_path):
         bench = Bench(tmp_path / "w", STUDY.replace("data/values.csv", "[data/values.csv, data/more.csv]"))

@@ -73,14 +73,14 @@ def test_several_processes_come_to_the_same(bench):
     assert outcomes(one) == outcomes(two) == dict.fromkeys(outcomes(one), "identical")
 
 
-class Interrupted(Exception):
+class PulledPlugError(Exception):
     """Somebody pulled the plug."""
 
 
 def _stop_after(count):
     def told(done, _total, _row):
         if done == count:
-            raise Interrupted
+            raise PulledPlugError
 
     return told
 
@@ -94,7 +94,7 @@ def same_program(monkeypatch):
 @pytest.mark.usefixtures("same_program")
 def test_an_interrupted_sweep_is_taken_up_where_it_stood(bench):
     plan = plan_sweep(Workspace(bench.root), None)
-    with pytest.raises(Interrupted):
+    with pytest.raises(PulledPlugError):
         rerun_sweep(plan, 1, _stop_after(2))
     told = []
     rows = rerun_sweep(plan, 1, lambda done, total, row: told.append((done, total, row.subject)))
@@ -110,7 +110,7 @@ def test_another_program_makes_it_another_sweep(bench, monkeypatch):
     monkeypatch.setattr(
         "assayfolio.workflow.sweep._computed_again", lambda task: SweepRow(task[0], "", "identical", (), 0)
     )
-    with pytest.raises(Interrupted):
+    with pytest.raises(PulledPlugError):
         rerun_sweep(plan, 1, _stop_after(1))
     monkeypatch.setattr("assayfolio.workflow.sweep.program_digest", lambda: "2" * 64)
     assert [row.earlier for row in rerun_sweep(plan, 1, lambda *_: None)] == [None]
@@ -119,7 +119,7 @@ def test_another_program_makes_it_another_sweep(bench, monkeypatch):
 @pytest.mark.usefixtures("same_program")
 def test_a_folio_with_another_seal_makes_it_another_sweep(bench):
     plan = plan_sweep(Workspace(bench.root), None)
-    with pytest.raises(Interrupted):
+    with pytest.raises(PulledPlugError):
         rerun_sweep(plan, 1, _stop_after(1))
     replace_in(bench.runs / "TST-1/run-0001/tagmanifest-sha256.txt", "a", "b")
     rows = rerun_sweep(plan, 1, lambda *_: None)

@@ -19,15 +19,20 @@ if TYPE_CHECKING:
 
 Command = TypeVar("Command", bound=Callable[..., Any])
 _TOLD_EVERY = 100
+_FOLDER = click.Path(path_type=Path, file_okay=False, exists=True)
 
 
 def sweep_options(command: Command) -> Command:
     """Options of a sweep over many folios."""
     for option in (
-        click.option("--jobs", type=click.IntRange(1, 256), metavar="N", help="Processes; by default all processors."),
+        click.option(
+            "--jobs", type=click.IntRange(1, 256), metavar="N", help="Processes; by default all processors."
+        ),
         click.option("--seed", type=int, metavar="S", help="The seed that decides which folios are drawn."),
         click.option("--sample", type=int, metavar="N", help="Take only N folios, drawn at random."),
-        click.option("--all", "take_all", is_flag=True, help="Every folio of the workspace, with one summary."),
+        click.option(
+            "--all", "take_all", is_flag=True, help="Every folio of the workspace, with one summary."
+        ),
     ):
         command = option(command)
     return command
@@ -47,12 +52,25 @@ def sweep_options(command: Command) -> Command:
     metavar="DIR",
     help="Where the record goes, for somebody who has no workspace.",
 )
+@click.option(
+    "--environment",
+    type=click.Choice(["this", "archived"]),
+    default="this",
+    help="archived: also with the program and the packages that the run was made with.",
+)
+@click.option("--wheels", type=_FOLDER, metavar="DIR", help="Take packages from this folder, offline.")
+@click.option("--trust-code", metavar="SHA256", help="Start the archived program with this digest.")
+@click.option("--python", type=click.Path(path_type=Path), metavar="FILE", help="The interpreter for it.")
 @sweep_options
 @json_option
 def rerun(
     folio: Path | None,
     named_workspace: Path | None,
     output: Path | None,
+    environment: str,
+    wheels: Path | None,
+    trust_code: str | None,
+    python: Path | None,
     take_all: bool,
     sample: int | None,
     seed: int | None,
@@ -65,9 +83,14 @@ def rerun(
     field), figures, text and bytes of the report compared with those archived. FOLIO is never touched; the
     dated record of the re-run is a folio of its own, runs/_laboratory/rerun-NNNN or below --output.
 
+    With --environment archived the same is done once more with the program that made the run, on the
+    packages of its lock, in a virtual environment; archived code is started only where the verified audit
+    trail vouches for its digest, or --trust-code names it.
+
     With --all every run of the workspace, or with --sample some, on all processors; one summary (PDF, CSV) is
     sealed at the end. A sweep that was interrupted is taken up where it stood.
     """
+    from assayfolio.workflow.archived_environment import ArchivedEnvironmentOptions
     from assayfolio.workflow.parallel import available_processors
     from assayfolio.workflow.rerun_folio import destination, exit_code, rerun_folio
     from assayfolio.workflow.sweep_folios import rerun_all, sample_of
@@ -76,10 +99,13 @@ def rerun(
     if (folio is None) == (not take_all) or (drawn is not None and not take_all):
         raise InputError("Name one folio, or give --all (with --sample N --seed S for some of them).")
     if folio is None:
+        if environment == "archived":
+            raise InputError("Each run has its own environment: with --environment archived name one folio.")
         told = _tell_nothing if as_json else _tell_row
         swept, sealed = rerun_all(named_workspace, output, drawn, jobs or available_processors(), told)
         return say_sweep(swept, sealed, as_json)
-    record, sealed = rerun_folio(folio, destination(folio, named_workspace, output))
+    archived = ArchivedEnvironmentOptions(wheels, trust_code, python) if environment == "archived" else None
+    record, sealed = rerun_folio(folio, destination(folio, named_workspace, output), archived)
     if as_json:
         say(json.dumps({**record.document, "record": str(sealed.folio)}, ensure_ascii=False, indent=1))
     else:
@@ -129,3 +155,55 @@ def _tell_row(done: int, total: int, row: "SweepRow") -> None:
 
 def _tell_nothing(done: int, total: int, row: "SweepRow") -> None:
     """A program that asked for JSON gets nothing else."""
+
+
+@click.command(
+    epilog="\b\nExample:\n  assayfolio archive runs/WHP-101/run-0001 --to /media/stick/WHP-101 --with-wheels"
+)
+@click.argument("folios", metavar="FOLIO...", nargs=-1, required=True, type=click.Path(path_type=Path))
+@workspace_option
+@click.option(
+    "--to",
+    "place",
+    required=True,
+    type=click.Path(path_type=Path),
+    metavar="DIR",
+    help="The new folder that is made.",
+)
+@click.option(
+    "--with-wheels", is_flag=True, help="Add the programs and packages that the runs were made with."
+)
+@click.option(
+    "--wheels", type=_FOLDER, metavar="DIR", help="Take packages from this folder, not from an index."
+)
+@json_option
+def archive(
+    folios: tuple[Path, ...],
+    named_workspace: Path | None,
+    place: Path,
+    with_wheels: bool,
+    wheels: Path | None,
+    as_json: bool,
+) -> None:
+    """Make a true copy of folios for somebody else.
+
+    DIR holds the folios byte for byte, the audit trail's lines from their first entry on, a certificate (PDF
+    and JSON), and with --with-wheels everything that computes them again without a network. Nothing is copied
+    that does not verify.
+    """
+    from assayfolio.workflow.archive import export
+    from assayfolio.workflow.wheels import WheelSource
+    from assayfolio.workflow.workspace import find_workspace
+
+    source = WheelSource(wheels) if with_wheels or wheels is not None else None
+    copy = export(find_workspace(named_workspace, folios[0]), folios, place, source)
+    if as_json:
+        document = {**copy.document, "place": str(copy.place), "record": str(copy.record.folio)}
+        say(json.dumps(document, ensure_ascii=False, indent=1))
+        return
+    for one in copy.folios:
+        say(f"{one.subject}: {one.files} files, {one.size:,} bytes, seal {one.seal}")
+    if copy.wheels:
+        say(f"{len(copy.wheels)} wheels")
+    say(f"Copy    {copy.place}")
+    say(f"Record  {copy.record.folio}")

@@ -62,9 +62,14 @@ def amend(study: Path, named_workspace: Path | None, reason: str | None, as_json
     _tell(place, change(place, study, reason_for), study, as_json)
 
 
+def is_attended() -> bool:
+    """Whether there is somebody at the terminal who can be asked."""
+    return sys.stdin.isatty()
+
+
 def _asked(what: str) -> str:
     """What a person answers; nothing where nobody can be asked."""
-    if not sys.stdin.isatty():
+    if not is_attended():
         return ""
     return str(click.prompt(what, default="", show_default=False))
 

@@ -5,7 +5,7 @@ from collections.abc import Sequence
 
 import click
 
-from assayfolio.cli.archive import rerun
+from assayfolio.cli.archive import archive, rerun
 from assayfolio.cli.evidence import trail, verify
 from assayfolio.cli.laboratory import settings, void
 from assayfolio.cli.outcome import run_command
@@ -37,7 +37,7 @@ def cli() -> None:
     """
 
 
-for command in (workspace, check, power, worksheet, preregister, amend, deviation, run, verify, rerun, trail, settings, void):
+for command in (workspace, check, power, worksheet, preregister, amend, deviation, run, verify, rerun, archive, trail, settings, void):
     cli.add_command(command)
 
 

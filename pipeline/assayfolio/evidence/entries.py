@@ -8,6 +8,7 @@ number and the SHA-256 of the newest line, so that a changed or lost last line s
 import re
 from collections.abc import Iterable, Mapping
 from dataclasses import dataclass
+from datetime import datetime
 from typing import Literal
 
 from assayfolio.canonical import Json, canonical_bytes, sha256_hex
@@ -34,7 +35,13 @@ class TrailBrokenError(MachineError):
 
 def is_trail_time(text: str) -> bool:
     """Whether `text` is a time as entries carry it: RFC 3339 in UTC, as 2026-01-31T09:15:00.000000Z."""
-    return _TIME.fullmatch(text) is not None
+    if _TIME.fullmatch(text) is None:
+        return False
+    try:
+        datetime.fromisoformat(text)
+    except ValueError:
+        return False  # no such day or hour
+    return True
 
 
 def is_digest(value: object) -> bool:

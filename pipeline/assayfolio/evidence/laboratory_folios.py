@@ -44,6 +44,8 @@ def folio_subject(kind: str, number: int) -> str:
 
 def split_folio(subject: str) -> tuple[str, int] | None:
     """Kind and number of a subject; None for any other subject or spelling of the number."""
+    if not subject.startswith(FOLDER):
+        return None
     matched = _SUBJECT.fullmatch(subject)
     if not matched or folio_subject(matched[1], int(matched[2])) != subject:
         return None

@@ -9,7 +9,14 @@ from pathlib import Path
 
 from assayfolio.canonical import sha256_hex
 from assayfolio.evidence.entries import is_digest
-from assayfolio.evidence.files import digest_regular, explained, make_folder, plain_reason, sync_folder, write_new
+from assayfolio.evidence.files import (
+    digest_regular,
+    explained,
+    make_folder,
+    plain_reason,
+    sync_folder,
+    write_new,
+)
 from assayfolio.evidence.inventory import shown
 
 FOLDER = "_programs"
@@ -63,4 +70,4 @@ def program_faults(runs: Path) -> Iterator[str]:
                 yield f"{place}/{shown(path.name)} could not be read: {plain_reason(error)}"
                 continue
             if changed:
-                yield f"changed: {place}/{shown(path.name)} does not have the digest that its folder is named by"
+                yield f"changed: {place}/{shown(path.name)} has not the digest that its folder is named by"

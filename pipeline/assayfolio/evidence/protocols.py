@@ -8,7 +8,7 @@ number is kept.
 """
 
 import re
-from collections.abc import Iterable
+from collections.abc import Iterable, Mapping
 from dataclasses import dataclass
 
 from assayfolio.evidence.entries import TrailEntry, is_digest
@@ -122,8 +122,9 @@ def next_protocol_number(entries: Iterable[TrailEntry], study: str) -> int:
 class RegisteredPlan:
     """A plan as the trail has it registered: when, the seal of its folio, the digest of the plan.
 
-    `definition` is the digest of the study definition's bytes; `amends` the number of the protocol it amends,
-    None for the first; `reason` why.
+    `actor` is the person, or the account where the laboratory has no person for it; `definition` the digest
+    of the study definition's bytes; `amends` the number of the protocol it amends, None for the first;
+    `reason` why.
     """
 
     study: str
@@ -168,10 +169,16 @@ def _registered(entry: TrailEntry, study: str, number: int) -> RegisteredPlan | 
         number,
         entry.time,
         entry.seq,
-        entry.actor,
+        _person(entry) or entry.actor,
         str(seal),
         str(plan),
         str(definition),
         amends,
         entry.reason,
     )
+
+
+def _person(entry: TrailEntry) -> str | None:
+    by = entry.details.get("by")
+    person = by.get("person") if isinstance(by, Mapping) else None
+    return person if isinstance(person, str) else None

@@ -1,7 +1,7 @@
 """What a folio says to somebody who has nothing but the folder: a short text, and a script to check with.
 
-The script needs Python 3.8 or later and nothing else. Both travel in the payload, so that they are sealed with
-what they explain.
+The script needs Python 3.8 or later and nothing else. Both travel in the payload, so that they are sealed
+with what they explain.
 """
 
 from collections.abc import Mapping
@@ -69,8 +69,8 @@ beside it; it begins with the very bytes of data/report.pdf.
     data/report.pdf          the report; plan, data and findings are attached inside it as well
     data/environment.json, data/requirements.lock    with what it was computed
 
-By hand: "sums" in data/findings.json has n, the sum S and the sum of squares Q of each level as exact decimals.
-With k levels, N values in all and T the sum of all values:
+By hand: "sums" in data/findings.json has n, the sum S and the sum of squares Q of each level as exact
+decimals. With k levels, N values in all and T the sum of all values:
 
     between levels   SSB = sum(S*S/n) - T*T/N      k - 1 degrees of freedom
     within levels    SSW = sum(Q - S*S/n)          N - k degrees of freedom
@@ -87,10 +87,11 @@ the other distributions named in the report's section on methods.
 """
 
 _SCRIPT = '''\
-"""Checks a sealed folder with nothing but Python 3.8 or later: python3 data/check_folio.py [AUDIT-TRAIL.JSONL]
+"""Checks a sealed folder with nothing but Python 3.8 or later: python3 data/check_folio.py [TRAIL.JSONL]
 
-Files against both manifests, the run's lines of the audit trail, the analysis of variance from the exact sums;
-with a trail (all of it, or the lines that came with a copy) also its chain, the run's lines in it, and the seal.
+Files against both manifests, the run's lines of the audit trail, the analysis of variance from the exact
+sums; with a trail (all of it, or the lines that came with a copy) also its chain, the run's lines in it, and
+the seal.
 Exit code 0: all of it agrees; 1: something does not.
 """
 
@@ -132,7 +133,8 @@ def check_chain(lines, name):
     digests = {entry["seq"]: sha256(line) for entry, line in zip(entries, lines)}
     broken = [e["seq"] for e in entries if digests.get(e["seq"] - 1, e["previous"]) != e["previous"]]
     rising = all(a["seq"] < b["seq"] for a, b in zip(entries, entries[1:]))
-    check(rising and not broken, name + ": " + str(len(lines)) + " entries, each carries the digest before it")
+    words = " entries, each carries the digest before it"
+    check(rising and not broken, name + ": " + str(len(lines)) + words)
     return entries
 
 
@@ -144,13 +146,15 @@ def check_trail(trail, own, seal):
     check(set(own) <= set(lines), "the lines of data/trail.jsonl stand in " + trail.name)
     subject = json.loads(own[0])["subject"]
     sealed = [e for e in entries if e["action"] == "sealed" and e["subject"] == subject]
-    check([e["details"]["seal"] for e in sealed] == [seal], "the seal of " + subject + " stands in " + trail.name)
+    stated = [e["details"]["seal"] for e in sealed]
+    check(stated == [seal], "the seal of " + subject + " stands in " + trail.name)
     print("         head of " + trail.name + ": entry " + str(entries[-1]["seq"]) + ", " + sha256(lines[-1]))
 
 
 def check_analysis(name, response):
     """The analysis of variance from n, sum and sum of squares, in exact fractions."""
-    sums = [[Fraction(level["sums"][key]) for key in ("n", "sum", "sum_of_squares")] for level in response["levels"]]
+    keys = ("n", "sum", "sum_of_squares")
+    sums = [[Fraction(level["sums"][key]) for key in keys] for level in response["levels"]]
     k, n, total = len(sums), sum(s[0] for s in sums), sum(s[1] for s in sums)
     between = sum(s * s / m for m, s, _ in sums) - total * total / n
     within = sum(q - s * s / m for m, s, q in sums)

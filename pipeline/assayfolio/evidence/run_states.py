@@ -15,6 +15,8 @@ from assayfolio.evidence.laboratory_folios import FOLDER as LABORATORY_FOLDER
 from assayfolio.evidence.laboratory_folios import explained_names
 from assayfolio.evidence.locks import is_locked, lock_path
 from assayfolio.evidence.outcomes import CheckOutcome, Tally
+from assayfolio.evidence.program_store import FOLDER as PROGRAMS_FOLDER
+from assayfolio.evidence.program_store import program_faults
 from assayfolio.evidence.protocol_states import explained_protocols
 from assayfolio.evidence.time_stamps import STAMPS_FILE
 from assayfolio.evidence.trail import TORN_PREFIX, WRITER
@@ -150,6 +152,8 @@ def check_surroundings(runs: Path, index: TrailIndex) -> CheckOutcome:
         name = shown(item.name)
         if item.is_dir(follow_symlinks=False) and item.name == LABORATORY_FOLDER:
             _check_laboratory_folder(runs / item.name, index, tally)
+        elif item.is_dir(follow_symlinks=False) and item.name == PROGRAMS_FOLDER:
+            tally.failed.extend(program_faults(runs))
         elif item.is_dir(follow_symlinks=False):
             if item.name not in studies and _holds_more_than_locks(runs / item.name):
                 tally.failed.append(f"extra folder: {name}: the audit trail knows no study of this name")

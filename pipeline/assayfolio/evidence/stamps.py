@@ -6,6 +6,7 @@
 from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import dataclass
 from datetime import datetime, timedelta
+from typing import Any, NamedTuple
 
 from assayfolio.canonical import Json
 from assayfolio.evidence.entries import TrailEntry
@@ -14,6 +15,8 @@ BY, AT = "by", "at"
 # A clock that a time source keeps is put right in small steps all the time.
 CLOCK_MOVED = timedelta(seconds=5)
 _SAME_MOMENT = timedelta(seconds=1)
+_MICROSECOND = timedelta(microseconds=1)
+_MOVED_MICROSECONDS = CLOCK_MOVED / _MICROSECOND
 
 
 def person_of(entry: TrailEntry) -> str | None:
@@ -59,31 +62,57 @@ class ClockRemark:
     impossible: bool
 
 
+class _Reading(NamedTuple):
+    """An entry, its time as a moment, and what it says of the clock."""
+
+    entry: TrailEntry
+    moment: datetime
+    at: Mapping[str, Json]
+
+
 def clock_remarks(entries: Sequence[TrailEntry]) -> Iterator[ClockRemark]:
     """Where the clock was set back or forward between entries, and where what they say of it cannot be.
 
     Between two entries of one start-up the counter says how much time has passed; a clock that was set shows
     by more than 5 s of difference.
     """
-    before: TrailEntry | None = None
+    before: _Reading | None = None
     for entry in entries:
-        found = _of_one(entry)
-        if before is not None:
-            found = found or _of_two(before, entry)
-        if found is not None:
-            yield found
-        before = entry
+        reading = _Reading(entry, datetime.fromisoformat(entry.time), _part(entry, AT))
+        if before is None or not _is_plain(before, reading):
+            remark = _of_one(reading) or (None if before is None else _of_two(before, reading))
+            if remark is not None:
+                yield remark
+        before = reading
 
 
-def _of_one(entry: TrailEntry) -> ClockRemark | None:
-    local = local_time_of(entry)
-    if local is None:
-        return None
-    # The clock's own moment, written twice: the common case is told by the text alone.
-    if local.startswith(entry.time[:-1]) and local.endswith(("+00:00", "Z")):
+def _is_plain(then: _Reading, now: _Reading) -> bool:
+    """Whether plainly nothing is to be said of the second; what is left is for `_of_one` and `_of_two`."""
+    at: Mapping[str, Any] = now.at
+    before: Mapping[str, Any] = then.at
+    clock = now.moment - then.moment
+    try:
+        passed = at["monotonic_us"] - before["monotonic_us"]
+        apart = clock / _MICROSECOND - passed
+        local = datetime.fromisoformat(at["local"]) - now.moment
+        same_start = at["boot"] == before["boot"] is not None
+    except (KeyError, TypeError, ValueError):
+        return False
+    return (
+        same_start
+        and clock >= _NO_TIME
+        and passed >= 0
+        and -_MOVED_MICROSECONDS <= apart <= _MOVED_MICROSECONDS
+        and -_SAME_MOMENT <= local <= _SAME_MOMENT
+    )
+
+
+def _of_one(reading: _Reading) -> ClockRemark | None:
+    entry, local = reading.entry, reading.at.get("local")
+    if not isinstance(local, str):
         return None
     try:
-        apart = abs(datetime.fromisoformat(local) - datetime.fromisoformat(entry.time))
+        apart = abs(datetime.fromisoformat(local) - reading.moment)
     except (ValueError, TypeError):
         return ClockRemark(entry, f"entry {entry.seq} gives no local time that can be understood", True)
     if apart > _SAME_MOMENT:
@@ -92,54 +121,42 @@ def _of_one(entry: TrailEntry) -> ClockRemark | None:
     return None
 
 
-def _of_two(before: TrailEntry, entry: TrailEntry) -> ClockRemark | None:
-    then, now = _part(before, AT), _part(entry, AT)
-    dated_back = entry.time < before.time
-    if now and dated_back and not _said_behind(now):
-        words = (
-            f"entry {entry.seq} ({entry.time}) is dated before entry {before.seq} ({before.time}) and does "
-            "not say so, which every entry does that is made while the clock stands behind"
-        )
+def _of_two(then: _Reading, now: _Reading) -> ClockRemark | None:
+    before, entry = then.entry, now.entry
+    clock = now.moment - then.moment
+    passed = _passed(then.at, now.at)
+    if clock >= _NO_TIME and (passed is None or (passed >= _NO_TIME and abs(clock - passed) <= CLOCK_MOVED)):
+        return None
+    times = f"entry {entry.seq} ({entry.time}) is dated before entry {before.seq} ({before.time})"
+    if clock < _NO_TIME and now.at and not isinstance(now.at.get("behind_seconds"), int | float):
+        words = f"{times} and does not say so, as every entry does that is made while the clock stands behind"
         return ClockRemark(entry, words, True)
-    moved = _moved(before, entry, then, now)
-    if moved is not None and moved[0] < timedelta(0):
+    if passed is None:
+        return ClockRemark(entry, f"{times}: the clock was set back", False)
+    if passed < _NO_TIME:
         words = (
             f"the counter of entry {entry.seq} runs behind that of entry {before.seq} of the same start-up"
         )
         return ClockRemark(entry, words, True)
-    if moved is not None and abs(moved[1]) > CLOCK_MOVED:
-        way = "back" if moved[1] < timedelta(0) else "forward"
-        seconds = abs(moved[1]).total_seconds()
+    if abs(clock - passed) > CLOCK_MOVED:
+        way = "back" if clock < passed else "forward"
         words = (
-            f"the clock was set {way} by {seconds:.0f} s between entries {before.seq} and {entry.seq} "
-            f"({before.time}, {entry.time})"
+            f"the clock was set {way} by {abs(clock - passed).total_seconds():.0f} s between entries "
+            f"{before.seq} and {entry.seq} ({before.time}, {entry.time})"
         )
         return ClockRemark(entry, words, False)
-    if dated_back:
-        words = (
-            f"entry {entry.seq} ({entry.time}) is dated before entry {before.seq} ({before.time}): "
-            "the clock was set back"
-        )
-        return ClockRemark(entry, words, False)
-    return None
+    return ClockRemark(entry, f"{times}: the clock was set back", False)
 
 
-def _said_behind(at: Mapping[str, Json]) -> bool:
-    return isinstance(at.get("behind_seconds"), int | float)
+_NO_TIME = timedelta(0)
 
 
-def _moved(
-    before: TrailEntry, entry: TrailEntry, then: Mapping[str, Json], now: Mapping[str, Json]
-) -> tuple[timedelta, timedelta] | None:
-    """What has passed by the counter, and by how much more the clock went on; None where that is not told."""
+def _passed(then: Mapping[str, Json], now: Mapping[str, Json]) -> timedelta | None:
+    """What has passed between two entries by the counter; None where they are not of one start-up."""
     boot = now.get("boot")
     if boot is None or boot != then.get("boot"):
         return None
     first, second = then.get("monotonic_us"), now.get("monotonic_us")
     if not isinstance(first, int) or not isinstance(second, int):
         return None
-    passed = timedelta(microseconds=second - first)
-    if entry.time == before.time:
-        return passed, -passed
-    clock = datetime.fromisoformat(entry.time) - datetime.fromisoformat(before.time)
-    return passed, clock - passed
+    return timedelta(microseconds=second - first)

@@ -193,16 +193,21 @@ def _end_of(text: str) -> tuple[int, int]:
 
 def refuse_nul_bytes(body: bytes, file: str) -> None:
     """Raise DataError with every line of `body` that holds a NUL byte."""
+    faults = FaultList(file)
+    add_nul_bytes(faults, body)
+    raise_faults(file, faults)
+
+
+def add_nul_bytes(faults: FaultList, body: bytes, above: int = 0) -> None:
+    """Add a fault for every line of `body` that holds a NUL byte; `above` lines stand before it in the file."""
     advice = "the file is damaged or no text file; export it again"
     if body[1::2].count(0) * 3 > len(body) or body[::2].count(0) * 3 > len(body):
         advice = f"it looks like UTF-16; {_WANTED}"
-    faults = FaultList(file)
-    for number, line in enumerate(body.split(b"\n"), start=1):
+    for number, line in enumerate(body.split(b"\n"), start=above + 1):
         at = line.find(0)
         if at >= 0:
             column = len(line[:at].decode("utf-8", "replace")) + 1
             faults.add(number, column, "a NUL byte", advice)
-    raise_faults(file, faults)
 
 
 def not_utf8(body: bytes, error: UnicodeDecodeError, skipped: int, file: str) -> DataError:

@@ -1,39 +1,78 @@
-"""Faults of data files, gathered in one pass and told in the order of the files."""
+"""Faults of data files, gathered in one pass and told in the order of the files.
 
+Faults that differ only in the entry they quote are of one kind. Up to three of a kind are told one by one;
+of more the first is told, with how many there are and where the next ones stand.
+"""
+
+import re
 from collections.abc import Sequence
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 
 from assayfolio.errors import DataError, Fault, Place
 from assayfolio.study.faults import shown
 
 MAX_LISTED = 50
+MOST_ALIKE = 3
 _LISTED_NAMES = 12
+_LISTED_PLACES = 9
+
+_QUOTED = re.compile(r"`[^`]*`")
+
+
+@dataclass(slots=True)
+class _Kind:
+    """Faults that are alike: how many there are, and the first of them."""
+
+    first: list[Fault] = field(default_factory=list)
+    count: int = 0
+
+    def told(self, *, spreadsheet: bool) -> list[tuple[Fault, int]]:
+        """The faults to be shown, and how many each of them stands for."""
+        if self.count <= MOST_ALIKE:
+            return [(fault, 1) for fault in self.first]
+        first, *others = self.first
+        places = ", ".join(_short_place(fault.place, spreadsheet=spreadsheet) for fault in others)
+        end = " ..." if self.count > len(self.first) else ""
+        at = f", at {places}{end}" if places else ""
+        found = f"{first.found}; the same {self.count - 1:,} times more{at}"
+        return [(replace(first, found=found), self.count)]
 
 
 @dataclass(slots=True)
 class FaultList:
-    """The faults of one file: the first 50 that were added are kept, the others counted.
+    """The faults of one file, kind by kind: the first 50 kinds that were added are kept, others counted.
 
     In a spreadsheet a fault also names its cell by letter and row, as the program that shows it does.
     """
 
     file: str
-    kept: list[Fault] = field(default_factory=list)
     count: int = 0
     spreadsheet: bool = False
+    kinds: dict[tuple[str, str], _Kind] = field(default_factory=dict)
 
     @property
     def full(self) -> bool:
-        """Whether a further fault would only be counted, so that its words need no care."""
-        return self.count >= MAX_LISTED
+        """Whether a fault of another kind would only be counted, so that its words need no care."""
+        return len(self.kinds) >= MAX_LISTED
 
     def add(self, line: int | None, column: int | None, found: str, advice: str) -> None:
         """Add one fault; `line` is None where it concerns the file as a whole."""
         self.count += 1
-        if len(self.kept) < MAX_LISTED:
+        name = (_QUOTED.sub("`", found), advice)
+        kind = self.kinds.get(name)
+        if kind is None:
+            if self.full:
+                return
+            kind = self.kinds.setdefault(name, _Kind())
+        kind.count += 1
+        if len(kind.first) < _LISTED_PLACES:
             if self.spreadsheet and line is not None and column is not None:
                 found = f"cell {cell_name(line, column)}: {found}"
-            self.kept.append(Fault(Place(self.file, line, column), found, advice))
+            kind.first.append(Fault(Place(self.file, line, column), found, advice))
+
+    def told(self) -> list[tuple[Fault, int]]:
+        """The faults to be shown, and how many each of them stands for."""
+        return [told for kind in self.kinds.values() for told in kind.told(spreadsheet=self.spreadsheet)]
 
     def beside(self) -> "FaultList":
         """An empty list for other faults of the same file."""
@@ -70,7 +109,7 @@ def raise_faults(file: str, *lists: FaultList) -> None:
     """Raise DataError with the faults of all `lists`, all of one `file`, if there is any.
 
     They come in the order of the file, faults of the file as a whole last. Each list has to be in the order
-    of the file, which makes the 50 that are shown the first 50.
+    of the file, which makes the 50 kinds that are kept the first 50.
     """
     raise_in_files([[FaultList(file), *lists]])
 
@@ -81,15 +120,16 @@ def raise_in_files(files: Sequence[Sequence[FaultList]]) -> None:
     if not faulty:
         return
     count = sum(faults.count for lists in faulty for faults in lists)
-    kept = [
+    told = [
         fault
         for lists in faulty
-        for fault in sorted((fault for faults in lists for fault in faults.kept), key=_position)
+        for fault in sorted((told for faults in lists for told in faults.told()), key=_position)
     ][:MAX_LISTED]
     names = " and ".join(lists[0].file for lists in faulty[:2])
     names = f"{names} and {len(faulty) - 2} more" if len(faulty) > 2 else names
     noun = "fault" if count == 1 else "faults"
-    raise DataError(f"{names} cannot be used: {count} {noun}", tuple(kept), count - len(kept))
+    hidden = count - sum(number for _, number in told)
+    raise DataError(f"{names} cannot be used: {count} {noun}", tuple(fault for fault, _ in told), hidden)
 
 
 def refusal(
@@ -99,9 +139,16 @@ def refusal(
     return DataError(f"{file} cannot be used: 1 fault", (Fault(Place(file, line, column), found, advice),))
 
 
-def _position(fault: Fault) -> tuple[bool, int, int]:
-    line, column = fault.place.line, fault.place.column
+def _position(told: tuple[Fault, int]) -> tuple[bool, int, int]:
+    line, column = told[0].place.line, told[0].place.column
     return (line is None, line or 0, column or 0)
+
+
+def _short_place(place: Place, *, spreadsheet: bool) -> str:
+    """A place without its file: a cell's name, or line and column."""
+    if place.line is None or place.column is None:
+        return "the file as a whole" if place.line is None else str(place.line)
+    return cell_name(place.line, place.column) if spreadsheet else f"{place.line}:{place.column}"
 
 
 def listed(names: Sequence[str]) -> str:

@@ -8,14 +8,13 @@ import hashlib
 import zlib
 from collections.abc import Callable, Iterator
 from dataclasses import replace
-from functools import partial
 from typing import BinaryIO
 
 import numpy as np
 
 from assayfolio.errors import DataError, Fault
 from assayfolio.observations.compressed import FREE_BYTES, MOST_RATIO, reason_of, require_gzip
-from assayfolio.observations.decoding import CARRIAGE_RETURN, not_utf8, refuse_nul_bytes
+from assayfolio.observations.decoding import CARRIAGE_RETURN, add_nul_bytes, not_utf8
 from assayfolio.observations.faults import FaultList, raise_faults, refusal
 
 BLOCK = 1 << 20
@@ -169,7 +168,7 @@ def refuse_unfit_text(file: LongFile) -> None:
         if not offset and body.startswith(_BOM):
             body, offset = body[len(_BOM) :], len(_BOM)
         if b"\0" in body:
-            _shift_into(nul, partial(refuse_nul_bytes, body, file.name), line)
+            add_nul_bytes(nul, body, line)
         if first is None:
             try:
                 body.decode("utf-8")
@@ -193,16 +192,6 @@ def _add_returns(faults: FaultList, body: bytes, line: int) -> None:
         if at >= 0:
             column = len(text[:at].decode("utf-8", "replace")) + 1
             faults.add(number, column, *CARRIAGE_RETURN)
-
-
-def _shift_into(faults: FaultList, refuse: Callable[[], None], line: int) -> None:
-    """Add the faults that `refuse` raises for a stretch that begins below `line` lines."""
-    try:
-        refuse()
-    except DataError as error:
-        for fault in _shifted(error, line).faults:
-            faults.add(fault.place.line, fault.place.column, fault.found, fault.advice)
-        faults.count += error.hidden
 
 
 def _shifted(error: DataError, lines: int) -> DataError:

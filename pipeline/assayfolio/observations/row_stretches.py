@@ -16,7 +16,8 @@ from assayfolio.observations.rows import MAX_CELL, Broken, Row, rows_and_ends
 
 _MARK, _LINE_END = ord('"'), ord("\n")
 
-_AHEAD = 2
+_READERS = 2
+_AHEAD = 4
 _LONGEST_REST = 1 << 19
 
 Taken = TypeVar("Taken")
@@ -96,12 +97,12 @@ def go_through(
 ) -> None:
     """Take everything in `feed`, in its order: stretches of plain rows by columns, others by rows.
 
-    `read` is given a stretch in which every line is one row; it runs in a thread beside and says None where
-    it cannot take it. `by_columns` gets what it made of it, the stretch, and the number of its first line;
+    `read` is given a stretch in which every line is one row; it runs in threads beside and says None where it
+    cannot take it. `by_columns` gets what it made of it, the stretch, and the number of its first line;
     `by_rows` the rows of the others, with the lines that they stand on.
     """
     ahead: deque[tuple[bytes, int, Future[Taken | None]]] = deque()
-    with ThreadPoolExecutor(1) as beside:
+    with ThreadPoolExecutor(_READERS) as beside:
         while True:
             while len(ahead) < _AHEAD and feed.fill():
                 size = plain_rows(feed.data, separator)

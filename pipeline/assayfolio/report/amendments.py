@@ -114,7 +114,7 @@ def _earlier(basis: Basis, earlier: EarlierResult, numbering: Numbering) -> list
     )
     changed = sum(row.differs for row in rows)
     count = f"{changed} of {len(rows)} answers differ" if changed else "no answer differs"
-    moved = sum(row.p_before != row.p_now for row in rows if not row.differs)
+    moved = sum(row.p_before != row.p_here for row in rows if not row.differs)
     numbers = f"; in {moved} more *p* is another one" if moved else ""
     file = f"data/context/protocols/{earlier.protocol}/findings.json"
     columns = [
@@ -126,7 +126,7 @@ def _earlier(basis: Basis, earlier: EarlierResult, numbering: Numbering) -> list
         "Answers under the plan of {name} and under the plan of this report.", name=earlier.protocol
     )
     cells: list[list[Words]] = [
-        [row.question, row.said(row.before, row.p_before), row.said(row.now, row.p_now)] for row in rows
+        [row.question, row.said(row.before, row.p_before), row.said(row.here, row.p_here)] for row in rows
     ]
     return [
         heading,
@@ -163,13 +163,13 @@ class _Compared:
     question: Prose
     before: str
     p_before: str
-    now: str
-    p_now: str
+    here: str
+    p_here: str
 
     @property
     def differs(self) -> bool:
         """Whether the verdicts differ."""
-        return self.before != self.now
+        return self.before != self.here
 
     def said(self, verdict: str, p: str) -> Prose:
         """An answer for its cell, set strong where the verdicts differ."""

@@ -48,8 +48,8 @@ class ExecutionFacts:
     """How often the study was executed on exactly these data, as known when the run got its number.
 
     `number` counts this run; `plan` is its own plan version, `tried` those of the executions before it, in
-    their order. `elsewhere` are earlier runs outside this count that used these data or a part of them. `void`
-    names those of all these runs that are void, each with the reference of the investigation.
+    their order. `elsewhere` are earlier runs outside this count that used these data or a part of them.
+    `void` names those of all these runs that are void, each with the reference of the investigation.
     """
 
     number: int

@@ -1,8 +1,8 @@
 """The text of a report's PDF file, page by page: for comparing two reports whose bytes differ.
 
-Reads the files that this program writes: one classic cross-reference table, streams that are plain or deflated,
-text in fonts with two-byte codes and a map to Unicode (ISO 32000-1, 7.5.4, 9.7 and 9.10.3). Files with
-anything else, such as signed ones, are refused.
+Reads the files that this program writes: one classic cross-reference table, streams that are plain or
+deflated, text in fonts with two-byte codes and a map to Unicode (ISO 32000-1, 7.5.4, 9.7 and 9.10.3). Files
+with anything else, such as signed ones, are refused.
 """
 
 import re

@@ -1,4 +1,4 @@
-"""A record of the laboratory on paper: a re-run, a sweep, a true copy. What was done, what came of it, tables."""
+"""A record of the laboratory on paper: what was done in a re-run, a sweep, a copy, and what came of it."""
 
 from dataclasses import dataclass, replace
 
@@ -7,6 +7,8 @@ from assayfolio.report.pages import html_from
 from assayfolio.report.pdf import Look, lay_out, write
 
 _TEMPLATE = "record.html.j2"
+PLAIN = Look("A4", "#0f5b66")
+"""The look of a record that no laboratory's settings go with."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -54,7 +56,7 @@ class RecordPage:
     box_notes: tuple[str, ...]
     sections: tuple[RecordSection, ...]
     foot: str
-    look: Look = Look("A4", "#0f5b66")
+    look: Look = PLAIN
 
 
 def record_pdf(page: RecordPage) -> bytes:

@@ -16,7 +16,9 @@ correction corrections edit edits edited editing fix fixes fixed fixing modify m
 adapted adaptation adjust adjusted adjustment improve improved improvement revise revised add added adding
 remove removed removing alter altered alteration reason reasons see above below made make done do due
 because per please required requested necessary needed need decided agreed discussed analysis analyses
-comparison comparisons better needs
+comparison comparisons better needs again once further also then here there something anything thing things
+stuff yes ok etc today number wording text typo typos mistake mistakes error errors wrong right so they you
+he she should would could can will must want wants wanted
 """
 _FITS_ANY_CHANGE = frozenset(_FITS_ANY_CHANGE_WORDS.split())
 

@@ -13,6 +13,9 @@ PERSON_ROLES: tuple[PersonRole, ...] = get_args(PersonRole)
 PROFILES: tuple[Profile, ...] = get_args(Profile)
 WITNESS_KINDS: tuple[WitnessKind, ...] = get_args(WitnessKind)
 LABORATORY_REQUIREMENTS: tuple[LaboratoryRequirement, ...] = get_args(LaboratoryRequirement)
+SEPARATION_KEYS = ("reviewer-is-not-runner", "approver-is-not-author")
+PEOPLE_FILE_KEYS = ("people",)
+PERSON_KEYS = ("person", "account", "roles", "qualification")
 
 
 @dataclass(frozen=True, slots=True)

@@ -21,6 +21,7 @@ from assayfolio.study.fields import (
 from assayfolio.study.laboratory import (
     LABORATORY_REQUIREMENTS,
     PROFILES,
+    SEPARATION_KEYS,
     WITNESS_KINDS,
     Laboratory,
     Profile,
@@ -37,7 +38,6 @@ from assayfolio.study.vocabulary import (
     LONGEST_PATH,
     PAPERS,
     REQUIREMENTS,
-    SEPARATION_KEYS,
     Paper,
 )
 

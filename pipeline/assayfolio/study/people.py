@@ -15,9 +15,15 @@ from assayfolio.study.fields import (
     matching,
     report_repeats,
 )
-from assayfolio.study.laboratory import PERSON_ROLES, People, Person, PersonRole
+from assayfolio.study.laboratory import (
+    PEOPLE_FILE_KEYS,
+    PERSON_KEYS,
+    PERSON_ROLES,
+    People,
+    Person,
+    PersonRole,
+)
 from assayfolio.study.root import root_fields
-from assayfolio.study.vocabulary import PEOPLE_FILE_KEYS, PERSON_KEYS
 
 _role: Reader[PersonRole] = choice(PERSON_ROLES)
 _roles = distinct(list_of(_role, f"a list of {listed(PERSON_ROLES)}"))

@@ -118,9 +118,6 @@ LABORATORY_KEYS = (
     "separation",
     "witnesses",
 )
-SEPARATION_KEYS = ("reviewer-is-not-runner", "approver-is-not-author")
-PEOPLE_FILE_KEYS = ("people",)
-PERSON_KEYS = ("person", "account", "roles", "qualification")
 
 Layout = Literal["long", "wide"]
 Missing = Literal["refuse", "omit"]

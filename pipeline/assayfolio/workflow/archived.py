@@ -62,8 +62,9 @@ class ArchivedRun:
 def archived_run(folder: Path) -> ArchivedRun:
     """The run in the folio `folder`.
 
-    Raises FailedRunError where the run failed, InputError where it is not the folio of a run, where a newer version of this program made
-    it, and where a file that a re-run needs is missing or no regular file of the folio.
+    Raises FailedRunError where the run failed; InputError where it is not the folio of a run, where a newer
+    version of this program made it, and where a file that a re-run needs is missing or no regular file of the
+    folio.
     """
     if not folder.is_dir() or folder.is_symlink():
         raise InputError(f"{shown_path(folder)} is not a folder, so there is nothing to compute again.")
@@ -99,7 +100,7 @@ def require_known_format(name: str, written: Any) -> None:
     if str(written).startswith(_FAMILY) and number.isdigit() and number.isascii():
         raise InputError(
             f"{name} was made by a newer version of this program: its record has the format {written}, and "
-            f"this version reads {RUN_FORMAT}. Use that version or a later one; data/environment.json names it."
+            f"this version reads {RUN_FORMAT}. Use the version that data/environment.json names."
         )
     raise InputError(f"{name}: {RUN_FILE} has the format {written!r}, which is not that of a run.")
 

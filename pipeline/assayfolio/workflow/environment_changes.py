@@ -25,7 +25,15 @@ RENDERER_PACKAGES = frozenset(
         "zopfli",
     }
 )
-RENDERER_LIBRARIES = ("libpango", "libharfbuzz", "libfontconfig", "libfreetype", "libglib", "libgobject", "libz")
+RENDERER_LIBRARIES = (
+    "libpango",
+    "libharfbuzz",
+    "libfontconfig",
+    "libfreetype",
+    "libglib",
+    "libgobject",
+    "libz",
+)
 
 
 @dataclass(frozen=True, slots=True)
@@ -53,8 +61,8 @@ class EnvironmentChange:
 def environment_changes(old: Mapping[str, Any], new: Mapping[str, Any]) -> tuple[EnvironmentChange, ...]:
     """What differs between the archived record `old` and `new`.
 
-    Settings, processor and kernel are left out: results and reports do not depend on them. Raises no error for
-    what a record does not hold.
+    Settings, processor and kernel are left out: results and reports do not depend on them. Raises no error
+    for what a record does not hold.
     """
     return (*_program(old, new), *_interpreter(old, new), *_packages(old, new), *_libraries(old, new))
 

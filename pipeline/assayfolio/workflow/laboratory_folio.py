@@ -6,7 +6,7 @@ from dataclasses import dataclass
 from pathlib import Path
 
 from assayfolio.canonical import Json
-from assayfolio.errors import MachineError
+from assayfolio.errors import AssayfolioError, MachineError
 from assayfolio.evidence.folio import UNSEALED, Content, stage_folio
 from assayfolio.evidence.history import trail_extract
 from assayfolio.evidence.laboratory_folios import (
@@ -20,6 +20,7 @@ from assayfolio.evidence.laboratory_folios import (
 from assayfolio.version import VERSION
 from assayfolio.workflow.book import trail_book
 from assayfolio.workflow.recovery import acknowledge_interruptions, found_trail
+from assayfolio.workflow.settings_files import standing_settings
 from assayfolio.workflow.workspace import Workspace
 
 RECORD_SEALED = "record-sealed"
@@ -48,6 +49,14 @@ class SealedRecord:
     folio: Path
     seal: str
     subject: str | None
+
+
+def laboratory_name(workspace: Workspace) -> str:
+    """The laboratory's name as its settings have it; empty where they cannot be read."""
+    try:
+        return standing_settings(workspace).laboratory.name
+    except AssayfolioError:
+        return ""
 
 
 def seal_in_workspace(workspace: Workspace, record: Record) -> SealedRecord:

@@ -1,4 +1,4 @@
-"""This program as a wheel (PyPA binary distribution format 1.0), made from the files that are installed.
+"""The program that runs, as a wheel (binary distribution format 1.0 of PyPA), made from its installed files.
 
 The same installed files give the same bytes: entries sorted and dated 1980-01-01, stored without compression,
 so that no version of a packing library has a share in the digest. What an installer adds (its own records,

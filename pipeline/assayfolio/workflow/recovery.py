@@ -65,7 +65,7 @@ def _acknowledge_protocols(workspace: Workspace, trail: TrailWriter) -> None:
             trail.append(
                 PROTOCOL_INTERRUPTED,
                 protocol.subject,
-                f"the registration ended without a word after its entry {last.action!r}; no plan was registered",
+                f"it ended without a word after its entry {last.action!r}; no plan was registered",
                 {"last_seq": last.seq, **leftover_record(folder, protocol.name)},
             )
 

@@ -1,12 +1,12 @@
 """The re-run of an archived run: computed and rendered again from its folio alone, compared part by part.
 
 The parts, in their order: the folio (against its manifests, and the audit trail where there is one), the
-findings field by field, the figures, the text of the report, the bytes of the report. Each is identical, equal
-within the stated bound, different, or not comparable with a reason. The folio itself is only read.
+findings field by field, the figures, the text of the report, the bytes of the report. Each is identical,
+equal within the stated bound, different, or not comparable with a reason. The folio itself is only read.
 """
 
 import json
-from collections.abc import Callable, Mapping, Sequence
+from collections.abc import Callable, Collection, Mapping, Sequence
 from dataclasses import dataclass
 from pathlib import Path
 from typing import Literal
@@ -22,15 +22,21 @@ from assayfolio.report.render import RenderedReport
 from assayfolio.study.plan import Laboratory
 from assayfolio.workflow.archived import FINDINGS_FILE, REPORT_FILE, ArchivedRun, archived_run
 from assayfolio.workflow.environment_changes import EnvironmentChange, environment_changes
-from assayfolio.workflow.rerender import ComputedAgain, compute_again, render_again
+from assayfolio.workflow.rerender import compute_again, render_again
 from assayfolio.workflow.rerun_compare import Difference, differences
 from assayfolio.workflow.selfcheck import self_check
 
 Outcome = Literal["identical", "equal within the bound", "different", "not comparable"]
 
 EXCLUDED = (
-    ("data/run.json", "times, account, host, trail heads and self-check of the run: facts, taken over as they are"),
-    ("data/environment.json, data/requirements.lock, data/bom.json", "what the run was made with; see environment"),
+    (
+        "data/run.json",
+        "times, account, host, trail heads and self-check of the run: facts, taken over as they are",
+    ),
+    (
+        "data/environment.json, data/requirements.lock, data/bom.json",
+        "what the run was made with; see environment",
+    ),
     ("data/context/", "settings, people, plans and earlier executions as they were: input to the re-run"),
     ("data/trail.jsonl, data/ro-crate-metadata.json", "how the run came about; compared by verification"),
     ("data/study.yaml, data/inputs/", "input to the re-run; compared by their digests"),
@@ -90,7 +96,7 @@ class Installation:
 
 
 def this_installation(laboratory: Laboratory) -> Installation:
-    """This installation, checked; `laboratory` says what the renderer is to be loaded for.
+    """The installation that runs, checked; `laboratory` says what the renderer is to be loaded for.
 
     Raises MachineError where a reference value is not reproduced or a library is missing.
     """
@@ -126,7 +132,7 @@ def rerun(
         made.append(("findings.json", computed.document))
     comparable = parts[-1].outcome != "different"
     report = render_again(run, computed, sha256_hex(archived if comparable else computed.document))
-    made += _compare_report(run, computed, report, parts, changes)
+    made += _compare_report(run, report, parts, changes)
     return Rerun(
         run.subject,
         folio,
@@ -142,7 +148,9 @@ def rerun(
 
 def _folio_part(checks: Sequence[CheckOutcome]) -> Part:
     failed = [
-        f"{check.number} {check.title}: {'; '.join(check.notes)}" for check in checks if check.outcome == "failed"
+        f"{check.number} {check.title}: {'; '.join(check.notes)}"
+        for check in checks
+        if check.outcome == "failed"
     ]
     if failed:
         return Part("folio", "different", tuple(failed))
@@ -164,7 +172,9 @@ def _findings_part(archived: bytes, document: bytes, found: Sequence[Difference]
     elif found:
         notes = []
     else:
-        return Part("findings", "different", ("every field is the same, but the file is written differently",))
+        return Part(
+            "findings", "different", ("every field is the same, but the file is written differently",)
+        )
     within = [one for one in found if one.within and one.kind == "approximate"]
     if within:
         worst = max(one.digits_lost or 0.0 for one in within)
@@ -178,7 +188,6 @@ def _findings_part(archived: bytes, document: bytes, found: Sequence[Difference]
 
 def _compare_report(
     run: ArchivedRun,
-    computed: ComputedAgain,
     report: RenderedReport,
     parts: list[Part],
     changes: Sequence[EnvironmentChange],
@@ -202,13 +211,17 @@ def _compare_report(
 def _figures_part(run: ArchivedRun, report: RenderedReport) -> Part:
     old, new = run.figures, dict(report.figures)
     notes = [
-        f"{name}: {'only in the archive' if name not in new else 'only now' if name not in old else 'differs'}"
-        for name in sorted({*old, *new})
-        if old.get(name) != new.get(name)
+        f"{name}: {_how(name, old, new)}" for name in sorted({*old, *new}) if old.get(name) != new.get(name)
     ]
     if notes:
         return Part("figures", "different", tuple(notes))
     return Part("figures", "identical", (f"{len(old)} drawings, the same bytes",))
+
+
+def _how(name: str, old: Collection[str], new: Collection[str]) -> str:
+    if name not in new:
+        return "only in the archive"
+    return "differs" if name in old else "only now"
 
 
 def _text_part(old: bytes, new: bytes) -> Part:
@@ -254,7 +267,9 @@ def _bytes_part(parts: Sequence[Part], changes: Sequence[EnvironmentChange]) -> 
     if by_name["findings"] == "different":
         return Part("report bytes", "different", ("the findings inside differ",))
     if any(change.share == "program" for change in changes):
-        note = "another version of this program set it; `--environment archived` takes the one that made the run"
+        note = (
+            "another version of this program set it; `--environment archived` takes the one that made the run"
+        )
         return Part("report bytes", "different", (note,))
     reason = "" if renderer else "the program and its renderer are the same"
     return Part("report bytes", "different", (reason,) if reason else ())

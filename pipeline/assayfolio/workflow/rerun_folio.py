@@ -8,9 +8,11 @@ from assayfolio.evidence.outcomes import Verification
 from assayfolio.evidence.trail import read_trail
 from assayfolio.evidence.verification import verify_lone_folios, verify_workspace
 from assayfolio.report.pdf import Look
+from assayfolio.report.record_page import PLAIN
+from assayfolio.workflow.archived_environment import ArchivedEnvironmentOptions, rerun_archived
 from assayfolio.workflow.laboratory_folio import SealedRecord, seal_in_folder, seal_in_workspace
 from assayfolio.workflow.rerun import Rerun, rerun
-from assayfolio.workflow.rerun_record import ArchivedEnvironmentRerun, RerunRecord, as_record
+from assayfolio.workflow.rerun_record import RerunRecord, as_record
 from assayfolio.workflow.surroundings import look_around
 from assayfolio.workflow.workspace import Workspace, find_workspace, shown_path
 
@@ -54,22 +56,22 @@ def verified(folio: Path, workspace: Workspace | None) -> Verification:
 
 
 def rerun_folio(
-    folio: Path, to: Destination, archived: ArchivedEnvironmentRerun | None = None
+    folio: Path, to: Destination, archived: ArchivedEnvironmentOptions | None = None
 ) -> tuple[RerunRecord, SealedRecord]:
-    """Re-run `folio` and seal the record.
+    """Re-run `folio` here, with `archived` also in the environment it was made with, and seal the record.
 
     Raises InputError where it is not the folio of a completed run, ChangedError where it was changed so that
-    it can no longer be read as one, BusyError and MachineError as sealing does.
+    it can no longer be read as one, BusyError and MachineError as sealing does, and what `rerun_archived`
+    raises.
     """
-    record = RerunRecord(
-        rerun_verified(folio, to.workspace), look_around(), _head(to.workspace), archived
-    )
+    verification = verified(folio, to.workspace)
+    found = _rerun(folio, verification)
+    there = None if archived is None else rerun_archived(folio, to.workspace, verification, archived)
+    record = RerunRecord(found, look_around(), _head(to.workspace), there)
     return record, seal(record, to)
 
 
-def rerun_verified(folio: Path, workspace: Workspace | None) -> Rerun:
-    """Verify `folio` and compute it again. Raises as `rerun_folio` does."""
-    verification = verified(folio, workspace)
+def _rerun(folio: Path, verification: Verification) -> Rerun:
     try:
         return rerun(folio, verification.outcomes)
     except InputError as error:
@@ -90,7 +92,7 @@ def _head(workspace: Workspace | None) -> tuple[int, str] | None:
 def seal(record: RerunRecord, to: Destination) -> SealedRecord:
     """Seal the record of a re-run: in the folder where one is named, else in the workspace."""
     laboratory = record.rerun.laboratory
-    look = Look("A4", "#0f5b66") if laboratory is None else Look(laboratory.paper, laboratory.accent)
+    look = PLAIN if laboratory is None else Look(laboratory.paper, laboratory.accent)
     sealable = as_record(record, "" if laboratory is None else laboratory.name, look)
     if to.folder is not None:
         return seal_in_folder(to.folder.resolve(), sealable)

@@ -18,11 +18,16 @@ RERUN_FORMAT = "assayfolio-rerun/1"
 MOST_SHOWN = 40
 """As many differences are printed; the document holds them all."""
 
+_HOW_COMPARED = (
+    "Exact numbers and texts are compared by equality, approximate numbers within 1 part in 10¹¹ (intervals "
+    "relative to half their width). Digits lost are counted of the 15.95 that a double holds, and of the 12 "
+    "that are stated for an approximate number."
+)
 SENTENCES = {
     "identical": "Identical: what was archived came out again, to the byte where bytes can be compared.",
-    "equal within the bound": "Equal within the stated bound: no field is different, the approximate numbers that "
-    "differ keep the bound of 1 part in 10¹¹.",
-    "different": "Different: at least one part is not what was archived. The parts below say which and where.",
+    "equal within the bound": "Equal within the stated bound: no field is different, and the approximate "
+    "numbers that are not the same keep the bound of 1 part in 10¹¹.",
+    "different": "Different: at least one part is not what was archived. Below stands which, and where.",
 }
 
 
@@ -69,7 +74,8 @@ class RerunRecord:
             "outcome": rerun.outcome,
             "exit_code": int(rerun.exit_code),
             "parts": [
-                {"part": part.name, "outcome": part.outcome, "notes": list(part.notes)} for part in rerun.parts
+                {"part": part.name, "outcome": part.outcome, "notes": list(part.notes)}
+                for part in rerun.parts
             ],
             "differences": [one.document for one in rerun.differences],
             "environment": [change.document for change in rerun.changes],
@@ -104,7 +110,9 @@ class RerunRecord:
 def _archived_document(one: ArchivedEnvironmentRerun) -> Json:
     return {
         "outcome": one.outcome,
-        "parts": [{"part": name, "outcome": outcome, "notes": list(notes)} for name, outcome, notes in one.parts],
+        "parts": [
+            {"part": name, "outcome": outcome, "notes": list(notes)} for name, outcome, notes in one.parts
+        ],
         "wheel_sha256": one.wheel,
         "vouched_for_by": one.vouched,
         "python": one.python,
@@ -184,7 +192,7 @@ def _sections(record: RerunRecord) -> Iterator[RecordSection]:
     if record.archived is not None:
         yield RecordSection(
             "In the archived environment",
-            (f"{record.archived.python}; the program with SHA-256 {record.archived.wheel}, {record.archived.vouched}.",),
+            (_archived_words(record.archived),),
             table=RecordTable(
                 (("part", 18), ("outcome", 22), ("remarks", 60)),
                 tuple((name, outcome, "\n".join(notes)) for name, outcome, notes in record.archived.parts),
@@ -194,6 +202,10 @@ def _sections(record: RerunRecord) -> Iterator[RecordSection]:
         "Not compared",
         table=RecordTable((("what", 38), ("why", 62)), EXCLUDED),
     )
+
+
+def _archived_words(archived: ArchivedEnvironmentRerun) -> str:
+    return f"{archived.python}; the program with SHA-256 {archived.wheel}, {archived.vouched}."
 
 
 def _facts(record: RerunRecord) -> Iterator[RecordFact]:
@@ -208,10 +220,7 @@ def _facts(record: RerunRecord) -> Iterator[RecordFact]:
 
 
 def _difference_section(found: tuple[Difference, ...]) -> RecordSection:
-    words = [
-        "Exact numbers and texts are compared by equality, approximate numbers within 1 part in 10¹¹ (intervals "
-        "relative to half their width). Digits lost count of 15.95 for an exact number, of 12 for an approximate one."
-    ]
+    words = [_HOW_COMPARED]
     if len(found) > MOST_SHOWN:
         words.append(f"{MOST_SHOWN} of {len(found)} are shown; rerun.json holds them all.")
     rows = tuple(
@@ -220,7 +229,11 @@ def _difference_section(found: tuple[Difference, ...]) -> RecordSection:
             _value(one.old),
             _value(one.new),
             "" if one.digits_lost is None else str(one.digits_lost),
-            one.kind if not one.within else "within the bound" if one.kind == "approximate" else "not compared",
+            one.kind
+            if not one.within
+            else "within the bound"
+            if one.kind == "approximate"
+            else "not compared",
         )
         for one in found[:MOST_SHOWN]
     )

@@ -35,6 +35,7 @@ from assayfolio.version import VERSION
 from assayfolio.workflow.actors import Actor
 from assayfolio.workflow.authority import NotAllowedError, require
 from assayfolio.workflow.book import trail_book
+from assayfolio.workflow.environments import program_record
 from assayfolio.workflow.failure import failure_text
 from assayfolio.workflow.flow_words import files_words, flow_words
 from assayfolio.workflow.intake import AnyInput, InputFile, Intake, SeenFiles, read_files, validated
@@ -276,7 +277,7 @@ def _compute_and_render(run: _Run) -> Findings:
     run.payload["data/environment.json"] = canonical_bytes(environment)
     run.payload[BOM_FILE] = bill_bytes(environment)
     checked = self_check()
-    run.record["self_check"] = checked
+    run.record |= {"self_check": checked, "program": program_record(run.workspace)}
     run.enter("self-checked", Step.SELF_CHECK, {"result": checked})
     run.progress(Step.SELF_CHECK, checked)
 

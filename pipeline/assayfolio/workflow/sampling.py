@@ -1,9 +1,10 @@
 """A random sample of folios that anyone can draw again: stated to the byte, with nothing but SHA-256.
 
-The algorithm "assayfolio-sample/1": for each folio the SHA-256 of the ASCII text `assayfolio-sample/1`, a zero
-byte, the seed as a decimal number in ASCII, a zero byte and the folio's subject ("WTR-017/run-0001") in UTF-8.
-The sample of N are the N folios with the smallest digests. Every set of N folios is as likely as any other as
-far as SHA-256 is random, and whoever knows the seed beforehand knows the sample: let the auditor choose it.
+The algorithm "assayfolio-sample/1": for each folio the SHA-256 of the ASCII text `assayfolio-sample/1`, a
+zero byte, the seed as a decimal number in ASCII, a zero byte and the folio's subject ("WTR-017/run-0001") in
+UTF-8. The sample of N are the N folios with the smallest digests. Every set of N folios is as likely as any
+other as far as SHA-256 is random, and whoever knows the seed beforehand knows the sample: let the auditor
+choose it.
 """
 
 import hashlib

@@ -92,8 +92,12 @@ def rerun_sweep(plan: SweepPlan, jobs: int, told: Told) -> tuple[SweepRow, ...]:
     for count, row in enumerate(done.values(), start=1):
         told(count, len(plan.folders), row)
     tasks = [(subject, folder) for subject, folder in plan.folders.items() if subject not in done]
-    for task, row in in_parallel(_computed_again, tasks, jobs, _begin, (plan.workspace.runs,)):
-        found = row or _row(task, NOT_DONE, ("the process at work on it ended without a word",), 0.0)
+    for task, made in in_parallel(_computed_again, tasks, jobs, _begin, (plan.workspace.runs,)):
+        found = (
+            made
+            if made is not None
+            else _row(task, NOT_DONE, ("the process at work on it ended without a word",), 0.0)
+        )
         kept.add(found)
         done[found.subject] = found
         told(len(done), len(plan.folders), found)
@@ -137,7 +141,7 @@ class _Worker:
         self._installation: Installation | None = None
 
     def installation(self, laboratory: Laboratory) -> Installation:
-        """This installation, looked at once."""
+        """The installation that runs, looked at once."""
         if self._installation is None:
             self._installation = this_installation(laboratory)
         return self._installation

@@ -1,6 +1,7 @@
 """The commands `rerun --all` and `verify --all`: one sweep, one summary, sealed."""
 
 from collections.abc import Iterable, Sequence
+from concurrent.futures import ThreadPoolExecutor
 from pathlib import Path
 
 from assayfolio.errors import AssayfolioError, InputError
@@ -10,7 +11,6 @@ from assayfolio.evidence.verification import verify_workspace
 from assayfolio.evidence.witnesses import Witness
 from assayfolio.workflow.audit import named_witnesses
 from assayfolio.workflow.laboratory_folio import SealedRecord, seal_in_folder, seal_in_workspace
-from assayfolio.workflow.parallel import in_parallel
 from assayfolio.workflow.surroundings import look_around, utc_now
 from assayfolio.workflow.sweep import Sample, Told, plan_sweep, rerun_sweep
 from assayfolio.workflow.sweep_record import SweepRecord, as_record, checks_of_no_run, verified_rows
@@ -59,8 +59,9 @@ def verify_sweep(
     plan = plan_sweep(workspace, sample)
 
     def inventories(folders: Sequence[Path]) -> Iterable[tuple[Path, Inventory]]:
-        for folder, found in in_parallel(take_inventory, folders, jobs, _nothing, ()):
-            yield folder, take_inventory(folder) if found is None else found
+        # Threads, not processes: reading and hashing is done outside the interpreter's lock.
+        with ThreadPoolExecutor(jobs) as pool:
+            yield from zip(folders, pool.map(take_inventory, folders), strict=True)
 
     named = None if sample is None else tuple(plan.folders.values())
     verification = verify_workspace(workspace.runs, named, named_witnesses(workspace, witnesses), inventories)
@@ -68,10 +69,6 @@ def verify_sweep(
     rows = verified_rows(plan, verification, seals)
     record = SweepRecord("verify", plan, rows, checks_of_no_run(plan, verification), around, utc_now())
     return record, _sealed(record, workspace, output)
-
-
-def _nothing() -> None:
-    """A process that only reads files needs no preparation."""
 
 
 def _seal_of(folder: Path) -> str:
@@ -83,4 +80,8 @@ def _seal_of(folder: Path) -> str:
 
 def _sealed(record: SweepRecord, workspace: Workspace, output: Path | None) -> SealedRecord:
     sealable = as_record(record)
-    return seal_in_workspace(workspace, sealable) if output is None else seal_in_folder(output.resolve(), sealable)
+    return (
+        seal_in_workspace(workspace, sealable)
+        if output is None
+        else seal_in_folder(output.resolve(), sealable)
+    )

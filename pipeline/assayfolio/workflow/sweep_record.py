@@ -13,13 +13,14 @@ from assayfolio.evidence.history import split_subject
 from assayfolio.evidence.outcomes import CheckOutcome, Verification
 from assayfolio.report.record_page import RecordFact, RecordPage, RecordSection, RecordTable, record_pdf
 from assayfolio.version import VERSION
-from assayfolio.workflow.laboratory_folio import Record
+from assayfolio.workflow.laboratory_folio import Record, laboratory_name
 from assayfolio.workflow.sampling import ALGORITHM
 from assayfolio.workflow.surroundings import Surroundings
 from assayfolio.workflow.sweep import SweepPlan, SweepRow
 
 SWEEP_FORMAT = "assayfolio-sweep/1"
 MOST_PRINTED = 200
+MOST_PRINTED_IN_ORDER = 40
 _TITLES = {"rerun": "Folios computed and rendered again", "verify": "Folios verified"}
 
 
@@ -74,7 +75,12 @@ class SweepRecord:
             "exit_code": int(self.exit_code),
             "rows": [_row_document(row) for row in self.rows],
             "other_findings": [
-                {"number": one.number, "subject": one.subject, "outcome": one.outcome, "notes": list(one.notes)}
+                {
+                    "number": one.number,
+                    "subject": one.subject,
+                    "outcome": one.outcome,
+                    "notes": list(one.notes),
+                }
                 for one in self.others
                 if one.outcome != "passed"
             ],
@@ -111,7 +117,9 @@ def _row_document(row: SweepRow) -> Mapping[str, Json]:
     }
 
 
-def verified_rows(plan: SweepPlan, verification: Verification, seals: Mapping[str, str]) -> tuple[SweepRow, ...]:
+def verified_rows(
+    plan: SweepPlan, verification: Verification, seals: Mapping[str, str]
+) -> tuple[SweepRow, ...]:
     """A row for each folio of a verification: the worst of its checks, and the notes of those not passed."""
     by_subject: dict[str, list[CheckOutcome]] = {subject: [] for subject in plan.folders}
     for one in verification.outcomes:
@@ -183,7 +191,7 @@ def _page(record: SweepRecord, digest: str) -> RecordPage:
         kind="Record of a sweep",
         title=f"{_TITLES[record.kind]}: {record.words}",
         number=local[:10],
-        laboratory="",
+        laboratory=laboratory_name(record.plan.workspace),
         created=f"{seen.started_utc[:19]}Z",
         generator=f"Assayfolio {VERSION}",
         box=box,
@@ -198,7 +206,9 @@ def _sections(record: SweepRecord, local: str) -> Iterator[RecordSection]:
         RecordFact("Workspace", record.plan.workspace.root.name),
         RecordFact("Begun", local),
         RecordFact("Ended", f"{record.ended[:19].replace('T', ' ')} UTC"),
-        RecordFact("By", f"account {record.surroundings.actor} on {record.surroundings.host}, this computer's clock"),
+        RecordFact(
+            "By", f"account {record.surroundings.actor} on {record.surroundings.host}, this computer's clock"
+        ),
         RecordFact("With", f"Assayfolio {VERSION}"),
     ]
     sample = record.plan.sample
@@ -206,23 +216,25 @@ def _sections(record: SweepRecord, local: str) -> Iterator[RecordSection]:
         facts.append(RecordFact("Sample", f"{sample.number} with seed {sample.seed}, algorithm {ALGORITHM}"))
     earlier = [row.earlier for row in record.rows if row.earlier]
     if earlier:
-        words = f"{len(earlier)} folios were done by a sweep that was interrupted, from {min(earlier)[:19]} UTC on"
+        words = f"{len(earlier)} folios were done by an interrupted sweep, from {min(earlier)[:19]} UTC on"
         facts.append(RecordFact("Taken up", words))
     yield RecordSection("Who, when, with what", facts=tuple(facts))
     others = [one for one in record.others if one.outcome != "passed"]
     if others:
         rows = tuple((f"{one.number} {one.subject}", one.outcome, "\n".join(one.notes)) for one in others)
         columns = (("check", 28), ("outcome", 16), ("remarks", 56))
-        yield RecordSection("Checks beside those of single runs", table=RecordTable(columns, rows[:MOST_PRINTED]))
+        yield RecordSection(
+            "Checks beside those of single runs", table=RecordTable(columns, rows[:MOST_PRINTED])
+        )
     if record.bad:
-        yield _table("To look at", record.bad)
+        yield _table("To look at", record.bad, MOST_PRINTED)
     fine = tuple(row for row in record.rows if row.is_fine)
     if fine:
-        yield _table("In order", fine)
+        yield _table("In order", fine, MOST_PRINTED_IN_ORDER)
 
 
-def _table(title: str, rows: Sequence[SweepRow]) -> RecordSection:
-    words = f"{MOST_PRINTED} of {len(rows):,} are shown; sweep.csv lists them all." if len(rows) > MOST_PRINTED else ""
+def _table(title: str, rows: Sequence[SweepRow], most: int) -> RecordSection:
+    words = f"{most} of {len(rows):,} are shown; sweep.csv lists them all." if len(rows) > most else ""
     columns = (("folio", 28), ("outcome", 20), ("remarks, first digits of the seal", 52))
     return RecordSection(
         title,
@@ -231,7 +243,7 @@ def _table(title: str, rows: Sequence[SweepRow]) -> RecordSection:
             columns,
             tuple(
                 (row.subject, row.outcome, "\n".join((*row.notes, f"seal {row.seal[:16]}")))
-                for row in rows[:MOST_PRINTED]
+                for row in rows[:most]
             ),
         ),
     )

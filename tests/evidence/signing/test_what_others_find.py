@@ -1,7 +1,7 @@
 """Which attacks on the PDF other programs find as well, given the PDF and the laboratory's certificate alone.
 
-`pdfsig` finds one where it does not call every signature valid or none covers the whole document, `qpdf` where
-its check complains, `openssl` where it does not verify every extracted signature up to the laboratory's
+`pdfsig` finds one where it does not call every signature valid or none covers the whole document, `qpdf`
+where its check complains, `openssl` where it does not verify every extracted signature up to the laboratory's
 certificate. What is not in the table is found by this program only.
 """
 
@@ -16,7 +16,6 @@ from evidence.signing.attacks import ATTACKS
 from evidence.signing.office import SIGNED, office, signed_report
 
 SIGNATURE = re.compile(rb"/ByteRange ?\[ ?0 ([0-9]+) ([0-9]+) ([0-9]+) ?\]")
-
 
 FOUND: dict[str, tuple[str, ...]] = {
     "a bit of the sealed report": ("pdfsig", "qpdf", "openssl"),
