@@ -50,7 +50,8 @@ HEAVY = (
 
 # Clock, user, environment, disk and chance: what is the same for the same input reads none of them.
 EDGE_UNITS = {"evidence", "workflow", "cli", "__main__"}
-EDGE_MODULES = {"report.assets", "report.fetching", "report.pdf"}
+# The workbook's archive is opened in memory: nothing of the disk is read.
+EDGE_MODULES = {"report.assets", "report.fetching", "report.pdf", "observations.workbook_package"}
 WORLD_MODULES = {
     "time",
     "os",

@@ -547,17 +547,48 @@ def test_an_undeclared_level_is_told_once_with_the_number_of_its_rows() -> None:
     assert "(30 rows, the first is here)" in error.faults[0].found
 
 
-def test_beyond_fifty_faults_are_counted() -> None:
-    error = refused(GOOD + "kit-a,x\n" * 70 + "kit-c,1\n")
-    assert [fault.place.line for fault in error.faults] == list(range(6, 56))
-    assert error.hidden == 21
-    assert str(error).endswith("and 21 more")
+def test_three_entries_alike_are_told_one_by_one_and_more_in_one_line() -> None:
+    three = refused(GOOD + "kit-a,1x\nkit-b,2x\nkit-a,3x\n")
+    assert [(fault.place.line, fault.found) for fault in three.faults] == [
+        (line, f"column `nitrate` holds `{line - 5}x`: not a number") for line in (6, 7, 8)
+    ]
+    many = refused(GOOD + "kit-a,1x\nkit-b,2x\nkit-a,3x\nkit-b,4x\n")
+    assert many.headline == "data/nitrate.csv cannot be used: 4 faults"
+    (fault,) = many.faults
+    words = "column `nitrate` holds `1x`: not a number; the same 3 times more, at 7:7, 8:7, 9:7"
+    assert (str(fault.place), fault.found) == ("data/nitrate.csv:6:7", words)
+
+
+def test_a_fault_in_every_row_is_one_line_with_the_first_places() -> None:
+    error = refused("method,nitrate\n" + "kit-a,x\nkit-b,x\n" * 5000)
+    (fault,) = error.faults
+    assert fault.found.endswith(
+        "the same 9,999 times more, at 3:7, 4:7, 5:7, 6:7, 7:7, 8:7, 9:7, 10:7 ..."
+    )
+    assert error.headline.endswith(": 10000 faults")
+    assert error.hidden == 0
+
+
+def test_entries_of_different_columns_are_not_alike() -> None:
+    rows = "".join(f"kit-a,{n}x,{n}y\n" for n in range(6))
+    error = refused(f"method,nitrate,nitrite\n{rows}kit-b,1,1\n", replace(TWO, order=None))
+    assert [fault.found.partition(" holds")[0] for fault in error.faults] == [
+        "column `nitrate`",
+        "column `nitrite`",
+    ]
+
+
+def test_beyond_fifty_kinds_of_fault_the_rest_is_counted() -> None:
+    error = refused("method,nitrate\n" + "".join(f"lot-{n},1\n" for n in range(80)))
+    assert [fault.place.line for fault in error.faults] == list(range(2, 52))
+    assert error.hidden == 80 + 2 - 50
+    assert str(error).endswith("and 32 more")
 
 
 def test_the_first_fifty_are_the_first_of_the_file_whatever_their_kind() -> None:
     error = refused("method,nitrate\n" + "".join(f"lot-{n},x\n" for n in range(80)))
-    assert [fault.place.line for fault in error.faults] == [2 + n // 2 for n in range(50)]
-    assert error.hidden == 2 * 80 + 2 - 50
+    assert [fault.place.line for fault in error.faults] == [2, *range(2, 51)]
+    assert error.hidden == 2 * 80 + 2 - 80 - 49
 
 
 def test_wrong_numbers_of_rows_are_told_in_the_order_of_the_file_not_of_the_plan() -> None:

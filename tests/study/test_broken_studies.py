@@ -17,7 +17,7 @@ QUANTITIES = (
 COUNT = "expected a whole number from 1 to 1000000"
 TOP_KEYS = (
     "study, title, purpose, data, measurement, worksheet, design, alpha, comparisons, equivalence, spread, "
-    "outliers, checks, precision, power, criteria, sign-off"
+    "outliers, checks, precision, power, criteria, trend, sign-off"
 )
 TITLE_LINE = "Two balances and a reference"
 

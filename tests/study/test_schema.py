@@ -32,6 +32,9 @@ MAPPINGS = {
     "precision": vocabulary.PRECISION_KEYS,
     "power": vocabulary.POWER_KEYS,
     "criterion": vocabulary.CRITERION_KEYS,
+    "trend": vocabulary.TREND_KEYS,
+    "baseline": vocabulary.BASELINE_KEYS,
+    "trend-criterion": vocabulary.TREND_CRITERION_KEYS,
     "sign-off": vocabulary.SIGN_OFF_KEYS,
 }
 WORDS: dict[tuple[str, str], tuple[str, ...]] = {
@@ -59,6 +62,9 @@ WORDS: dict[tuple[str, str], tuple[str, ...]] = {
     ("precision", "conditions"): vocabulary.PRECISION_CONDITIONS,
     ("power", "allocation"): vocabulary.ALLOCATIONS,
     ("criterion", "quantity"): vocabulary.QUANTITIES,
+    ("trend", "quantities"): vocabulary.CHART_QUANTITIES,
+    ("trend", "rules"): vocabulary.RUN_RULES,
+    ("trend-criterion", "quantity"): vocabulary.CHART_QUANTITIES,
     ("sign-off", "role"): vocabulary.ROLES,
 }
 TYPED_FIELDS = {
@@ -82,6 +88,8 @@ TYPED_FIELDS = {
     ("precision", "conditions"): (plan.PrecisionPlan, "conditions"),
     ("power", "allocation"): (plan.PowerPlan, "allocation"),
     ("criterion", "quantity"): (plan.Criterion, "quantity"),
+    ("trend", "quantities"): (plan.TrendPlan, "quantities"),
+    ("trend", "rules"): (plan.TrendPlan, "rules"),
     ("sign-off", "role"): (plan.SignOff, "role"),
 }
 LENGTHS = {
@@ -155,6 +163,12 @@ EVERYTHING: dict[str, Any] = {
         "response": "mass",
     },
     "criteria": [{"quantity": "largest-difference", "at-most": "1", "unit": "g", "response": "mass"}],
+    "trend": {
+        "baseline": {"first": 20},
+        "quantities": "lot-mean",
+        "rules": ["beyond-limits", "nine-one-side"],
+        "criteria": [{"quantity": "lot-mean", "at-most": "1", "response": "mass"}],
+    },
     "sign-off": [{"role": "author", "meaning": "m"}],
 }
 SECTIONS = {
@@ -173,6 +187,9 @@ SECTIONS = {
     "power": "power",
     "contrast": "comparisons.contrasts",
     "criterion": "criteria",
+    "trend": "trend",
+    "baseline": "trend.baseline",
+    "trend-criterion": "trend.criteria",
     "sign-off": "sign-off",
 }
 

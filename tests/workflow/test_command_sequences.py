@@ -107,6 +107,7 @@ class Sequence:
 
     def __init__(self, root: Path, laboratory: str) -> None:
         self.bench = staffed(Bench(root, SIGNED_OFF), laboratory)
+        self.bench.runs.mkdir()
         self.workspace = Workspace(root)
 
     def give(self, command: tuple) -> None:

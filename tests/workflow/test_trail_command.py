@@ -292,6 +292,18 @@ class TestWitnesses:
         assert check["outcome"] == "passed"
         assert f"file: {heads}: 2 heads agree" in check["notes"][0]
 
+    def test_that_lost_their_first_heads_are_a_finding_by_the_settings(self, bench, tmp_path):
+        heads = tmp_path / "heads.jsonl"
+        with (bench.root / "configs" / "lab.yaml").open("a") as settings:
+            settings.write(f"witnesses:\n  - {{file: {heads}}}\n")
+        bench("worksheet", bench.study)
+        heads.unlink()
+        allot(bench)
+        answer = bench("verify")
+        assert answer.code == 1
+        assert "it lacks the head of entry" in answer.out
+        assert "and the audit trail does not say why" in answer.out
+
     def test_may_be_named_by_the_one_who_verifies(self, bench, tmp_path):
         allot(bench)
         head = json.loads((bench.runs / "audit-trail.head").read_bytes())

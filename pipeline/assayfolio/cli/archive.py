@@ -123,14 +123,16 @@ def sweep_verified(
     seed: int | None,
     jobs: int | None,
     witnesses: "Sequence[Witness]",
+    restored: str | None,
     as_json: bool,
 ) -> int:
     """Verify every folio of the workspace, or a sample, and say what came of it; the exit code."""
     from assayfolio.workflow.parallel import available_processors
-    from assayfolio.workflow.sweep_folios import sample_of, verify_sweep
+    from assayfolio.workflow.sweep_folios import Sought, sample_of, verify_sweep
 
     drawn = sample_of(sample, seed)
-    swept, sealed = verify_sweep(named_workspace, output, drawn, jobs or available_processors(), witnesses)
+    asked = Sought(drawn, jobs or available_processors(), tuple(witnesses), restored)
+    swept, sealed = verify_sweep(named_workspace, output, asked)
     return say_sweep(swept, sealed, as_json)
 
 
@@ -158,17 +160,13 @@ def _tell_nothing(done: int, total: int, row: "SweepRow") -> None:
 
 
 @click.command(
-    epilog="\b\nExample:\n  assayfolio archive runs/WHP-101/run-0001 --to /media/stick/WHP-101 --with-wheels"
+    epilog="\b\nExamples:\n  assayfolio archive runs/WHP-101/run-0001 --to /media/WHP-101 --with-wheels\n"
+    '  assayfolio archive runs/WHP-101/run-0001 --dispose --reason "kept ten years"'
 )
 @click.argument("folios", metavar="FOLIO...", nargs=-1, required=True, type=click.Path(path_type=Path))
 @workspace_option
 @click.option(
-    "--to",
-    "place",
-    required=True,
-    type=click.Path(path_type=Path),
-    metavar="DIR",
-    help="The new folder that is made.",
+    "--to", "place", type=click.Path(path_type=Path), metavar="DIR", help="The new folder that is made."
 )
 @click.option(
     "--with-wheels", is_flag=True, help="Add the programs and packages that the runs were made with."
@@ -176,13 +174,19 @@ def _tell_nothing(done: int, total: int, row: "SweepRow") -> None:
 @click.option(
     "--wheels", type=_FOLDER, metavar="DIR", help="Take packages from this folder, not from an index."
 )
+@click.option("--dispose", is_flag=True, help="Propose to dispose of the folio, after its retention.")
+@click.option("--confirm", is_flag=True, help="With --dispose: another person confirms, and it is removed.")
+@click.option("--reason", metavar="TEXT", help="With --dispose: why.")
 @json_option
 def archive(
     folios: tuple[Path, ...],
     named_workspace: Path | None,
-    place: Path,
+    place: Path | None,
     with_wheels: bool,
     wheels: Path | None,
+    dispose: bool,
+    confirm: bool,
+    reason: str | None,
     as_json: bool,
 ) -> None:
     """Make a true copy of folios for somebody else.
@@ -190,11 +194,20 @@ def archive(
     DIR holds the folios byte for byte, the audit trail's lines from their first entry on, a certificate (PDF
     and JSON), and with --with-wheels everything that computes them again without a network. Nothing is copied
     that does not verify.
+
+    With --dispose one folio is disposed of, after the retention that the settings give: one person proposes
+    it with a reason, another confirms. A tombstone with its seal stays, runs/_laboratory/disposal-NNNN.
     """
+    if dispose == (place is not None) or (not dispose and (confirm or reason is not None)):
+        raise InputError("Either --to DIR for a copy, or --dispose with --reason TEXT or --confirm.")
+    if dispose:
+        _dispose(named_workspace, folios, reason, confirm, as_json)
+        return
     from assayfolio.workflow.archive import export
     from assayfolio.workflow.wheels import WheelSource
     from assayfolio.workflow.workspace import find_workspace
 
+    assert place is not None, "a copy has a place"
     source = WheelSource(wheels) if with_wheels or wheels is not None else None
     copy = export(find_workspace(named_workspace, folios[0]), folios, place, source)
     if as_json:
@@ -207,3 +220,24 @@ def archive(
         say(f"{len(copy.wheels)} wheels")
     say(f"Copy    {copy.place}")
     say(f"Record  {copy.record.folio}")
+
+
+def _dispose(
+    named_workspace: Path | None, folios: tuple[Path, ...], reason: str | None, confirm: bool, as_json: bool
+) -> None:
+    """Propose a disposal, or confirm it."""
+    from assayfolio.workflow.retention import confirm_disposal, propose_disposal
+    from assayfolio.workflow.workspace import find_workspace
+
+    if len(folios) != 1 or (reason is None) == (not confirm):
+        raise InputError("Name one folio, with --reason TEXT to propose its disposal, or --confirm.")
+    workspace = find_workspace(named_workspace, folios[0])
+    if reason is None:
+        disposal = confirm_disposal(workspace, folios[0])
+    else:
+        disposal = propose_disposal(workspace, folios[0], reason)
+    if as_json:
+        say(json.dumps(disposal.document, ensure_ascii=False, indent=1))
+    else:
+        for line in disposal.lines():
+            say(line)

@@ -37,6 +37,7 @@ from assayfolio.errors import ExitCode, InputError
     help="Hold the audit trail against this head too, as an archived report prints it.",
 )
 @sweep_options
+@click.option("--restored", metavar="TEXT", help="With --all: record that this came back from a backup.")
 @click.option(
     "--output", metavar="DIR", type=click.Path(path_type=Path, file_okay=False), help="Where the summary goes."
 )
@@ -51,6 +52,7 @@ def verify(
     seed: int | None,
     jobs: int | None,
     output: Path | None,
+    restored: str | None,
     as_json: bool,
 ) -> int:
     """Verify folios and the audit trail.
@@ -61,7 +63,8 @@ def verify(
     mentioned, too: that is information and changes no exit code. Nothing is repaired.
 
     With --all the files are read on all processors, and one summary (PDF, CSV) is sealed at the end; --sample
-    and --seed draw some of the folios at random.
+    and --seed draw some of the folios at random. --restored TEXT says which backup a workspace was brought back
+    from; the summary is then the dated record of that.
     """
     from assayfolio.workflow.audit import (
         unfinished_data,
@@ -73,11 +76,11 @@ def verify(
     from assayfolio.workflow.witnessing import printed_head, witness_at
 
     witnesses = (*map(witness_at, places), *map(printed_head, heads))
-    if take_all or sample is not None or seed is not None:
+    if take_all or sample is not None or seed is not None or restored is not None:
         if folios or not take_all:
             raise InputError("Name folios, or give --all (with --sample N --seed S for some of them).")
         note_reading(named_workspace, "verify", ["--all"], None)
-        return sweep_verified(named_workspace, output, sample, seed, jobs, witnesses, as_json)
+        return sweep_verified(named_workspace, output, sample, seed, jobs, witnesses, restored, as_json)
     start = folios[0] if folios else None
     note_reading(named_workspace, "verify", [str(folio) for folio in folios], start)
     verification = verify_all(named_workspace, folios, witnesses)

@@ -17,6 +17,7 @@ FAILED = "failed"
 INTERRUPTED = "interrupted"
 COMPUTED = "computed"
 RENDERED = "rendered"
+DISPOSED = "disposed"
 
 _SUBJECT = re.compile(r"([A-Z0-9][A-Z0-9-]{0,39})/(run-([0-9]{4,}))", re.ASCII)
 

@@ -3,13 +3,14 @@
 Who may give a command is another question (`workflow.authority`); here it is what has to come before what.
 """
 
-from collections.abc import Callable, Mapping
+from collections.abc import Callable, Iterable, Mapping, Sequence
 from dataclasses import dataclass
 from typing import Literal
 
-from assayfolio.evidence.states import APPROVER, RunStanding, StudyStanding
+from assayfolio.evidence.states import APPROVER, RunStanding, Signature, StudyStanding
 from assayfolio.study.laboratory import Laboratory, Separation
 
+ROLES_IN_ORDER = ("author", "reviewer", APPROVER)
 MoveKind = Literal["preregister", "amend", "run", "replace", "void", "sign"]
 
 
@@ -100,9 +101,9 @@ def _sign(move: Move, study: StudyStanding, run: RunStanding | None, rules: Rule
         return f"no approved protocol of {study.study}, which the laboratory requires"
     if run.asked and move.role not in run.asked:
         return f"nobody is asked to sign {run.subject} as {move.role}"
-    if move.role in {signature.role for signature in run.signatures}:
-        return f"{run.subject} is signed as {move.role} already"
-    return _not_by(move, run, rules) or (_not_yet(run, rules) if move.role == APPROVER else None)
+    one = (run.subject, run.asked, run.signatures)
+    reason = signed_already(move, *one) or _not_by(move, run, rules) or out_of_turn(move, *one)
+    return reason or (_not_reviewed(run, rules) if move.role == APPROVER else None)
 
 
 def _not_by(move: Move, run: RunStanding, rules: Rules) -> str | None:
@@ -117,12 +118,32 @@ def _not_by(move: Move, run: RunStanding, rules: Rules) -> str | None:
     return None
 
 
-def _not_yet(run: RunStanding, rules: Rules) -> str | None:
-    """Why it cannot be approved yet: signatures and the review of the trail come before."""
-    signed = {signature.role for signature in run.signatures}
-    open_roles = [role for role in run.asked if role != APPROVER and role not in signed]
-    if open_roles:
-        return f"{run.subject} is not signed yet as {' and '.join(open_roles)}"
+def signed_already(
+    move: Move, subject: str, asked: Sequence[str], signatures: Iterable[Signature]
+) -> str | None:
+    """Why the role has nothing left to sign, or this account has signed in it."""
+    of_role = [signature for signature in signatures if signature.role == move.role]
+    if len(of_role) >= max(1, list(asked).count(move.role or "")):
+        return f"{subject} is signed as {move.role} already"
+    if move.account in {signature.account for signature in of_role}:
+        return f"{move.account} signed {subject} as {move.role} already; the next one has to be another person"
+    return None
+
+
+def out_of_turn(
+    move: Move, subject: str, asked: Sequence[str], signatures: Iterable[Signature]
+) -> str | None:
+    """Why it is not the role's turn: authors sign before reviewers, reviewers before approvers."""
+    if move.role not in ROLES_IN_ORDER:
+        return None
+    before = ROLES_IN_ORDER[: ROLES_IN_ORDER.index(move.role)]
+    signed = [signature.role for signature in signatures]
+    missing = [role for role in before if signed.count(role) < list(asked).count(role)]
+    return f"{subject} is not signed yet as {' and '.join(missing)}" if missing else None
+
+
+def _not_reviewed(run: RunStanding, rules: Rules) -> str | None:
+    """Why it cannot be approved yet: the review of the trail comes before."""
     others = [account for account in run.reviewed_by if rules.one_person or account != run.runner]
     if rules.review_before_approval and not others:
         return f"the audit trail of {run.subject} was not reviewed yet by somebody who did not run it"

@@ -15,6 +15,8 @@ from assayfolio.evidence.manifest import (
 )
 from assayfolio.evidence.outcomes import Tally
 
+SIGN_OFF_FOLDER = "sign-off"
+LABORATORY_FOLDER = "_laboratory"
 _KNOWN_AT_TOP = frozenset({*TAG_FILES, TAG_MANIFEST_FILE})
 
 
@@ -80,6 +82,8 @@ def check_extras(folio: FolioReading, tally: Tally) -> None:
         inside = path.startswith(f"{PAYLOAD_FOLDER}/")
         if (inside and (path in listed or folio.payload is None)) or path in _KNOWN_AT_TOP:
             continue
+        if path.startswith(f"{SIGN_OFF_FOLDER}/") and folio.study_folder != LABORATORY_FOLDER:
+            continue  # check 5.1 speaks of it
         tally.failed.append(f"extra file: {shown(path)}{_explain_extra(path)}")
     for path, kind in folio.inventory.oddities.items():
         tally.failed.append(f"{kind}: {shown(path)}")

@@ -16,6 +16,7 @@ from assayfolio.evidence.strict_json import NotCanonicalError
 
 STUDY_FILE = "data/study.yaml"
 INPUTS_FOLDER = "data/inputs/"
+RUN_FAMILY, RUN_NUMBER = "assayfolio-run/", 1
 COMPLETED = "completed"
 OUTCOMES = (COMPLETED, "failed")
 # Key in run.json, file of the folio, trail action and key of its details.
@@ -25,8 +26,23 @@ _RESULTS = (
 )
 
 
+def newer_format(run: Mapping[str, Any]) -> str | None:
+    """The format of a record that a later version of this program made; None for one that is known."""
+    written = str(run.get("format", ""))
+    number = written.removeprefix(RUN_FAMILY)
+    is_number = written.startswith(RUN_FAMILY) and number.isascii() and number.isdigit()
+    return written if is_number and int(number) > RUN_NUMBER else None
+
+
 def _record(folio: FolioReading, tally: Tally) -> Mapping[str, Any] | None:
-    """The run record; where there is none the tally says why."""
+    """The run record; where there is none, or it is of a later version, the tally says why."""
+    newer = None if folio.run is None else newer_format(folio.run)
+    if newer is not None:
+        tally.unchecked.append(
+            f"{RUN_FILE} has the format {newer}, made by a newer version of this program; this one reads up to "
+            f"{RUN_FAMILY}{RUN_NUMBER}"
+        )
+        return None
     if content_of(folio, RUN_FILE, tally) is not None and folio.run is None:
         tally.failed.append(f"{RUN_FILE} cannot be understood: {folio.run_trouble}")
     return folio.run

@@ -9,7 +9,15 @@ from assayfolio.evidence.entries import HEAD_FILE, TRAIL_FILE, TrailReading, set
 from assayfolio.evidence.files import plain_reason, replacement_name
 from assayfolio.evidence.folio import UNSEALED, leftover_record, reopen_staged
 from assayfolio.evidence.folio_reading import TrailIndex
-from assayfolio.evidence.history import ALLOTTED, SEALED, RunHistory, run_histories, split_subject, unallotted
+from assayfolio.evidence.history import (
+    ALLOTTED,
+    DISPOSED,
+    SEALED,
+    RunHistory,
+    run_histories,
+    split_subject,
+    unallotted,
+)
 from assayfolio.evidence.inventory import shown
 from assayfolio.evidence.laboratory_folios import FOLDER as LABORATORY_FOLDER
 from assayfolio.evidence.laboratory_folios import explained_names
@@ -76,6 +84,10 @@ def _check_run(runs: Path, history: RunHistory, tally: Tally) -> None:
             _note_failure(history, tally)
         elif there:
             tally.failed.append(f"{history.subject} is not a folder: something else stands in its place")
+        elif (disposed := history.entry(DISPOSED)) is not None:
+            tally.remarks.append(
+                f"disposed of after its retention: entry {disposed.seq}, {disposed.details.get('folio')}"
+            )
         elif locked:
             tally.unchecked.append("running now: sealed, about to get its name")
         else:

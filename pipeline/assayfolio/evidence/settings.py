@@ -8,11 +8,13 @@ founded with are `provisional`: they name no laboratory yet.
 
 from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass
+from pathlib import PurePosixPath
 
 from assayfolio.canonical import Json, sha256_hex
+from assayfolio.errors import StudyError
 from assayfolio.evidence.entries import TrailEntry, is_digest
 from assayfolio.study.differences import Difference
-from assayfolio.study.settings_document import SETTINGS_FILES, Texts
+from assayfolio.study.settings_document import SETTINGS_FILES, Texts, settings_of
 
 SETTINGS = "settings"
 PROPOSED = "settings-proposed"
@@ -86,6 +88,31 @@ def open_proposal(entries: Sequence[TrailEntry]) -> EnteredSettings | None:
     """The newest change that was proposed and has not been confirmed, or None."""
     newest = _newest(entries, (SETTINGS, PROPOSED))
     return newest if newest is not None and newest.entry.action == PROPOSED else None
+
+
+def witness_in_force_since(entries: Iterable[TrailEntry], name: str) -> int | None:
+    """The entry of settings since which the witness `name` has been in force; None where it is not.
+
+    `name` is kind and place, as in "file: /mnt/witness/heads.jsonl".
+    """
+    since: int | None = None
+    for entry in entries:
+        settings = entered_settings(entry) if entry.action == SETTINGS else None
+        if settings is not None:
+            named = name in _witness_names(settings.texts)
+            since = (since or entry.seq) if named else None
+    return since
+
+
+def _witness_names(texts: Mapping[str, str | None]) -> frozenset[str]:
+    try:
+        laboratory, _ = settings_of(texts)
+    except StudyError:
+        return frozenset()
+    return frozenset(
+        f"{each.kind}: {each.target if each.kind == 'time-stamp' else PurePosixPath(each.target)}"
+        for each in laboratory.witnesses
+    )
 
 
 def _newest(entries: Sequence[TrailEntry], actions: Iterable[str]) -> EnteredSettings | None:

@@ -120,7 +120,7 @@ def study_standing(entries: Iterable[TrailEntry], study: str) -> StudyStanding:
     if protocol is not None:
         subject = protocol_subject(study, protocol.number)
         own = [entry for entry in listed if entry.subject == subject]
-        approved = is_approved(_asked(own[0]) if own else (), _signatures(own))
+        approved = is_approved(asked_roles(own[0]) if own else (), signatures_in(own))
     return StudyStanding(
         study=study,
         state=_study_state(runs, registered=protocol is not None, locked=locked),
@@ -133,7 +133,8 @@ def study_standing(entries: Iterable[TrailEntry], study: str) -> StudyStanding:
 
 def is_approved(asked: Sequence[str], signatures: Iterable[Signature]) -> bool:
     """Whether everybody who is asked to has signed, an approver at any rate."""
-    return {*asked, APPROVER} <= {signature.role for signature in signatures}
+    signed = [signature.role for signature in signatures]
+    return all(signed.count(role) >= list(asked).count(role) for role in asked) and APPROVER in signed
 
 
 def standing_words(run: RunStanding) -> list[str]:
@@ -170,7 +171,7 @@ def _run_standing(
     reviewed_by: tuple[str, ...],
     superseded: Mapping[str, str],
 ) -> RunStanding:
-    signatures, asked = _signatures(run.entries), _asked(run.allotted)
+    signatures, asked = signatures_in(run.entries), asked_roles(run.allotted)
     voided = next((void for entry in run.entries if (void := _voiding(entry)) is not None), None)
     completed, by = _completed(run), superseded.get(run.subject)
     state: RunState = "draft"
@@ -208,12 +209,14 @@ def _completed(run: RunHistory) -> bool:
     return run.sealed is not None and run.sealed.details.get("outcome") == COMPLETED
 
 
-def _asked(allotted: TrailEntry) -> tuple[str, ...]:
+def asked_roles(allotted: TrailEntry) -> tuple[str, ...]:
+    """The roles that are asked to sign, one for each field, as the entry that gave the number has them."""
     asked = allotted.details.get("sign_off")
     return tuple(role for role in asked if isinstance(role, str)) if isinstance(asked, list) else ()
 
 
-def _signatures(entries: Iterable[TrailEntry]) -> tuple[Signature, ...]:
+def signatures_in(entries: Iterable[TrailEntry]) -> tuple[Signature, ...]:
+    """The signatures among `entries`, in their order."""
     found = []
     for entry in entries:
         role, person = entry.details.get("role"), entry.details.get("person")

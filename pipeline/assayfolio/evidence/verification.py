@@ -18,6 +18,7 @@
 2.9  For each protocol: registered and there, or entered as stopped.
 3.1 to 3.12  Each folio (`checks`).
 4.1 to 4.11  Each protocol's folio (`protocol_checks`).
+5.1 to 5.4  What was signed (`sign_off_checks`); 2.10 is about the signers' certificates (`signer_checks`).
 
 Every check is made whatever the others found. A trail cut back together with its head is whole by itself:
 it shows where a folio's entries or seal are no longer in the trail, or against a head kept elsewhere (a
@@ -58,6 +59,7 @@ from assayfolio.evidence.protocol_checks import (
 )
 from assayfolio.evidence.run_states import check_numbers, check_run, check_surroundings
 from assayfolio.evidence.settings_checks import check_settings
+from assayfolio.evidence.sign_off_checks import SignOffJudge, check_sign_off_of
 from assayfolio.evidence.stamps import clock_remarks
 from assayfolio.evidence.states import standing_words
 from assayfolio.evidence.trail import WRITER, Witnesses, no_witnesses
@@ -85,10 +87,12 @@ def verify_workspace(
     folios: Sequence[Path] | None,
     witnesses: Witnesses = no_witnesses,
     inventories: Inventories = _one_by_one,
+    anchors: Sequence[bytes] = (),
 ) -> Verification:
     """Verify the trail in `runs` and all its folios, or the trail and the named `folios`.
 
-    The trail is held against each of `witnesses` that can be reached.
+    The trail is held against each of `witnesses` that can be reached. Signatures are believed by the
+    certificates (DER) in `anchors`, or without any by those that the trail pins.
     A named folio outside `runs` is taken for a copy and held against the entries of the run that it names.
     Where all folios are verified `inventories` reads their files, which takes most of the time. Raises
     InputError where `runs` is no folder or a named path is neither a folio nor the place of a run that the
@@ -101,7 +105,9 @@ def verify_workspace(
     for _ in range(_LOOKS):
         with collector_paused():
             reading, trouble = _settled_reading(runs)
-            outcomes = tuple(_outcomes(runs, reading, trouble, folios, witnesses, inventories))
+            found = _outcomes(runs, reading, trouble, folios, witnesses, inventories)
+            signed = _signed_outcomes(runs, reading, trouble, folios, witnesses, anchors)
+            outcomes = (*found, *signed)
         if all(each.outcome != "failed" for each in outcomes) or not _has_moved(runs, reading):
             break
     return Verification(outcomes)
@@ -165,6 +171,24 @@ def _outcomes(
         return
     for folio in folios:
         yield from _named(runs, index, folio)
+
+
+def _signed_outcomes(
+    runs: Path,
+    reading: TrailReading | None,
+    trouble: str,
+    folios: Sequence[Path] | None,
+    witnesses: Witnesses,
+    anchors: Sequence[bytes],
+) -> Iterator[CheckOutcome]:
+    """What is to be said of signatures: in the whole workspace, or in the named folios."""
+    index = None if reading is None else TrailIndex(reading)
+    entries = () if reading is None else reading.entries
+    judge = SignOffJudge(index, trouble, runs.parent, anchors, lambda: witnesses(entries))
+    if folios is None and index is not None:
+        yield from judge.check_all(runs)
+    for folio in folios or ():
+        yield from check_sign_off_of(judge, folio, is_protocol=is_protocol(folio))
 
 
 def _named(runs: Path, index: TrailIndex, folio: Path) -> Iterator[CheckOutcome]:
@@ -316,15 +340,17 @@ def _check_torn_lines(runs: Path, reading: TrailReading) -> CheckOutcome:
     return tally.outcome("2.4", "torn lines kept as entered", "audit trail")
 
 
-def verify_lone_folios(folios: Sequence[Path]) -> Verification:
+def verify_lone_folios(folios: Sequence[Path], anchors: Sequence[bytes] = ()) -> Verification:
     """Verify `folios` that lie in no workspace: each by itself, since there is no trail to hold it against.
 
-    Raises InputError where a path is not a folio.
+    Signatures are believed by `anchors` alone. Raises InputError where a path is not a folio.
     """
     outcomes: list[CheckOutcome] = []
+    judge = SignOffJudge(None, OUTSIDE, None, anchors)
     for folio in folios:
         absolute = Path(os.path.abspath(folio))  # noqa: PTH100 - no link is followed
         _require_folio(absolute)
         check = check_protocol_folio if is_protocol(absolute) else check_folio
         outcomes.extend(check(absolute, None, OUTSIDE))
+        outcomes.extend(check_sign_off_of(judge, absolute, is_protocol=is_protocol(absolute)))
     return Verification(tuple(outcomes))

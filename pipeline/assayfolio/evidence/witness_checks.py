@@ -10,6 +10,7 @@ from assayfolio.errors import MachineError
 from assayfolio.evidence.entries import HEAD_FILE, TRAIL_FILE, TrailReading
 from assayfolio.evidence.locks import is_locked
 from assayfolio.evidence.outcomes import CheckOutcome, Tally
+from assayfolio.evidence.settings import witness_in_force_since
 from assayfolio.evidence.telling import ABOUT_WITNESSES, explained_gaps
 from assayfolio.evidence.trail import WRITER
 from assayfolio.evidence.witnesses import KeptHeads, PrintedHead, Witness
@@ -87,9 +88,11 @@ def _heads(count: int) -> str:
 
 
 def _judge_gaps(reading: TrailReading, name: str, kept: frozenset[int], tally: Tally) -> None:
-    """Heads between the first that a witness keeps and the trail's last which it was not told of."""
+    """Heads that a witness should have been told of: from its first on, or since the settings name it."""
     count = len(reading.lines)
-    missing = set(range(min(kept), count + 1)) - kept
+    since = witness_in_force_since(reading.entries, name)
+    first = min(min(kept), count if since is None else since)
+    missing = set(range(first, count + 1)) - kept
     known = [gap for gap in explained_gaps(reading.entries, name, count) if missing.intersection(gap)]
     for gap in known:
         missing.difference_update(gap)
@@ -104,9 +107,10 @@ def _judge_gaps(reading: TrailReading, name: str, kept: frozenset[int], tally: T
     elif missing:
         named = ", ".join(map(str, sorted(missing)[:_MOST_NAMED]))
         more = f" and {len(missing) - _MOST_NAMED} more" if len(missing) > _MOST_NAMED else ""
+        lacking = "the head of entry" if len(missing) == 1 else "the heads of entries"
         tally.failed.append(
-            f"{name}: it lacks the heads of entries {named}{more}, and the audit trail does not say why: "
-            "heads were taken out there, or entries were added here by other means"
+            f"{name}: it lacks {lacking} {named}{more}, and the audit trail does not say why: heads were "
+            "taken out there, or entries were added here by other means"
         )
 
 

@@ -194,15 +194,19 @@ def _end_of(text: str) -> tuple[int, int]:
 def refuse_nul_bytes(body: bytes, file: str) -> None:
     """Raise DataError with every line of `body` that holds a NUL byte."""
     faults = FaultList(file)
-    add_nul_bytes(faults, body)
+    add_nul_bytes(faults, body, 0, nul_advice(body[::2].count(0), body[1::2].count(0), len(body)))
     raise_faults(file, faults)
 
 
-def add_nul_bytes(faults: FaultList, body: bytes, above: int = 0) -> None:
+def nul_advice(even: int, odd: int, size: int) -> str:
+    """What to do about NUL bytes, of which so many stand at even and at odd places of a text of `size`."""
+    if max(even, odd) * 3 > size:
+        return f"it looks like UTF-16; {_WANTED}"
+    return "the file is damaged or no text file; export it again"
+
+
+def add_nul_bytes(faults: FaultList, body: bytes, above: int, advice: str) -> None:
     """Add a fault for every line of `body` that holds a NUL byte; `above` lines stand before it in the file."""
-    advice = "the file is damaged or no text file; export it again"
-    if body[1::2].count(0) * 3 > len(body) or body[::2].count(0) * 3 > len(body):
-        advice = f"it looks like UTF-16; {_WANTED}"
     for number, line in enumerate(body.split(b"\n"), start=above + 1):
         at = line.find(0)
         if at >= 0:

@@ -1,7 +1,7 @@
 """Faults of data files, gathered in one pass and told in the order of the files.
 
-Faults that differ only in the entry they quote are of one kind. Up to three of a kind are told one by one;
-of more the first is told, with how many there are and where the next ones stand.
+Faults that differ only in the entry that a cell holds are of one kind. Up to three of a kind are told one by
+one; of more the first is told, with how many there are and where the next ones stand.
 """
 
 import re
@@ -16,7 +16,7 @@ MOST_ALIKE = 3
 _LISTED_NAMES = 12
 _LISTED_PLACES = 9
 
-_QUOTED = re.compile(r"`[^`]*`")
+_ENTRY = re.compile(r"(?<= holds )`[^`]*`")
 
 
 @dataclass(slots=True)
@@ -58,7 +58,7 @@ class FaultList:
     def add(self, line: int | None, column: int | None, found: str, advice: str) -> None:
         """Add one fault; `line` is None where it concerns the file as a whole."""
         self.count += 1
-        name = (_QUOTED.sub("`", found), advice)
+        name = (_ENTRY.sub("", found), advice)
         kind = self.kinds.get(name)
         if kind is None:
             if self.full:

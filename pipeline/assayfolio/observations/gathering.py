@@ -9,17 +9,17 @@ import numpy as np
 
 from assayfolio.observations.assembling import Assembly
 from assayfolio.observations.exclusions import ExclusionMatch
-from assayfolio.observations.faults import Faults, refusal
+from assayfolio.observations.faults import Faults
 from assayfolio.observations.flow import require_sum
+from assayfolio.observations.layout import MOST_LEVELS, too_many_levels
 from assayfolio.observations.levels import LevelCount, Where
 from assayfolio.observations.plain_stretch import Stretch
 from assayfolio.observations.received import Received
 from assayfolio.observations.summing import Summing
 from assayfolio.observations.totals import Totals
-from assayfolio.observations.values import CountFlow, Observations, RawFile
+from assayfolio.observations.values import CountFlow, Observation, Observations, RawFile
 from assayfolio.study.plan import DataPlan, MeasurementFact
 
-MOST_LEVELS: Final = 10_000
 MOST_FAULTS: Final = 10_000
 
 
@@ -48,8 +48,9 @@ class Gathering:
         for code, label in enumerate(labels):
             if not label.strip():
                 continue
-            self._counts.count_many(label, int(counts[code]), partial(_place_of, stretch, code, place))
-            self._number(file, label)
+            where = partial(_place_of, stretch, code, place)
+            self._counts.count_many(label, int(counts[code]), where)
+            self._number(file, label, partial(where, 0))
 
     def take_values(self, stretch: Stretch, labels: Sequence[str]) -> None:
         """Add the numbers of the rows of a stretch that are not odd; its levels have been taken."""
@@ -79,7 +80,9 @@ class Gathering:
                 self.faults.lost_values = True  # what stands below is not counted
                 break
         for part, summing, missing in zip(self._assembly.parts, self._summings, self._missing, strict=True):
-            levels = [self._number(file, value.level) for value in part.kept]
+            levels = [
+                self._number(file, value.level, partial(_place_of_value, value)) for value in part.kept
+            ]
             summing.add_values(levels, [value.value for value in part.kept], len(self._numbers))
             missing.update(aside.level for aside in part.set_aside)
             part.kept.clear()
@@ -118,14 +121,17 @@ class Gathering:
             require_sum(counts)
         return tuple(flow)
 
-    def _number(self, file: int, level: str) -> int:
+    def _number(self, file: int, level: str, where: Callable[[], Where]) -> int:
         number = self._numbers.setdefault(level, len(self._numbers))
         if number >= MOST_LEVELS:
-            found = f"more than {MOST_LEVELS:,} levels"
-            raise refusal(self.faults.of[file].file, found, "check the factor column of the study")
+            raise too_many_levels(self.faults.of[file].file, self._plan.factor, *where()[1:])
         return number
 
 
 def _place_of(stretch: Stretch, code: int, place: Callable[[int], Where], at: int) -> Where:
     """Where row number `at` of those with one level stands."""
     return place(int(np.flatnonzero(stretch.codes == code)[at]))
+
+
+def _place_of_value(value: Observation) -> Where:
+    return (value.file, value.line, 1)

@@ -3,6 +3,7 @@
 from collections.abc import Callable, Iterator, Sequence
 from operator import itemgetter
 
+from assayfolio.errors import DataError
 from assayfolio.observations.faults import FaultList, Faults, refusal
 from assayfolio.observations.received import Columns, Received, SheetRow
 from assayfolio.observations.rows import Broken
@@ -60,6 +61,12 @@ def received_rows(
     return _long(body, columns, file, extras, sheet, faults.of[file])
 
 
+def too_many_levels(file: str, column: str, line: int, at: int) -> DataError:
+    """The refusal of a level beyond the first 5,000, which stands at that line and column."""
+    found = f"column {shown(column)} holds more than {MOST_LEVELS:,} levels"
+    return refusal(file, found, "name the column that holds the levels", line, at)
+
+
 def _long(
     body: Iterator[SheetRow],
     columns: Columns,
@@ -80,8 +87,7 @@ def _long(
         if name not in levels:
             levels.add(name)
             if len(levels) > MOST_LEVELS:
-                found = f"column {shown(sheet.names[level or 0])} holds more than {MOST_LEVELS:,} levels"
-                raise refusal(faults.file, found, "name the column that holds the levels", row.line, 1)
+                raise too_many_levels(faults.file, sheet.names[level or 0], *row.spot(level or 0))
         yield Received(
             file,
             row.line,

@@ -7,14 +7,15 @@ out, LF and CRLF become LF, a byte order mark is no part of the text.
 import hashlib
 import zlib
 from collections.abc import Callable, Iterator
+from contextlib import suppress
 from dataclasses import replace
 from typing import BinaryIO
 
 import numpy as np
 
-from assayfolio.errors import DataError, Fault
+from assayfolio.errors import DataError, Fault, Place
 from assayfolio.observations.compressed import FREE_BYTES, MOST_RATIO, reason_of, require_gzip
-from assayfolio.observations.decoding import CARRIAGE_RETURN, add_nul_bytes, not_utf8
+from assayfolio.observations.decoding import CARRIAGE_RETURN, add_nul_bytes, not_utf8, nul_advice
 from assayfolio.observations.faults import FaultList, raise_faults, refusal
 
 BLOCK = 1 << 20
@@ -31,6 +32,10 @@ _BOM = b"\xef\xbb\xbf"
 
 class UnfitTextError(Exception):
     """Some byte of the text cannot be read; a second pass says which and where."""
+
+
+class LongLineError(DataError):
+    """A line goes on for too long to be held in memory."""
 
 
 class LongFile:
@@ -107,19 +112,27 @@ class LongFile:
 
 def _whole_lines(blocks: Iterator[bytes], name: str) -> Iterator[bytes]:
     """`blocks` cut behind line ends; blank lines wait until something follows them, and fall at the end."""
-    rest = b""
+    rest, yielded = b"", False
     for block in blocks:
         whole = rest + block
         end = _end_of_entries(whole, whole.rfind(b"\n") + 1)
         if end:
+            yielded = True
             yield whole[:end]
         rest = whole[end:]
         if len(rest) > LONGEST_LINE:
-            found = f"a line, or blank lines, of more than {LONGEST_LINE:,} bytes"
-            raise refusal(name, found, "export the file again, one line a row")
+            raise _long_line(name, None if yielded else 1)
     end = _end_of_entries(rest, len(rest))
     if end:
         yield rest[:end]
+
+
+def _long_line(name: str, line: int | None) -> LongLineError:
+    found = f"a line, or blank lines, of more than {LONGEST_LINE:,} bytes"
+    fault = Fault(
+        Place(name, line, None if line is None else 1), found, "export the file again, one line a row"
+    )
+    return LongLineError(f"{name} cannot be used: 1 fault", (fault,))
 
 
 def _end_of_entries(text: bytes, end: int) -> int:
@@ -162,13 +175,16 @@ def refuse_unfit_text(file: LongFile) -> None:
     """
     nul, returns = FaultList(file.name), FaultList(file.name)
     first: DataError | None = None
+    advice = ""
     line = offset = 0
-    for stretch in file.stretches():
+    stretches = file.stretches()
+    while stretch := _next(stretches, file.name, line):
         body = stretch
         if not offset and body.startswith(_BOM):
             body, offset = body[len(_BOM) :], len(_BOM)
         if b"\0" in body:
-            add_nul_bytes(nul, body, line)
+            advice = advice or _advice_on_nul_bytes(file)
+            add_nul_bytes(nul, body, line, advice)
         if first is None:
             try:
                 body.decode("utf-8")
@@ -181,6 +197,29 @@ def refuse_unfit_text(file: LongFile) -> None:
     if first is not None:
         raise first
     raise_faults(file.name, returns)
+
+
+def _next(stretches: Iterator[bytes], name: str, line: int) -> bytes:
+    """The next stretch, nothing at the end; a line that is too long is named as the one below `line`."""
+    try:
+        return next(stretches, b"")
+    except LongLineError:
+        raise _long_line(name, line + 1) from None
+
+
+def _advice_on_nul_bytes(file: LongFile) -> str:
+    """What to do about the NUL bytes of the file, which a pass of its own counts."""
+    counts = [0, 0]
+    size = skipped = 0
+    with suppress(LongLineError):  # which is told by whoever reads that far
+        for stretch in file.stretches():
+            body = stretch
+            if not size and not skipped and body.startswith(_BOM):
+                body, skipped = body[len(_BOM) :], len(_BOM)
+            for place in (0, 1):
+                counts[(size + place) % 2] += body[place::2].count(0)
+            size += len(body)
+    return nul_advice(counts[0], counts[1], size)
 
 
 def _add_returns(faults: FaultList, body: bytes, line: int) -> None:

@@ -14,10 +14,10 @@ import numpy as np
 from assayfolio.errors import DataError
 from assayfolio.observations.decoding import refuse_empty, refuse_other_kinds, utf8_mark
 from assayfolio.observations.faults import FaultList, refusal
-from assayfolio.observations.gathering import MOST_LEVELS, Gathering
+from assayfolio.observations.gathering import Gathering
 from assayfolio.observations.guard import unguarded
 from assayfolio.observations.header import CHARACTERS, Header, find_header
-from assayfolio.observations.layout import extras_of, received_rows
+from assayfolio.observations.layout import MOST_LEVELS, extras_of, received_rows
 from assayfolio.observations.long_text import BLOCK, LongFile, UnfitTextError, plain_lines, refuse_unfit_text
 from assayfolio.observations.plain_stretch import PlainStretches, Stretch
 from assayfolio.observations.received import Received, SheetRow
@@ -51,7 +51,7 @@ def stream_observations(
 
     The plan must be one that `kept_from_streaming` has nothing against. Raises DataError with all faults of
     the files as `read_all_observations` does, except that reading stops after 10,000 of them, and that more
-    than 10,000 levels are refused.
+    than 5,000 levels in all files together are refused.
     """
     gathering = Gathering([file.name for file in files], plan, measurement)
     raws: list[RawFile] = []

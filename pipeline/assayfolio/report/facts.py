@@ -9,6 +9,7 @@ from typing import Literal
 from assayfolio.findings import Findings
 from assayfolio.observations.values import Observations
 from assayfolio.report.people import PersonFacts, ReplacedFacts
+from assayfolio.report.times import ClockFacts
 from assayfolio.study.plan import Laboratory, StudyDefinition
 
 
@@ -151,6 +152,7 @@ class RunFacts:
     person: PersonFacts | None = None
     replaces: ReplacedFacts | None = None
     registration: RegistrationFacts = UNREGISTERED
+    clock: ClockFacts | None = None
 
     @property
     def label(self) -> str:

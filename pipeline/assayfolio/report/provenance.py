@@ -8,6 +8,7 @@ from assayfolio.report.listing import is_listed
 from assayfolio.report.numbering import Part
 from assayfolio.report.people import replaced_words, roles_words, started_by
 from assayfolio.report.prose import Prose, prose, verbatim
+from assayfolio.report.times import times_words
 from assayfolio.report.wording import counted, first_of
 
 _MOST_PATHS = 8
@@ -31,6 +32,7 @@ def provenance_section(basis: Basis) -> Section:
                 _entry("Executions", execution_words(run.executions)),
                 _entry("Data also used", elsewhere_words(run.executions)),
                 _entry("Started", f"{_time(run.started_utc)} UTC, {_time(run.started_local)} local time"),
+                *([] if run.clock is None else [_entry("Times", times_words(run.clock))]),
                 _entry("Started by", started_by(run.actor, run.host, run.person)),
                 *([] if run.person is None else [_entry("Roles", roles_words(run.person))]),
                 *([] if run.replaces is None else [_entry("Replaces", replaced_words(run.replaces))]),

@@ -25,6 +25,8 @@ _KINDS: Mapping[type, str] = {
     Trend: "trend",
 }
 _NO_MEANING = frozenset({"place", "places"})
+# Sections that came later: a plan without one has the digest that it always had.
+_LATER_SECTIONS = ("trend",)
 _MAPPINGS = frozenset({"units", "convert", "limit_codes", "weights", "scores"})
 
 
@@ -36,6 +38,9 @@ def plan_document(study: StudyDefinition) -> Mapping[str, Json]:
         del data[key]
     data["replicates"] = _replicates(study)
     data["units"] = {name: study.data.unit_of(name) for name in study.data.response}
+    for key in _LATER_SECTIONS:
+        if document.get(key) is None:
+            document.pop(key, None)
     return {"format": PLAN_FORMAT, **document, "data": data}
 
 

@@ -11,9 +11,11 @@ LaboratoryRequirement = Literal["pre-registration", "approved-protocol", "people
 
 PERSON_ROLES: tuple[PersonRole, ...] = get_args(PersonRole)
 PROFILES: tuple[Profile, ...] = get_args(Profile)
+RETENTION_KEYS = ("class", "years")
 WITNESS_KINDS: tuple[WitnessKind, ...] = get_args(WitnessKind)
 LABORATORY_REQUIREMENTS: tuple[LaboratoryRequirement, ...] = get_args(LaboratoryRequirement)
 SEPARATION_KEYS = ("reviewer-is-not-runner", "approver-is-not-author")
+SIGNATURE_KEYS = ("time-stamp", "time-stamp-certificate", "long-term", "lock-minutes", "policy")
 PEOPLE_FILE_KEYS = ("people",)
 PERSON_KEYS = ("person", "account", "roles", "qualification")
 
@@ -67,6 +69,31 @@ class Witness:
 
 
 @dataclass(frozen=True, slots=True)
+class SignatureSettings:
+    """`signatures:` - how reports are signed electronically.
+
+    `time_stamp` is the address of a time-stamp authority, None for the signer's clock alone;
+    `time_stamp_certificate` the SHA-256 of the certificate by which its stamps are believed; `long_term` puts
+    certificates and revocation lists into the PDF; `lock_minutes` is how long nobody signs under an account
+    after three wrong passphrases in a row; `policy` the reference of the laboratory's policy on signatures.
+    """
+
+    time_stamp: str | None = None
+    time_stamp_certificate: str | None = None
+    long_term: bool = False
+    lock_minutes: int = 15
+    policy: str | None = None
+
+
+@dataclass(frozen=True, slots=True)
+class Retention:
+    """`retention:` - how long folios are kept: the class under which the laboratory lists them, and years."""
+
+    name: str
+    years: int
+
+
+@dataclass(frozen=True, slots=True)
 class Laboratory:
     """`lab.yaml` - who issues the reports, how they look, what every study has to contain, and who checks.
 
@@ -88,3 +115,5 @@ class Laboratory:
     review_before_approval: bool = True
     separation: Separation = Separation()
     witnesses: tuple[Witness, ...] = ()
+    retention: Retention | None = None
+    signatures: SignatureSettings = SignatureSettings()

@@ -21,11 +21,15 @@ from assayfolio.study.fields import (
 from assayfolio.study.laboratory import (
     LABORATORY_REQUIREMENTS,
     PROFILES,
+    RETENTION_KEYS,
     SEPARATION_KEYS,
+    SIGNATURE_KEYS,
     WITNESS_KINDS,
     Laboratory,
     Profile,
+    Retention,
     Separation,
+    SignatureSettings,
     Witness,
     WitnessKind,
 )
@@ -42,8 +46,11 @@ from assayfolio.study.vocabulary import (
 )
 
 MOST_WAIT_SECONDS = 600
+MOST_YEARS_KEPT = 100
 DEFAULT_ACCENT = "#0f5b66"
 DEFAULT_WAIT_SECONDS = 10
+MOST_LOCK_MINUTES = 7 * 24 * 60
+DEFAULT_LOCK_MINUTES = 15
 _WORDS = (*REQUIREMENTS, *LABORATORY_REQUIREMENTS)
 _REQUIREMENT_LIST = f"a list of {listed(_WORDS)}"
 _colour = matching(re.compile(r"#[0-9A-Fa-f]{6}", re.ASCII), 'a colour in quotation marks, such as "#0f5b66"')
@@ -53,6 +60,7 @@ _target = line_of_text(LONGEST_PATH)
 _address = matching(
     re.compile(r"https?://[!-~]{1,240}", re.ASCII), "an address such as https://time.example.org/stamp"
 )
+_digest = matching(re.compile(r"[0-9a-f]{64}", re.ASCII), "a SHA-256: 64 digits and letters from a to f")
 _WITNESSES = "a list of entries such as `- file: /mnt/witness/heads.jsonl`"
 
 
@@ -87,6 +95,8 @@ def _laboratory(fields: Fields) -> Laboratory | None:
     review = _setting(fields, "review-before-approval", profile, otherwise=True)
     separation = _separation(fields, profile)
     witnesses = fields.optional("witnesses", list_of(_witness, _WITNESSES)) or ()
+    retention = _retention(fields)
+    signatures = _signatures(fields)
     _report_repeated_witnesses(fields, witnesses)
     _report_missing_witness(fields, require, profile)
     if name is None:
@@ -105,7 +115,18 @@ def _laboratory(fields: Fields) -> Laboratory | None:
         review_before_approval=review,
         separation=separation,
         witnesses=witnesses,
+        retention=retention,
+        signatures=signatures,
     )
+
+
+def _retention(fields: Fields) -> Retention | None:
+    inner = fields.optional("retention", mapping_of(RETENTION_KEYS))
+    if inner is None:
+        return None
+    name = inner.required("class", label)
+    years = inner.required("years", whole_number(1, MOST_YEARS_KEPT))
+    return None if name is None or years is None else Retention(name, years)
 
 
 def _with_profile(profile: Profile | None, own: tuple[str, ...]) -> tuple[str, ...]:
@@ -133,6 +154,28 @@ def _separation(fields: Fields, profile: Profile | None) -> Separation:
     return Separation(
         reviewer_is_not_runner=_setting(inner, "reviewer-is-not-runner", profile, otherwise=True),
         approver_is_not_author=_setting(inner, "approver-is-not-author", profile, otherwise=True),
+    )
+
+
+def _signatures(fields: Fields) -> SignatureSettings:
+    inner = fields.optional("signatures", mapping_of(SIGNATURE_KEYS))
+    if inner is None:
+        return SignatureSettings()
+    stamp = inner.optional("time-stamp", _address)
+    minutes = inner.optional("lock-minutes", whole_number(1, MOST_LOCK_MINUTES))
+    for key in ("time-stamp-certificate", "long-term"):
+        value = inner.value(key)
+        if value is not None and "time-stamp" not in inner:
+            value.report("stands without `time-stamp`", "the address of the time-stamp authority beside it")
+    if stamp is not None and "time-stamp-certificate" not in inner:
+        advice = "add the SHA-256 of the certificate by which its stamps are believed"
+        inner.faults.add(inner.place, "the key `time-stamp-certificate` is missing", advice)
+    return SignatureSettings(
+        time_stamp=stamp,
+        time_stamp_certificate=inner.optional("time-stamp-certificate", _digest),
+        long_term=inner.optional("long-term", truth) or False,
+        lock_minutes=DEFAULT_LOCK_MINUTES if minutes is None else minutes,
+        policy=inner.optional("policy", label),
     )
 
 

@@ -12,6 +12,7 @@ from assayfolio.errors import Place
 from assayfolio.exact import NotADecimalError, parse_decimal
 from assayfolio.study.laboratory import Laboratory as Laboratory
 from assayfolio.study.laboratory import Person as Person
+from assayfolio.study.trend_plan import TrendPlan as TrendPlan
 
 Adjustment = Literal[
     "none",
@@ -374,6 +375,7 @@ class StudyDefinition:
     places: tuple[tuple[str, Place], ...]
     measurement: tuple[MeasurementFact, ...] = ()
     worksheet: WorksheetPlan | None = None
+    trend: TrendPlan | None = None
 
     def place_of(self, key: str) -> Place | None:
         """Where `key` stands (`alpha`, `data.levels`), or None where it is absent."""

@@ -41,6 +41,7 @@ from assayfolio.study.small_sections import (
     read_precision,
     read_sign_off,
 )
+from assayfolio.study.trend_section import trend_in
 from assayfolio.study.vocabulary import (
     CHECK_KEYS,
     DATA_KEYS,
@@ -94,6 +95,7 @@ def _study(fields: Fields) -> StudyDefinition | None:
     precision = fields.optional("precision", read_precision)
     power = fields.optional("power", power_in(around))
     criteria = fields.optional("criteria", list_of(criterion_in(around), _ENTRIES)) or ()
+    trend = fields.optional("trend", trend_in(around))
     sign_off = fields.optional("sign-off", list_of(read_sign_off, _ENTRIES)) or ()
     _report_repeated_names(fields)
     _report_shared_labels(fields, data_fields, around)
@@ -121,6 +123,7 @@ def _study(fields: Fields) -> StudyDefinition | None:
         places=_places(fields, data_fields, measured_fields, design_fields, checks_fields),
         measurement=measurement,
         worksheet=worksheet,
+        trend=trend,
     )
 
 

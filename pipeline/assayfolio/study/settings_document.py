@@ -12,8 +12,9 @@ from assayfolio.study.people import read_people
 LABORATORY_FILE = "configs/lab.yaml"
 PEOPLE_FILE = "configs/people.yaml"
 SETTINGS_FILES = (LABORATORY_FILE, PEOPLE_FILE)
-# Who may do what, who has to be another person, and who is told of the trail: changed by two persons.
-_OF_TWO_PERSONS = ("people", "separation", "one-person", "witnesses")
+# Who may do what, who has to be another person, who is told of the trail, how long records are kept, and how
+# signatures are made: changed by two persons.
+_OF_TWO_PERSONS = ("people", "separation", "one-person", "witnesses", "retention", "signatures")
 
 Texts = Mapping[str, str | None]
 """The text of each settings file by its path in the workspace; None for a file that is not there."""
@@ -48,6 +49,16 @@ def settings_document(laboratory: Laboratory, people: People | None) -> Mapping[
             "approver-is-not-author": laboratory.separation.approver_is_not_author,
         },
         "witnesses": [f"{witness.kind}: {witness.target}" for witness in laboratory.witnesses],
+        "retention": None
+        if laboratory.retention is None
+        else {"class": laboratory.retention.name, "years": laboratory.retention.years},
+        "signatures": {
+            "time-stamp": laboratory.signatures.time_stamp,
+            "time-stamp-certificate": laboratory.signatures.time_stamp_certificate,
+            "long-term": laboratory.signatures.long_term,
+            "lock-minutes": laboratory.signatures.lock_minutes,
+            "policy": laboratory.signatures.policy,
+        },
         "people": {
             person.account: {
                 "person": person.person,
@@ -73,7 +84,7 @@ def settings_differences(old: Texts, new: Texts) -> tuple[Difference, ...]:
 
 
 def needs_second_person(changes: Iterable[Difference]) -> bool:
-    """Whether one of the changes is about roles, separation of duties, one-person or witnesses.
+    """Whether one of the changes is about roles, separation, one-person, witnesses, retention or signatures.
 
     Changes that are only known as those of a whole file count as such.
     """

@@ -18,6 +18,11 @@ from assayfolio.study.plan import (
     Quantity,
     VarianceCheck,
 )
+from assayfolio.study.trend_plan import BASELINE_KEYS as BASELINE_KEYS
+from assayfolio.study.trend_plan import CHART_QUANTITIES as CHART_QUANTITIES
+from assayfolio.study.trend_plan import RUN_RULES as RUN_RULES
+from assayfolio.study.trend_plan import TREND_CRITERION_KEYS as TREND_CRITERION_KEYS
+from assayfolio.study.trend_plan import TREND_KEYS as TREND_KEYS
 
 STUDY_KEYS = (
     "study",
@@ -36,6 +41,7 @@ STUDY_KEYS = (
     "precision",
     "power",
     "criteria",
+    "trend",
     "sign-off",
 )
 DATA_KEYS = (
@@ -117,6 +123,8 @@ LABORATORY_KEYS = (
     "review-before-approval",
     "separation",
     "witnesses",
+    "retention",
+    "signatures",
 )
 
 Layout = Literal["long", "wide"]

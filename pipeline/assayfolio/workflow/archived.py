@@ -11,6 +11,7 @@ from assayfolio.evidence.files import plain_reason, read_regular
 from assayfolio.evidence.folio_reading import RUN_FILE
 from assayfolio.evidence.inventory import FoundFile, take_inventory
 from assayfolio.evidence.manifest import name_fault
+from assayfolio.evidence.run_checks import newer_format
 from assayfolio.workflow.records import RUN_FORMAT
 from assayfolio.workflow.workspace import shown_path
 
@@ -18,7 +19,6 @@ ENVIRONMENT_FILE = "data/environment.json"
 FINDINGS_FILE = "data/findings.json"
 REPORT_FILE = "data/report.pdf"
 FIGURES_FOLDER = "data/figures/"
-_FAMILY = "assayfolio-run/"
 
 
 class FailedRunError(InputError):
@@ -75,7 +75,7 @@ def archived_run(folder: Path) -> ArchivedRun:
             "compute again."
         )
     record = _document(folder, files, RUN_FILE)
-    require_known_format(shown_path(folder), record.get("format"))
+    require_known_format(shown_path(folder), record)
     if record.get("outcome") != "completed":
         raise FailedRunError(
             f"{shown_path(folder)} is the folio of a run that failed: it holds no report to compare with. "
@@ -92,17 +92,16 @@ def archived_run(folder: Path) -> ArchivedRun:
     return run
 
 
-def require_known_format(name: str, written: Any) -> None:
-    """Raise InputError in words where a run record's format is none that this version reads."""
-    if written == RUN_FORMAT:
-        return
-    number = str(written).removeprefix(_FAMILY)
-    if str(written).startswith(_FAMILY) and number.isdigit() and number.isascii():
+def require_known_format(name: str, record: Mapping[str, Any]) -> None:
+    """Raise InputError in words where a run's record has a format that this version does not read."""
+    newer, written = newer_format(record), record.get("format")
+    if newer is not None:
         raise InputError(
-            f"{name} was made by a newer version of this program: its record has the format {written}, and "
+            f"{name} was made by a newer version of this program: its record has the format {newer}, and "
             f"this version reads {RUN_FORMAT}. Use the version that data/environment.json names."
         )
-    raise InputError(f"{name}: {RUN_FILE} has the format {written!r}, which is not that of a run.")
+    if written != RUN_FORMAT:
+        raise InputError(f"{name}: {RUN_FILE} has the format {written!r}, which is not that of a run.")
 
 
 def _unreadable(folder: Path, path: str, why: str) -> InputError:

@@ -38,6 +38,8 @@ MAY: Mapping[str, tuple[PersonRole, ...]] = {
     "amend": ("author",),
     "void": ("approver", "quality-assurance"),
     "trail --review": ("reviewer", "approver", "quality-assurance"),
+    "archive --dispose": ("administrator",),
+    "archive --dispose --confirm": ("quality-assurance", "approver"),
     "settings": ("administrator",),
     "settings --confirm": ("administrator", "approver", "quality-assurance"),
 }

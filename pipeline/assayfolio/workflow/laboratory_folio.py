@@ -17,6 +17,7 @@ from assayfolio.evidence.laboratory_folios import (
     folio_subject,
     next_folio_number,
 )
+from assayfolio.evidence.trail import TrailWriter
 from assayfolio.version import VERSION
 from assayfolio.workflow.book import trail_book
 from assayfolio.workflow.recovery import acknowledge_interruptions, found_trail
@@ -67,16 +68,27 @@ def seal_in_workspace(workspace: Workspace, record: Record) -> SealedRecord:
     with trail_book(workspace, WAIT_SECONDS) as trail:
         found_trail(workspace, trail)
         acknowledge_interruptions(workspace, trail)
-        number = next_folio_number(trail.entries, record.kind)
-        subject = folio_subject(record.kind, number)
-        kind: dict[str, Json] = {"kind": record.kind, "number": number}
-        allotted = trail.append(FOLIO_ALLOTTED, subject, None, kind)
-        payload = {**record.payload, TRAIL_FILE: trail_extract([allotted])}
-        name = folio_name(record.kind, number)
-        staged = stage_folio(workspace.runs / FOLDER, name, payload, _bag_info(record, subject))
-        details = {**record.details, "folio": subject, "seal": staged.seal}
-        trail.append(RECORD_SEALED, subject, record.about, details)
-        return SealedRecord(staged.publish(), staged.seal, subject)
+        return seal_in_trail(workspace, trail, record)
+
+
+def seal_in_trail(
+    workspace: Workspace,
+    trail: TrailWriter,
+    record: Record,
+    action: str = RECORD_SEALED,
+    about: str | None = None,
+) -> SealedRecord:
+    """The same with the trail at hand; the entry with the seal is an `action` on the subject `about`."""
+    number = next_folio_number(trail.entries, record.kind)
+    subject = folio_subject(record.kind, number)
+    kind: dict[str, Json] = {"kind": record.kind, "number": number}
+    allotted = trail.append(FOLIO_ALLOTTED, subject, None, kind)
+    payload = {**record.payload, TRAIL_FILE: trail_extract([allotted])}
+    name = folio_name(record.kind, number)
+    staged = stage_folio(workspace.runs / FOLDER, name, payload, _bag_info(record, subject))
+    details = {**record.details, "folio": subject, "seal": staged.seal}
+    trail.append(action, about or subject, record.about, details)
+    return SealedRecord(staged.publish(), staged.seal, subject)
 
 
 def seal_in_folder(folder: Path, record: Record) -> SealedRecord:

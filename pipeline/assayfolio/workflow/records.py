@@ -22,6 +22,7 @@ from assayfolio.report.facts import (
     RunFacts,
 )
 from assayfolio.version import VERSION
+from assayfolio.workflow.clock_record import clock_facts
 from assayfolio.workflow.intake import InputFile, Intake
 from assayfolio.workflow.people_record import person_facts, replaced_facts
 from assayfolio.workflow.surroundings import Surroundings
@@ -142,6 +143,7 @@ def run_facts(
         person=person_facts(record),
         replaces=replaced_facts(record),
         registration=registration,
+        clock=clock_facts(record),
     )
 
 

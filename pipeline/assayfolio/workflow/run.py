@@ -7,13 +7,13 @@ Each step is entered in the audit trail as it is done. A fault in step 1 leaves 
 number; a failure after step 2 keeps its number and leaves a folio with the reason.
 """
 
-from collections.abc import Iterator, Mapping
-from contextlib import ExitStack, contextmanager
+from collections.abc import Mapping
+from contextlib import ExitStack
 from dataclasses import dataclass, field
 from pathlib import Path
 
 from assayfolio.canonical import Json, canonical_bytes, sha256_hex
-from assayfolio.errors import AssayfolioError, ExitCode, InputError, MachineError
+from assayfolio.errors import ExitCode, InputError, MachineError
 from assayfolio.evaluation.apply import evaluate
 from assayfolio.evaluation.reported import second_routes
 from assayfolio.evidence.bill_of_materials import BOM_FILE, bill_bytes
@@ -35,6 +35,7 @@ from assayfolio.version import VERSION
 from assayfolio.workflow.actors import Actor
 from assayfolio.workflow.authority import NotAllowedError, require
 from assayfolio.workflow.book import trail_book
+from assayfolio.workflow.clock_record import clock_record
 from assayfolio.workflow.environments import program_record
 from assayfolio.workflow.failure import failure_text
 from assayfolio.workflow.flow_words import files_words, flow_words
@@ -51,6 +52,7 @@ from assayfolio.workflow.records import (
     run_record,
 )
 from assayfolio.workflow.recovery import acknowledge_interruptions, found_trail
+from assayfolio.workflow.refusal import enter_refusal, holdable, refusal_entered
 from assayfolio.workflow.register import (
     HISTORY_FILE,
     enter_received,
@@ -74,8 +76,6 @@ from assayfolio.workflow.standing import (
 from assayfolio.workflow.steps import Progress, Step
 from assayfolio.workflow.surroundings import Surroundings, look_around
 from assayfolio.workflow.workspace import Workspace, shown_path
-
-DEFAULT_WAIT_SECONDS = 10.0
 
 
 @dataclass(frozen=True, slots=True)
@@ -171,7 +171,7 @@ def _authorised(workspace: Workspace, study_path: Path) -> Actor:
     except NotAllowedError:
         raise  # the attempt has been entered
     except InputError as error:
-        _refuse(workspace, study_path, SeenFiles(), error)
+        enter_refusal(workspace, study_path, SeenFiles(), error)
         raise
 
 
@@ -181,58 +181,21 @@ def _read(workspace: Workspace, study_path: Path) -> tuple[Intake, RegisteredPla
     The plan has to be the registered one, where one is; that is given too.
     """
     seen = SeenFiles()
-    with _refusal_entered(workspace, study_path, seen):
+    with refusal_entered(workspace, study_path, seen):
         study, laboratory = read_files(workspace, study_path, seen)
     with trail_book(workspace, laboratory.wait_seconds) as trail:
         found_trail(workspace, trail)
         enter_received(trail, seen)
         entries = trail.entries
-    with _refusal_entered(workspace, study_path, seen):
+    with refusal_entered(workspace, study_path, seen):
         registered = require_registered_plan(workspace, entries, study, laboratory)
         return validated(study, laboratory, tuple(seen.files)), registered
-
-
-@contextmanager
-def _refusal_entered(workspace: Workspace, study_path: Path, seen: SeenFiles) -> Iterator[None]:
-    try:
-        yield
-    except AssayfolioError as error:
-        try:
-            _refuse(workspace, study_path, seen, error)
-        except AssayfolioError as second:
-            raise MachineError(f"{error}\nThe refusal could not be entered in the trail: {second}") from error
-        raise
 
 
 def _read_words(observations: tuple[Observations, ...]) -> str:
     first, count = observations[0], len(observations)
     of_each = "" if count == 1 else f" of each of {count} responses"
     return f"{flow_words(first)}{of_each} at {len(first.levels)} levels from {files_words(first)}"
-
-
-def _refuse(workspace: Workspace, study_path: Path, seen: SeenFiles, error: AssayfolioError) -> None:
-    subject = seen.study_id or _relative_name(workspace, study_path)
-    details: dict[str, Json] = {
-        "step": int(Step.READ),
-        **input_details(seen.files),
-        "faults": [_holdable(str(fault)) for fault in error.faults] if isinstance(error, InputError) else [],
-        "more_faults": error.hidden if isinstance(error, InputError) else 0,
-    }
-    reason = error.headline if isinstance(error, InputError) else str(error)
-    with trail_book(workspace, DEFAULT_WAIT_SECONDS) as trail:
-        found_trail(workspace, trail)
-        enter_received(trail, seen)
-        trail.append("refused", _holdable(subject), _holdable(reason), details)
-
-
-def _relative_name(workspace: Workspace, path: Path) -> str:
-    resolved = path.resolve()
-    inside = resolved.is_relative_to(workspace.root)
-    return shown_path(resolved.relative_to(workspace.root) if inside else resolved)
-
-
-def _holdable(text: str) -> str:
-    return text.encode("utf-8", "backslashreplace").decode("utf-8")
 
 
 def _allot(
@@ -272,6 +235,7 @@ def _compute_and_render(run: _Run) -> Findings:
     run.payload |= run.standing.payload
     run.record = run_record(run.intake, run.surroundings, run.number, run.head_at_start)
     run.record |= {"executions": executions_record(run.history), **run.facts}
+    run.record["clock"] = clock_record(run.intake.laboratory)
     load_renderer(run.intake.laboratory)
     environment = environment_record()
     run.payload["data/environment.json"] = canonical_bytes(environment)
@@ -350,11 +314,11 @@ def _seal_failed(run: _Run, error: BaseException) -> BaseException:
         return MachineError(f"{reason}\n{where}.")
     where = f"{run.subject} failed; its number is kept"
     try:
-        run.enter("failed", Step(run.reached + 1), {}, _holdable(reason))
+        run.enter("failed", Step(run.reached + 1), {}, holdable(reason))
         run.payload.pop("data/report.pdf", None)  # a report is issued by a completed run only
         run.record.pop("report_sha256", None)
         run.payload["data/failure.txt"] = account.encode("utf-8", "backslashreplace")
-        run.record = failed_record(run.record, _holdable(reason))
+        run.record = failed_record(run.record, holdable(reason))
         folio, _ = _seal(run, "failed")
         where = f"{where}, and its folio says why: {shown_path(folio)}"
     except Exception as second:  # noqa: BLE001 - the first error is the one to tell; this one beside it

@@ -2,6 +2,7 @@
 
 from collections.abc import Iterable, Sequence
 from concurrent.futures import ThreadPoolExecutor
+from dataclasses import dataclass
 from pathlib import Path
 
 from assayfolio.errors import AssayfolioError, InputError
@@ -43,12 +44,21 @@ def rerun_all(
     return record, _sealed(record, workspace, output)
 
 
+@dataclass(frozen=True, slots=True)
+class Sought:
+    """What a sweep of verification takes: which folios, on how many threads, against which further witnesses.
+
+    `restored` says which backup the workspace was brought back from, None where it was not.
+    """
+
+    sample: Sample | None
+    jobs: int
+    witnesses: tuple[Witness, ...] = ()
+    restored: str | None = None
+
+
 def verify_sweep(
-    named_workspace: Path | None,
-    output: Path | None,
-    sample: Sample | None,
-    jobs: int,
-    witnesses: Sequence[Witness] = (),
+    named_workspace: Path | None, output: Path | None, asked: Sought
 ) -> tuple[SweepRecord, SealedRecord]:
     """Verify every folio of the workspace, or a sample, and the whole trail; seal the summary.
 
@@ -56,18 +66,22 @@ def verify_sweep(
     """
     workspace = find_workspace(named_workspace, Path())
     around = look_around()
-    plan = plan_sweep(workspace, sample)
+    plan = plan_sweep(workspace, asked.sample)
 
     def inventories(folders: Sequence[Path]) -> Iterable[tuple[Path, Inventory]]:
         # Threads, not processes: reading and hashing is done outside the interpreter's lock.
-        with ThreadPoolExecutor(jobs) as pool:
+        with ThreadPoolExecutor(asked.jobs) as pool:
             yield from zip(folders, pool.map(take_inventory, folders), strict=True)
 
-    named = None if sample is None else tuple(plan.folders.values())
-    verification = verify_workspace(workspace.runs, named, named_witnesses(workspace, witnesses), inventories)
+    named = None if asked.sample is None else tuple(plan.folders.values())
+    verification = verify_workspace(
+        workspace.runs, named, named_witnesses(workspace, asked.witnesses), inventories
+    )
     seals = {subject: _seal_of(folder) for subject, folder in plan.folders.items()}
     rows = verified_rows(plan, verification, seals)
-    record = SweepRecord("verify", plan, rows, checks_of_no_run(plan, verification), around, utc_now())
+    others = checks_of_no_run(plan, verification)
+    kind = "verify" if asked.restored is None else "restore"
+    record = SweepRecord(kind, plan, rows, others, around, utc_now(), asked.restored)
     return record, _sealed(record, workspace, output)
 
 

@@ -21,12 +21,19 @@ from assayfolio.workflow.sweep import SweepPlan, SweepRow
 SWEEP_FORMAT = "assayfolio-sweep/1"
 MOST_PRINTED = 200
 MOST_PRINTED_IN_ORDER = 40
-_TITLES = {"rerun": "Folios computed and rendered again", "verify": "Folios verified"}
+_TITLES = {
+    "rerun": "Folios computed and rendered again",
+    "verify": "Folios verified",
+    "restore": "Folios verified after they were restored",
+}
 
 
 @dataclass(frozen=True, slots=True)
 class SweepRecord:
-    """A finished sweep: `kind` is rerun or verify; `others` are checks that belong to no single run."""
+    """A finished sweep: `kind` is rerun, verify or restore; `others` are checks that belong to no single run.
+
+    `restored` says which backup the workspace was brought back from.
+    """
 
     kind: str
     plan: SweepPlan
@@ -34,6 +41,7 @@ class SweepRecord:
     others: tuple[CheckOutcome, ...]
     surroundings: Surroundings
     ended: str
+    restored: str | None = None
 
     @property
     def bad(self) -> tuple[SweepRow, ...]:
@@ -67,6 +75,7 @@ class SweepRecord:
             "actor": self.surroundings.actor,
             "host": self.surroundings.host,
             "program": f"assayfolio {VERSION}",
+            "restored_from": self.restored,
             "folios": self.plan.total,
             "sample": None
             if sample is None
@@ -167,7 +176,8 @@ def as_record(record: SweepRecord) -> Record:
         "counts": dict(record.counts),
         "seed": None if record.plan.sample is None else record.plan.sample.seed,
     }
-    return Record("sweep", about, record.surroundings.started_utc, payload, details)
+    kind = "restore" if record.kind == "restore" else "sweep"
+    return Record(kind, about, record.surroundings.started_utc, payload, details)
 
 
 def _csv(record: SweepRecord) -> bytes:
@@ -188,7 +198,7 @@ def _page(record: SweepRecord, digest: str) -> RecordPage:
     bad = len(record.bad) + sum(one.outcome != "passed" for one in record.others)
     box = "Nothing to look at." if not bad else f"{bad} to look at, listed below."
     return RecordPage(
-        kind="Record of a sweep",
+        kind="Record of a restoration" if record.restored is not None else "Record of a sweep",
         title=f"{_TITLES[record.kind]}: {record.words}",
         number=local[:10],
         laboratory=laboratory_name(record.plan.workspace),
@@ -211,6 +221,8 @@ def _sections(record: SweepRecord, local: str) -> Iterator[RecordSection]:
         ),
         RecordFact("With", f"Assayfolio {VERSION}"),
     ]
+    if record.restored is not None:
+        facts.insert(0, RecordFact("Brought back", record.restored))
     sample = record.plan.sample
     if sample is not None:
         facts.append(RecordFact("Sample", f"{sample.number} with seed {sample.seed}, algorithm {ALGORITHM}"))
