@@ -22,7 +22,7 @@ LAYERS = (
     {"findings"},
     {"findings_parts"},
     {"findings_document", "planning"},
-    {"evaluation"},
+    {"evaluation", "trending"},
     {"report", "evidence"},
     {"workflow"},
     {"cli"},

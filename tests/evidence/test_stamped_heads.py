@@ -12,7 +12,7 @@ from assayfolio.evidence.time_stamps import StampError, StampWitness, read_stamp
 from assayfolio.evidence.trail import read_trail
 from evidence.signing.stamps import NAME, StampHouse, serving
 
-pytestmark = pytest.mark.needs("openssl")
+pytestmark = [pytest.mark.needs("openssl"), pytest.mark.requirement("TRAIL-11")]
 
 
 @pytest.fixture(scope="module")

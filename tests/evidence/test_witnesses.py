@@ -12,6 +12,8 @@ from assayfolio.evidence.entries import TrailHead
 from assayfolio.evidence.trail import read_trail
 from assayfolio.evidence.witnesses import FileWitness, FolderWitness, PrintedHead
 
+pytestmark = pytest.mark.requirement("TRAIL-11")
+
 
 def enter(laboratory, *actions):
     with laboratory.trail() as writer:

@@ -77,6 +77,11 @@ power:
 criteria:
   - {quantity: repeatability-rsd, at-most: 2.0, unit: "%"}
   - {quantity: level-mean, level: 012, at-least: 4, at-most: 5.5, unit: mg/L, response: chloride}
+trend:
+  baseline: {first: 20}
+  quantities: [lot-mean, repeatability-sd]
+  rules: [beyond-limits, nine-one-side, six-rising]
+  criteria: [{quantity: lot-mean, at-least: 4, at-most: 5.5, response: chloride}]
 sign-off:
   - {role: author, meaning: I measured as planned}
   - {role: reviewer, meaning: "I checked plan, data and figures"}
@@ -93,6 +98,7 @@ precision: {estimate: true, varied: day and analyst, conditions: intermediate-pr
 criteria:
   - {quantity: total-rsd, at-most: 0.8}
   - {quantity: between-sd, at-most: 1/10, unit: g/L}
+trend: {baseline: {lots: [V-1, V-2, V-3, V-4, V-5]}, rules: beyond-limits}
 """
 
 SEPARATE = """\

@@ -94,7 +94,7 @@ ONE_FAULT = {
         (
             "5:1: the key `alpha` is not known here - known here: laboratory, address, note, accent, paper, "
             "require, wait-seconds, profile, one-person, log-reading, review-before-approval, separation, "
-            "witnesses"
+            "witnesses, retention, signatures"
         ),
     ),
 }

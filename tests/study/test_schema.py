@@ -281,6 +281,10 @@ def test_a_key_is_compulsory_in_the_schema_just_where_the_reader_misses_it(name:
             holder = definition["comparisons"][1]["contrasts"]
         elif name == "column":
             holder = definition["measurement"]["item"]
+        elif name == "baseline":
+            holder = definition["trend"]["baseline"]
+        elif name == "trend-criterion":
+            holder = definition["trend"]["criteria"]
         else:
             holder = definition if section is None else definition[section]
         holder = holder[0] if isinstance(holder, list) else holder

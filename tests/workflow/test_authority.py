@@ -18,6 +18,8 @@ ALLOWED = {
     "amend": {"ann"},
     "void": {"cem"},
     "trail --review": {"ben", "cem"},
+    "archive --dispose": {"dot"},
+    "archive --dispose --confirm": {"cem"},
     "settings": {"dot"},
     "settings --confirm": {"cem", "dot"},
 }

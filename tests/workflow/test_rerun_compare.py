@@ -87,6 +87,16 @@ def test_an_interval_on_data_with_a_large_offset_may_differ_by_one_unit_in_the_l
     assert only(old, {"mean": 1e12, "ci": [1e12 - 0.125, math.nextafter(end, math.inf)]}).within
 
 
+def test_the_shapiro_wilk_test_has_a_wider_bound_of_its_own():
+    old = {"name": "Shapiro-Wilk test on residuals", "statistic": 0.963284062182, "p": 0.507861614875}
+    seen = {**old, "statistic": 0.963284062202, "p": 0.507861615324}  # the next version of the library
+    assert [one.within for one in differences(old, seen)] == [True, True]
+    assert {one.bound for one in differences(old, seen)} == {1e-8}
+    assert not only(old, {**old, "p": old["p"] * (1 + 1.1e-8)}).within
+    bartlett = {**old, "name": "Bartlett test of equal variances"}
+    assert [one.within for one in differences(bartlett, {**seen, "name": bartlett["name"]})] == [False, False]
+
+
 def test_the_statistic_of_an_approximate_check_has_a_bound_and_that_of_an_exact_one_has_none():
     near = 0.9 * (1 + 1e-13)
     shapiro = {"name": "Shapiro-Wilk test on residuals", "statistic": 0.9}

@@ -5,6 +5,8 @@ import io
 import json
 import os
 import pwd
+import time
+from datetime import UTC, datetime
 
 import pytest
 
@@ -55,6 +57,7 @@ def refusals(bench):
     return [entry["reason"] for entry in bench.entries() if entry["action"] == "attempt-refused"]
 
 
+@pytest.mark.requirement("TRAIL-7")
 class TestEveryEntry:
     def test_says_who_in_which_roles_and_when_by_which_clock(self, people):
         for entry in people.entries():
@@ -83,6 +86,7 @@ class TestEveryEntry:
         assert people.entries()[-1]["details"]["by"] == {"person": None, "roles": []}
 
 
+@pytest.mark.requirement("TRAIL-12")
 class TestTheClock:
     def test_that_stands_behind_the_last_entry_says_by_how_much(self, bench):
         with trail_book(Workspace(bench.root), 1.0) as trail:
@@ -94,6 +98,20 @@ class TestTheClock:
         )
         assert clock.at(future)["behind_seconds"] > 3e10
         assert "behind_seconds" not in clock.at(last)
+
+    def test_tells_the_two_hours_apart_that_the_end_of_summer_time_makes_one(self, monkeypatch):
+        monkeypatch.setenv("TZ", "CET-1CEST,M3.5.0,M10.5.0/3")
+        time.tzset()
+        try:
+            clock = EntryClock()
+            told = []
+            for hour in (0, 1):
+                clock._moment = datetime(2026, 10, 25, hour, 30, tzinfo=UTC)
+                told.append(clock.at(None)["local"])
+        finally:
+            monkeypatch.undo()
+            time.tzset()
+        assert told == ["2026-10-25T02:30:00.000000+02:00", "2026-10-25T02:30:00.000000+01:00"]
 
     @pytest.mark.parametrize(("answer", "kept"), [(0, True), (1, True), (4, True), (5, False), (-1, None)])
     def test_is_kept_or_not_as_the_kernel_says(self, monkeypatch, answer, kept):
@@ -110,6 +128,7 @@ class TestTheClock:
         assert clock_is_synchronised() is None
 
 
+@pytest.mark.requirement("TRAIL-9")
 class TestShowing:
     def test_only_what_is_asked_for_and_how_many_of_how_many(self, people):
         answer = people("trail", "--what", "staged", "--who", "a. runner", "--when", "2000..")
@@ -178,6 +197,7 @@ class TestShowing:
         assert people("trail", *options).code == 2
 
 
+@pytest.mark.requirement("TRAIL-10")
 class TestReviewing:
     def test_is_entered_with_outcome_and_how_far(self, people, act):
         act("breader")
@@ -241,6 +261,7 @@ class TestReviewing:
         assert "another study" not in out
 
 
+@pytest.mark.requirement("TRAIL-6")
 class TestReading:
     def shown(self, bench):
         return [
@@ -281,6 +302,7 @@ class TestReading:
         assert "1.5   failed" in answer.out
 
 
+@pytest.mark.requirement("TRAIL-11")
 class TestWitnesses:
     def test_of_the_settings_are_told_and_compared(self, bench, tmp_path):
         heads = tmp_path / "heads.jsonl"

@@ -15,9 +15,7 @@ from assayfolio.canonical import sha256_hex
 from assayfolio.evidence.files import plain_reason, read_regular
 
 SIGNERS_FOLDER = "configs/signers"
-_PEM = re.compile(
-    rb"-----BEGIN (CERTIFICATE|X509 CRL)-----\s*([A-Za-z0-9+/=\s]+?)-----END \1-----", re.ASCII
-)
+_PEM = re.compile(rb"-----BEGIN (CERTIFICATE|X509 CRL)-----\s*([A-Za-z0-9+/=\s]+?)-----END \1-----", re.ASCII)
 _KINDS = {b"CERTIFICATE": "certificate", b"X509 CRL": "revocation list"}
 _LARGEST = 1 << 24
 
@@ -60,9 +58,7 @@ def pem_text(kind: str, *parts: bytes) -> bytes:
     for der in parts:
         code = base64.b64encode(der)
         lines = [code[place : place + 64] for place in range(0, len(code), 64)]
-        texts.append(
-            b"\n".join((b"-----BEGIN %s-----" % label, *lines, b"-----END %s-----" % label, b""))
-        )
+        texts.append(b"\n".join((b"-----BEGIN %s-----" % label, *lines, b"-----END %s-----" % label, b"")))
     return b"".join(texts)
 
 

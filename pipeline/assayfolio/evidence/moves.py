@@ -126,7 +126,9 @@ def signed_already(
     if len(of_role) >= max(1, list(asked).count(move.role or "")):
         return f"{subject} is signed as {move.role} already"
     if move.account in {signature.account for signature in of_role}:
-        return f"{move.account} signed {subject} as {move.role} already; the next one has to be another person"
+        return (
+            f"{move.account} signed {subject} as {move.role} already; the next one has to be another person"
+        )
     return None
 
 

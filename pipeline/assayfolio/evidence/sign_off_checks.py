@@ -130,9 +130,7 @@ class SignOffJudge:
         report = _report_on_file(folio, kind)
         if report is not None:
             findings = validate(report, self._trust(folio, signatures), datetime.now(UTC))
-            outcomes.append(
-                _tally(findings.findings).outcome("5.2", "the signed report as a whole", label)
-            )
+            outcomes.append(_tally(findings.findings).outcome("5.2", "the signed report as a whole", label))
             outcomes.extend(_of_signature(found, label) for found in findings.signatures)
         elif signatures:
             tally = Tally(failed=["it cannot be read, so no signature can be checked"])
@@ -151,7 +149,7 @@ class SignOffJudge:
     def _trust(self, folio: Path, signatures: Sequence[EnteredSignature]) -> Trust:
         certificates, signers = self._keyring.certificates, self._signers
         pinned = [certificates[one] for one in sorted(signers.anchors) if one in certificates]
-        stamps = [each.signatures.time_stamp_certificate for each in self._settings.ever()]
+        stamps = [each.signatures.time_stamp_certificate or "" for each in self._settings.ever()]
         own_stamps = [certificates[one] for one in dict.fromkeys(stamps) if one in certificates]
         return Trust(
             anchors=self._given or tuple(pinned),
@@ -192,7 +190,9 @@ class SignOffJudge:
         self._note_leftover(folio, tally)
         for place, each in enumerate(signatures, start=1):
             if each.number != place:
-                tally.failed.append(f"entry {each.entry.seq} is signature {each.number} where {place} is next")
+                tally.failed.append(
+                    f"entry {each.entry.seq} is signature {each.number} where {place} is next"
+                )
             self._check_entry(folio, each, tally)
         return tally
 
@@ -313,7 +313,9 @@ def _files_in(folder: Path, tally: Tally) -> dict[str, str]:
 def check_sign_off_of(judge: SignOffJudge, folio: Path, *, is_protocol: bool) -> Iterator[CheckOutcome]:
     """Checks 5.1 to 5.4 of one named folio, in its place or a copy elsewhere, by what it says it is."""
     if folio.parent.name != LABORATORY_FOLDER and folio.is_dir():
-        yield from judge.check(folio, _claimed(folio, is_protocol=is_protocol), "protocol" if is_protocol else "run")
+        yield from judge.check(
+            folio, _claimed(folio, is_protocol=is_protocol), "protocol" if is_protocol else "run"
+        )
 
 
 def _claimed(folio: Path, *, is_protocol: bool) -> str:

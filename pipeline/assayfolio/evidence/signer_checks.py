@@ -52,7 +52,10 @@ def check_signers(
     """Check 2.10, for a trail that knows signers."""
     tally = Tally(unchecked=list(keyring.troubles))
     for each in signers.enrolled:
-        for fingerprint, what in ((each.certificate, each.person), (each.anchor, f"the anchor of {each.person}")):
+        for fingerprint, what in (
+            (each.certificate, each.person),
+            (each.anchor, f"the anchor of {each.person}"),
+        ):
             if fingerprint not in keyring.certificates:
                 tally.failed.append(
                     f"missing: the certificate {fingerprint} of {what} (entry {each.seq}) is not in "
@@ -73,11 +76,13 @@ def _check_lists(signers: Signers, keyring: Keyring, tally: Tally) -> None:
     for place, pinned in enumerate(signers.lists, start=1):
         der = keyring.lists.get(pinned.sha256)
         if pinned.number != place:
-            tally.failed.append(f"entry {pinned.seq} pins revocation list {pinned.number} where {place} is next")
+            tally.failed.append(
+                f"entry {pinned.seq} pins revocation list {pinned.number} where {place} is next"
+            )
         if der is None:
             tally.failed.append(
-                f"missing: revocation list {pinned.number} (entry {pinned.seq}) is not in {SIGNERS_FOLDER}, or "
-                "was changed"
+                f"missing: revocation list {pinned.number} (entry {pinned.seq}) is not in {SIGNERS_FOLDER}, "
+                "or was changed"
             )
             before = None
             continue
@@ -111,9 +116,7 @@ def _check_revoked(signers: Signers, keyring: Keyring, newest: RevocationList, t
             )
 
 
-def _check_two_persons(
-    entries: Sequence[TrailEntry], settings: SettingsOverTime, tally: Tally
-) -> None:
+def _check_two_persons(entries: Sequence[TrailEntry], settings: SettingsOverTime, tally: Tally) -> None:
     by_seq = {entry.seq: entry for entry in entries if read_proposal(entry) is not None}
     for entry in entries:
         if entry.action not in DEEDS:

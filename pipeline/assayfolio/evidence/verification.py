@@ -105,9 +105,7 @@ def verify_workspace(
     for _ in range(_LOOKS):
         with collector_paused():
             reading, trouble = _settled_reading(runs)
-            found = _outcomes(runs, reading, trouble, folios, witnesses, inventories)
-            signed = _signed_outcomes(runs, reading, trouble, folios, witnesses, anchors)
-            outcomes = (*found, *signed)
+            outcomes = tuple(_outcomes(runs, reading, trouble, folios, witnesses, inventories, anchors))
         if all(each.outcome != "failed" for each in outcomes) or not _has_moved(runs, reading):
             break
     return Verification(outcomes)
@@ -142,11 +140,14 @@ def _outcomes(
     folios: Sequence[Path] | None,
     witnesses: Witnesses,
     inventories: Inventories,
+    anchors: Sequence[bytes],
 ) -> Iterator[CheckOutcome]:
     if reading is None:
         yield from _without_trail(runs, trouble, folios)
+        yield from _signed(SignOffJudge(None, trouble, None, anchors), folios or run_folders(runs))
         return
     index = TrailIndex(reading)
+    judge = SignOffJudge(index, "", runs.parent, anchors, lambda: witnesses(reading.entries))
     for check in _TRAIL_CHECKS:
         tally = Tally()
         check.make(runs, reading, tally)
@@ -168,26 +169,15 @@ def _outcomes(
         }
         for folder in folders:
             yield from found[folder]
+        yield from judge.check_all(runs)
         return
     for folio in folios:
         yield from _named(runs, index, folio)
+    yield from _signed(judge, folios)
 
 
-def _signed_outcomes(
-    runs: Path,
-    reading: TrailReading | None,
-    trouble: str,
-    folios: Sequence[Path] | None,
-    witnesses: Witnesses,
-    anchors: Sequence[bytes],
-) -> Iterator[CheckOutcome]:
-    """What is to be said of signatures: in the whole workspace, or in the named folios."""
-    index = None if reading is None else TrailIndex(reading)
-    entries = () if reading is None else reading.entries
-    judge = SignOffJudge(index, trouble, runs.parent, anchors, lambda: witnesses(entries))
-    if folios is None and index is not None:
-        yield from judge.check_all(runs)
-    for folio in folios or ():
+def _signed(judge: SignOffJudge, folios: Sequence[Path]) -> Iterator[CheckOutcome]:
+    for folio in folios:
         yield from check_sign_off_of(judge, folio, is_protocol=is_protocol(folio))
 
 

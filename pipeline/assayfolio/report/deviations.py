@@ -88,6 +88,7 @@ def deviations_line(basis: Basis) -> Prose:
     what = looked_at(basis)
     if not what:
         return prose(
-            "none found in dates, arrival of the data and clock; the plan fixes no numbers of values and no worksheet"
+            "none found in dates, arrival of the data and clock; the plan fixes no numbers of values and no "
+            "worksheet"
         )
     return prose("none found in {what}", what=listed(what))

@@ -79,7 +79,9 @@ def _criterion_in(surroundings: Surroundings) -> Reader[TrendCriterion]:
             found = "an entry of `trend.criteria` has no limit"
             fields.faults.add(fields.place, found, "write `at-most`, `at-least` or both")
         if at_most is not None and at_least is not None and at_least > at_most:
-            found = "`trend.criteria.at-least` is above `trend.criteria.at-most`, so that nothing can meet both"
+            found = (
+                "`trend.criteria.at-least` is above `trend.criteria.at-most`, so that nothing can meet both"
+            )
             fields.faults.add(fields.place_of("at-least"), found, "exchange or correct them")
         if quantity is None:
             raise UnreadableError

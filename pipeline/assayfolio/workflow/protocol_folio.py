@@ -142,7 +142,8 @@ def _allot(plan: PlanToFix, change: Change | None, surroundings: Surroundings, h
         head = trail.head
         protocol = _Protocol(plan, change, surroundings, number, head, first_seen, [], head)
         reason = None if change is None else change.reason
-        details = {"step": int(Step.ALLOT), "number": number, **_particulars(protocol)}
+        details: dict[str, Json] = {"step": int(Step.ALLOT), "number": number, **_particulars(protocol)}
+        details["sign_off"] = [item.role for item in plan.study.sign_off]
         protocol.entries.append(trail.append(PROTOCOL_ALLOTTED, protocol.subject, reason, details))
         protocol.head = trail.head
     return protocol

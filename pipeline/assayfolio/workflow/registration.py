@@ -17,6 +17,7 @@ from assayfolio.evidence.files import read_regular
 from assayfolio.evidence.folio import read_seal
 from assayfolio.evidence.protocols import RegisteredPlan, protocol_subject, registered_plans
 from assayfolio.evidence.register import ReceivedFile, read_register
+from assayfolio.evidence.states import study_standing
 from assayfolio.study.canonical_plan import plan_digest, plan_document
 from assayfolio.study.differences import Difference, differences, shortened
 from assayfolio.study.plan import Laboratory, StudyDefinition
@@ -88,7 +89,7 @@ def require_registered_plan(
         found = differences_to(read_registered(workspace, latest), study)
         if found:
             raise _differs(study, latest, found, file)
-    if "approved-protocol" in wanted and not _is_approved(listed, latest):
+    if "approved-protocol" in wanted and not study_standing(listed, study.study).protocol_approved:
         raise StudyError(
             f"{file}: {study.study}/{latest.name} is not approved, which {laboratory.name} requires before a "
             "run; nothing was analysed."
@@ -131,14 +132,6 @@ def _place(study: StudyDefinition, key: str, file: str) -> Place:
         if place is not None:
             return place
     return Place(file)
-
-
-def _is_approved(entries: Iterable[TrailEntry], plan: RegisteredPlan) -> bool:
-    subject = protocol_subject(plan.study, plan.number)
-    return any(
-        entry.action == "signed" and entry.subject == subject and entry.details.get("role") == "approver"
-        for entry in entries
-    )
 
 
 def minute_text(time: str) -> str:

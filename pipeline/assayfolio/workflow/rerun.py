@@ -178,7 +178,9 @@ def _findings_part(archived: bytes, document: bytes, found: Sequence[Difference]
     within = [one for one in found if one.within and one.kind == "approximate"]
     if within:
         worst = max(one.digits_lost or 0.0 for one in within)
-        notes.append(f"{len(within)} approximate numbers within 1e-11, at most {worst} of 12 digits lost")
+        notes.append(
+            f"{len(within)} approximate numbers within their stated bounds, at most {worst} of 12 digits lost"
+        )
     added = [one for one in found if one.within and one.kind == "only now"]
     if added:
         notes.append(f"{len(added)} fields that the version of the archive did not have, not compared")

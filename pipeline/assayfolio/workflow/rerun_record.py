@@ -20,13 +20,13 @@ MOST_SHOWN = 40
 
 _HOW_COMPARED = (
     "Exact numbers and texts are compared by equality, approximate numbers within 1 part in 10¹¹ (intervals "
-    "relative to half their width). Digits lost are counted of the 15.95 that a double holds, and of the 12 "
-    "that are stated for an approximate number."
+    "relative to half their width), the Shapiro-Wilk test within 1 part in 10⁸. Digits lost are counted of "
+    "the 15.95 that a double holds, and of the 12 that are stated for an approximate number."
 )
 SENTENCES = {
     "identical": "Identical: what was archived came out again, to the byte where bytes can be compared.",
     "equal within the bound": "Equal within the stated bound: no field is different, and the approximate "
-    "numbers that are not the same keep the bound of 1 part in 10¹¹.",
+    "numbers that are not the same keep their stated bounds.",
     "different": "Different: at least one part is not what was archived. Below stands which, and where.",
 }
 
