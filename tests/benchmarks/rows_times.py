@@ -108,9 +108,7 @@ def seconds(call: Callable[[], object]) -> float:
 
 def peak_megabytes(side: str, path: Path) -> float:
     """The largest memory of a new process in which one side does its work."""
-    done = subprocess.run(
-        [sys.executable, __file__, side, path], capture_output=True, text=True, check=True
-    )
+    done = subprocess.run([sys.executable, __file__, side, path], capture_output=True, text=True, check=True)
     return float(done.stdout)
 
 

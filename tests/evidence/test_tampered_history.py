@@ -292,6 +292,7 @@ def test_an_alteration_is_found_and_named_without_a_witness(place, alter, number
     assert_found(place.verify(with_witness=False), number, words)
 
 
+@pytest.mark.requirement("TRAIL-11")
 @pytest.mark.parametrize(("alter", "words"), cases(WITNESS_ALONE))
 def test_a_forgery_that_agrees_in_everything_is_found_by_the_witness(place, alter, words):
     alter(place)

@@ -12,8 +12,6 @@ from assayfolio.evidence.entries import TrailHead
 from assayfolio.evidence.trail import read_trail
 from assayfolio.evidence.witnesses import FileWitness, FolderWitness, PrintedHead
 
-pytestmark = pytest.mark.requirement("TRAIL-11")
-
 
 def enter(laboratory, *actions):
     with laboratory.trail() as writer:
@@ -115,6 +113,7 @@ class TestAWitness:
         assert "entry 2 and 1 of the later ones is not the one that the witness was told of" in found.notes[0]
         assert "changed or built anew from there on" in found.notes[0]
 
+    @pytest.mark.requirement("TRAIL-11")
     @pytest.mark.requirement("TRAIL-11")
     def test_shows_a_trail_cut_back_together_with_its_head(self, watched):
         cut(watched.runs, 2)

@@ -562,9 +562,7 @@ def test_three_entries_alike_are_told_one_by_one_and_more_in_one_line() -> None:
 def test_a_fault_in_every_row_is_one_line_with_the_first_places() -> None:
     error = refused("method,nitrate\n" + "kit-a,x\nkit-b,x\n" * 5000)
     (fault,) = error.faults
-    assert fault.found.endswith(
-        "the same 9,999 times more, at 3:7, 4:7, 5:7, 6:7, 7:7, 8:7, 9:7, 10:7 ..."
-    )
+    assert fault.found.endswith("the same 9,999 times more, at 3:7, 4:7, 5:7, 6:7, 7:7, 8:7, 9:7, 10:7 ...")
     assert error.headline.endswith(": 10000 faults")
     assert error.hidden == 0
 

@@ -170,7 +170,9 @@ PLACES = [
         "configs/data/d.csv",
         "no such file",
     ),
-    odd("a folder for a file", lambda bench: d_csv(bench).mkdir(), "configs/data/d.csv", "not a regular file"),
+    odd(
+        "a folder for a file", lambda bench: d_csv(bench).mkdir(), "configs/data/d.csv", "not a regular file"
+    ),
     odd(
         "a pipe that nobody fills",
         lambda bench: os.mkfifo(d_csv(bench)),
@@ -246,6 +248,12 @@ PLACES = [
         "is not closed",
     ),
     files(
+        "a stray mark after every 10,000 rows",
+        {"data/d.csv": "g,y\n" + ("a,1\n" * 9_999 + 'a,1"\n') * 60},
+        "configs/data/d.csv:10001:4",
+        "a quotation mark inside a cell",
+    ),
+    files(
         "a NUL byte behind 200,000 rows",
         {"data/d.csv": "g,y\n" + "a,1\nb,2\n" * 100_000 + "b,1\0\n"},
         "configs/data/d.csv:200002:4",
@@ -306,7 +314,12 @@ PLANS = [
     plan("steps without end", STUDY + "x:\n" + "".join(" " * n + "-\n" for n in range(1, 1000)), ":", ""),
     plan("20 MB", STUDY + "# padding\n" * 2_000_000, "", "bytes"),
     plan("a key twice", STUDY + "alpha: 0.01\n", ":10:1", "alpha"),
-    plan("an object to be made", STUDY.replace("A study", "!!python/object/apply:os.system [id]"), ":2:8", "tag"),
+    plan(
+        "an object to be made",
+        STUDY.replace("A study", "!!python/object/apply:os.system [id]"),
+        ":2:8",
+        "tag",
+    ),
     plan("a merge", STUDY + "x: {<<: {a: 1}}\n", ":10:", ""),
     plan("a NUL character", STUDY.replace("A study", "A\0study"), ":2:", ""),
     plan("UTF-16", STUDY.encode("utf-16"), ":1:1", "save the file as UTF-8"),
@@ -318,11 +331,14 @@ PLANS = [
     plan("a data file outside", STUDY.replace("data/d.csv", "../../../etc/passwd"), ":4:9", "passwd"),
     plan("an absolute data file", STUDY.replace("data/d.csv", "/etc/passwd"), ":4:9", "passwd"),
     plan("a data file by address", STUDY.replace("data/d.csv", "http://x.example/d.csv"), ":4:9", ""),
-    plan(
-        "a data file of another drive", STUDY.replace("data/d.csv", "'C:\\\\x.csv'"), ":4:9", "x.csv"
-    ),
+    plan("a data file of another drive", STUDY.replace("data/d.csv", "'C:\\\\x.csv'"), ":4:9", "x.csv"),
     plan("a pattern for a folder", STUDY.replace("data/d.csv", "'*/d.csv'"), ":4:9", ""),
-    plan("all digits of a number", STUDY.replace("factor: g", f"factor: g\n  replicates: {'9' * 5000}"), ":7:15", ""),
+    plan(
+        "all digits of a number",
+        STUDY.replace("factor: g", f"factor: g\n  replicates: {'9' * 5000}"),
+        ":7:15",
+        "",
+    ),
     plan("no YAML at all", b"\x89PNG\r\n\x1a\n" + bytes(1000), ":1:1", ""),
     plan("nothing", "", "", "empty"),
 ]

@@ -232,11 +232,11 @@ class TestStates:
         bench.run()
         assert states(bench) == {"configs/data/export-17.csv": "used"}
 
-    def test_an_exclusions_file_is_named_by_its_study(self, tmp_path):
+    def test_an_exclusions_file_is_no_raw_data_file(self, tmp_path):
         study = STUDY.replace("  factor:", "  exclusions: data/left-out.yaml\n  factor:")
         bench = Bench(tmp_path / "w", study)
         (bench.data.parent / "left-out.yaml").write_text("exclusions: []\n")
-        assert "orphan" not in states(bench).values()
+        assert states(bench) == {"configs/data/values.csv": "open"}
 
     def test_a_refused_file_is_open_and_an_orphan_once_it_is_replaced(self, tmp_path):
         bench = Bench(tmp_path / "w", STUDY, DATA.replace("48.2", "forty"))

@@ -57,8 +57,8 @@ def refusals(bench):
     return [entry["reason"] for entry in bench.entries() if entry["action"] == "attempt-refused"]
 
 
-@pytest.mark.requirement("TRAIL-7")
 class TestEveryEntry:
+    @pytest.mark.requirement("TRAIL-7")
     def test_says_who_in_which_roles_and_when_by_which_clock(self, people):
         for entry in people.entries():
             assert entry["actor"] == "arunner"
@@ -86,8 +86,8 @@ class TestEveryEntry:
         assert people.entries()[-1]["details"]["by"] == {"person": None, "roles": []}
 
 
-@pytest.mark.requirement("TRAIL-12")
 class TestTheClock:
+    @pytest.mark.requirement("TRAIL-12")
     def test_that_stands_behind_the_last_entry_says_by_how_much(self, bench):
         with trail_book(Workspace(bench.root), 1.0) as trail:
             last = trail.append("looked", "workspace")
@@ -99,6 +99,7 @@ class TestTheClock:
         assert clock.at(future)["behind_seconds"] > 3e10
         assert "behind_seconds" not in clock.at(last)
 
+    @pytest.mark.requirement("TRAIL-12")
     def test_tells_the_two_hours_apart_that_the_end_of_summer_time_makes_one(self, monkeypatch):
         monkeypatch.setenv("TZ", "CET-1CEST,M3.5.0,M10.5.0/3")
         time.tzset()
@@ -113,6 +114,7 @@ class TestTheClock:
             time.tzset()
         assert told == ["2026-10-25T02:30:00.000000+02:00", "2026-10-25T02:30:00.000000+01:00"]
 
+    @pytest.mark.requirement("TRAIL-12")
     @pytest.mark.parametrize(("answer", "kept"), [(0, True), (1, True), (4, True), (5, False), (-1, None)])
     def test_is_kept_or_not_as_the_kernel_says(self, monkeypatch, answer, kept):
         class Kernel:
@@ -128,8 +130,8 @@ class TestTheClock:
         assert clock_is_synchronised() is None
 
 
-@pytest.mark.requirement("TRAIL-9")
 class TestShowing:
+    @pytest.mark.requirement("TRAIL-9")
     def test_only_what_is_asked_for_and_how_many_of_how_many(self, people):
         answer = people("trail", "--what", "staged", "--who", "a. runner", "--when", "2000..")
         assert answer.code == 0
@@ -142,6 +144,7 @@ class TestShowing:
         answer = people("trail", "--when", "March")
         assert (answer.code, "write FROM..TO in UTC" in answer.err) == (2, True)
 
+    @pytest.mark.requirement("TRAIL-9")
     def test_a_table_holds_every_entry_with_who_when_what_and_why(self, people, tmp_path):
         table = tmp_path / "trail.csv"
         answer = people("trail", "--csv", table)
@@ -172,6 +175,7 @@ class TestShowing:
         [row] = csv.DictReader(io.StringIO((tmp_path / "t.csv").read_text("utf-8"), newline=""))
         assert (row["subject"], row["reason"]) == ("'=1+1", '\'=HYPERLINK("x")')
 
+    @pytest.mark.requirement("TRAIL-10")
     def test_exceptions_come_first_and_everything_else_after_them(self, people):
         with trail_book(Workspace(people.root), 1.0) as trail:
             trail.append("refused", "TST-1", "the data file is empty")
@@ -197,8 +201,8 @@ class TestShowing:
         assert people("trail", *options).code == 2
 
 
-@pytest.mark.requirement("TRAIL-10")
 class TestReviewing:
+    @pytest.mark.requirement("TRAIL-10")
     def test_is_entered_with_outcome_and_how_far(self, people, act):
         act("breader")
         answer = people("trail", "--review", "TST-1/run-0001", "--outcome", OUTCOME, "--json")
@@ -217,6 +221,7 @@ class TestReviewing:
         act("breader")
         assert people("trail", "--review", people.runs / "TST-1" / "run-0001", "--outcome", OUTCOME).code == 0
 
+    @pytest.mark.requirement("TRAIL-10")
     def test_by_who_ran_it_is_refused_and_the_attempt_entered(self, people, act):
         act("arunner")
         (people.root / "configs" / "people.yaml").write_text(
@@ -238,6 +243,7 @@ class TestReviewing:
         allot(bench)
         assert bench("trail", "--review", "TST-1/run-0001", "--outcome", OUTCOME).code == 0
 
+    @pytest.mark.requirement("TRAIL-10")
     @pytest.mark.parametrize("outcome", ["", "   ", "ok", "no remarks", "see report", "xxxxxxxxxxxxxxx"])
     def test_needs_an_outcome_that_says_something(self, people, act, outcome):
         act("breader")
@@ -261,7 +267,6 @@ class TestReviewing:
         assert "another study" not in out
 
 
-@pytest.mark.requirement("TRAIL-6")
 class TestReading:
     def shown(self, bench):
         return [
@@ -270,11 +275,13 @@ class TestReading:
             if entry["action"] == "read"
         ]
 
+    @pytest.mark.requirement("TRAIL-6")
     def test_is_not_entered_by_default(self, people):
         people("trail")
         people("verify")
         assert self.shown(people) == []
 
+    @pytest.mark.requirement("TRAIL-6")
     def test_is_entered_before_anything_is_shown_where_the_settings_say_so(self, bench):
         with (bench.root / "configs" / "lab.yaml").open("a") as settings:
             settings.write("log-reading: true\n")
@@ -302,8 +309,8 @@ class TestReading:
         assert "1.5   failed" in answer.out
 
 
-@pytest.mark.requirement("TRAIL-11")
 class TestWitnesses:
+    @pytest.mark.requirement("TRAIL-11")
     def test_of_the_settings_are_told_and_compared(self, bench, tmp_path):
         heads = tmp_path / "heads.jsonl"
         with (bench.root / "configs" / "lab.yaml").open("a") as settings:
@@ -326,6 +333,7 @@ class TestWitnesses:
         assert "it lacks the head of entry" in answer.out
         assert "and the audit trail does not say why" in answer.out
 
+    @pytest.mark.requirement("TRAIL-11")
     def test_may_be_named_by_the_one_who_verifies(self, bench, tmp_path):
         allot(bench)
         head = json.loads((bench.runs / "audit-trail.head").read_bytes())

@@ -80,9 +80,7 @@ class Gathering:
                 self.faults.lost_values = True  # what stands below is not counted
                 break
         for part, summing, missing in zip(self._assembly.parts, self._summings, self._missing, strict=True):
-            levels = [
-                self._number(file, value.level, partial(_place_of_value, value)) for value in part.kept
-            ]
+            levels = [self._number(file, value.level, partial(_place_of_value, value)) for value in part.kept]
             summing.add_values(levels, [value.value for value in part.kept], len(self._numbers))
             missing.update(aside.level for aside in part.set_aside)
             part.kept.clear()

@@ -10,6 +10,7 @@ from concurrent.futures import Future, ThreadPoolExecutor
 from typing import TypeVar, overload
 
 import numpy as np
+import numpy.typing as npt
 
 from assayfolio.observations.long_text import line_count, plain_lines
 from assayfolio.observations.rows import MAX_CELL, Broken, Row, rows_and_ends
@@ -18,9 +19,10 @@ _MARK, _LINE_END = ord('"'), ord("\n")
 
 _READERS = 2
 _AHEAD = 4
-_LONGEST_REST = 1 << 19
+_PIECE = 1 << 16
 
 Taken = TypeVar("Taken")
+Integers = npt.NDArray[np.int64]
 
 
 class Feed:
@@ -49,6 +51,19 @@ class Feed:
         while len(self.data) < self._least and not self.ended:
             self.data += self.next()
         return bool(self.data)
+
+    @property
+    def over(self) -> bool:
+        """Whether nothing is left to be taken."""
+        return self.ended and not self.data
+
+    def piece(self) -> bytes:
+        """Take whole lines, of about 64 kB, of the data at hand, else the next stretch; nothing at the end."""
+        if not self.data:
+            return self.next()
+        end = self.data.rfind(b"\n", 0, _PIECE) + 1 or self.data.index(b"\n") + 1
+        piece, self.data = self.data[:end], self.data[end:]
+        return piece
 
     def drop(self, size: int) -> None:
         """Let go of `size` bytes, whole lines."""
@@ -83,8 +98,8 @@ class Lines(Sequence[str]):
         if isinstance(at, slice):
             raise TypeError("lines are given one by one")
         index = at - self.first
-        while self._feed is not None and not self._feed.ended and index >= len(self.at_hand) - 1:
-            self.at_hand.extend(_split(self._feed.next()))
+        while self._feed is not None and not self._feed.over and index >= len(self.at_hand) - 1:
+            self.at_hand.extend(_split(self._feed.piece()))
         return self.at_hand[index]
 
 
@@ -125,14 +140,14 @@ def go_through(
 
 
 def _by_rows(feed: Feed, separator: str, by_rows: Callable[[Iterator[Row | Broken], "Lines"], None]) -> None:
-    """Take the rows that begin in the data at hand one by one."""
-    lines = Lines(feed.data, feed.line, feed)
+    """Take the rows that begin in the next piece of the data one by one."""
+    lines = Lines(feed.piece(), feed.line, feed)
     end = lines.first + len(lines.at_hand)
     stopped: list[int] = []
     by_rows(_rows_until(lines, separator, end, stopped), lines)
     rest = lines.at_hand[stopped[0] - lines.first :] if stopped else []
-    feed.data = "".join(f"{line}\n" for line in rest).encode()
-    feed.line = stopped[0] if stopped else lines.first + len(lines.at_hand)
+    below = stopped[0] if stopped else lines.first + len(lines.at_hand)
+    feed.put_back("".join(f"{line}\n" for line in rest).encode(), below)
 
 
 def _rows_until(lines: Lines, separator: str, end: int, stopped: list[int]) -> Iterator[Row | Broken]:
@@ -149,22 +164,33 @@ def _split(data: bytes) -> list[str]:
 
 
 def plain_rows(data: bytes, separator: str) -> int:
-    """The size of the longest beginning of `data` in which every line is one row, as RFC 4180 writes them.
+    """The size of a beginning of `data` in which every line is one row, as RFC 4180 writes them.
 
-    0 where there is none, or a line could hold a cell that is too long. A quotation mark may stand where it
-    opens or closes a cell, or doubled inside of one; rows on several lines are none of these.
+    It ends where the first line begins that is none, or that could hold a cell that is too long. A quotation
+    mark may stand where it opens or closes a cell, or doubled inside of one; rows on several lines are none.
     """
     half = MAX_CELL // 2  # a longer line has no end in one of the halves that it covers
-    if any(data.find(b"\n", at, at + half) < 0 for at in range(0, len(data) - half, half)):
-        return 0
+    for at in range(0, len(data) - half, half):
+        if data.find(b"\n", at, at + half) < 0:
+            data = data[: data.rfind(b"\n", 0, at) + 1]
+            break
     if b'"' not in data:
         return len(data)
     characters = np.frombuffer(data, dtype=np.uint8)
     marks = np.flatnonzero(characters == _MARK)
     opening, closing = marks[0::2], marks[1::2]
-    if len(opening) > len(closing):
-        end = data.rfind(b"\n", 0, int(opening[-1])) + 1
-        return plain_rows(data[:end], separator) if end and len(data) - end < _LONGEST_REST else 0
+    bad = _first_out_of_order(characters, separator, opening[: len(closing)], closing)
+    if bad == len(opening):
+        return len(data)
+    return data.rfind(b"\n", 0, int(opening[bad])) + 1
+
+
+def _first_out_of_order(
+    characters: npt.NDArray[np.uint8], separator: str, opening: Integers, closing: Integers
+) -> int:
+    """The number of the first pair of marks that are not around a cell or a part of one, or on two lines."""
+    if not len(opening):
+        return 0
     beside = np.zeros(256, dtype=np.bool_)
     beside[[_LINE_END, ord(separator)]] = True
     opens = beside[characters[opening - 1]]
@@ -172,8 +198,7 @@ def plain_rows(data: bytes, separator: str) -> int:
     opens[1:] |= opening[1:] == closing[:-1] + 1
     closes = beside[characters[closing + 1]]  # a line end follows the last character
     closes[:-1] |= closing[:-1] + 1 == opening[1:]
-    if not (opens.all() and closes.all()):
-        return 0
     ends = np.flatnonzero(characters == _LINE_END)
     inside = np.searchsorted(ends, closing) > np.searchsorted(ends, opening)
-    return 0 if inside.any() else len(data)
+    wrong = np.flatnonzero(~(opens & closes) | inside)
+    return int(wrong[0]) if len(wrong) else len(opening)

@@ -53,9 +53,7 @@ def rows(lines: Sequence[str], separator: str, first: int = 0) -> Iterator[Row |
     return (row for row, _ in rows_and_ends(lines, separator, first))
 
 
-def rows_and_ends(
-    lines: Sequence[str], separator: str, first: int = 0
-) -> Iterator[tuple[Row | Broken, int]]:
+def rows_and_ends(lines: Sequence[str], separator: str, first: int = 0) -> Iterator[tuple[Row | Broken, int]]:
     """The rows as `rows` gives them, each with the number of the line on which reading goes on below it."""
     at = first
     while at < len(lines):

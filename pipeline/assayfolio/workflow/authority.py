@@ -42,6 +42,11 @@ MAY: Mapping[str, tuple[PersonRole, ...]] = {
     "archive --dispose --confirm": ("quality-assurance", "approver"),
     "settings": ("administrator",),
     "settings --confirm": ("administrator", "approver", "quality-assurance"),
+    "sign": ("author", "reviewer", "approver"),
+    "signer enrol": ("author", "reviewer", "approver"),
+    "signer renew": ("author", "reviewer", "approver"),
+    "signer revoke": ("administrator", "quality-assurance"),
+    "signer --confirm": ("administrator", "quality-assurance"),
 }
 """The roles of which one is needed for a command; a command that is not here is anybody's."""
 

@@ -29,6 +29,7 @@ from assayfolio.workflow.surroundings import Surroundings
 
 RUN_FORMAT = "assayfolio-run/1"
 ATTACH_UP_TO_BYTES = 5 * 1024 * 1024
+_ATTACHED = {"raw data": "Raw data as received", "exclusions": "Exclusions"}
 NAMED_SOFTWARE = (
     "assayfolio",
     "numpy",
@@ -174,7 +175,7 @@ def _native_libraries(environment: Mapping[str, Any]) -> tuple[tuple[str, str], 
 
 
 def report_input(intake: Intake, findings: Findings, facts: RunFacts) -> ReportInput:
-    """All a report is made from; files up to 5 MB travel inside the PDF."""
+    """All a report is made from; raw data and exclusions up to 5 MB in all travel inside the PDF."""
     return ReportInput(
         study=intake.study,
         laboratory=intake.laboratory,
@@ -186,17 +187,33 @@ def report_input(intake: Intake, findings: Findings, facts: RunFacts) -> ReportI
 
 
 def _attachments(intake: Intake, findings: Findings) -> Sequence[AttachedFile]:
-    by_role = {file.role: file for file in intake.files if isinstance(file, InputFile)}
-    study, raw = by_role["study definition"], by_role.get("raw data")
+    """Definition and findings; then what else was read, file by file while all together stay small."""
+    kept = [file for file in intake.files if isinstance(file, InputFile)]
+    study = next(file for file in kept if file.role == "study definition")
     listed = [
         AttachedFile("study.yaml", "application/yaml", "Study definition", "Source", study.content),
         AttachedFile(
             "findings.json", "application/json", "Findings, canonical JSON", "Data", findings_bytes(findings)
         ),
     ]
-    if raw is not None and raw.size <= ATTACH_UP_TO_BYTES:
-        name = Path(raw.folio_path).name
-        separator = intake.observations[0].files[0].separator
-        media_type = "text/tab-separated-values" if separator == "tab" else "text/csv"
-        listed.append(AttachedFile(name, media_type, "Raw data as received", "Source", raw.content))
+    left = ATTACH_UP_TO_BYTES
+    separators = {raw.file: raw.separator for raw in intake.observations[0].files}
+    for file in kept:
+        what = _ATTACHED.get(file.role)
+        if what is None or file.size > left:
+            continue
+        left -= file.size
+        name = Path(file.folio_path).name
+        media_type = _media_type(name, separators.get(file.path))
+        listed.append(AttachedFile(name, media_type, what, "Source", file.content))
     return listed
+
+
+def _media_type(name: str, separator: str | None) -> str:
+    if name.endswith(".yaml"):
+        return "application/yaml"
+    if name.endswith(".xlsx"):
+        return "application/vnd.openxmlformats-officedocument.spreadsheetml.sheet"
+    if name.endswith(".gz"):
+        return "application/gzip"
+    return "text/tab-separated-values" if separator == "tab" else "text/csv"

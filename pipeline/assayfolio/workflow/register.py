@@ -153,10 +153,11 @@ class DataRegister:
 def data_register(workspace: Workspace, reading: TrailReading) -> DataRegister:
     """The register of the workspace as the trail and its folders stand now. Nothing is written."""
     register = read_register(reading.entries)
-    named, unread = _named_files(workspace)
+    named, exclusions, unread = _named_files(workspace)
     places = {path: frozenset(studies) for path, studies in named.items()}
     for path in _files_in_data_folders(workspace.root / "configs"):
-        places.setdefault(path, frozenset())
+        if path not in exclusions:
+            places.setdefault(path, frozenset())
     for file in register.received:
         places.setdefault(workspace.root / file.path, frozenset())
     standing = [_standing(workspace, path, studies) for path, studies in places.items() if path.is_file()]
@@ -165,9 +166,12 @@ def data_register(workspace: Workspace, reading: TrailReading) -> DataRegister:
     )
 
 
-def _named_files(workspace: Workspace) -> tuple[dict[Path, set[str]], list[tuple[str, str]]]:
-    """The files in the workspace that definitions name, with the studies; the definitions that are faulty."""
+def _named_files(
+    workspace: Workspace,
+) -> tuple[dict[Path, set[str]], set[Path], list[tuple[str, str]]]:
+    """What definitions name, raw data files with the studies and files of exclusions; the faulty ones."""
     named: dict[Path, set[str]] = {}
+    exclusions: set[Path] = set()
     unread = []
     for path in _definitions(workspace):
         file = workspace.name_of(path)
@@ -177,12 +181,13 @@ def _named_files(workspace: Workspace) -> tuple[dict[Path, set[str]], list[tuple
         except (AssayfolioError, OSError) as error:
             unread.append((file, str(error).splitlines()[0]))
             continue
-        exclusions = [path.parent / study.data.exclusions] if study.data.exclusions else []
-        for source in (*sources, *exclusions):
+        if study.data.exclusions is not None:
+            exclusions.add((path.parent / study.data.exclusions).resolve())
+        for source in sources:
             real = source.resolve()
             if real.is_relative_to(workspace.root):
                 named.setdefault(real, set()).add(study.study)
-    return named, unread
+    return named, exclusions, unread
 
 
 def _definitions(workspace: Workspace) -> Iterator[Path]:

@@ -114,6 +114,27 @@ def found_authority(laboratory: str, now: datetime, years: int) -> KeyIdentity:
     return KeyIdentity(certificate.public_bytes(Encoding.DER), (), key)
 
 
+def interim_identity(person: str, account: str, key: Any, now: datetime) -> KeyIdentity:
+    """`key` with a certificate that it signs itself, to be sealed away until the authority certifies it."""
+    from cryptography import x509
+    from cryptography.hazmat.primitives import hashes
+    from cryptography.hazmat.primitives.serialization import Encoding
+
+    name = _name(person, account)
+    certificate = (
+        x509.CertificateBuilder()
+        .subject_name(name)
+        .issuer_name(name)
+        .public_key(key.public_key())
+        .serial_number(x509.random_serial_number())
+        .not_valid_before(now)
+        .not_valid_after(now + _YEAR)
+        .add_extension(x509.BasicConstraints(ca=False, path_length=None), critical=True)
+        .sign(key, hashes.SHA256())
+    )
+    return KeyIdentity(certificate.public_bytes(Encoding.DER), (), key)
+
+
 def certificate_request(person: str, account: str, key: Any) -> bytes:
     """What a person hands in to be certified (PKCS#10, DER); it proves that he holds `key`."""
     from cryptography import x509
