@@ -24,6 +24,7 @@ PROGRAMS = (
     "sha256sum",
     "openssl",
     "softhsm2-util",
+    "chromium",
 )
 
 # How long an example takes is the machine's affair. Continuous integration takes the same examples each time.

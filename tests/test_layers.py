@@ -23,7 +23,7 @@ LAYERS = (
     {"findings_parts"},
     {"findings_document", "planning"},
     {"evaluation", "trending"},
-    {"report", "evidence"},
+    {"report", "evidence", "pages"},
     {"workflow"},
     {"cli"},
     {"__main__"},

@@ -226,8 +226,8 @@
     if (one.lot) head.append(under("lot ", one.lot));
     const state = cell("td", "", stateOf(one.state));
     if (one.standing) state.append(under("", one.standing));
-    made.append(head, cell("td", "time", `${one.time.slice(0, 10)} ${one.time.slice(11, 16)}`), state, cell("td", "", cell("bdi", "", said(one.overall))), cell("td", "", said(one.criteria)),
-      cell("td", "", one.executions ? `${one.execution} of ${one.executions}` : "–"), cell("td", "", said(one.folio)), openCell(one));
+    made.append(head, cell("td", "time", `${one.time.slice(0, 10)} ${one.time.slice(11, 16)}`), state, cell("td", "", cell("bdi", "", said(one.overall))), cell("td", "kept", said(one.criteria)),
+      cell("td", "kept", one.executions ? `${one.execution} of ${one.executions}` : "–"), cell("td", "kept", said(one.folio)), openCell(one));
     return made;
   }
 

@@ -1,8 +1,12 @@
-"""A long text, taken in stretches without keeping its rows, gives what reading row by row gives."""
+"""A long text, taken in stretches without keeping its rows, gives what reading row by row gives.
+
+`ASSAYFOLIO_FUZZ_EXAMPLES=20000` makes a longer search of the tests that draw their texts.
+"""
 
 import csv
 import gzip
 import io
+import os
 from collections.abc import Callable, Sequence
 from dataclasses import replace
 from fractions import Fraction
@@ -20,6 +24,8 @@ from assayfolio.observations.values import Observations
 from assayfolio.statistics.oneway import one_way
 from assayfolio.statistics.resolution import resolution
 from assayfolio.study.plan import DataPlan, MeasurementFact
+
+EXAMPLES = int(os.environ.get("ASSAYFOLIO_FUZZ_EXAMPLES", "150"))
 
 LEVELS = ("lot 1", 'lot "2"', "lot, 3", "lot; 4", "µ-5")
 SEPARATORS = (",", ";", "\t")
@@ -115,7 +121,7 @@ def written(
     end=st.sampled_from(["", "\n", "\r\n \n\t\n"]),
     packed=st.booleans(),
 )
-@settings(max_examples=300, deadline=None)
+@settings(max_examples=EXAMPLES, deadline=None)
 def test_the_same_exact_sums_come_of_stretches_and_of_rows(
     rows: list[tuple[str, str]],
     separator: str,
@@ -144,7 +150,7 @@ ODDITIES = (
 
 
 @given(data=st.data())
-@settings(max_examples=600, deadline=None)
+@settings(max_examples=2 * EXAMPLES, deadline=None)
 def test_whatever_is_wrong_with_a_text_is_told_in_the_same_words(data: st.DataObject) -> None:
     rows = data.draw(
         st.lists(
@@ -241,13 +247,15 @@ def test_a_cell_on_several_lines_is_one_cell_wherever_a_stretch_ends() -> None:
 FOUND_BY_SEARCH = (
     b'"x\ny"lot,assay,note\nA,0.00,x\nA,0.00,x\n',
     b'lot,assay,note\nA,0.00,"x\n"A,0.00,x\n',
+    b"lot,assay,note\nA,1,x\nB,2,x\n\r",
+    b"lot,assay,note\nA,1,x\nB,2,x\n\r\n \r \n\n\n",
     b'lot,assay,note\nC,1,2\nA,0.00,"x\n"A,0.00,x\nB,1,2\n',
 )
 
 
 @pytest.mark.parametrize("block", [7, 16, 48, 1 << 20])
 @pytest.mark.parametrize("content", FOUND_BY_SEARCH)
-def test_a_row_that_breaks_in_a_later_stretch_than_it_begins_in_is_not_lost(
+def test_texts_that_were_once_taken_differently_by_stretches_are_refused_alike(
     content: bytes, block: int
 ) -> None:
     assert isinstance(agree(content, PLAN, (), block), str)

@@ -32,6 +32,7 @@ def folio(bench):
     return bench.runs / "TST-1/run-0001"
 
 
+@pytest.mark.requirement("RECORD-9")
 def test_a_copy_holds_the_folios_byte_for_byte_and_every_line_since(bench, folio, tmp_path):
     answer = bench("archive", folio, bench.runs / "TST-1/run-0002", "--to", tmp_path / "copy", "--json")
     assert answer.code == 0, answer.err
@@ -72,6 +73,7 @@ def test_stock_tools_check_the_whole_copy(bench, folio, tmp_path):
     assert listed == there
 
 
+@pytest.mark.requirement("RECORD-9")
 def test_the_certificate_is_sealed_in_the_workspace_too(bench, folio, tmp_path):
     answer = bench("archive", folio, "--to", tmp_path / "copy", "--json")
     record = bench.root / answer.document["record"]

@@ -64,6 +64,7 @@ def dispose(bench, folio, *options):
     return bench("archive", folio, "--dispose", *options, "--json")
 
 
+@pytest.mark.requirement("RECORD-7")
 def test_before_the_end_of_the_retention_disposal_is_refused_and_the_attempt_entered(bench, folio):
     answer = dispose(bench, folio, "--reason", REASON)
     assert answer.code == 2
@@ -72,6 +73,7 @@ def test_before_the_end_of_the_retention_disposal_is_refused_and_the_attempt_ent
     assert folio.is_dir()
 
 
+@pytest.mark.requirement("RECORD-7")
 @pytest.mark.usefixtures("years_later")
 def test_one_person_proposes_and_another_disposes_and_the_tombstone_stays(bench, folio, another):
     seal = hashlib.sha256((folio / "tagmanifest-sha256.txt").read_bytes()).hexdigest()
@@ -86,7 +88,7 @@ def test_one_person_proposes_and_another_disposes_and_the_tombstone_stays(bench,
     tombstone = bench.runs / "_laboratory/disposal-0001"
     kept = json.loads((tombstone / "data/tombstone.json").read_bytes())
     assert (kept["run"], kept["run_seal"], kept["reason"]) == ("TST-1/run-0001", seal, REASON)
-    assert kept["proposed_by"] != "second"
+    assert (kept["proposed_by"] != "second", kept["disposed_by"]) == (True, "second")
     assert (tombstone / "data/manifest-sha256.txt").read_bytes() == manifest
     assert hashlib.sha256((tombstone / "data/tagmanifest-sha256.txt").read_bytes()).hexdigest() == seal
     assert (tombstone / "data/tombstone.pdf").read_bytes().startswith(b"%PDF")
@@ -194,6 +196,7 @@ def test_a_faulty_retention_is_refused_with_its_place(tmp_path, text):
     assert "lab.yaml:2" in answer.err
 
 
+@pytest.mark.requirement("RECORD-6")
 def test_a_restored_backup_gets_a_dated_record(bench):
     answer = bench("verify", "--all", "--restored", "backup of 2031-03-04, tape 12", "--json")
     assert answer.code == 0, answer.err

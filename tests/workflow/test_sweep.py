@@ -39,6 +39,7 @@ def outcomes(answer) -> dict[str, str]:
     return {row["folio"]: row["outcome"] for row in answer.document["rows"]}
 
 
+@pytest.mark.requirement("RECORD-8")
 def test_every_folio_is_computed_again_and_one_bad_one_stops_nothing(bench):
     replace_in(bench.runs / "TST-1/run-0002/data/inputs/values.csv", "48.2", "48.3")
     (bench.runs / "TST-1/run-0003/data/study.yaml").write_text("no: [plan")
@@ -156,6 +157,7 @@ def test_a_run_that_is_gone_fails_the_sweep(bench):
     assert any("run-0002" in one["subject"] for one in answer.document["other_findings"])
 
 
+@pytest.mark.requirement("TRAIL-13")
 def test_the_same_seed_draws_the_same_sample_and_the_summary_says_how(bench):
     drawn = [
         outcomes(bench("verify", "--all", "--sample", "2", "--seed", "77", "--jobs", "1", "--json"))

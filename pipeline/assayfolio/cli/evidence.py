@@ -8,8 +8,8 @@ import click
 
 from assayfolio.canonical import Json
 from assayfolio.cli.archive import sweep_options, sweep_verified
-from assayfolio.cli.options import json_option, workspace_option
 from assayfolio.cli.note import note_reading
+from assayfolio.cli.options import json_option, workspace_option
 from assayfolio.cli.outcome import complain, say
 from assayfolio.errors import ExitCode, InputError
 
@@ -36,6 +36,14 @@ from assayfolio.errors import ExitCode, InputError
     multiple=True,
     help="Hold the audit trail against this head too, as an archived report prints it.",
 )
+@click.option(
+    "--trust",
+    "trusted",
+    metavar="FILE",
+    multiple=True,
+    type=click.Path(path_type=Path, dir_okay=False),
+    help="Believe signatures by the certificates in this file alone, not by those that the trail pins.",
+)
 @sweep_options
 @click.option("--restored", metavar="TEXT", help="With --all: record that this came back from a backup.")
 @click.option(
@@ -47,6 +55,7 @@ def verify(
     named_workspace: Path | None,
     places: tuple[Path, ...],
     heads: tuple[str, ...],
+    trusted: tuple[Path, ...],
     take_all: bool,
     sample: int | None,
     seed: int | None,
@@ -67,6 +76,7 @@ def verify(
     from; the summary is then the dated record of that.
     """
     from assayfolio.workflow.audit import (
+        anchors_at,
         unfinished_data,
         verification_document,
         verification_lines,
@@ -77,13 +87,16 @@ def verify(
 
     witnesses = (*map(witness_at, places), *map(printed_head, heads))
     if take_all or sample is not None or seed is not None or restored is not None:
+        if trusted:
+            raise InputError("--trust goes with named folios or the whole workspace, not with --all.")
         if folios or not take_all:
             raise InputError("Name folios, or give --all (with --sample N --seed S for some of them).")
         note_reading(named_workspace, "verify", ["--all"], None)
         return sweep_verified(named_workspace, output, sample, seed, jobs, witnesses, restored, as_json)
     start = folios[0] if folios else None
     note_reading(named_workspace, "verify", [str(folio) for folio in folios], start)
-    verification = verify_all(named_workspace, folios, witnesses)
+    anchors = tuple(der for path in trusted for der in anchors_at(path))
+    verification = verify_all(named_workspace, folios, witnesses, anchors)
     data = None if folios else unfinished_data(named_workspace)
     if as_json:
         document = dict(verification_document(verification))

@@ -7,10 +7,13 @@ import click
 
 from assayfolio.cli.archive import archive, rerun
 from assayfolio.cli.evidence import trail, verify
+from assayfolio.cli.index import index
 from assayfolio.cli.laboratory import settings, void
 from assayfolio.cli.outcome import run_command
 from assayfolio.cli.protocols import amend, deviation, preregister
+from assayfolio.cli.signing import sign, signer
 from assayfolio.cli.studies import check, power, run, worksheet, workspace
+from assayfolio.cli.trend import trend as trend_command
 from assayfolio.version import VERSION
 
 EXIT_CODES = """\b
@@ -37,7 +40,7 @@ def cli() -> None:
     """
 
 
-for command in (workspace, check, power, worksheet, preregister, amend, deviation, run, verify, rerun, archive, trail, settings, void):
+for command in (workspace, check, power, worksheet, preregister, amend, deviation, run, verify, rerun, archive, trail, trend_command, index, settings, void, sign, signer):
     cli.add_command(command)
 
 

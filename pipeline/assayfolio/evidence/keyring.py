@@ -1,4 +1,4 @@
-"""The signers' files in `configs/signers/`, as verification and signing read them; the trail says which count.
+"""The signers' files in `configs/signers/`, as verification and signing read them.
 
 Certificates lie in PEM texts, the signer's before those above it; revocation lists in `.crl` files. What lies
 there proves nothing by itself: a certificate counts where an entry of the audit trail pins its fingerprint.

@@ -79,10 +79,10 @@ def laboratory_folios(entries: Iterable[TrailEntry]) -> tuple[LaboratoryFolio, .
     sealed: dict[str, TrailEntry] = {}
     interrupted: dict[str, TrailEntry] = {}
     for entry in entries:
-        found, folio = split_folio(entry.subject), entry.details.get("folio")
-        if found is not None and entry.action == FOLIO_ALLOTTED:
+        folio = entry.details.get("folio")
+        if entry.action == FOLIO_ALLOTTED and (found := split_folio(entry.subject)) is not None:
             allotted.setdefault(found, entry)
-        elif found is not None and entry.action == INTERRUPTED:
+        elif entry.action == INTERRUPTED and split_folio(entry.subject) is not None:
             interrupted.setdefault(entry.subject, entry)
         elif isinstance(folio, str) and is_digest(entry.details.get("seal")):
             sealed.setdefault(folio, entry)

@@ -26,6 +26,7 @@ from assayfolio.evidence.outcomes import CheckOutcome, Tally
 from assayfolio.evidence.program_store import FOLDER as PROGRAMS_FOLDER
 from assayfolio.evidence.program_store import program_faults
 from assayfolio.evidence.protocol_states import explained_protocols
+from assayfolio.evidence.register_pages import INDEX_FILE, REGISTER_FOLDER, register_remarks
 from assayfolio.evidence.time_stamps import STAMPS_FILE
 from assayfolio.evidence.trail import TORN_PREFIX, WRITER
 
@@ -166,6 +167,8 @@ def check_surroundings(runs: Path, index: TrailIndex) -> CheckOutcome:
             _check_laboratory_folder(runs / item.name, index, tally)
         elif item.is_dir(follow_symlinks=False) and item.name == PROGRAMS_FOLDER:
             tally.failed.extend(program_faults(runs))
+        elif item.is_dir(follow_symlinks=False) and item.name == REGISTER_FOLDER:
+            tally.remarks.extend(register_remarks(runs, index.reading))
         elif item.is_dir(follow_symlinks=False):
             if item.name not in studies and _holds_more_than_locks(runs / item.name):
                 tally.failed.append(f"extra folder: {name}: the audit trail knows no study of this name")
@@ -182,7 +185,9 @@ def check_surroundings(runs: Path, index: TrailIndex) -> CheckOutcome:
     return tally.outcome("2.3", "nothing unexplained among the folios", "workspace")
 
 
-_CUSTOMARY = frozenset({"README.md", ".gitignore", ".gitkeep"})
+_CUSTOMARY = frozenset(
+    {"README.md", ".gitignore", ".gitkeep", INDEX_FILE, replacement_name(Path(INDEX_FILE)).name}
+)
 
 
 def _items(folder: Path, tally: Tally) -> Iterator[os.DirEntry[str]]:

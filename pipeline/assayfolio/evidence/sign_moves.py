@@ -1,6 +1,6 @@
 """Whether a signature on a protocol is in order: what `moves` says of runs, for plans that were fixed."""
 
-from collections.abc import Iterable, Sequence
+from collections.abc import Sequence
 from dataclasses import dataclass
 
 from assayfolio.evidence.entries import TrailEntry

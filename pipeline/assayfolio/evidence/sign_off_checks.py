@@ -23,8 +23,8 @@ from assayfolio.evidence.entries import TrailReading
 from assayfolio.evidence.files import plain_reason, read_regular
 from assayfolio.evidence.folio_reading import TrailIndex
 from assayfolio.evidence.inventory import shown
-from assayfolio.evidence.laboratory_folios import FOLDER as LABORATORY_FOLDER
 from assayfolio.evidence.keyring import Keyring, pem_parts, read_keyring
+from assayfolio.evidence.laboratory_folios import FOLDER as LABORATORY_FOLDER
 from assayfolio.evidence.locks import is_locked
 from assayfolio.evidence.manifest import TAG_MANIFEST_FILE
 from assayfolio.evidence.outcomes import CheckOutcome, Tally
@@ -129,7 +129,7 @@ class SignOffJudge:
         outcomes = [self._check_files(folio, signatures).outcome("5.1", "signatures as entered", label)]
         report = _report_on_file(folio, kind)
         if report is not None:
-            findings = validate(report, self._trust(folio, signatures), datetime.now(UTC))
+            findings = validate(report, self._trust(folio, signatures), _now())
             outcomes.append(_tally(findings.findings).outcome("5.2", "the signed report as a whole", label))
             outcomes.extend(_of_signature(found, label) for found in findings.signatures)
         elif signatures:
@@ -251,6 +251,10 @@ class SignOffJudge:
         else:
             tally.remarks.append(state)
         return tally.outcome("5.4", "state by valid signatures", subject)
+
+
+def _now() -> datetime:
+    return datetime.now(UTC)
 
 
 def _tally(findings: Sequence[Finding]) -> Tally:

@@ -1,8 +1,11 @@
 """Reading canonical JSON (RFC 8785): one value has one spelling, so any altered byte shows."""
 
 import json
+import re
 from collections.abc import Sequence
 from typing import Any, Never
+
+import orjson
 
 from assayfolio.canonical import Json, canonical_bytes
 
@@ -39,10 +42,10 @@ _reader = json.JSONDecoder(parse_int=_integer, parse_constant=_no_constant)
 _strict_reader = json.JSONDecoder(
     parse_int=_integer, parse_constant=_no_constant, object_pairs_hook=_no_twin_keys
 )
-# For ASCII text without fractions this is RFC 8785's form, at a fifth of the time.
-_quick_writer = json.JSONEncoder(
-    sort_keys=True, separators=(",", ":"), ensure_ascii=False, check_circular=False
-)
+# Numbers with a fraction or an exponent, which the quick way leaves to the thorough one; three searches with
+# a fixed beginning are five times as quick as one that allows all of them.
+_FRACTIONS = tuple(re.compile(begin + rb"-?\d+[.eE]") for begin in (b'":', rb"\[", b","))
+_QUICK = orjson.OPT_SORT_KEYS | orjson.OPT_STRICT_INTEGER
 
 
 def parse_json(content: bytes) -> Json:
@@ -82,29 +85,15 @@ def _quick_block(block: Sequence[bytes]) -> list[Json] | None:
     Each line is parsed on its own, so comparing the block at once is exact: of two JSON objects that begin
     at one place in one text, neither can be longer than the other.
     """
-    values: list[Json] = []
-    try:
-        texts = [line.decode("ascii") for line in block]
-        for text in texts:
-            value, end = _quick_scan(text, 0)
-            if end != len(text) or not isinstance(value, dict):
-                return None
-            values.append(_plain(value))
-        same = _quick_writer.encode(values) == f"[{','.join(texts)}]"
-    except (ValueError, StopIteration, RecursionError):
+    joined = b",".join(block)
+    if not joined.isascii() or any(fraction.search(joined) for fraction in _FRACTIONS):
         return None
-    return values if same else None
-
-
-def _no_fraction(text: str) -> Never:
-    raise ValueError(text)
-
-
-_quick_decoder: Any = json.JSONDecoder(
-    parse_int=_integer, parse_float=_no_fraction, parse_constant=_no_constant
-)
-# The scanner itself stops with StopIteration where no value begins; `raw_decode` costs one more call a line.
-_quick_scan = _quick_decoder.scan_once
+    try:
+        values: list[Json] = [orjson.loads(line) for line in block]
+        same = orjson.dumps(values, option=_QUICK) == b"[" + joined + b"]"
+    except (orjson.JSONDecodeError, orjson.JSONEncodeError):
+        return None
+    return values if same and all(type(value) is dict for value in values) else None
 
 
 def _parsed_or_reason(line: bytes) -> Json | NotCanonicalError:

@@ -8,9 +8,11 @@ from assayfolio.evidence.history import ALLOTTED, FAILED, INTERRUPTED, split_sub
 from assayfolio.evidence.protocols import REGISTERED, split_protocol
 from assayfolio.evidence.register import RECEIVED, REFUSED, Register, read_register
 from assayfolio.evidence.settings import PROPOSED, SETTINGS
+from assayfolio.evidence.signers import ABOUT_SIGNERS, PASSPHRASE_WRONG, SIGNING_LOCKED
 from assayfolio.evidence.stamps import clock_remarks
 from assayfolio.evidence.telling import ABOUT_WITNESSES
 
+URGENT = "wrong passphrases"
 FAILURES = "failures and refusals"
 REPEATED = "runs repeated on the same data"
 EXCLUSIONS = "runs with exclusions"
@@ -19,10 +21,12 @@ DEVIATIONS = "deviations"
 LATE_DATA = "raw data that came after the first run of their study"
 WITHDRAWN = "runs voided or replaced"
 SETTINGS_CHANGED = "changes of settings and roles"
+SIGNERS_CHANGED = "certificates enrolled, renewed or withdrawn"
 REPAIRS = "interruptions and repairs of the trail, witnesses out of reach"
 CLOCK = "the clock"
 
 KINDS = (
+    URGENT,
     FAILURES,
     REPEATED,
     EXCLUSIONS,
@@ -31,6 +35,7 @@ KINDS = (
     LATE_DATA,
     WITHDRAWN,
     SETTINGS_CHANGED,
+    SIGNERS_CHANGED,
     REPAIRS,
     CLOCK,
 )
@@ -41,6 +46,10 @@ _BY_ACTION: Mapping[str, str] = {
     REFUSED: FAILURES,
     INTERRUPTED: FAILURES,
     "attempt-refused": FAILURES,
+    "sign-refused": FAILURES,
+    PASSPHRASE_WRONG: URGENT,
+    SIGNING_LOCKED: URGENT,
+    **dict.fromkeys(ABOUT_SIGNERS, SIGNERS_CHANGED),
     "deviation-recorded": DEVIATIONS,
     "voided": WITHDRAWN,
     "replaces": WITHDRAWN,
@@ -84,6 +93,10 @@ def trail_exceptions(entries: Sequence[TrailEntry]) -> tuple[TrailException, ...
 
 
 def _plain_words(entry: TrailEntry) -> str:
+    if entry.action in ABOUT_SIGNERS:
+        person = entry.details.get("person")
+        words = entry.action if not isinstance(person, str) else f"{entry.action}, {person}"
+        return f"{words}: {entry.reason}" if entry.reason else words
     return entry.reason or entry.action
 
 

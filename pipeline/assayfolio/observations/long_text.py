@@ -143,6 +143,8 @@ def _end_of_entries(text: bytes, end: int) -> int:
         if not line.isspace() and not line.decode("utf-8", "replace").isspace():
             return end
         entries = len(text[:start].rstrip())
+        if b"\r" in text[entries:end].replace(b"\r\n", b"\n"):
+            return end  # blank lines that are refused, as lines that hold anything would be
         end = min(start, text.find(b"\n", entries) + 1) if entries else 0
     return 0
 

@@ -19,7 +19,7 @@ _MARK, _LINE_END = ord('"'), ord("\n")
 
 _READERS = 2
 _AHEAD = 4
-_PIECE = 1 << 16
+_SMALL_PIECE, _LARGE_PIECE = 1 << 12, 1 << 18
 
 Taken = TypeVar("Taken")
 Integers = npt.NDArray[np.int64]
@@ -57,11 +57,11 @@ class Feed:
         """Whether nothing is left to be taken."""
         return self.ended and not self.data
 
-    def piece(self) -> bytes:
-        """Take whole lines, of about 64 kB, of the data at hand, else the next stretch; nothing at the end."""
+    def piece(self, most: int) -> bytes:
+        """Take whole lines of the data at hand, `most` bytes or one line, else the next stretch."""
         if not self.data:
             return self.next()
-        end = self.data.rfind(b"\n", 0, _PIECE) + 1 or self.data.index(b"\n") + 1
+        end = self.data.rfind(b"\n", 0, most) + 1 or self.data.index(b"\n") + 1
         piece, self.data = self.data[:end], self.data[end:]
         return piece
 
@@ -99,7 +99,7 @@ class Lines(Sequence[str]):
             raise TypeError("lines are given one by one")
         index = at - self.first
         while self._feed is not None and not self._feed.over and index >= len(self.at_hand) - 1:
-            self.at_hand.extend(_split(self._feed.piece()))
+            self.at_hand.extend(_split(self._feed.piece(_LARGE_PIECE)))
         return self.at_hand[index]
 
 
@@ -117,6 +117,7 @@ def go_through(
     `by_rows` the rows of the others, with the lines that they stand on.
     """
     ahead: deque[tuple[bytes, int, Future[Taken | None]]] = deque()
+    piece = _SMALL_PIECE
     with ThreadPoolExecutor(_READERS) as beside:
         while True:
             while len(ahead) < _AHEAD and feed.fill():
@@ -131,17 +132,21 @@ def go_through(
                 taken = reading.result()
                 if taken is not None:
                     by_columns(taken, body, line)
+                    piece = _SMALL_PIECE
                     continue
                 feed.put_back(b"".join((body, *(later for later, _, _ in ahead))), line)
                 ahead.clear()
             if not feed.data:
                 return
-            _by_rows(feed, separator, by_rows)
+            _by_rows(feed, separator, by_rows, piece)
+            piece = min(2 * piece, _LARGE_PIECE)
 
 
-def _by_rows(feed: Feed, separator: str, by_rows: Callable[[Iterator[Row | Broken], "Lines"], None]) -> None:
-    """Take the rows that begin in the next piece of the data one by one."""
-    lines = Lines(feed.piece(), feed.line, feed)
+def _by_rows(
+    feed: Feed, separator: str, by_rows: Callable[[Iterator[Row | Broken], "Lines"], None], most: int
+) -> None:
+    """Take the rows that begin in the next `most` bytes of the data one by one."""
+    lines = Lines(feed.piece(most), feed.line, feed)
     end = lines.first + len(lines.at_hand)
     stopped: list[int] = []
     by_rows(_rows_until(lines, separator, end, stopped), lines)

@@ -9,7 +9,7 @@ import json
 from collections.abc import Sequence
 
 from assayfolio.canonical import Json
-from assayfolio.pages.values import FrontPage, RunRow, StudyRow
+from assayfolio.pages.values import FrontPage, Head, RunRow, StudyRow
 
 PAGE_SIZE = 500
 """Runs in one data file."""
@@ -46,6 +46,11 @@ def contents_file(front: FrontPage) -> bytes:
 def study_contents_file(row: StudyRow) -> bytes:
     """The same for the runs of one study."""
     return _contents(row.runs, (row,))
+
+
+def head_file(head: Head) -> bytes:
+    """Up to which entry of the trail the register tells, for pages that were made earlier."""
+    return f"register.stands({head.seq},{_text(head.sha256)});\n".encode("ascii")
 
 
 def _contents(total: int, studies: Sequence[StudyRow]) -> bytes:

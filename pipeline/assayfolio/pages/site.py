@@ -9,8 +9,8 @@ from collections.abc import Mapping
 from jinja2 import DictLoader, Environment, StrictUndefined
 
 from assayfolio.pages.sparklines import sparks_of
-from assayfolio.pages.values import FrontPage, RunPage, RunRow, StudyPage
-from assayfolio.pages.wording import answer_rows, criterion_rows, number_words, overall_verdict, plan_lines
+from assayfolio.pages.values import FrontPage, RunPage, StudyPage
+from assayfolio.pages.wording import answer_rows, criterion_rows, level_rows, plan_lines
 
 NEWEST_SHOWN = 100
 """Runs in the table of a page as it is without scripts."""
@@ -40,7 +40,7 @@ class Site:
             keep_trailing_newline=True,
         )
         self._environment.globals.update(
-            number=number_words, signs=SIGNS, attention=needs_attention, minute=minute, thousands=thousands
+            signs=SIGNS, attention=needs_attention, minute=minute, thousands=thousands
         )
 
     def front_page(self, front: FrontPage) -> bytes:
@@ -61,7 +61,13 @@ class Site:
         """The page of one run."""
         responses = {} if page.findings is None else page.findings.get("responses", {})
         answers = [
-            (name, response, tuple(answer_rows(response)), tuple(criterion_rows(response)))
+            (
+                name,
+                response.get("unit") or "",
+                tuple(answer_rows(response)),
+                tuple(criterion_rows(response)),
+                level_rows(response),
+            )
             for name, response in responses.items()
         ]
         return self._page("run.html.j2", root=_ROOT_FROM_STUDY, page=page, answers=answers)
@@ -83,11 +89,3 @@ def minute(time: str) -> str:
 def thousands(count: int) -> str:
     """A count with a thin space between the thousands."""
     return f"{count:,}".replace(",", "\u202f")
-
-
-def names_of(row: RunRow) -> str:
-    """What a reader calls the run: study, run, lot."""
-    return f"{row.study} {row.name}" + (f", lot {row.lot}" if row.lot else "")
-
-
-__all__ = ["NEWEST_SHOWN", "Site", "minute", "names_of", "needs_attention", "overall_verdict", "thousands"]

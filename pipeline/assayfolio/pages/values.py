@@ -148,7 +148,7 @@ class ProtocolRow:
 
 @dataclass(frozen=True, slots=True)
 class StudyRow:
-    """A study as the list of studies shows it. `folded` counts its runs, `newest` is the newest one's name."""
+    """A study as the list of studies shows it; `newest` is its newest run's name."""
 
     study: str
     title: str

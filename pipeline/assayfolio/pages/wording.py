@@ -1,5 +1,6 @@
 """The answers of a findings document in words, and its numbers as they are shown on a screen."""
 
+import math
 from collections import Counter
 from collections.abc import Iterator, Mapping, Sequence
 from typing import Any
@@ -12,6 +13,7 @@ NOT_MET = "not met"
 NOT_ASSESSABLE = "not assessable"
 _MINUS = "\u2212"
 _DIGITS = 6
+_SPREAD_DIGITS = 3
 _OVERALL = {"f": "anova", "welch": "welch", "brown-forsythe": "brown_forsythe_means"}
 _TEST_NAMES = {
     "f": "F test of the one-way analysis of variance",
@@ -25,6 +27,25 @@ def number_words(value: float | int | None) -> str:
     if value is None:
         return "–"
     return f"{value:.{_DIGITS}g}".replace("-", _MINUS)
+
+
+def column_words(values: Sequence[float | None], digits: int) -> list[str]:
+    """A column of numbers with equal decimals: the largest of them has `digits` significant digits."""
+    largest = max((abs(value) for value in values if value is not None), default=0.0)
+    if not 1e-4 <= largest < 1e9:
+        return [number_words(value) for value in values]
+    places = max(0, digits - 1 - math.floor(math.log10(largest)))
+    return ["–" if value is None else f"{value:.{places}f}".replace("-", _MINUS) for value in values]
+
+
+def level_rows(response: Mapping[str, Any]) -> list[tuple[str, int, str, str]]:
+    """Each level of a response: its name, n, mean, standard deviation."""
+    levels = response["levels"]
+    means = column_words([level["mean"] for level in levels], _DIGITS)
+    spreads = column_words([level["sd"] for level in levels], _SPREAD_DIGITS)
+    return [
+        (level["level"], level["n"], mean, sd) for level, mean, sd in zip(levels, means, spreads, strict=True)
+    ]
 
 
 def overall_verdict(response: Mapping[str, Any]) -> str:

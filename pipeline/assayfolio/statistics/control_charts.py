@@ -111,8 +111,9 @@ def exceeds_pi(value: Fraction) -> bool:
 def _pi_below(digits: int) -> int:
     """The whole part of pi times ten to `digits`, by Machin's formula: 16 arctan(1/5) - 4 arctan(1/239)."""
     guard = 10
-    unit = 10 ** (digits + guard)
-    return (16 * _arctangent(5, unit) - 4 * _arctangent(239, unit)) // 10**guard
+    unit: int = 10 ** (digits + guard)
+    spare: int = 10**guard
+    return (16 * _arctangent(5, unit) - 4 * _arctangent(239, unit)) // spare
 
 
 def _arctangent(inverse: int, unit: int) -> int:

@@ -6,13 +6,14 @@ so far; the next point moves it on by the zone that it falls into, as in C. W. C
 results for Shewhart control charts with supplementary runs rules, Technometrics 29 (1987) 393-399 (from
 memory). Rules about rising points have no zones: with them the state also holds the newest value itself, as a
 density over its zone. On the probability scale, where a value is uniform between 0 and 1, that density is a
-polynomial, which Gauss-Legendre nodes integrate exactly while its degree stays below their number and to the
-last digits of a double beyond.
+polynomial, which Gauss-Legendre nodes integrate exactly while its degree stays below their number, and to
+more digits than are given beyond.
 """
 
 from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
 from functools import cache
+from itertools import pairwise
 from math import sqrt
 from typing import Any, TypeAlias
 
@@ -29,6 +30,7 @@ _NODES = 8
 _SETTLED = 1e-13
 _NEGLIGIBLE = 1e-16
 _MOST_STEPS = 20_000
+_FAR = 10.0  # beyond every line that a rule looks at
 _Memory: TypeAlias = tuple[int, ...]
 
 
@@ -148,7 +150,7 @@ class _Chain:
         here, zone, rising = move
         states, steps = self._states, self._steps
         signal = states.holds[here, zone][:, None] | steps.holds[rising][None, :]
-        told = part[signal]
+        told: Floats = part[signal]
         if stop:
             part[signal] = 0.0
         np.add.at(after, (states.after[here, zone][:, None], steps.after[rising][None, :]), part)
@@ -169,9 +171,9 @@ def _zones(rules: Sequence[Rule], shift: float) -> list[_Zone]:
     lines = sorted({float(sign * level) for level in levels for sign in (-1, 1)})
     ends = [float("-inf"), *lines, float("inf")]
     found = []
-    for low, high in zip(ends[:-1], ends[1:], strict=True):
-        inside = high - 0.5 if low == float("-inf") else low + 0.5 if high == float("inf") else (low + high) / 2
-        found.append(_Zone(inside if np.isfinite(inside) else 0.0, _between(low - shift, high - shift)))
+    for low, high in pairwise(ends):
+        inside = (max(low, -_FAR) + min(high, _FAR)) / 2
+        found.append(_Zone(inside, _between(low - shift, high - shift)))
     return found
 
 
@@ -199,7 +201,8 @@ class _States:
 
         nothing = tuple(0 for rule in rules for _ in _sides(rule))
         self.begin = [(number(zone, memory), holds) for zone, memory, holds in self._moves(nothing)]
-        after, holds = [], []
+        after: list[list[int]] = []
+        holds: list[list[bool]] = []
         while len(after) < len(waiting):
             moves = list(self._moves(waiting[len(after)][1]))
             after.append([number(zone, memory) for zone, memory, _ in moves])
@@ -287,7 +290,8 @@ def _nodes(count: int) -> tuple[Floats, Floats]:
 
     With x_j, w_j the nodes and weights on (-1, 1) and P_k the Legendre polynomials, the integral from -1 to
     x_i of the polynomial through f(x_j) is the sum over k below `count` of
-    (2k + 1) / 2 sum_j(w_j P_k(x_j) f(x_j)) times the integral of P_k, (P_(k+1)(x_i) - P_(k-1)(x_i)) / (2k + 1).
+    (2k + 1) / 2 sum_j(w_j P_k(x_j) f(x_j)) times the integral of P_k, which is
+    (P_(k+1)(x_i) - P_(k-1)(x_i)) / (2k + 1).
     """
     nodes, weights = gauss_legendre(count)
     values = [np.ones_like(nodes), nodes]

@@ -165,8 +165,9 @@ def _holds(rule: Rule, last: Sequence[int], values: Sequence[Fraction]) -> bool:
     if isinstance(rule, BandRule):
         return all((abs(zone) > rule.sigmas) == (rule.side == "outside") for zone in last)
     steps = [_sign(after - before) for before, after in pairwise(values)]
-    turned = [step if rule.steps == "one way" or place % 2 == 0 else -step for place, step in enumerate(steps)]
-    return turned[0] != 0 and all(step == turned[0] for step in turned)
+    if rule.steps == "in turn":
+        steps = [-step if place % 2 else step for place, step in enumerate(steps)]
+    return steps[0] != 0 and all(step == steps[0] for step in steps)
 
 
 def _sign(value: Fraction) -> int:

@@ -1,4 +1,4 @@
-"""Charts over lots as a plan asks for them: limits from its baseline, signals by its rules, criteria lines."""
+"""Charts over lots as a plan asks for them: limits from its baseline, signals by rule, criteria lines."""
 
 from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
@@ -75,8 +75,10 @@ class Month:
 
 @dataclass(frozen=True, slots=True)
 class TrendFindings:
-    """All charts of a study. `rate` is the chance of a false signal at one point of the individuals panel,
-    `range_rate` that at one moving range, 0 where no rule looks at it.
+    """All charts of a study.
+
+    `rate` is the chance of a false signal at one point of the individuals panel, `range_rate` that at one
+    moving range; 0 where no rule looks at it.
     """
 
     study: StudyDefinition
@@ -152,9 +154,7 @@ def _limits(
         return None, str(error)
 
 
-def _of_values(
-    points: Sequence[Point], limits: ChartLimits, rules: Sequence[NamedRule]
-) -> Iterator[Signal]:
+def _of_values(points: Sequence[Point], limits: ChartLimits, rules: Sequence[NamedRule]) -> Iterator[Signal]:
     values = [point.value for point in points]
     zones = [limits.zone(value) for value in values]
     for place, names in enumerate(signals(zones, values, rules)):

@@ -88,15 +88,15 @@ def _fitting(results: Sequence[LotResult], response: str, unit: str | None) -> t
         if part is None:
             absent.append((result.lot, f"its run has no response {response}"))
         elif part["unit"] != unit:
-            absent.append((result.lot, f"its run is in {part['unit'] or 'no unit'}, the plan in {unit or 'none'}"))
+            absent.append(
+                (result.lot, f"its run is in {part['unit'] or 'no unit'}, the plan in {unit or 'none'}")
+            )
         else:
             fits.append((result, part))
     return fits, tuple(absent)
 
 
-def _single(
-    response: str, unit: str | None, quantity: ChartQuantity, found: tuple[_Fits, _Absent]
-) -> Series:
+def _single(response: str, unit: str | None, quantity: ChartQuantity, found: tuple[_Fits, _Absent]) -> Series:
     fits, absent = found
     points: list[Point] = []
     without: list[tuple[str, str]] = []
@@ -135,7 +135,9 @@ def _differences(response: str, unit: str | None, fits: _Fits, absent: _Absent) 
     for name, points in found.items():
         there = {point.run for point in points}
         without = tuple(
-            (result.lot, "its run does not have this difference") for result, _ in fits if result.run not in there
+            (result.lot, "its run does not have this difference")
+            for result, _ in fits
+            if result.run not in there
         )
         yield Series(response, unit, "difference", name, tuple(points), (*absent, *without))
 

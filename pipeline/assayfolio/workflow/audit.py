@@ -5,6 +5,10 @@ from pathlib import Path
 
 from assayfolio.canonical import Json
 from assayfolio.errors import InputError, MachineError
+from assayfolio.evidence.files import read_regular
+from assayfolio.evidence.keyring import pem_parts
+from assayfolio.evidence.signing.identities import certificate_facts
+from assayfolio.evidence.signing.refusals import SigningRefusedError
 from assayfolio.evidence.trail import TrailEntry, TrailReading, Witnesses, read_trail
 from assayfolio.evidence.verification import Verification, verify_lone_folios, verify_workspace
 from assayfolio.evidence.witnesses import Witness
@@ -17,12 +21,16 @@ ONE_SCREEN = 24
 
 
 def verify_all(
-    named_workspace: Path | None, folios: Sequence[Path], witnesses: Sequence[Witness] = ()
+    named_workspace: Path | None,
+    folios: Sequence[Path],
+    witnesses: Sequence[Witness] = (),
+    anchors: Sequence[bytes] = (),
 ) -> Verification:
     """Verify `folios`, or every folio of the workspace, and the whole trail.
 
-    The trail is held against the witnesses that the settings name, and against `witnesses`.
-    A folio that lies in no workspace is checked by itself; what only a trail can show is then not checkable.
+    The trail is held against the witnesses that the settings name, and against `witnesses`. Signatures are
+    believed by the certificates (DER) in `anchors`, or else by those that the trail pins. A folio that lies
+    in no workspace is checked by itself; what only a trail can show is then not checkable.
     """
     start = folios[0] if folios else Path()
     try:
@@ -30,8 +38,9 @@ def verify_all(
     except InputError:
         if named_workspace is not None or not folios:
             raise
-        return verify_lone_folios(folios)
-    return verify_workspace(workspace.runs, folios or None, named_witnesses(workspace, witnesses))
+        return verify_lone_folios(folios, anchors)
+    named = named_witnesses(workspace, witnesses)
+    return verify_workspace(workspace.runs, folios or None, named, anchors=anchors)
 
 
 def named_witnesses(workspace: Workspace, more: Sequence[Witness] = ()) -> Witnesses:
@@ -41,6 +50,21 @@ def named_witnesses(workspace: Workspace, more: Sequence[Witness] = ()) -> Witne
         return distinct((*witnesses_of(workspace, entries), *more))
 
     return named
+
+
+def anchors_at(path: Path) -> tuple[bytes, ...]:
+    """The certificates (DER) in a file, PEM or DER. Raises InputError where there is none."""
+    try:
+        found = pem_parts(read_regular(path), "certificate")
+        for der in found:
+            certificate_facts(der)
+    except OSError as error:
+        raise InputError(f"{path} cannot be read: {error.strerror}.") from error
+    except SigningRefusedError as error:
+        raise InputError(f"{path}: {error}") from error
+    if not found:
+        raise InputError(f"{path} holds no certificate.")
+    return found
 
 
 def unfinished_data(named_workspace: Path | None) -> DataRegister | None:

@@ -128,7 +128,9 @@ def _person(actor: Actor, asked: Asked, signers: Signers) -> str:
 
 
 def _require_order(deed: Deed, actor: Actor, person: str, signers: Signers) -> None:
-    standing = signers.of(actor.account)
+    standing, waiting = signers.of(actor.account), signers.proposals.get(actor.account)
+    if waiting is not None and waiting.deed == "revoke":
+        raise InputError(f"The certificate of {person} is to be withdrawn; that has to be confirmed first.")
     if deed == "renew" and standing is None:
         raise InputError(f"{person} has no certificate in force that could be renewed; enrol instead.")
     if deed == "enrol" and standing is not None:

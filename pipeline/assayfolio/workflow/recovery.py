@@ -4,6 +4,15 @@ from assayfolio.evidence.folio import is_locked, leftover_record, reopen_staged
 from assayfolio.evidence.history import run_histories
 from assayfolio.evidence.laboratory_folios import FOLDER, laboratory_folios
 from assayfolio.evidence.protocols import PROTOCOL_INTERRUPTED, protocol_histories
+from assayfolio.evidence.sign_offs import FOLDER as SIGN_OFF_FOLDER
+from assayfolio.evidence.sign_offs import (
+    STAGING,
+    discard_staged,
+    publish_signature,
+    signatures_of,
+    staged_as_entered,
+)
+from assayfolio.evidence.signers import SIGNED_ENTRY
 from assayfolio.evidence.trail import TrailWriter
 from assayfolio.workflow.workspace import Workspace
 
@@ -26,6 +35,7 @@ def acknowledge_interruptions(workspace: Workspace, trail: TrailWriter) -> None:
     """
     _acknowledge_protocols(workspace, trail)
     _acknowledge_laboratory_folios(workspace, trail)
+    _complete_signatures(workspace, trail)
     for run in run_histories(trail.entries):
         folder = workspace.runs / run.study
         if is_locked(folder, run.name):
@@ -87,3 +97,18 @@ def _acknowledge_laboratory_folios(workspace: Workspace, trail: TrailWriter) -> 
                 "the command ended without a word before the folio was sealed; nothing came of it",
                 {"last_seq": folio.allotted.seq, **leftover_record(folder, folio.name)},
             )
+
+
+def _complete_signatures(workspace: Workspace, trail: TrailWriter) -> None:
+    """Move a signature into place that was entered and then interrupted; throw away one that never was."""
+    for subject in dict.fromkeys(entry.subject for entry in trail.entries if entry.action == SIGNED_ENTRY):
+        folio = workspace.runs / subject
+        if not (folio / SIGN_OFF_FOLDER / STAGING).is_dir() or is_locked(folio.parent, folio.name):
+            continue
+        signatures = signatures_of(trail.entries, subject)
+        if not staged_as_entered(folio, signatures):
+            discard_staged(folio)
+            continue
+        reason = "the signing was interrupted before the signed report was moved into place"
+        trail.append("rename-completed", subject, reason, {"seal": signatures[-1].seal})
+        publish_signature(folio)

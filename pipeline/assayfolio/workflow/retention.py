@@ -8,7 +8,7 @@ the folio can still show that it is the one that was sealed. The trail keeps eve
 
 import shutil
 from collections.abc import Iterator, Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from pathlib import Path
 
 from assayfolio.canonical import Json, canonical_bytes, sha256_hex
@@ -141,7 +141,9 @@ def confirm_disposal(workspace: Workspace, named: Path) -> Disposal:
         kept = _require_ended(workspace, trail, history, laboratory, around)
         tombstone = None
         if history.entry(DISPOSED) is None:
-            record = _record(workspace, history, proposal, kept, around, laboratory)
+            record = _record(
+                workspace, history, proposal, kept, replace(around, actor=actor.account), laboratory
+            )
             tombstone = seal_in_trail(workspace, trail, record, DISPOSED, subject)
         _remove(workspace.runs / subject)
         return Disposal(subject, kept, proposal.reason or "", tombstone, is_done=True)

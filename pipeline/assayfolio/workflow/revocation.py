@@ -10,12 +10,12 @@ from assayfolio.canonical import Json
 from assayfolio.errors import InputError
 from assayfolio.evidence.signers import SIGNER_PROPOSED, signer_subject, signers_of
 from assayfolio.study.reasons import SHORTEST_REASON, emptiness
+from assayfolio.workflow import surroundings
 from assayfolio.workflow.authority import allowed
 from assayfolio.workflow.book import trail_book
 from assayfolio.workflow.enrolment import SignerOutcome
 from assayfolio.workflow.recovery import found_trail
 from assayfolio.workflow.settings_files import standing_settings
-from assayfolio.workflow.surroundings import account_name
 from assayfolio.workflow.workspace import Workspace
 
 CAUSES: Mapping[str, str] = {
@@ -37,12 +37,12 @@ def propose_revocation(workspace: Workspace, account: str, cause: str, reason: s
     empty = emptiness(reason)
     if empty is not None or "\n" in reason:
         raise InputError(
-            f"The reason is {empty or 'more than a line'}; say what happened, in {SHORTEST_REASON} characters "
-            "or more."
+            f"The reason is {empty or 'more than a line'}; say what happened, in {SHORTEST_REASON} "
+            "characters or more."
         )
     with trail_book(workspace, standing_settings(workspace).laboratory.wait_seconds) as trail:
         found_trail(workspace, trail)
-        if account_name() != account:
+        if surroundings.account_name() != account:
             allowed(workspace, trail, "signer revoke")
         standing = signers_of(trail.entries).of(account)
         if standing is None:

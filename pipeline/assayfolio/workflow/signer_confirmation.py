@@ -6,14 +6,12 @@ and withdraws, and is believed in nothing that the audit trail does not pin.
 
 from collections.abc import Mapping
 from dataclasses import dataclass
-from datetime import UTC, datetime, timedelta
+from datetime import datetime, timedelta
 
 from assayfolio.canonical import Json, sha256_hex
 from assayfolio.errors import InputError
 from assayfolio.evidence.keyring import SIGNERS_FOLDER, Keyring, pem_text, read_keyring
 from assayfolio.evidence.signers import (
-    AUTHORITY,
-    AUTHORITY_FOUNDED,
     SIGNER_ENROLLED,
     SIGNER_RENEWED,
     SIGNER_REVOKED,
@@ -28,63 +26,50 @@ from assayfolio.evidence.signing.authority import (
     Enrolment,
     Revocation,
     certify,
-    found_authority,
     read_revocation_list,
     renewal_faults,
-    revocation_list,
     succession_faults,
 )
 from assayfolio.evidence.signing.identities import (
-    KeyIdentity,
     certificate_facts,
     fingerprint,
-    open_identity,
-    sealed_identity,
 )
 from assayfolio.evidence.signing.refusals import SigningRefusedError
 from assayfolio.evidence.stamps import person_of
-from assayfolio.evidence.trail import TrailWriter
+from assayfolio.evidence.trail import TrailEntry, TrailWriter
 from assayfolio.study.laboratory import Laboratory
 from assayfolio.workflow.authority import allowed, refused
 from assayfolio.workflow.book import trail_book
-from assayfolio.workflow.dialogue import Dialogue, new_passphrase
+from assayfolio.workflow.dialogue import Dialogue
 from assayfolio.workflow.enrolment import SignerOutcome, open_proposal, require_no_clash
 from assayfolio.workflow.key_sources import file_stem, public_key_digest
+from assayfolio.workflow.own_authority import (
+    CONFIRM,
+    OwnAuthority,
+    enter_founding,
+    next_list,
+    open_authority,
+    stated_time,
+)
 from assayfolio.workflow.recovery import found_trail
 from assayfolio.workflow.settings_files import standing_settings
 from assayfolio.workflow.signer_keys import (
     SHARED,
     moment_now,
-    opened,
     read_signer_file,
     why_locked,
     write_signer_file,
 )
 from assayfolio.workflow.workspace import Workspace
 
-CONFIRM = "signer --confirm"
-AUTHORITY_YEARS = 20
 PERSON_DAYS = 730
 Files = dict[str, bytes]
 
 
 @dataclass(frozen=True, slots=True)
-class _Authority:
-    """The authority, opened; `founding` are the files of one that has just been founded."""
-
-    identity: KeyIdentity
-    founding: Mapping[str, bytes]
-
-    @property
-    def fingerprint(self) -> str:
-        return fingerprint(self.identity.certificate)
-
-
-@dataclass(frozen=True, slots=True)
 class _Act:
-    """What is to be entered: action, details, and the files that have to be there before."""
+    """What is to be entered: reason and details, and the files that have to be there before."""
 
-    action: str
     reason: str | None
     details: dict[str, Json]
     files: Mapping[str, bytes]
@@ -109,7 +94,7 @@ def confirm_proposal(workspace: Workspace, account: str, deed: Deed, dialogue: D
     keyring = read_keyring(workspace.root)
     authority = None
     if _needs_authority(proposal, signers):
-        authority = _authority(workspace, signers, keyring, laboratory, dialogue)
+        authority = open_authority(workspace, signers, keyring, laboratory, dialogue)
     act = _act(workspace, proposal, (signers, keyring), authority)
     with trail_book(workspace, wait) as trail:
         if _confirmable(workspace, trail, account, deed, laboratory).entry.seq != proposal.entry.seq:
@@ -117,12 +102,21 @@ def confirm_proposal(workspace: Workspace, account: str, deed: Deed, dialogue: D
         if signers_of(trail.entries).authority != signers.authority:
             raise InputError("The certificate authority was founded by somebody else meanwhile; try again.")
         if authority is not None and authority.founding:
-            _enter_founding(workspace, trail, authority)
+            enter_founding(workspace, trail, authority)
         for name, content in act.files.items():
             write_signer_file(workspace, name, content, SHARED)
-        entry = trail.append(act.action, signer_subject(account), act.reason, act.details)
+        entry = _enter(trail, proposal, act)
     states = {"enrol": "enrolled", "renew": "renewed", "revoke": "withdrawn"}
     return SignerOutcome(deed, states[deed], proposal.person, account, act.certificate, entry)
+
+
+def _enter(trail: TrailWriter, proposal: Proposal, act: _Act) -> TrailEntry:
+    subject = signer_subject(proposal.account)
+    if proposal.deed == "enrol":
+        return trail.append(SIGNER_ENROLLED, subject, act.reason, act.details)
+    if proposal.deed == "renew":
+        return trail.append(SIGNER_RENEWED, subject, act.reason, act.details)
+    return trail.append(SIGNER_REVOKED, subject, act.reason, act.details)
 
 
 def _confirmable(
@@ -166,74 +160,11 @@ def _withdrawn(proposal: Proposal, signers: Signers) -> Enrolled:
     return next(each for each in signers.enrolled if each.certificate == certificate)
 
 
-def _authority(
-    workspace: Workspace, signers: Signers, keyring: Keyring, laboratory: Laboratory, dialogue: Dialogue
-) -> _Authority:
-    """The laboratory's authority, opened with its passphrase; founded where there is none."""
-    if signers.authority is None:
-        dialogue.tell("The laboratory's certificate authority is founded now; its key gets a passphrase.")
-        passphrase = new_passphrase(dialogue, "the certificate authority", [laboratory.name])
-        identity = found_authority(laboratory.name, moment_now().replace(microsecond=0), AUTHORITY_YEARS)
-        stem = f"authority-{fingerprint(identity.certificate)[:12]}"
-        first = _list(identity, 1, ())
-        founding = {
-            f"{stem}.p12": sealed_identity(identity, passphrase),
-            f"{stem}.pem": pem_text("certificate", identity.certificate),
-            "revocations-0001.crl": pem_text("revocation list", first),
-        }
-        return _Authority(identity, founding)
-    if signers.authority not in keyring.certificates:
-        raise InputError(f"The authority's certificate {signers.authority} is not in {SIGNERS_FOLDER}.")
-    name = f"authority-{signers.authority[:12]}.p12"
-    content = read_signer_file(workspace.root / SIGNERS_FOLDER, name)
-    identity = opened(
-        workspace, dialogue, f"the {AUTHORITY}", CONFIRM, lambda secret: open_identity(content, secret)
-    )
-    if fingerprint(identity.certificate) != signers.authority:
-        raise InputError(f"{SIGNERS_FOLDER}/{name} is not the authority's key: the file was replaced.")
-    return _Authority(identity, {})
-
-
-def _list(authority: KeyIdentity, number: int, revoked: tuple[Revocation, ...]) -> bytes:
-    """A revocation list that is due as late as the authority lives: the trail says which is the newest."""
-    now = moment_now().replace(microsecond=0)
-    left = certificate_facts(authority.certificate).not_after - now
-    return revocation_list(authority, number, revoked, now, left // timedelta(days=1))
-
-
-def _enter_founding(workspace: Workspace, trail: TrailWriter, authority: _Authority) -> None:
-    for name, content in authority.founding.items():
-        write_signer_file(workspace, name, content, SHARED)
-    facts = certificate_facts(authority.identity.certificate)
-    first = next(iter(_lists_among(authority.founding)))
-    details: dict[str, Json] = {
-        "certificate": facts.fingerprint,
-        "not_after": _stated(facts.not_after),
-        "revocation_list": {"number": 1, "sha256": sha256_hex(first)},
-    }
-    trail.append(AUTHORITY_FOUNDED, AUTHORITY, None, details)
-
-
-def _lists_among(files: Mapping[str, bytes]) -> list[bytes]:
-    from assayfolio.evidence.keyring import pem_parts
-
-    return [
-        part
-        for name, content in files.items()
-        if name.endswith(".crl")
-        for part in pem_parts(content, "revocation list")
-    ]
-
-
-def _stated(moment: datetime) -> str:
-    return moment.astimezone(UTC).strftime("%Y-%m-%dT%H:%M:%SZ")
-
-
 def _act(
     workspace: Workspace,
     proposal: Proposal,
     known: tuple[Signers, Keyring],
-    authority: _Authority | None,
+    authority: OwnAuthority | None,
 ) -> _Act:
     if proposal.deed == "revoke":
         return _revocation(proposal, known, authority)
@@ -244,13 +175,13 @@ def _enrolment(
     workspace: Workspace,
     proposal: Proposal,
     known: tuple[Signers, Keyring],
-    authority: _Authority | None,
+    authority: OwnAuthority | None,
 ) -> _Act:
     signers, keyring = known
     files: Files = {}
     if authority is not None:
         certificate = _certified(workspace, proposal, authority)
-        chain = (certificate, authority.identity.certificate)
+        chain: tuple[bytes, ...] = (certificate, authority.identity.certificate)
         stem = file_stem(proposal.account, public_key_digest(certificate))
         files[f"{stem}.pem"] = pem_text("certificate", *chain)
     else:
@@ -265,17 +196,16 @@ def _enrolment(
         "account": proposal.account,
         "certificate": facts.fingerprint,
         "anchor": fingerprint(chain[-1]),
-        "not_after": _stated(facts.not_after),
+        "not_after": stated_time(facts.not_after),
         "key": proposal.entry.details["key"],
         "replaces": None if replaced is None else replaced.certificate,
         "identity_check": proposal.text("identity_check"),
         "proposed": {"seq": proposal.entry.seq, "actor": proposal.entry.actor},
     }
-    action = SIGNER_ENROLLED if proposal.deed == "enrol" else SIGNER_RENEWED
-    return _Act(action, None, details, files, facts.fingerprint)
+    return _Act(None, details, files, facts.fingerprint)
 
 
-def _certified(workspace: Workspace, proposal: Proposal, authority: _Authority) -> bytes:
+def _certified(workspace: Workspace, proposal: Proposal, authority: OwnAuthority) -> bytes:
     """The certificate that the authority gives for the request that was proposed, and no other."""
     stated = proposal.entry.details["request"]
     assert isinstance(stated, Mapping), "a request is named by file and digest"
@@ -306,8 +236,8 @@ def _require_renewal(replaced: Enrolled | None, keyring: Keyring, new: bytes) ->
         raise SigningRefusedError(f"The new certificate does not renew the old one: {'; '.join(faults)}.")
 
 
-def _revocation(proposal: Proposal, known: tuple[Signers, Keyring], authority: _Authority | None) -> _Act:
-    signers, keyring = known
+def _revocation(proposal: Proposal, known: tuple[Signers, Keyring], authority: OwnAuthority | None) -> _Act:
+    signers, _ = known
     withdrawn = _withdrawn(proposal, signers)
     files: Files = {}
     stated: Json = None
@@ -324,11 +254,11 @@ def _revocation(proposal: Proposal, known: tuple[Signers, Keyring], authority: _
         "proposed": {"seq": proposal.entry.seq, "actor": proposal.entry.actor},
         "revocation_list": stated,
     }
-    return _Act(SIGNER_REVOKED, proposal.entry.reason, details, files, withdrawn.certificate)
+    return _Act(proposal.entry.reason, details, files, withdrawn.certificate)
 
 
 def _longer_list(
-    proposal: Proposal, withdrawn: Enrolled, known: tuple[Signers, Keyring], authority: _Authority
+    proposal: Proposal, withdrawn: Enrolled, known: tuple[Signers, Keyring], authority: OwnAuthority
 ) -> tuple[bytes, int]:
     """The next revocation list with its number: the newest one, and the certificate that is withdrawn."""
     signers, keyring = known
@@ -337,9 +267,10 @@ def _longer_list(
     if der is None or certificate is None:
         raise InputError(f"The newest revocation list or the certificate is not in {SIGNERS_FOLDER}.")
     before = read_revocation_list(der, authority.identity.certificate)
-    when = datetime.fromisoformat(proposal.entry.time).replace(microsecond=0)
+    # Lists know whole seconds; what the person signed in the second of the proposal came before it.
+    when = datetime.fromisoformat(proposal.entry.time).replace(microsecond=0) + timedelta(seconds=1)
     new = Revocation(certificate_facts(certificate).serial, when, proposal.text("cause") or "unspecified")
-    longer = _list(authority.identity, before.number + 1, (*before.revoked, new))
+    longer = next_list(authority.identity, before.number + 1, (*before.revoked, new))
     faults = succession_faults(before, read_revocation_list(longer, authority.identity.certificate))
     if faults:
         raise SigningRefusedError(f"The revocation list cannot be continued: {'; '.join(faults)}.")

@@ -1,4 +1,7 @@
-"""Opening the key of a person or of the authority: wrong passphrases are entered, the third in a row locks."""
+"""Opening the key of a person or of the authority: wrong passphrases are entered, the third locks.
+
+Nothing that was opened is kept: each signature asks for the passphrase anew.
+"""
 
 from collections.abc import Callable, Sequence
 from contextlib import ExitStack
@@ -44,7 +47,7 @@ class SigningLockedError(InputError):
 
 
 def moment_now() -> datetime:
-    """This computer's clock, in UTC."""
+    """The present time by this computer's clock, in UTC."""
     return datetime.fromisoformat(surroundings.utc_now())
 
 
@@ -76,7 +79,7 @@ def opened(
 
 
 def _count_wrong(workspace: Workspace, what: str, command: str, why: str) -> str:
-    """Enter a wrong passphrase; return what to say of it. Raises SigningLockedError for the third in a row."""
+    """Enter a wrong passphrase; return what to say of it. Raises SigningLockedError for the third."""
     laboratory = standing_settings(workspace).laboratory
     account = surroundings.account_name()
     with trail_book(workspace, laboratory.wait_seconds) as trail:
@@ -94,7 +97,8 @@ def _count_wrong(workspace: Workspace, what: str, command: str, why: str) -> str
     raise SigningLockedError(
         f"The passphrase was wrong {count} times in a row. Nobody signs under {account} before "
         f"{until:%Y-%m-%d %H:%M:%S} UTC; that was entered in the audit trail as urgent. If it was not you, "
-        f"tell your administrator now, and have the certificate withdrawn: assayfolio signer revoke {account}."
+        "tell your administrator now, and have the certificate withdrawn: "
+        f"assayfolio signer revoke {account}."
     )
 
 

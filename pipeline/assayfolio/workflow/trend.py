@@ -5,14 +5,15 @@ against its seal in the audit trail; a folio that was changed is left out, and t
 """
 
 import json
-from collections.abc import Iterator, Mapping, Sequence
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 from pathlib import Path
 from typing import Any
 
 from assayfolio.canonical import sha256_hex
-from assayfolio.errors import ChangedError, ExitCode, Fault, InputError, Place, StudyError
-from assayfolio.evidence.history import RunHistory
+from assayfolio.errors import ChangedError, ExitCode, Fault, InputError, StudyError
+from assayfolio.evidence.entries import TrailEntry
+from assayfolio.evidence.history import run_histories
 from assayfolio.evidence.sealed_files import sealed_files
 from assayfolio.evidence.states import RunStanding, run_standings, standing_words
 from assayfolio.evidence.trail import TrailHead, read_trail
@@ -96,21 +97,14 @@ def study_trend(workspace: Workspace, study_path: Path) -> StudyTrend:
     )
 
 
-def _seals(entries: Sequence[Any]) -> Mapping[str, str]:
+def _seals(entries: Sequence[TrailEntry]) -> Mapping[str, str]:
     """The seal of every run, by its subject."""
-    from assayfolio.evidence.history import run_histories
-
     found = {}
     for run in run_histories(entries):
-        seal = _seal_of(run)
-        if seal is not None:
+        seal = None if run.sealed is None else run.sealed.details.get("seal")
+        if isinstance(seal, str):
             found[run.subject] = seal
     return found
-
-
-def _seal_of(run: RunHistory) -> str | None:
-    seal = None if run.sealed is None else run.sealed.details.get("seal")
-    return seal if isinstance(seal, str) else None
 
 
 def _results(
