@@ -12,7 +12,7 @@ from assayfolio.study.plan import Laboratory
 from assayfolio.trending.charts import TrendFindings
 
 MOST_LISTED = 60
-MOST_LOTS_LISTED = 400
+MOST_LOTS_LISTED = 120
 
 
 @dataclass(frozen=True, slots=True)

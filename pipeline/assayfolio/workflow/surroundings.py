@@ -28,7 +28,7 @@ def look_around() -> Surroundings:
 
 
 FIRST_PERSONAL_UID = 1000
-"""Below it are the accounts of services, root's apart (common practice of Linux distributions, login.defs)."""
+"""Below it are the accounts of services, root's apart (common practice of Linux distributions, no source)."""
 
 _LOGIN_UID = Path("/proc/self/loginuid")
 _NOBODY_LOGGED_IN = 2**32 - 1
