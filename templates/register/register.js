@@ -255,6 +255,7 @@
   }
 
   function makeSortable(head) {
+    const paper = node("span", "on-paper", head.textContent);
     const button = node("button", "", head.textContent);
     button.type = "button";
     button.addEventListener("click", () => {
@@ -265,7 +266,7 @@
       toAddress();
       whenLoaded();
     });
-    head.replaceChildren(button);
+    head.replaceChildren(button, paper);
   }
 
   function showSort() {

@@ -292,12 +292,12 @@ def test_a_file_that_changes_while_it_is_read_is_refused() -> None:
         stream_observations([file], PLAN)
 
 
-def test_reading_stops_after_ten_thousand_faults() -> None:
+def test_reading_stops_after_a_thousand_faults() -> None:
     content = content_of([("A", "n/a")] * 30_000)
     with pytest.raises(DataError) as refused:
         streamed(content, PLAN, block=1 << 16)
-    assert refused.value.headline == "d.csv cannot be used: 10000 faults"
-    assert "the same 9,999 times more" in refused.value.faults[0].found
+    assert refused.value.headline == "d.csv cannot be used: 1000 faults or more"
+    assert "the same 999 times more" in refused.value.faults[0].found
 
 
 def test_more_than_five_thousand_levels_are_refused_at_the_first_too_many() -> None:

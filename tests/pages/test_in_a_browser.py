@@ -132,7 +132,7 @@ class TestSearching:
             ("state", "in review", "td:nth-child(3)", "in review"),
             ("overall", "difference not shown", "td:nth-child(4)", "difference not shown"),
             ("criteria", "met", "td:nth-child(5)", "met (3 of 3)"),
-            ("folio", "unchanged", "td:nth-child(7)", "unchanged"),
+            ("folio", "changed", "td:nth-child(7)", "changed"),
         ],
     )
     def test_a_filter_leaves_only_what_it_names(self, tab, some, field, value, cell, wanted):

@@ -15,6 +15,7 @@ from assayfolio.study.laboratory import Laboratory
 from assayfolio.study.reading import read_study
 from assayfolio.trending.charts import chart_lots
 from assayfolio.trending.series import LotResult
+from pdfa.verapdf import validate
 from report.test_wording import FORBIDDEN
 
 STUDY = """\
@@ -105,6 +106,7 @@ def test_no_signal_is_not_taken_for_nothing_has_changed():
     assert "That does not show that nothing has changed." in text
 
 
+@pytest.mark.requirement("NIGHT-2")
 def test_a_chart_decides_nothing():
     text = words_of(pages())
     assert "What follows from it is for a person to decide and to record." in text
@@ -180,3 +182,11 @@ def test_the_file_is_whole_tagged_and_legible(tmp_path):
     assert "end of the charts" in text
     assert "\ufffd" not in text
     assert "BR-118" in text
+
+
+@pytest.mark.slow
+@pytest.mark.needs("verapdf")
+def test_the_file_is_what_it_says_it_is(tmp_path):
+    path = tmp_path / "trend.pdf"
+    path.write_bytes(render_trend(pages())[0])
+    assert list(validate(path, profiles=("3a", "ua1"))) == []

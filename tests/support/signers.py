@@ -1,8 +1,12 @@
 """Signing in tests: what a person types is prepared, everything else is the program itself."""
 
+import atexit
 import contextlib
 import shutil
+import tempfile
 from collections.abc import Iterator, Sequence
+from functools import cache
+from pathlib import Path
 from unittest import mock
 
 from assayfolio.cli import signing
@@ -82,7 +86,22 @@ def confirm(bench: Bench, account: str, by: str = "dot", deed: str = "enrol") ->
 
 
 def laboratory_that_signs(root, laboratory: str = "", study: str = SIGNED_OFF) -> Bench:
-    """A workspace with people, each of whom can sign in his role; `dot` cannot."""
+    """A workspace with people, each of whom can sign in his role; `dot` cannot.
+
+    Enrolling takes seconds, so it is done once for all tests of a process, and the result copied.
+    """
+    return copied(_enrolled_once(laboratory, study), root)
+
+
+@cache
+def _enrolled_once(laboratory: str, study: str) -> Bench:
+    folder = tempfile.mkdtemp()
+    atexit.register(shutil.rmtree, folder, ignore_errors=True)
+    return new_laboratory(Path(folder).resolve() / "w", laboratory, study)
+
+
+def new_laboratory(root, laboratory: str = "", study: str = SIGNED_OFF) -> Bench:
+    """The same with an authority of its own."""
     bench = staffed(Bench(root, study), laboratory)
     for account in SIGNERS:
         enrol(bench, account)

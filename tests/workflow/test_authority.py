@@ -20,6 +20,11 @@ ALLOWED = {
     "trail --review": {"ben", "cem"},
     "archive --dispose": {"dot"},
     "archive --dispose --confirm": {"cem"},
+    "sign": {"ann", "ben", "cem"},
+    "signer enrol": {"ann", "ben", "cem"},
+    "signer renew": {"ann", "ben", "cem"},
+    "signer revoke": {"cem", "dot"},
+    "signer --confirm": {"cem", "dot"},
     "settings": {"dot"},
     "settings --confirm": {"cem", "dot"},
 }

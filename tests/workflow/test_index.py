@@ -16,7 +16,9 @@ from assayfolio.evidence.states import run_standings, study_standing
 from assayfolio.evidence.trail import read_trail
 from assayfolio.evidence.verification import verify_workspace
 from assayfolio.workflow import index_pages
+from assayfolio.workflow.book import trail_book
 from assayfolio.workflow.index_assets import made_by
+from assayfolio.workflow.workspace import Workspace
 from support.staff import as_account, staffed
 from support.unrendered import unrendered
 from support.workspaces import DATA, STUDY, Bench
@@ -195,10 +197,20 @@ def _made_by(bench: Bench) -> str:
 class TestWhatItSays:
     def test_agrees_with_the_states_that_the_trail_gives(self, tmp_path):
         bench = staffed(Bench(tmp_path / "w"))
-        for command in (("run",), ("run",), ("run", "--replaces", "run-0002", "--reason", "Mistyped")):
+        for command in (
+            ("run",),
+            ("run",),
+            ("run", "--replaces", "run-0002", "--reason", "A value was mistyped"),
+        ):
             assert as_account(bench, "ann", command[0], bench.study, *command[1:]).code == 0
         as_account(bench, "cem", "void", bench.runs / "TST-1/run-0001", *WHY)
+        assert as_account(bench, "ann", "run", bench.study).code == 0
         bench("index")
+        for role in ("author", "approver"):
+            with trail_book(Workspace(bench.root), 1) as trail:
+                trail.append("signed", "TST-1/run-0004", None, {"role": role, "person": "C. Cole"})
+            assert bench("index", "--json").document["looked_at"] == 1
+        assert [row[4] for row in rows(bench)] == ["void", "superseded", "draft", "approved"]
         entries = read_trail(bench.runs).entries
         register, standings = read_register(entries), run_standings(entries)
         for row in rows(bench):

@@ -102,6 +102,7 @@ def test_runs_that_do_not_stand_are_left_out_with_the_reason(answer):
     assert not any(one["changed"] for one in answer["left_out"])
 
 
+@pytest.mark.requirement("NIGHT-2")
 def test_the_table_has_every_value_as_the_findings_have_it(answer, charted):
     rows = list(csv.DictReader(answer["table"].read_text("utf-8").splitlines()))
     quantities = ("lot-mean", "repeatability-sd", "difference")
@@ -119,6 +120,7 @@ def test_the_table_has_every_value_as_the_findings_have_it(answer, charted):
     assert len(rows) == 6 * 4
 
 
+@pytest.mark.requirement("NIGHT-2")
 def test_a_lot_that_drifts_off_is_named_with_the_rule_and_fails_nothing(charted, answer):
     means = chart(answer, "lot-mean")
     assert {(one["lot"], one["rule"]) for one in means["signals"]} == {

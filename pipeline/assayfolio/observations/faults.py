@@ -84,11 +84,12 @@ class Faults:
     """The faults of all files of a study, in the order of the files.
 
     `lost_values` says that a stretch of some file is no row though values may stand in it, so that numbers of
-    rows cannot be compared with the plan.
+    rows cannot be compared with the plan; `stopped` that reading was given up, so that there may be more.
     """
 
     of: list[FaultList]
     lost_values: bool = False
+    stopped: bool = False
 
     @staticmethod
     def in_files(names: Sequence[str]) -> "Faults":
@@ -102,7 +103,8 @@ class Faults:
 
     def raise_any(self, *beside: Sequence[FaultList]) -> None:
         """Raise DataError with all faults, if there is any; each of `beside` has a list a file as well."""
-        raise_in_files([[own, *(lists[at] for lists in beside)] for at, own in enumerate(self.of)])
+        files = [[own, *(lists[at] for lists in beside)] for at, own in enumerate(self.of)]
+        raise_in_files(files, " or more" if self.stopped else "")
 
 
 def raise_faults(file: str, *lists: FaultList) -> None:
@@ -114,8 +116,11 @@ def raise_faults(file: str, *lists: FaultList) -> None:
     raise_in_files([[FaultList(file), *lists]])
 
 
-def raise_in_files(files: Sequence[Sequence[FaultList]]) -> None:
-    """Raise DataError with the faults of all `files`, file by file, if there is any."""
+def raise_in_files(files: Sequence[Sequence[FaultList]], more: str = "") -> None:
+    """Raise DataError with the faults of all `files`, file by file, if there is any.
+
+    `more` are words behind their number.
+    """
     faulty = [lists for lists in files if any(faults.count for faults in lists)]
     if not faulty:
         return
@@ -129,7 +134,7 @@ def raise_in_files(files: Sequence[Sequence[FaultList]]) -> None:
     names = f"{names} and {len(faulty) - 2} more" if len(faulty) > 2 else names
     noun = "fault" if count == 1 else "faults"
     hidden = count - sum(number for _, number in told)
-    raise DataError(f"{names} cannot be used: {count} {noun}", tuple(fault for fault, _ in told), hidden)
+    raise DataError(f"{names} cannot be used: {count} {noun}{more}", tuple(fault for fault, _ in told), hidden)
 
 
 def refusal(

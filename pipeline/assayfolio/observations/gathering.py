@@ -20,7 +20,7 @@ from assayfolio.observations.totals import Totals
 from assayfolio.observations.values import CountFlow, Observation, Observations, RawFile
 from assayfolio.study.plan import DataPlan, MeasurementFact
 
-MOST_FAULTS: Final = 10_000
+MOST_FAULTS: Final = 1_000
 
 
 class Gathering:
@@ -77,7 +77,7 @@ class Gathering:
         for row in received:
             self._assembly.take(row)
             if self.full:
-                self.faults.lost_values = True  # what stands below is not counted
+                self.faults.lost_values = self.faults.stopped = True  # what stands below is not counted
                 break
         for part, summing, missing in zip(self._assembly.parts, self._summings, self._missing, strict=True):
             levels = [self._number(file, value.level, partial(_place_of_value, value)) for value in part.kept]

@@ -20,6 +20,7 @@ _MARK, _LINE_END = ord('"'), ord("\n")
 _READERS = 2
 _AHEAD = 4
 _SMALL_PIECE, _LARGE_PIECE = 1 << 12, 1 << 18
+_NO_LIMIT = 1 << 62
 
 Taken = TypeVar("Taken")
 Integers = npt.NDArray[np.int64]
@@ -117,11 +118,11 @@ def go_through(
     `by_rows` the rows of the others, with the lines that they stand on.
     """
     ahead: deque[tuple[bytes, int, Future[Taken | None]]] = deque()
-    piece = _SMALL_PIECE
+    piece, most = _SMALL_PIECE, _NO_LIMIT
     with ThreadPoolExecutor(_READERS) as beside:
         while True:
             while len(ahead) < _AHEAD and feed.fill():
-                size = plain_rows(feed.data, separator)
+                size = _worth_while(plain_rows(feed.data, separator), feed.data, piece, most)
                 if not size:
                     break
                 body, line = feed.data[:size], feed.line
@@ -132,14 +133,22 @@ def go_through(
                 taken = reading.result()
                 if taken is not None:
                     by_columns(taken, body, line)
-                    piece = _SMALL_PIECE
+                    piece, most = _SMALL_PIECE, min(2 * most, _NO_LIMIT)
                     continue
                 feed.put_back(b"".join((body, *(later for later, _, _ in ahead))), line)
                 ahead.clear()
+                most = _LARGE_PIECE // 8  # so that a row with too many cells takes few others with it
             if not feed.data:
                 return
             _by_rows(feed, separator, by_rows, piece)
             piece = min(2 * piece, _LARGE_PIECE)
+
+
+def _worth_while(size: int, data: bytes, least: int, most: int) -> int:
+    """How much of `size` bytes of plain rows to take by columns: all, or `most`; 0 where it is too little."""
+    if size > most:
+        return data.rfind(b"\n", 0, most) + 1 or size
+    return size if size >= least or size == len(data) else 0
 
 
 def _by_rows(

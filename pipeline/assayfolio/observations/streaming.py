@@ -50,7 +50,7 @@ def stream_observations(
     """The observations of each response of `plan`, in its order, as totals: their `rows` are empty.
 
     The plan must be one that `kept_from_streaming` has nothing against. Raises DataError with all faults of
-    the files as `read_all_observations` does, except that reading stops after 10,000 of them, and that more
+    the files as `read_all_observations` does, except that reading stops after 1,000 of them, and that more
     than 5,000 levels in all files together are refused.
     """
     gathering = Gathering([file.name for file in files], plan, measurement)

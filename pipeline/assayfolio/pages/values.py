@@ -4,7 +4,7 @@ Texts are given as they are to be read; nothing here is markup. Times are UTC, a
 """
 
 from collections.abc import Mapping
-from dataclasses import asdict, dataclass
+from dataclasses import dataclass
 from typing import Any
 
 from assayfolio.canonical import Json
@@ -61,7 +61,7 @@ class RunRow:
 
     def as_json(self) -> dict[str, Json]:
         """The row for the register's memory."""
-        return asdict(self)
+        return {name: getattr(self, name) for name in self.__slots__}
 
 
 def row_from_json(value: Mapping[str, Any]) -> RunRow:
@@ -87,7 +87,13 @@ class RunSeries:
 
     def as_json(self) -> dict[str, Json]:
         """The series for the register's memory."""
-        return asdict(self)
+        return {
+            "run": self.run,
+            "responses": {
+                name: {"unit": one.unit, "levels": dict(one.levels), "residual_sd": one.residual_sd}
+                for name, one in self.responses.items()
+            },
+        }
 
 
 def series_from_json(value: Mapping[str, Any]) -> RunSeries:
@@ -161,7 +167,7 @@ class StudyRow:
 
     def as_json(self) -> dict[str, Json]:
         """The row for the register's memory."""
-        return asdict(self)
+        return {name: getattr(self, name) for name in self.__slots__}
 
 
 def study_from_json(value: Mapping[str, Any]) -> StudyRow:

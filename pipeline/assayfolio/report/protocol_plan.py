@@ -24,6 +24,7 @@ from assayfolio.study.plan import (
     MeasurementFact,
     StudyDefinition,
     Trend,
+    TrendPlan,
 )
 
 Rows = list[list[Words]]
@@ -142,7 +143,26 @@ def _analyses(study: StudyDefinition) -> Rows:
             rows.append([name, ", ".join(method_name(test) for test in tests)])
     if study.data.order is not None:
         rows.append(["Check of the measuring order", "trend of residuals"])
+    if study.trend is not None:
+        rows.append(_charts_row(study.trend))
     return rows
+
+
+def _charts_row(plan: TrendPlan) -> list[Words]:
+    base = f"the first {plan.first} lots" if plan.first is not None else f"the lots {', '.join(plan.lots)}"
+    limits = [
+        f"{one.quantity}{f' of {one.response}' if one.response else ''} {relation} {decimal(limit)}"
+        for one in plan.criteria
+        for relation, limit in (("at least", one.at_least), ("at most", one.at_most))
+        if limit is not None
+    ]
+    method = prose(
+        "limits from {base}; rules {rules}{lines}",
+        base=base,
+        rules=", ".join(plan.rules),
+        lines=f"; criterion lines: {', '.join(limits)}" if limits else "",
+    )
+    return [prose("Control charts over lots ~({what})~", what=", ".join(plan.quantities)), method]
 
 
 def _equivalence_row(plan: EquivalencePlan) -> list[Words]:

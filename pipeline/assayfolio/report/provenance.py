@@ -13,8 +13,8 @@ from assayfolio.report.wording import counted, first_of
 
 _MOST_PATHS = 8
 _SIGNING = (
-    "~Signatures: this version does not sign. Until signing is part of this program, the sign-off fields on "
-    "page 1 are signed on a copy outside the folio; signing the file inside the folio would break its seal.~"
+    "~Signatures: the file in data/ stays as it was sealed. Signed it lies beside, as sign-off/report.pdf, with "
+    "a record of each signature; #assayfolio verify# says which of them hold, and what they were made for.~"
 )
 
 

@@ -57,9 +57,9 @@ def _take_entry(memory: Memory, placed: PlacedEntry, touched: Touched) -> None:
 def _take_run_entry(memory: Memory, placed: PlacedEntry, study: str, number: int, touched: Touched) -> None:
     entry = placed.entry
     if entry.action == ALLOTTED:
-        data = _data_key(memory, entry)
+        data = _data_key(memory, study, entry)
         if memory.add_run(study, number, data) and data:
-            for other in memory.on_same_data(study, data):
+            for other in memory.on_same_data(data):
                 touched.add_run(study, other)  # each says which execution of how many it is
     if not memory.add_line(study, number, placed.begin, placed.size):
         return  # about a run that was never allotted: verification names it
@@ -74,10 +74,10 @@ def _take_run_entry(memory: Memory, placed: PlacedEntry, study: str, number: int
         touched.add_run(*replaced_run)
 
 
-def _data_key(memory: Memory, allotted: TrailEntry) -> str:
-    """A digest of the set of raw data files that a run reads; empty where it reads none."""
+def _data_key(memory: Memory, study: str, allotted: TrailEntry) -> str:
+    """A digest of a study and the set of raw data files that a run of it reads; empty where it reads none."""
     inputs = allotted.details.get("inputs")
     listed = inputs.values() if isinstance(inputs, dict) else ()
     known = [one for one in listed if isinstance(one, str) and memory.knows_file(one)]
     digests = data_digests(allotted, known)
-    return canonical_digest(sorted(digests)) if digests else ""
+    return canonical_digest([study, *sorted(digests)]) if digests else ""

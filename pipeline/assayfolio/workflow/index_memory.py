@@ -35,7 +35,7 @@ CREATE INDEX by_replaced ON runs (replaces) WHERE replaces IS NOT NULL;
 CREATE INDEX by_state ON runs (state);
 CREATE INDEX by_folio ON runs (folio);
 CREATE TABLE files (sha256 TEXT PRIMARY KEY, study TEXT, begins INTEGER, size INTEGER);
-CREATE INDEX by_study ON files (study);
+CREATE INDEX by_study ON files (study, begins);
 CREATE TABLE protocols (study TEXT, number INTEGER, lines TEXT, PRIMARY KEY (study, number));
 CREATE TABLE records (subject TEXT PRIMARY KEY, place INTEGER, lines TEXT);
 CREATE TABLE studies (study TEXT PRIMARY KEY, line TEXT);
@@ -46,7 +46,10 @@ Places = list[tuple[int, int]]
 
 @dataclass(frozen=True, slots=True)
 class RememberedRun:
-    """A run: its place among all, the places of its entries, a key of its data, the run it replaces."""
+    """A run: its place among all, the places of its entries, the run it replaces.
+
+    `data` is a key that the runs of a study on exactly the same data share; empty where none were read.
+    """
 
     place: int
     study: str
@@ -129,11 +132,9 @@ class Memory:
         found = self._db.execute(_RUN + "WHERE replaces = ? ORDER BY place", (subject,))
         return [_remembered(one) for one in found]
 
-    def on_same_data(self, study: str, data: str) -> list[int]:
-        """The numbers of the study's runs on exactly these data."""
-        found = self._db.execute(
-            "SELECT number FROM runs WHERE data = ? AND study = ? ORDER BY number", (data, study)
-        )
+    def on_same_data(self, data: str) -> list[int]:
+        """The numbers of the runs with this key: of one study, on exactly the same data."""
+        found = self._db.execute("SELECT number FROM runs WHERE data = ? ORDER BY number", (data,))
         return [int(one[0]) for one in found]
 
     def put_row(self, row: RunRow, series: RunSeries | None, stands: bool) -> None:

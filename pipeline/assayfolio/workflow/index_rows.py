@@ -73,7 +73,7 @@ def find_run(sources: Sources, run: RememberedRun) -> FoundRun:
     history = next(one for one in run_histories(entries) if one.subject == subject)
     standing = run_standings(entries)[subject]
     look = _look(sources, history)
-    kin = sources.memory.on_same_data(run.study, run.data) if run.data else []
+    kin = sources.memory.on_same_data(run.data) if run.data else []
     row = _row(run, history, standing, look, kin)
     page = RunPage(
         row=row,

@@ -37,6 +37,11 @@ def plan_words(study: StudyDefinition) -> Iterator[str]:
     if checks:
         yield f"checks: {', '.join(checks)}"
     yield from map(_criterion_described, study.criteria)
+    if study.trend is not None:
+        plan = study.trend
+        base = f"the first {plan.first} lots" if plan.first is not None else f"{len(plan.lots)} named lots"
+        what, rules = ", ".join(plan.quantities), ", ".join(plan.rules)
+        yield f"charts over lots: {what}; limits from {base}; rules {rules}"
     if study.power is not None:
         yield f"power: target {to_double(study.power.target):g}; `power` shows what the plan reaches"
 

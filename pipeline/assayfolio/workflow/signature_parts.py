@@ -55,9 +55,11 @@ def long_term(case: SigningCase, keyring: Keyring, chain: Sequence[bytes]) -> Lo
         return LongTerm(stamps)
     newest = _newest_list(case, keyring)
     anchor = keyring.certificates.get(settings.time_stamp_certificate or "")
+    own = {pinned.sha256 for pinned in case.signers.lists}
+    foreign = [der for digest, der in sorted(keyring.lists.items()) if digest not in own]
     material = ValidationMaterial(
         certificates=(*chain, *(() if anchor is None else (anchor,))),
-        revocation_lists=() if newest is None else (newest,),
+        revocation_lists=(*(() if newest is None else (newest,)), *foreign),
     )
     return LongTerm(stamps, material)
 
