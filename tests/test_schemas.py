@@ -281,7 +281,7 @@ def actions_entered() -> set[str]:
         for node in ast.walk(tree):
             if not enters(node):
                 continue
-            first = node.args[0]
+            first = node.args[3] if seals_a_record(node) else node.args[0]
             if isinstance(first, ast.Constant):
                 found.add(first.value)
             elif isinstance(first, ast.Name) and first.id in known:
@@ -289,12 +289,17 @@ def actions_entered() -> set[str]:
     return found
 
 
+def seals_a_record(node: ast.Call) -> bool:
+    """Whether this is seal_in_trail(workspace, trail, record, action, ...)."""
+    return isinstance(node.func, ast.Name) and node.func.id == "seal_in_trail"
+
+
 def enters(node: ast.AST) -> typing.TypeGuard[ast.Call]:
     """Whether this is a call such as trail.append(action, subject, ...), or a notice to be entered."""
     if not isinstance(node, ast.Call) or len(node.args) < 2:
         return False
     if isinstance(node.func, ast.Name):
-        return node.func.id == "Notice"
+        return node.func.id == "Notice" or seals_a_record(node)
     return (
         isinstance(node.func, ast.Attribute)
         and node.func.attr in {"append", "enter"}

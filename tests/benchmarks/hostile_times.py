@@ -47,7 +47,9 @@ def main() -> None:
             [sys.executable, __file__, str(number)], capture_output=True, text=True, check=True
         )
         seconds, spent, megabytes, code = map(float, done.stdout.split())
-        line = f"{seconds:6.2f} s ({spent:5.2f} s processor) {megabytes:7.1f} MB  exit {code:.0f}  {kind.name}"
+        line = (
+            f"{seconds:6.2f} s ({spent:5.2f} s processor) {megabytes:7.1f} MB, exit {code:.0f}: {kind.name}"
+        )
         print(line, flush=True)
         if seconds > MOST_SECONDS or megabytes > MOST_MEGABYTES or code != 2:
             beyond.append(line)

@@ -10,7 +10,11 @@ import pytest
 from assayfolio.version import VERSION
 from support.workspaces import Bench, command, process
 
-COMMANDS = ("workspace", "check", "power", "worksheet", "run", "verify", "trail")
+COMMANDS = (
+    *("workspace", "settings", "signer"),
+    *("check", "power", "worksheet", "preregister", "amend", "run", "deviation", "void", "sign"),
+    *("verify", "rerun", "archive", "trail", "trend", "index"),
+)
 
 
 def test_help_lists_the_commands_that_work_and_no_others():

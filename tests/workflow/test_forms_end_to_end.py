@@ -1,4 +1,4 @@
-"""One study in seven forms of file through the command line: the findings in the folios are the same bytes."""
+"""One study in seven forms of file through the command line: all folios hold the same findings bytes."""
 
 from pathlib import Path
 

@@ -359,7 +359,7 @@ def everything(root: Path) -> dict[str, str]:
             if inside.startswith("runs/audit-trail") or name.endswith(".lock"):
                 continue
             if path.is_symlink():
-                found[inside] = f"link to {os.readlink(path)}"
+                found[inside] = f"link to {path.readlink()}"
             elif path.is_file():
                 found[inside] = hashlib.sha256(path.read_bytes()).hexdigest()
             else:
@@ -378,7 +378,7 @@ def test_a_hostile_input_is_refused_with_its_place_and_nothing_is_altered(kind: 
     before = everything(bench.root)
     answer = bench("run", bench.study)
     assert answer.code == 2, answer.err
-    headline, first, *_ = answer.err.splitlines()
+    _, first, *_ = answer.err.splitlines()
     assert kind.place in first
     assert kind.words in first
     assert "Traceback" not in answer.out + answer.err

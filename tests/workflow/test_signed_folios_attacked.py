@@ -1,4 +1,4 @@
-"""What is done to a signed folio, its records, its signers' files or its whole workspace: `verify` names it."""
+"""What is done to a signed folio, its records or its whole workspace: `verify` finds it and names it."""
 
 import json
 import shutil
@@ -171,7 +171,7 @@ class TestACopyElsewhere:
             for note in each["notes"]
             if note.startswith("certificate trusted")
         ]
-            assert len(trusted) == 3
+        assert len(trusted) == 3
         assert all("no trusted certificate was given" in note for note in trusted)
 
     @pytest.mark.requirement("SIGN-4")

@@ -370,9 +370,11 @@ class TestASigningThatIsStopped:
         assert sign(bench, "ann", RUN).code == 0
 
     def test_by_a_kill_before_its_entry_is_thrown_away_by_the_next(self, bench: Bench) -> None:
-        with mock.patch.object(signing, "entry_details", side_effect=KeyboardInterrupt):
-            with mock.patch.object(signing, "discard_staged"):
-                assert sign(bench, "ann", RUN).code == 3
+        with (
+            mock.patch.object(signing, "entry_details", side_effect=KeyboardInterrupt),
+            mock.patch.object(signing, "discard_staged"),
+        ):
+            assert sign(bench, "ann", RUN).code == 3
         assert (sign_off(bench) / ".new").is_dir()
         assert bench("verify").code == 0
         assert sign(bench, "ann", RUN).code == 0

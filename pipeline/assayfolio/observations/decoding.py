@@ -206,7 +206,7 @@ def nul_advice(even: int, odd: int, size: int) -> str:
 
 
 def add_nul_bytes(faults: FaultList, body: bytes, above: int, advice: str) -> None:
-    """Add a fault for every line of `body` that holds a NUL byte; `above` lines stand before it in the file."""
+    """Add a fault for every line of `body` that holds a NUL byte; `above` lines stand before it."""
     for number, line in enumerate(body.split(b"\n"), start=above + 1):
         at = line.find(0)
         if at >= 0:

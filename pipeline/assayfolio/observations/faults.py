@@ -134,7 +134,9 @@ def raise_in_files(files: Sequence[Sequence[FaultList]], more: str = "") -> None
     names = f"{names} and {len(faulty) - 2} more" if len(faulty) > 2 else names
     noun = "fault" if count == 1 else "faults"
     hidden = count - sum(number for _, number in told)
-    raise DataError(f"{names} cannot be used: {count} {noun}{more}", tuple(fault for fault, _ in told), hidden)
+    raise DataError(
+        f"{names} cannot be used: {count} {noun}{more}", tuple(fault for fault, _ in told), hidden
+    )
 
 
 def refusal(

@@ -57,7 +57,7 @@ def registration_section(content: ProtocolInput, numbering: Numbering, number: i
             prose(
                 "The plan counts as registered from the entry “registered” of the audit trail that holds the "
                 "seal of this protocol’s folio, made just after this document. Times are by the computer’s "
-                "clock; the numbers of the entries prove their order."
+                "clock; their order is that of the numbers of the entries."
             ),
             "note",
         ),

@@ -13,8 +13,8 @@ from assayfolio.worksheet.rows import WorksheetRow
 
 _MOST_IN_TABLE = 400
 _NO_POWER = (
-    "The plan states no difference to be seen, so no power was computed, and nothing here says whether the "
-    "planned numbers of values are enough."
+    "The plan does not say which difference has to be seen, so no power was computed, and nothing says "
+    "whether the planned numbers of values are enough."
 )
 
 

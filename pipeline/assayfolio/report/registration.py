@@ -6,7 +6,7 @@ from assayfolio.report.numbering import Part
 from assayfolio.report.prose import Prose, prose
 from assayfolio.report.wording import EXPLORATORY, NOT_REGISTERED, STANDING, counted
 
-_CLOCK = "Times are by the computer’s clock; the numbers of the trail’s entries prove their order."
+_CLOCK = "Times are by the computer’s clock; their order is that of the numbers of the trail’s entries."
 REGISTERED_FAMILY = "registered before the data were seen"
 _LATE_FAMILY = "exploratory, as the plan was registered after the data were seen"
 _CHANGED_FAMILY = "exploratory, as it was not registered in this form before the data were seen"

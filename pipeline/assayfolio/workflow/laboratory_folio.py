@@ -68,14 +68,14 @@ def seal_in_workspace(workspace: Workspace, record: Record) -> SealedRecord:
     with trail_book(workspace, WAIT_SECONDS) as trail:
         found_trail(workspace, trail)
         acknowledge_interruptions(workspace, trail)
-        return seal_in_trail(workspace, trail, record)
+        return seal_in_trail(workspace, trail, record, RECORD_SEALED)
 
 
 def seal_in_trail(
     workspace: Workspace,
     trail: TrailWriter,
     record: Record,
-    action: str = RECORD_SEALED,
+    action: str,
     about: str | None = None,
 ) -> SealedRecord:
     """The same with the trail at hand; the entry with the seal is an `action` on the subject `about`."""

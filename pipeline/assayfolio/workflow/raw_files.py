@@ -119,10 +119,11 @@ def _refuse_names(paths: Sequence[Path]) -> None:
             faults.append(Fault(Place(shown_path(path)), f"{path.name!r}: {why}", "rename the file"))
     advice = "a folio keeps the data files side by side; rename one"
     first: dict[str, Path] = {}
-    for path in paths:
-        earlier = first.setdefault(path.name, path)
-        if earlier is not path:
-            faults.append(Fault(Place(shown_path(path)), _same_name(earlier, path), advice))
+    faults += [
+        Fault(Place(shown_path(path)), _same_name(earlier, path), advice)
+        for path in paths
+        if (earlier := first.setdefault(path.name, path)) is not path
+    ]
     for words in collisions(list(first)):
         faults.append(Fault(Place(shown_path(paths[0].parent)), words, advice))
     if faults:

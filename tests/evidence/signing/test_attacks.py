@@ -20,6 +20,7 @@ def test_the_report_that_is_attacked_is_without_fault():
 
 
 @pytest.mark.parametrize("attack", ATTACKS, ids=IDS)
+@pytest.mark.requirement("SIGN-3")
 def test_an_attack_is_found_and_named(attack):
     attacked = attack.make()
     findings = attacked.findings()
@@ -30,6 +31,7 @@ def test_an_attack_is_found_and_named(attack):
 
 @settings(max_examples=40)
 @given(st.data())
+@pytest.mark.requirement("SIGN-3")
 def test_any_single_byte_changed_after_the_sealed_report_is_found(data):
     pdf, start = signed_report().report.pdf, len(signed_report().report.unsigned)
     place = data.draw(st.integers(start, len(pdf) - 1))

@@ -57,6 +57,7 @@ def test_a_later_revocation_leaves_the_order_unproven_by_the_signers_clock():
     assert "not proven" in outcome.words
 
 
+@pytest.mark.requirement("SIGN-12")
 def test_a_witnessed_trail_proves_that_a_signature_came_before_the_revocation():
     seen = statement("approver").time + timedelta(minutes=5)
     findings = revoked(24, proven_by={3: seen}).findings()
@@ -79,6 +80,7 @@ def test_the_newest_of_several_lists_counts_in_any_order():
         assert found(believing(revocation_lists=lists), 1, "not revoked when signed").outcome == "failed"
 
 
+@pytest.mark.requirement("SIGN-11")
 def test_a_certificate_that_runs_out_later_does_not_matter():
     late = replace(signed_report(), when=CHECKED.replace(year=2044))
     assert late.findings().outcome == "passed"

@@ -197,6 +197,7 @@ def test_a_certificate_says_whom_it_is_for_and_by_whom(ada):
     assert not facts.valid_at(FOUNDED - timedelta(seconds=1))
 
 
+@pytest.mark.requirement("SIGN-10")
 def test_the_person_keeps_the_key_the_authority_sees_the_request_alone():
     key = new_key()
     request = certificate_request("Ada Meadow", "ameadow", key)
@@ -246,6 +247,7 @@ def test_a_renewal_is_for_the_same_person_with_a_fresh_key_and_for_longer(ada):
         (Enrolment("Bert Lane", "blane", "33" * 32), "already enrolled for Bert Lane"),
     ],
 )
+@pytest.mark.requirement("SIGN-5")
 def test_one_certificate_a_person_one_person_a_certificate(new, clash):
     enrolled = (
         Enrolment("Ada Meadow", "ameadow", "11" * 32),

@@ -62,6 +62,7 @@ def test_apart_from_the_signature_value_the_same_statement_adds_the_same_bytes()
     assert first == second
 
 
+@pytest.mark.requirement("SIGN-1", "SIGN-16")
 def test_the_signature_itself_says_who_when_in_which_role_and_what_it_means():
     found = PdfFileReader(io.BytesIO(signed_report().report.pdf)).embedded_signatures
     for embedded, (role, (name, _, meaning)) in zip(found, PEOPLE.items(), strict=True):
@@ -118,6 +119,7 @@ def test_the_library_s_own_analysis_of_changes_after_the_first_signature_agrees(
 
 
 @pytest.mark.needs("pdftotext")
+@pytest.mark.requirement("SIGN-1", "SIGN-2", "REPORT-22")
 def test_the_page_shows_name_date_with_offset_role_and_meaning(signed_file):
     shown = subprocess.run(
         ["pdftotext", "-f", "1", "-l", "1", "-enc", "UTF-8", signed_file, "-"],
@@ -179,12 +181,14 @@ def test_a_field_that_is_not_there_cannot_be_signed():
     refused("has no signature field author-2", field="author-2")
 
 
+@pytest.mark.requirement("SIGN-10")
 def test_nobody_signs_under_another_s_name():
     refused("is that of Björn Łęcki", by=office().people["reviewer"])
     refused("is that of Ada Meadow", person="Dora Hill")
 
 
 @pytest.mark.parametrize("away", [timedelta(days=-400), timedelta(days=16 * 365)])
+@pytest.mark.requirement("SIGN-11")
 def test_a_certificate_signs_only_while_it_is_valid(away):
     refused("not at the time of signing", time=SIGNED + away)
 

@@ -64,6 +64,7 @@ def time_words(findings) -> list[tuple[str, str]]:
     ]
 
 
+@pytest.mark.requirement("SIGN-4")
 def test_a_stamped_signature_is_checked_without_a_network(stamped, house):
     findings = believing(stamped, house).findings()
     assert findings.outcome == "passed", findings.failures
@@ -126,6 +127,7 @@ def revocation_of_author(findings):
     return next(each for each in findings.signatures[0].findings if each.check == "not revoked when signed")
 
 
+@pytest.mark.requirement("SIGN-12")
 def test_a_stamp_proves_that_a_signature_came_before_the_revocation(stamped, house):
     found = revocation_of_author(revoked(stamped, house, now() + timedelta(hours=2)).findings())
     assert found.outcome == "passed"

@@ -75,6 +75,7 @@ def test_a_token_signs_and_the_whole_check_passes(place):
 
 
 @pytest.mark.parametrize("pin", ["", "111111", "825372"])
+@pytest.mark.requirement("SIGN-9")
 def test_a_token_without_its_pin_does_not_sign(place, pin):
     with pytest.raises(WrongPassphraseError), open_token(place, pin):
         pytest.fail("the token opened")
