@@ -2,6 +2,7 @@
 
 from collections.abc import Callable, Iterator, Sequence
 from dataclasses import dataclass, field
+from functools import partial
 
 from assayfolio.observations.faults import FaultList, listed
 from assayfolio.observations.labels import as_seen, first_unsettable, unprintable
@@ -21,14 +22,14 @@ class Tally:
     """One level as it comes in: where its rows stand, how many there are, and how many replicates.
 
     `surplus` is the place of the first replicate beyond the planned number, `twin` an earlier level that
-    looks the same. `units` holds the replicates that have a name.
+    looks the same. `units` holds the replicates that have a name. `first` is None for a sound name, of which
+    nobody asks where it stands; `last` is kept where a number is planned.
     """
 
-    first: Where
-    last: Callable[[], Where]
+    first: Where | None
     planned: int | None
-    sound: bool
     twin: str | None = None
+    last: Callable[[], Where] | None = None
     rows: int = 0
     n: int = 0
     surplus: Where | None = None
@@ -55,7 +56,8 @@ class LevelCount:
         if tally is None:
             tally = self._tallies[level] = self._new_tally(level, where)
         tally.rows += 1
-        tally.last = where
+        if tally.planned is not None:
+            tally.last = where
         if unit is not None:
             if unit in tally.units:
                 return
@@ -71,7 +73,7 @@ class LevelCount:
         """
         tally = self._tallies.get(level)
         if tally is None:
-            tally = self._tallies[level] = self._new_tally(level, _known(where(0)))
+            tally = self._tallies[level] = self._new_tally(level, partial(where, 0))
         tally.rows += count
         tally.n += count
         if tally.planned is None:
@@ -92,7 +94,7 @@ class LevelCount:
     def add_name_faults(self, faults: Sequence[FaultList]) -> None:
         """Add one fault for each level whose name cannot be taken, at its first row; a list a file."""
         for level, tally in self._tallies.items():
-            if tally.sound:
+            if tally.first is None:
                 continue
             # Finding the nearest name is slow, so it is left out for faults that are only counted.
             file, line, column = tally.first
@@ -118,20 +120,24 @@ class LevelCount:
 
     def _misfit(self, level: str) -> Iterator[tuple[Where, str, str]]:
         tally = self._tallies.get(level)
-        if tally is None or not tally.sound or tally.planned is None or tally.n == tally.planned:
+        if tally is None or tally.first is not None or tally.planned is None or tally.n == tally.planned:
             return
+        place = tally.surplus or (tally.last() if tally.last else None)
+        if place is None:
+            return  # a level is counted with its rows, of which one is the last
         what = " replicates" if tally.units else ""
         found = f"level {shown(level)}: found {tally.n}{what}, planned {tally.planned}"
         which = "its first row too many is here" if tally.surplus else "its last row is here"
         advice = f"{which}; {what.strip() or 'rows'} and planned replicates have to agree"
-        yield tally.surplus or tally.last(), found, advice
+        yield place, found, advice
 
     def _new_tally(self, level: str, where: Callable[[], Where]) -> Tally:
         planned = self._replicates if isinstance(self._replicates, int) else self._by_level.get(level)
         twin = self._seen.setdefault(as_seen(level), level)
         known = twin == level == level.strip() if self._declared is None else level in self._declared
         fits = first_unsettable(level) is None and len(level) <= LONGEST_LABEL
-        return Tally(where(), where, planned, known and fits, None if twin == level else twin)
+        first = None if known and fits else where()
+        return Tally(first, planned, None if twin == level else twin)
 
     def _name_fault(self, level: str, twin: str | None) -> tuple[str, str]:
         bad = first_unsettable(level)

@@ -104,6 +104,31 @@ class Lines(Sequence[str]):
         return self.at_hand[index]
 
 
+class PlainLines(Sequence[str]):
+    """The lines of a stretch by their numbers in the file, from `first` on, cut out as they are asked for."""
+
+    def __init__(self, data: bytes, first: int) -> None:
+        self._data = data
+        self._first = first
+        self._ends = np.flatnonzero(np.frombuffer(data, dtype=np.uint8) == _LINE_END)
+
+    def __len__(self) -> int:
+        return self._first + len(self._ends)
+
+    @overload
+    def __getitem__(self, at: int) -> str: ...
+
+    @overload
+    def __getitem__(self, at: slice) -> Sequence[str]: ...
+
+    def __getitem__(self, at: int | slice) -> str | Sequence[str]:
+        if isinstance(at, slice):
+            raise TypeError("lines are given one by one")
+        index = at - self._first
+        start = int(self._ends[index - 1]) + 1 if index else 0
+        return self._data[start : int(self._ends[index])].decode("utf-8")
+
+
 def go_through(
     feed: Feed,
     separator: str,

@@ -21,12 +21,14 @@ from assayfolio.observations.layout import MOST_LEVELS, extras_of, received_rows
 from assayfolio.observations.long_text import BLOCK, LongFile, UnfitTextError, plain_lines, refuse_unfit_text
 from assayfolio.observations.plain_stretch import PlainStretches, Stretch
 from assayfolio.observations.received import Received, SheetRow
-from assayfolio.observations.row_stretches import Feed, Lines, go_through
+from assayfolio.observations.row_stretches import Feed, Lines, PlainLines, go_through
 from assayfolio.observations.rows import Broken, Row, rows
 from assayfolio.observations.sheets import Sheet, wanted_columns
 from assayfolio.observations.text_file import cells_above, guard_notice, guarded_levels, unguarded_row
 from assayfolio.observations.values import Observations, RawFile
 from assayfolio.study.plan import DataPlan, MeasurementFact
+
+_HEADER_ROOM = 1 << 17
 
 
 def kept_from_streaming(plan: DataPlan) -> str | None:
@@ -95,9 +97,10 @@ def _opened(file: LongFile, plan: DataPlan, wanted: Sequence[str], faults: Fault
     while not _holds_header(head, plan.header_row) and (more := next(stretches, b"")):
         head += more
     mark = utf8_mark(head, file.name)
-    text = plain_lines(head[len(mark) :]).decode("utf-8")
+    body = plain_lines(head[len(mark) :])
+    text = body.decode("utf-8")
     refuse_empty(text, file.name)
-    lines = text.split("\n")[:-1]
+    lines = _around_header(text, plan.header_row).split("\n")[:-1]
     header = find_header(lines, plan.header_row - 1, wanted, faults)
     character = CHARACTERS[header.separator]
     raw = RawFile(
@@ -111,8 +114,26 @@ def _opened(file: LongFile, plan: DataPlan, wanted: Sequence[str], faults: Fault
         header_row=plan.header_row,
         metadata=tuple(cells_above(lines, at, character, file.name) for at in range(plan.header_row - 1)),
     )
-    below = "".join(f"{line}\n" for line in lines[header.next_line :]).encode()
+    below = body[_end_of_line(body, header.next_line) :]
     return _Opened(header, raw, Feed(stretches, below, header.next_line, file.block // 2))
+
+
+def _around_header(text: str, header_row: int) -> str:
+    """The lines of `text` down to the header and some more: as much as its cells may take."""
+    at = 0
+    for _ in range(header_row):
+        at = text.find("\n", at) + 1
+        if not at:
+            return text
+    return text[: text.find("\n", at + _HEADER_ROOM) + 1] or text
+
+
+def _end_of_line(body: bytes, number: int) -> int:
+    """Where line `number` of `body` ends; lines count from one, and 0 is before the first."""
+    end = 0
+    for _ in range(number):
+        end = body.index(b"\n", end) + 1
+    return end
 
 
 def _holds_header(head: bytes, header_row: int) -> bool:
@@ -155,11 +176,11 @@ class _FileTaking:
             return
         self._taken = True
         labels = self._names(stretch.labels)
-        lines: list[Lines] = []
+        lines: list[PlainLines] = []
 
         def rows_at(numbers: Iterable[int]) -> Iterator[Row | Broken]:
             if not lines:
-                lines.append(Lines(body, line))
+                lines.append(PlainLines(body, line))
             for number in numbers:
                 yield next(rows(lines[0], self.opened.separator, line + number))
 
@@ -178,7 +199,9 @@ class _FileTaking:
         if not self._gathering.full:
             self._gathering.take_rows(self._at, self._received(found, lambda: lines))
 
-    def _received(self, found: Iterator[Row | Broken], lines: Callable[[], Lines]) -> Iterator[Received]:
+    def _received(
+        self, found: Iterator[Row | Broken], lines: Callable[[], Sequence[str]]
+    ) -> Iterator[Received]:
         """The values in rows, as received; `lines` are those that the rows stand on."""
 
         def loose(row: SheetRow, at: int) -> bool:

@@ -23,6 +23,7 @@ DISTINCT_VALUES: Final = 8
 """Fewer different values may have a common multiple by chance."""
 
 _LIMB: Final = 16
+_FIRST: Final = 1000
 _EXACT: Final = 1 << 53
 
 
@@ -86,12 +87,14 @@ class UnitTally:
     def _find_step(self, shifted: Integers) -> None:
         """Keep the greatest common divisor of all differences from the origin, and a few distinct ones."""
         if len(self.distinct) < DISTINCT_VALUES:
-            few = np.unique(shifted)[:DISTINCT_VALUES]
-            self.distinct.update(few.tolist())
+            few = shifted[:_FIRST]
+            if len(np.unique(few)) < DISTINCT_VALUES:
+                few = shifted
+            self.distinct.update(np.unique(few)[:DISTINCT_VALUES].tolist())
         if self.step == 1:
             return
         if not self.step:
-            self.step = int(np.gcd.reduce(shifted[:1000]))
+            self.step = int(np.gcd.reduce(shifted[:_FIRST]))
         off = shifted % self.step != 0 if self.step else shifted != 0
         if off.any():
             self.step = gcd(self.step, int(np.gcd.reduce(shifted[off])))

@@ -10,16 +10,19 @@ if TYPE_CHECKING:
 
 
 class TextColumns:
-    """Takes the columns at given positions out of stretches of text; `labels` are those with few entries."""
+    """Takes the columns at given positions out of stretches of text.
+
+    `labels` are those with few entries: they come dictionary-encoded, entries in order of first appearance.
+    """
 
     def __init__(self, width: int, separator: str, texts: Sequence[int], labels: Sequence[int]) -> None:
         import pyarrow as pa
         import pyarrow.csv as csv
 
         names = [str(at) for at in range(width)]
-        types: dict[str, Any] = {str(at): pa.string() for at in texts}
-        types |= {str(at): pa.dictionary(pa.int32(), pa.string()) for at in labels}
+        types: dict[str, Any] = {str(at): pa.string() for at in (*texts, *labels)}
         self._names = names
+        self._labels = frozenset(labels)
         self._separator = separator
         self._convert = csv.ConvertOptions(
             check_utf8=False,
@@ -55,4 +58,8 @@ class TextColumns:
             return None
         if table.num_rows != line_count(rows):
             return None
-        return {int(name): table.column(name).chunk(0) for name in table.column_names}
+        columns = {int(name): table.column(name).chunk(0) for name in table.column_names}
+        # Encoding afterwards is quicker than letting the reader do it.
+        return {
+            at: column.dictionary_encode() if at in self._labels else column for at, column in columns.items()
+        }
