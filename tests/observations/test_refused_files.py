@@ -569,11 +569,11 @@ def test_a_fault_in_every_row_is_one_line_with_the_first_places() -> None:
 
 def test_entries_of_different_columns_are_not_alike() -> None:
     rows = "".join(f"kit-a,{n}x,{n}y\n" for n in range(6))
-    error = refused(f"method,nitrate,nitrite\n{rows}kit-b,1,1\n", replace(TWO, order=None))
-    assert [fault.found.partition(" holds")[0] for fault in error.faults] == [
-        "column `nitrate`",
-        "column `nitrite`",
-    ]
+    content = f"method,nitrate,nitrite\n{rows}kit-b,1,1\n"
+    assert [
+        (place, found.partition(" holds")[0])
+        for place, found in refused_together(content, replace(TWO, order=None))
+    ] == [("2:7", "column `nitrate`"), ("2:10", "column `nitrite`")]
 
 
 def test_beyond_fifty_kinds_of_fault_the_rest_is_counted() -> None:

@@ -126,7 +126,7 @@ REQUIRED_IN_THE_REPORT = [
     "assayfolio verify runs/WTR-017/run-0001",
     "sha256sum -c manifest-sha256.txt",
     "follow from the listing in section 9",
-    "signed on a copy outside the folio",
+    "Signed it lies beside, as sign-off/report.pdf",
     "assayfolio run configs/nitrate.yaml",
     "findings.json (Findings",
 ]

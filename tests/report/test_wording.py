@@ -218,6 +218,6 @@ def test_no_line_ends_between_a_number_and_its_unit():
 
 
 def test_without_planned_signatures_nothing_is_said_about_signing():
-    signing = "signed on a copy outside the folio"
+    signing = "Signed it lies beside, as sign-off/report.pdf"
     assert signing in words_of(compose(CASES["balanced"]()))
     assert signing not in words_of(compose(CASES["single values"]()))

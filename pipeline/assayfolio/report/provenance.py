@@ -13,8 +13,9 @@ from assayfolio.report.wording import counted, first_of
 
 _MOST_PATHS = 8
 _SIGNING = (
-    "~Signatures: the file in data/ stays as it was sealed. Signed it lies beside, as sign-off/report.pdf, with "
-    "a record of each signature; #assayfolio verify# says which of them hold, and what they were made for.~"
+    "~Signatures: the file in data/ stays as it was sealed. Signed it lies beside, as sign-off/report.pdf, "
+    "with a record of each signature; #assayfolio verify# says which of them hold, and what they were made "
+    "for.~"
 )
 
 
