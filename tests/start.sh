@@ -12,11 +12,12 @@ checkout=$(CDPATH='' cd -- "$(dirname -- "$0")/.." && pwd -P)
 . "$checkout/pipeline/setup.sh"
 
 # Outside programs that tests ask: git about the checkout, PDF tools and Java (for the PDF/A and PDF/UA validator)
-# about what assayfolio writes.
-debian_tools="git qpdf poppler-utils default-jre-headless libjaxb-java"
+# about what assayfolio writes, openssl about signatures and time stamps, softhsm2 for a key on a token, chromium for
+# the pages of the register.
+debian_tools="git qpdf poppler-utils default-jre-headless libjaxb-java openssl softhsm2 chromium"
 
 missing_tools() {
-    for tool in git qpdf pdfinfo pdffonts pdftoppm java; do
+    for tool in git qpdf pdfinfo pdffonts pdftoppm pdfsig java openssl softhsm2-util chromium; do
         command -v "$tool" >/dev/null 2>&1 || printf ' %s' "$tool"
     done
     [ -e /usr/share/java/jaxb-runtime.jar ] || printf ' libjaxb-java'
