@@ -47,7 +47,10 @@ from assayfolio.errors import ExitCode, InputError
 @sweep_options
 @click.option("--restored", metavar="TEXT", help="With --all: record that this came back from a backup.")
 @click.option(
-    "--output", metavar="DIR", type=click.Path(path_type=Path, file_okay=False), help="Where the summary goes."
+    "--output",
+    metavar="DIR",
+    type=click.Path(path_type=Path, file_okay=False),
+    help="Where the summary goes.",
 )
 @json_option
 def verify(
@@ -72,7 +75,7 @@ def verify(
     mentioned, too: that is information and changes no exit code. Nothing is repaired.
 
     With --all the files are read on all processors, and one summary (PDF, CSV) is sealed at the end; --sample
-    and --seed draw some of the folios at random. --restored TEXT says which backup a workspace was brought back
+    and --seed draw some folios at random. --restored TEXT says which backup a workspace was brought back
     from; the summary is then the dated record of that.
     """
     from assayfolio.workflow.audit import (

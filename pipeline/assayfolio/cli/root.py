@@ -40,7 +40,26 @@ def cli() -> None:
     """
 
 
-for command in (workspace, check, power, worksheet, preregister, amend, deviation, run, verify, rerun, archive, trail, trend_command, index, settings, void, sign, signer):
+for command in (
+    workspace,
+    check,
+    power,
+    worksheet,
+    preregister,
+    amend,
+    deviation,
+    run,
+    verify,
+    rerun,
+    archive,
+    trail,
+    trend_command,
+    index,
+    settings,
+    void,
+    sign,
+    signer,
+):
     cli.add_command(command)
 
 

@@ -39,8 +39,8 @@ def _record(folio: FolioReading, tally: Tally) -> Mapping[str, Any] | None:
     newer = None if folio.run is None else newer_format(folio.run)
     if newer is not None:
         tally.unchecked.append(
-            f"{RUN_FILE} has the format {newer}, made by a newer version of this program; this one reads up to "
-            f"{RUN_FAMILY}{RUN_NUMBER}"
+            f"{RUN_FILE} has the format {newer}, made by a newer version of this program; this one reads up "
+            f"to {RUN_FAMILY}{RUN_NUMBER}"
         )
         return None
     if content_of(folio, RUN_FILE, tally) is not None and folio.run is None:
