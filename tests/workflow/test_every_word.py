@@ -10,6 +10,8 @@ import pytest
 
 from assayfolio.errors import StudyError
 from assayfolio.study import vocabulary
+from support.data_studies import DEFINITIONS as DATA_DEFINITIONS
+from support.data_studies import STUDIES
 from support.option_studies import DEFINITIONS
 from support.shown_beyond import (
     CHECKS,
@@ -21,12 +23,17 @@ from support.shown_beyond import (
 from support.shown_comparisons import ACROSS, ADJUSTMENTS, ALTERNATIVES, FAMILY_KINDS, OMNIBUS
 from support.shown_precision_and_power import ALLOCATIONS, CONDITIONS, CRITERIA
 from support.studies import study_of
-from support.workspaces import STUDY, Bench
+from support.workspaces import Bench
 
 # Where the words of each tuple of the vocabulary stand in a study definition.
 PLACES_OF_WORDS = {
+    "ENCODINGS": ("data.encoding",),
+    "LAYOUTS": ("data.layout",),
     "MISSING": ("data.missing",),
     "BELOW_LIMIT": ("data.below-limit",),
+    "ABOVE_LIMIT": ("data.above-limit",),
+    "CHART_QUANTITIES": ("trend.quantities",),
+    "RUN_RULES": ("trend.rules",),
     "DECIMAL_MARKS": ("data.decimal-mark",),
     "EFFECTS": ("design.effects",),
     "VARIANCES": ("design.variances",),
@@ -49,6 +56,14 @@ PLACES_OF_WORDS = {
 SECTIONS_OF_KEYS = {
     "STUDY_KEYS": "",
     "DATA_KEYS": "data",
+    "MEASUREMENT_KEYS": "measurement",
+    "FACT_KEYS": "measurement.item",
+    "WORKSHEET_KEYS": "worksheet",
+    "EXCLUSION_FILE_KEYS": "file of exclusions",
+    "EXCLUSION_KEYS": "file of exclusions.exclusions",
+    "TREND_KEYS": "trend",
+    "BASELINE_KEYS": "trend.baseline",
+    "TREND_CRITERION_KEYS": "trend.criteria",
     "DESIGN_KEYS": "design",
     "COMPARISON_KEYS": "comparisons",
     "CONTRAST_KEYS": "comparisons.contrasts",
@@ -67,7 +82,6 @@ NOT_OF_A_STUDY = {
     "REQUIREMENTS",
     "FALSE_DISCOVERY_WORDS",
 }
-NOT_COMPUTED = {"MISSING": {"omit"}, "BELOW_LIMIT": {"omit", "half-limit", "limit"}}
 LISTS_OF_WORDS = {
     name: words for name, words in vars(vocabulary).items() if name.isupper() and isinstance(words, tuple)
 }
@@ -86,7 +100,9 @@ def typed(part: Any, place: str = "") -> Iterator[tuple[str, str, str]]:
             yield from typed(value, f"{place}.{key}".lstrip("."))
 
 
-TYPED = {entry for definition in DEFINITIONS.values() for entry in typed(definition)}
+TYPED = {
+    entry for definition in (*DEFINITIONS.values(), *DATA_DEFINITIONS.values()) for entry in typed(definition)
+}
 
 
 def words_at(place: str) -> set[str]:
@@ -101,7 +117,7 @@ def test_it_is_known_where_in_a_study_every_list_of_words_belongs():
 @pytest.mark.parametrize("name", PLACES_OF_WORDS)
 def test_every_word_is_used_in_a_study(name):
     for place in PLACES_OF_WORDS[name]:
-        assert words_at(place) == set(LISTS_OF_WORDS[name]) - NOT_COMPUTED.get(name, set()), place
+        assert words_at(place) == set(LISTS_OF_WORDS[name]), place
 
 
 @pytest.mark.parametrize("name", SECTIONS_OF_KEYS)
@@ -110,16 +126,19 @@ def test_every_key_is_used_in_a_study(name):
     assert used == set(LISTS_OF_WORDS[name])
 
 
-@pytest.mark.parametrize(
-    ("key", "word"),
-    [(PLACES_OF_WORDS[name][0], word) for name, words in NOT_COMPUTED.items() for word in sorted(words)],
-)
-def test_a_word_that_is_not_computed_yet_is_refused(key, word, tmp_path):
-    section, _, name = key.partition(".")
-    bench = Bench(tmp_path / "w", STUDY.replace(f"{section}:\n", f"{section}:\n  {name}: {word}\n", 1), None)
-    answer = bench("check", bench.study)
-    assert answer.code == 2
-    assert f"{name}: refuse" in answer.err
+@pytest.mark.parametrize("name", STUDIES)
+def test_a_study_of_every_word_about_data_is_run_and_charted(name, tmp_path):
+    study, files = STUDIES[name]
+    bench = Bench(tmp_path / "w", study, None)
+    for path, content in files.items():
+        target = bench.study.parent / path
+        target.parent.mkdir(parents=True, exist_ok=True)
+        target.write_bytes(content)
+    answer = bench("run", bench.study)
+    assert answer.code == 0, answer.err
+    if "trend" in DATA_DEFINITIONS[name]:
+        charted = bench("trend", bench.study)
+        assert charted.code == 0, charted.err
 
 
 FAMILIES = {
