@@ -56,7 +56,7 @@ class CensoredLevel:
 
 @dataclass(frozen=True, slots=True)
 class PolicyRow:
-    """One comparison under a policy."""
+    """One comparison under a policy, test of equivalence or ratio of variances."""
 
     label: str
     estimate: Fraction
@@ -66,7 +66,7 @@ class PolicyRow:
 
 @dataclass(frozen=True, slots=True)
 class PolicyFamily:
-    """A family of comparisons under a policy."""
+    """A family of such rows under a policy; `name` is empty for the ratios of variances."""
 
     name: str
     rows: tuple[PolicyRow, ...]
@@ -77,7 +77,7 @@ class PolicyFindings:
     """The result under one policy for values below a limit, the rest as planned.
 
     `levels` holds level, number of values and mean; `p` and what follows are those of the planned overall
-    test, None where it is not assessable.
+    test, None where it is not assessable. `criteria` are the verdicts on the criteria, in the plan's order.
     """
 
     policy: str
@@ -87,6 +87,9 @@ class PolicyFindings:
     p_adjusted: float | None
     verdict: str
     comparisons: tuple[PolicyFamily, ...]
+    equivalence: tuple[PolicyFamily, ...]
+    spread: PolicyFamily | None
+    criteria: tuple[str, ...]
 
 
 @dataclass(frozen=True, slots=True)
@@ -95,7 +98,7 @@ class CensoringFindings:
 
     `levels` holds the levels that have such values. `sensitivity` is empty where none lies below a limit; a
     policy under which no analysis is possible is left out, with its reason among what is not reported.
-    `verdicts_agree` says whether overall verdict and comparisons are the same under all of it.
+    `verdicts_agree` says whether every planned verdict is the same under all of it.
     """
 
     below_limit: str

@@ -20,6 +20,7 @@ from assayfolio.findings_intake import (
     Deviation,
     ExclusionFindings,
     FlowFindings,
+    PolicyFamily,
     PolicyFindings,
 )
 
@@ -106,22 +107,27 @@ def _policy(found: PolicyFindings) -> Mapping[str, Json]:
         "p": found.p,
         "p_adjusted": found.p_adjusted,
         "verdict": found.verdict,
-        "comparisons": [
-            {
-                "name": family.name,
-                "rows": [
-                    {
-                        "label": row.label,
-                        "estimate": number_of(row.estimate),
-                        "p_adjusted": row.p_adjusted,
-                        "verdict": row.verdict,
-                    }
-                    for row in family.rows
-                ],
-            }
-            for family in found.comparisons
-        ],
+        "comparisons": [_policy_family(family) for family in found.comparisons],
+        "equivalence": [_policy_family(family) for family in found.equivalence],
+        "spread": [] if found.spread is None else _policy_rows(found.spread),
+        "criteria": list(found.criteria),
     }
+
+
+def _policy_family(family: PolicyFamily) -> Mapping[str, Json]:
+    return {"name": family.name, "rows": _policy_rows(family)}
+
+
+def _policy_rows(family: PolicyFamily) -> list[Json]:
+    return [
+        {
+            "label": row.label,
+            "estimate": number_of(row.estimate),
+            "p_adjusted": row.p_adjusted,
+            "verdict": row.verdict,
+        }
+        for row in family.rows
+    ]
 
 
 def equivalence_part(family: EquivalenceFamily) -> Mapping[str, Json]:

@@ -8,7 +8,7 @@ from fractions import Fraction
 
 from assayfolio.evaluation.subject import Subject, subject_of
 from assayfolio.exact import Decimal10
-from assayfolio.findings import NotReported, ResponseFindings
+from assayfolio.findings import NotReported, ResponseFindings, SpreadFindings
 from assayfolio.findings_intake import (
     CensoredLevel,
     CensoringFindings,
@@ -136,11 +136,29 @@ def _under(policy: BelowLimit, planned: bool, found: ResponseFindings) -> Policy
             )
             for family in found.comparisons
         ),
+        equivalence=tuple(
+            PolicyFamily(
+                family.name,
+                tuple(PolicyRow(row.label, row.estimate, row.p_adjusted, row.verdict) for row in family.rows),
+            )
+            for family in found.equivalence
+        ),
+        spread=None if found.spread is None else _spread(found.spread),
+        criteria=tuple(criterion.verdict for criterion in found.criteria),
     )
 
 
-def _verdicts(found: PolicyFindings) -> tuple[str, ...]:
-    return (found.verdict, *(row.verdict for family in found.comparisons for row in family.rows))
+def _spread(found: SpreadFindings) -> PolicyFamily:
+    return PolicyFamily(
+        "", tuple(PolicyRow(row.label, row.ratio, row.p_adjusted, row.verdict) for row in found.rows)
+    )
+
+
+def _verdicts(found: PolicyFindings) -> tuple[tuple[str, str, str], ...]:
+    """Every planned verdict, with what it is about: a family that cannot be formed is another answer."""
+    families = [*found.comparisons, *found.equivalence, *([found.spread] if found.spread else [])]
+    rows = [(family.name, row.label, row.verdict) for family in families for row in family.rows]
+    return (("", "", found.verdict), *rows, *(("", "", verdict) for verdict in found.criteria))
 
 
 def _censored_levels(observed: Observations) -> tuple[CensoredLevel, ...]:

@@ -57,11 +57,21 @@ def verdicts_of(basis: Basis, found: ResponseFindings) -> Verdicts:
 
 
 def policy_verdicts(basis: Basis, found: PolicyFindings) -> Verdicts:
-    """The verdicts of the overall test and of every comparison, under one policy."""
+    """The verdict on every planned question, under one policy."""
     verdicts = {Question(OVERALL, "", OVERALL): found.verdict}
     for family in found.comparisons:
         for row in family.rows:
             verdicts[Question("comparison", family.name, basis.label(row))] = row.verdict
+    claims = {claim.name: claim.claim for claim in basis.response.equivalence}
+    for family in found.equivalence:
+        for row in family.rows:
+            about = f"{claims.get(family.name, 'equivalence')} of {basis.label(row)}"
+            verdicts[Question("equivalence", family.name, about)] = row.verdict
+    for row in found.spread.rows if found.spread is not None else ():
+        verdicts[Question("spread", "", f"variances {row.label}")] = row.verdict
+    for one, verdict in zip(basis.response.criteria, found.criteria, strict=True):
+        about = f"{quantity_name(basis, one.quantity, one.level)} ({limit_words(one)})"
+        verdicts[Question("criterion", "", about)] = verdict
     return verdicts
 
 
@@ -128,7 +138,9 @@ def short_agreement(verdicts: Sequence[Verdicts], most: int) -> Prose:
     """The same in a few words, for the first page."""
     questions = differing(verdicts)
     if not questions:
-        return prose("{agreed} agree", agreed=agreed_words(verdicts))
+        questions = list(dict.fromkeys(question for one in verdicts for question in one))
+        verb = "agrees" if len(questions) == 1 else "agree"
+        return prose(f"{{agreed}} {verb}", agreed=agreed_words(verdicts))
     rest = len(questions) - most
     return prose(
         "#verdicts differ on# {named}{more}",

@@ -116,7 +116,12 @@ def _sensitivity(basis: Basis, found: CensoringFindings, numbering: Numbering) -
         _overall_table(basis, policies, numbering),
     ]
     names = dict.fromkeys(family.name for one in policies for family in one.comparisons)
-    return [*tables, *(_family_table(basis, policies, name, numbering) for name in names)]
+    tables += [_family_table(basis, policies, name, numbering) for name in names]
+    claims = dict.fromkeys(family.name for one in policies for family in one.equivalence)
+    tables += [_claim_table(basis, policies, name, numbering) for name in claims]
+    if any(one.spread is not None for one in policies):
+        tables.append(_spread_table(policies, numbering))
+    return tables
 
 
 def _overall_table(basis: Basis, policies: tuple[PolicyFindings, ...], numbering: Numbering) -> Table:
@@ -167,3 +172,41 @@ def _family_table(
     sides = [Side(policy_name(one), cells(one)) for one in policies]
     caption = prose("Comparisons under each way, {name}.", name=name)
     return side_by_side(numbering, caption, "Comparison", columns, sides)
+
+
+def _claim_table(
+    basis: Basis, policies: tuple[PolicyFindings, ...], name: str, numbering: Numbering
+) -> Table:
+    scale = basis.difference_scale
+    percent = any(claim.name == name and claim.scale == "percent" for claim in basis.response.equivalence)
+
+    def cells(one: PolicyFindings) -> dict[str, list[Words]]:
+        return {
+            basis.label(row): [
+                three_digits(row.estimate) if percent else scale.mean(row.estimate),
+                probability(row.p_adjusted, basis.response.alpha),
+                row_verdict(row.verdict),
+            ]
+            for family in one.equivalence
+            if family.name == name
+            for row in family.rows
+        }
+
+    columns = [
+        Column("Estimate", "%" if percent else scale.heading),
+        Column(prose("Adjusted *p*")),
+        Column("Equivalence", kind="words"),
+    ]
+    sides = [Side(policy_name(one), cells(one)) for one in policies]
+    caption = prose("Equivalence under each way, {name}.", name=name)
+    return side_by_side(numbering, caption, "Comparison", columns, sides)
+
+
+def _spread_table(policies: tuple[PolicyFindings, ...], numbering: Numbering) -> Table:
+    def cells(one: PolicyFindings) -> dict[str, list[Words]]:
+        rows = () if one.spread is None else one.spread.rows
+        return {row.label: [three_digits(row.estimate), row_verdict(row.verdict)] for row in rows}
+
+    columns = [Column("Ratio"), Column("Difference", kind="words")]
+    sides = [Side(policy_name(one), cells(one)) for one in policies]
+    return side_by_side(numbering, prose("Variances under each way."), "Comparison", columns, sides)

@@ -71,7 +71,9 @@ def files_words(basis: Basis) -> Words:
 def _opening(basis: Basis) -> Prose:
     files = basis.observations.files
     data = basis.study.data
-    every = " Every value is analysed as it was received." if is_whole(basis) else ""
+    put_in = any(row.kind != "measured" for row in basis.observations.rows)
+    whole = is_whole(basis) and not put_in and not data.convert
+    every = " Every value is analysed as it was received." if whole else ""
     marks = {raw.separator for raw in files} - {None}
     separated = f"columns separated by {listed(sorted(map(str, marks)))}, " if marks else ""
     read = prose(
