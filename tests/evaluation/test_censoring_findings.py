@@ -162,6 +162,7 @@ def test_the_document_has_it_all_under_its_keys():
     for one in part["sensitivity"]:
         assert set(one) == {
             *("policy", "planned", "levels", "p", "p_adjusted", "verdict", "comparisons"),
+            *("equivalence", "spread", "criteria"),
         }
         assert [family["name"] for family in one["comparisons"]] == ["all pairs", "to a"]
         assert set(one["comparisons"][0]["rows"][0]) == {"label", "estimate", "p_adjusted", "verdict"}
@@ -175,3 +176,37 @@ def test_a_value_that_was_put_in_does_not_make_the_record_look_finer_or_coarser(
     coarse = long_lines({"a": ["<1.00", "1", "2"], "b": ["2", "1", "1"]})
     names = [check.name for check in findings("limit", coarse, parts="").responses[0].checks]
     assert names == ["Resolution of the values"]
+
+
+def test_every_planned_question_is_answered_under_each_policy():
+    """Equivalence, variances and criteria can turn over where the overall test does not."""
+    data = long_lines({"a": [".110", ".111", ".109", ".110"], "b": [".112", ".108", "<0.100", ".111"]})
+    parts = (
+        "equivalence: [{name: within, against: a, margin: 0.02, adjust: none}]\n"
+        "spread: {against: a, adjust: none}\n"
+        "criteria: [{quantity: largest-difference, at-most: 0.01}]\n"
+    )
+    (response,) = findings("limit", data, parts=parts).responses
+    censoring = response.censoring
+    verdicts = {
+        one.policy: (
+            one.verdict,
+            one.equivalence[0].rows[0].verdict,
+            one.spread.rows[0].verdict,
+            *one.criteria,
+        )
+        for one in censoring.sensitivity
+    }
+    assert verdicts["limit"] == (
+        "difference not shown",
+        "equivalence shown",
+        "difference shown",
+        "criterion met",
+    )
+    assert verdicts["half-limit"] == (
+        "difference not shown",
+        "equivalence not shown",
+        "difference shown",
+        "criterion not met",
+    )
+    assert not censoring.verdicts_agree

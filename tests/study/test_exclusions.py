@@ -169,8 +169,8 @@ ONE_FAULT = {
     ),
     "a short reason": (
         CAUSE,
-        "outlier",
-        f"4:13: `exclusions.reason` is `outlier`, only 7 characters long - {REASON}",
+        "spilt",
+        f"4:13: `exclusions.reason` is `spilt`, only 5 characters long - {REASON}",
     ),
     "a reason that fits any value": (
         CAUSE,

@@ -160,4 +160,4 @@ STUDIES: dict[str, tuple[str, dict[str, bytes]]] = {
 DEFINITIONS: dict[str, dict[str, Any]] = {
     name: yaml.load(study, Loader=yaml.BaseLoader) for name, (study, _) in STUDIES.items()
 }
-DEFINITIONS["exclusions file"] = {"file of exclusions": yaml.load(LEFT_OUT, Loader=yaml.BaseLoader)}
+LEFT_OUT_AS_TYPED: dict[str, Any] = yaml.load(LEFT_OUT, Loader=yaml.BaseLoader)

@@ -92,7 +92,7 @@ def test_a_refused_run_leaves_nothing_but_its_entry(bench):
         answer = bench("run", bench.study)
     assert answer.code == 2
     assert "B. Berg has not the role" in answer.err
-    assert actions(bench) == ["founded", "settings", "attempt-refused"]
+    assert actions(bench) == ["founded", "attempt-refused"], "who may not work puts no settings in force"
     assert bench.files_in_runs() == {"audit-trail.jsonl", "audit-trail.head"}
 
 
@@ -156,3 +156,16 @@ def test_the_readme_names_every_command_with_its_roles(checkout):
 def test_the_readme_names_every_role_and_requirement_of_a_laboratory(checkout, word):
     section = (checkout / "README.md").read_text("utf-8").partition("## People, roles and settings")[2]
     assert word in section.partition("\n## ")[0]
+
+
+def test_a_list_that_is_not_in_force_names_nobody_in_the_trail(bench):
+    workspace = Workspace(bench.root)
+    with acting("ann"):
+        require(workspace, "run")
+    people = bench.root / "configs/people.yaml"
+    people.write_text(
+        PEOPLE.replace("A. Analyst", "Dr D. Director").replace("[author, runner]", "[approver]")
+    )
+    with acting("ann"), pytest.raises(NotAllowedError):
+        require(workspace, "run")
+    assert bench.entries()[-1]["details"]["by"] == {"person": "A. Analyst", "roles": ["author", "runner"]}

@@ -113,7 +113,7 @@ def allotted(seq, number, **inputs):
 def found(entries, **data):
     record = {"study": "TST-1", "protocols": []}
     digests = {path: digest * 64 for path, digest in data.items()}
-    return [one["what"] for one in departures(entries, record, digests)]
+    return [one["what"] for one in departures(entries, record, digests, None)]
 
 
 def test_data_that_came_after_a_run_on_other_data_are_late():
@@ -201,3 +201,25 @@ def test_the_lines_of_the_data_that_show_it_are_given():
     (deviation,) = date_deviations(study, observations, REGISTERED, RUN)
     assert deviation.lines == (3, 4)
     assert deviation.what.endswith("2031-03-01 to 2031-03-02")
+
+
+def test_exclusions_that_come_after_a_result_are_named(tmp_path):
+    study = PLANNED.replace("  factor:", "  exclusions: data/left-out.yaml\n  factor:", 1)
+    bench = Bench(tmp_path / "w", study)
+    left_out = bench.data.parent / "left-out.yaml"
+    left_out.write_text("exclusions: []\n")
+    bench.run()
+    assert deviations_of(bench, 1) == []
+    left_out.write_text("# looked at again\nexclusions: []\n")
+    bench.run()
+    (what,) = deviations_of(bench, 2)
+    assert what == "the exclusions are others than those that TST-1/run-0001 was computed with"
+    bench.study.write_text(PLANNED)
+    bench.run()
+    (what,) = deviations_of(bench, 3)
+    assert what == "nothing is excluded any more, after TST-1/run-0001 had been computed with exclusions"
+
+
+def deviations_of(bench, number):
+    findings = json.loads((bench.runs / f"TST-1/run-{number:04d}/data/findings.json").read_bytes())
+    return [one["what"] for one in findings["deviations"]]

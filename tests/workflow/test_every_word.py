@@ -11,7 +11,7 @@ import pytest
 from assayfolio.errors import StudyError
 from assayfolio.study import vocabulary
 from support.data_studies import DEFINITIONS as DATA_DEFINITIONS
-from support.data_studies import STUDIES
+from support.data_studies import LEFT_OUT_AS_TYPED, STUDIES
 from support.option_studies import DEFINITIONS
 from support.shown_beyond import (
     CHECKS,
@@ -59,8 +59,8 @@ SECTIONS_OF_KEYS = {
     "MEASUREMENT_KEYS": "measurement",
     "FACT_KEYS": "measurement.item",
     "WORKSHEET_KEYS": "worksheet",
-    "EXCLUSION_FILE_KEYS": "file of exclusions",
-    "EXCLUSION_KEYS": "file of exclusions.exclusions",
+    "EXCLUSION_FILE_KEYS": "left out",
+    "EXCLUSION_KEYS": "left out.exclusions",
     "TREND_KEYS": "trend",
     "BASELINE_KEYS": "trend.baseline",
     "TREND_CRITERION_KEYS": "trend.criteria",
@@ -101,7 +101,12 @@ def typed(part: Any, place: str = "") -> Iterator[tuple[str, str, str]]:
 
 
 TYPED = {
-    entry for definition in (*DEFINITIONS.values(), *DATA_DEFINITIONS.values()) for entry in typed(definition)
+    *(
+        entry
+        for definition in (*DEFINITIONS.values(), *DATA_DEFINITIONS.values())
+        for entry in typed(definition)
+    ),
+    *typed(LEFT_OUT_AS_TYPED, "left out"),
 }
 
 

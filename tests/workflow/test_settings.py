@@ -14,8 +14,8 @@ NOTE = "note: Accredited for water\n"
 def bench(tmp_path):
     """A laboratory with people whose settings are in the trail."""
     bench = staffed(Bench(tmp_path / "w"))
-    assert as_account(bench, "eve", "run", bench.study).code == 2
-    assert actions(bench) == ["founded", "settings", "attempt-refused"]
+    assert as_account(bench, "ann", "worksheet", bench.study).code == 2, "this study plans no order"
+    assert actions(bench) == ["founded", "settings"]
     return bench
 
 
@@ -68,7 +68,7 @@ class TestAChangeByOnePerson:
         add_to(bench, "lab.yaml", NOTE)
         answer = as_account(bench, "dot", "settings", "--reason", "The scope was extended in March")
         assert answer.code == 0
-        assert "note  not there -> Accredited for water" in answer.out
+        assert "note  none -> Accredited for water" in answer.out
         entry = bench.entries()[-1]
         assert entry["action"] == "settings"
         assert entry["reason"] == "The scope was extended in March"
@@ -83,9 +83,9 @@ class TestAChangeByOnePerson:
         add_to(bench, "lab.yaml", NOTE)
         answer = as_account(bench, "dot", "settings")
         assert answer.code == 2
-        assert "note  not there -> Accredited for water" in answer.err
+        assert "note  none -> Accredited for water" in answer.err
         assert "A reason is needed" in answer.err
-        assert actions(bench)[-1] == "attempt-refused"
+        assert actions(bench) == ["founded", "settings"], "nothing was entered"
 
     @pytest.mark.parametrize("reason", ["", "    ", "changed", "see above", "..........", "n/a"])
     def test_is_refused_for_a_reason_that_says_nothing(self, bench, reason):
@@ -206,7 +206,7 @@ class TestVerification:
         words = "\n".join(check.notes)
         assert "changed: configs/people.yaml is not as entry 2 has it in force" in words
         assert "people.ben.roles: reviewer in force, reviewer, runner in the file" in words
-        assert "note: not there in force, Accredited for water in the file" in words
+        assert "note: none in force, Accredited for water in the file" in words
 
     def test_names_a_file_that_is_missing_and_one_that_is_new(self, bench, tmp_path):
         (bench.root / "configs/people.yaml").unlink()
@@ -221,7 +221,7 @@ class TestVerification:
         as_account(bench, "dot", "settings", "--reason", REASON)
         check = settings_check(bench)
         assert check.outcome == "failed"
-        assert check.notes == ("configs/people.yaml: as entry 4 proposes, which nobody has confirmed yet",)
+        assert check.notes == ("configs/people.yaml: as entry 3 proposes, which nobody has confirmed yet",)
 
     def test_passes_a_trail_of_an_earlier_version_with_a_remark(self, tmp_path):
         bench = Bench(tmp_path / "w")

@@ -145,12 +145,13 @@ def trail(
     about_data: bool,
     as_json: bool,
 ) -> int:
-    """Show the audit trail, or every raw data file that it knows; or record that it was reviewed.
+    """Show the audit trail, or record that it was reviewed.
 
-    Oldest entry first; faults of the trail itself go to standard error, with exit code 1. With --exceptions,
-    failures, repeated runs, exclusions, late amendments, deviations, changes of roles and the like come
-    before everything else. With --data, each raw data file with its state: used in a completed run; open,
-    not in one yet; orphan, where no study definition in configs/ would bring it into one.
+    Or, with --data, every raw data file that it knows. Oldest entry first; faults of the trail itself
+    go to standard error, with exit code 1. With --exceptions, failures, repeated runs, exclusions, late
+    amendments, deviations, changes of roles and the like come before everything else. With --data, each
+    raw data file with its state: used in a completed run; open, not in one yet; orphan, where no study
+    definition in configs/ would bring it into one.
     """
     asked = {"who": who, "what": what, "when": when, "why": why, "study": study, "csv": csv_file}
     filters = {name: value for name, value in asked.items() if value is not None}

@@ -117,7 +117,7 @@ def _sign_one(
     return sign_folio(workspace, folio, role, _terminal_dialogue())
 
 
-@click.group()
+@click.group(epilog="\b\nExamples:\n  assayfolio signer enrol\n  assayfolio signer list")
 def signer() -> None:
     """Who signs here, with which certificate.
 

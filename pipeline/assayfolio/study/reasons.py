@@ -17,8 +17,9 @@ statistical statistically obvious obviously clear clearly evident evidently valu
 reading readings measurement measurements data point points row rows line sample samples replicate number
 test testing tests check tbd todo dummy placeholder text ok okay lorem ipsum dolor unknown reason reasons
 comment comments note notes remark remarks see above below applicable given stated report discussed agreed
-requested required necessary needed decided exclude excluded exclusion remove removed delete deleted reject
-rejected discard discarded drop dropped ignore ignored omit omitted left out
+requested required necessary needed decided grubbs dixon cochran out range fit fits failed fails fail
+representative expected what we because there does limit limits exclude excluded exclusion remove removed
+delete deleted reject rejected discard discarded drop dropped ignore ignored omit omitted left out
 """
 _EMPTY = frozenset(_FITS_ANY_VALUE.split())
 
@@ -29,12 +30,10 @@ def emptiness(reason: str) -> str | None:
     Refused: fewer than 10 characters, hardly any different letters, and words that fit any value, such as
     "obvious outlier". Whether what remains is true, only a person can judge.
     """
-    if len(reason) < SHORTEST_REASON:
-        return f"only {len(reason)} characters long"
     words = _WORDS.findall(reason.lower())
     letters = {character for word in words for character in word if character.isalpha()}
-    if len(letters) < _FEWEST_LETTERS:
-        return "no text"
-    if all(word.isdigit() or word in _EMPTY for word in words):
+    if len(letters) >= _FEWEST_LETTERS and all(word.isdigit() or word in _EMPTY for word in words):
         return "made of words that would fit any value"
-    return None
+    if len(reason) < SHORTEST_REASON:
+        return f"only {len(reason)} characters long"
+    return "no text" if len(letters) < _FEWEST_LETTERS else None

@@ -1,8 +1,13 @@
 """Who works here: the operating system's account, and the person and roles that it stands for."""
 
+from collections.abc import Sequence
+from contextlib import suppress
 from dataclasses import dataclass
 
+from assayfolio.canonical import Json
 from assayfolio.errors import AssayfolioError
+from assayfolio.evidence.settings import settings_in_force
+from assayfolio.evidence.trail import TrailEntry
 from assayfolio.study.laboratory import People
 from assayfolio.study.people import read_people
 from assayfolio.workflow import surroundings
@@ -41,6 +46,26 @@ def actor_among(people: People | None) -> Actor:
     if found is None:
         return Actor(account, None, (), None, people is not None)
     return Actor(account, found.person, found.roles, found.qualification, True)
+
+
+def person_in_force(workspace: Workspace, entries: Sequence[TrailEntry], account: str) -> dict[str, Json]:
+    """Person and roles of `account` by the list of people that `entries` put in force.
+
+    A list that was changed since then counts only when it has been entered; before the first settings are,
+    the list as it lies counts.
+    """
+    known = settings_in_force(entries)
+    people: People | None = None
+    with suppress(AssayfolioError):
+        if known is None or known.provisional:
+            people = people_of(workspace)
+        elif (text := known.texts[PEOPLE]) is not None:
+            people = read_people(text.encode("utf-8"), PEOPLE)
+    found = None if people is None else people.of(account)
+    return {
+        "person": None if found is None else found.person,
+        "roles": [] if found is None else list(found.roles),
+    }
 
 
 def people_of(workspace: Workspace) -> People | None:

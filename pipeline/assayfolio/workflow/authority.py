@@ -82,8 +82,10 @@ def require(workspace: Workspace, command: str) -> Actor:
 def allowed(workspace: Workspace, trail: TrailWriter, command: str) -> Actor:
     """The same with the trail at hand."""
     known = settings_in_force(trail.entries)
+    first: StandingSettings | None = None
     if known is None or known.provisional:
-        people = _first_people(workspace, trail)
+        first = _first_settings(workspace)
+        people = people_of(workspace) if first is None else _people_in_use(first)
     else:
         changed = changed_files(known, settings_texts(workspace))
         if changed:
@@ -94,20 +96,20 @@ def allowed(workspace: Workspace, trail: TrailWriter, command: str) -> Actor:
     why = may(actor, command)
     if why is not None:
         raise refused(trail, command, why, list(MAY[command]))
+    if first is not None:
+        enter_first_settings(trail, first)
     return actor
 
 
-def _first_people(workspace: Workspace, trail: TrailWriter) -> People | None:
-    """Everybody in a workspace whose settings are not in the trail yet; they are entered if they are usable.
+def _first_settings(workspace: Workspace) -> StandingSettings | None:
+    """The settings of a workspace that has none in force, to be entered by somebody who may work there.
 
-    Faults of `lab.yaml` are left for the command to tell, which reads it itself.
+    Faults of `lab.yaml` are left for the command to tell, which reads it itself: None.
     """
     try:
-        standing = standing_settings(workspace)
+        return standing_settings(workspace)
     except InputError:
-        return people_of(workspace)
-    enter_first_settings(trail, standing)
-    return _people_in_use(standing)
+        return None
 
 
 def _people_in_use(standing: StandingSettings) -> People | None:

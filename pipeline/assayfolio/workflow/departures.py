@@ -8,7 +8,7 @@ from typing import Any
 from assayfolio.canonical import Json
 from assayfolio.evidence.entries import TrailEntry
 from assayfolio.evidence.history import ALLOTTED, split_subject
-from assayfolio.evidence.register import ReceivedFile, data_digests, read_register
+from assayfolio.evidence.register import DataUse, ReceivedFile, data_digests, read_register
 from assayfolio.workflow.registration import BEFORE, minute_text
 
 _MOST_MOVES = 5
@@ -16,17 +16,23 @@ _BEYOND_KEEPING = timedelta(seconds=60)  # what a time source that keeps a clock
 
 
 def departures(
-    entries: Sequence[TrailEntry], record: Mapping[str, Any], data: Mapping[str, str]
+    entries: Sequence[TrailEntry],
+    record: Mapping[str, Any],
+    data: Mapping[str, str],
+    exclusions: str | None,
 ) -> list[dict[str, Json]]:
     """What the trail shows to have departed from the plan, each with `what` and `reason`.
 
-    `record` is the run's registration record so far, `data` its raw data files, SHA-256 by path.
+    `record` is the run's registration record so far, `data` its raw data files, SHA-256 by path, `exclusions`
+    the SHA-256 of its file of exclusions, None without one.
     """
-    received = read_register(entries).received
+    register = read_register(entries)
+    received = register.received
     found = [
         *_there_before(record, data),
         *_late(entries, record["study"], received, data),
         *_changed(received, data),
+        *_excluded_later(register.uses, record["study"], frozenset(data.values()), exclusions),
         *_clock(_of_study(entries, record["study"], data)),
     ]
     return [{"what": what, "reason": reason} for what, reason in found]
@@ -86,6 +92,25 @@ def _changed(received: Sequence[ReceivedFile], data: Mapping[str, str]) -> Itera
                 f"{path} was changed after it was first seen: it had other bytes on {minute_text(seen.time)}"
             )
             yield what, f"late data: SHA-256 {seen.sha256[:16]} then, {digest[:16]} now"
+
+
+def _excluded_later(
+    uses: Sequence[DataUse], study: str, data: frozenset[str], exclusions: str | None
+) -> Iterator[tuple[str, str]]:
+    """Exclusions that came, changed or went after these data had been analysed in another way."""
+    earlier = [use for use in uses if use.study == study and use.data == data and use.outcome == "completed"]
+    other = [use for use in earlier if use.exclusions != exclusions]
+    if not other or earlier[0].exclusions == exclusions:
+        return
+    first = earlier[0].subject
+    if exclusions is None:
+        what = f"nothing is excluded any more, after {first} had been computed with exclusions"
+    elif earlier[0].exclusions is None:
+        what = f"values were excluded after {first} had been computed with them"
+    else:
+        what = f"the exclusions are others than those that {first} was computed with"
+    reason = f"exclusions after a result: {len(other)} of {len(earlier)} earlier runs had others or none"
+    yield what, reason
 
 
 def _of_study(entries: Sequence[TrailEntry], study: str, data: Mapping[str, str]) -> Sequence[TrailEntry]:

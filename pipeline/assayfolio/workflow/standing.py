@@ -78,7 +78,8 @@ def standing_at_allotment(
         raise BusyError(f"Another plan of {study} was registered meanwhile; give the command again.")
     data = {file.path: file.sha256 for file in intake.files if file.role == "raw data"}
     record = registration_record(entries, intake.study, data)
-    record["departures"] = departures(entries, record, data)
+    exclusions = next((file.sha256 for file in intake.files if file.role == "exclusions"), None)
+    record["departures"] = departures(entries, record, data, exclusions)
     return Standing(record, deviations_record(entries, study), definitions_for_run(workspace, record))
 
 
