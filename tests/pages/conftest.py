@@ -11,9 +11,12 @@ from support.many_runs import run_rows, write_front
 CHROMIUM = shutil.which("chromium")
 
 
-@pytest.fixture(scope="session")
+@pytest.fixture(scope="module")
 def chromium():
-    """Debian's Chromium; one for all tests."""
+    """Debian's Chromium; one for the tests of a module.
+
+    It keeps an event loop running, which the signing of other modules' tests cannot do with.
+    """
     with sync_playwright() as play:
         browser = play.chromium.launch(executable_path=CHROMIUM)
         yield browser
