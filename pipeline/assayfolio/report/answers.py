@@ -15,7 +15,7 @@ from assayfolio.report.answers_beyond import (
     spread_card,
 )
 from assayfolio.report.answers_overall import overall_card
-from assayfolio.report.answers_shared import card_head, how_many_named, not_assessable_card
+from assayfolio.report.answers_shared import card_head, exploratory_mark, how_many_named, not_assessable_card
 from assayfolio.report.basis import Basis, is_single_step
 from assayfolio.report.content import Card
 from assayfolio.report.methods import adjustment_of
@@ -73,7 +73,12 @@ def _comparison_cards(basis: Basis, accent: str, tables: Mapping[str, str]) -> l
             picture = family_picture(basis, family, axis, sketch)
         found.append(
             Card(
-                family=card_head(basis, family.name, adjustment_of(family).name),
+                family=card_head(
+                    basis,
+                    family.name,
+                    adjustment_of(family).name,
+                    *exploratory_mark(basis, registered=family.registered),
+                ),
                 question=_question(basis, family),
                 verdict=_family_verdict(family),
                 lines=tuple(_family_lines(basis, family)),

@@ -14,7 +14,7 @@ from assayfolio.findings import (
     EquivalenceRow,
     SpreadFindings,
 )
-from assayfolio.report.answers_shared import card_head, how_many_named, not_assessable_card
+from assayfolio.report.answers_shared import card_head, exploratory_mark, how_many_named, not_assessable_card
 from assayfolio.report.basis import Basis
 from assayfolio.report.content import Card
 from assayfolio.report.criteria import criteria_headline, criterion_line
@@ -80,7 +80,12 @@ def equivalence_cards(basis: Basis, accent: str, tables: Mapping[str, str]) -> l
         plan = next((item for item in basis.equivalence_plans if item.name == family.name), None)
         found.append(
             Card(
-                family=card_head(basis, family.name, _method(family)),
+                family=card_head(
+                    basis,
+                    family.name,
+                    _method(family),
+                    *exploratory_mark(basis, registered=family.registered),
+                ),
                 question=_question(basis, family, plan),
                 verdict=_verdict(family),
                 lines=tuple(_lines(basis, family)),

@@ -18,6 +18,11 @@ def card_head(basis: Basis, *parts: str) -> Prose:
     return prose("{words}", words=" · ".join(words))
 
 
+def exploratory_mark(basis: Basis, *, registered: bool) -> tuple[str, ...]:
+    """The word that marks one question as exploratory where others of the plan stand as registered."""
+    return () if registered or not basis.content.run.registration.is_registered else ("exploratory",)
+
+
 def how_many_named(names: list[str]) -> int:
     """How many of `names` a card holds: at most four, as far as two lines go, and one in any case."""
     count = min(_MOST_NAMED, len(names))

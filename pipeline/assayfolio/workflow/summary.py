@@ -34,7 +34,7 @@ def outcome_lines(outcome: RunOutcome, here: Path, command: str) -> list[str]:
     """For people who work in the folder `here` and call the program by `command`."""
     lines = [""]
     for response in outcome.findings.responses:
-        lines.extend(f"{response.response}: {line}" for line in _verdicts(response))
+        lines.extend(f"{response.response}: {line}" for line in _verdicts(response, outcome.registration))
     for item in outcome.findings.not_reported:
         of_response = f"{item.response}: " if item.response and len(outcome.findings.responses) > 1 else ""
         lines.append(f"Not reported: {of_response}{item.what} - {item.reason}")
@@ -79,13 +79,14 @@ def _standing(outcome: RunOutcome) -> str:
     return "The report is a draft until every sign-off field on its first page carries a valid signature."
 
 
-def _verdicts(response: ResponseFindings) -> Iterator[str]:
+def _verdicts(response: ResponseFindings, registration: RegistrationFacts) -> Iterator[str]:
+    marked = registration.is_registered  # otherwise one line says it of all
     yield _overall(response)
     for comparison in response.comparisons:
-        yield _family_verdict(comparison, DIFFERENCE_SHOWN)
+        yield _family_verdict(comparison, DIFFERENCE_SHOWN, marked=marked)
     for family in response.equivalence:
         shown = EQUIVALENCE_SHOWN if family.claim == "equivalence" else NON_INFERIORITY_SHOWN
-        yield _family_verdict(family, shown)
+        yield _family_verdict(family, shown, marked=marked)
     if response.precision is not None:
         yield _precision_line(response.precision, response.unit)
     yield from (_criterion_line(criterion) for criterion in response.criteria)
@@ -115,7 +116,12 @@ def _proposed(found: OutlierFindings) -> str:
     return f"at {found.level}"
 
 
-def _family_verdict(family: ComparisonFamily | EquivalenceFamily, shown: str) -> str:
+def _family_verdict(family: ComparisonFamily | EquivalenceFamily, shown: str, *, marked: bool) -> str:
+    told = _family_words(family, shown)
+    return f"{told}; exploratory" if marked and not family.registered else told
+
+
+def _family_words(family: ComparisonFamily | EquivalenceFamily, shown: str) -> str:
     rows: Sequence[ComparisonRow | EquivalenceRow] = family.rows
     named = [row.label for row in rows if row.verdict == shown]
     if len(rows) == 1:
