@@ -88,10 +88,6 @@ class DataError(InputError):
     """The raw data cannot be used."""
 
 
-class NotAvailableError(InputError):
-    """The study asks for an analysis that this version does not have."""
-
-
 class MachineError(AssayfolioError):
     """The machine failed us: disk, permission, font, clock, a library that gives wrong results."""
 

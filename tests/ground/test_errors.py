@@ -11,7 +11,6 @@ from assayfolio.errors import (
     Fault,
     InputError,
     MachineError,
-    NotAvailableError,
     Place,
     RenderingError,
     StudyError,
@@ -50,7 +49,6 @@ def test_an_input_error_lists_its_faults_and_counts_those_it_hides() -> None:
     [
         (StudyError("s"), 2),
         (DataError("d"), 2),
-        (NotAvailableError("n"), 2),
         (InputError("i"), 2),
         (MachineError("m"), 3),
         (RenderingError("r"), 3),

@@ -96,6 +96,3 @@ def _summed(observations: Observations, totals: Totals, unit: str | None) -> Sub
         files=tuple(file.file for file in observations.files),
         totals=totals,
     )
-
-
-Subjects = Sequence[Subject]

@@ -1,7 +1,7 @@
 """Whether the plan was registered before the data: the words for every page, for page 1, for the tables."""
 
 from assayfolio.report.basis import Basis
-from assayfolio.report.facts import RegistrationFacts, RunFacts
+from assayfolio.report.facts import RunFacts
 from assayfolio.report.numbering import Part
 from assayfolio.report.prose import Prose, prose
 from assayfolio.report.wording import EXPLORATORY, NOT_REGISTERED, STANDING, counted
@@ -131,8 +131,3 @@ def plan_words(basis: Basis) -> Prose:
 def clock_words() -> str:
     """How far the times can be believed."""
     return _CLOCK
-
-
-def has_section(facts: RegistrationFacts) -> bool:
-    """Whether the report has a section on the registration."""
-    return facts.is_registered

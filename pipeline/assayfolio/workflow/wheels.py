@@ -15,7 +15,6 @@ from assayfolio.evidence.files import digest_regular, explained
 from assayfolio.evidence.program_store import WHEEL
 
 _HASH = re.compile(r"--hash=sha256:([0-9a-f]{64})")
-_PINNED = re.compile(r"^([a-z0-9.-]+)==([^\s;\\]+)", re.MULTILINE)
 _LAST_LINES = 8
 
 
@@ -62,8 +61,3 @@ def _moved(found: Path, target: Path, known: set[str]) -> Iterator[str]:
                 raise MachineError(f"{path.name}: it is not a wheel of the lock.")
             shutil.move(path, target / path.name)
         yield path.name
-
-
-def locked_names(lock: bytes) -> tuple[str, ...]:
-    """The packages that a lock pins: "numpy 2.4.6"."""
-    return tuple(f"{name} {version}" for name, version in _PINNED.findall(lock.decode("utf-8")))
